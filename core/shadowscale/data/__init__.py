@@ -1,0 +1,1 @@
+"""Tables of measurements: reading, columns, clocks; every row accounted for."""

@@ -1,0 +1,1 @@
+"""The solution: system, least squares, covariance, alternatives."""

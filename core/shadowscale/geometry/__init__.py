@@ -1,0 +1,1 @@
+"""Contact times, absolute dimensions and the Roche lobe."""

@@ -1,0 +1,1 @@
+"""Whole jobs, each a function that reads like a table of contents."""

@@ -1,0 +1,1 @@
+"""Whether the model is allowed to speak."""

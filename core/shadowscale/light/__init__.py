@@ -1,0 +1,1 @@
+"""The eclipsed light of two limb-darkened spheres."""

@@ -1,0 +1,1 @@
+"""The state of a piece of work: what was loaded, wished, solved; undo; files."""

@@ -1,0 +1,1 @@
+"""The fitted-parameter sheet and its renderings."""

@@ -1,0 +1,1 @@
+"""Periods, eclipses and their times."""
