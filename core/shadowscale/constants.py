@@ -13,9 +13,7 @@ GM_SUN = 1.3271244e20  # [m3 s-2] nominal solar mass parameter
 R_SUN = 6.957e8  # [m] nominal solar radius
 L_SUN = 3.828e26  # [W] nominal solar luminosity
 TEFF_SUN = 5772.0  # [K] nominal solar effective temperature
-L_BOL_ZERO = (
-    3.0128e28  # [W] luminosity of absolute bolometric magnitude zero (IAU 2015 B2)
-)
+L_BOL_ZERO = 3.0128e28  # [W] luminosity of absolute bolometric magnitude zero (IAU 2015 B2)
 
 G = 6.67430e-11  # [m3 kg-1 s-2] CODATA 2018/2022
 C = 299792458.0  # [m s-1] exact

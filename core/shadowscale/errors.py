@@ -45,9 +45,7 @@ class UsageError(ShadowscaleError):
             allowed,
             expected,
         )
-        wanted = expected or (
-            "one of " + ", ".join(allowed) if allowed else "something else"
-        )
+        wanted = expected or ("one of " + ", ".join(allowed) if allowed else "something else")
         text = f"{option}: expected {wanted}, found {found!r}"
         near = get_close_matches(found, allowed, n=1)
         super().__init__(text + (f"; did you mean {near[0]!r}?" if near else ""))
@@ -97,9 +95,7 @@ class InputError(ShadowscaleError):
 
     def details(self) -> dict[str, object]:
         """The data of the error, ready for JSON."""
-        return super().details() | {
-            "problems": [vars(problem) for problem in self.problems]
-        }
+        return super().details() | {"problems": [vars(problem) for problem in self.problems]}
 
 
 class TableError(InputError):
@@ -131,9 +127,7 @@ class NoSolutionError(ShadowscaleError):
         self, reason: str, numbers: Mapping[str, float] | None = None, help: str = ""
     ) -> None:
         self.reason, self.numbers, self.help = reason, dict(numbers or {}), help
-        shown = ", ".join(
-            f"{name} = {value:.6g}" for name, value in self.numbers.items()
-        )
+        shown = ", ".join(f"{name} = {value:.6g}" for name, value in self.numbers.items())
         text = reason + (f" ({shown})" if shown else "")
         super().__init__(text + (f"; {help}" if help else ""))
 

@@ -414,9 +414,7 @@ QUANTITIES: Mapping[str, Quantity] = _register(
         "argument of periastron of star 1's orbit",
         source="from e cos w and e sin w",
     ),
-    Quantity(
-        "mass_ratio", "q", "q", "", 0.0, inf, 1e-3, "mass ratio M2/M1", source="K1/K2"
-    ),
+    Quantity("mass_ratio", "q", "q", "", 0.0, inf, 1e-3, "mass ratio M2/M1", source="K1/K2"),
     Quantity(
         "a",
         "a",
@@ -428,12 +426,8 @@ QUANTITIES: Mapping[str, Quantity] = _register(
         "semi-major axis of the relative orbit",
         source=_KEPLER,
     ),
-    Quantity(
-        "M1", "M1", "M_1", "solMass", 0.0, inf, 0.001, "mass of star 1", source=_KEPLER
-    ),
-    Quantity(
-        "M2", "M2", "M_2", "solMass", 0.0, inf, 0.001, "mass of star 2", source=_KEPLER
-    ),
+    Quantity("M1", "M1", "M_1", "solMass", 0.0, inf, 0.001, "mass of star 1", source=_KEPLER),
+    Quantity("M2", "M2", "M_2", "solMass", 0.0, inf, 0.001, "mass of star 2", source=_KEPLER),
     Quantity(
         "R1",
         "R1",
@@ -739,15 +733,11 @@ def decimals_for(error: float, digits: int = 2) -> int:
 def written(value: float, minus: float | None = None, plus: float | None = None) -> str:
     """A value with its error as people read it: two significant digits of error, matching decimals."""
     errors = [
-        error
-        for error in (minus, plus)
-        if error is not None and isfinite(error) and error > 0
+        error for error in (minus, plus) if error is not None and isfinite(error) and error > 0
     ]
     if not errors:
         return f"{value:.6g}"
     places = decimals_for(min(errors))
     low, high = (f"{error or 0.0:.{places}f}" for error in (minus, plus))
     body = f"{value:.{places}f}"
-    return (
-        f"{body} \N{PLUS-MINUS SIGN} {low}" if low == high else f"{body} +{high} -{low}"
-    )
+    return f"{body} \N{PLUS-MINUS SIGN} {low}" if low == high else f"{body} +{high} -{low}"

@@ -60,9 +60,7 @@ class Velocities:
         code = reasons.index(reason)
         name = f"why{star}"
         why = getattr(self, name)
-        return replace(
-            self, **{name: np.where(rows & (why == USED), code, why)}, reasons=reasons
-        )
+        return replace(self, **{name: np.where(rows & (why == USED), code, why)}, reasons=reasons)
 
     def restored(self, star: int, rows: NDArray[np.bool_]) -> Velocities:
         """The same table with `rows` (n, bool) of star 1 or 2 taking part again."""

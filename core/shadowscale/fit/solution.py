@@ -54,9 +54,7 @@ class FitSummary:
     rms_velocity: Mapping[str, float]  # "star 1", "star 2" [km/s]
     error_scale: Mapping[str, float]  # per band, factor on the given errors
     jitter: Mapping[str, float]  # per "source, star n" [km/s], added in quadrature
-    raw_reduced_chi2: Mapping[
-        str, float
-    ]  # per band and velocity set, with the errors as given
+    raw_reduced_chi2: Mapping[str, float]  # per band and velocity set, with the errors as given
     method: str
     converged: bool
     iterations: int
