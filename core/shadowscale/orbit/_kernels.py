@@ -37,7 +37,7 @@ In a circular orbit the secondary is late by P (K2 - K1)/(pi c) (Kaplan 2010, Ap
 
 from __future__ import annotations
 
-from math import atan2, cos, pi, sin, sqrt
+from math import atan2, pi, sqrt
 
 import numpy as np
 from numba import njit
@@ -45,7 +45,12 @@ from numpy.typing import NDArray
 
 Floats = NDArray[np.float64]
 
+# "contract" lets a*b + c be one instruction; NaN and infinity keep their meaning.
+compiled = njit(cache=True, nogil=True, error_model="numpy", fastmath={"contract"})
+
 TURN = 2 * pi
+QUARTER_TURN, QUARTER_TURN_REST = 1.5707963267948966, 6.123233995736766e-17  # their sum is pi/2
+SERIES_LIMIT = 0.4  # eccentricity up to which the short solution of Kepler's equation is exact
 TINY_SEPARATION = 1e-12  # below it the direction of the separation has no meaning
 
 # Places in `constants`.
@@ -69,62 +74,117 @@ SKY_FULL_SIZE = 25
 VELOCITY_SIZE = 4
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
-def _step(e: float, sin_e: float, cos_e: float, excess: float) -> tuple[float, float, float]:
-    """Fifth-order correction of E where E - e sin E - M = excess: step, and the new sine and cosine.
+@compiled
+def _sine_cosine(x: float) -> tuple[float, float]:
+    """sin x and cos x together, for x within a few turns: twice as fast as two library calls.
 
-    Markley 1995, Celestial Mechanics and Dynamical Astronomy 63, 101 (from memory); the sine and
-    cosine follow by the addition theorem with the series of a small step.
+    Less the nearest quarter turn, Taylor's series to x^15 and x^16 is exact to rounding.
     """
-    f1 = 1.0 - e * cos_e
-    f2 = e * sin_e
-    f3 = e * cos_e
-    step = -excess / (f1 - 0.5 * excess * f2 / f1)
-    step = -excess / (f1 + step * (f2 / 2 + step * f3 / 6))
-    step = -excess / (f1 + step * (f2 / 2 + step * (f3 / 6 - step * f2 / 24)))
-    if abs(step) > 0.01:
-        sin_step, cos_step = sin(step), cos(step)
-    else:
-        square = step * step
-        sin_step = step * (1 - square / 6 * (1 - square / 20 * (1 - square / 42)))
-        cos_step = 1 - square / 2 * (1 - square / 12 * (1 - square / 30))
-    return (
-        step,
-        sin_e * cos_step + cos_e * sin_step,
-        cos_e * cos_step - sin_e * sin_step,
-    )
+    quarter = np.rint(x * (2 / pi))
+    x = (x - quarter * QUARTER_TURN) - quarter * QUARTER_TURN_REST
+    z = x * x
+    s = 1 / 1307674368000.0
+    s = 1 / 6227020800.0 - z * s
+    s = 1 / 39916800.0 - z * s
+    s = 1 / 362880.0 - z * s
+    s = 1 / 5040.0 - z * s
+    s = 1 / 120.0 - z * s
+    s = 1 / 6.0 - z * s
+    s = x - x * z * s
+    c = 1 / 20922789888000.0
+    c = 1 / 87178291200.0 - z * c
+    c = 1 / 479001600.0 - z * c
+    c = 1 / 3628800.0 - z * c
+    c = 1 / 40320.0 - z * c
+    c = 1 / 720.0 - z * c
+    c = 1 / 24.0 - z * c
+    c = 1.0 - z * (0.5 - z * c)
+    place = int(quarter) & 3
+    sine = c if place & 1 else s
+    cosine = s if place & 1 else c
+    return (-sine if place & 2 else sine), (-cosine if (place + 1) & 2 else cosine)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
-def _start(mean: float, e: float) -> float:
-    """Markley's cubic start of E for -pi <= mean <= pi: good to 7e-4 of E for every e < 1."""
+@compiled
+def _turned(sin_e: float, cos_e: float, step: float) -> tuple[float, float]:
+    """Sine and cosine of the angle moved by a step below half a radian."""
+    z = step * step
+    s = 1 / 39916800.0 - z * (1 / 6227020800.0)
+    s = 1 / 5040.0 - z * (1 / 362880.0 - z * s)
+    s = step - step * z * (1 / 6.0 - z * (1 / 120.0 - z * s))
+    c = 1 / 479001600.0 - z * (1 / 87178291200.0)
+    c = 1 / 40320.0 - z * (1 / 3628800.0 - z * c)
+    c = 1.0 - z * (0.5 - z * (1 / 24.0 - z * (1 / 720.0 - z * c)))
+    return sin_e * c + cos_e * s, cos_e * c - sin_e * s
+
+
+@compiled
+def _nudged(sin_e: float, cos_e: float, step: float) -> tuple[float, float]:
+    """The same for a step below 1e-2."""
+    z = step * step
+    s = step - step * z * (1 / 6.0 - z * (1 / 120.0))
+    c = 1.0 - z * (0.5 - z * (1 / 24.0 - z * (1 / 720.0)))
+    return sin_e * c + cos_e * s, cos_e * c - sin_e * s
+
+
+@compiled
+def _step(e: float, sin_e: float, cos_e: float, excess: float) -> float:
+    """Correction of E where E - e sin E - M = excess: the reverted series to the fourth order."""
+    inverse = 1.0 / (1.0 - e * cos_e)
+    y = -excess * inverse
+    a = 0.5 * e * sin_e * inverse
+    b = e * cos_e * inverse / 6
+    square = a * a
+    return y * (1.0 - y * (a - y * ((2 * square - b) + y * (5 * a * b + a / 12 - 5 * a * square))))
+
+
+@compiled
+def _markley(mean: float, e: float) -> tuple[float, float, float]:
+    """E, sin E, cos E for every e < 1: a cubic start, one fifth-order correction.
+
+    Markley 1995, Celestial Mechanics and Dynamical Astronomy 63, 101 (from memory).
+    """
     alpha = (3 * pi * pi + 1.6 * pi * (pi - abs(mean)) / (1 + e)) / (pi * pi - 6)
     d = 3 * (1 - e) + alpha * e
     q = 2 * alpha * d * (1 - e) - mean * mean
     r = abs((3 * alpha * d * (d - 1 + e) + mean * mean) * mean)
-    root = np.cbrt(r + sqrt(q * q * q + r * r))
-    w = root * root
+    w = (r + sqrt(q * q * q + r * r)) ** (2 / 3)
     size = 2 * r * w / (w * w + w * q + q * q)
-    return ((size if mean >= 0 else -size) + mean) / d
-
-
-@njit(cache=True, nogil=True, error_model="numpy")
-def _kepler(mean: float, e: float) -> tuple[float, float, float]:
-    """E, sin E, cos E for -pi <= mean <= pi."""
-    start = _start(mean, e)
-    sin_e, cos_e = sin(start), cos(start)
-    step, sin_e, cos_e = _step(e, sin_e, cos_e, start - e * sin_e - mean)
+    start = ((size if mean >= 0 else -size) + mean) / d
+    sin_e, cos_e = _sine_cosine(start)
+    excess = start - e * sin_e - mean
+    f1, f2, f3 = 1.0 - e * cos_e, e * sin_e, e * cos_e
+    step = -excess / (f1 - 0.5 * excess * f2 / f1)
+    step = -excess / (f1 + step * (f2 / 2 + step * f3 / 6))
+    step = -excess / (f1 + step * (f2 / 2 + step * (f3 / 6 - step * f2 / 24)))
+    sin_e, cos_e = _nudged(sin_e, cos_e, step)
     return start + step, sin_e, cos_e
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
+def _kepler(mean: float, e: float) -> tuple[float, float, float]:
+    """E, sin E, cos E for -pi <= mean <= pi."""
+    if e > SERIES_LIMIT:
+        return _markley(mean, e)
+    sin_e, cos_e = _sine_cosine(mean)
+    if e == 0.0:
+        return mean, sin_e, cos_e
+    # Two steps from E = M reach rounding up to this eccentricity.
+    step = _step(e, sin_e, cos_e, -e * sin_e)
+    sin_e, cos_e = _turned(sin_e, cos_e, step)
+    last = _step(e, sin_e, cos_e, step - e * sin_e)
+    sin_e, cos_e = _nudged(sin_e, cos_e, last)
+    return mean + (step + last), sin_e, cos_e
+
+
+@compiled
 def eccentric_anomaly(mean: float, ecc: float) -> float:
     """E of Kepler's equation E - e sin E = M, for any M [rad] and 0 <= e < 1."""
     turns = np.rint(mean / TURN)
     return _kepler(mean - TURN * turns, ecc)[0] + TURN * turns
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def orbit_constants(ecosw: float, esinw: float, cos2i: float, out: Floats) -> None:
     """What does not depend on time; `out` has CONSTANTS_SIZE places, named above."""
     h, k = esinw, ecosw
@@ -167,26 +227,23 @@ def orbit_constants(ecosw: float, esinw: float, cos2i: float, out: Floats) -> No
     out[Z_PRIMARY_COS2I] = 0.5 * rho / max(sin_i, TINY_SEPARATION)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _anomaly(cycles: float, constants: Floats) -> tuple[float, float]:
     """sin E and cos E, light time left out."""
     turns = constants[MEAN_PRIMARY] + (cycles - np.rint(cycles))
     turns -= np.rint(turns)
-    e = constants[ECC]
-    if e == 0.0:
-        return sin(TURN * turns), cos(TURN * turns)
-    _, sin_e, cos_e = _kepler(TURN * turns, e)
+    _, sin_e, cos_e = _kepler(TURN * turns, constants[ECC])
     return sin_e, cos_e
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _longitude(sin_e: float, cos_e: float, constants: Floats) -> tuple[float, float]:
     """sin F and cos F from sin E and cos E."""
     c, s = constants[COS_OMEGA], constants[SIN_OMEGA]
     return sin_e * c + cos_e * s, cos_e * c - sin_e * s
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _place(sin_f: float, cos_f: float, constants: Floats) -> tuple[float, float]:
     """X and Y, equations (2) and (3)."""
     mix = constants[A_MIX]
@@ -196,7 +253,7 @@ def _place(sin_f: float, cos_f: float, constants: Floats) -> tuple[float, float]
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def sky_point_value(cycles: float, constants: Floats, light_time: float) -> tuple[float, float]:
     """Sky separation and z = (star 2 minus star 1, away from the observer), units of a."""
     sin_e, cos_e = _anomaly(cycles, constants)
@@ -204,13 +261,14 @@ def sky_point_value(cycles: float, constants: Floats, light_time: float) -> tupl
     x, y = _place(sin_f, cos_f, constants)
     if light_time != 0.0:
         shift = light_time * (y * constants[SIN_I] + constants[Z_PRIMARY])
-        _, sin_e, cos_e = _step(constants[ECC], sin_e, cos_e, -TURN * shift)
+        step = _step(constants[ECC], sin_e, cos_e, -TURN * shift)
+        sin_e, cos_e = _nudged(sin_e, cos_e, step)
         sin_f, cos_f = _longitude(sin_e, cos_e, constants)
         x, y = _place(sin_f, cos_f, constants)
     return sqrt(x * x + y * y * constants[COS2I]), -y * constants[SIN_I]
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _derivatives(
     sin_f: float, cos_f: float, constants: Floats
 ) -> tuple[float, float, float, float, float, float]:
@@ -233,7 +291,7 @@ def _derivatives(
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _seen(
     cycles: float, constants: Floats, light_time: float
 ) -> tuple[
@@ -252,14 +310,15 @@ def _seen(
         tau_k = light_time * (y_k * sin_i + constants[Z_PRIMARY_ECOSW])
         tau_h = light_time * (y_h * sin_i + constants[Z_PRIMARY_ESINW])
         tau_i = light_time * (constants[Z_PRIMARY_COS2I] - 0.5 * y / max(sin_i, TINY_SEPARATION))
-        _, sin_e, cos_e = _step(constants[ECC], sin_e, cos_e, -TURN * light_time * behind)
+        step = _step(constants[ECC], sin_e, cos_e, -TURN * light_time * behind)
+        sin_e, cos_e = _nudged(sin_e, cos_e, step)
         sin_f, cos_f = _longitude(sin_e, cos_e, constants)
         x, y = _place(sin_f, cos_f, constants)
     x_tau, x_k, x_h, y_tau, y_k, y_h = _derivatives(sin_f, cos_f, constants)
     return x, y, x_tau, x_k, x_h, y_tau, y_k, y_h, tau_c, tau_k, tau_h, tau_i, behind
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def sky_point(cycles: float, constants: Floats, light_time: float, out: Floats) -> None:
     """Separation, z, and the derivatives of the separation at fixed observed cycles; SKY_SIZE places."""
     x, y, x_tau, x_k, x_h, y_tau, y_k, y_h, tau_c, tau_k, tau_h, tau_i, tau_light = _seen(
@@ -279,7 +338,7 @@ def sky_point(cycles: float, constants: Floats, light_time: float, out: Floats) 
     out[DELTA_LIGHT_TIME] = delta_tau * tau_light
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def sky_full(cycles: float, constants: Floats, light_time: float, out: Floats) -> None:
     """As `sky_point`, with rho, sin(nu + w), cos(nu + w), each with five derivatives; SKY_FULL_SIZE places."""
     x, y, x_tau, x_k, x_h, y_tau, y_k, y_h, tau_c, tau_k, tau_h, tau_i, tau_light = _seen(
@@ -317,7 +376,7 @@ def sky_full(cycles: float, constants: Floats, light_time: float, out: Floats) -
     out[DELTA_COS2I] += 0.5 * y * y * inverse
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def velocity_point(cycles: float, constants: Floats, out: Floats) -> None:
     """w = cos(nu + omega) + e cos omega, and w to cycles, ecosw, esinw; VELOCITY_SIZE places.
 
@@ -336,7 +395,7 @@ def velocity_point(cycles: float, constants: Floats, out: Floats) -> None:
     out[3] = across * (x * y_h - y * x_h)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def velocity_point_value(cycles: float, constants: Floats) -> float:
     """w = cos(nu + omega) + e cos omega alone."""
     sin_e, cos_e = _anomaly(cycles, constants)
