@@ -80,3 +80,4 @@ class Session:
     kept: tuple[Kept, ...] = ()
     view: Mapping[str, object] = field(default_factory=dict)
     command: str = ""
+    notes: tuple[str, ...] = ()  # what opening the session had to say; not saved

@@ -1,0 +1,38 @@
+"""Files that are there whole or not at all."""
+
+from __future__ import annotations
+
+import os
+import tempfile
+from pathlib import Path
+
+
+def write_text(path: Path, text: str) -> None:
+    """Write beside the place, make sure it is on disk, then rename; an old file stays until then.
+
+    Raises
+    ------
+    OSError
+        If the folder cannot be written; the old file is untouched.
+    """
+    path.parent.mkdir(parents=True, exist_ok=True)
+    handle, temporary = tempfile.mkstemp(dir=path.parent, prefix=f".{path.name}.", suffix=".part")
+    try:
+        with os.fdopen(handle, "w", encoding="utf-8", newline="") as stream:
+            stream.write(text)
+            stream.flush()
+            os.fsync(stream.fileno())
+        os.chmod(temporary, _mode(path))
+        os.replace(temporary, path)
+    except BaseException:
+        os.unlink(temporary)
+        raise
+
+
+def _mode(path: Path) -> int:
+    """The rights of the old file, or what a new one would ordinarily get."""
+    if path.exists():
+        return path.stat().st_mode & 0o777
+    mask = os.umask(0)
+    os.umask(mask)
+    return 0o666 & ~mask

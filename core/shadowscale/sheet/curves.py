@@ -1,0 +1,135 @@
+"""Every input row with what the solution says of it: `light_curve.csv`, `velocity_curve.csv`.
+
+Rows stand in the order of the files, so that nothing can be lost between a file and its curve:
+a row that takes no part has `used` 0 and the reason, a line that could not be read has only those.
+"""
+
+from __future__ import annotations
+
+import csv
+from collections.abc import Iterable, Sequence
+from io import StringIO
+from math import isnan
+from typing import Any
+
+from shadowscale.data.photometry import Photometry, UnreadableRow
+from shadowscale.data.velocities import Velocities
+from shadowscale.fit.solution import Solution
+
+LIGHT_HEADER = (
+    "file",
+    "line",
+    "time",
+    "band",
+    "value",
+    "value_error",
+    "phase",
+    "observed",
+    "error",
+    "model",
+    "residual",
+    "level",
+    "used",
+    "why",
+)
+_STAR = ("rv{}", "rv{}_err", "model{}", "residual{}", "used{}", "why{}")
+VELOCITY_HEADER = (
+    "file",
+    "line",
+    "time",
+    "source",
+    "phase",
+    *(name.format(1) for name in _STAR),
+    *(name.format(2) for name in _STAR),
+)
+
+
+def light_curve(solution: Solution, photometry: Photometry) -> str:
+    """All rows of the photometry as text.
+
+    `value` is what the file says; `observed`, `error`, `model`, `residual` and `level` are fluxes
+    in units of the band's typical flux, `phase` is in cycles from mid primary eclipse.
+    """
+    result = solution.light
+    used, why = _fate(result.why.tolist(), result.reasons)
+    paths = [file.path for file in photometry.files]
+    columns = (
+        [paths[number] for number in photometry.file.tolist()],
+        photometry.line.tolist(),
+        photometry.time.tolist(),
+        [photometry.bands[number] for number in photometry.band.tolist()],
+        _cells(photometry.value.tolist()),
+        _cells(photometry.value_error.tolist()),
+        _cells(result.phase.tolist()),
+        _cells(photometry.flux.tolist()),
+        _cells(photometry.flux_error.tolist()),
+        _cells(result.model.tolist()),
+        _cells((photometry.flux - result.model).tolist()),
+        _cells(result.level.tolist()),
+        used,
+        why,
+    )
+    return _written(LIGHT_HEADER, columns, photometry.unreadable, paths)
+
+
+def velocity_curve(solution: Solution, velocities: Velocities) -> str:
+    """All rows of the velocities as text [km/s]; the model includes gamma and the source's offset."""
+    result = solution.velocity
+    if result is None:
+        raise ValueError("the solution has no velocities")
+    paths = [file.path for file in velocities.files]
+    stars: list[Sequence[Any]] = []
+    for observed, error, model, codes in (
+        (velocities.rv1, velocities.rv1_error, result.model1, result.why1),
+        (velocities.rv2, velocities.rv2_error, result.model2, result.why2),
+    ):
+        used, why = _fate(codes.tolist(), result.reasons)
+        stars += [_cells(item.tolist()) for item in (observed, error, model, observed - model)]
+        stars += [used, why]
+    columns = (
+        [paths[number] for number in velocities.file.tolist()],
+        velocities.line.tolist(),
+        velocities.time.tolist(),
+        [velocities.sources[number] for number in velocities.source.tolist()],
+        _cells(result.phase.tolist()),
+        *stars,
+    )
+    return _written(VELOCITY_HEADER, columns, velocities.unreadable, paths)
+
+
+def _fate(codes: list[int], reasons: tuple[str, ...]) -> tuple[list[int], list[str]]:
+    """Whether each row is used, and why not."""
+    used = [int(code == 0) for code in codes]
+    return used, ["" if code == 0 else reasons[code] for code in codes]
+
+
+def _cells(numbers: list[float]) -> list[float | str]:
+    return ["" if isnan(number) else number for number in numbers]
+
+
+def _written(
+    header: tuple[str, ...],
+    columns: Sequence[Sequence[Any]],
+    unreadable: Iterable[UnreadableRow],
+    paths: list[str],
+) -> str:
+    """The table as text, lines that could not be read put where they stood."""
+    rows: list[tuple[Any, ...]] = list(zip(*columns))
+    rows += [_unreadable(row, header) for row in unreadable]
+    order = {path: number for number, path in enumerate(paths)}
+    rows.sort(key=lambda row: (order.get(row[0], len(order)), row[1]))
+    text = StringIO()
+    writer = csv.writer(text, lineterminator="\n")
+    writer.writerow(header)
+    writer.writerows(rows)
+    return text.getvalue()
+
+
+def _unreadable(row: UnreadableRow, header: tuple[str, ...]) -> tuple[Any, ...]:
+    known: dict[str, Any] = {"file": row.file, "line": row.line}
+    for name in header:
+        if name.startswith("used"):
+            known[name] = 0
+        elif name.startswith("why"):
+            known[name] = f"unreadable: {row.reason}"
+    return tuple(known.get(name, "") for name in header)

@@ -1,0 +1,246 @@
+"""The content of the fitted-parameter sheet, put together once; every rendering starts from it."""
+
+from __future__ import annotations
+
+import platform
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, field
+from importlib.metadata import PackageNotFoundError, version
+
+from shadowscale._version import __version__
+from shadowscale.data.photometry import InputFile, Photometry
+from shadowscale.data.velocities import Velocities
+from shadowscale.fit.solution import (
+    Alternative,
+    Decision,
+    Estimate,
+    FitSummary,
+    Solution,
+)
+from shadowscale.geometry.contacts import ContactSolution
+from shadowscale.judge.finding import PASS, WARN, Finding
+from shadowscale.light.laws import LAWS
+from shadowscale.quantities import BAND, QUANTITIES, SOURCE, SYSTEM, Quantity, key, quantity_of
+
+LIBRARIES = ("numpy", "scipy", "numba", "astropy")
+# What needs something beside light and velocities: its absence is ordinary, not a warning.
+OPTIONAL = ("teff1", "teff2", "L1", "L2", "Mbol1", "Mbol2", "distance")
+ABSENT = "absent"
+
+
+@dataclass(frozen=True)
+class Entry:
+    """One number of the sheet with all that is said about it."""
+
+    key: str
+    quantity: Quantity
+    estimate: Estimate
+    name: str = ""  # of a limb-darkening coefficient, as its law calls it
+
+    @property
+    def meaning(self) -> str:
+        """The register's words, with the coefficient's name where there are several."""
+        words = self.quantity.meaning
+        return f"{words}, coefficient {self.name}" if self.name else words
+
+
+@dataclass(frozen=True)
+class BandSheet:
+    """What belongs to one band: its quantities, limb darkening by star, scatter about the model."""
+
+    quantities: Mapping[str, Entry]
+    law: str
+    limb_darkening: Mapping[int, Mapping[str, Entry]]
+    rms: float | None
+
+
+@dataclass(frozen=True)
+class Provenance:
+    """What made the sheet, from what."""
+
+    command: str = ""
+    seed: int = 0
+    time_scale: str = "unknown"
+    inputs: tuple[InputFile, ...] = ()
+    program: str = f"shadowscale {__version__}"
+    versions: Mapping[str, str] = field(default_factory=lambda: library_versions())
+
+
+@dataclass(frozen=True, eq=False)
+class Sheet:
+    """Everything that the sheet says.
+
+    Attributes
+    ----------
+    quantities : mapping of name to Entry
+        Of the system, in the register's order.
+    bands, sources : mapping of label to its entries
+    correlation_names, correlations
+        Of the fitted and the main derived quantities.
+    audit : tuple of Finding
+        The checks, then one line for each quantity that the data cannot give.
+    outliers : mapping of reason to number of rows
+        Rows of all tables that do not take part.
+    """
+
+    quantities: Mapping[str, Entry]
+    bands: Mapping[str, BandSheet]
+    sources: Mapping[str, Mapping[str, Entry]]
+    correlation_names: tuple[str, ...]
+    correlations: tuple[tuple[float, ...], ...]
+    fit: FitSummary
+    alternatives: tuple[Alternative, ...]
+    audit: tuple[Finding, ...]
+    contact: ContactSolution | None
+    decisions: tuple[Decision, ...]
+    notes: tuple[str, ...]
+    outliers: Mapping[str, int]
+    provenance: Provenance
+
+    def entries(self) -> Iterator[Entry]:
+        """Every number: of the system, then band by band, then source by source."""
+        yield from self.quantities.values()
+        for band in self.bands.values():
+            yield from band.quantities.values()
+            for star in band.limb_darkening.values():
+                yield from star.values()
+        for source in self.sources.values():
+            yield from source.values()
+
+
+def make_sheet(
+    solution: Solution,
+    photometry: Photometry,
+    *,
+    velocities: Velocities | None = None,
+    audit: tuple[Finding, ...] = (),
+    command: str = "",
+    seed: int = 0,
+) -> Sheet:
+    """The sheet of a solution.
+
+    Parameters
+    ----------
+    solution : Solution
+    photometry, velocities
+        The tables that were solved.
+    audit : tuple of Finding
+        What `shadowscale.judge.audit` found.
+    command : str
+        What would do this again.
+    seed : int
+        Of every random step.
+    """
+    inputs = photometry.files + (velocities.files if velocities is not None else ())
+    return Sheet(
+        quantities=_system_entries(solution),
+        bands={band: _band_sheet(solution, band) for band in solution.system.bands},
+        sources=_source_entries(solution),
+        correlation_names=solution.correlation_names,
+        correlations=tuple(tuple(map(float, row)) for row in solution.correlations),
+        fit=solution.fit,
+        alternatives=solution.alternatives,
+        audit=(*audit, *_absences(solution)),
+        contact=solution.contact,
+        decisions=solution.decisions,
+        notes=_notes(solution, photometry, velocities),
+        outliers=_outliers(solution, photometry, velocities),
+        provenance=Provenance(command, seed, photometry.time_scale, inputs),
+    )
+
+
+def library_versions() -> dict[str, str]:
+    """Versions of Python and of the libraries that numbers depend on."""
+    found = {"shadowscale": __version__, "python": platform.python_version()}
+    for name in LIBRARIES:
+        try:
+            found[name] = version(name)
+        except PackageNotFoundError:
+            continue
+    return found
+
+
+def _entry(solution: Solution, text: str, name: str = "") -> Entry | None:
+    """The entry of a key; None if the solution has no number for it."""
+    estimate = solution.estimates.get(text)
+    return None if estimate is None else Entry(text, quantity_of(text), estimate, name)
+
+
+def _entries(solution: Solution, scope: str, label: str | None) -> dict[str, Entry]:
+    """All quantities of one scope and label, in the register's order."""
+    found: dict[str, Entry] = {}
+    for name, quantity in QUANTITIES.items():
+        if quantity.scope == scope and (entry := _entry(solution, key(name, label))):
+            found[name] = entry
+    return found
+
+
+def _system_entries(solution: Solution) -> dict[str, Entry]:
+    return _entries(solution, SYSTEM, None)
+
+
+def _source_entries(solution: Solution) -> dict[str, dict[str, Entry]]:
+    found = {source: _entries(solution, SOURCE, source) for source in solution.system.sources}
+    return {source: entries for source, entries in found.items() if entries}
+
+
+def _band_sheet(solution: Solution, band: str) -> BandSheet:
+    law = solution.system.law
+    names = LAWS[law].coefficients
+    limb: dict[int, dict[str, Entry]] = {1: {}, 2: {}}
+    for star, entries in limb.items():
+        for number, name in enumerate(names, 1):
+            text = key(f"limb_darkening{star}", band, number)
+            if entry := _entry(solution, text, name):
+                entries[name] = entry
+    rms = solution.fit.rms_light.get(band)
+    return BandSheet(_entries(solution, BAND, band), law, limb, rms)
+
+
+def _absences(solution: Solution) -> Iterator[Finding]:
+    """One line for each quantity of the register that the solution does not give."""
+    expected = [name for name, quantity in QUANTITIES.items() if quantity.scope == SYSTEM]
+    reasons = dict(solution.absent)
+    for name in expected:
+        if name not in solution.estimates:
+            reasons.setdefault(name, "this solution does not give it")
+    for name in sorted(reasons, key=lambda text: _rank(text, expected)):
+        verdict = PASS if name in OPTIONAL else WARN
+        words = f"{name} is not given: {reasons[name]}"
+        yield Finding(f"{ABSENT} {name}", None, None, verdict, words, "what the data can give")
+
+
+def _rank(name: str, expected: list[str]) -> tuple[int, str]:
+    return (expected.index(name) if name in expected else len(expected), name)
+
+
+def _notes(
+    solution: Solution, photometry: Photometry, velocities: Velocities | None
+) -> tuple[str, ...]:
+    """Doubts of the fit and of the readers, each once."""
+    tables = photometry.notes + (velocities.notes if velocities is not None else ())
+    return tuple(dict.fromkeys((*solution.notes, *tables)))
+
+
+def _outliers(
+    solution: Solution, photometry: Photometry, velocities: Velocities | None
+) -> dict[str, int]:
+    """How many rows were set aside for each reason, unreadable ones included."""
+    counts: dict[str, int] = {}
+    result = solution.light
+    _count(counts, result.why.tolist(), result.reasons)
+    unreadable = len(photometry.unreadable)
+    if solution.velocity is not None:
+        for why in (solution.velocity.why1, solution.velocity.why2):
+            _count(counts, why.tolist(), solution.velocity.reasons)
+    if velocities is not None:
+        unreadable += len(velocities.unreadable)
+    if unreadable:
+        counts["unreadable"] = unreadable
+    return counts
+
+
+def _count(counts: dict[str, int], codes: list[int], reasons: tuple[str, ...]) -> None:
+    for code in codes:
+        if code:
+            counts[reasons[code]] = counts.get(reasons[code], 0) + 1
