@@ -54,6 +54,8 @@ class Photometry:
         0 for a row that takes part, else an index into `reasons`.
     errors_from_scatter : (number of bands,) bool
         True where the file had no errors and they were estimated.
+    exposure, airmass : (n,) float64 or None
+        As printed in the file; NaN where it has none.
     """
 
     time: Floats
@@ -74,6 +76,8 @@ class Photometry:
     reasons: tuple[str, ...] = ("used",)
     unreadable: tuple[UnreadableRow, ...] = ()
     notes: tuple[str, ...] = field(default=())
+    exposure: Floats | None = None
+    airmass: Floats | None = None
 
     @property
     def used(self) -> NDArray[np.bool_]:

@@ -1,0 +1,164 @@
+"""What both readers of measurements share: files in order, usable cells, reasons, times."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+from os import PathLike, fspath
+
+import numpy as np
+from numpy.typing import NDArray
+
+from shadowscale.data.clocks import REACH, Clock, recognised_clock
+from shadowscale.data.columns import Guess
+from shadowscale.data.files import read_table
+from shadowscale.data.photometry import Floats, InputFile, UnreadableRow
+from shadowscale.data.raw_table import RawTable
+from shadowscale.errors import InputError, Problem, TableError, TimeScaleError
+
+Path = str | PathLike[str]
+Chosen = Mapping[str, str | int]
+Bools = NDArray[np.bool_]
+
+
+@dataclass
+class Reasons:
+    """Reasons for setting rows aside, each with its number."""
+
+    known: list[str] = field(default_factory=lambda: ["used"])
+
+    def number(self, reason: str) -> int:
+        """The number of a reason, new or known."""
+        if reason not in self.known:
+            self.known.append(reason)
+        return self.known.index(reason)
+
+
+def path_list(paths: Path | Sequence[Path]) -> tuple[str, ...]:
+    """The paths as text; one path alone is a list of one."""
+    several = [paths] if isinstance(paths, str | PathLike) else list(paths)
+    if not several:
+        raise ValueError("paths: at least one file is needed")
+    return tuple(fspath(path) for path in several)
+
+
+def per_file(columns: Chosen | Sequence[Chosen], number: int) -> tuple[Chosen, ...]:
+    """The user's columns for each file: one mapping for all, or one a file."""
+    if isinstance(columns, Mapping):
+        return (columns,) * number
+    if len(columns) != number:
+        raise ValueError(f"columns: {number} files but {len(columns)} mappings of columns")
+    return tuple(columns)
+
+
+def read_all(paths: tuple[str, ...]) -> list[RawTable]:
+    """All files; the problems of all are gathered, and a file given twice is one of them."""
+    tables: list[RawTable] = []
+    problems: list[Problem] = []
+    for path in paths:
+        try:
+            table = read_table(path)
+        except InputError as error:
+            problems.extend(error.problems)
+            continue
+        twin = next((other.path for other in tables if other.sha256 == table.sha256), None)
+        if twin is not None:
+            found = f"the same content as in {twin}"
+            problems.append(Problem(path, "a file of its own", found, help="name it once"))
+        tables.append(table)
+    if problems:
+        raise TableError(*problems)
+    return tables
+
+
+def odd_rows(table: RawTable, guesses: Sequence[Guess]) -> dict[int, str]:
+    """Rows with words where a number is needed, and the reason."""
+    found: dict[int, str] = {}
+    for guess in guesses:
+        column = table.columns[guess.index]
+        if column.labels is not None and column.codes is not None:
+            for row in range(len(table.line)):
+                found.setdefault(row, _expected_number(column.name, column.cell(row)))
+            continue
+        for row, cell in column.odd.items():
+            found.setdefault(row, _expected_number(column.name, cell))
+    return found
+
+
+def _expected_number(column: str, cell: str) -> str:
+    reason = f"column {column!r}: expected a number, found {cell[:40]!r}"
+    if cell.count(",") == 1 and cell.replace(",", "").strip("+-").isdigit():
+        reason += "; is the comma a decimal mark?"
+    elif cell.startswith(("<", ">")):
+        reason += ", a limit"
+    return reason
+
+
+def split_rows(
+    table: RawTable, numeric: Sequence[Guess], time: Guess
+) -> tuple[Bools, list[UnreadableRow]]:
+    """Which rows have a time and no words among their numbers, and the others with their reason."""
+    times = table.columns[time.index].numbers
+    reasons = odd_rows(table, numeric)
+    for row in np.flatnonzero(~np.isfinite(times)):
+        reasons.setdefault(int(row), f"column {time.column!r}: no time")
+    keep = np.ones(len(table.line), dtype=bool)
+    keep[list(reasons)] = False
+    bad = [
+        UnreadableRow(table.path, int(table.line[row]), reason, _row_text(table, row))
+        for row, reason in sorted(reasons.items())
+    ]
+    return keep, bad
+
+
+def _row_text(table: RawTable, row: int) -> str:
+    return " ".join(column.cell(row) for column in table.columns[:20])[:200]
+
+
+def clock_of(table: RawTable, time: Guess, columns: Chosen) -> Clock:
+    """The clock of a table's times."""
+    column = table.columns[time.index]
+    return recognised_clock(
+        column.numbers,
+        name=column.name if table.named else "",
+        unit=time.unit,
+        headers=table.headers,
+        comments=table.comments,
+        told=str(columns.get("time_system", "")),
+    )
+
+
+def far_rows(path: str, time: Floats, line: NDArray[np.int64]) -> Bools:
+    """Rows whose time is far from all others; many of them mean that two clocks are mixed.
+
+    Raises
+    ------
+    TimeScaleError
+        If more than one row in twenty is that far.
+    """
+    if not len(time):
+        return np.zeros(0, dtype=bool)
+    far = np.abs(time - np.median(time)) > REACH
+    if np.count_nonzero(far) > 0.05 * len(time):
+        row = int(np.flatnonzero(far)[0])
+        expected = f"times near {np.median(time):.6g}, as in other rows"
+        help = "two kinds of Julian dates (MJD, JD) may be mixed"
+        raise TimeScaleError(
+            Problem(path, expected, f"{time[row]:.6g}", line=int(line[row]), help=help)
+        )
+    return far
+
+
+def input_file(table: RawTable, guesses: Sequence[Guess], clock: Clock, used: int) -> InputFile:
+    """How the file was read."""
+    columns = [(g.role, f"{g.column}: {g.reason}") for g in guesses]
+    columns.append(("time_system", f"{clock.scale}: {clock.reason}"))
+    return InputFile(table.path, table.sha256, table.rows, used, tuple(columns))
+
+
+def notes_of(table: RawTable, clock: Clock) -> list[str]:
+    """What is to be said of one file."""
+    notes = [*table.notes, *([clock.note] if clock.note else [])]
+    if table.unreadable:
+        notes.append(f"{len(table.unreadable)} lines are no rows of the table")
+    return [f"{table.path}: {note}" for note in notes]
