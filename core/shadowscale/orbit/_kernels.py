@@ -180,8 +180,8 @@ def _kepler(mean: float, e: float) -> tuple[float, float, float]:
 @compiled
 def eccentric_anomaly(mean: float, ecc: float) -> float:
     """E of Kepler's equation E - e sin E = M, for any M [rad] and 0 <= e < 1."""
-    turns = np.rint(mean / TURN)
-    return _kepler(mean - TURN * turns, ecc)[0] + TURN * turns
+    turns: float = TURN * np.rint(mean / TURN)
+    return _kepler(mean - turns, ecc)[0] + turns
 
 
 @compiled
@@ -401,4 +401,5 @@ def velocity_point_value(cycles: float, constants: Floats) -> float:
     sin_e, cos_e = _anomaly(cycles, constants)
     sin_f, cos_f = _longitude(sin_e, cos_e, constants)
     x, y = _place(sin_f, cos_f, constants)
-    return x / sqrt(x * x + y * y) + constants[ECOSW]
+    w: float = x / sqrt(x * x + y * y) + constants[ECOSW]
+    return w
