@@ -1,0 +1,115 @@
+"""The photometry as the timing part uses it: usable rows, each with an error that the scatter supports."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from shadowscale.data.photometry import Floats, Ints, Photometry
+from shadowscale.errors import NoSolutionError
+
+FEWEST_POINTS = 20
+MAD_TO_SIGMA = 1.4826  # median absolute deviation to standard deviation of a normal distribution
+NEIGHBOUR_GAP = 0.1  # [d] points nearer than this are neighbours
+
+
+@dataclass(frozen=True, eq=False)
+class LightPoints:
+    """Usable points in time order; `sigma` is the given error scaled to the point-to-point scatter.
+
+    time [d], flux, sigma : (n,) float64;  band, night : (n,) int64
+    bands : names;  noise : (number of bands,) point-to-point scatter
+    """
+
+    time: Floats
+    flux: Floats
+    sigma: Floats
+    band: Ints
+    night: Ints
+    bands: tuple[str, ...]
+    noise: Floats
+
+    @property
+    def span(self) -> float:
+        """Time from the first to the last point [d]."""
+        return float(self.time[-1] - self.time[0])
+
+    def at(self, rows: NDArray[np.bool_] | NDArray[np.int64]) -> LightPoints:
+        """Some of the points."""
+        return replace(
+            self,
+            time=self.time[rows],
+            flux=self.flux[rows],
+            sigma=self.sigma[rows],
+            band=self.band[rows],
+            night=self.night[rows],
+        )
+
+
+def light_points(photometry: Photometry) -> LightPoints:
+    """The usable points of a table.
+
+    Raises
+    ------
+    NoSolutionError
+        If fewer than 20 are left.
+    """
+    good = photometry.used & np.isfinite(photometry.time) & np.isfinite(photometry.flux)
+    if (count := int(good.sum())) < FEWEST_POINTS:
+        raise NoSolutionError(
+            "too few usable points to look for eclipses",
+            {"points": count, "fewest": FEWEST_POINTS},
+        )
+    error = np.where(photometry.flux_error > 0, photometry.flux_error, np.nan)
+    points = LightPoints(
+        time=np.asarray(photometry.time[good], float),
+        flux=np.asarray(photometry.flux[good], float),
+        sigma=error[good],
+        band=photometry.band[good],
+        night=photometry.night[good],
+        bands=photometry.bands,
+        noise=np.zeros(len(photometry.bands)),
+    )
+    if np.any(np.diff(points.time) < 0):
+        points = points.at(np.argsort(points.time, kind="stable"))
+    return _with_noise(points)
+
+
+def robust_scatter(values: Floats) -> float:
+    """Standard deviation from the median absolute deviation."""
+    if values.size == 0:
+        return 0.0
+    return float(MAD_TO_SIGMA * np.median(np.abs(values - np.median(values))))
+
+
+def neighbour_scatter(time: Floats, flux: Floats) -> float | None:
+    """Noise from the differences of neighbours in time; None where too few points are neighbours."""
+    near = np.diff(time) < NEIGHBOUR_GAP
+    if near.sum() < max(20, 0.2 * time.size):
+        return None
+    return robust_scatter(np.diff(flux)[near]) / np.sqrt(2)
+
+
+def _with_noise(points: LightPoints) -> LightPoints:
+    sigma, noise = points.sigma.copy(), np.ones(len(points.bands))
+    for number in range(len(points.bands)):
+        rows = np.flatnonzero(points.band == number)
+        if rows.size:
+            sigma[rows], noise[number] = _band_noise(points.at(rows))
+    return replace(points, sigma=sigma, noise=noise)
+
+
+def _band_noise(points: LightPoints) -> tuple[Floats, float]:
+    """Errors of one band: as given relative to each other, on the scale of the neighbours' scatter."""
+    given = points.sigma
+    typical = float(np.nanmedian(given)) if np.isfinite(given).any() else 0.0
+    noise = neighbour_scatter(points.time, points.flux)
+    if not noise:
+        noise = typical or robust_scatter(points.flux) or 1e-6
+    if typical == 0:
+        return np.full(given.size, noise), noise
+    filled = np.where(np.isfinite(given), given, typical)
+    # An error far below the others would let one point outweigh the eclipse.
+    return np.clip(filled, 0.3 * typical, None) * (noise / typical), noise

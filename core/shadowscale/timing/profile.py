@@ -1,0 +1,147 @@
+"""The shape of one eclipse between first and fourth contact.
+
+`DISCS`: a darkened disc crossed by another on a straight path (linear law, u = 0.5). In units of the
+sum of the radii the separation is sqrt(w + (1 - w) x^2), where x = -1...1 from first to fourth contact
+and the shape parameter w is the squared impact parameter. `TRAPEZOID`: straight ingress and egress, whose shape
+parameter is the ingress in half durations.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import lru_cache
+from math import pi
+
+import numpy as np
+
+from shadowscale.data.photometry import Floats
+
+DARKENING = 0.5  # [linear coefficient] between those of hot and cool stars in visible light
+_STEPS = 2000
+_RINGS, _RING_WEIGHTS = np.polynomial.legendre.leggauss(32)
+
+
+@dataclass(frozen=True)
+class Shape:
+    """Light lost relative to the middle, and its derivatives by x and by the shape parameter."""
+
+    value: Floats
+    by_x: Floats
+    by_shape: Floats
+
+
+class Trapezoid:
+    """Straight ingress and egress; shape parameter: ingress over half the duration."""
+
+    name = "trapezoid"
+    lower, upper = 0.01, 1.0
+
+    def shape(self, x: Floats, parameter: Floats) -> Shape:
+        """Light lost at x (n,) for shape parameters (n,)."""
+        distance = np.abs(x)
+        raw = (1 - distance) / parameter
+        slope = (raw > 0) & (raw < 1)
+        return Shape(
+            np.clip(raw, 0, 1),
+            np.where(slope, -np.sign(x) / parameter, 0.0),
+            np.where(slope, -raw / parameter, 0.0),
+        )
+
+    def ingress(self, parameter: float) -> tuple[float, float]:
+        """Ingress in half durations, and its derivative by the parameter."""
+        return parameter, 1.0
+
+    def parameter_of(self, ingress: float) -> float:
+        """The shape parameter that gives an ingress (in half durations)."""
+        return float(np.clip(ingress, self.lower, self.upper))
+
+
+class Discs:
+    """Two discs of given ratio, front over back; shape parameter: squared impact in units of the sum."""
+
+    lower, upper = 0.0, 0.97
+
+    def __init__(self, ratio: float) -> None:
+        self.ratio = ratio
+        self.name = f"discs {ratio:.3g}"
+        self.inner = ((1 - ratio) / (1 + ratio)) ** 2  # squared separation at inner contact
+        self._table = hidden_fraction_table(ratio)
+        self._slope = np.gradient(self._table, 1 / _STEPS)
+
+    def _read(self, separation: Floats) -> tuple[Floats, Floats]:
+        place = np.minimum(separation, 1.0) * _STEPS
+        low = np.minimum(place.astype(np.int64), _STEPS - 1)
+        part = place - low
+        value = self._table[low] * (1 - part) + self._table[low + 1] * part
+        slope = self._slope[low] * (1 - part) + self._slope[low + 1] * part
+        return value, slope
+
+    def shape(self, x: Floats, parameter: Floats) -> Shape:
+        """Light lost at x (n,) for shape parameters (n,)."""
+        square = np.maximum(parameter + (1 - parameter) * x**2, 1e-12)
+        separation = np.sqrt(square)
+        inside = np.abs(x) < 1
+        value, slope = self._read(np.where(inside, separation, 1.0))
+        middle = np.sqrt(np.maximum(parameter, 1e-12))
+        peak, peak_slope = self._read(middle)
+        value = value / peak
+        slope = np.where(inside, slope / peak / separation, 0.0)
+        peak_slope = np.where(inside, peak_slope / peak / (2 * middle), 0.0)
+        return Shape(
+            value,
+            slope * (1 - parameter) * x,
+            slope * (1 - x**2) / 2 - value * peak_slope,
+        )
+
+    def ingress(self, parameter: float) -> tuple[float, float]:
+        """Ingress in half durations (1 where there is no inner contact), and its derivative."""
+        square = (self.inner - parameter) / (1 - parameter)
+        if square <= 0:
+            return 1.0, 0.0
+        flat = np.sqrt(square)
+        return float(1 - flat), float((1 - self.inner) / (1 - parameter) ** 2 / (2 * flat))
+
+    def parameter_of(self, ingress: float) -> float:
+        """The shape parameter that gives an ingress (in half durations), as near as the ratio allows."""
+        flat = (1 - min(ingress, 1.0)) ** 2
+        return float(np.clip((self.inner - flat) / (1 - flat + 1e-12), self.lower, self.upper))
+
+
+Profile = Trapezoid | Discs
+TRAPEZOID = Trapezoid()
+# The front disc from a thirtieth of the other to thirty times.
+RATIOS = tuple(float(ratio) for ratio in np.round(np.geomspace(1 / 32, 32, 21), 4))
+
+
+@lru_cache(maxsize=64)
+def discs(ratio: float) -> Discs:
+    """The profile of two discs; tables are made once."""
+    return Discs(ratio)
+
+
+def hidden_fraction_table(ratio: float) -> Floats:
+    """Hidden light of a darkened disc on even separations 0...1 + ratio: (2001,).
+
+    The darkened disc is a pile of uniform discs, so its hidden light is an integral of overlaps over
+    their radii sin(theta); the overlap of two circles is the textbook formula.
+    """
+    separation = np.linspace(0, 1 + ratio, _STEPS + 1)
+    theta = (1 + _RINGS) * pi / 4
+    radius = np.sin(theta)
+    pile = _overlap(separation[:, None], ratio, radius) @ (radius * _RING_WEIGHTS * pi / 4)
+    edge = _overlap(separation, ratio, np.ones(1))
+    return np.asarray(((1 - DARKENING) * edge + DARKENING * pile) / (pi * (1 - DARKENING / 3)))
+
+
+def _overlap(distance: Floats, radius: float, other: Floats) -> Floats:
+    """Common area of two discs; shapes broadcast."""
+    d = np.maximum(distance, 1e-9)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        angle = np.arccos(np.clip((d**2 + radius**2 - other**2) / (2 * d * radius), -1, 1))
+        angle_other = np.arccos(np.clip((d**2 + other**2 - radius**2) / (2 * d * other), -1, 1))
+    kite = (radius + other - d) * (d + radius - other) * (d - radius + other) * (d + radius + other)
+    lens = radius**2 * angle + other**2 * angle_other - np.sqrt(np.maximum(kite, 0)) / 2
+    inside = pi * np.minimum(radius, other) ** 2
+    return np.where(
+        d >= radius + other, 0.0, np.where(d <= np.abs(radius - other), inside, lens)
+    )
