@@ -1,0 +1,292 @@
+"""Whether the residuals look like the noise that the errors promise."""
+
+from __future__ import annotations
+
+from math import isfinite, nan, sqrt
+
+import numpy as np
+
+from shadowscale.data.photometry import Floats, Ints
+from shadowscale.data.velocities import Velocities
+from shadowscale.fit.solution import Solution, VelocityResult
+from shadowscale.judge.check import Check
+from shadowscale.judge.evidence import Evidence, LightRows
+from shadowscale.judge.finding import Finding
+from shadowscale.judge.words import counted, listed, number, percent
+
+FAR_OFF = 25.0  # reduced chi-squared of a misfit of five times the errors
+FEWEST_PAIRS = 10
+FEWEST_BINS = 10
+SHORTEST_BIN, LONGEST_BIN = 5.0 / 1440, 0.25  # [d]
+
+
+def size_of_errors(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
+    """Reduced chi-squared with the errors as given; the band or velocity set farthest from 1."""
+    given = _errors_given(evidence)
+    if not given:
+        return check.silent(
+            "no errors came with the data; they were taken from the scatter of the residuals."
+        )
+    judged = {name: _odds(value, check) for name, value in given.items()}
+    worst = max(judged, key=lambda name: judged[name])
+    off = [name for name in given if judged[name] > 1]
+    if not off:
+        return check.passed(
+            "Residuals agree with the errors given "
+            f"({listed([f'{name}: {number(given[name])}' for name in given])} in reduced chi-squared).",
+            given[worst],
+        )
+    words = " ".join(_misjudged(name, given[name]) for name in off)
+    if given[worst] > FAR_OFF:
+        return check.failed(
+            f"{words} A misfit that large means that the model does not describe the data.",
+            given[worst],
+        )
+    return check.warned(
+        f"{words} The quoted uncertainties hold only as far as the errors were rescaled.",
+        given[worst],
+    )
+
+
+def _errors_given(evidence: Evidence) -> dict[str, float]:
+    """Reduced chi-squared of every set whose errors came with the data."""
+    table = evidence.photometry
+    guessed = {band for band, scatter in zip(table.bands, table.errors_from_scatter) if scatter}
+    raw = evidence.solution.fit.raw_reduced_chi2
+    no_errors = evidence.velocities is not None and evidence.velocities.errors_from_scatter
+    return {
+        name: float(value)
+        for name, value in raw.items()
+        if isfinite(value)
+        and value >= 0
+        and name not in guessed
+        and not (no_errors and name not in table.bands)
+    }
+
+
+def _odds(value: float, check: Check) -> float:
+    """How far a reduced chi-squared is from 1, in factors of the limit."""
+    limit = check.limit or 1.0
+    return max(value, 1 / value if value > 0 else np.inf) / limit
+
+
+def _misjudged(name: str, value: float) -> str:
+    factor = sqrt(value) if value > 0 else 0.0
+    if value > 1:
+        return f"{name}: residuals are {number(factor)} times as large as the errors given."
+    return (
+        f"{name}: residuals are only {number(factor)} times the errors given, which are too large."
+    )
+
+
+def durbin_watson(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
+    """Durbin-Watson statistic of each band, neighbours in time within a night."""
+    light, found = evidence.light, {}
+    for place, band in enumerate(evidence.bands):
+        statistic, pairs = neighbour_statistic(light, place)
+        if pairs >= FEWEST_PAIRS and isfinite(statistic):
+            found[band] = (statistic, pairs)
+    if not found:
+        return check.silent("too few points stand next to each other in one night.")
+    limits = {band: _needed(check, pairs) for band, (_, pairs) in found.items()}
+    worst = min(found, key=lambda band: found[band][0] - limits[band])
+    value, limit = found[worst][0], limits[worst]
+    alike = 1 - value / 2
+    words = f"Durbin-Watson is {number(value)} in band {worst} (2 for independent points)"
+    if value >= limit:
+        return check.passed(f"{words}: neighbouring residuals are independent.", value, limit=limit)
+    growth = sqrt((1 + alike) / max(1 - alike, 1e-3))
+    return check.warned(
+        f"{words}: neighbouring residuals are alike (correlation {number(alike)}). If that is not "
+        f"the model's fault, the errors should be about {number(growth)} times as large; "
+        "look at the residuals night by night.",
+        value,
+        limit=limit,
+    )
+
+
+def _needed(check: Check, pairs: int) -> float:
+    """The limit, lowered where chance alone reaches it: the statistic scatters by 2/sqrt(n)."""
+    return min(check.limit or 0.0, 2 - 3 * 2 / sqrt(pairs))
+
+
+def neighbour_statistic(light: LightRows, band: int) -> tuple[float, int]:
+    """Durbin-Watson statistic of one band and the number of pairs it rests on."""
+    chosen = light.band == band
+    pull, block = light.pull[chosen], light.block[chosen]
+    if pull.size < 2:
+        return nan, 0
+    same = np.diff(block) == 0
+    pairs = int(same.sum())
+    power = float(np.mean(pull**2)) * pairs
+    if not power > 0:
+        return nan, pairs
+    return float(np.sum(np.diff(pull)[same] ** 2) / power), pairs
+
+
+def red_noise(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
+    """Factor by which averages scatter more than independent points would allow."""
+    light = evidence.light
+    widths = bin_widths(evidence)
+    tried = [(width, *noise_factor(light, width)) for width in widths]
+    usable = [row for row in tried if row[2] >= FEWEST_BINS and isfinite(row[1])]
+    if not usable:
+        return check.silent(
+            "the points are too far apart in time to average several within an ingress."
+        )
+    width, factor, bins = max(usable, key=lambda row: row[1])
+    limit = max(check.limit or 1.0, sqrt(1 + 3 * sqrt(2 / bins)))
+    words = f"Averages over {number(24 * 60 * width)} minutes scatter {number(factor)} times as much as independent points would"
+    if factor <= limit:
+        return check.passed(f"{words}: no slow noise worth mentioning.", factor, limit=limit)
+    return check.warned(
+        f"{words}: there is slow noise (weather, the instrument, spots, or a model that does not fit). "
+        f"The uncertainties from the light curve should be about {percent(factor - 1)} larger.",
+        factor,
+        limit=limit,
+    )
+
+
+def bin_widths(evidence: Evidence) -> tuple[float, ...]:
+    """Widths to average over [d]: half, once and twice the shorter ingress."""
+    period = evidence.value("period")
+    ingresses = [
+        (window.outer - window.inner) * period for window in evidence.windows if window.happens
+    ]
+    if not ingresses or not isfinite(period):
+        return (20.0 / 1440,)
+    middle = float(np.clip(min(ingresses), SHORTEST_BIN, LONGEST_BIN))
+    return middle / 2, middle, 2 * middle
+
+
+def noise_factor(light: LightRows, width: float) -> tuple[float, int]:
+    """Scatter of averages over `width` [d] against independent points, and how many averages.
+
+    Each bin's sum of pulls, divided by sqrt(n) and by the pulls' own rms, has variance 1 for
+    independent points, whatever n; its root mean square is Pont, Zucker & Queloz's beta.
+    Bins lie within one night and band, and hold two points or more.
+    """
+    if light.size < 2:
+        return nan, 0
+    pull = light.pull / _rms_per_band(light)
+    cell = np.floor((light.time - light.time[light.starts][light.block]) / width)
+    new = np.ones(light.size, dtype=bool)
+    new[1:] = (np.diff(cell) != 0) | (np.diff(light.block) != 0)
+    starts = np.flatnonzero(new)
+    counts = np.diff(np.append(starts, light.size))
+    sums = np.add.reduceat(pull, starts)
+    enough = counts >= 2
+    if not enough.any():
+        return nan, 0
+    return float(np.sqrt(np.mean(sums[enough] ** 2 / counts[enough]))), int(enough.sum())
+
+
+def _rms_per_band(light: LightRows) -> Floats:
+    power = np.bincount(light.band, light.pull**2)
+    rms = np.sqrt(power / np.maximum(np.bincount(light.band), 1))
+    return np.where(rms > 0, rms, 1.0)[light.band]
+
+
+def outliers(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
+    """Share of the offered points that the fit itself set aside."""
+    taken = evidence.photometry.used
+    dropped = taken & (evidence.solution.light.why != 0)
+    sets = [("photometry", int(dropped.sum()), int(taken.sum()))]
+    sets += _dropped_velocities(evidence.velocities, evidence.solution)
+    shares = [(gone / whole, name, gone) for name, gone, whole in sets if whole]
+    if not shares:
+        return check.failed("No point takes part in the fit.")
+    share, name, gone = max(shares)
+    words = f"{counted(gone, 'point')} of the {name} ({percent(share)}) set aside by the fit as outliers"
+    if share > 5 * (check.limit or 0.0):
+        return check.failed(
+            f"{words}: that is no longer a few bad points, the model does not fit.", share
+        )
+    if share > (check.limit or 0.0):
+        return check.warned(
+            f"{words}, {_where(evidence, dropped)}. Look at them before trusting the fit.", share
+        )
+    return check.passed(f"{words}." if gone else "No point was set aside by the fit.", share)
+
+
+def _where(evidence: Evidence, dropped: np.ndarray[tuple[int, ...], np.dtype[np.bool_]]) -> str:
+    """How many of the dropped points lie in eclipse."""
+    phase = evidence.solution.light.phase[dropped]
+    phase = phase[np.isfinite(phase)]
+    within = np.zeros(phase.size, dtype=bool)
+    for window in evidence.windows:
+        within |= np.abs(window.offset(phase)) < window.outer
+    return f"{int(within.sum())} of {int(dropped.sum())} photometric ones in eclipse"
+
+
+def _dropped_velocities(table: Velocities | None, solution: Solution) -> list[tuple[str, int, int]]:
+    result = solution.velocity
+    if table is None or result is None:
+        return []
+    return [
+        (f"velocities of star {star}", int((used & (why != 0)).sum()), int(used.sum()))
+        for star, used, why in _velocity_pairs(table, result)
+    ]
+
+
+def _velocity_pairs(
+    table: Velocities, result: VelocityResult
+) -> tuple[tuple[int, np.ndarray[tuple[int, ...], np.dtype[np.bool_]], Ints], ...]:
+    return ((1, table.used1, result.why1), (2, table.used2, result.why2))
+
+
+def points_per_quantity(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
+    """Number of points for every free quantity."""
+    fit = evidence.solution.fit
+    if fit.free <= 0:
+        return check.silent("nothing was free in the fit.")
+    ratio = fit.points / fit.free
+    words = f"{counted(fit.points, 'point')} for {counted(fit.free, 'free quantity')}"
+    if fit.points <= fit.free:
+        return check.failed(
+            f"{words}: such a fit always succeeds and proves nothing.", ratio, fatal=True
+        )
+    if ratio < (check.limit or 0.0):
+        return check.warned(f"{words}: hold some quantities fixed, or observe more.", ratio)
+    return check.passed(f"{words}.", ratio)
+
+
+CHECKS = (
+    Check(
+        "size of the errors",
+        "Are the residuals as large as the errors that came with the data?",
+        size_of_errors,
+        2.0,
+        "reduced chi-squared within a factor of 2 of 1: errors right to 40 % (common practice)",
+    ),
+    Check(
+        "neighbouring residuals",
+        "Are residuals that follow each other independent?",
+        durbin_watson,
+        1.5,
+        "Durbin & Watson 1950, Biometrika 37, 409; 1.5 is common practice and means a correlation "
+        "of 0.25, lowered to three sigma of chance for few points",
+    ),
+    Check(
+        "slow noise",
+        "Do averages get better as fast as independent points would?",
+        red_noise,
+        1.25,
+        "Pont, Zucker & Queloz 2006, MNRAS 373, 231; a quarter larger errors is our choice, "
+        "raised to three sigma of chance for few averages",
+    ),
+    Check(
+        "outliers",
+        "How many points did the fit set aside?",
+        outliers,
+        0.02,
+        "one in fifty; normal noise leaves fewer than one in a thousand beyond four sigma (our choice)",
+    ),
+    Check(
+        "points per quantity",
+        "Are there enough points for what is free?",
+        points_per_quantity,
+        10.0,
+        "ten points a free quantity (common practice)",
+    ),
+)

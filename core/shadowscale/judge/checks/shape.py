@@ -1,0 +1,203 @@
+"""Whether the stars are round enough for two spheres."""
+
+from __future__ import annotations
+
+from math import isfinite, sqrt
+
+import numpy as np
+
+from shadowscale.geometry.roche import lobe_radius, oblateness
+from shadowscale.judge.check import Check
+from shadowscale.judge.evidence import Evidence
+from shadowscale.judge.finding import Finding
+from shadowscale.judge.words import listed, number, percent
+
+FULL = 0.95  # fill-out from which a lobe may as well be full
+USUAL_RATIOS = (0.2, 5.0)  # mass ratios that are tried where none was measured
+SKY_SHARE = (
+    0.25  # mean radius seen in eclipse is smaller than the true one by this share of the oblateness
+)
+GRAVITY_DARKENING = 0.32  # Lucy 1967, Z. Astrophys. 65, 89, convective envelopes (from memory)
+TYPICAL_LIMB = 0.5
+FEWEST_OUTSIDE = 20
+
+
+def fill_out(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
+    """Radius over the Roche lobe's at periastron, of the fuller star."""
+    q, how = evidence.mass_ratio
+    fills = lobe_shares(evidence, q)
+    if not all(map(isfinite, fills)):
+        return check.failed(
+            "The radii are not known, so neither is their share of the Roche lobes."
+        )
+    worst = max(fills)
+    star = 1 + fills.index(worst)
+    when = " at periastron" if evidence.eccentricity > 0.01 else ""
+    words = (
+        f"Star 1 reaches to {percent(fills[0])} and star 2 to {percent(fills[1])} of the radius of its Roche lobe{when}, "
+        f"{_ratio_words(q, how)}"
+    )
+    if worst >= FULL:
+        return check.failed(
+            f"{words}: star {star} fills its lobe. This pair is semi-detached or in contact; its stars are not "
+            "spheres, and no radii can be quoted as measured from this model.",
+            worst,
+            limit=FULL,
+            fatal=True,
+        )
+    if worst > (check.limit or FULL):
+        return check.warned(
+            f"{words}: star {star} is drawn out towards the other, and a sphere gives its radius only to several per cent.",
+            worst,
+        )
+    hidden = _lobe_filling_ratio(evidence) if how == "unknown" else ""
+    if hidden:
+        return check.warned(f"{words}. {hidden}", worst)
+    return check.passed(f"{words}: both stars are well inside.", worst)
+
+
+def lobe_shares(evidence: Evidence, q: float) -> tuple[float, float]:
+    """Radius over lobe radius at periastron of both stars, for the mass ratio q = M2/M1."""
+    first, second = evidence.radii
+    room = evidence.periastron
+    return first / (room * lobe_radius(1 / q)), second / (room * lobe_radius(q))
+
+
+def _ratio_words(q: float, how: str) -> str:
+    if how == "unknown":
+        return "for equal masses (no mass ratio was measured)"
+    return f"for a mass ratio of {number(q)}" + (" (assumed)" if how == "assumed" else "")
+
+
+def _lobe_filling_ratio(evidence: Evidence) -> str:
+    """Says at which usual mass ratio a star would fill its lobe; empty where at none."""
+    low, high = USUAL_RATIOS
+    for star, q, words in ((2, low, "smaller"), (1, high, "larger")):
+        if lobe_shares(evidence, q)[star - 1] >= FULL:
+            edge = _edge(evidence, star, low, high)
+            return (
+                f"If M2/M1 were {number(edge)} or {words}, star {star} would fill its lobe and this model would not hold: "
+                "velocities of both stars are needed to exclude it."
+            )
+    return ""
+
+
+def _edge(evidence: Evidence, star: int, low: float, high: float) -> float:
+    """Mass ratio at which a star just fills its lobe."""
+    ratios = np.geomspace(low, high, 61)
+    full = np.array([lobe_shares(evidence, q)[star - 1] >= FULL for q in ratios])
+    return float(ratios[full].max() if star == 2 else ratios[full].min())
+
+
+def roundness(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
+    """Oblateness by tide and rotation at periastron, of the flatter star."""
+    q, how = evidence.mass_ratio
+    flat = [
+        oblateness(radius / evidence.periastron, ratio)
+        for radius, ratio in zip(evidence.radii, (1 / q, q))
+    ]
+    if not all(map(isfinite, flat)):
+        return check.failed("The radii are not known, so neither is the shape of the stars.")
+    worst = max(flat)
+    words = (
+        f"Tide and rotation make star 1 longer than high by {percent(flat[0])} and star 2 by {percent(flat[1])} "
+        f"of the radius, {_ratio_words(q, how)}"
+    )
+    if worst > (check.limit or 0.0):
+        return check.failed(
+            f"{words}: too much for two spheres. Take the radii as estimates and use a model of deformed stars for final values.",
+            worst,
+        )
+    claimed = _claimed(evidence, flat)
+    if claimed:
+        return check.warned(f"{words}. {claimed}", worst)
+    return check.passed(f"{words}: spheres will do.", worst)
+
+
+def _claimed(evidence: Evidence, flat: list[float]) -> str:
+    """Says where the shape moves a radius more than its quoted error."""
+    radii = listed(
+        [
+            f"r{star} ({percent(SKY_SHARE * flat[star - 1])} against {percent(quoted)})"
+            for star in (1, 2)
+            if 0
+            < (quoted := evidence.sigma(f"r{star}") / max(evidence.radii[star - 1], 1e-9))
+            < SKY_SHARE * flat[star - 1]
+        ]
+    )
+    return f"That shifts the radii by more than their quoted errors: {radii}." if radii else ""
+
+
+def ellipsoidal(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
+    """Predicted ellipsoidal amplitude against what the points outside eclipse can show."""
+    state = evidence.solution.system.effects.get("ellipsoidal", "off")
+    if state != "off":
+        return check.passed(f"The ellipsoidal variation is part of the model ({state}).")
+    found = {}
+    for place, band in enumerate(evidence.bands):
+        predicted = predicted_amplitude(evidence, band)
+        error = _amplitude_error(evidence, place)
+        if isfinite(predicted) and error > 0:
+            found[band] = (predicted / error, predicted, error)
+    if not found:
+        return check.silent("too few points lie outside eclipse to show an ellipsoidal variation.")
+    worst = max(found, key=lambda band: found[band][0])
+    away, predicted, error = found[worst]
+    words = (
+        f"The ellipsoidal variation, off in this model, is expected at {percent(predicted)} in band {worst}; "
+        f"the points outside eclipse show waves of {percent(error)}"
+    )
+    if away > (check.limit or 0.0):
+        return check.warned(
+            f"{words}, {number(away)} times less. Switch the effect on (predicted or fitted) and compare.",
+            away,
+        )
+    return check.passed(f"{words}, so leaving it out does no harm.", away)
+
+
+def predicted_amplitude(evidence: Evidence, band: str) -> float:
+    """Semi-amplitude of cos 2 phi, fraction of all light (Morris & Naftilan 1993, ApJ 419, 344)."""
+    q, _ = evidence.mass_ratio
+    factor = 0.15 * (15 + TYPICAL_LIMB) * (1 + GRAVITY_DARKENING) / (3 - TYPICAL_LIMB)
+    shares = evidence.light_share.get(band, (0.5, 0.5))
+    tides = (q * evidence.radii[0] ** 3, evidence.radii[1] ** 3 / q)
+    return sum(
+        share * factor * tide * evidence.sine_inclination**2 for share, tide in zip(shares, tides)
+    )
+
+
+def _amplitude_error(evidence: Evidence, band: int) -> float:
+    """Error of the amplitude of a wave through the points outside eclipse: sqrt(2/n) of one point's."""
+    light = evidence.light
+    chosen = evidence.outside & (light.band == band)
+    count = int(chosen.sum())
+    if count < FEWEST_OUTSIDE:
+        return 0.0
+    return float(sqrt(2 / np.sum(light.error[chosen] ** -2)))
+
+
+CHECKS = (
+    Check(
+        "fill-out",
+        "Does a star fill its Roche lobe?",
+        fill_out,
+        0.75,
+        "lobe radius by Eggleton 1983, ApJ 268, 368 (good to 1 %); above 0.75 of it a star of the Roche model is "
+        "longer than high by 7 % or more (integrated for equal masses); 0.95 is the lobe less its error and the sphere's (our choice)",
+    ),
+    Check(
+        "oblateness",
+        "Are the stars round enough for spheres?",
+        roundness,
+        0.04,
+        "Popper & Etzel 1981, AJ 86, 102 (from memory); the radius seen in eclipse is less than that of equal "
+        "volume by a quarter of the oblateness (integrated Roche shapes, equal masses)",
+    ),
+    Check(
+        "ellipsoidal variation",
+        "Would the data show the ellipsoidal variation that the model leaves out?",
+        ellipsoidal,
+        3.0,
+        "amplitude by Morris & Naftilan 1993, ApJ 419, 344; three sigma of a wave through the points outside eclipse (common practice)",
+    ),
+)
