@@ -120,7 +120,8 @@ def other_solutions(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     if not others:
         return check.passed("No other solution was found that the data do not exclude.")
     nearest = min(others, key=lambda other: other.delta_chi2)
-    words = f"{capital(nearest.words.rstrip('.'))}: {_worse(nearest.delta_chi2)}"if nearest.delta_chi2 < (check.limit or 0.0):
+    words = f"{capital(nearest.words.rstrip('.'))}: {_worse(nearest.delta_chi2)}"
+    if nearest.delta_chi2 < (check.limit or 0.0):
         return check.warned(f"{words}, which the data do not exclude.", nearest.delta_chi2)
     return check.passed(f"{words}, and so excluded.", nearest.delta_chi2)
 
