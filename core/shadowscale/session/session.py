@@ -18,11 +18,15 @@ Span = tuple[float, float]
 
 @dataclass(frozen=True)
 class Source:
-    """A file of the session: its path, how its columns are to be read (role to column), its checksum."""
+    """A file of the session: its path, how its columns are to be read (role to column), its checksum.
+
+    `band` names the band of photometry that does not say it.
+    """
 
     path: str
     columns: Mapping[str, str] = field(default_factory=dict)
     sha256: str = ""
+    band: str = ""
 
 
 @dataclass(frozen=True)

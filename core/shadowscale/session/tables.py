@@ -28,7 +28,8 @@ def with_tables(session: Session) -> Session:
     photometry, velocities = None, None
     if session.photometry_sources:
         paths, columns = _request(session.photometry_sources)
-        photometry = read_photometry(paths, columns=columns)
+        bands = [source.band for source in session.photometry_sources if source.band]
+        photometry = read_photometry(paths, columns=columns, band=bands[0] if bands else None)
     if session.velocity_sources:
         paths, columns = _request(session.velocity_sources)
         velocities = read_velocities(paths, columns=columns)

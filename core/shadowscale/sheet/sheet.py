@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 import platform
+from collections import Counter
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from importlib.metadata import PackageNotFoundError, version
 
 from shadowscale._version import __version__
-from shadowscale.data.photometry import InputFile, Photometry
+from shadowscale.data.photometry import USED, InputFile, Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.solution import (
     Alternative,
@@ -131,7 +132,7 @@ def make_sheet(
     seed : int
         Of every random step.
     """
-    inputs = photometry.files + (velocities.files if velocities is not None else ())
+    inputs = _inputs(solution, photometry, velocities)
     return Sheet(
         quantities=_system_entries(solution),
         bands={band: _band_sheet(solution, band) for band in solution.system.bands},
@@ -212,6 +213,22 @@ def _absences(solution: Solution) -> Iterator[Finding]:
 
 def _rank(name: str, expected: list[str]) -> tuple[int, str]:
     return (expected.index(name) if name in expected else len(expected), name)
+
+
+def _inputs(
+    solution: Solution, photometry: Photometry, velocities: Velocities | None
+) -> tuple[InputFile, ...]:
+    """The files, with the rows that took part in the end."""
+    found = _used(photometry.files, photometry.file[solution.light.why == USED].tolist())
+    if velocities is not None and solution.velocity is not None:
+        used = (solution.velocity.why1 == USED) | (solution.velocity.why2 == USED)
+        found += _used(velocities.files, velocities.file[used].tolist())
+    return found
+
+
+def _used(files: tuple[InputFile, ...], numbers: list[int]) -> tuple[InputFile, ...]:
+    counts = Counter(numbers)
+    return tuple(replace(file, used=counts[number]) for number, file in enumerate(files))
 
 
 def _notes(

@@ -1,0 +1,36 @@
+"""`shadowscale replay`: do a saved session again; the same numbers, or what differs."""
+
+from __future__ import annotations
+
+from argparse import Namespace
+from pathlib import Path
+
+from shadowscale.cli.bar import bar
+from shadowscale.cli.parser import Parser, add_output, output_folder
+from shadowscale.errors import UsageError
+
+WORDS = "do a saved session again: the same numbers, or what differs"
+
+
+def add_arguments(parser: Parser) -> None:
+    """The arguments of the command."""
+    parser.add_argument("session", metavar="SESSION", nargs="?", help="a solved session file")
+    add_output(parser)
+
+
+def run(arguments: Namespace) -> None:
+    """Replay, write the results, tell what differs."""
+    from shadowscale.jobs.replay import replay_session
+    from shadowscale.jobs.results import check_targets, result_files, write_results
+    from shadowscale.session.store import open_session
+
+    if not arguments.session:
+        raise UsageError("SESSION", "nothing", expected="a solved session file")
+    folder = Path(output_folder(arguments))
+    session = open_session(Path(arguments.session), same_files=True)
+    check_targets(session, folder, result_files(session), overwrite=arguments.overwrite)
+    with bar(quiet=arguments.quiet or arguments.json_errors) as progress:
+        replayed = replay_session(session, progress=progress, path=Path(arguments.session))
+    write_results(replayed.session, folder, overwrite=arguments.overwrite)
+    if not arguments.quiet:
+        print(replayed.words())

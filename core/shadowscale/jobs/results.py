@@ -1,0 +1,111 @@
+"""The files of a solved session: which there are, whether they may be written, and writing them."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import replace
+from pathlib import Path
+
+from shadowscale.errors import UsageError
+from shadowscale.session.atomic import write_text
+from shadowscale.session.session import Session
+from shadowscale.session.store import save_session
+from shadowscale.sheet import RENDERINGS, Sheet, light_curve, make_sheet, velocity_curve
+
+SESSION_FILE = "session.json"
+LIGHT_FILE, VELOCITY_FILE = "light_curve.csv", "velocity_curve.csv"
+
+
+def sheet_of(session: Session) -> Sheet:
+    """The sheet of a solved session.
+
+    Raises
+    ------
+    ValueError
+        If it has no solution.
+    """
+    if session.solution is None or session.photometry is None:
+        raise ValueError("the session is not solved")
+    return make_sheet(
+        session.solution,
+        session.photometry,
+        velocities=session.velocities,
+        audit=session.audit,
+        command=session.command,
+        seed=session.plan.seed,
+    )
+
+
+def result_files(session: Session) -> tuple[str, ...]:
+    """The names of the files that `write_results` writes."""
+    curves = (LIGHT_FILE, VELOCITY_FILE) if session.velocity_sources else (LIGHT_FILE,)
+    return (*RENDERINGS, *curves, SESSION_FILE)
+
+
+def write_results(session: Session, folder: Path, *, overwrite: bool = False) -> tuple[Path, ...]:
+    """Write everything a solved session gives; each file whole or not at all.
+
+    Returns
+    -------
+    tuple of Path
+        What was written.
+
+    Raises
+    ------
+    UsageError
+        A file is there already and `overwrite` is False, or is an input, or the folder cannot be
+        written.
+    """
+    names = result_files(session)
+    check_targets(session, folder, names, overwrite=overwrite)
+    texts = _texts(session)
+    try:
+        for name, text in texts.items():
+            write_text(folder / name, text)
+        save_session(replace(session, notes=()), folder / SESSION_FILE)
+    except OSError as error:
+        raise not_writable(folder, error) from error
+    return tuple(folder / name for name in names)
+
+
+def check_targets(session: Session, folder: Path, names: Iterable[str], *, overwrite: bool) -> None:
+    """UsageError where a result would replace a file, unless `overwrite`; an input never may be."""
+    sources = session.photometry_sources + session.velocity_sources
+    inputs = [Path(source.path) for source in sources]
+    if session.plan.limb_table is not None:
+        inputs.append(Path(session.plan.limb_table))
+    check_paths([folder / name for name in names], inputs=inputs, overwrite=overwrite)
+
+
+def check_paths(paths: Iterable[Path], *, inputs: Iterable[Path], overwrite: bool) -> None:
+    """UsageError where one of `paths` is there already, unless `overwrite`; an input never may be."""
+    kept = {path.resolve() for path in inputs}
+    for path in paths:
+        if path.resolve() in kept:
+            raise UsageError("--out", str(path), expected="a folder without the input files")
+        if path.is_dir() or (path.exists() and not overwrite):
+            raise UsageError(
+                "--out", f"{path}, which exists", expected="a free place, or --overwrite"
+            )
+    for folder in {path.parent for path in paths}:
+        blocker = next((each for each in (folder, *folder.parents) if each.exists()), folder)
+        if not blocker.is_dir():
+            raise UsageError("--out", str(folder), expected=f"a folder; {blocker} is a file")
+
+
+def not_writable(folder: Path, error: OSError) -> UsageError:
+    """What to say when the results cannot be written."""
+    reason = error.strerror or str(error)
+    return UsageError("--out", f"{folder} ({reason})", expected="a folder that can be written")
+
+
+def _texts(session: Session) -> dict[str, str]:
+    """The text of each file but the session."""
+    sheet, solution, photometry = sheet_of(session), session.solution, session.photometry
+    assert solution is not None
+    assert photometry is not None
+    texts = {name: rendered(sheet) for name, rendered in RENDERINGS.items()}
+    texts[LIGHT_FILE] = light_curve(solution, photometry)
+    if session.velocities is not None:
+        texts[VELOCITY_FILE] = velocity_curve(solution, session.velocities)
+    return texts

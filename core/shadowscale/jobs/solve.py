@@ -1,0 +1,102 @@
+"""The whole job: tables, solution, audit."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from shadowscale.data.photometry import Photometry
+from shadowscale.errors import NoSolutionError, NotDetachedError, UsageError
+from shadowscale.judge.finding import Finding
+from shadowscale.progress import SILENT, Progress
+from shadowscale.session.session import Session
+from shadowscale.session.tables import with_tables
+
+IN_WINDOW = "in a window that the observer excluded"
+
+
+@dataclass(frozen=True)
+class Share:
+    """A progress that is a part of a longer one."""
+
+    whole: Progress
+    start: float
+    end: float
+
+    def report(self, fraction: float, words: str) -> None:
+        """Tell the longer one."""
+        self.whole.report(self.start + (self.end - self.start) * fraction, words)
+
+
+def solve_session(session: Session, *, progress: Progress = SILENT) -> Session:
+    """The session with tables, solution and audit.
+
+    Parameters
+    ----------
+    session : Session
+        Its tables are read where they are missing.
+    progress : Progress
+        Told of each step; may raise `Stopped`.
+
+    Raises
+    ------
+    InputError
+        A file cannot be used.
+    NoSolutionError
+        There is none, or the audit forbids to report it.
+    """
+    from shadowscale.fit import solve
+    from shadowscale.judge import audit
+
+    progress.report(0.0, "reading")
+    ready = session if session.photometry is not None else with_tables(session)
+    photometry = tables_to_solve(ready)
+    solution = solve(photometry, ready.velocities, ready.plan, progress=Share(progress, 0.05, 0.95))
+    progress.report(0.95, "audit")
+    findings = audit(solution, photometry, ready.velocities)
+    refuse_fatal(findings)
+    progress.report(1.0, "done")
+    return replace(
+        ready,
+        system=solution.system,
+        contact=solution.contact,
+        solution=solution,
+        audit=findings,
+    )
+
+
+def tables_to_solve(session: Session) -> Photometry:
+    """The photometry of a session without the phase windows that its markers exclude."""
+    photometry, markers = session.photometry, session.markers
+    if photometry is None:
+        raise UsageError("INPUT", "no photometry", expected="at least one file of photometry")
+    if markers is None or not markers.excluded:
+        return photometry
+    period, epoch = _ephemeris(session)
+    if period is None or epoch is None:
+        return photometry
+    phase = (photometry.time - epoch) / period
+    rows = np.zeros(phase.size, dtype=bool)
+    for low, high in markers.excluded:
+        rows |= np.mod(phase - low, 1.0) <= high - low
+    return photometry.excluded(rows, IN_WINDOW)
+
+
+def refuse_fatal(findings: tuple[Finding, ...]) -> None:
+    """NoSolutionError with the words of the findings that forbid a sheet."""
+    fatal = [finding for finding in findings if finding.fatal]
+    if not fatal:
+        return
+    numbers = {finding.check: finding.value for finding in fatal if finding.value is not None}
+    words = "; ".join(finding.words for finding in fatal)
+    kind = NotDetachedError if any("fill" in item.check for item in fatal) else NoSolutionError
+    raise kind(words, numbers)
+
+
+def _ephemeris(session: Session) -> tuple[float | None, float | None]:
+    """What phases are counted from: the plan's ephemeris, which repeats, else the system's."""
+    system, plan = session.system, session.plan
+    if plan.period is not None and plan.epoch is not None:
+        return plan.period, plan.epoch
+    return (None, None) if system is None else (system.value("period"), system.value("epoch"))
