@@ -306,7 +306,7 @@ QUANTITIES: Mapping[str, Quantity] = _register(
         "light of star 2 returned by star 1 at full phase, fraction of the stars' light",
         BAND,
         basic=True,
-        effect="Brightens the curve around primary eclipse's opposite side.",
+        effect="Brightens the shoulders of primary eclipse.",
     ),
     Quantity(
         "reflection2",

@@ -65,11 +65,11 @@ A_SIN_ESINW, A_SIN_ECOSW = 21, 22
 A_MIX_ESINW, A_MIX_ECOSW = 23, 24
 CONSTANTS_SIZE = 25
 
-# Places in the output of `sky_point`; `sky_full` adds three blocks of six, each a value and its
-# derivatives to cycles, ecosw, esinw, cos2i, light_time.
+# Places in the output of `sky_point`.
 DELTA, Z, DELTA_CYCLES, DELTA_ECOSW, DELTA_ESINW, DELTA_COS2I, DELTA_LIGHT_TIME = range(7)
 SKY_SIZE = 7
-RHO, SIN_L, COS_L = 7, 13, 19
+# `sky_full` adds rho, sin L, cos L, then five derivatives of each in the same order.
+RHO, SIN_L, COS_L, RHO_BY, SIN_L_BY, COS_L_BY = 7, 8, 9, 10, 15, 20
 SKY_FULL_SIZE = 25
 VELOCITY_SIZE = 4
 
@@ -370,9 +370,9 @@ def sky_full(cycles: float, constants: Floats, light_time: float, out: Floats) -
         out[DELTA_CYCLES + j] = x_part * dx + y_part * dy
         along = c * dx + s * dy
         turn = (c * dy - s * dx) / rho
-        out[RHO + 1 + j] = along
-        out[SIN_L + 1 + j] = c * turn
-        out[COS_L + 1 + j] = -s * turn
+        out[RHO_BY + j] = along
+        out[SIN_L_BY + j] = c * turn
+        out[COS_L_BY + j] = -s * turn
     out[DELTA_COS2I] += 0.5 * y * y * inverse
 
 
