@@ -32,11 +32,15 @@ from shadowscale.constants import (
 Floats = NDArray[np.float64]
 
 
-def semi_major_axis(
+def semi_major_axis(period: ArrayLike, total_mass: ArrayLike) -> Floats:
+    """a [solar radii] by Kepler's third law from the period [d] and M1 + M2 [solar masses]."""
+    return _floats(KEPLER_FACTOR * np.cbrt(_floats(total_mass) * _floats(period) ** 2))
+
+
+def semi_major_axis_of_velocities(
     period: ArrayLike,
     K1: ArrayLike,
     K2: ArrayLike,
-    *,
     eccentricity: ArrayLike = 0.0,
     inclination: ArrayLike = 90.0,
 ) -> Floats:
@@ -45,16 +49,10 @@ def semi_major_axis(
     return _floats(AXIS_FACTOR * _eta(eccentricity) * total * _floats(period) / _sin(inclination))
 
 
-def axis_from_masses(period: ArrayLike, total_mass: ArrayLike) -> Floats:
-    """a [solar radii] by Kepler's third law from the period [d] and M1 + M2 [solar masses]."""
-    return _floats(KEPLER_FACTOR * np.cbrt(_floats(total_mass) * _floats(period) ** 2))
-
-
 def masses(
     period: ArrayLike,
     K1: ArrayLike,
     K2: ArrayLike,
-    *,
     eccentricity: ArrayLike = 0.0,
     inclination: ArrayLike = 90.0,
 ) -> tuple[Floats, Floats]:
@@ -68,76 +66,85 @@ def masses(
     return factor * second, factor * first
 
 
-def velocity_amplitude(
+def velocity_amplitudes(
     period: ArrayLike,
-    mass: ArrayLike,
-    companion_mass: ArrayLike,
-    *,
+    M1: ArrayLike,
+    M2: ArrayLike,
     eccentricity: ArrayLike = 0.0,
     inclination: ArrayLike = 90.0,
-) -> Floats:
-    """K [km/s] of a star from its mass and its companion's [solar masses]."""
-    own, other = _floats(mass), _floats(companion_mass)
-    cube = other**3 / ((own + other) ** 2 * MASS_FACTOR * _floats(period))
-    return np.cbrt(cube) * _sin(inclination) / _eta(eccentricity)
+) -> tuple[Floats, Floats]:
+    """K1 and K2 [km/s] of two masses [solar]: `masses` inverted."""
+    first, second = _floats(M1), _floats(M2)
+    total = np.cbrt((first + second) / (MASS_FACTOR * _floats(period)))
+    total = total * _sin(inclination) / _eta(eccentricity)
+    share = second / (first + second)
+    return total * share, total * (1 - share)
 
 
-def mass_function(period: ArrayLike, K: ArrayLike, *, eccentricity: ArrayLike = 0.0) -> Floats:
-    """Mass function [solar masses] of a single-lined orbit: M_c^3 sin^3 i/(M + M_c)^2 of the companion M_c."""
+def mass_function(period: ArrayLike, K: ArrayLike, eccentricity: ArrayLike = 0.0) -> Floats:
+    """Mass function [solar masses] of a single-lined orbit: m^3 sin^3 i/(M + m)^2, m the companion."""
     return _floats(MASS_FACTOR * _eta(eccentricity) ** 3 * _floats(K) ** 3 * _floats(period))
 
 
 def companion_mass(
-    function: ArrayLike, mass: ArrayLike, *, inclination: ArrayLike = 90.0
+    period: ArrayLike,
+    K: ArrayLike,
+    eccentricity: ArrayLike,
+    inclination: ArrayLike,
+    mass: ArrayLike,
 ) -> Floats:
-    """Mass of the unseen companion for an assumed mass of the visible star [solar masses].
+    """Mass of the companion for an assumed mass of the star whose velocities were measured.
 
     Parameters
     ----------
-    function : mass function [solar masses], not negative
-    mass : assumed mass of the star whose velocities were measured [solar masses]
+    period : [d]
+    K : [km/s]
+        Semi-amplitude of the star that was measured, not negative.
+    eccentricity : number
     inclination : [deg]
         At 90 deg the result is the companion's smallest possible mass.
+    mass : [solar masses]
+        Assumed for the star that was measured.
 
     Returns
     -------
-    The one real root of M_c^3 sin^3 i = f (M + M_c)^2, to rounding.
+    float64 [solar masses]
+        The one real root m of m^3 sin^3 i = f (M + m)^2, to rounding.
 
     Raises
     ------
     ValueError
-        If a mass is not positive, or the mass function negative.
+        If the mass is not positive, or the amplitude negative.
     """
-    f, m = np.broadcast_arrays(_floats(function) / _sin(inclination) ** 3, _floats(mass))
-    if not (np.all(m > 0) and np.all(f >= 0)):
-        raise ValueError("mass, function: expected positive masses")
-    # Starts above the root, where the cubic is convex: Newton's steps fall onto it.
+    function = mass_function(period, K, eccentricity) / _sin(inclination) ** 3
+    f, m = np.broadcast_arrays(function, _floats(mass))
+    if np.any(m <= 0) or np.any(f < 0):
+        raise ValueError("mass, K: expected a positive mass and no negative amplitude")
+    # The start lies above the root, where the cubic is convex: Newton's steps fall onto it.
     found = f + 2 * np.cbrt(f * m * m) + np.sqrt(f * m)
     for _ in range(60):
         value = found**3 - f * (m + found) ** 2
         slope = 3 * found**2 - 2 * f * (m + found)
-        with np.errstate(divide="ignore", invalid="ignore"):
-            step = np.where(slope != 0, value / slope, 0.0)
+        step = np.divide(value, slope, out=np.zeros_like(found), where=slope > 0)
         found = found - step
-        if np.all(np.abs(step) <= 1e-15 * np.abs(found)):
+        if not np.any(np.abs(step) > 1e-15 * found):
             break
-    return np.asarray(found, dtype=np.float64)
+    return found
 
 
-def surface_gravity(mass: ArrayLike, radius: ArrayLike) -> Floats:
+def logg(mass: ArrayLike, radius: ArrayLike) -> Floats:
     """log g [dex, cgs] from mass and radius [solar]."""
     return _floats(LOGG_SUN + np.log10(_floats(mass)) - 2 * np.log10(_floats(radius)))
 
 
-def surface_gravity_from_orbit(
+def logg_companion(
     period: ArrayLike,
-    companion_K: ArrayLike,
+    K: ArrayLike,
+    eccentricity: ArrayLike,
+    inclination: ArrayLike,
     radius: ArrayLike,
-    *,
-    eccentricity: ArrayLike = 0.0,
-    inclination: ArrayLike = 90.0,
 ) -> Floats:
-    """log g [dex, cgs] of a star of fractional radius r from its *companion's* velocities alone.
+    """log g [dex, cgs] of the companion, of fractional radius r, of the star that moves with K [km/s].
 
     g2 = (2 pi/P) sqrt(1-e^2) K1/(r2^2 sin i): no model of either star enters.
 
@@ -145,8 +152,8 @@ def surface_gravity_from_orbit(
     ----------
     Southworth, Wheatley & Sams 2007, MNRAS 379, L11; Southworth et al. 2004, MNRAS 355, 986.
     """
-    speed = GRAVITY_FACTOR * _eta(eccentricity) * _floats(companion_K) / _floats(period)
-    return np.log10(speed / (_floats(radius) ** 2 * _sin(inclination)))
+    speed = GRAVITY_FACTOR * _eta(eccentricity) * _floats(K) / _floats(period)
+    return _floats(np.log10(speed / (_floats(radius) ** 2 * _sin(inclination))))
 
 
 def mean_density(mass: ArrayLike, radius: ArrayLike) -> Floats:
@@ -154,19 +161,16 @@ def mean_density(mass: ArrayLike, radius: ArrayLike) -> Floats:
     return DENSITY_SUN * _floats(mass) / _floats(radius) ** 3
 
 
-def mean_density_from_orbit(
-    period: ArrayLike, radius: ArrayLike, *, mass_share: ArrayLike
-) -> Floats:
-    """Mean density [kg/m3] from the light curve alone: 3 pi/(G P^2 r^3) M/(M1+M2).
+def mean_densities(
+    period: ArrayLike, r1: ArrayLike, r2: ArrayLike, mass_ratio: ArrayLike
+) -> tuple[Floats, Floats]:
+    """Mean densities [kg/m3] of both stars without any velocity, for a mass ratio q = M2/M1.
 
-    Parameters
-    ----------
-    period : [d]
-    radius : fractional radius
-    mass_share : the star's share of the total mass: 1/(1+q) for star 1, q/(1+q) for star 2
+    3 pi/(G P^2 r1^3 (1+q)) and 3 pi q/(G P^2 r2^3 (1+q)); P in days, r fractional radii.
     """
-    seconds = _floats(period) * DAY
-    return 3 * np.pi / (G * seconds**2) * _floats(mass_share) / _floats(radius) ** 3
+    q = _floats(mass_ratio)
+    whole = 3 * np.pi / (G * (_floats(period) * DAY) ** 2 * (1 + q))
+    return whole / _floats(r1) ** 3, whole * q / _floats(r2) ** 3
 
 
 def luminosity(radius: ArrayLike, teff: ArrayLike) -> Floats:
@@ -181,7 +185,7 @@ def bolometric_magnitude(light: ArrayLike) -> Floats:
 
 
 def synchronous_velocity(
-    period: ArrayLike, radius: ArrayLike, *, inclination: ArrayLike = 90.0
+    radius: ArrayLike, period: ArrayLike, inclination: ArrayLike = 90.0
 ) -> Floats:
     """v sin i [km/s] of a star of radius [solar] that turns once per orbit [d], axes parallel."""
     return SPIN_FACTOR * _floats(radius) * _sin(inclination) / _floats(period)
@@ -189,11 +193,8 @@ def synchronous_velocity(
 
 def distance(
     magnitude: ArrayLike,
-    Mbol1: ArrayLike,
-    Mbol2: ArrayLike,
-    *,
-    bolometric_correction1: ArrayLike,
-    bolometric_correction2: ArrayLike,
+    bolometric: tuple[ArrayLike, ArrayLike],
+    corrections: tuple[ArrayLike, ArrayLike],
     extinction: ArrayLike,
 ) -> Floats:
     """Distance [pc] of the pair from its apparent magnitude outside eclipse, third light removed.
@@ -202,15 +203,16 @@ def distance(
     ----------
     magnitude, extinction : [mag]
         In the band of the bolometric corrections.
-    Mbol1, Mbol2 : [mag]
-    bolometric_correction1, bolometric_correction2 : [mag]
+    bolometric : Mbol1, Mbol2 [mag]
+    corrections : bolometric corrections of both stars [mag]
         M_bol - M in the band, on the zero point of IAU 2015 B2; tables on an older zero point must be
         shifted first (Torres 2010, AJ 140, 1158).
     """
-    first = 10 ** (-0.4 * (_floats(Mbol1) - _floats(bolometric_correction1)))
-    second = 10 ** (-0.4 * (_floats(Mbol2) - _floats(bolometric_correction2)))
-    absolute = -2.5 * np.log10(first + second)
-    modulus = _floats(magnitude) - _floats(extinction) - absolute
+    light = sum(
+        10 ** (-0.4 * (_floats(whole) - _floats(correction)))
+        for whole, correction in zip(bolometric, corrections, strict=True)
+    )
+    modulus = _floats(magnitude) - _floats(extinction) + 2.5 * np.log10(light)
     return _floats(10 ** (1 + modulus / 5))
 
 
@@ -220,13 +222,13 @@ def _floats(value: Any) -> Floats:
 
 def _eta(eccentricity: ArrayLike) -> Floats:
     e = _floats(eccentricity)
-    if not np.all((e >= 0) & (e < 1)):
+    if np.any((e < 0) | (e >= 1)):
         raise ValueError(f"eccentricity: expected 0 <= e < 1, found {e}")
     return np.sqrt(1 - e * e)
 
 
 def _sin(inclination: ArrayLike) -> Floats:
     i = _floats(inclination)
-    if not np.all((i > 0) & (i <= 180)):
+    if np.any((i <= 0) | (i > 180)):
         raise ValueError(f"inclination: expected 0 < i <= 180 deg, found {i}")
     return np.sin(np.radians(i))

@@ -80,13 +80,13 @@ def oblateness(
 
 def _positive(name: str, value: ArrayLike) -> Floats:
     array = np.asarray(value, dtype=np.float64)
-    if not np.all(array > 0):
+    if np.any(array <= 0):
         raise ValueError(f"{name}: expected positive numbers, found {value!r}")
     return array
 
 
 def _eccentricity(value: ArrayLike) -> Floats:
     e = np.asarray(value, dtype=np.float64)
-    if not np.all((e >= 0) & (e < 1)):
+    if np.any((e < 0) | (e >= 1)):
         raise ValueError(f"eccentricity: expected 0 <= e < 1, found {value!r}")
     return e
