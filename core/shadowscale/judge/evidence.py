@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
-from math import hypot, inf, isfinite, nan, radians, sin, sqrt
+from math import hypot, inf, isfinite, nan, radians, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
@@ -201,13 +201,3 @@ class Evidence:
             first = stars / (1 + ratio) if ratio >= 0 else nan
             shares[band] = (first, first * ratio)
         return shares
-
-    @cached_property
-    def sine_inclination(self) -> float:
-        """Sine of the inclination."""
-        return sin(radians(self.value("inclination")))
-
-    @cached_property
-    def periastron(self) -> float:
-        """Distance of the stars at periastron in units of a."""
-        return max(1 - self.eccentricity, 1e-6)

@@ -2,15 +2,16 @@
 
 from __future__ import annotations
 
-from math import isfinite, sqrt
+from math import inf, isfinite, nan, sqrt
 
 import numpy as np
 
-from shadowscale.geometry.roche import lobe_radius, oblateness
+from shadowscale.geometry import roche
 from shadowscale.judge.check import Check
 from shadowscale.judge.evidence import Evidence
 from shadowscale.judge.finding import Finding
 from shadowscale.judge.words import listed, number, percent
+from shadowscale.light.proximity import ellipsoidal_amplitude, gravity_darkening
 
 FULL = 0.95  # fill-out from which a lobe may as well be full
 USUAL_RATIOS = (0.2, 5.0)  # mass ratios that are tried where none was measured
@@ -18,7 +19,6 @@ SKY_SHARE = (
     0.25  # mean radius seen in eclipse is smaller than the true one by this share of the oblateness
 )
 GRAVITY_DARKENING = 0.32  # Lucy 1967, Z. Astrophys. 65, 89, convective envelopes (from memory)
-TYPICAL_LIMB = 0.5
 FEWEST_OUTSIDE = 20
 
 
@@ -58,9 +58,28 @@ def fill_out(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
 
 def lobe_shares(evidence: Evidence, q: float) -> tuple[float, float]:
     """Radius over lobe radius at periastron of both stars, for the mass ratio q = M2/M1."""
-    first, second = evidence.radii
-    room = evidence.periastron
-    return first / (room * lobe_radius(1 / q)), second / (room * lobe_radius(q))
+    if not _usable(evidence):
+        return nan, nan
+    first, second = (
+        float(roche.fill_out(radius, ratio, eccentricity=evidence.eccentricity))
+        for radius, ratio in zip(evidence.radii, (1 / q, q))
+    )
+    return first, second
+
+
+def flattenings(evidence: Evidence, q: float) -> tuple[float, float]:
+    """Oblateness of both stars at periastron, for the mass ratio q = M2/M1."""
+    if not _usable(evidence):
+        return nan, nan
+    first, second = (
+        float(roche.oblateness(radius, ratio, eccentricity=evidence.eccentricity))
+        for radius, ratio in zip(evidence.radii, (1 / q, q))
+    )
+    return first, second
+
+
+def _usable(evidence: Evidence) -> bool:
+    return evidence.eccentricity < 1 and all(0 < radius < inf for radius in evidence.radii)
 
 
 def _ratio_words(q: float, how: str) -> str:
@@ -92,10 +111,7 @@ def _edge(evidence: Evidence, star: int, low: float, high: float) -> float:
 def roundness(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     """Oblateness by tide and rotation at periastron, of the flatter star."""
     q, how = evidence.mass_ratio
-    flat = [
-        oblateness(radius / evidence.periastron, ratio)
-        for radius, ratio in zip(evidence.radii, (1 / q, q))
-    ]
+    flat = flattenings(evidence, q)
     if not all(map(isfinite, flat)):
         return check.failed("The radii are not known, so neither is the shape of the stars.")
     worst = max(flat)
@@ -114,7 +130,7 @@ def roundness(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     return check.passed(f"{words}: spheres will do.", worst)
 
 
-def _claimed(evidence: Evidence, flat: list[float]) -> str:
+def _claimed(evidence: Evidence, flat: tuple[float, float]) -> str:
     """Says where the shape moves a radius more than its quoted error."""
     radii = listed(
         [
@@ -156,14 +172,28 @@ def ellipsoidal(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
 
 
 def predicted_amplitude(evidence: Evidence, band: str) -> float:
-    """Semi-amplitude of cos 2 phi, fraction of all light (Morris & Naftilan 1993, ApJ 419, 344)."""
+    """Semi-amplitude of cos 2 phi, fraction of all light; NaN where a radius or share is unknown."""
     q, _ = evidence.mass_ratio
-    factor = 0.15 * (15 + TYPICAL_LIMB) * (1 + GRAVITY_DARKENING) / (3 - TYPICAL_LIMB)
-    shares = evidence.light_share.get(band, (0.5, 0.5))
-    tides = (q * evidence.radii[0] ** 3, evidence.radii[1] ** 3 / q)
-    return sum(
-        share * factor * tide * evidence.sine_inclination**2 for share, tide in zip(shares, tides)
-    )
+    found = 0.0
+    for star, companion in ((1, q), (2, 1 / q)):
+        share, radius = evidence.light_share[band][star - 1], evidence.radii[star - 1]
+        if not (radius > 0 and isfinite(radius * share)):
+            return nan
+        found += share * ellipsoidal_amplitude(
+            radius,
+            companion,
+            inclination=evidence.value("inclination"),
+            gravity_darkening=_darkening(evidence, star, band),
+        )
+    return found
+
+
+def _darkening(evidence: Evidence, star: int, band: str) -> float:
+    """Gravity darkening of a star, that of a cool one where its temperature is not known."""
+    teff = evidence.value(f"teff{star}")
+    wavelength = evidence.solution.system.wavelengths.get(band, nan)
+    known = isfinite(teff * wavelength) and teff > 0 and wavelength > 0
+    return gravity_darkening(teff, wavelength) if known else GRAVITY_DARKENING
 
 
 def _amplitude_error(evidence: Evidence, band: int) -> float:

@@ -116,7 +116,7 @@ def gravities(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
         if isfinite(gravity):
             shown.append(f"log g{star} = {gravity:.2f}")
             if not LEAST_GRAVITY <= gravity <= GREATEST_GRAVITY:
-                bad.append((f"log g of star {star} is {gravity:.2f} (stars: -0.5 to 5.5)", gravity))
+                bad.append((f"star {star} has log g = {gravity:.2f} (stars: -0.5 to 5.5)", gravity))
         relative = density / DENSITY_SUN
         if isfinite(relative) and not LEAST_DENSITY <= relative <= GREATEST_DENSITY:
             bad.append(
