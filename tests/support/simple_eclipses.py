@@ -130,7 +130,9 @@ class SimpleBinary:
             return float(found[0]) if (side[0] > 0) == (which == 1) else 2.0
 
         middle = minimize_scalar(
-            distance, bounds=(centre - 0.03, centre + 0.03), method="bounded",
+            distance,
+            bounds=(centre - 0.03, centre + 0.03),
+            method="bounded",
             options={"xatol": 1e-10},
         ).x
         found: list[float] = []
@@ -150,7 +152,9 @@ class SimpleBinary:
         return float(1 - self.flux_at_phase(phases, band).min())
 
 
-def trapezoid(time: Floats, *, middle: float, duration: float, ingress: float, depth: float) -> Floats:
+def trapezoid(
+    time: Floats, *, middle: float, duration: float, ingress: float, depth: float
+) -> Floats:
     """A plain trapezoid: first to fourth contact `duration`, first to second `ingress`."""
     inside = np.clip((duration / 2 - np.abs(time - middle)) / ingress, 0, 1)
     return 1 - depth * inside
@@ -186,7 +190,11 @@ def survey_times(rng: np.random.Generator, *, points: int = 600, span: float = 1
     """One point a night now and then over years, with seasons."""
     day = rng.uniform(0, span, size=4 * points)
     season = (day % 365.25) < 220
-    return np.sort(2456000.0 + np.floor(day[season][:points]) + rng.normal(0.3, 0.08, size=season[:].sum())[:points])
+    return np.sort(
+        2456000.0
+        + np.floor(day[season][:points])
+        + rng.normal(0.3, 0.08, size=season[:].sum())[:points]
+    )
 
 
 def as_photometry(
@@ -198,7 +206,13 @@ def as_photometry(
     gap: float = 0.3,
 ) -> Photometry:
     """A table of light from one array a band; a gap [d] begins another night."""
-    columns: dict[str, list[NDArray]] = {"time": [], "flux": [], "error": [], "band": [], "night": []}
+    columns: dict[str, list[NDArray]] = {
+        "time": [],
+        "flux": [],
+        "error": [],
+        "band": [],
+        "night": [],
+    }
     for number, (time, flux, error) in enumerate(zip(times, fluxes, errors, strict=True)):
         columns["time"].append(time)
         columns["flux"].append(flux / np.median(flux))

@@ -107,7 +107,9 @@ def _disc_fits(data: ShapeData, rough: ShapeFit) -> list[ShapeFit]:
     start = rough
     values = rough.values.copy()
     values[DURATION] *= _DISC_LONGER
-    start = ShapeFit(rough.profile, values, rough.covariance, rough.chi2, rough.freedom, rough.centre)
+    start = ShapeFit(
+        rough.profile, values, rough.covariance, rough.chi2, rough.freedom, rough.centre
+    )
     found: dict[int, ShapeFit] = {}
 
     def fit(index: int) -> None:
@@ -176,7 +178,9 @@ def _ingress(fit: ShapeFit, place: int) -> tuple[float, float]:
     value = float(fit.values[place])
     sigma = np.sqrt(fit.covariance[place, place] * max(fit.scale, 1.0))
     part, slope = fit.profile.ingress(value)
-    low, high = (np.clip(value + side * sigma, fit.profile.lower, fit.profile.upper) for side in (-1, 1))
+    low, high = (
+        np.clip(value + side * sigma, fit.profile.lower, fit.profile.upper) for side in (-1, 1)
+    )
     if high - low < 1e-9:
         return part, slope
     ends = [fit.profile.ingress(float(end))[0] for end in (low, high)]

@@ -84,9 +84,7 @@ def _numbered(*columns: Ints) -> Ints:
     return np.unique(code, return_inverse=True)[1].astype(np.int64)
 
 
-def _night_levels(
-    points: LightPoints, outside: NDArray[np.bool_], group: Ints
-) -> Floats | None:
+def _night_levels(points: LightPoints, outside: NDArray[np.bool_], group: Ints) -> Floats | None:
     """(n,) level of each point's night, 1 where it has too few points outside; None if all are alike."""
     count = np.bincount(group, outside)
     weight = np.where(outside, points.sigma**-2, 0.0)

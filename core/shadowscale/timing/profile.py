@@ -142,6 +142,4 @@ def _overlap(distance: Floats, radius: float, other: Floats) -> Floats:
     kite = (radius + other - d) * (d + radius - other) * (d - radius + other) * (d + radius + other)
     lens = radius**2 * angle + other**2 * angle_other - np.sqrt(np.maximum(kite, 0)) / 2
     inside = pi * np.minimum(radius, other) ** 2
-    return np.where(
-        d >= radius + other, 0.0, np.where(d <= np.abs(radius - other), inside, lens)
-    )
+    return np.where(d >= radius + other, 0.0, np.where(d <= np.abs(radius - other), inside, lens))

@@ -102,7 +102,10 @@ def fit_shape(
         reduced = jacobian @ tie
         normal, gradient = reduced.T @ reduced, reduced.T @ residual
         # What stands at a limit and is pushed outward takes no part in this step.
-        outward = tie.T @ (((values <= low) & (jacobian.T @ residual < 0)) | ((values >= high) & (jacobian.T @ residual > 0)))
+        outward = tie.T @ (
+            ((values <= low) & (jacobian.T @ residual < 0))
+            | ((values >= high) & (jacobian.T @ residual > 0))
+        )
         held = outward > 0
         normal[held, :] = 0.0
         normal[:, held] = 0.0

@@ -1,0 +1,157 @@
+"""The period of an eclipsing binary from its light, settled against its double and its half."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from shadowscale.data.photometry import Photometry
+from shadowscale.errors import NoSolutionError
+from shadowscale.progress import SILENT, Progress
+from shadowscale.timing import _kernels
+from shadowscale.timing.box_search import SHORTEST, Spectrum, frequencies, spectrum
+from shadowscale.timing.candidates import Candidate, candidates
+from shadowscale.timing.detached import check_detached
+from shadowscale.timing.light_points import LightPoints, light_points
+from shadowscale.timing.results import PeriodCandidate, PeriodSearch
+from shadowscale.timing.search_data import SearchData, search_data, without_slow_variation
+from shadowscale.timing.settle import Settled, settled
+
+LONGEST = 0.95  # of the span: an eclipse must come twice
+LEAST_GAIN = 60.0  # chi2 of the best dips; white noise gives 45 at most in 1e7 trials
+LEAST_OVER_NOISE = 6.0  # best gain over the scatter of gains between frequencies
+SHOWN = 6
+HELP = "give the period, or more data"
+
+
+def search_period(
+    photometry: Photometry,
+    *,
+    progress: Progress = SILENT,
+    period_range: tuple[float, float] | None = None,
+) -> PeriodSearch:
+    """Find the period and the epoch of primary minimum.
+
+    Parameters
+    ----------
+    photometry : Photometry
+        All bands are used together.
+    progress : Progress
+    period_range : (shortest, longest), optional [d]
+        0.2 d to 0.95 of the span where missing.
+
+    Returns
+    -------
+    PeriodSearch
+
+    Raises
+    ------
+    ValueError
+        If `period_range` is not two rising positive numbers.
+    NoSolutionError
+        If no dip repeats.
+    NotDetachedError
+        If the light varies all the time, as of a close pair.
+
+    Notes
+    -----
+    A box search with two boxes (after Kovacs, Zucker & Mazeh 2002, A&A 391, 369) and the dispersion of
+    phase bins name candidates; the least cost of any shape in the eclipses and one level outside
+    ranks them; the eclipses themselves, measured on twice the period, settle it.
+    """
+    points = light_points(photometry)
+    limits = _limits(period_range, points.span)
+    data, seen = _searched(points, limits, progress)
+    found = candidates(data, seen, limits)
+    _check_dips(found, seen, data)
+    check_detached(data, found[0].period)
+    progress.report(0.9, "measuring the eclipses")
+    best = settled(points, data, found[0])
+    progress.report(1.0, "period found")
+    return _result(best, found, data)
+
+
+def _limits(given: tuple[float, float] | None, span: float) -> tuple[float, float]:
+    if given is None:
+        low, high = SHORTEST, LONGEST * span
+    else:
+        low, high = given
+        if not 0 < low < high:
+            raise ValueError(f"period_range must be two rising positive numbers, found {given!r}")
+        high = min(high, LONGEST * span)
+    if high <= 1.05 * low:
+        numbers = {"span": span, "shortest period": low}
+        raise NoSolutionError("the data are too short for a period", numbers, help=HELP)
+    return low, high
+
+
+def _searched(
+    points: LightPoints, limits: tuple[float, float], progress: Progress
+) -> tuple[SearchData, Spectrum]:
+    """Search the light as it is and, where that can be had, without slow variation; keep the clearer."""
+    raw = search_data(points)
+    trial = frequencies(*limits, raw.span)
+    calm = without_slow_variation(raw)
+    share = 0.85 if calm is None else 0.42
+    best = raw, spectrum(raw, trial, _Part(progress, 0.0, share))
+    if calm is None:
+        return best
+    other = calm, spectrum(calm, trial, _Part(progress, share, 2 * share))
+    return max((best, other), key=_clearness)
+
+
+def _clearness(pair: tuple[SearchData, Spectrum]) -> float:
+    """Explained over unexplained chi2."""
+    data, seen = pair
+    gain = float(seen.table[:, _kernels.GAIN_TWO].max())
+    return gain / max(data.chi2 - gain, 1e-9)
+
+
+class _Part:
+    """A share of somebody's progress."""
+
+    def __init__(self, whole: Progress, low: float, high: float) -> None:
+        self.whole, self.low, self.high = whole, low, high
+
+    def report(self, fraction: float, words: str) -> None:
+        """Pass it on."""
+        self.whole.report(self.low + fraction * (self.high - self.low), words)
+
+
+def _check_dips(found: list[Candidate], seen: Spectrum, data: SearchData) -> None:
+    gain = seen.table[:, _kernels.GAIN_TWO]
+    scatter = float(np.median(np.abs(gain - np.median(gain)))) * 1.4826
+    clear = (gain.max() - np.median(gain)) / max(scatter, 1e-9)
+    if found and gain.max() > LEAST_GAIN and clear > LEAST_OVER_NOISE:
+        return
+    numbers = {
+        "best gain in chi2": float(gain.max()),
+        "needed": LEAST_GAIN,
+        "peak over scatter": float(clear),
+        "noise of a point": float(np.median(data.weight) ** -0.5),
+    }
+    raise NoSolutionError("no repeating eclipse is seen", numbers, help=HELP)
+
+
+def _result(best: Settled, found: list[Candidate], data: SearchData) -> PeriodSearch:
+    lowest = found[0].cost
+    weighed = [
+        PeriodCandidate(
+            each.period,
+            data.origin + each.dips[0].middle * each.period,
+            float(lowest / each.cost) if each.cost > 0 else 0.0,
+            f"{len(each.dips)} dips, deepest {max(dip.depth for dip in each.dips):.3g}",
+        )
+        for each in found[:SHOWN]
+        if abs(each.period / best.refined.period - 1) > 3e-3
+    ]
+    chosen = PeriodCandidate(best.refined.period, best.refined.epoch, 1.0, best.words)
+    return PeriodSearch(
+        period=best.refined.period,
+        epoch=best.refined.epoch,
+        period_error=best.refined.period_error,
+        candidates=(chosen, *weighed),
+        words=best.words,
+        ambiguous=best.other is not None,
+        other=best.other,
+        numbers=best.numbers,
+    )

@@ -1,0 +1,102 @@
+"""What the period search works on: light of all bands about its level, thinned, without wild points."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from scipy.ndimage import median_filter
+
+from shadowscale.data.photometry import Floats
+from shadowscale.timing.light_points import LightPoints, robust_scatter
+
+MOST_POINTS = 6000  # neighbours are averaged where there are more
+WIDEST_CELL = 0.014  # [d] and no wider than this
+ISOLATED_GAP = 0.012  # [d] no eclipse comes and goes between neighbours nearer than this
+WILD = 6.0  # [sigma]
+SLOW_WINDOW = 1.2  # [d] longer than most eclipses, shorter than most slow variation
+SLOW_CELL = 0.1  # [d]
+
+
+@dataclass(frozen=True, eq=False)
+class SearchData:
+    """Points for the search: time from `origin` [d], light about its mean, 1/sigma^2."""
+
+    origin: float
+    time: Floats
+    value: Floats
+    weight: Floats
+
+    @property
+    def chi2(self) -> float:
+        """About the mean."""
+        return float(self.weight @ self.value**2)
+
+    @property
+    def span(self) -> float:
+        """[d]"""
+        return float(self.time[-1] - self.time[0])
+
+
+def search_data(points: LightPoints) -> SearchData:
+    """All bands on one scale, wild points out, neighbours averaged."""
+    level = np.array(
+        [
+            np.median(points.flux[points.band == n]) if np.any(points.band == n) else 1.0
+            for n in range(len(points.bands))
+        ]
+    )[points.band]
+    value, sigma = points.flux / level - 1, points.sigma / level
+    kept = ~_isolated(points.time, value, sigma)
+    # Nothing is brighter than both stars together: what lies above is cut to the noise.
+    top = np.median(value) + 4 * max(robust_scatter(value[value > 0]), float(np.median(sigma)))
+    return _data(*_averaged(points.time[kept], np.minimum(value, top)[kept], sigma[kept] ** -2.0))
+
+
+def without_slow_variation(data: SearchData) -> SearchData | None:
+    """The same less a running median, where the data are dense enough to have one."""
+    cells = np.floor(data.time / SLOW_CELL).astype(np.int64)
+    size = int(cells[-1]) + 1
+    filled = np.bincount(cells, minlength=size) > 0
+    if data.span < 3 * SLOW_WINDOW or data.time.size < 15 * data.span or filled.mean() < 0.5:
+        return None
+    total = np.bincount(cells, data.weight * data.value, size)
+    mass = np.bincount(cells, data.weight, size)
+    centres = (np.arange(size) + 0.5) * SLOW_CELL
+    mean = np.interp(centres, centres[filled], total[filled] / mass[filled])
+    slow = median_filter(mean, size=int(SLOW_WINDOW / SLOW_CELL) + 1, mode="nearest")
+    return _data(
+        data.origin + data.time, data.value - np.interp(data.time, centres, slow), data.weight
+    )
+
+
+def _data(time: Floats, value: Floats, weight: Floats) -> SearchData:
+    mean = float(weight @ value / weight.sum())
+    return SearchData(float(time[0]), time - time[0], value - mean, np.ascontiguousarray(weight))
+
+
+def _isolated(time: Floats, value: Floats, sigma: Floats) -> np.ndarray:
+    """(n,) True for single points far from both neighbours, where neighbours are close in time."""
+    rows = np.zeros(time.size, bool)
+    near = np.diff(time) < ISOLATED_GAP
+    step = np.diff(value)
+    limit = WILD * np.hypot(sigma[1:], sigma[:-1])
+    up, down = step > limit, step < -limit
+    rows[1:-1] = near[:-1] & near[1:] & ((down[:-1] & up[1:]) | (up[:-1] & down[1:]))
+    return rows
+
+
+def _averaged(time: Floats, value: Floats, weight: Floats) -> tuple[Floats, Floats, Floats]:
+    """Means of neighbours in cells of time, as narrow as brings the number of points down."""
+    if time.size <= MOST_POINTS:
+        return time, value, weight
+    cell = WIDEST_CELL
+    for width in (WIDEST_CELL / 8, WIDEST_CELL / 4, WIDEST_CELL / 2):
+        if np.count_nonzero(np.diff(np.floor(time / width))) < MOST_POINTS:
+            cell = width
+            break
+    number = np.cumsum(np.diff(np.floor(time / cell), prepend=np.floor(time[0] / cell)) > 0)
+    mass = np.bincount(number, weight)
+    origin = time[0]
+    mean_time = origin + np.bincount(number, weight * (time - origin)) / mass
+    return mean_time, np.bincount(number, weight * value) / mass, mass

@@ -1,0 +1,179 @@
+"""The period against its double and its half: the eclipses decide.
+
+On twice the period each eclipse falls apart into those of even and of odd cycles. If they differ, twice the period is right.
+If they are alike, and only one eclipse a cycle is seen, two equal stars on twice the period would look the same;
+then the depth tells which is likelier.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field, replace
+
+import numpy as np
+
+from shadowscale.errors import NoSolutionError
+from shadowscale.timing.candidates import Candidate
+from shadowscale.timing.fold import Dip, find_dips, phases
+from shadowscale.timing.light_points import LightPoints
+from shadowscale.timing.refine import Refined, dip_near, refined
+from shadowscale.timing.search_data import SearchData
+from shadowscale.timing.window_fit import SeenEclipse
+
+DIFFER = 5.0  # [sigma] of a difference between the two minima
+DEPTH_FLOOR, DURATION_FLOOR, MIDDLE_FLOOR = (
+    0.005,
+    0.02,
+    0.01,
+)  # what a measurement may be off, relative
+LEAST_SIGNAL = 5.0  # depth over error
+DARK_POWER = 2.5  # depth^2.5 is about the brightness ratio of a companion of main sequence
+
+
+@dataclass(frozen=True, eq=False)
+class Settled:
+    """The period chosen, why, the other possible one, and the numbers of the decision."""
+
+    refined: Refined
+    words: str
+    other: float | None = None
+    numbers: Mapping[str, float] = field(default_factory=dict)
+
+
+def settled(points: LightPoints, data: SearchData, best: Candidate) -> Settled:
+    """Choose between the best candidate's period, its double and its half."""
+    origin = float(np.median(points.time))
+    shift = (origin - data.origin) / best.period
+    dips = tuple(replace(dip, middle=(dip.middle - shift) % 1) for dip in best.dips)
+    single = _seen_clearly(refined(points, best.period, origin, dips))
+    double = _doubled(points, single)
+    if double is not None:
+        differing = _differences(double.eclipses)
+        if max(differing.values()) > DIFFER:
+            name = max(differing, key=lambda key: differing[key])
+            words = f"even and odd minima differ in {name} by {differing[name]:.1f} sigma, so the period is twice that of the dips"
+            return Settled(double, words, None, differing)
+    _check_repeats(single)
+    if len(single.eclipses) > 1:
+        numbers = _differences(single.eclipses[:2])
+        if max(numbers.values()) > DIFFER:
+            return _of_two_minima(single, double, numbers)
+        # Equal minima half a cycle apart: the question is that of one minimum on half the period.
+        return _of_one_minimum(_halved(points, single), single)
+    return _of_one_minimum(single, double)
+
+
+def _seen_clearly(found: Refined) -> Refined:
+    """Without dips that do not stand out."""
+    rows = [n for n, one in enumerate(found.eclipses) if one.signal > LEAST_SIGNAL]
+    if not rows:
+        best = found.eclipses[0]
+        numbers = {"depth": best.fit.timing.depth, "signal over noise": best.signal}
+        raise NoSolutionError("no eclipse stands out at the best period", numbers)
+    return replace(
+        found,
+        eclipses=tuple(found.eclipses[n] for n in rows),
+        cycles_seen=tuple(found.cycles_seen[n] for n in rows),
+    )
+
+
+def _doubled(points: LightPoints, single: Refined) -> Refined | None:
+    """The deeper eclipse on twice the period, as two; None if only even or odd ones were observed."""
+    timing = single.eclipses[0].fit.timing
+    width = timing.duration / 1.3
+    dip = Dip(timing.middle, width, timing.depth, single.eclipses[0].signal ** 2)
+    pair = (
+        dip_near(timing.middle / 2, width / 2, dip),
+        dip_near(timing.middle / 2 + 0.5, width / 2, dip),
+    )
+    cycles = (points.time - single.origin) / (2 * single.period)
+    for each in pair:
+        away = np.abs((cycles - each.middle + 0.5) % 1 - 0.5)
+        if np.count_nonzero(away < 0.3 * each.width) < 4:
+            return None
+    found = refined(points, 2 * single.period, single.origin, pair)
+    return found if all(one.signal > 2 for one in found.eclipses) else None
+
+
+def _differences(pair: tuple[SeenEclipse, ...]) -> dict[str, float]:
+    """How far two minima differ [sigma], with a floor for what a measurement may be off."""
+    first, second = (one.fit.timing for one in pair)
+    errors = [np.sqrt(np.diag(one.covariance)) for one in (first, second)]
+    apart = abs((first.middle - second.middle) % 1 - 0.5)
+    depth = (first.depth + second.depth) / 2
+    duration = (first.duration + second.duration) / 2
+    return {
+        "depth": abs(first.depth - second.depth)
+        / np.hypot(np.hypot(errors[0][4], errors[1][4]), DEPTH_FLOOR * depth),
+        "duration": abs(first.duration - second.duration)
+        / np.hypot(np.hypot(errors[0][1], errors[1][1]), DURATION_FLOOR * duration),
+        "spacing": apart / np.hypot(np.hypot(errors[0][0], errors[1][0]), MIDDLE_FLOOR * duration),
+    }
+
+
+def _check_repeats(found: Refined) -> None:
+    if max(found.cycles_seen) >= 2:
+        return
+    numbers = {f"eclipse {n + 1} seen": float(c) for n, c in enumerate(found.cycles_seen)}
+    raise NoSolutionError(
+        "each eclipse was seen only once, so no period can be told", numbers, help="give the period"
+    )
+
+
+def _halved(points: LightPoints, double: Refined) -> Refined:
+    """Two equal minima as one on half the period."""
+    timing = double.eclipses[0].fit.timing
+    width = 2 * timing.duration / 1.3
+    dip = Dip((2 * timing.middle) % 1, width, timing.depth, double.eclipses[0].signal ** 2)
+    return refined(points, double.period / 2, double.origin, (dip,))
+
+
+def _of_two_minima(
+    single: Refined, double: Refined | None, numbers: Mapping[str, float]
+) -> Settled:
+    name = max(numbers, key=lambda key: numbers[key])
+    words = f"two minima a cycle that differ in {name} by {numbers[name]:.1f} sigma"
+    return Settled(single, words + _alike(double), None, numbers)
+
+
+def _alike(double: Refined | None) -> str:
+    if double is None:
+        return "; only even or only odd cycles were observed, so twice the period is not excluded"
+    return "; even and odd cycles are alike"
+
+
+def _of_one_minimum(single: Refined, double: Refined | None) -> Settled:
+    """One dip a cycle: a dark companion, or two equal stars on twice the period."""
+    depth = single.eclipses[0].fit.timing.depth
+    unseen = _unseen_depth(single)
+    numbers = {"depth": depth, "deepest unseen second minimum": unseen}
+    if double is None or single.eclipses[0].fit.timing.duration > 0.25:
+        words = "one minimum a cycle; twice the period cannot be tested with these cycles"
+        return Settled(single, words, 2 * single.period, numbers)
+    likely_dark = unseen > depth * depth**DARK_POWER
+    if likely_dark:
+        words = (
+            "one minimum a cycle; two equal stars on twice the period would look the same "
+            f"(a second minimum up to {unseen:.2g} would go unseen)"
+        )
+        return Settled(single, words, 2 * single.period, numbers)
+    words = (
+        "even and odd minima are alike, and a companion dark enough to show no second minimum could not "
+        f"be large enough for a depth of {depth:.2g}: two equal stars on twice the period of the dips"
+    )
+    return Settled(double, words, single.period, numbers)
+
+
+def _unseen_depth(single: Refined) -> float:
+    """Depth of a second minimum that the folded light may still hide (3 sigma)."""
+    timing = single.eclipses[0].fit.timing
+    phase = phases(single.cycles, 1.0, timing.middle)
+    outside = (phase > 0.6 * timing.duration) & (phase < 1 - 0.6 * timing.duration)
+    if outside.sum() < 10:
+        return 1.0
+    points = single.points
+    weight = points.sigma[outside] ** -2.0
+    dips = find_dips(phase[outside], points.flux[outside] - 1, weight, bins=100)
+    mass = weight.sum() * timing.duration
+    floor = 3 / np.sqrt(max(mass, 1e-300))
+    return float(max([floor, *(dip.depth + floor for dip in dips[:1])]))
