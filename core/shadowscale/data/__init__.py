@@ -1,6 +1,16 @@
 """Tables of measurements: reading, columns, clocks; every row accounted for."""
 
 from shadowscale.data.light_reading import read_photometry
+from shadowscale.data.limb_tables import LimbTable, read_limb_table
+from shadowscale.data.previews import Preview, preview, sniff_kind
 from shadowscale.data.velocity_reading import read_velocities
 
-__all__ = ["read_photometry", "read_velocities"]
+__all__ = [
+    "LimbTable",
+    "Preview",
+    "preview",
+    "read_limb_table",
+    "read_photometry",
+    "read_velocities",
+    "sniff_kind",
+]

@@ -59,6 +59,11 @@ _TAKEN_OFF = re.compile(
 _KEYS = re.compile(
     r"^(time|timesys|jdref\w*|.*(time|date).*(system|scale|unit|standard|zero|offset|ref).*|times?|dates?|.*\b[bhm]?jd\b.*)$"
 )
+_SECONDS = re.compile(r"(?i)^(s|secs?|seconds?)$")
+_NO_KIND = (
+    "the file does not say whether its Julian dates are barycentric, heliocentric or geocentric"
+)
+_NO_SCALE = "in which time scale (TDB or UTC: about 69 s apart)"
 
 
 @dataclass(frozen=True)
@@ -75,12 +80,19 @@ class Clock:
         Why it is thought so.
     note : str
         What stays in doubt; empty if nothing.
+    factor : float [d]
+        One unit of the printed numbers.
     """
 
     scale: str
     offset: float
     reason: str
     note: str = ""
+    factor: float = 1.0
+
+    def full(self, numbers: Floats) -> Floats:
+        """Full Julian dates (n,) [d] from the printed numbers (n,)."""
+        return numbers * self.factor + self.offset if self.factor != 1.0 else numbers + self.offset
 
 
 def recognised_clock(
@@ -106,26 +118,23 @@ def recognised_clock(
         What the user says (`BJD_TDB - 2457000`); goes before everything else.
     """
     finite = numbers[np.isfinite(numbers)]
-    middle = float(np.median(finite)) if len(finite) else np.nan
+    factor = 1.0 / 86400.0 if _SECONDS.match(unit.strip()) else 1.0
+    middle = float(np.median(finite)) * factor if len(finite) else np.nan
     sources = _sources(name, unit, headers, comments, told)
-    kind, scale, implied = _kind(sources)
+    kind, scale, implied, said = _kind(sources)
     printed = _printed_offset(sources, headers)
     offset, reason, doubt = _offset(middle, kind=kind, implied=implied, printed=printed)
     if offset is None:
-        return Clock(UNKNOWN, 0.0, reason, doubt)
+        return Clock(UNKNOWN, 0.0, reason, doubt, factor)
     full = _KINDS[kind][0] if kind else ""
     scale = scale or (_KINDS[kind][1] if kind else "")
     if not full:
-        doubt = doubt or (
-            "the file does not say whether its Julian dates are barycentric, heliocentric or geocentric"
-        )
-        return Clock(UNKNOWN, offset, reason, doubt)
+        doubt = doubt or _NO_KIND
+        return Clock(UNKNOWN, offset, reason, doubt, factor)
     if not scale:
-        doubt = (
-            doubt
-            or f"the file says {full} but not in which time scale (TDB or UTC: about 69 s apart)"
-        )
-    return Clock(f"{full}_{scale}" if scale else full, offset, reason, doubt)
+        doubt = doubt or f"the file says {full} but not {_NO_SCALE}"
+    name = f"{full}_{scale}" if scale else full
+    return Clock(name, offset, f"{full} by {said}; {reason}", doubt, factor)
 
 
 def _sources(
@@ -146,17 +155,19 @@ def _sources(
     return [pair for pair in [*first, *keyed, *spoken] if pair[0]]
 
 
-def _kind(sources: list[tuple[str, str]]) -> tuple[str, str, float | None]:
-    kind, scale, implied = "", "", None
-    for text, _ in sources:
+def _kind(sources: list[tuple[str, str]]) -> tuple[str, str, float | None, str]:
+    """Printed kind, scale, implied offset, and who says the kind."""
+    kind, scale, implied, said = "", "", None, ""
+    for text, where in sources:
         upper = text.upper().replace("_", " ").replace("JD-UTC", "JD UTC")
         found = _KIND.search(upper)
         here = found[1] if found else _long_kind(text)
         if here and _better(here, kind):
-            kind, implied = here, _KINDS[here][2] if implied is None else implied
+            kind, said = here, where
+            implied = _KINDS[here][2] if implied is None else implied
         found = _SCALE.search(upper.replace("(", " ").replace(")", " "))
         scale = scale or ((found[1] or found[2]) if found else "")
-    return kind, scale, implied
+    return kind, scale, implied, said
 
 
 def _long_kind(text: str) -> str:
@@ -171,12 +182,13 @@ def _better(here: str, kind: str) -> bool:
 def _printed_offset(
     sources: list[tuple[str, str]], headers: Mapping[str, str]
 ) -> tuple[float, str] | None:
-    if "bjdrefi" in headers:
-        try:
-            whole = float(headers["bjdrefi"]) + float(headers.get("bjdreff", "0"))
-            return whole, "BJDREFI and BJDREFF of the header"
-        except ValueError:
-            pass
+    for kind, zero in (("bjdref", 0.0), ("jdref", 0.0), ("mjdref", MJD_ZERO)):
+        whole = _number(headers, kind + "i")
+        if whole is None:
+            whole = _number(headers, kind)
+        if whole is not None:
+            part = _number(headers, kind + "f") or 0.0
+            return whole + part + zero, f"{kind.upper()} of the header"
     for text, where in sources:
         pattern = _TAKEN_OFF if where == "a comment" else _OFFSET
         found = pattern.search(text)
@@ -185,6 +197,13 @@ def _printed_offset(
             if where in ("the user", "the column's name") or (2 * number).is_integer():
                 return number, where
     return None
+
+
+def _number(headers: Mapping[str, str], key: str) -> float | None:
+    try:
+        return float(headers[key])
+    except (KeyError, ValueError):
+        return None
 
 
 def _offset(

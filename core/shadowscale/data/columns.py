@@ -237,9 +237,9 @@ def _time(table: RawTable, free: _Free) -> Guess:
         for index in free.indices(table):
             if _TIME_UNITS.match(unit_of(table.columns[index])):
                 return _taken(table, free, "time", index, "the unit is one of time")
-        index = time_column(table, free.indices(table))
-        if index is not None:
-            return _taken(table, free, "time", index[0], index[1])
+        found_by_look = time_column(table, free.indices(table))
+        if found_by_look is not None:
+            return _taken(table, free, "time", *found_by_look)
     raise ColumnError(_no_column(table, "time", "the time"))
 
 

@@ -14,6 +14,7 @@ from types import MappingProxyType
 from shadowscale.data.raw_table import RawTable
 from shadowscale.errors import Problem, TableError
 
+FilePath = str | PathLike[str]
 WHOLE = -1
 _FOREIGN = {
     b"PK\x03\x04": "a zip archive or spreadsheet workbook",
@@ -100,7 +101,7 @@ READERS: Mapping[str, Reader] = MappingProxyType(
 )
 
 
-def file_bytes(path: str | PathLike[str], limit: int = WHOLE) -> FileBytes:
+def file_bytes(path: FilePath, limit: int = WHOLE) -> FileBytes:
     """Read a file, or its first `limit` bytes.
 
     Raises
@@ -120,7 +121,7 @@ def file_bytes(path: str | PathLike[str], limit: int = WHOLE) -> FileBytes:
     return FileBytes(name, raw, checksum, max(size, len(raw)))
 
 
-def read_table(path: str | PathLike[str]) -> RawTable:
+def read_table(path: FilePath) -> RawTable:
     """Read a file of any known format.
 
     Raises
@@ -142,7 +143,10 @@ def reader_for(file: FileBytes) -> Reader:
 
 
 def _size(name: str) -> int:
-    return Path(name).stat().st_size
+    try:
+        return Path(name).stat().st_size
+    except OSError:
+        return 0
 
 
 def _raw_bytes(name: str, limit: int) -> bytes:

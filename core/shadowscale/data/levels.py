@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import log
+from math import log, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
@@ -18,6 +18,7 @@ FEWEST_ERRORS = 0.5  # share of rows with an error below which all are estimated
 MAD_TO_SIGMA = 1.482602218505602  # of a Gaussian: 1 / Phi^-1(3/4)
 FLOOR = 1e-7  # relative error where the scatter is nought
 MAG = 0.4 * log(10.0)
+SQRT2 = sqrt(2.0)
 
 Bools = NDArray[np.bool_]
 
@@ -152,7 +153,8 @@ def with_errors(
         for one_file in np.unique(file[band == number]):
             rows = (band == number) & (file == one_file)
             wanted = rows & used
-            if np.count_nonzero(given & wanted) >= FEWEST_ERRORS * max(np.count_nonzero(wanted), 1):
+            needed = FEWEST_ERRORS * max(int(np.count_nonzero(wanted)), 1)
+            if np.count_nonzero(given & wanted) >= needed:
                 continue
             error[rows] = _scatter(flux[wanted], night[wanted])
             given[rows] = True
@@ -164,7 +166,7 @@ def _scatter(flux: Floats, night: Ints) -> float:
     steps = np.diff(flux)[np.diff(night) == 0]
     if len(steps) < 5:
         steps = np.diff(flux)
-    sigma = MAD_TO_SIGMA * float(np.median(np.abs(steps))) / np.sqrt(2.0) if len(steps) else 0.0
+    sigma = MAD_TO_SIGMA * float(np.median(np.abs(steps))) / SQRT2 if len(steps) else 0.0
     if sigma <= 0 and len(steps):
-        sigma = float(np.std(steps)) / np.sqrt(2.0)
+        sigma = float(np.std(steps)) / SQRT2
     return max(sigma, FLOOR)

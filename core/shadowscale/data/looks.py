@@ -78,3 +78,12 @@ def uncertainty_by_look(values: Floats, errors: Floats) -> str:
     if np.all(errors[good] >= 0) and np.median(errors[good]) < max(0.3 * size, spread):
         return "follows the value, and its numbers are small and not negative"
     return ""
+
+
+def velocities_by_look(numbers: Floats) -> bool:
+    """Whether unnamed numbers are rather velocities [km/s] than light: both signs, or a wide spread."""
+    finite = numbers[np.isfinite(numbers)]
+    if not len(finite) or len(finite) > 5000:
+        return False
+    low, high = float(np.min(finite)), float(np.max(finite))
+    return low < -5.0 or (high - low > 15.0 and high < 1000.0 and low < 0.5 * high)

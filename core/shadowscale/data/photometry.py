@@ -82,7 +82,7 @@ class Photometry:
     @property
     def used(self) -> NDArray[np.bool_]:
         """(n,) True where the row takes part."""
-        return self.why == USED
+        return np.equal(self.why, USED)
 
     def excluded(self, rows: NDArray[np.bool_], reason: str) -> Photometry:
         """The same table with `rows` (n, bool) set aside for `reason`; rows set aside before keep theirs."""
@@ -91,5 +91,6 @@ class Photometry:
         return replace(self, why=why, reasons=reasons)
 
     def restored(self, rows: NDArray[np.bool_]) -> Photometry:
-        """The same table with `rows` (n, bool) taking part again."""
-        return replace(self, why=np.where(rows, USED, self.why))
+        """The same table with `rows` (n, bool) taking part again; rows without a flux stay out."""
+        usable = np.isfinite(self.flux) & np.isfinite(self.flux_error) & (self.flux_error > 0)
+        return replace(self, why=np.where(rows & usable, USED, self.why))

@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 
 import numpy as np
+from numpy.typing import NDArray
 
 from shadowscale.data.photometry import Floats, Ints, UnreadableRow
 
@@ -44,8 +45,16 @@ class Column:
             return self.labels[int(self.codes[row])]
         if row in self.odd:
             return self.odd[row]
-        number = float(self.numbers[row])
-        return "" if np.isnan(number) else repr(number)
+        return written_cell(float(self.numbers[row]))
+
+    def words(self, keep: NDArray[np.bool_]) -> tuple[tuple[str, ...], Ints]:
+        """The different cells of the rows `keep` (n, bool), and which of them stands in each."""
+        if self.labels is not None and self.codes is not None:
+            return self.labels, self.codes[keep]
+        if self.odd:
+            return coded([self.cell(int(row)) for row in np.flatnonzero(keep)])
+        different, codes = np.unique(self.numbers[keep], return_inverse=True)
+        return tuple(written_cell(float(n)) for n in different), codes.astype(np.int64)
 
 
 @dataclass(frozen=True, eq=False)
@@ -91,6 +100,13 @@ class RawTable:
     def rows(self) -> int:
         """Rows of the file: those of the table and those that could not be read."""
         return len(self.line) + len(self.unreadable)
+
+
+def written_cell(number: float) -> str:
+    """A number as a cell, whole numbers without a point, nothing for NaN."""
+    if np.isnan(number):
+        return ""
+    return str(int(number)) if number.is_integer() and abs(number) < 1e15 else repr(number)
 
 
 def coded(words: list[str]) -> tuple[tuple[str, ...], Ints]:

@@ -5,20 +5,21 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from os import PathLike, fspath
+from types import MappingProxyType
 
 import numpy as np
 from numpy.typing import NDArray
 
 from shadowscale.data.clocks import REACH, Clock, recognised_clock
 from shadowscale.data.columns import Guess
-from shadowscale.data.files import read_table
+from shadowscale.data.files import FilePath, read_table
 from shadowscale.data.photometry import Floats, InputFile, UnreadableRow
 from shadowscale.data.raw_table import RawTable
 from shadowscale.errors import InputError, Problem, TableError, TimeScaleError
 
-Path = str | PathLike[str]
 Chosen = Mapping[str, str | int]
 Bools = NDArray[np.bool_]
+NOTHING_CHOSEN: Chosen = MappingProxyType({})
 
 
 @dataclass
@@ -34,7 +35,7 @@ class Reasons:
         return self.known.index(reason)
 
 
-def path_list(paths: Path | Sequence[Path]) -> tuple[str, ...]:
+def path_list(paths: FilePath | Sequence[FilePath]) -> tuple[str, ...]:
     """The paths as text; one path alone is a list of one."""
     several = [paths] if isinstance(paths, str | PathLike) else list(paths)
     if not several:
@@ -162,3 +163,9 @@ def notes_of(table: RawTable, clock: Clock) -> list[str]:
     if table.unreadable:
         notes.append(f"{len(table.unreadable)} lines are no rows of the table")
     return [f"{table.path}: {note}" for note in notes]
+
+
+def middle(values: Floats) -> float:
+    """Median of the finite numbers, 0 if there are none."""
+    finite = values[np.isfinite(values)]
+    return float(np.median(finite)) if len(finite) else 0.0

@@ -11,11 +11,13 @@ import numpy as np
 
 from shadowscale.data.clocks import Clock, common_scale
 from shadowscale.data.columns import Guess, velocity_columns
+from shadowscale.data.files import FilePath
 from shadowscale.data.photometry import Floats, Ints, UnreadableRow
-from shadowscale.data.raw_table import RawTable, coded
+from shadowscale.data.raw_table import RawTable
 from shadowscale.data.rows import (
+    NOTHING_CHOSEN,
+    Bools,
     Chosen,
-    Path,
     Reasons,
     clock_of,
     far_rows,
@@ -26,12 +28,11 @@ from shadowscale.data.rows import (
     read_all,
     split_rows,
 )
-from shadowscale.data.velocities import Velocities
+from shadowscale.data.velocities import NO_MEASUREMENT, Velocities
 from shadowscale.errors import Problem, TableError, UnitError
 
 MINIMUM = 3  # velocities of either star
 TOO_FAST = 3000.0  # [km/s] a median above this must be in m/s (fastest detached stars move at some 100 km/s)
-NO_MEASUREMENT = "no measurement"
 _UNITS = {"km/s": 1.0, "kms-1": 1.0, "m/s": 1e-3, "ms-1": 1e-3}
 
 
@@ -55,9 +56,9 @@ class _Part:
 
 
 def read_velocities(
-    paths: Path | Sequence[Path],
+    paths: FilePath | Sequence[FilePath],
     *,
-    columns: Chosen | Sequence[Chosen] = {},  # noqa: B006
+    columns: Chosen | Sequence[Chosen] = NOTHING_CHOSEN,
 ) -> Velocities:
     """Read radial velocities from one or several files.
 
@@ -100,7 +101,7 @@ def _part(table: RawTable, columns: Chosen, reasons: Reasons) -> _Part:
     def numbers(role: str) -> Floats:
         if role not in roles:
             return np.full(count, np.nan)
-        return table.columns[roles[role].index].numbers[keep]
+        return np.asarray(table.columns[roles[role].index].numbers[keep])
 
     clock = clock_of(table, roles["time"], columns)
     part = _Part(
@@ -108,7 +109,7 @@ def _part(table: RawTable, columns: Chosen, reasons: Reasons) -> _Part:
         guesses=guesses,
         clock=clock,
         line=table.line[keep],
-        time=numbers("time") + clock.offset,
+        time=clock.full(numbers("time")),
         velocity=[numbers("rv1"), numbers("rv2")],
         error=[numbers("rv1_err"), numbers("rv2_err")],
         why=[np.zeros(count, np.int64), np.zeros(count, np.int64)],
@@ -157,11 +158,11 @@ def _speed_like(unit: str) -> bool:
     return unit in {"cm/s", "km/h", "au/d", "pc/myr", "d", "mag", "km", "m", "s"}
 
 
-def _set_sources(part: _Part, guess: Guess | None, keep: np.ndarray) -> None:
+def _set_sources(part: _Part, guess: Guess | None, keep: Bools) -> None:
     if guess is not None:
         column = part.table.columns[guess.index]
-        words = [column.cell(int(row)) or part.sources[0] for row in np.flatnonzero(keep)]
-        part.sources, part.source = coded(words)
+        labels, part.source = column.words(keep)
+        part.sources = tuple(label or part.sources[0] for label in labels)
 
 
 def _set_aside(part: _Part, reasons: Reasons) -> None:

@@ -1,0 +1,188 @@
+"""A look into a file before it is read: the first rows, and how its columns are understood."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import numpy as np
+
+from shadowscale.data.clocks import Clock
+from shadowscale.data.columns import Guess, photometry_columns, velocity_columns
+from shadowscale.data.files import READERS, FilePath, file_bytes, reader_for
+from shadowscale.data.light_file import bands_of_head
+from shadowscale.data.looks import velocities_by_look
+from shadowscale.data.photometry import UnreadableRow
+from shadowscale.data.raw_table import RawTable
+from shadowscale.data.rows import NOTHING_CHOSEN, Bools, Chosen, clock_of, split_rows
+from shadowscale.errors import InputError, Problem, UsageError
+
+HEAD = 262_144  # bytes read of a long file
+SHOWN_ROWS = 50
+PHOTOMETRY, VELOCITIES = "photometry", "velocities"
+KINDS = (PHOTOMETRY, VELOCITIES)
+
+
+@dataclass(frozen=True)
+class Preview:
+    """What a file seems to hold.
+
+    Attributes
+    ----------
+    form : str
+        How the file was read, in words.
+    columns, units : tuple of str
+        All columns of the file.
+    rows : tuple of tuples of str
+        The first rows as text.
+    guesses : tuple of Guess
+        Which column plays which role, and why; empty where that cannot be said (see `problems`).
+    clock : Clock or None
+        Time scale and offset.
+    bands : tuple of str
+        Of the rows looked at; empty for velocities.
+    row_count : int
+        Rows of the file.
+    estimated : bool
+        True where only the head was read, so that `row_count` is a guess.
+    unreadable : tuple of UnreadableRow
+        Among the rows looked at.
+    problems : tuple of Problem
+        Why the file cannot be read like this.
+    """
+
+    path: str
+    kind: str
+    form: str
+    columns: tuple[str, ...]
+    units: tuple[str, ...]
+    rows: tuple[tuple[str, ...], ...]
+    guesses: tuple[Guess, ...]
+    clock: Clock | None
+    bands: tuple[str, ...]
+    row_count: int
+    estimated: bool
+    unreadable: tuple[UnreadableRow, ...]
+    notes: tuple[str, ...]
+    problems: tuple[Problem, ...]
+
+    @property
+    def time_scale(self) -> str:
+        """The time scale, `unknown` where it is not settled."""
+        return "unknown" if self.clock is None else self.clock.scale
+
+
+def preview(
+    path: FilePath,
+    kind: str = PHOTOMETRY,
+    *,
+    columns: Chosen = NOTHING_CHOSEN,
+    band: str | None = None,
+) -> Preview:
+    """Look into a file; of a long one only the head is read.
+
+    Parameters
+    ----------
+    path : path
+    kind : str
+        `photometry` or `velocities`.
+    columns : mapping of role to column
+        As for `read_photometry` and `read_velocities`.
+
+    Raises
+    ------
+    TableError
+        If the file is no table. Columns that cannot be understood are no error here: they are `problems`.
+    """
+    if kind not in KINDS:
+        raise ValueError(f"kind: {kind!r} is none of {', '.join(KINDS)}")
+    table = head_of(path)
+    guesses, problems = _guesses(table, kind, columns)
+    roles = {guess.role: guess for guess in guesses}
+    clock: Clock | None = None
+    bands: tuple[str, ...] = ()
+    unreadable = table.unreadable
+    if guesses:
+        numeric = [g for g in guesses if g.role not in ("band", "source", "quality")]
+        keep, bad = split_rows(table, numeric, roles["time"])
+        unreadable = (*unreadable, *bad)
+        clock = clock_of(table, roles["time"], columns)
+        bands = _bands(table, keep, roles, band) if kind == PHOTOMETRY else ()
+    count = table.rows if table.estimated_rows is None else table.estimated_rows
+    return Preview(
+        path=table.path,
+        kind=kind,
+        form=table.form,
+        columns=table.names,
+        units=tuple(column.unit for column in table.columns),
+        rows=_first_rows(table),
+        guesses=guesses,
+        clock=clock,
+        bands=bands,
+        row_count=count,
+        estimated=table.estimated_rows is not None,
+        unreadable=unreadable,
+        notes=(*table.notes, *([clock.note] if clock and clock.note else [])),
+        problems=problems,
+    )
+
+
+def head_of(path: FilePath) -> RawTable:
+    """The table's first rows (all rows of a short file)."""
+    file = file_bytes(path, HEAD)
+    reader = reader_for(file)
+    if file.partial and reader is READERS["votable"]:
+        file = file_bytes(path)  # XML cannot be cut
+    return reader.read(file)
+
+
+def sniff_kind(path: FilePath) -> str:
+    """`photometry` or `velocities`, by the names of the columns or the look of the numbers.
+
+    Raises
+    ------
+    TableError
+        If the file is no table.
+    """
+    table = head_of(path)
+    if table.named:
+        light, _ = _guesses(table, PHOTOMETRY, {})
+        velocities, _ = _guesses(table, VELOCITIES, {})
+        if bool(light) != bool(velocities):
+            return PHOTOMETRY if light else VELOCITIES
+        if velocities and "star" in next(g.reason for g in velocities if g.role.startswith("rv")):
+            return VELOCITIES
+        return PHOTOMETRY
+    light, _ = _guesses(table, PHOTOMETRY, {})
+    value = next((g for g in light if g.role in ("mag", "flux")), None)
+    if value is not None and velocities_by_look(table.columns[value.index].numbers):
+        return VELOCITIES
+    return PHOTOMETRY
+
+
+def _guesses(
+    table: RawTable, kind: str, columns: Chosen
+) -> tuple[tuple[Guess, ...], tuple[Problem, ...]]:
+    find = photometry_columns if kind == PHOTOMETRY else velocity_columns
+    try:
+        return find(table, columns), ()
+    except InputError as error:
+        return (), error.problems
+    except UsageError as error:
+        return (), (Problem(table.path, "a known role", str(error)),)
+
+
+def _bands(
+    table: RawTable, keep: Bools, roles: Mapping[str, Guess], band: str | None
+) -> tuple[str, ...]:
+    try:
+        return bands_of_head(table, keep, roles=roles, told=band)
+    except InputError:
+        return ()
+
+
+def _first_rows(table: RawTable) -> tuple[tuple[str, ...], ...]:
+    return tuple(
+        tuple(column.cell(row) for column in table.columns)
+        for row in range(min(SHOWN_ROWS, len(np.asarray(table.line))))
+    )
