@@ -129,7 +129,7 @@ def companion_mass(
         found = found - step
         if not np.any(np.abs(step) > 1e-15 * found):
             break
-    return found
+    return _floats(found)
 
 
 def logg(mass: ArrayLike, radius: ArrayLike) -> Floats:
@@ -158,7 +158,7 @@ def logg_companion(
 
 def mean_density(mass: ArrayLike, radius: ArrayLike) -> Floats:
     """Mean density [kg/m3] from mass and radius [solar]."""
-    return DENSITY_SUN * _floats(mass) / _floats(radius) ** 3
+    return _floats(DENSITY_SUN * _floats(mass) / _floats(radius) ** 3)
 
 
 def mean_densities(

@@ -339,6 +339,13 @@ def sky_point(cycles: float, constants: Floats, light_time: float, out: Floats) 
 
 
 @compiled
+def sky_rows(cycles: Floats, constants: Floats, light_time: float, out: Floats) -> None:
+    """`sky_point` of many instants, into out (n, SKY_SIZE)."""
+    for i in range(cycles.size):
+        sky_point(cycles[i], constants, light_time, out[i])
+
+
+@compiled
 def sky_full(cycles: float, constants: Floats, light_time: float, out: Floats) -> None:
     """As `sky_point`, with rho, sin(nu + w), cos(nu + w), each with five derivatives; SKY_FULL_SIZE places."""
     x, y, x_tau, x_k, x_h, y_tau, y_k, y_h, tau_c, tau_k, tau_h, tau_i, tau_light = _seen(

@@ -58,7 +58,7 @@ def sky_derivatives(times: ArrayLike, orbit: Orbit) -> Floats:
     """
     cycles = orbit.cycles(times).ravel()
     out = np.empty((cycles.size, _kernels.SKY_SIZE))
-    _fill_derivatives(cycles, orbit_constants(orbit), orbit.light_time, out)
+    _kernels.sky_rows(cycles, orbit_constants(orbit), orbit.light_time, out)
     return out
 
 
@@ -125,9 +125,3 @@ def _track(times: ArrayLike, orbit: Orbit) -> Floats:
 def _fill_track(cycles: Floats, constants: Floats, light_time: float, out: Floats) -> None:
     for i in range(cycles.size):
         out[i, 0], out[i, 1] = _kernels.sky_point_value(cycles[i], constants, light_time)
-
-
-@njit(cache=True, nogil=True, error_model="numpy")
-def _fill_derivatives(cycles: Floats, constants: Floats, light_time: float, out: Floats) -> None:
-    for i in range(cycles.size):
-        _kernels.sky_point(cycles[i], constants, light_time, out[i])
