@@ -80,12 +80,12 @@ class History:
 
     def undo(self) -> Session:
         """Go one step back (nothing happens at the start); the state there."""
-        self.close()
         self._position = max(0, self._position - 1)
+        self.close()
         return self.session
 
     def redo(self) -> Session:
         """Go one step forward (nothing happens at the end); the state there."""
-        self.close()
         self._position = min(len(self._steps) - 1, self._position + 1)
+        self.close()
         return self.session

@@ -8,7 +8,6 @@ as a word, and long arrays are packed (byte-shuffled, deflated, base 64). What d
 from __future__ import annotations
 
 import base64
-import binascii
 import types
 import zlib
 from collections.abc import Mapping
@@ -101,7 +100,7 @@ def _read(kind: Any, data: object, where: str) -> Any:
     if isinstance(origin, type) and issubclass(origin, Mapping):
         return _read_mapping(arguments, data, where)
     if origin is np.ndarray:
-        return _read_array(data, where).astype(_dtype(kind), copy=False)
+        return _read_array(data, where, element=_element(kind))
     if is_dataclass(kind):
         return _read_dataclass(kind, data, where)
     return _read_scalar(kind, data, where)
@@ -154,9 +153,13 @@ def _read_dataclass(kind: Any, data: object, where: str) -> Any:
 def _read_scalar(kind: Any, data: object, where: str) -> Any:
     if kind is float:
         return _read_float(data, where)
-    if kind is int and isinstance(data, bool):
+    return _read_whole(data, where) if kind is int else _expect(kind, data, where)
+
+
+def _read_whole(data: object, where: str) -> int:
+    if isinstance(data, bool):
         raise PlainError(where, "a whole number", repr(data))
-    return _expect(kind, data, where)
+    return _expect(int, data, where)
 
 
 def _read_float(data: object, where: str) -> float:
@@ -197,9 +200,9 @@ def _array_to_plain(array: NDArray[Any]) -> Any:
     return {"length": int(values.size), "type": kind, "packed": packed}
 
 
-def _read_array(data: object, where: str) -> NDArray[Any]:
+def _read_array(data: object, where: str, *, element: Any) -> NDArray[Any]:
     if isinstance(data, list):
-        return _read_list(data, where)
+        return _read_list(data, where, element=element)
     items = _expect(dict, data, where)
     kind, length, packed = (items.get(name) for name in ("type", "length", "packed"))
     if kind not in DTYPES or not isinstance(length, int) or not isinstance(packed, str):
@@ -209,25 +212,26 @@ def _read_array(data: object, where: str) -> NDArray[Any]:
     try:
         unpacker = zlib.decompressobj()
         raw = unpacker.decompress(base64.b64decode(packed, validate=True), 8 * length + 1)
-    except (zlib.error, binascii.Error) as error:
+    except (zlib.error, ValueError) as error:
         raise PlainError(where, "a packed array", f"damaged data ({error})") from error
     if len(raw) != 8 * length:
         raise PlainError(where, f"{length} packed values", f"{len(raw)} bytes")
     shuffled = np.frombuffer(raw, dtype=np.uint8).reshape(8, length)
-    return np.ascontiguousarray(shuffled.T).view(kind).reshape(length).astype(kind[1:])
+    return np.ascontiguousarray(shuffled.T).view(kind).reshape(length).astype(element)
 
 
-def _dtype(kind: Any) -> Any:
+def _element(kind: Any) -> Any:
     """The element type of an annotation such as `NDArray[np.float64]`."""
     (element,) = get_args(get_args(kind)[1])
     return element
 
 
-def _read_list(data: list[Any], where: str) -> NDArray[Any]:
+def _read_list(data: list[Any], where: str, *, element: Any) -> NDArray[Any]:
     """Numbers in a row, or nested lists as a matrix."""
+    read = _read_float if element is np.float64 else _read_whole
     if data and all(isinstance(item, list) for item in data):
-        rows = [[_read_float(item, where) for item in row] for row in data]
+        rows = [[read(item, where) for item in row] for row in data]
         if len({len(row) for row in rows}) > 1:
             raise PlainError(where, "rows of one length", "different lengths")
-        return np.array(rows, dtype=np.float64)
-    return np.array([_read_float(item, where) for item in data], dtype=np.float64)
+        return np.array(rows, dtype=element)
+    return np.array([read(item, where) for item in data], dtype=element)
