@@ -46,7 +46,7 @@ def solve_session(session: Session, *, progress: Progress = SILENT) -> Session:
     NoSolutionError
         There is none, or the audit forbids to report it.
     """
-    from shadowscale.fit import solve
+    from shadowscale.fit.solve import solve
     from shadowscale.judge import audit
 
     progress.report(0.0, "reading")
