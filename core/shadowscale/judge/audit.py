@@ -5,6 +5,8 @@ from __future__ import annotations
 from collections.abc import Mapping
 from types import MappingProxyType
 
+import numpy as np
+
 from shadowscale.data.photometry import Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.solution import Solution
@@ -41,5 +43,9 @@ def audit(
         speak says why. Where one is `fatal` the sheet must not be handed out.
     """
     evidence = Evidence(solution, photometry, velocities)
-    findings = [finding for check in CHECKS.values() for finding in check.function(evidence, check)]
+    # What cannot be computed becomes NaN, and the check says in words that it does not know.
+    with np.errstate(all="ignore"):
+        findings = [
+            finding for check in CHECKS.values() for finding in check.function(evidence, check)
+        ]
     return tuple(sorted(findings, key=lambda finding: SEVERITY[finding.verdict]))

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
-from math import hypot, inf, isfinite, nan, radians, sqrt
+from math import hypot, isfinite, nan, radians, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,6 +16,15 @@ from shadowscale.judge.windows import EclipseWindow, eclipse_windows
 from shadowscale.quantities import key
 
 Bools = NDArray[np.bool_]
+
+TINY, HUGE = 1e-30, 1e30  # beyond them a number is no measurement, and its powers overflow
+
+
+def _sane(number: float) -> float:
+    """NaN for numbers too large to mean anything, 0 for those too small."""
+    if not abs(number) < HUGE:
+        return nan
+    return number if abs(number) > TINY else 0.0
 
 
 @dataclass(frozen=True, eq=False)
@@ -61,8 +70,8 @@ class Evidence:
         text = key(name, label)
         estimate = self.solution.estimates.get(text)
         if estimate is not None:
-            return float(estimate.value)
-        return float(self.solution.system.values.get(text, nan))
+            return _sane(float(estimate.value))
+        return _sane(float(self.solution.system.values.get(text, nan)))
 
     def sigma(self, name: str, label: str | None = None) -> float:
         """Standard error of a quantity, mean of its two sides; NaN where it has none."""
@@ -72,9 +81,9 @@ class Evidence:
         """Standard error by key."""
         estimate = self.solution.estimates.get(text)
         if estimate is not None and estimate.minus is not None and estimate.plus is not None:
-            return (float(estimate.minus) + float(estimate.plus)) / 2
+            return _sane((float(estimate.minus) + float(estimate.plus)) / 2)
         variance = self.covariance_of(text, text)
-        return sqrt(variance) if variance > 0 and isfinite(variance) else nan
+        return _sane(sqrt(variance)) if variance > 0 and isfinite(variance) else nan
 
     def is_free(self, name: str, label: str | None = None) -> bool:
         """Whether the fit could move that quantity."""
@@ -137,11 +146,11 @@ class Evidence:
     def mass_ratio(self) -> tuple[float, str]:
         """M2/M1 and how it was had: `measured`, `assumed` or `unknown` (then 1)."""
         estimate = self.solution.estimates.get("mass_ratio")
-        if estimate is not None and isfinite(estimate.value) and estimate.value > 0:
+        if estimate is not None and self.value("mass_ratio") > 0:
             stated = estimate.how in (FIXED, ASSUMED)
-            return float(estimate.value), "assumed" if stated else "measured"
+            return self.value("mass_ratio"), "assumed" if stated else "measured"
         first, second = self.value("K1"), self.value("K2")
-        if self.velocities is not None and first > 0 and 0 < second < inf:
+        if self.velocities is not None and first > 0 and second > 0:
             return first / second, "measured"
         return 1.0, "unknown"
 
@@ -159,7 +168,8 @@ class Evidence:
             model = result.model / result.level
             residual = (table.flux - result.model) / result.level
             error = np.abs(table.flux_error / result.level) * np.take(scales, table.band)
-            good = np.isfinite(model + residual + error + table.time + result.phase) & (error > 0)
+            good = np.isfinite(model + residual + error + table.time + result.phase)
+        good &= (error > TINY) & (error < HUGE) & (np.abs(residual) + np.abs(model) < HUGE)
         rows = np.flatnonzero(good & (result.why == 0))
         rows = rows[np.lexsort((table.time[rows], table.night[rows], table.band[rows]))]
         band, night = table.band[rows], table.night[rows]

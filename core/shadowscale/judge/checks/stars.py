@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from math import hypot, isfinite, log10, nan
+from math import exp, hypot, isfinite, log, log10, nan
 
 from shadowscale.constants import DENSITY_SUN, LOGG_SUN
 from shadowscale.judge.check import Check
@@ -144,30 +144,32 @@ def _gravity(evidence: Evidence, star: int) -> float:
 
 
 def order_of_densities(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
-    """Whether the more massive star is the less dense one, as with two stars of one age."""
-    mass1, mass2 = evidence.value("M1"), evidence.value("M2")
-    radius1, radius2 = evidence.radii
-    if not (mass1 > 0 and mass2 > 0 and radius1 > 0 and radius2 > 0):
-        return check.silent("the order needs the mass ratio.")
-    # rho2/rho1 = q / k^3, so that only q and k and their errors enter.
-    q, k = mass2 / mass1, radius2 / radius1
-    excess = log10(q / k**3) * (1 if mass1 > mass2 else -1)
-    error = (
-        hypot(evidence.sigma("mass_ratio") / q, 3 * evidence.sigma("radius_ratio") / k) / 2.302585
-    )
-    heavy = 1 if mass1 > mass2 else 2
-    words = f"Star {heavy} is the more massive and {number(10 ** abs(excess))} times as {{}} as the other"
-    if not error > 0:
+    """Whether the more massive star is the less dense one, as with two stars of one age.
+
+    The densities' ratio is q/k^3: only the mass ratio and the ratio of radii enter, with their errors.
+    """
+    mass1, mass2, k = evidence.value("M1"), evidence.value("M2"), evidence.value("radius_ratio")
+    if not (mass1 > 0 and mass2 > 0 and k > 0):
+        return check.silent("the order needs the masses of both stars.")
+    q = mass2 / mass1
+    error_q = evidence.sigma("mass_ratio") / q
+    error = hypot(error_q, 3 * evidence.sigma("radius_ratio") / k)
+    if not (error_q > 0 and error > 0):
         return check.silent("the mass ratio or the ratio of radii has no error.")
-    away = -excess / error
-    apart = abs(log10(q)) * 2.302585 * q / evidence.sigma("mass_ratio")
-    if away > (check.limit or 0.0) and apart > (check.limit or 0.0):
+    heavy = 1 if q < 1 else 2
+    # Positive where the heavier star is the denser one.
+    excess = (3 * log(k) - log(q)) * (1 if heavy == 1 else -1)
+    words = f"Star {heavy} is the more massive and {number(exp(min(abs(excess), 99)))} times as"
+    limit = check.limit or 0.0
+    if excess / error > limit and abs(log(q)) / error_q > limit:
         return check.warned(
-            f"{words.format('dense')} ({number(away)} sigma). Two stars of one age are the other way round; "
-            "perhaps the radii are exchanged, or mass was, or the pair is very young.",
-            away,
+            f"{words} dense as the other ({number(excess / error)} sigma). Two stars of one age are the other "
+            "way round; perhaps the radii are exchanged, or mass was, or the pair is very young.",
+            excess / error,
         )
-    return check.passed(f"{words.format('dense' if excess < 0 else 'thin')}, as can be.", away)
+    return check.passed(
+        f"{words} {'dense' if excess > 0 else 'thin'} as the other, as can be.", excess / error
+    )
 
 
 CHECKS = (
