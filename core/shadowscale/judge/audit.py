@@ -11,11 +11,20 @@ from shadowscale.data.photometry import Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.solution import Solution
 from shadowscale.judge.check import Check
-from shadowscale.judge.checks import coverage, eclipses, fit, orbit, residuals, shape, stars
+from shadowscale.judge.checks import (
+    coverage,
+    eclipses,
+    fit,
+    light,
+    orbit,
+    residuals,
+    shape,
+    stars,
+)
 from shadowscale.judge.evidence import Evidence
 from shadowscale.judge.finding import FAIL, PASS, WARN, Finding
 
-FAMILIES = (fit, shape, eclipses, orbit, stars, residuals, coverage)
+FAMILIES = (fit, shape, eclipses, orbit, stars, light, residuals, coverage)
 SEVERITY = {FAIL: 0, WARN: 1, PASS: 2}
 
 CHECKS: Mapping[str, Check] = MappingProxyType(
