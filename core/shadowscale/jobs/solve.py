@@ -47,7 +47,7 @@ def solve_session(session: Session, *, progress: Progress = SILENT) -> Session:
         There is none, or the audit forbids to report it.
     """
     from shadowscale.fit.solve import solve
-    from shadowscale.judge import audit
+    from shadowscale.judge.audit import audit
 
     progress.report(0.0, "reading")
     ready = session if session.photometry is not None else with_tables(session)

@@ -12,11 +12,13 @@ from shadowscale.data.velocities import Velocities
 from shadowscale.fit.solution import Solution
 from shadowscale.judge.check import Check
 from shadowscale.judge.checks import (
+    clock,
     coverage,
     eclipses,
     fit,
     light,
     orbit,
+    period,
     residuals,
     shape,
     stars,
@@ -24,7 +26,7 @@ from shadowscale.judge.checks import (
 from shadowscale.judge.evidence import Evidence
 from shadowscale.judge.finding import FAIL, PASS, WARN, Finding
 
-FAMILIES = (fit, shape, eclipses, orbit, stars, light, residuals, coverage)
+FAMILIES = (fit, shape, eclipses, period, orbit, clock, stars, light, residuals, coverage)
 SEVERITY = {FAIL: 0, WARN: 1, PASS: 2}
 
 CHECKS: Mapping[str, Check] = MappingProxyType(

@@ -18,6 +18,7 @@ from made_up_judge import (
     with_light,
     with_residuals,
     with_solution,
+    with_system,
     with_values,
 )
 from shadowscale.fit.solution import Decision
@@ -25,7 +26,8 @@ from shadowscale.judge.audit import CHECKS
 from shadowscale.judge.checks.coverage import INGRESS_ERROR, Sides, covered_share, quadrature_counts
 from shadowscale.judge.checks.eclipses import mirror_solution
 from shadowscale.judge.checks.light import limb_share, radius_gradient
-from shadowscale.judge.checks.orbit import eclipse_shift, measured_depth
+from shadowscale.judge.checks.orbit import eclipse_shift
+from shadowscale.judge.checks.period import measured_depth
 from shadowscale.judge.checks.residuals import neighbour_statistic, noise_factor
 from shadowscale.judge.checks.shape import lobe_shares, predicted_amplitude
 from shadowscale.judge.checks.stars import young_radius
@@ -165,6 +167,27 @@ def test_ellipsoidal_amplitude_of_a_known_pair() -> None:
     case = with_solution(case, estimates=estimates, system=system)
 
     assert predicted_amplitude(case.evidence, "V") == pytest.approx(0.0136, abs=5e-5)
+
+
+@pytest.mark.parametrize("levels", ["one", "night", "trend"])
+def test_error_of_a_wave_beside_levels(levels: str) -> None:
+    """Against the inverse of the whole normal matrix, a column for every level and slope."""
+    case = with_system(GOOD, levels=levels, effects={})
+    light, outside = case.evidence.light, case.evidence.outside
+    block = light.block[outside] if levels != "one" else 0 * light.block[outside]
+    own = (block[:, None] == np.unique(block)).astype(float)
+    time = (light.time[outside] - light.time[outside].mean())[:, None]
+    columns = [np.cos(4 * pi * light.phase[outside])[:, None], own]
+    if levels == "trend":
+        columns.append(own * time)
+    design = np.hstack(columns) / light.error[outside][:, None]
+    expected = sqrt(np.linalg.pinv(design.T @ design)[0, 0])
+
+    finding = case.finding("ellipsoidal variation")
+
+    assert finding.value == pytest.approx(
+        predicted_amplitude(case.evidence, "V") / expected, rel=1e-6
+    )
 
 
 # Residuals

@@ -6,9 +6,10 @@ from math import inf, isfinite, nan, sqrt
 
 import numpy as np
 
+from shadowscale.data.photometry import Floats, Ints
 from shadowscale.geometry import roche
 from shadowscale.judge.check import Check
-from shadowscale.judge.evidence import Evidence
+from shadowscale.judge.evidence import TINY, Evidence
 from shadowscale.judge.finding import Finding
 from shadowscale.judge.words import listed, number, percent
 from shadowscale.light.proximity import ellipsoidal_amplitude, gravity_darkening
@@ -197,13 +198,28 @@ def _darkening(evidence: Evidence, star: int, band: str) -> float:
 
 
 def _amplitude_error(evidence: Evidence, band: int) -> float:
-    """Error of the amplitude of a wave through the points outside eclipse: sqrt(2/n) of one point's."""
+    """Error of a wave cos 2 phi through the points outside eclipse, beside the levels that the fit solves."""
     light = evidence.light
-    chosen = evidence.outside & (light.band == band)
-    count = int(chosen.sum())
-    if count < FEWEST_OUTSIDE:
+    chosen = np.flatnonzero(evidence.outside & (light.band == band))
+    if chosen.size < FEWEST_OUTSIDE:
         return 0.0
-    return float(sqrt(2 / np.sum(light.error[chosen] ** -2)))
+    block = light.block[chosen] if evidence.solution.system.levels != "one" else 0 * chosen
+    weight, wave = light.error[chosen] ** -2, np.cos(4 * np.pi * light.phase[chosen])
+    rest = _without_mean(wave, weight, block)
+    if evidence.solution.system.levels == "trend":
+        time = _without_mean(light.time[chosen], weight, block)
+        slope = np.bincount(block, weight * time * rest) / np.maximum(
+            np.bincount(block, weight * time**2), TINY
+        )
+        rest = rest - slope[block] * time
+    power = float(np.sum(weight * rest**2))
+    return 1 / sqrt(power) if power > 0 else 0.0
+
+
+def _without_mean(values: Floats, weight: Floats, block: Ints) -> Floats:
+    """Values less the weighted mean of their block."""
+    mean = np.bincount(block, weight * values) / np.maximum(np.bincount(block, weight), TINY)
+    return np.asarray(values - mean[block])
 
 
 CHECKS = (
