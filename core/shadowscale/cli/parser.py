@@ -13,6 +13,8 @@ from shadowscale.errors import UsageError
 
 _NO_VALUE = re.compile(r"argument (?P<option>\S+?)(?:/\S+)*: expected (?P<count>.+)")
 
+_NEGATIVE = re.compile(r"-\.?\d")
+
 
 class Parser(ArgumentParser):
     """A parser that raises `UsageError` and knows no abbreviations."""
@@ -38,13 +40,25 @@ class Parser(ArgumentParser):
 
     def parse_strictly(self, words: Sequence[str]) -> Namespace:
         """The arguments; an unknown one is an error that names the nearest option."""
-        arguments, unknown = self.parse_known_args(words)
+        arguments, unknown = self.parse_known_args(_joined(words))
         if unknown:
             name = unknown[0].split("=", 1)[0]
             near = get_close_matches(name, self.options(), n=1)
             hint = f" (did you mean {near[0]}?)" if near else ""
             raise UsageError(self.prog, name, expected=f"options as --help shows them{hint}")
         return arguments
+
+
+def _joined(words: Sequence[str]) -> list[str]:
+    """Negative values tied to their options, which would be taken for options themselves."""
+    found: list[str] = []
+    for word in words:
+        last = found[-1] if found else ""
+        if _NEGATIVE.match(word) and last.startswith("--") and "=" not in last:
+            found[-1] = f"{last}={word}"
+        else:
+            found.append(word)
+    return found
 
 
 def add_common(parser: Parser) -> None:

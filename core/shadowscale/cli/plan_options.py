@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from argparse import Namespace
 from dataclasses import fields
+from typing import Any
 
 from shadowscale.cli.parser import Parser, choice, measured, number, numbers, pairs
 from shadowscale.errors import UsageError
@@ -21,6 +22,14 @@ from shadowscale.quantities import QUANTITIES, parse_key
 
 BASIC = tuple(name for name, quantity in QUANTITIES.items() if quantity.basic)
 LIMB = ("limb_darkening1", "limb_darkening2")
+MEASURED = (
+    "teff1",
+    "teff2",
+    "apparent_magnitude",
+    "bolometric_correction1",
+    "bolometric_correction2",
+    "extinction",
+)
 
 
 def add_plan_options(parser: Parser) -> None:
@@ -78,7 +87,7 @@ def plan_from(arguments: Namespace) -> Plan:
     """
     from shadowscale.light.laws import LAWS
 
-    plain = {
+    plain: dict[str, Any] = {
         "period": _optional(arguments, "period", above=0.0),
         "epoch": _optional(arguments, "epoch"),
         "law": _choice(arguments, "law", tuple(LAWS)),
@@ -89,6 +98,7 @@ def plan_from(arguments: Namespace) -> Plan:
         "limb_table": arguments.limb_table,
         "exposure": _exposure(arguments.exposure),
         "seed": _seed(arguments.seed),
+        **{name: measured(_option(name), getattr(arguments, name)) for name in MEASURED},
     }
     return Plan(
         **{name: value for name, value in plain.items() if value is not None},
@@ -97,18 +107,7 @@ def plan_from(arguments: Namespace) -> Plan:
         free=tuple(_basic("--free", text) for text in arguments.free),
         fixed=_fixed(arguments.fix),
         priors=tuple(_prior(text) for text in arguments.prior),
-        **{name: measured(_option(name), getattr(arguments, name)) for name in MEASURED},
     )
-
-
-MEASURED = (
-    "teff1",
-    "teff2",
-    "apparent_magnitude",
-    "bolometric_correction1",
-    "bolometric_correction2",
-    "extinction",
-)
 
 
 def given_options(arguments: Namespace) -> list[str]:

@@ -6,6 +6,7 @@ from io import StringIO
 
 import numpy as np
 import pytest
+
 from made_up import made_up_session
 from shadowscale.sheet import light_curve, velocity_curve
 

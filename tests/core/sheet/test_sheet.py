@@ -10,6 +10,7 @@ from math import isnan, nan
 import jsonschema
 import numpy as np
 import pytest
+
 from made_up import made_up_findings, made_up_session
 from shadowscale.fit.solution import DERIVED, Estimate
 from shadowscale.quantities import QUANTITIES, SYSTEM
@@ -17,9 +18,50 @@ from shadowscale.sheet import RENDERINGS, as_csv, as_ecsv, as_json, as_tex, make
 from shadowscale.sheet.as_json import schema
 
 # The names that people and scripts rely on, in the documented order.
-NAMES = """period epoch radius_sum radius_ratio r1 r2 inclination impact1 impact2 ecosw esinw
-eccentricity omega K1 K2 gamma1 gamma2 mass_ratio a M1 M2 R1 R2 logg1 logg2 density1 density2 vsync1
-vsync2 teff1 teff2 L1 L2 Mbol1 Mbol2 distance T14_1 T23_1 T14_2 T23_2 depth1 depth2""".split()
+NAMES = [
+    "period",
+    "epoch",
+    "radius_sum",
+    "radius_ratio",
+    "r1",
+    "r2",
+    "inclination",
+    "impact1",
+    "impact2",
+    "ecosw",
+    "esinw",
+    "eccentricity",
+    "omega",
+    "K1",
+    "K2",
+    "gamma1",
+    "gamma2",
+    "mass_ratio",
+    "a",
+    "M1",
+    "M2",
+    "R1",
+    "R2",
+    "logg1",
+    "logg2",
+    "density1",
+    "density2",
+    "vsync1",
+    "vsync2",
+    "teff1",
+    "teff2",
+    "L1",
+    "L2",
+    "Mbol1",
+    "Mbol2",
+    "distance",
+    "T14_1",
+    "T23_1",
+    "T14_2",
+    "T23_2",
+    "depth1",
+    "depth2",
+]
 
 
 def sheet_for(session, **changes):
@@ -54,7 +96,8 @@ def test_the_json_sheet_follows_its_schema(document):
 
 
 def test_every_promised_name_is_given_or_its_absence_told(document):
-    told = {item["check"].removeprefix("absent ") for item in document["audit"]}
+    checks = [item["check"] for item in document["audit"]]
+    told = {name.removeprefix("absent ") for name in checks if name.startswith("absent ")}
     for name in NAMES:
         assert (name in document["quantities"]) != (name in told), name
     assert {name for name, item in QUANTITIES.items() if item.scope == SYSTEM} == set(NAMES)
@@ -136,13 +179,20 @@ def flat(document):
     found = dict(document["quantities"])
     for label, band in document["bands"].items():
         limb = band["limb_darkening"]
-        found |= {f"{name}[{label}]": item for name, item in band.items() if "value" in (item if isinstance(item, dict) else {})}
+        found |= {
+            f"{name}[{label}]": item
+            for name, item in band.items()
+            if "value" in (item if isinstance(item, dict) else {})
+        }
         for star in (1, 2):
             for number, item in enumerate(limb[f"star{star}"].values(), 1):
                 found[f"limb_darkening{star}[{label}].{number}"] = item
     for label, source in document["sources"].items():
         found |= {f"{name}[{label}]": item for name, item in source.items()}
-    return {name: tuple(item[part] for part in ("value", "minus", "plus")) for name, item in found.items()}
+    return {
+        name: tuple(item[part] for part in ("value", "minus", "plus"))
+        for name, item in found.items()
+    }
 
 
 def test_the_csv_sheet_says_the_same(sheet, document):
@@ -169,7 +219,9 @@ def test_astropy_reads_the_ecsv_sheet(sheet, document):
     numbers = {}
     for row in table:
         cells = [row[part] for part in ("value", "minus", "plus")]
-        numbers[str(row["name"])] = tuple(None if np.ma.is_masked(cell) else float(cell) for cell in cells)
+        numbers[str(row["name"])] = tuple(
+            None if np.ma.is_masked(cell) else float(cell) for cell in cells
+        )
     assert numbers == flat(document)
     assert table.meta["time_scale"] == "BJD_TDB"
     assert table["value"].dtype == np.float64
