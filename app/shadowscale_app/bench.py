@@ -1,0 +1,322 @@
+"""The main window: places the panes and connects them to the desk; nothing else."""
+
+from __future__ import annotations
+
+import sys
+from collections.abc import Sequence
+from pathlib import Path
+
+from PySide6.QtCore import QEvent, Qt, QTimer
+from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
+from PySide6.QtWidgets import (
+    QApplication,
+    QFrame,
+    QMainWindow,
+    QMessageBox,
+    QSplitter,
+    QStackedWidget,
+    QTabWidget,
+    QToolBar,
+    QVBoxLayout,
+    QWidget,
+)
+
+from shadowscale._version import __version__
+from shadowscale.session.session import Session
+from shadowscale_app import theme, trouble
+from shadowscale_app.actions import Actions, keys
+from shadowscale_app.desk import ALL, Change, Desk
+from shadowscale_app.dialogs.trouble import TroubleDialog
+from shadowscale_app.files import Files, sample_sessions, settings
+from shadowscale_app.jobs import LiveLane, LongLane
+from shadowscale_app.live import Live
+from shadowscale_app.panes import all_panes
+from shadowscale_app.panes.pane import Pane
+from shadowscale_app.panes.start import StartPane
+from shadowscale_app.points_desk import PointsDesk
+from shadowscale_app.status import Status
+from shadowscale_app.warm import Warmer
+from shadowscale_app.work import WorkDesk
+
+UPPER = ("Folded curve", "Whole series")
+LOWER = ("Eclipses", "Velocities", "Correlation", "Mass and radius")
+SIDE = ("Quantities", "Settings", "Doubts", "Kept", "Help")
+
+
+class Bench(QMainWindow):
+    """The window."""
+
+    def __init__(self, *, desk: Desk | None = None, immediate: bool = False) -> None:
+        super().__init__()
+        self.desk = desk or Desk(parent=self)
+        self.lane, self.long_lane = LiveLane(self, immediate=immediate), LongLane(self)
+        self.live = Live(self.desk, self.lane, self)
+        self.work = WorkDesk(self.desk, self.long_lane, self)
+        self.files = Files(self.desk, self)
+        self.points = PointsDesk(self.desk, self)
+        self.warmer = Warmer(self)
+        self.panes: dict[str, Pane] = {pane.title: pane for pane in all_panes()}
+        self.phase = 0.0
+        self.brushing = False
+        self.start = StartPane()
+        self.status = Status(self)
+        self._tabs: list[QTabWidget] = []
+        self._place()
+        self.actions_table = Actions(self)
+        self.actions_table.fill_menus()
+        self.actions_table.fill_bar(self._bar())
+        self._connect()
+        self.panes["Help"].write(self.panes.values(), keys())  # type: ignore[attr-defined]
+        self.setAcceptDrops(True)
+        self.resize(1280, 760)
+        self._changed(self.desk.session, ALL)
+
+    @property
+    def scheme(self) -> str:
+        """The chosen colours; empty: as the system has them."""
+        return str(QApplication.instance().property(theme.CHOICE) or theme.FOLLOW)
+
+    def choose_scheme(self, name: str) -> None:
+        """Light, dark, or as the system."""
+        application = QApplication.instance()
+        assert isinstance(application, QApplication)
+        application.setProperty(theme.CHOICE, name)
+        settings().setValue(theme.CHOICE, name)
+        self.dress()
+
+    def dress(self) -> None:
+        """Take the theme's colours everywhere."""
+        application = QApplication.instance()
+        assert isinstance(application, QApplication)
+        theme.dress(application)
+        self._show(self.desk.session, ALL)
+
+    def bring(self, title: str) -> None:
+        """Bring a pane to the front."""
+        pane = self.panes[title]
+        for tabs in self._tabs:
+            number = tabs.indexOf(pane)
+            if number >= 0:
+                tabs.setCurrentIndex(number)
+        self.stack.setCurrentIndex(1)
+
+    def toggle_brush(self) -> None:
+        """Switch the brush on all pictures on or off."""
+        self.brushing = not self.brushing
+        for picture in self.pictures():
+            picture.box.brushing = self.brushing
+            picture.viewport().setCursor(
+                Qt.CursorShape.CrossCursor if self.brushing else Qt.CursorShape.ArrowCursor
+            )
+        self.status.tell("Draw round points in a picture." if self.brushing else "")
+
+    def toggle_follow(self) -> None:
+        """Whether the fit follows changes by itself."""
+        self.live.following = not self.live.following
+        if not self.live.following:
+            self.live.forget()
+
+    def restore_points(self) -> None:
+        """Take back all points that a person set aside."""
+        self.points.take_all_back()
+
+    def drop_span(self) -> None:
+        """Remove the stretch whose edge has the keyboard."""
+        self.points.drop_span(
+            [picture for picture in self.pictures() if hasattr(picture, "focused")]
+        )
+
+    def pictures(self) -> list:  # type: ignore[type-arg]
+        """All plots."""
+        from shadowscale_app.plots.picture import Picture
+
+        return [picture for pane in self.panes.values() for picture in pane.findChildren(Picture)]
+
+    def reset_views(self) -> None:
+        """Show everything again, in every picture."""
+        for picture in self.pictures():
+            picture.reset_view()
+
+    def save_figure(self) -> None:
+        """Save the picture that has the keyboard, else the upper pane."""
+        from shadowscale_app.plots.figure import ask_and_save
+        from shadowscale_app.plots.picture import Picture
+
+        focused = QApplication.focusWidget()
+        shown = focused if isinstance(focused, Picture) else self._tabs[0].currentWidget()
+        ask_and_save(shown)
+
+    def about(self) -> None:
+        """What this is."""
+        QMessageBox.about(
+            self, "Shadowscale",
+            f"<b>Shadowscale {__version__}</b><p>Masses and radii of the stars of detached eclipsing binaries, "
+            "from light curves and radial velocities.</p>",
+        )  # fmt: skip
+
+    def open_paths(self, paths: Sequence[str]) -> None:
+        """Open what the command line or a drop names."""
+        with trouble.guard("opening " + ", ".join(Path(path).name for path in paths)):
+            self.files.open_paths([Path(path) for path in paths])
+
+    def dragEnterEvent(self, event: QDragEnterEvent) -> None:
+        """Files may be dropped anywhere."""
+        if event.mimeData().hasUrls():
+            event.acceptProposedAction()
+
+    def dropEvent(self, event: QDropEvent) -> None:
+        """Open what was dropped."""
+        paths = [url.toLocalFile() for url in event.mimeData().urls() if url.isLocalFile()]
+        event.acceptProposedAction()
+        QTimer.singleShot(0, self, lambda: self.open_paths(paths))
+
+    def closeEvent(self, event: QCloseEvent) -> None:
+        """Ask about unsaved work, end the threads."""
+        if not self.files.may_leave():
+            event.ignore()
+            return
+        self.end()
+        event.accept()
+
+    def end(self) -> None:
+        """End timers and threads."""
+        self.files.end()
+        self.live.forget()
+        self.lane.close()
+        self.long_lane.close()
+        self.warmer.close()
+
+    def changeEvent(self, event: QEvent) -> None:
+        """Follow the system's colours."""
+        super().changeEvent(event)
+
+    def _place(self) -> None:
+        left = QSplitter(Qt.Orientation.Vertical)
+        left.addWidget(self._tabbed(UPPER))
+        left.addWidget(self._tabbed(LOWER))
+        left.setSizes([320, 330])
+        right = QSplitter(Qt.Orientation.Vertical)
+        right.addWidget(_framed(self.panes["To scale"]))
+        right.addWidget(_framed(self.panes["The two stars"]))
+        right.addWidget(self._tabbed(SIDE))
+        right.setSizes([190, 110, 330])
+        right.setStretchFactor(2, 1)
+        whole = QSplitter(Qt.Orientation.Horizontal)
+        whole.addWidget(left)
+        whole.addWidget(right)
+        whole.setSizes([780, 500])
+        whole.setStretchFactor(0, 1)
+        for split in (left, right, whole):
+            split.setHandleWidth(6)
+            split.setChildrenCollapsible(False)
+        holder = QWidget()
+        layout = QVBoxLayout(holder)
+        layout.setContentsMargins(6, 6, 6, 4)
+        layout.addWidget(whole)
+        self.stack = QStackedWidget()
+        self.stack.addWidget(self.start)
+        self.stack.addWidget(holder)
+        self.setCentralWidget(self.stack)
+        self.setStatusBar(self.status)
+
+    def _tabbed(self, titles: Sequence[str]) -> QTabWidget:
+        tabs = QTabWidget()
+        tabs.setDocumentMode(False)
+        tabs.setAccessibleName(", ".join(titles))
+        for title in titles:
+            number = tabs.addTab(self.panes[title], title)
+            tabs.setTabToolTip(number, self.panes[title].about)
+        self._tabs.append(tabs)
+        return tabs
+
+    def _bar(self) -> QToolBar:
+        bar = QToolBar("Tools")
+        bar.setMovable(False)
+        bar.setContextMenuPolicy(Qt.ContextMenuPolicy.PreventContextMenu)
+        self.addToolBar(bar)
+        return bar
+
+    def _connect(self) -> None:
+        self.desk.changed.connect(self._changed)
+        for pane in self.panes.values():
+            pane.wanted.connect(self._wanted)
+            pane.let_go.connect(self._let_go)
+            pane.looked.connect(self.desk.look)
+            pane.told.connect(self.status.tell)
+            pane.pointed.connect(self._pointed)
+            pane.asked.connect(self.points.asked)
+        for teller in (self.live, self.work, self.points, self.warmer):
+            teller.told.connect(self.status.tell)
+        self.lane.busy.connect(self.status.show_live)
+        self.long_lane.busy.connect(self.status.show_busy)
+        self.long_lane.busy.connect(lambda _: self.actions_table.update(self.desk.session))
+        self.long_lane.progressed.connect(self.status.show_progress)
+        self.status.stop_wanted.connect(self.work.stop)
+        self.start.open_wanted.connect(trouble.guarded("opening", self.files.ask_open))
+        self.start.path_wanted.connect(lambda path: self.open_paths([path]))
+        trouble.bell().arose.connect(self._trouble)
+        QApplication.styleHints().colorSchemeChanged.connect(lambda _: self.dress())
+
+    def _wanted(self, change: Change) -> None:
+        self.desk.apply(change)
+
+    def _let_go(self) -> None:
+        self.desk.close_gesture()
+
+    def _pointed(self, phase: float) -> None:
+        self.phase = phase
+        for pane in self.panes.values():
+            pane.point(phase)
+
+    def _changed(self, session: Session, names: frozenset[str]) -> None:
+        self.setWindowModified(self.desk.unsaved)
+        self.setWindowTitle(
+            f"{session.name}[*] \N{EM DASH} Shadowscale"
+            if session.photometry is not None
+            else "Shadowscale"
+        )
+        self._show(session, names)
+        self.actions_table.update(session)
+        self.status.show_session(session)
+
+    def _show(self, session: Session, names: frozenset[str]) -> None:
+        self.stack.setCurrentIndex(
+            1 if session.photometry is not None or session.velocities is not None else 0
+        )
+        if self.stack.currentIndex() == 0:
+            self.start.offer(sample_sessions(), self.files.recent())
+        for pane in self.panes.values():
+            with trouble.guard(f"showing {pane.title.lower()}"):
+                pane.display(session, names)
+
+    def _trouble(self, found: trouble.Trouble) -> None:
+        dialog = TroubleDialog(found, self)
+        dialog.setAttribute(Qt.WidgetAttribute.WA_DeleteOnClose)
+        dialog.open()
+
+
+def _framed(pane: Pane) -> QFrame:
+    frame = QFrame()
+    frame.setObjectName("card")
+    layout = QVBoxLayout(frame)
+    layout.setContentsMargins(1, 1, 1, 1)
+    layout.addWidget(pane)
+    return frame
+
+
+def run(paths: Sequence[str]) -> int:
+    """Open the window; the process's exit status."""
+    application = QApplication.instance() or QApplication(sys.argv[:1])
+    assert isinstance(application, QApplication)
+    application.setApplicationName("Shadowscale")
+    application.setOrganizationName("Shadowscale")
+    application.setProperty(theme.CHOICE, settings().value(theme.CHOICE, theme.FOLLOW))
+    theme.dress(application)
+    trouble.catch_everything()
+    bench = Bench()
+    bench.show()
+    QTimer.singleShot(0, bench, bench.warmer.start)
+    QTimer.singleShot(0, bench, bench.files.offer_recovery)
+    if paths:
+        QTimer.singleShot(0, bench, lambda: bench.open_paths(paths))
+    return application.exec()

@@ -1,0 +1,200 @@
+"""How a table is going to be read: columns, units, time system, band, each with its reason, all changeable."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from pathlib import Path
+
+from PySide6.QtCore import Qt
+from PySide6.QtWidgets import (
+    QAbstractItemView,
+    QCheckBox,
+    QComboBox,
+    QDialog,
+    QDialogButtonBox,
+    QGridLayout,
+    QLabel,
+    QLineEdit,
+    QTableWidget,
+    QTableWidgetItem,
+    QVBoxLayout,
+    QWidget,
+)
+
+from shadowscale.data import Preview, preview
+from shadowscale_app import trouble
+
+NOT_THERE = "(not in this file)"
+ROLES = {
+    "photometry": ("time", "mag", "flux", "error", "band", "airmass", "quality"),
+    "velocities": ("time", "rv1", "rv1_err", "rv2", "rv2_err", "source"),
+}
+ROLE_WORDS = {
+    "time": "Time", "mag": "Magnitude", "flux": "Flux", "error": "Error", "band": "Band", "airmass": "Airmass",
+    "quality": "Quality flag", "rv1": "Velocity of star 1", "rv1_err": "its error", "rv2": "Velocity of star 2",
+    "rv2_err": "its error", "source": "Source",
+}  # fmt: skip
+TIME_SYSTEMS = ("BJD_TDB", "BJD_UTC", "HJD_UTC", "HJD_TT", "JD_UTC", "MJD", "unknown")
+SHOWN_ROWS = 8
+
+
+@dataclass(frozen=True)
+class Reading:
+    """How the person wants a table read; `adds`: to the present session instead of a new one."""
+
+    columns: Mapping[str, str] = field(default_factory=dict)
+    band: str | None = None
+    adds: bool = False
+
+
+def ask_reading(parent: QWidget | None, path: Path, kind: str) -> Reading | None:
+    """Show the dialog; None if the person gave up."""
+    dialog = ReadingDialog(path, kind, parent)
+    return dialog.reading() if dialog.exec() == QDialog.DialogCode.Accepted else None
+
+
+class ReadingDialog(QDialog):
+    """The dialog: guesses above, the first rows below, what cannot be read at the foot."""
+
+    def __init__(
+        self, path: Path, kind: str, parent: QWidget | None = None, *, may_add: bool = False
+    ) -> None:
+        super().__init__(parent)
+        self.path, self.kind = path, kind
+        self.setWindowTitle(f"Read {kind} from {path.name}")
+        self.resize(820, 560)
+        self._changed: dict[str, str] = {}
+        self.boxes: dict[str, QComboBox] = {}
+        self.reasons: dict[str, QLabel] = {}
+        self.system = QComboBox()
+        self.band = QLineEdit()
+        self.adds = QCheckBox("Add to the present session")
+        self.adds.setVisible(may_add)
+        self.form = QLabel("")
+        self.foot = QLabel("")
+        self.rows = QTableWidget()
+        self.buttons = QDialogButtonBox(
+            QDialogButtonBox.StandardButton.Open | QDialogButtonBox.StandardButton.Cancel
+        )
+        self._place()
+        self._look()
+
+    def reading(self) -> Reading:
+        """What was chosen."""
+        return Reading(dict(self._changed), self.band.text().strip() or None, self.adds.isChecked())
+
+    def choose(self, role: str, column: str) -> None:
+        """Take a column for a role."""
+        self._changed[role] = "" if column == NOT_THERE else column
+        if role in ("mag", "flux") and column != NOT_THERE:
+            self._changed["flux" if role == "mag" else "mag"] = ""
+        self._look()
+
+    def _place(self) -> None:
+        grid = QGridLayout()
+        grid.setHorizontalSpacing(12)
+        grid.setColumnStretch(2, 1)
+        for number, role in enumerate(ROLES[self.kind]):
+            box, reason = QComboBox(), QLabel("")
+            box.setAccessibleName(ROLE_WORDS[role])
+            reason.setObjectName("quiet")
+            reason.setWordWrap(True)
+            box.activated.connect(
+                lambda _, role=role, box=box: self.choose(role, box.currentText())
+            )
+            for column, widget in enumerate((QLabel(ROLE_WORDS[role]), box, reason)):
+                grid.addWidget(widget, number, column)
+            self.boxes[role], self.reasons[role] = box, reason
+        line = len(ROLES[self.kind])
+        self.clock = QLabel("")
+        self.clock.setObjectName("quiet")
+        self.clock.setWordWrap(True)
+        self.system.addItems(TIME_SYSTEMS)
+        self.system.setAccessibleName("Time system")
+        self.system.activated.connect(self._choose_system)
+        for column, widget in enumerate((QLabel("Time system"), self.system, self.clock)):
+            grid.addWidget(widget, line, column)
+        if self.kind == "photometry":
+            self.band.setPlaceholderText("such as V")
+            self.band.setAccessibleName("Band of the whole file")
+            for column, widget in enumerate((QLabel("Band"), self.band)):
+                grid.addWidget(widget, line + 1, column)
+        self.form.setObjectName("quiet")
+        self.foot.setWordWrap(True)
+        self.rows.setEditTriggers(QAbstractItemView.EditTrigger.NoEditTriggers)
+        self.rows.setAccessibleName("First rows of the file")
+        self.rows.setMaximumHeight(210)
+        self.buttons.accepted.connect(self.accept)
+        self.buttons.rejected.connect(self.reject)
+        layout = QVBoxLayout(self)
+        layout.addWidget(self.form)
+        layout.addLayout(grid)
+        layout.addWidget(self.rows)
+        layout.addWidget(self.foot)
+        layout.addStretch(1)
+        layout.addWidget(self.adds)
+        layout.addWidget(self.buttons)
+
+    def _choose_system(self, _: int) -> None:
+        self._changed["time_system"] = self.system.currentText()
+        self._look()
+
+    def _look(self) -> None:
+        try:
+            found = preview(
+                self.path, self.kind, columns=self._changed, band=self.band.text().strip() or None
+            )
+        except Exception as error:
+            self.foot.setText(trouble.trouble_of("reading", error).sentence)
+            self.buttons.button(QDialogButtonBox.StandardButton.Open).setEnabled(False)
+            return
+        self._show(found)
+
+    def _show(self, found: Preview) -> None:
+        count = f"about {found.row_count}" if found.estimated else str(found.row_count)
+        self.form.setText(f"{found.form}, {count} rows")
+        guesses = {guess.role: guess for guess in found.guesses}
+        for role, box in self.boxes.items():
+            box.blockSignals(True)
+            box.clear()
+            box.addItems([NOT_THERE, *found.columns])
+            guess = guesses.get(role)
+            box.setCurrentIndex(box.findText(guess.column) if guess is not None else 0)
+            box.blockSignals(False)
+            unit = f" [{guess.unit}]" if guess is not None and guess.unit else ""
+            self.reasons[role].setText("" if guess is None else guess.reason + unit)
+        if found.clock is not None:
+            if self.system.findText(found.clock.scale) < 0:
+                self.system.addItem(found.clock.scale)
+            self.system.setCurrentText(found.clock.scale)
+            offset = f"; {found.clock.offset:.10g} d is added" if found.clock.offset else ""
+            self.clock.setText(found.clock.reason + offset)
+        if found.bands and not self.band.text():
+            self.band.setPlaceholderText(", ".join(found.bands))
+        self._show_rows(found)
+        self._show_foot(found)
+
+    def _show_rows(self, found: Preview) -> None:
+        rows = found.rows[:SHOWN_ROWS]
+        self.rows.setColumnCount(len(found.columns))
+        self.rows.setHorizontalHeaderLabels(list(found.columns))
+        self.rows.setRowCount(len(rows))
+        for number, row in enumerate(rows):
+            for column, text in enumerate(row):
+                item = QTableWidgetItem(text)
+                item.setTextAlignment(
+                    int(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
+                )
+                self.rows.setItem(number, column, item)
+        self.rows.resizeColumnsToContents()
+
+    def _show_foot(self, found: Preview) -> None:
+        lines = [str(problem) for problem in found.problems]
+        lines += list(found.notes)
+        lines += [f"line {row.line} is left out: {row.reason}" for row in found.unreadable[:4]]
+        if len(found.unreadable) > 4:
+            lines.append(f"and {len(found.unreadable) - 4} more lines are left out")
+        self.foot.setText("\n".join(lines))
+        usable = not found.problems and bool(found.guesses)
+        self.buttons.button(QDialogButtonBox.StandardButton.Open).setEnabled(usable)

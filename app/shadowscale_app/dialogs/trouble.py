@@ -1,0 +1,31 @@
+"""The window that shows a trouble: the sentence, details folded, copy."""
+
+from __future__ import annotations
+
+from PySide6.QtGui import QGuiApplication
+from PySide6.QtWidgets import QMessageBox, QWidget
+
+from shadowscale_app.trouble import Trouble
+
+
+class TroubleDialog(QMessageBox):
+    """Readable and copyable; it says that the session is as it was."""
+
+    def __init__(self, trouble: Trouble, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.trouble = trouble
+        expected = QMessageBox.Icon.Warning if trouble.expected else QMessageBox.Icon.Critical
+        self.setIcon(expected)
+        self.setWindowTitle("Shadowscale")
+        self.setText(f"This happened while {trouble.doing}:")
+        self.setInformativeText(f"{trouble.sentence}\n\nThe session is as it was.")
+        if not trouble.expected:
+            self.setDetailedText(trouble.details)
+        copy = self.addButton("Copy", QMessageBox.ButtonRole.ActionRole)
+        copy.clicked.disconnect()
+        copy.clicked.connect(self.copy)
+        self.addButton(QMessageBox.StandardButton.Ok)
+
+    def copy(self) -> None:
+        """Put all of it on the clipboard."""
+        QGuiApplication.clipboard().setText(self.trouble.whole)

@@ -1,0 +1,1 @@
+"""Qt item models over the engine's rows and results; no widget."""

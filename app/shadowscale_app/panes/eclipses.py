@@ -1,0 +1,83 @@
+"""Each eclipse enlarged, with its residuals."""
+
+from __future__ import annotations
+
+from PySide6.QtCore import Qt
+from PySide6.QtWidgets import QHBoxLayout, QLabel, QSplitter, QVBoxLayout, QWidget
+
+from shadowscale.session.session import Markers
+from shadowscale_app.panes.light_pair import LightPair
+from shadowscale_app.panes.marking import Marking
+from shadowscale_app.panes.pane import Pane
+
+PLAIN = {"primary": (-0.1, 0.1), "secondary": (0.4, 0.6)}
+MARGIN = 0.28  # of the duration, to either side
+
+
+class EclipsesPane(Pane):
+    """Primary eclipse on the left, secondary on the right."""
+
+    title = "Eclipses"
+    about = (
+        "Both eclipses enlarged. Lines 1 and 4 mark where the eclipse begins and ends, 2 and 3 where its bottom "
+        "begins and ends; in a partial eclipse 2 and 3 fall together. Below, what the model leaves over: a good "
+        "model leaves a flat band of noise."
+    )
+
+    def __init__(self, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.pairs = {
+            part: LightPair(
+                f"{part.capitalize()} eclipse",
+                groups=("contact",),
+                only=f"{part}.",
+                bin_width=0.001,
+            )
+            for part in PLAIN
+        }
+        self.marking = Marking(self, tuple(self.pairs.values()))
+        split = QSplitter(Qt.Orientation.Horizontal)
+        split.setHandleWidth(4)
+        split.setChildrenCollapsible(False)
+        for part, pair in self.pairs.items():
+            pair.pointed.connect(self.pointed)
+            split.addWidget(_titled(f"{part.capitalize()} eclipse", pair))
+            self._zoom(part, None)
+        layout = QHBoxLayout(self)
+        layout.setContentsMargins(0, 0, 0, 0)
+        layout.addWidget(split)
+
+    def refresh(self, names: frozenset[str]) -> None:
+        """Draw what changed; the view follows the markers only with another set of points or model."""
+        for pair in self.pairs.values():
+            pair.show_light(self.session, names)
+        if "photometry" in names or ("solution" in names and "markers" not in names):
+            for part in PLAIN:
+                self._zoom(part, self.session.markers)
+
+    def point(self, phase: float) -> None:
+        """Show the phase under the cursor."""
+        for pair in self.pairs.values():
+            pair.point(phase)
+
+    def _zoom(self, part: str, markers: Markers | None) -> None:
+        contacts = None if markers is None else getattr(markers, part)
+        low, high = PLAIN[part] if contacts is None else (contacts[0], contacts[3])
+        margin = MARGIN * (high - low) if contacts is not None else 0.0
+        curve = self.pairs[part].curve
+        if curve.home_x != (low - margin, high + margin):
+            curve.home_x = (low - margin, high + margin)
+            curve.setXRange(*curve.home_x, padding=0)
+
+
+def _titled(words: str, inner: QWidget) -> QWidget:
+    holder = QWidget()
+    layout = QVBoxLayout(holder)
+    layout.setContentsMargins(0, 2, 0, 0)
+    layout.setSpacing(0)
+    label = QLabel(words)
+    label.setObjectName("title")
+    label.setContentsMargins(66, 0, 0, 0)
+    layout.addWidget(label)
+    layout.addWidget(inner, 1)
+    return holder

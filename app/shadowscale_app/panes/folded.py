@@ -1,0 +1,39 @@
+"""The folded curve: all points over phase, the model, the markers."""
+
+from __future__ import annotations
+
+from PySide6.QtWidgets import QVBoxLayout, QWidget
+
+from shadowscale_app.panes.light_pair import LightPair
+from shadowscale_app.panes.marking import Marking
+from shadowscale_app.panes.pane import Pane
+
+
+class FoldedPane(Pane):
+    """Light over phase \N{MINUS SIGN}0.25 to 0.75."""
+
+    title = "Folded curve"
+    about = (
+        "Every measurement at its phase in the orbit. Phase 0 is the middle of primary eclipse. The solid line "
+        "is the fitted model, the dashed line the model that your contact markers alone give. Bars along the top "
+        "are the eclipse windows and the stretches outside eclipse; crosses are points set aside."
+    )
+
+    def __init__(self, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.pair = LightPair("Folded curve", groups=("contact", "window"))
+        self.pair.curve.home_x = (-0.26, 0.76)
+        self.pair.curve.setXRange(-0.26, 0.76, padding=0)
+        self.pair.pointed.connect(self.pointed)
+        self.marking = Marking(self, (self.pair,))
+        layout = QVBoxLayout(self)
+        layout.setContentsMargins(0, 0, 0, 0)
+        layout.addWidget(self.pair)
+
+    def refresh(self, names: frozenset[str]) -> None:
+        """Draw what changed."""
+        self.pair.show_light(self.session, names)
+
+    def point(self, phase: float) -> None:
+        """Show the phase under the cursor."""
+        self.pair.point(phase)

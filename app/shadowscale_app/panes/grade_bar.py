@@ -1,0 +1,64 @@
+"""How well the data hold a quantity, at a glance: a bar of the relative error, and a correlation."""
+
+from __future__ import annotations
+
+from math import log10
+
+from PySide6.QtCore import QModelIndex, QPersistentModelIndex, QRectF, Qt
+from PySide6.QtGui import QColor, QPainter
+from PySide6.QtWidgets import QStyledItemDelegate, QStyleOptionViewItem
+
+from shadowscale.view.rows import BADLY, FAIRLY, STRONG, WELL, Row
+from shadowscale_app import theme
+from shadowscale_app.models.quantities import ROW
+
+BAR = 46.0
+SIGNS = {WELL: "", FAIRLY: "!", BADLY: "!!"}
+
+
+class GradeBar(QStyledItemDelegate):
+    """Paints a bar from 0.01 % (short) to 100 % (full), coloured and signed by its grade."""
+
+    def paint(
+        self,
+        painter: QPainter,
+        option: QStyleOptionViewItem,
+        index: QModelIndex | QPersistentModelIndex,
+    ) -> None:
+        """Paint bar, sign and correlation."""
+        row: Row = index.data(ROW)
+        now = theme.colours()
+        painter.save()
+        area = QRectF(option.rect).adjusted(5, 0, -3, 0)
+        if row.relative is not None and row.relative > 0:
+            self._bar(painter, area, row, now)
+        if row.strongest:
+            strong = abs(row.correlation) >= STRONG
+            painter.setPen(QColor(now.badly if strong else now.quiet))
+            painter.setFont(theme.small_font(-1.0))
+            words = area.adjusted(BAR + 18, 0, 0, 0)
+            text = painter.fontMetrics().elidedText(
+                row.strongest, Qt.TextElideMode.ElideRight, int(words.width())
+            )
+            painter.drawText(
+                words, Qt.AlignmentFlag.AlignVCenter | Qt.AlignmentFlag.AlignLeft, text
+            )
+        painter.restore()
+
+    def _bar(self, painter: QPainter, area: QRectF, row: Row, now: theme.Colours) -> None:
+        share = min(1.0, max(0.06, (log10(row.relative or 1e-4) + 4.0) / 4.0))
+        tint = QColor(
+            {WELL: now.well, FAIRLY: now.fairly, BADLY: now.badly}.get(row.grade, now.quiet)
+        )
+        ground = QRectF(area.left(), area.center().y() - 2.5, BAR, 5)
+        painter.setPen(Qt.PenStyle.NoPen)
+        painter.setBrush(QColor(now.grid))
+        painter.drawRoundedRect(ground, 2, 2)
+        painter.setBrush(tint)
+        painter.drawRoundedRect(QRectF(ground.left(), ground.top(), BAR * share, 5), 2, 2)
+        painter.setPen(tint)
+        painter.drawText(
+            QRectF(ground.right() + 3, area.top(), 14, area.height()),
+            Qt.AlignmentFlag.AlignVCenter,
+            SIGNS.get(row.grade, ""),
+        )

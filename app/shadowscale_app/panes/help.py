@@ -1,0 +1,52 @@
+"""What each picture shows, and the keys."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from html import escape
+
+from PySide6.QtWidgets import QTextBrowser, QVBoxLayout, QWidget
+
+from shadowscale_app.panes.pane import Pane
+
+MARKER_KEYS = (
+    ("Tab, Shift+Tab", "next, previous marker in a picture"),
+    (
+        "\N{LEFTWARDS ARROW} \N{RIGHTWARDS ARROW}",
+        "move the marker; with Shift coarse, with Alt fine, with Ctrl one side alone",
+    ),
+    ("Enter", "type the marker's phase"),
+    ("Escape", "put the marker back"),
+    (
+        "wheel, drag",
+        "zoom, move a picture; Shift and drag zooms into a rectangle; double click shows everything",
+    ),
+)
+
+
+class HelpPane(Pane):
+    """One page, made from the panes' own words and the table of actions."""
+
+    title = "Help"
+    about = "What each picture shows, and all keys."
+
+    def __init__(self, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.text = QTextBrowser()
+        self.text.setFrameShape(QTextBrowser.Shape.NoFrame)
+        self.text.setAccessibleName("Help")
+        layout = QVBoxLayout(self)
+        layout.setContentsMargins(0, 0, 0, 0)
+        layout.addWidget(self.text)
+
+    def write(self, panes: Iterable[Pane], keys: Iterable[tuple[str, str]]) -> None:
+        """Write the page."""
+        parts = ["<h3>What each picture shows</h3>"]
+        parts += [f"<p><b>{escape(pane.title)}.</b> {escape(pane.about)}</p>" for pane in panes]
+        parts.append("<h3>Keys</h3><table cellpadding='2'>")
+        for key, words in (*keys, *MARKER_KEYS):
+            parts.append(
+                f"<tr><td><b>{escape(key)}</b>&nbsp;&nbsp;</td><td>{escape(words)}</td></tr>"
+            )
+        parts.append("</table>")
+        self.text.setHtml("".join(parts))

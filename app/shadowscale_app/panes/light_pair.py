@@ -1,0 +1,190 @@
+"""Light and residuals over phase, one above the other: the picture of the folded curve and of each eclipse."""
+
+from __future__ import annotations
+
+import pyqtgraph as pg
+from PySide6.QtCore import Qt, Signal
+from PySide6.QtWidgets import QSplitter, QVBoxLayout, QWidget
+
+from shadowscale.session.session import Session
+from shadowscale.view.bins import binned
+from shadowscale.view.curves import Curve, contact_curves, light_curves
+from shadowscale.view.light_points import LightPoints, band_shifts, light_over_phase, sensible_range
+from shadowscale.view.looks import Look, look_of
+from shadowscale_app import theme
+from shadowscale_app.plots.marked import MarkedPicture
+from shadowscale_app.plots.picture import Picture
+from shadowscale_app.plots.points import Layer, Points
+
+LIGHT = frozenset({"photometry", "system", "solution", "view", "plan", "exclusions"})
+POINTS = frozenset({"photometry", "solution", "view", "plan", "exclusions"})
+
+
+class LightPair(QWidget):
+    """A marked picture of the light and a lower one of the residuals."""
+
+    pointed = Signal(float)
+
+    def __init__(
+        self, name: str, *, groups: tuple[str, ...], only: str = "", bin_width: float = 0.004
+    ) -> None:
+        super().__init__()
+        self.only, self.bin_width = only, bin_width
+        self.curve = MarkedPicture(name, groups=groups, only=only)
+        self.rest = Picture(f"Residuals, {name.lower()}", bottom="phase")
+        self.points, self.rest_points = Points(), Points()
+        self._models: list[pg.PlotCurveItem] = []
+        self._fits = (False, False)
+        self._cursor = [_cursor_line(), _cursor_line()]
+        self._zero = pg.InfiniteLine(0.0, angle=0)
+        self._shifts: tuple[float, ...] = ()
+        self._place()
+
+    def show_light(self, session: Session, names: frozenset[str]) -> None:
+        """Draw what changed."""
+        look = look_of(session.view)
+        if names & POINTS:
+            self._show_points(session, look)
+        if names & LIGHT or names & {"markers", "contact"}:
+            self._show_models(session, look)
+        if names & {"markers", "view"}:
+            groups = (
+                look.groups if not self.only else tuple(g for g in look.groups if g == "contact")
+            )
+            self.curve.show_groups(groups, session.markers)
+        if names & {"view", "system", "plan"}:
+            self._show_axes(session, look)
+
+    def point(self, phase: float) -> None:
+        """Show the phase under the cursor."""
+        for line in self._cursor:
+            line.setPos(phase)
+            line.setVisible(True)
+
+    def dress(self) -> None:
+        """Take the theme's colours."""
+        now = theme.colours()
+        self._zero.setPen(pg.mkPen(now.model, width=1.2))
+        for line in self._cursor:
+            line.setPen(pg.mkPen(now.quiet, width=1, style=Qt.PenStyle.DotLine))
+
+    def _place(self) -> None:
+        split = QSplitter(Qt.Orientation.Vertical)
+        split.addWidget(self.curve)
+        split.addWidget(self.rest)
+        split.setStretchFactor(0, 3)
+        split.setStretchFactor(1, 1)
+        split.setSizes([300, 110])
+        split.setHandleWidth(2)
+        split.setChildrenCollapsible(False)
+        layout = QVBoxLayout(self)
+        layout.setContentsMargins(0, 0, 0, 0)
+        layout.addWidget(split)
+        self.curve.getAxis("bottom").setStyle(showValues=False)
+        self.curve.getAxis("bottom").setHeight(6)
+        self.rest.link_x(self.curve)
+        self.curve.addItem(self.points)
+        self.rest.addItem(self.rest_points)
+        self.rest.addItem(self._zero, ignoreBounds=True)
+        for picture, line in zip((self.curve, self.rest), self._cursor, strict=True):
+            line.setVisible(False)
+            picture.addItem(line, ignoreBounds=True)
+            picture.pointed.connect(self.pointed)
+        self.dress()
+
+    def _show_points(self, session: Session, look: Look) -> None:
+        light = _visible(light_over_phase(session, magnitudes=look.magnitudes), look)
+        self._shifts = band_shifts(light, magnitudes=look.magnitudes)
+        count = len(session.photometry.bands) if session.photometry is not None else 0
+        self.points.show_layers(self._layers(light, look, shifts=self._shifts, bands=count))
+        rest = _visible(light_over_phase(session, magnitudes=look.magnitudes, residuals=True), look)
+        level = tuple(0.0 for _ in rest)
+        self.rest_points.show_layers(self._layers(rest, look, shifts=level, bands=count))
+        for picture, points, shifts in (
+            (self.curve, light, self._shifts),
+            (self.rest, rest, level),
+        ):
+            found = sensible_range(points, shifts)
+            if found is not None:
+                picture.home_y = found
+                picture.setYRange(*found, padding=0)
+
+    def _layers(
+        self, light: tuple[LightPoints, ...], look: Look, *, shifts: tuple[float, ...], bands: int
+    ) -> tuple[Layer, ...]:
+        now = theme.colours()
+        found: list[Layer] = []
+        for points, shift in zip(light, shifts, strict=True):
+            tint = now.band(points.band, bands)
+            shape = theme.BAND_SHAPES[points.band % len(theme.BAND_SHAPES)]
+            good, aside = points.used, ~points.used
+            faint = 0.25 if look.binned else 0.75
+            found.append(
+                Layer(
+                    points.x[good],
+                    points.y[good] + shift,
+                    None if look.binned else points.error[good],
+                    tint,
+                    shape,
+                    4.5 if not self.only else 5.5,
+                    faint,
+                )
+            )
+            found.append(
+                Layer(points.x[aside], points.y[aside] + shift, None, now.aside, "x", 6.0, 0.8)
+            )
+            if look.binned:
+                bins = binned(
+                    points.x[good], points.y[good], points.error[good], width=self.bin_width
+                )
+                found.append(Layer(bins.x, bins.y + shift, bins.error, tint, shape, 6.5, 1.0))
+        return tuple(found)
+
+    def _show_models(self, session: Session, look: Look) -> None:
+        for item in self._models:
+            self.curve.removeItem(item)
+        self._models = []
+        if session.system is None:
+            return
+        now = theme.colours()
+        fitted = light_curves(session.system, markers=session.markers, magnitudes=look.magnitudes)
+        self._add_curves(fitted, look, pen=pg.mkPen(now.model, width=2.0))
+        contacts = contact_curves(session, magnitudes=look.magnitudes)
+        self._add_curves(
+            contacts, look, pen=pg.mkPen(now.contact, width=1.3, style=Qt.PenStyle.DashLine)
+        )
+
+    def _add_curves(self, curves: tuple[Curve, ...], look: Look, *, pen: pg.QtGui.QPen) -> None:
+        shown = [curve for curve in curves if curve.label not in look.hidden]
+        shifts = self._shifts if len(self._shifts) == len(shown) else (0.0,) * len(shown)
+        for curve, shift in zip(shown, shifts, strict=True):
+            item = pg.PlotCurveItem(curve.x, curve.y + shift, pen=pen, antialias=True)
+            item.setZValue(10)
+            self.curve.addItem(item, ignoreBounds=True)
+            self._models.append(item)
+
+    def _show_axes(self, session: Session, look: Look) -> None:
+        for picture in (self.curve, self.rest):
+            picture.box.invertY(look.magnitudes)
+        self.curve.setLabel("left", "magnitude" if look.magnitudes else "light")
+        self.rest.setLabel("left", "O \N{MINUS SIGN} C")
+        period = (
+            session.system.value("period") if session.system is not None else session.plan.period
+        )
+        axis = self.rest.getAxis("bottom")
+        if look.hours and period is not None:
+            axis.setScale(period * 24.0)
+            axis.setLabel("hours from mid primary eclipse")
+        else:
+            axis.setScale(1.0)
+            axis.setLabel("phase")
+
+
+def _visible(light: tuple[LightPoints, ...], look: Look) -> tuple[LightPoints, ...]:
+    return tuple(points for points in light if points.label not in look.hidden)
+
+
+def _cursor_line() -> pg.InfiniteLine:
+    line = pg.InfiniteLine(0.0, angle=90)
+    line.setZValue(-3)
+    return line

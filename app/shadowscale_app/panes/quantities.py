@@ -1,0 +1,206 @@
+"""The table of quantities: value, error, state, limits; typing or the slider changes the model at once."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+
+from PySide6.QtCore import QModelIndex, QPoint, Qt
+from PySide6.QtGui import QAction, QGuiApplication, QKeySequence
+from PySide6.QtWidgets import (
+    QAbstractItemView,
+    QHBoxLayout,
+    QHeaderView,
+    QLabel,
+    QMenu,
+    QSlider,
+    QTableView,
+    QVBoxLayout,
+    QWidget,
+)
+
+from shadowscale.session.session import Session
+from shadowscale.view.rows import FREE, HELD, WITH_PRIOR, Row, quantity_rows, with_state, with_value
+from shadowscale_app.desk import Change
+from shadowscale_app.models.quantities import (
+    GRADE,
+    LIMITS,
+    STATE,
+    SYMBOL,
+    UNIT,
+    VALUE,
+    QuantityModel,
+    as_text,
+)
+from shadowscale_app.panes.grade_bar import GradeBar
+from shadowscale_app.panes.pane import Pane
+
+REACH = 100  # slider steps to either side of where it was taken up
+WATCHED = frozenset({"system", "solution", "plan"})
+WIDTHS = {SYMBOL: 74, VALUE: 92, 2: 92, UNIT: 40, STATE: 82, GRADE: 158}
+
+
+class QuantitiesPane(Pane):
+    """Table and slider."""
+
+    title = "Quantities"
+    about = (
+        "Every number of the model and what follows from it. Free ones are fitted, held ones stay, a prior pulls. "
+        "Type a value or use the slider below to see what it does to the curve; double-click the state to change it. "
+        "The bar shows the error relative to the value: green below 1 %, one sign above, two signs above 5 %."
+    )
+
+    def __init__(self, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.model = QuantityModel()
+        self.table = QTableView()
+        self.slider = QSlider(Qt.Orientation.Horizontal)
+        self.name = QLabel("Choose a quantity to move it")
+        self.name.setObjectName("quiet")
+        self._from = 0.0
+        self._gesture = 0
+        self._make_table()
+        self._make_slider()
+        row = QHBoxLayout()
+        row.setContentsMargins(8, 3, 8, 4)
+        row.addWidget(self.name)
+        row.addWidget(self.slider, 1)
+        layout = QVBoxLayout(self)
+        layout.setContentsMargins(0, 0, 0, 0)
+        layout.setSpacing(0)
+        layout.addWidget(self.table, 1)
+        layout.addLayout(row)
+
+    def refresh(self, names: frozenset[str]) -> None:
+        """Show the rows anew."""
+        if names & WATCHED:
+            self.model.show_rows(quantity_rows(self.session))
+            self._name_slider()
+
+    def chosen(self) -> Row | None:
+        """The row that the table has selected."""
+        index = self.table.currentIndex()
+        return (
+            self.model.rows[index.row()]
+            if index.isValid() and index.row() < len(self.model.rows)
+            else None
+        )
+
+    def set_value(self, key: str, value: float, merge: str = "") -> None:
+        """Ask for a value."""
+        self._ask(f"Set {key}", lambda session: with_value(session, key, value), merge)
+
+    def set_state(self, key: str, state: str) -> None:
+        """Ask for a state: free, held, with prior."""
+        self._ask(f"Make {key} {state}", lambda session: with_state(session, key, state))
+
+    def _ask(self, label: str, change: Callable[[Session], Session], merge: str = "") -> None:
+        try:
+            session = change(self.session)
+        except ValueError as problem:
+            self.told.emit(str(problem))
+            return
+        self.wanted.emit(Change(label, session, merge))
+
+    def _make_table(self) -> None:
+        table = self.table
+        table.setModel(self.model)
+        table.setAccessibleName("Table of quantities")
+        table.setItemDelegateForColumn(GRADE, GradeBar(table))
+        table.setSelectionBehavior(QAbstractItemView.SelectionBehavior.SelectRows)
+        table.setSelectionMode(QAbstractItemView.SelectionMode.ExtendedSelection)
+        table.setAlternatingRowColors(True)
+        table.setShowGrid(False)
+        table.setWordWrap(False)
+        table.setTabKeyNavigation(False)
+        table.verticalHeader().hide()
+        table.verticalHeader().setDefaultSectionSize(22)
+        header = table.horizontalHeader()
+        header.setStretchLastSection(True)
+        header.setHighlightSections(False)
+        header.setDefaultAlignment(Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignVCenter)
+        for column, width in WIDTHS.items():
+            header.resizeSection(column, width)
+        header.setSectionResizeMode(LIMITS, QHeaderView.ResizeMode.Stretch)
+        table.setContextMenuPolicy(Qt.ContextMenuPolicy.CustomContextMenu)
+        table.customContextMenuRequested.connect(self._menu)
+        table.doubleClicked.connect(self._double_clicked)
+        table.selectionModel().currentChanged.connect(self._name_slider)
+        self.model.typed.connect(self.set_value)
+        self.model.refused.connect(self.told)
+        copy = QAction("Copy rows", table)
+        copy.setShortcut(QKeySequence.StandardKey.Copy)
+        copy.setShortcutContext(Qt.ShortcutContext.WidgetShortcut)
+        copy.triggered.connect(self.copy)
+        table.addAction(copy)
+
+    def _make_slider(self) -> None:
+        self.slider.setRange(-REACH, REACH)
+        self.slider.setAccessibleName("Move the chosen quantity")
+        self.slider.setEnabled(False)
+        self.slider.sliderPressed.connect(self._take_up)
+        self.slider.valueChanged.connect(self._slid)
+        self.slider.sliderReleased.connect(self._let_go)
+
+    def copy(self) -> None:
+        """Put the selected rows (all if none) on the clipboard."""
+        numbers = sorted({index.row() for index in self.table.selectionModel().selectedRows()})
+        rows = tuple(self.model.rows[number] for number in numbers) or self.model.rows
+        QGuiApplication.clipboard().setText(as_text(rows))
+
+    def _menu(self, place: QPoint) -> None:
+        row = self.chosen()
+        menu = QMenu(self)
+        if row is not None and row.basic:
+            for state, words in (
+                (FREE, "Free: fit it"),
+                (HELD, "Hold it here"),
+                (WITH_PRIOR, "With prior at its present error"),
+            ):
+                action = menu.addAction(words)
+                action.setEnabled(row.state != state)
+                action.triggered.connect(
+                    lambda _=False, key=row.key, state=state: self.set_state(key, state)
+                )
+            menu.addAction(
+                "Prior\N{HORIZONTAL ELLIPSIS}", lambda: self.asked.emit("prior", row.key)
+            )
+            menu.addSeparator()
+        menu.addAction("Copy rows", self.copy)
+        menu.exec(self.table.viewport().mapToGlobal(place))
+
+    def _double_clicked(self, index: QModelIndex) -> None:
+        row = self.model.rows[index.row()]
+        if index.column() == STATE and row.basic:
+            self.set_state(row.key, HELD if row.state != HELD else FREE)
+
+    def _name_slider(self, *_: object) -> None:
+        row = self.chosen()
+        usable = row is not None and row.basic
+        self.slider.setEnabled(usable)
+        self.name.setText(
+            row.symbol if row is not None and usable else "Choose a quantity to move it"
+        )
+        if not self.slider.isSliderDown():
+            self._centre()
+
+    def _centre(self) -> None:
+        row = self.chosen()
+        self._from = row.value if row is not None else 0.0
+        self.slider.blockSignals(True)
+        self.slider.setValue(0)
+        self.slider.blockSignals(False)
+
+    def _take_up(self) -> None:
+        self._centre()
+        self._gesture += 1
+
+    def _slid(self, steps: int) -> None:
+        row = self.chosen()
+        if row is None or not row.basic:
+            return
+        value = min(max(self._from + steps * row.step, row.lower), row.upper)
+        self.set_value(row.key, value, merge=f"slide {row.key} {self._gesture}")
+
+    def _let_go(self) -> None:
+        self._centre()
+        self.let_go.emit()

@@ -1,0 +1,213 @@
+"""What the solution is asked to do: law, orbit, levels, small effects, exposure, bands; each explained."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import replace
+
+from PySide6.QtCore import Qt
+from PySide6.QtWidgets import (
+    QComboBox,
+    QDoubleSpinBox,
+    QFormLayout,
+    QGroupBox,
+    QLabel,
+    QScrollArea,
+    QVBoxLayout,
+    QWidget,
+)
+
+from shadowscale.data.photometry import Photometry
+from shadowscale.fit.plan import EFFECT_STATES, EFFECTS, LEVELS, ORBITS, Plan
+from shadowscale.quantities import QUANTITIES
+from shadowscale.view.wishes import (
+    EFFECT_WORDS,
+    LAW_NAMES,
+    LEVEL_WORDS,
+    ORBIT_WORDS,
+    third_light_wish,
+    with_third_light,
+)
+from shadowscale_app.desk import Change
+from shadowscale_app.panes.pane import Pane
+
+THIRD = ("held", "free")
+
+
+class SettingsPane(Pane):
+    """Controls over the plan."""
+
+    title = "Settings"
+    about = (
+        "What the fit may do. Every choice has its sentence when you rest the mouse on it. A change starts the fit "
+        "anew and can be undone."
+    )
+
+    def __init__(self, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.boxes: dict[str, QComboBox] = {}
+        self.exposure = QDoubleSpinBox()
+        self._bands: tuple[str, ...] = ()
+        self._filling = False
+        inner = QWidget()
+        self._column = QVBoxLayout(inner)
+        self._column.setContentsMargins(10, 4, 10, 8)
+        self._make_model_group()
+        self._make_effects_group()
+        self._band_group = QGroupBox("Bands")
+        self._band_form = QFormLayout(self._band_group)
+        self._column.addWidget(self._band_group)
+        self._column.addStretch(1)
+        area = QScrollArea()
+        area.setWidget(inner)
+        area.setWidgetResizable(True)
+        area.setFrameShape(QScrollArea.Shape.NoFrame)
+        area.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+        layout = QVBoxLayout(self)
+        layout.setContentsMargins(0, 0, 0, 0)
+        layout.addWidget(area)
+
+    def refresh(self, names: frozenset[str]) -> None:
+        """Show the plan."""
+        if "photometry" in names:
+            self._make_bands(self.session.photometry)
+        if not names & {"plan", "photometry", "system"}:
+            return
+        plan = self.session.plan
+        self._filling = True
+        self._select("law", plan.law)
+        self._select("orbit", plan.orbit)
+        self._select("levels", plan.levels)
+        self._select("light_time", plan.light_time)
+        for effect in EFFECTS:
+            self._select(effect, plan.effects.get(effect, "off"))
+        for band in self._bands:
+            self._select(f"third {band}", third_light_wish(plan, band))
+        self.exposure.setValue(plan.exposure)
+        self._filling = False
+
+    def _make_model_group(self) -> None:
+        group = QGroupBox("Model")
+        form = QFormLayout(group)
+        form.addRow(
+            "Limb darkening",
+            self._box(
+                "law",
+                LAW_NAMES,
+                "Limb-darkening law of both stars: how their discs fade towards the edge.",
+                lambda plan, text: replace(plan, law=text),
+            ),
+        )
+        form.addRow(
+            "Orbit",
+            self._box(
+                "orbit",
+                ORBITS,
+                "Circular, eccentric, or as the data decide; the sheet says how they did.",
+                lambda plan, text: replace(plan, orbit=text),
+                ORBIT_WORDS,
+            ),
+        )
+        form.addRow(
+            "Light level",
+            self._box(
+                "levels",
+                LEVELS,
+                "What is solved beside the model: one level a band, one a night, or a level and a slope a night.",
+                lambda plan, text: replace(plan, levels=text),
+                LEVEL_WORDS,
+            ),
+        )
+        form.addRow(
+            "Light time",
+            self._box(
+                "light_time",
+                ("auto", "off"),
+                "Each star is seen where its own light left it; needs velocities.",
+                lambda plan, text: replace(plan, light_time=text),
+            ),
+        )
+        self.exposure.setRange(0.0, 86400.0)
+        self.exposure.setDecimals(1)
+        self.exposure.setSuffix(" s")
+        self.exposure.setKeyboardTracking(False)
+        self.exposure.setAccessibleName("Exposure time")
+        self.exposure.setToolTip(
+            "The model is averaged over each exposure; long ones smear ingress and egress."
+        )
+        self.exposure.valueChanged.connect(
+            lambda value: self._ask("Set exposure", replace(self.session.plan, exposure=value))
+        )
+        form.addRow("Exposure", self.exposure)
+        self._column.addWidget(group)
+
+    def _make_effects_group(self) -> None:
+        group = QGroupBox("Small effects")
+        form = QFormLayout(group)
+        for effect in EFFECTS:
+            form.addRow(
+                effect.capitalize(),
+                self._box(
+                    effect,
+                    EFFECT_STATES,
+                    EFFECT_WORDS[effect] + " " + QUANTITIES[f"{effect}1"].effect,
+                    lambda plan, text, effect=effect: replace(
+                        plan, effects={**plan.effects, effect: text}
+                    ),
+                ),
+            )
+        self._column.addWidget(group)
+
+    def _make_bands(self, photometry: Photometry | None) -> None:
+        bands = () if photometry is None else photometry.bands
+        if bands == self._bands:
+            return
+        while self._band_form.rowCount():
+            self._band_form.removeRow(0)
+        for band in self._bands:
+            self.boxes.pop(f"third {band}", None)
+        self._bands = bands
+        for band in bands:
+            words = QLabel(f"Third light in {band}")
+            tip = (
+                QUANTITIES["third_light"].effect
+                + " Third light and inclination are hard to tell apart."
+            )
+            box = self._box(
+                f"third {band}",
+                THIRD,
+                tip,
+                lambda plan, text, band=band: with_third_light(plan, band, free=text == "free"),
+            )
+            self._band_form.addRow(words, box)
+
+    def _box(
+        self,
+        name: str,
+        values: tuple[str, ...],
+        tip: str,
+        change: Callable[[Plan, str], Plan],
+        words: dict[str, str] | None = None,
+    ) -> QComboBox:
+        box = QComboBox()
+        for value in values:
+            box.addItem((words or {}).get(value, value), value)
+        box.setToolTip(tip)
+        box.setAccessibleName(name.replace("_", " ").capitalize())
+        box.setAccessibleDescription(tip)
+        label = f"Set {name.replace('_', ' ')}"
+        box.activated.connect(
+            lambda _: self._ask(
+                f"{label} to {box.currentText()}", change(self.session.plan, box.currentData())
+            )
+        )
+        self.boxes[name] = box
+        return box
+
+    def _select(self, name: str, value: str) -> None:
+        box = self.boxes[name]
+        box.setCurrentIndex(max(0, box.findData(value)))
+
+    def _ask(self, label: str, plan: Plan) -> None:
+        if not self._filling and plan != self.session.plan:
+            self.wanted.emit(Change(label, replace(self.session, plan=plan)))

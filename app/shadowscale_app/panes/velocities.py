@@ -1,0 +1,123 @@
+"""Velocity curves of both stars with their residuals."""
+
+from __future__ import annotations
+
+import pyqtgraph as pg
+from PySide6.QtCore import Qt
+from PySide6.QtWidgets import QLabel, QSplitter, QVBoxLayout, QWidget
+
+from shadowscale.view.curves import velocity_curves
+from shadowscale.view.velocity_points import VelocityPoints, velocities_over_phase
+from shadowscale_app import theme
+from shadowscale_app.panes.pane import Pane
+from shadowscale_app.plots.picture import Picture
+from shadowscale_app.plots.points import Layer, Points
+
+SHAPES = {1: "o", 2: "s"}
+DASHES = {1: Qt.PenStyle.SolidLine, 2: Qt.PenStyle.DashLine}
+WATCHED = frozenset({"velocities", "system", "solution", "plan"})
+NOTHING = "No velocities. Open a table of them to weigh the stars: masses need K1 and K2."
+
+
+class VelocitiesPane(Pane):
+    """Velocities over phase."""
+
+    title = "Velocities"
+    about = (
+        "How fast each star moves towards us or away over the orbit. Circles and the solid line are star 1, "
+        "squares and the dashed line star 2. Half the swing of a curve is K; the heavier star swings less. "
+        "Offsets between sources are taken off."
+    )
+
+    def __init__(self, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.curve = Picture("Velocity curves", left="km/s")
+        self.rest = Picture(
+            "Residuals of the velocities", left="O \N{MINUS SIGN} C", bottom="phase"
+        )
+        self.points, self.rest_points = Points(), Points()
+        self._lines: list[pg.InfiniteLine | pg.PlotCurveItem] = []
+        self._cursor = pg.InfiniteLine(0.0, angle=90)
+        self._cursor.setVisible(False)
+        self.nothing = QLabel(NOTHING)
+        self.nothing.setObjectName("quiet")
+        self.nothing.setAlignment(Qt.AlignmentFlag.AlignCenter)
+        self.nothing.setWordWrap(True)
+        self._place()
+
+    def refresh(self, names: frozenset[str]) -> None:
+        """Draw what changed."""
+        if not names & WATCHED and "view" not in names:
+            return
+        found = velocities_over_phase(self.session)
+        self.nothing.setVisible(not found)
+        self.split.setVisible(bool(found))
+        self.points.show_layers(_layers(found, residual=False))
+        self.rest_points.show_layers(_layers(found, residual=True))
+        self._show_models(bool(found))
+
+    def point(self, phase: float) -> None:
+        """Show the phase under the cursor."""
+        self._cursor.setPos(phase)
+        self._cursor.setVisible(True)
+
+    def _place(self) -> None:
+        self.split = QSplitter(Qt.Orientation.Vertical)
+        self.split.setHandleWidth(2)
+        self.split.setChildrenCollapsible(False)
+        for picture, points, stretch in (
+            (self.curve, self.points, 3),
+            (self.rest, self.rest_points, 1),
+        ):
+            picture.addItem(points)
+            picture.pointed.connect(self.pointed)
+            picture.home_x = (-0.26, 0.76)
+            picture.setXRange(-0.26, 0.76, padding=0)
+            self.split.addWidget(picture)
+            self.split.setStretchFactor(self.split.count() - 1, stretch)
+        self.split.setSizes([300, 100])
+        self.curve.addItem(self._cursor, ignoreBounds=True)
+        self.curve.getAxis("bottom").setStyle(showValues=False)
+        self.curve.getAxis("bottom").setHeight(6)
+        self.rest.link_x(self.curve)
+        layout = QVBoxLayout(self)
+        layout.setContentsMargins(0, 0, 0, 0)
+        layout.addWidget(self.split)
+        layout.addWidget(self.nothing)
+
+    def _show_models(self, wanted: bool) -> None:
+        for line in self._lines:
+            line.getViewBox().removeItem(line)
+        self._lines = []
+        now, system = theme.colours(), self.session.system
+        self._cursor.setPen(pg.mkPen(now.quiet, style=Qt.PenStyle.DotLine))
+        if not wanted or system is None or not system.has("K1"):
+            return
+        for curve in velocity_curves(system):
+            star = int(curve.label[-1])
+            pen = pg.mkPen(_tint(star), width=2.0, style=DASHES[star])
+            self._add(self.curve, pg.PlotCurveItem(curve.x, curve.y, pen=pen))
+        level = pg.InfiniteLine(
+            system.value("gamma1"), angle=0, pen=pg.mkPen(now.line, style=Qt.PenStyle.DashLine)
+        )
+        self._add(self.curve, level)
+        self._add(self.rest, pg.InfiniteLine(0.0, angle=0, pen=pg.mkPen(now.quiet)))
+
+    def _add(self, picture: Picture, item: pg.InfiniteLine | pg.PlotCurveItem) -> None:
+        picture.addItem(item)
+        self._lines.append(item)
+
+
+def _layers(found: tuple[VelocityPoints, ...], *, residual: bool) -> tuple[Layer, ...]:
+    layers = []
+    for points in found:
+        y = points.residual if residual else points.y
+        good, aside = points.used & (y == y), ~points.used & (y == y)
+        tint, shape = _tint(points.star), SHAPES[points.star]
+        layers.append(Layer(points.x[good], y[good], points.error[good], tint, shape, 7.0, 0.9))
+        layers.append(Layer(points.x[aside], y[aside], None, theme.colours().aside, "x", 8.0, 0.9))
+    return tuple(layers)
+
+
+def _tint(star: int) -> str:
+    return theme.colours().star1 if star == 1 else theme.colours().star2

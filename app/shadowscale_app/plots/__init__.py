@@ -1,0 +1,1 @@
+"""Drawing: pyqtgraph items and painted pictures."""

@@ -1,0 +1,75 @@
+"""What is done with points and stretches that a gesture chose, and the questions that go with it."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable
+from dataclasses import replace
+from typing import Any
+
+from PySide6.QtCore import QObject, Signal
+from PySide6.QtWidgets import QWidget
+
+from shadowscale.view.markers import without_span
+from shadowscale.view.rows import with_prior
+from shadowscale.view.selecting import light_set_aside, light_taken_back, set_aside_rows
+from shadowscale_app import trouble
+from shadowscale_app.desk import Change, Desk
+from shadowscale_app.dialogs.brushing import BACK, ask_brush
+from shadowscale_app.dialogs.prior import ask_prior
+
+
+class PointsDesk(QObject):
+    """Turns answers of small dialogs into steps. Signal `told(words)`."""
+
+    told = Signal(str)
+
+    def __init__(
+        self,
+        desk: Desk,
+        window: QWidget,
+        *,
+        ask: Callable[[QWidget | None, int], str | None] = ask_brush,
+    ) -> None:
+        super().__init__(window)
+        self._desk, self._window, self.ask = desk, window, ask
+
+    def asked(self, what: str, argument: Any) -> None:
+        """A pane asks for something that needs a question."""
+        with trouble.guard(what):
+            {"brushed": self._brushed, "prior": self._prior}[what](argument)
+
+    def take_all_back(self) -> None:
+        """All points that a person set aside take part again."""
+        session = self._desk.session
+        self._desk.apply(
+            Change("Take all points back", light_taken_back(session, set_aside_rows(session)))
+        )
+
+    def drop_span(self, pictures: Iterable[Any]) -> None:
+        """Remove the stretch whose edge has the keyboard."""
+        session = self._desk.session
+        names = [picture.focused for picture in pictures if picture.focused]
+        if names and session.markers is not None:
+            markers = without_span(session.markers, names[0])
+            if markers is not session.markers:
+                self._desk.apply(Change("Remove stretch", replace(session, markers=markers)))
+
+    def _brushed(self, rows: Any) -> None:
+        answer = self.ask(self._window, len(rows))
+        if answer is None:
+            return
+        session = self._desk.session
+        if answer == BACK:
+            self._desk.apply(Change("Take points back", light_taken_back(session, rows)))
+        else:
+            self._desk.apply(
+                Change(f"Set points aside: {answer}", light_set_aside(session, rows, answer))
+            )
+
+    def _prior(self, key: str) -> None:
+        session = self._desk.session
+        found = ask_prior(self._window, session, key)
+        if found is not None:
+            self._desk.apply(
+                Change(f"Prior on {key}", with_prior(session, key, found[0], sigma=found[1]))
+            )

@@ -1,0 +1,73 @@
+"""The line at the foot: what goes on, how far it is, stop; and the pictures' words."""
+
+from __future__ import annotations
+
+from PySide6.QtCore import Qt, Signal
+from PySide6.QtWidgets import QLabel, QProgressBar, QStatusBar, QToolButton, QWidget
+
+from shadowscale.session.session import Session
+from shadowscale.view.doubts import counts
+from shadowscale.view.summary import summary
+from shadowscale.view.written import duration_text
+
+WORDS_MS = 12_000
+
+
+class Status(QStatusBar):
+    """Signal `stop_wanted()`."""
+
+    stop_wanted = Signal()
+
+    def __init__(self, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.setAccessibleName("Status")
+        self.setSizeGripEnabled(False)
+        self.words = QLabel("")
+        self.words.setTextFormat(Qt.TextFormat.PlainText)
+        self.live = QLabel("")
+        self.live.setObjectName("quiet")
+        self.fit = QLabel("")
+        self.fit.setObjectName("quiet")
+        self.bar = QProgressBar()
+        self.bar.setRange(0, 1000)
+        self.bar.setFixedWidth(130)
+        self.bar.setTextVisible(False)
+        self.bar.setAccessibleName("Progress")
+        self.doing = QLabel("")
+        self.stop = QToolButton()
+        self.stop.setText("Stop")
+        self.stop.setAccessibleName("Stop")
+        self.stop.clicked.connect(self.stop_wanted)
+        self.addWidget(self.words, 1)
+        for widget in (self.live, self.doing, self.bar, self.stop, self.fit):
+            self.addPermanentWidget(widget)
+        self.show_busy(False)
+
+    def tell(self, words: str) -> None:
+        """Show a sentence."""
+        self.words.setText(words)
+        self.words.setToolTip(words)
+
+    def show_busy(self, busy: bool) -> None:
+        """A long job begins or ends."""
+        for widget in (self.bar, self.stop, self.doing):
+            widget.setVisible(busy)
+        if not busy:
+            self.bar.setValue(0)
+            self.doing.setText("")
+
+    def show_live(self, busy: bool) -> None:
+        """The live fit begins or ends."""
+        self.live.setText("fitting\N{HORIZONTAL ELLIPSIS}" if busy else "")
+
+    def show_progress(self, fraction: float, words: str, left: float) -> None:
+        """How far a long job is."""
+        self.bar.setValue(round(1000 * fraction))
+        self.doing.setText(f"{words}, {duration_text(left)} left" if left >= 0 else words)
+
+    def show_session(self, session: Session) -> None:
+        """The fit in a few numbers."""
+        failed, warned = counts(session)
+        marks = [f"{failed} failed"] if failed else []
+        marks += [f"{warned} to think about"] if warned else []
+        self.fit.setText("   ".join(part for part in (summary(session), ", ".join(marks)) if part))

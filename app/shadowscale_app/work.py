@@ -1,0 +1,109 @@
+"""The long jobs: solving, the period search, the search from many starts; with progress and stop."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import replace
+
+from PySide6.QtCore import QObject, Signal
+
+from shadowscale.progress import Progress
+from shadowscale.session.session import Session
+from shadowscale_app import trouble
+from shadowscale_app.desk import Change, Desk
+from shadowscale_app.jobs import Answer, LongLane
+from shadowscale_app.live import with_results
+
+
+class WorkDesk(QObject):
+    """Starts long jobs and takes their answers. Signal `told(words)`, `solved()`."""
+
+    told = Signal(str)
+    solved = Signal()
+
+    def __init__(self, desk: Desk, lane: LongLane, parent: QObject | None = None) -> None:
+        super().__init__(parent)
+        self._desk, self._lane = desk, lane
+        self._take: Callable[[object], None] = lambda _: None
+        self._doing = ""
+        lane.answered.connect(self._answered)
+        lane.stopped.connect(lambda: self.told.emit("Stopped. The session is as it was."))
+
+    @property
+    def running(self) -> bool:
+        """Whether a long job runs."""
+        return self._lane.running
+
+    def stop(self) -> None:
+        """Stop what is running."""
+        self._lane.stop()
+
+    def solve(self) -> None:
+        """Solve the present session."""
+        session = self._desk.session
+
+        def work(progress: Progress) -> object:
+            from shadowscale.jobs.solve import solve_session
+
+            return solve_session(session, progress=progress)
+
+        self._start("solving", work, self._take_solution)
+
+    def search_period(self) -> None:
+        """Look for the period."""
+        photometry = self._desk.session.photometry
+
+        def work(progress: Progress) -> object:
+            from shadowscale.timing import search_period
+
+            assert photometry is not None
+            return search_period(photometry, progress=progress)
+
+        self._start("searching the period", work, self._take_period)
+
+    def search_starts(self) -> None:
+        """Solve from many starts."""
+        session = self._desk.session
+
+        def work(progress: Progress) -> object:
+            from shadowscale.jobs.starts import solve_from_many_starts
+
+            return solve_from_many_starts(session, progress=progress)
+
+        self._start("searching from many starts", work, self._take_solution)
+
+    def _start(
+        self, doing: str, work: Callable[[Progress], object], take: Callable[[object], None]
+    ) -> None:
+        if self._lane.running:
+            self.told.emit(f"Wait: {self._doing} is still going on, or stop it.")
+            return
+        self._doing, self._take = doing, take
+        self._lane.start(work)
+
+    def _answered(self, answer: Answer) -> None:
+        if answer.error is not None:
+            trouble.tell(self._doing, answer.error)
+            return
+        with trouble.guard(self._doing):
+            self._take(answer.result)
+
+    def _take_solution(self, found: object) -> None:
+        from shadowscale.view.contacts import with_start_markers
+
+        assert isinstance(found, Session)
+        session = with_start_markers(with_results(self._desk.session, found))
+        self._desk.apply(Change("Solve", session))
+        self.solved.emit()
+
+    def _take_period(self, found: object) -> None:
+        from shadowscale.view.contacts import with_ephemeris
+
+        session = self._desk.session
+        period, epoch = found.period, found.epoch  # type: ignore[attr-defined]
+        self._desk.apply(
+            Change(
+                "Take period", with_ephemeris(replace(session, name=session.name), period, epoch)
+            )
+        )
+        self.told.emit(found.words)  # type: ignore[attr-defined]

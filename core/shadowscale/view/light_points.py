@@ -1,0 +1,173 @@
+"""Photometry as a picture shows it: points over phase or time, in flux or magnitudes, band by band."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from shadowscale.data.photometry import USED, Floats, Ints, Photometry
+from shadowscale.fit.solution import Solution
+from shadowscale.session.session import Session
+
+SHIFT = 0.12  # of the range of one band, between two bands drawn in one picture
+
+
+@dataclass(frozen=True, eq=False)
+class LightPoints:
+    """The points of one band.
+
+    Attributes
+    ----------
+    x, y, error : (m,) float64
+        Cycles or days less `zero`; flux of 1 outside eclipse, or magnitudes.
+    rows : (m,) int64
+        Rows of the photometry's table.
+    used, outlier : (m,) bool
+        Whether the row takes part; whether the fit set it aside.
+    """
+
+    band: int
+    label: str
+    x: Floats
+    y: Floats
+    error: Floats
+    rows: Ints
+    used: np.ndarray[tuple[int], np.dtype[np.bool_]]
+    outlier: np.ndarray[tuple[int], np.dtype[np.bool_]]
+    zero: float = 0.0
+
+
+def ephemeris(session: Session) -> tuple[float, float] | None:
+    """Period and epoch to fold with: of the system, else of the plan; None where neither has one."""
+    if session.system is not None:
+        return session.system.value("period"), session.system.value("epoch")
+    if session.plan.period is not None and session.plan.epoch is not None:
+        return session.plan.period, session.plan.epoch
+    return None
+
+
+def fold(time: Floats, period: float, epoch: float, *, start: float = -0.25) -> Floats:
+    """Phases of `time` [d] in cycles, from `start` up to `start` + 1."""
+    phase = (time - epoch) / period
+    return phase - np.floor(phase - start)
+
+
+def light_over_phase(
+    session: Session, *, magnitudes: bool = False, residuals: bool = False
+) -> tuple[LightPoints, ...]:
+    """All bands folded, phases -0.25...0.75; empty without an ephemeris, or without a model if asked."""
+    found = ephemeris(session)
+    if session.photometry is None or found is None:
+        return ()
+    x = fold(session.photometry.time, *found)
+    return _by_band(session, x, magnitudes=magnitudes, residuals=residuals, zero=0.0)
+
+
+def light_over_time(
+    session: Session, *, zero: float, magnitudes: bool = False, residuals: bool = False
+) -> tuple[LightPoints, ...]:
+    """All bands against time less `zero` [d]."""
+    if session.photometry is None:
+        return ()
+    x = session.photometry.time - zero
+    return _by_band(session, x, magnitudes=magnitudes, residuals=residuals, zero=zero)
+
+
+def band_shifts(points: tuple[LightPoints, ...], *, magnitudes: bool = False) -> tuple[float, ...]:
+    """How far to move each band downwards on the page so that several can be seen in one picture."""
+    if len(points) < 2:
+        return tuple(0.0 for _ in points)
+    ranges = [float(np.subtract(*np.nanpercentile(p.y, [99.5, 0.5]))) for p in points if p.y.size]
+    shift = SHIFT * max(ranges, default=1.0) * (1 if magnitudes else -1)
+    return tuple(shift * number for number in range(len(points)))
+
+
+def night_starts(photometry: Photometry, zero: float) -> Floats:
+    """Times less `zero` at which a night or segment begins [d]."""
+    changes = np.flatnonzero(np.diff(photometry.time) > 0.25) + 1
+    return (
+        photometry.time[np.concatenate(([0], changes))] - zero
+        if photometry.time.size
+        else photometry.time
+    )
+
+
+def to_magnitudes(flux: Floats) -> Floats:
+    """-2.5 log10 of flux; NaN where there is none."""
+    with np.errstate(invalid="ignore", divide="ignore"):
+        return -2.5 * np.log10(np.where(flux > 0, flux, np.nan))
+
+
+def _by_band(
+    session: Session, x: Floats, *, magnitudes: bool, residuals: bool, zero: float
+) -> tuple[LightPoints, ...]:
+    photometry = session.photometry
+    assert photometry is not None
+    solution = fitting_solution(session)
+    if residuals and solution is None:
+        return ()
+    y, error = _values(photometry, solution, magnitudes=magnitudes, residuals=residuals)
+    why = (
+        photometry.why
+        if solution is None
+        else np.where(photometry.why == USED, solution.light.why, photometry.why)
+    )
+    outlier = (photometry.why == USED) & (why != USED)
+    found = []
+    for number, label in enumerate(photometry.bands):
+        rows = np.flatnonzero((photometry.band == number) & np.isfinite(y))
+        found.append(
+            LightPoints(
+                number,
+                label,
+                x[rows],
+                y[rows],
+                error[rows],
+                rows,
+                why[rows] == USED,
+                outlier[rows],
+                zero,
+            )
+        )
+    return tuple(found)
+
+
+def fitting_solution(session: Session) -> Solution | None:
+    """The session's solution where it belongs to the session's photometry row by row."""
+    solution, photometry = session.solution, session.photometry
+    if solution is None or photometry is None or solution.light.model.size != photometry.time.size:
+        return None
+    return solution
+
+
+def _values(
+    photometry: Photometry, solution: Solution | None, *, magnitudes: bool, residuals: bool
+) -> tuple[Floats, Floats]:
+    level = np.ones_like(photometry.flux) if solution is None else solution.light.level
+    flux, error = photometry.flux / level, photometry.flux_error / level
+    if residuals and solution is not None:
+        model = solution.light.model / level
+        if magnitudes:
+            return to_magnitudes(flux) - to_magnitudes(model), 1.0857 * error / flux
+        return flux - model, error
+    return (to_magnitudes(flux), 1.0857 * error / flux) if magnitudes else (flux, error)
+
+
+def sensible_range(
+    points: tuple[LightPoints, ...], shifts: tuple[float, ...]
+) -> tuple[float, float] | None:
+    """Lowest and highest value worth showing: of the points that take part, the wildest 0.2 % left out."""
+    ends = [
+        (
+            float(np.percentile(p.y[p.used], 0.1)) + shift,
+            float(np.percentile(p.y[p.used], 99.9)) + shift,
+        )
+        for p, shift in zip(points, shifts, strict=True)
+        if p.used.any()
+    ]
+    if not ends:
+        return None
+    low, high = min(end[0] for end in ends), max(end[1] for end in ends)
+    margin = 0.12 * (high - low) or 1e-3
+    return low - margin, high + margin

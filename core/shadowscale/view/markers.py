@@ -1,0 +1,155 @@
+"""The rules by which markers move, and their names in words."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+
+from shadowscale.session.session import Markers, Span
+
+LEAST = 1e-5  # cycles between neighbouring contacts
+_ORDINALS = ("first", "second", "third", "fourth")
+_SPANS = {"level": "stretch outside eclipse", "excluded": "excluded stretch"}
+
+
+@dataclass(frozen=True)
+class Handle:
+    """One thing that can be dragged.
+
+    name : `primary.0` ... `secondary.3`, `primary_window.0`, `level.2.1` (third stretch, right edge)
+    words : what it is, for people
+    group : `contact`, `window`, `level` or `excluded`
+    """
+
+    name: str
+    words: str
+    group: str
+    phase: float
+    short: str = ""
+
+
+def handles(markers: Markers) -> tuple[Handle, ...]:
+    """Everything that can be dragged, in the order of the keyboard."""
+    return (*_contacts(markers), *_windows(markers), *_stretches(markers))
+
+
+def handle(markers: Markers, name: str) -> Handle:
+    """The handle of that name; KeyError if the markers have none."""
+    for found in handles(markers):
+        if found.name == name:
+            return found
+    raise KeyError(name)
+
+
+def moved(markers: Markers, name: str, phase: float, *, symmetric: bool = False) -> Markers:
+    """The markers with one handle moved to `phase`; neighbours are never passed.
+
+    With `symmetric` the contact on the other side of the same eclipse moves as far the other way.
+    """
+    part, *numbers = name.split(".")
+    if part in ("primary", "secondary"):
+        return _moved_contact(markers, part, int(numbers[0]), phase=phase, symmetric=symmetric)
+    if part.endswith("_window"):
+        return replace(
+            markers, **{part: _moved_edge(getattr(markers, part), int(numbers[0]), phase)}
+        )
+    spans = list(getattr(markers, part))
+    which, edge = int(numbers[0]), int(numbers[1])
+    spans[which] = _moved_edge(spans[which], edge, phase)
+    return replace(markers, **{part: tuple(spans)})
+
+
+def without_span(markers: Markers, name: str) -> Markers:
+    """The markers without the stretch that the handle belongs to; contacts and windows stay."""
+    part, *numbers = name.split(".")
+    if part not in _SPANS:
+        return markers
+    spans = list(getattr(markers, part))
+    del spans[int(numbers[0])]
+    return replace(markers, **{part: tuple(spans)})
+
+
+def with_span(markers: Markers, part: str, span: Span) -> Markers:
+    """The markers with one more stretch, `level` or `excluded`."""
+    ordered = (min(span), max(span))
+    return replace(markers, **{part: tuple(sorted((*getattr(markers, part), ordered)))})
+
+
+def describe_move(markers: Markers, name: str) -> str:
+    """The step's name in the history."""
+    return "Move " + handle(markers, name).words
+
+
+def _contacts(markers: Markers) -> Iterator[Handle]:
+    for part in ("primary", "secondary"):
+        phases = getattr(markers, part)
+        for number, phase in enumerate(phases or ()):
+            words = f"{_ORDINALS[number]} contact of {part} eclipse"
+            yield Handle(f"{part}.{number}", words, "contact", phase, str(number + 1))
+
+
+def _windows(markers: Markers) -> Iterator[Handle]:
+    for part in ("primary", "secondary"):
+        if part == "secondary" and markers.secondary is None:
+            continue
+        for number, side in enumerate(("left", "right")):
+            phase = getattr(markers, f"{part}_window")[number]
+            yield Handle(
+                f"{part}_window.{number}",
+                f"{side} edge of the window of {part} eclipse",
+                "window",
+                phase,
+            )
+
+
+def _stretches(markers: Markers) -> Iterator[Handle]:
+    for part, words in _SPANS.items():
+        for which, span in enumerate(getattr(markers, part)):
+            for number, side in enumerate(("left", "right")):
+                yield Handle(
+                    f"{part}.{which}.{number}",
+                    f"{side} edge of {words} {which + 1}",
+                    part,
+                    span[number],
+                )
+
+
+def _moved_edge(span: Span, edge: int, phase: float) -> Span:
+    return (
+        (min(phase, span[1] - LEAST), span[1])
+        if edge == 0
+        else (span[0], max(phase, span[0] + LEAST))
+    )
+
+
+def _moved_contact(
+    markers: Markers, part: str, number: int, *, phase: float, symmetric: bool
+) -> Markers:
+    old = getattr(markers, part)
+    new = list(old)
+    if symmetric:
+        middle = (old[0] + old[3]) / 2
+        half = _between(abs(phase - middle), *_half_limits(old, number))
+        left, right = (0, 3) if number in (0, 3) else (1, 2)
+        new[left], new[right] = middle - half, middle + half
+    else:
+        lower = old[number - 1] if number else -float("inf")
+        upper = old[number + 1] if number < 3 else float("inf")
+        gap = 0.0 if number in (1, 2) else LEAST  # a partial eclipse has no flat part
+        new[number] = _between(phase, lower + gap, upper - gap)
+    return replace(markers, **{part: tuple(new)})
+
+
+def _half_limits(contacts: tuple[float, float, float, float], number: int) -> tuple[float, float]:
+    if number in (0, 3):
+        return (contacts[2] - contacts[1]) / 2 + LEAST, 0.25
+    return 0.0, (contacts[3] - contacts[0]) / 2 - LEAST
+
+
+def _between(value: float, lower: float, upper: float) -> float:
+    return min(max(value, lower), upper)
+
+
+def with_new_span(markers: Markers, part: str, phase: float, *, width: float = 0.04) -> Markers:
+    """The markers with one more stretch of that width around a phase."""
+    return with_span(markers, part, (phase - width / 2, phase + width / 2))

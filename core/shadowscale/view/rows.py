@@ -1,0 +1,262 @@
+"""The table of quantities, row by row, as words and numbers."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+from math import isfinite
+from types import MappingProxyType
+
+from shadowscale.fit.plan import Prior
+from shadowscale.fit.solution import ASSUMED, DERIVED, FITTED, Estimate, Solution
+from shadowscale.fit.system import System
+from shadowscale.quantities import BAND, Quantity, parse_key
+from shadowscale.session.session import Session
+from shadowscale.view.written import plain_value, symbol, unit_sign, value_and_error
+
+FREE, HELD, WITH_PRIOR = "free", "held", "with prior"
+WELL, FAIRLY, BADLY, NONE = "well", "fairly", "badly", ""
+WELL_BELOW, BADLY_ABOVE = 0.01, 0.05  # relative errors: 1 % is the usual wish, 5 % is of little use
+STRONG = 0.9  # a correlation above this is said to be strong
+GROUPS = ("Stars and orbit", "Light", "Velocities", "What follows")
+_VELOCITY = ("K1", "K2", "gamma1", "gamma2", "offset1", "offset2")
+
+
+@dataclass(frozen=True)
+class Row:
+    """One quantity of the table; texts are ready for the screen.
+
+    relative : the error over the value, or None where that says nothing
+    grade : `well`, `fairly`, `badly` or empty; `strongest` names the strongest correlation
+    """
+
+    key: str
+    symbol: str
+    group: str
+    meaning: str
+    effect: str
+    value: float
+    value_text: str
+    error_text: str
+    unit: str
+    state: str
+    basic: bool
+    lower: float
+    upper: float
+    step: float
+    bounds_text: str
+    relative: float | None = None
+    grade: str = NONE
+    strongest: str = ""
+    correlation: float = 0.0
+
+
+def quantity_rows(session: Session) -> tuple[Row, ...]:
+    """Basic quantities of the system, then derived ones of the solution."""
+    system, solution = session.system, session.solution
+    if system is None:
+        return ()
+    estimates: Mapping[str, Estimate] = (
+        MappingProxyType({}) if solution is None else solution.estimates
+    )
+    strongest = {} if solution is None else _strongest(solution)
+    rows = [_basic_row(system, name, estimates.get(name)) for name in system.values]
+    rows += [
+        _row(name, estimate, estimate.how if estimate.how == ASSUMED else DERIVED)
+        for name, estimate in estimates.items()
+        if not parse_key(name).quantity.basic
+    ]
+    rows = [_with_correlation(row, strongest) for row in rows]
+    return tuple(sorted(rows, key=lambda row: GROUPS.index(row.group)))
+
+
+def with_value(session: Session, name: str, value: float) -> Session:
+    """The session with one basic quantity set by hand: a held one stays held there, a free one starts there.
+
+    Raises
+    ------
+    ValueError
+        If the value is outside the quantity's bounds; the message says which.
+    """
+    system = session.system
+    if system is None:
+        raise ValueError("there is no model yet: solve first, or place the markers")
+    quantity = parse_key(name).quantity
+    if not quantity.lower <= value <= quantity.upper:
+        raise ValueError(f"{quantity.meaning} must lie in {bounds(quantity)}, found {value:g}")
+    plan = session.plan
+    if name in system.free:
+        plan = replace(plan, start={**plan.start, name: value})
+    else:
+        plan = replace(plan, fixed={**plan.fixed, name: _fixed_values(system, name, value)})
+    return replace(session, system=system.with_values({name: value}), plan=plan)
+
+
+def with_state(session: Session, name: str, state: str) -> Session:
+    """The session with one basic quantity free, held at its present value, or with its prior."""
+    system = session.system
+    if system is None:
+        return session
+    held = _plan_name(name)
+    plan = session.plan
+    fixed = {key: values for key, values in plan.fixed.items() if key not in (name, held)}
+    free = tuple(key for key in plan.free if key not in (name, held))
+    priors = tuple(prior for prior in plan.priors if prior.name not in (name, held))
+    if state == HELD:
+        fixed[held] = _fixed_values(system, name, system.values[name])
+    elif state == FREE:
+        free = (*free, held)
+    elif session.solution is not None and name in session.solution.estimates:
+        estimate = session.solution.estimates[name]
+        sigma = max(estimate.plus or 0.0, parse_key(name).quantity.step)
+        priors = (*priors, Prior(held, (estimate.value,), (sigma,)))
+    return replace(
+        session,
+        plan=replace(plan, fixed=fixed, free=free, priors=priors),
+        system=_freed(system, name, state),
+    )
+
+
+def with_prior(session: Session, name: str, value: float, *, sigma: float) -> Session:
+    """The session with a Gaussian prior on one quantity."""
+    kept = tuple(prior for prior in session.plan.priors if prior.name != name)
+    plan = replace(session.plan, priors=(*kept, Prior(name, (value,), (sigma,))))
+    return replace(session, plan=plan)
+
+
+def bounds(quantity: Quantity) -> str:
+    """The hard limits in words; empty where there are none."""
+    low, high = quantity.lower, quantity.upper
+    if not isfinite(low) and not isfinite(high):
+        return ""
+    shown = [f"{end:g}" if isfinite(end) else "\N{INFINITY}" for end in (low, high)]
+    return f"{shown[0]} \N{HORIZONTAL ELLIPSIS} {shown[1]}".replace("-", "\N{MINUS SIGN}")
+
+
+def _basic_row(system: System, name: str, estimate: Estimate | None) -> Row:
+    value = system.values[name]
+    state = FREE if name in system.free else HELD
+    if any(prior.name in (name, _plan_name(name), parse_key(name).name) for prior in system.priors):
+        state = WITH_PRIOR if state == FREE else HELD
+    if estimate is None or estimate.value != value:
+        return _row(name, Estimate(value, None, None, FITTED), state)
+    return _row(name, estimate, state)
+
+
+def _row(name: str, estimate: Estimate, state: str) -> Row:
+    quantity = parse_key(name).quantity
+    value, error = value_and_error(name, estimate)
+    if not error:
+        value = plain_value(quantity, estimate.value).replace("-", "\N{MINUS SIGN}")
+    relative = _relative(quantity, estimate)
+    return Row(
+        key=name,
+        symbol=symbol(name),
+        group=_group(quantity),
+        meaning=quantity.meaning,
+        effect=quantity.effect or quantity.source,
+        value=estimate.value,
+        value_text=value,
+        error_text=error,
+        unit=unit_sign(quantity.unit),
+        state=state,
+        basic=quantity.basic,
+        lower=quantity.lower,
+        upper=quantity.upper,
+        step=quantity.step,
+        bounds_text=bounds(quantity) if quantity.basic else "",
+        relative=relative,
+        grade=_grade(relative),
+    )
+
+
+def _relative(quantity: Quantity, estimate: Estimate) -> float | None:
+    errors = [error for error in (estimate.minus, estimate.plus) if error]
+    if not errors or quantity.name == "epoch":
+        return None
+    scale = abs(estimate.value)
+    if quantity.name in (
+        "ecosw",
+        "esinw",
+        "gamma1",
+        "gamma2",
+        "offset1",
+        "offset2",
+        "third_light",
+        "eccentricity",
+    ):
+        return None
+    if quantity.unit == "dex(cm/s2)" or quantity.unit == "mag":
+        return max(errors) * 2.302585 if quantity.unit != "mag" else max(errors) * 0.921
+    return max(errors) / scale if scale > 0 else None
+
+
+def _grade(relative: float | None) -> str:
+    if relative is None:
+        return NONE
+    if relative <= WELL_BELOW:
+        return WELL
+    return BADLY if relative > BADLY_ABOVE else FAIRLY
+
+
+def _strongest(solution: Solution) -> dict[str, tuple[float, str]]:
+    names, matrix = solution.correlation_names, solution.correlations
+    found = {}
+    for row, name in enumerate(names):
+        others = [
+            (abs(matrix[row, column]), matrix[row, column], other)
+            for column, other in enumerate(names)
+            if other != name and isfinite(matrix[row, column]) and not _related(name, other)
+        ]
+        if others:
+            _, value, other = max(others, key=lambda item: item[0])
+            found[name] = (float(value), other)
+    return found
+
+
+def _related(name: str, other: str) -> bool:
+    """A derived quantity is no news to the basic ones that it is made of."""
+    basic = [parse_key(text).quantity.basic for text in (name, other)]
+    return basic[0] != basic[1]
+
+
+def _with_correlation(row: Row, strongest: Mapping[str, tuple[float, str]]) -> Row:
+    found = strongest.get(row.key)
+    if found is None:
+        return row
+    value, other = found
+    text = f"{value:+.2f} with {symbol(other)}".replace("-", "\N{MINUS SIGN}")
+    return replace(row, strongest=text if abs(value) >= 0.1 else "", correlation=value)
+
+
+def _group(quantity: Quantity) -> str:
+    if not quantity.basic:
+        return GROUPS[3]
+    if quantity.name in _VELOCITY:
+        return GROUPS[2]
+    return GROUPS[1] if quantity.scope == BAND else GROUPS[0]
+
+
+def _plan_name(name: str) -> str:
+    """The name that the plan uses: limb darkening is held by star and band, all coefficients."""
+    key = parse_key(name)
+    return name if key.number is None else str(replace(key, number=None))
+
+
+def _fixed_values(system: System, name: str, value: float) -> tuple[float, ...]:
+    key = parse_key(name)
+    if key.number is None or key.label is None:
+        return (value,)
+    values = list(system.limb_darkening(int(key.name[-1]), key.label))
+    values[key.number - 1] = value
+    return tuple(values)
+
+
+def _freed(system: System, name: str, state: str) -> System:
+    """The system with the key's freedom changed at once, so that the table shows it before the fit ends."""
+    stem = _plan_name(name)
+    keys = [key for key in system.values if _plan_name(key) == stem]
+    free = tuple(key for key in system.free if key not in keys)
+    if state != HELD:
+        free += tuple(keys)
+    return replace(system, free=free)

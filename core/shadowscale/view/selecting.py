@@ -1,0 +1,116 @@
+"""Points that a person drew round, and setting rows aside or taking them back."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from shadowscale.data.photometry import Floats, Ints
+from shadowscale.session.session import Exclusion, Session
+from shadowscale.view.light_points import (
+    LightPoints,
+    band_shifts,
+    light_over_phase,
+    light_over_time,
+)
+from shadowscale.view.looks import Look
+
+Corners = tuple[tuple[float, float], ...]
+
+
+def inside(x: Floats, y: Floats, corners: Corners) -> NDArray[np.bool_]:
+    """(n,) bool: which points lie inside a polygon (even-odd rule)."""
+    found = np.zeros(x.size, dtype=bool)
+    for (x0, y0), (x1, y1) in zip(corners, (*corners[1:], corners[0]), strict=True):
+        if y0 == y1:
+            continue
+        crosses = (y0 > y) != (y1 > y)
+        found ^= crosses & (x < x0 + (y - y0) * (x1 - x0) / (y1 - y0))
+    return found
+
+
+def outlined_light(
+    session: Session,
+    corners: Corners,
+    *,
+    look: Look,
+    residuals: bool = False,
+    zero: float | None = None,
+) -> Ints:
+    """Rows of the photometry inside an outline drawn over phase, or over time less `zero`."""
+    if zero is None:
+        points = light_over_phase(session, magnitudes=look.magnitudes, residuals=residuals)
+    else:
+        points = light_over_time(
+            session, zero=zero, magnitudes=look.magnitudes, residuals=residuals
+        )
+    shown = tuple(p for p in points if p.label not in look.hidden)
+    shifts = (
+        band_shifts(shown, magnitudes=look.magnitudes) if not residuals else (0.0,) * len(shown)
+    )
+    return _rows(shown, shifts, corners)
+
+
+def light_set_aside(session: Session, rows: Ints, reason: str) -> Session:
+    """The session with these rows of the photometry set aside for a reason, remembered by file and line."""
+    photometry = session.photometry
+    if photometry is None:
+        return session
+    chosen = np.zeros(photometry.time.size, dtype=bool)
+    chosen[rows] = True
+    chosen &= photometry.used
+    exclusions = list(session.exclusions)
+    for number, file in enumerate(photometry.files):
+        lines = photometry.line[chosen & (photometry.file == number)]
+        if lines.size:
+            exclusions.append(
+                Exclusion("light", file.path, tuple(int(line) for line in lines), reason)
+            )
+    return replace(
+        session, photometry=photometry.excluded(chosen, reason), exclusions=tuple(exclusions)
+    )
+
+
+def light_taken_back(session: Session, rows: Ints) -> Session:
+    """The session with these rows of the photometry taking part again, if a person had set them aside."""
+    photometry = session.photometry
+    if photometry is None:
+        return session
+    ours = {exclusion.reason for exclusion in session.exclusions if exclusion.table == "light"}
+    codes = [code for code, reason in enumerate(photometry.reasons) if reason in ours]
+    chosen = np.zeros(photometry.time.size, dtype=bool)
+    chosen[rows] = True
+    chosen &= np.isin(photometry.why, codes)
+    back = {
+        (photometry.files[file].path, int(line))
+        for file, line in zip(photometry.file[chosen], photometry.line[chosen], strict=True)
+    }
+    exclusions = tuple(_without(exclusion, back) for exclusion in session.exclusions)
+    kept = tuple(exclusion for exclusion in exclusions if exclusion.lines)
+    return replace(session, photometry=photometry.restored(chosen), exclusions=kept)
+
+
+def set_aside_rows(session: Session) -> Ints:
+    """Rows of the photometry that a person set aside."""
+    photometry = session.photometry
+    if photometry is None:
+        return np.zeros(0, dtype=np.int64)
+    ours = {exclusion.reason for exclusion in session.exclusions if exclusion.table == "light"}
+    codes = [code for code, reason in enumerate(photometry.reasons) if reason in ours]
+    return np.flatnonzero(np.isin(photometry.why, codes))
+
+
+def _rows(points: tuple[LightPoints, ...], shifts: tuple[float, ...], corners: Corners) -> Ints:
+    found = [
+        p.rows[inside(p.x, p.y + shift, corners)] for p, shift in zip(points, shifts, strict=True)
+    ]
+    return np.concatenate(found) if found else np.zeros(0, dtype=np.int64)
+
+
+def _without(exclusion: Exclusion, back: set[tuple[str, int]]) -> Exclusion:
+    if exclusion.table != "light":
+        return exclusion
+    lines = tuple(line for line in exclusion.lines if (exclusion.file, line) not in back)
+    return replace(exclusion, lines=lines)
