@@ -21,7 +21,7 @@ from made_up_judge import (
     with_system,
     with_values,
 )
-from shadowscale.fit.solution import Decision
+from shadowscale.fit.solution import Alternative, Decision
 from shadowscale.judge.audit import CHECKS
 from shadowscale.judge.checks.coverage import INGRESS_ERROR, Sides, covered_share, quadrature_counts
 from shadowscale.judge.checks.eclipses import mirror_solution
@@ -508,3 +508,21 @@ def test_invented_pair_is_annular_and_total() -> None:
     assert (first.kind, second.kind) == ("annular", "total")
     chord = sqrt((R1 + R2) ** 2 - np.cos(radians(INCLINATION)) ** 2) / sin(radians(INCLINATION))
     assert asin(chord) / pi == pytest.approx(2 * first.outer, rel=1e-12)
+
+
+def test_mirror_within_the_errors_is_no_trouble() -> None:
+    case = with_values(GOOD, radius_ratio=0.996)
+    mirror = Alternative("radii exchanged", {"radius_ratio": 1.004}, 0.3)
+
+    finding = with_solution(case, alternatives=(mirror,)).finding("mirror solution")
+
+    assert finding.verdict == PASS
+    assert "within the errors of k" in finding.words
+
+
+@pytest.mark.parametrize(("name", "verdict"), [("V", WARN), ("velocities, star 1", PASS)])
+def test_few_points_scatter_by_chance(name: str, verdict: str) -> None:
+    """24 velocities: 3 sqrt(2/24) = 0.87, so that 0.45 and 1.8 are within chance; 2400 points: not."""
+    fit = replace(GOOD.solution.fit, raw_reduced_chi2={name: 0.45})
+
+    assert with_solution(GOOD, fit=fit).finding("size of the errors").verdict == verdict

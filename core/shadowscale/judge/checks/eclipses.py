@@ -6,9 +6,9 @@ from math import isfinite, log, nan
 
 from shadowscale.fit.solution import Alternative
 from shadowscale.judge.check import Check
-from shadowscale.judge.evidence import Evidence
+from shadowscale.judge.evidence import TINY, Evidence
 from shadowscale.judge.finding import Finding
-from shadowscale.judge.words import capital, listed, number, percent
+from shadowscale.judge.words import capital, listed, number, percent, sentence
 
 MIRROR_WITHIN = 0.25  # |ln(k k')| below which another solution counts as the mirror of this one
 NEARLY_CERTAIN = 0.95  # correlation above which two quantities cannot be told apart
@@ -73,7 +73,9 @@ def mirror_solution(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     """Chi-squared by which the solution with the radii exchanged is worse."""
     mirrors = [other for other in evidence.solution.alternatives if _is_mirror(evidence, other)]
     if mirrors:
-        return _known_mirror(check, min(mirrors, key=lambda other: other.delta_chi2))
+        return _known_mirror(
+            evidence, check, mirror=min(mirrors, key=lambda other: other.delta_chi2)
+        )
     ratio, sigma = evidence.value("radius_ratio"), evidence.sigma("radius_ratio")
     away = abs(log(ratio)) * ratio / sigma if ratio > 0 and sigma > 0 else nan
     if isfinite(away) and away < 2:
@@ -86,11 +88,14 @@ def mirror_solution(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     return check.passed("No solution with the radii exchanged was found to fit.")
 
 
-def _known_mirror(check: Check, mirror: Alternative) -> tuple[Finding, ...]:
+def _known_mirror(evidence: Evidence, check: Check, *, mirror: Alternative) -> tuple[Finding, ...]:
     worse, other = mirror.delta_chi2, mirror.values["radius_ratio"]
+    apart = abs(other - evidence.value("radius_ratio")) / max(evidence.sigma("radius_ratio"), TINY)
     if not isfinite(worse):
         return check.silent("the solution with the radii exchanged has no chi-squared.")
-    words = f"With the radii exchanged (k = {number(other)}) the fit is {_worse(worse)}"
+    words = f"With the radii exchanged (k = {number(other)}) chi-squared is {_worse(worse)}"
+    if worse < (check.limit or 0.0) and apart < 2:
+        return check.passed(f"{words}, but that lies within the errors of k.", worse)
     if worse < (check.limit or 0.0):
         return check.warned(
             f"{words}: the light curve does not say which star is the larger. {ADVICE}", worse
@@ -99,7 +104,7 @@ def _known_mirror(check: Check, mirror: Alternative) -> tuple[Finding, ...]:
 
 
 def _worse(difference: float) -> str:
-    return f"{'worse' if difference >= 0 else 'better'} by {number(abs(difference))} in chi-squared"
+    return f"{'worse' if difference >= 0 else 'better'} by {number(abs(difference))}"
 
 
 def _is_mirror(evidence: Evidence, other: Alternative) -> bool:
@@ -120,10 +125,16 @@ def other_solutions(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     if not others:
         return check.passed("No other solution was found that the data do not exclude.")
     nearest = min(others, key=lambda other: other.delta_chi2)
-    words = f"{capital(nearest.words.rstrip('.'))}: {_worse(nearest.delta_chi2)}"
+    words = sentence(nearest.words)
     if nearest.delta_chi2 < (check.limit or 0.0):
-        return check.warned(f"{words}, which the data do not exclude.", nearest.delta_chi2)
-    return check.passed(f"{words}, and so excluded.", nearest.delta_chi2)
+        return check.warned(
+            f"{words} The data do not exclude it (chi-squared {_worse(nearest.delta_chi2)}).",
+            nearest.delta_chi2,
+        )
+    return check.passed(
+        f"{words} The data exclude it (chi-squared {_worse(nearest.delta_chi2)}).",
+        nearest.delta_chi2,
+    )
 
 
 CHECKS = (

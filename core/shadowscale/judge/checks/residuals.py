@@ -10,7 +10,7 @@ from shadowscale.data.photometry import Floats, Ints
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.solution import Solution, VelocityResult
 from shadowscale.judge.check import Check
-from shadowscale.judge.evidence import Evidence, LightRows
+from shadowscale.judge.evidence import TINY, Evidence, LightRows
 from shadowscale.judge.finding import Finding
 from shadowscale.judge.words import counted, listed, number, percent
 
@@ -27,7 +27,7 @@ def size_of_errors(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
         return check.silent(
             "no errors came with the data; they were taken from the scatter of the residuals."
         )
-    judged = {name: _odds(value, check) for name, value in given.items()}
+    judged = {name: _excess(value, _chance(evidence, name), check) for name, value in given.items()}
     worst = max(judged, key=lambda name: judged[name])
     off = [name for name in given if judged[name] > 1]
     if not off:
@@ -39,11 +39,11 @@ def size_of_errors(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     words = " ".join(_misjudged(name, given[name]) for name in off)
     if given[worst] > FAR_OFF:
         return check.failed(
-            f"{words} A misfit that large means that the model does not describe the data.",
+            f"{words} Either the errors mean nothing, or the model does not describe the data.",
             given[worst],
         )
     return check.warned(
-        f"{words} The quoted uncertainties hold only as far as the errors were rescaled.",
+        f"{words} The fit rescaled them, and the quoted uncertainties with them; find out why.",
         given[worst],
     )
 
@@ -64,10 +64,28 @@ def _errors_given(evidence: Evidence) -> dict[str, float]:
     }
 
 
-def _odds(value: float, check: Check) -> float:
-    """How far a reduced chi-squared is from 1, in factors of the limit."""
+def _excess(value: float, chance: float, check: Check) -> float:
+    """How far a reduced chi-squared is from 1, in units of the limit or of three sigma of chance."""
     limit = check.limit or 1.0
-    return max(value, 1 / value if value > 0 else np.inf) / limit
+    if value >= 1:
+        return min(value / limit, (value - 1) / chance)
+    return min(1 / (limit * max(value, TINY)), (1 - value) / chance)
+
+
+def _chance(evidence: Evidence, name: str) -> float:
+    """Three sigma of a reduced chi-squared of that many points: 3 sqrt(2/n)."""
+    return 3 * sqrt(2 / max(_points(evidence, name), 1))
+
+
+def _points(evidence: Evidence, name: str) -> int:
+    """Points behind a band's or a star's chi-squared."""
+    if name in evidence.bands:
+        return int((evidence.light.band == evidence.bands.index(name)).sum())
+    result = evidence.solution.velocity
+    if result is None:
+        return 1
+    counts = {1: int((result.why1 == 0).sum()), 2: int((result.why2 == 0).sum())}
+    return next((counts[star] for star in (1, 2) if f"star {star}" in name), sum(counts.values()))
 
 
 def _misjudged(name: str, value: float) -> str:
@@ -257,7 +275,8 @@ CHECKS = (
         "Are the residuals as large as the errors that came with the data?",
         size_of_errors,
         2.0,
-        "reduced chi-squared within a factor of 2 of 1: errors right to 40 % (common practice)",
+        "reduced chi-squared within a factor of 2 of 1: errors right to 40 % (common practice); more where few "
+        "points scatter by chance, 3 sqrt(2/n)",
     ),
     Check(
         "neighbouring residuals",
