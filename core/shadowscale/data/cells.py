@@ -22,6 +22,8 @@ def number_in(cell: str, decimal_comma: bool = False) -> float | None:
     if "_" in text:
         return None
     if decimal_comma:
+        if "." in text:
+            return None
         text = text.replace(",", ".")
     text = _FORTRAN.sub("e", text.replace("\N{MINUS SIGN}", "-"))
     try:

@@ -25,7 +25,7 @@ _TIME_NAMES = (  # the earlier, the better
     r"(tbjd|btjd|bkjd|bjd|bmjd|mbjd|rbjd|brjd)([ _-]*(tdb|utc|tt))?",
     r"(hjd|hmjd|mhjd|rhjd|hrjd)([ _-]*(tdb|utc|tt))?",
     r"(jd|mjd|rjd|tjd)([ _-]*(tdb|utc|tt))?|julian[ _]?da(te|y)",
-    r"time([ _-]*(bjd|hjd|jd|mjd|btjd|bkjd)([ _-]*(tdb|utc|tt))?)?|obs[ _]?time|mid[ _]?time|t[ _]?mid|times",
+    r"time([ _-]*(bjd|hjd|jd|mjd|btjd|bkjd)([ _-]*(tdb|utc|tt))?)?|(bjd|hjd|jd|mjd)[ _]?time|obs[ _]?time|mid[ _]?time|t[ _]?mid|times",
     r"date([ _-]?obs)?|epoch|t|day|days",
 )
 _FLUX_NAMES = (
@@ -53,15 +53,15 @@ _MAG_NAMES = (
     (r"m", "m stands for magnitude"),
 )
 _NOT_LIGHT = re.compile(
-    r".*(err|unc|sig|std|background|bkg|bg|airmass|quality|flag|comp|check|chk|zero|ref).*|e[ _].*|s[ _].*"
+    r".*(err|unc|sig|std|background|bkg|bg|airmass|quality|flag|comp|check|chk|zero|ref|lim|over).*|e[ _].*|s[ _].*"
 )
 _ERROR_NAMES = r"e|s|err(or)?s?|sig(ma)?|unc(ertainty)?|stdev|sd|(mag|flux|m|f|rel_?flux|light)[ _]?(err(or)?|unc(ertainty)?|sig(ma)?)(_t1)?|(e|err(or)?|sig(ma)?|s|unc|d)[ _]?(mag|flux|m|f)|e_?(mag|flux)|rel_?flux_?err_?\w*"
 _VELOCITY_NAMES = (r"(rv|vr|v|vel|velocity|vrad|radvel|radial[ _]?velocity)", r"(rv|vr|vel|velocity|vrad|radial[ _]?velocity)")  # fmt: skip
-_STARS = {1: r"(1|a|p|pri|prim|primary)", 2: r"(2|b|s|sec|secondary)"}
+_STARS = {1: r"(1|a|pri|prim|primary)", 2: r"(2|b|sec|secondary)"}
 _ROLE_NAMES = {
-    "band": r"band|filter|filt|fil|passband|bandpass|flt",
-    "airmass": r"air[ _]?mass|am|secz|x",
-    "quality": r"(sap_|d|k_)?quality(_?flag)?|qual(ity)?_?flags?|flags?|qual|q",
+    "band": r"(photometric[ _]?)?(band|filter|filt|fil|passband|bandpass|flt)([ _]?(code|name))?",
+    "airmass": r"air[ _]?mass|amass|am|secz|x",
+    "quality": r"(sap_|d|k_)?quality(_?flag)?|qual(ity)?_?flags?|(cat)?flags?|qual|q",
     "exposure": r"exp(osure)?([ _]?time)?|exptime|t_?exp|int(egration)?[ _]?time|cadence_s",
     "source": r"source|instrument|instr?|telescope|tel|site|observatory|spectrograph|ref(erence)?|spec",
 }
@@ -260,20 +260,44 @@ def _taken(table: RawTable, free: _Free, role: str, index: int, reason: str) -> 
 
 
 def _light(table: RawTable, free: _Free) -> Guess:
-    """The column of light: flux is preferred to magnitudes, a plain name to a longer one."""
-    for role, ranked in (("flux", _FLUX_NAMES), ("mag", _MAG_NAMES)):
-        if role in free.closed:
-            continue
-        for pattern, reason in ranked:
-            found = [
-                index
-                for index in _matching(table, free, pattern)
-                if not _NOT_LIGHT.fullmatch(plain_name(table.columns[index].name))
-                and not table.columns[index].is_text
-            ]
-            if found:
-                return _only(table, free, role, found, reason)
-    return _light_otherwise(table, free)
+    """The column of light by its name, else otherwise.
+
+    Flux is preferred to magnitudes unless only the magnitudes have an error; a plain name to a longer one.
+    """
+    named = {role: _named_light(table, free, role) for role in ("flux", "mag")}
+    named = {role: found for role, found in named.items() if found[0] and role not in free.closed}
+    if not named:
+        return _light_otherwise(table, free)
+    with_error = [
+        role
+        for role, (found, _) in named.items()
+        if any(_own_error(table, free, index) is not None for index in found)
+    ]
+    role = with_error[0] if with_error else next(iter(named))
+    found, reason = named[role]
+    if len(named) > 1:
+        reason += (
+            ", preferred because only it has an error"
+            if role == "mag"
+            else ", preferred to magnitudes"
+        )
+    return _only(table, free, role, found, reason)
+
+
+def _named_light(table: RawTable, free: _Free, role: str) -> tuple[list[int], str]:
+    """Columns whose names speak of that light, the plainest names only."""
+    ranked, other = (_FLUX_NAMES, _MAG_UNITS) if role == "flux" else (_MAG_NAMES, _FLUX_UNITS)
+    for pattern, reason in ranked:
+        found = [
+            index
+            for index in _matching(table, free, pattern)
+            if not _NOT_LIGHT.fullmatch(plain_name(table.columns[index].name))
+            and not table.columns[index].is_text
+            and not other.match(unit_of(table.columns[index]))
+        ]
+        if found:
+            return found, reason
+    return [], ""
 
 
 def _light_otherwise(table: RawTable, free: _Free) -> Guess:
@@ -313,7 +337,9 @@ def _only(table: RawTable, free: _Free, role: str, found: list[int], reason: str
 def _own_error(table: RawTable, free: _Free, light: int) -> int | None:
     """The column whose name is the light's with a word for error."""
     name = re.escape(plain_name(table.columns[light].name))
-    base = re.escape(re.sub(r"[ _-]?(mag|flux)$", "", plain_name(table.columns[light].name)))
+    base = (
+        re.escape(re.sub(r"[ _-]?(mag|flux)$", "", plain_name(table.columns[light].name))) or name
+    )
     words = r"(e|err|error|s|sig|sigma|unc|uncertainty|stdev)"
     pattern = (
         rf"({name}|{base})[ _-]?{words}|{words}[ _-]?({name}|{base})|({base})[ _-]?{words}[ _-]?\w*"
@@ -327,8 +353,12 @@ def _light_error(table: RawTable, free: _Free, light: Guess) -> Guess | None:
     own = _own_error(table, free, light.index)
     if own is not None:
         return _guess(table, "error", own, f"the name is {light.column!r} with a word for error")
-    found = _matching(table, free, _ERROR_NAMES)
-    found = [index for index in found if not table.columns[index].is_text]
+    other = "mag" if light.role == "flux" else "flux"
+    found = [
+        index
+        for index in _matching(table, free, _ERROR_NAMES)
+        if not table.columns[index].is_text and other not in plain_name(table.columns[index].name)
+    ]
     return _guess(table, "error", found[0], "the name says error") if found else None
 
 
@@ -378,6 +408,7 @@ def _velocity(table: RawTable, free: _Free, star: int, *, error: bool) -> Guess 
     """The velocity (or its error) of a star: rv1, v_a, RV_pri ...; star 1 also without a number."""
     name = f"{_VELOCITY_NAMES[0]}[ _]?{_STARS[star]}"
     bare = [_VELOCITY_NAMES[1]] if star == 1 else []
+    unit = r"([ _](k?ms|k?mps|k?m/s))?"
     words = r"(e|err|error|s|sig|sigma|unc|uncertainty)"
     number = _STARS[star]
     for pattern in [name, *bare]:
@@ -387,6 +418,7 @@ def _velocity(table: RawTable, free: _Free, star: int, *, error: bool) -> Guess 
                 if pattern == name
                 else rf"|{words}"
             )
+        pattern = f"({pattern}){unit}"
         found = [i for i in _matching(table, free, pattern) if not table.columns[i].is_text]
         if found:
             role = f"rv{star}" + ("_err" if error else "")

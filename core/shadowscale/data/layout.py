@@ -87,18 +87,25 @@ def found_layout(sample: list[str]) -> Layout | None:
 def _score(sample: list[str], separator: str, decimal_comma: bool) -> tuple[float, Layout | None]:
     """Mean over the lines of the share of cells that are numbers or empty, ragged lines nought."""
     rows = [split(line, separator) for line in sample]
-    data = [_without_trailing(cells) for cells in rows if looks_like_data(cells, decimal_comma)]
+    looks = [looks_like_data(cells, decimal_comma) for cells in rows]
+    data = [cells for cells, is_data in zip(rows, looks) if is_data]
     if not data:
         return 0.0, None
     columns = Counter(map(len, data)).most_common(1)[0][0]
-    score = sum(_share(cells, decimal_comma) for cells in data if len(cells) == columns)
+    data = [cells for cells in data if len(cells) == columns]
+    others = [cells for cells, is_data in zip(rows, looks) if not is_data]
+    score = sum(_share(cells, decimal_comma) for cells in data)
     score *= 1.0 if separator != MIXED else 0.9
     needed = not decimal_comma or any("," in cell for cells in data for cell in cells)
+    columns -= _ends_with_separator(data, others)
     return (score / len(sample) if needed else 0.0), Layout(separator, decimal_comma, columns)
 
 
-def _without_trailing(cells: list[str]) -> list[str]:
-    return cells[:-1] if len(cells) > 2 and not cells[-1].strip() else cells
+def _ends_with_separator(data: list[list[str]], others: list[list[str]]) -> bool:
+    """Whether the lines end with a separator behind the last column, and not with an empty cell."""
+    columns = len(data[0])
+    named = any(len(cells) == columns and cells[-1].strip() for cells in others)
+    return columns > 2 and not named and all(not cells[-1].strip() for cells in data)
 
 
 def _share(cells: list[str], decimal_comma: bool) -> float:

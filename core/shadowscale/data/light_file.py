@@ -168,7 +168,7 @@ def _band_of(table: RawTable, light: Guess) -> tuple[str, str]:
     """The band of a whole file, and what says so."""
     for key in ("band", "filter", "passband", "filt"):
         if table.headers.get(key, "").strip():
-            return table.headers[key].strip(" '\""), f"by the comment {key!r}"
+            return _unquoted(table.headers[key]), f"by the comment {key!r}"
     for key in ("telescop", "mission", "instrume"):
         named = band_name(table.headers.get(key, "").strip(" '\""))
         if named in ("TESS", "Kepler", "CoRoT", "CHEOPS"):
@@ -182,6 +182,12 @@ def _band_of(table: RawTable, light: Guess) -> tuple[str, str]:
     if len(last) > 1 and band_name(last[-1]) is not None:
         return last[-1], "by the file's name"
     return NO_BAND, ""
+
+
+def _unquoted(text: str) -> str:
+    """Without the pair of quotes around it; a prime behind a name (r') stays."""
+    text = text.strip()
+    return text[1:-1] if len(text) > 2 and text[0] == text[-1] and text[0] in "'\"" else text
 
 
 def _band_word(column: str) -> str:

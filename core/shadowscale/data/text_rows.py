@@ -187,7 +187,7 @@ class _Part:
 def _fast_numbers(cells: Sequence[str], decimal_comma: bool) -> Floats | None:
     """All cells as numbers at once, or None if one of them needs a closer look."""
     joined = "".join(cells)
-    if "_" in joined:  # float() takes 1_000
+    if "_" in joined or (decimal_comma and "." in joined):  # float() takes 1_000
         return None
     source = (cell.replace(",", ".") for cell in cells) if decimal_comma else cells
     try:

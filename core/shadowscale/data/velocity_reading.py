@@ -32,7 +32,7 @@ from shadowscale.data.velocities import NO_MEASUREMENT, Velocities
 from shadowscale.errors import Problem, TableError, UnitError
 
 MINIMUM = 3  # velocities of either star
-TOO_FAST = 3000.0  # [km/s] a median above this must be in m/s (fastest detached stars move at some 100 km/s)
+TOO_FAST = 3000.0  # [km/s] more must be m/s: detached stars move at some 100 km/s
 _UNITS = {"km/s": 1.0, "kms-1": 1.0, "m/s": 1e-3, "ms-1": 1e-3}
 
 
@@ -125,36 +125,49 @@ def _part(table: RawTable, columns: Chosen, reasons: Reasons) -> _Part:
 
 
 def _set_units(part: _Part, roles: dict[str, Guess], told: str) -> None:
+    """Everything in km/s; without a unit the size of the numbers of both stars decides."""
+    fallback = told or part.table.headers.get("unit", "")
+    without = _guessed_factor(part) if _plain(fallback) not in _UNITS else _UNITS[_plain(fallback)]
     for star in (0, 1):
         guess = roles.get(f"rv{star + 1}")
         if guess is None:
             continue
-        factor = _factor(part, guess, told, part.velocity[star])
+        factor = _factor(part, guess, told=told, without=without)
         error = roles.get(f"rv{star + 1}_err")
-        own = error is not None and error.unit and not told
-        error_factor = _factor(part, error, "", part.velocity[star]) if own and error else factor
         part.velocity[star] = part.velocity[star] * factor
-        part.error[star] = part.error[star] * error_factor
+        if error is not None:
+            part.error[star] *= _factor(part, error, told=told, without=factor)
 
 
-def _factor(part: _Part, guess: Guess, told: str, velocity: Floats) -> float:
-    """From the printed unit to km/s; without a unit the size of the numbers decides."""
-    unit = re.sub(r"[\s*^]", "", told or guess.unit or part.table.headers.get("unit", "")).lower()
+def _plain(unit: str) -> str:
+    return re.sub(r"[\s*^]", "", unit).lower()
+
+
+def _factor(part: _Part, guess: Guess, *, told: str, without: float) -> float:
+    """From the printed unit to km/s, `without` where none is printed."""
+    if re.search(r"[_ ](ms|mps)$", guess.column.lower()) and not told:
+        return 1e-3
+    unit = _plain(told or guess.unit)
     if unit in _UNITS:
         return _UNITS[unit]
-    if told or _speed_like(unit):
+    if told or _foreign(unit):
         found = told or guess.unit
         raise UnitError(Problem(part.table.path, "km/s or m/s", found, column=guess.column))
-    finite = np.abs(velocity[np.isfinite(velocity)])
-    if re.search(r"[_ ]ms$|[_ ]m/s$|[_ ]mps$", guess.column.lower()):
-        return 1e-3
-    if len(finite) and float(np.median(finite)) > TOO_FAST:
-        part.notes.append(f"{part.table.path}: {guess.column} is too fast for km/s, taken as m/s")
-        return 1e-3
-    return 1.0
+    return without
 
 
-def _speed_like(unit: str) -> bool:
+def _guessed_factor(part: _Part) -> float:
+    speeds = np.abs(np.concatenate(part.velocity))
+    speeds = speeds[np.isfinite(speeds)]
+    if not len(speeds) or float(np.max(speeds)) <= TOO_FAST:
+        return 1.0
+    if float(np.percentile(speeds, 90)) <= TOO_FAST:
+        return 1.0  # a few wild numbers only
+    part.notes.append(f"{part.table.path}: the numbers are too fast for km/s and taken as m/s")
+    return 1e-3
+
+
+def _foreign(unit: str) -> bool:
     return unit in {"cm/s", "km/h", "au/d", "pc/myr", "d", "mag", "km", "m", "s"}
 
 
