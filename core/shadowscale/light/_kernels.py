@@ -34,6 +34,7 @@ Floats = NDArray[np.float64]
 
 _STEPS = 11  # rungs of the ladder; each serves singularities four times nearer than the one before
 _NODES_FIRST, _NODES_MORE = 24, 5
+_NO_GAP = 1e-24  # kc^2 at inner contact, where the elliptic integrals alone are infinite
 
 
 def _ladder() -> tuple[NDArray[np.int64], Floats, Floats]:
@@ -161,7 +162,7 @@ def closed_forms(
         # Partial: kappa0 and kappa1 are half of the arcs seen from the centre of the dark disc
         # and of the star; half-angle forms, so that p = 100 does not cancel.
         k = math.sqrt(top2 / four)
-        kc2 = inner * total / four
+        kc2 = max(inner * total / four, _NO_GAP)
         kc = math.sqrt(kc2)
         kappa0 = 2.0 * math.atan2(k, kc)
         kappa1 = 2.0 * math.atan2(math.sqrt(inner * outer), math.sqrt(cover * total))
@@ -182,9 +183,9 @@ def closed_forms(
     else:
         kappa0, sine0 = math.pi, 0.0
         area = math.pi * p * p
-        thin2 = -inner * total  # the smallest mu^2 on the edge, 1-(d+p)^2
-        kc2 = thin2 / top2
-        kc = max(math.sqrt(kc2), 1e-150)
+        kc2 = max(-inner * total / top2, _NO_GAP)
+        kc = math.sqrt(kc2)
+        thin2 = kc2 * top2  # the smallest mu^2 on the edge, 1-(d+p)^2
         ratio = (d - p) / (d + p)
         third = ratio * ratio * kc2
         shift = 3.0 * ratio / top2
