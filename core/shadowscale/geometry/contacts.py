@@ -169,6 +169,79 @@ def contact_phases(
     return ContactPhases(primary, secondary)
 
 
+def contact_solution(
+    primary: EclipseTiming,
+    secondary: EclipseTiming | None,
+    *,
+    period: float,
+    light_below1: float | None = None,
+    light_below2: float | None = None,
+) -> ContactSolution:
+    """The classical solution: geometry from contact times and depths alone.
+
+    Parameters
+    ----------
+    primary, secondary : EclipseTiming
+        As measured, or as the markers lie; None if no secondary was seen.
+    period : float [d]
+    light_below1, light_below2 : float, optional
+        Light left at the middle of each eclipse, fraction of the light outside; instead of the depths.
+
+    Returns
+    -------
+    ContactSolution
+        Its notes say what is undetermined; `others` holds what fits as well. Noise that makes the
+        numbers impossible gives the nearest pair of stars and a note, never an error.
+
+    Raises
+    ------
+    ValueError
+        If a number is not finite, a duration not between 0 and half a cycle, or both eclipses the same.
+
+    Notes
+    -----
+    All contacts and depths are solved together on the exact orbit by least squares; with two eclipses
+    seen e cos w and e sin w are found too, with one a circular orbit is taken. No third light is
+    assumed unless total and annular depths cannot be had without.
+    """
+    from shadowscale.geometry.classical import classical_solution
+
+    return classical_solution(
+        primary,
+        secondary,
+        period=period,
+        light_below1=light_below1,
+        light_below2=light_below2,
+    )
+
+
+def starting_points(
+    primary: EclipseTiming, secondary: EclipseTiming | None, *, period: float
+) -> tuple[dict[str, float], ...]:
+    """Several places from which the full fit may start, the most likely first.
+
+    Parameters
+    ----------
+    primary, secondary : EclipseTiming
+    period : float [d]
+
+    Returns
+    -------
+    tuple of dict
+        Each with `radius_sum radius_ratio inclination ecosw esinw surface_brightness_ratio`, all of them
+        two stars that make eclipses of about these durations: both sides of k = 1, and where the
+        eclipses are partial several inclinations.
+
+    Raises
+    ------
+    ValueError
+        As `contact_solution`.
+    """
+    from shadowscale.geometry.starts import starts
+
+    return starts(primary, secondary, period=period)
+
+
 @dataclass(frozen=True)
 class _HalfOrbit:
     """The half of the orbit around one conjunction; x is the true longitude from there.
