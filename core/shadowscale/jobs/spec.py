@@ -164,7 +164,7 @@ def _document(path: Path) -> dict[str, Any]:
             Problem(str(path), "JSON", error.msg, line=error.lineno, column=str(error.colno))
         ) from error
     except tomllib.TOMLDecodeError as error:
-        raise InputError(_toml_problem(path, str(error))) from error
+        raise InputError(_toml_problem(path, str(error), lines=text.count("\n") + 1)) from error
     except (UnicodeDecodeError, RecursionError, ValueError) as error:
         raise InputError(Problem(str(path), "TOML or JSON text", str(error))) from error
     return found
@@ -174,9 +174,10 @@ def _is_json(path: Path, text: str) -> bool:
     return path.suffix.lower() == ".json" or text.lstrip().startswith("{")
 
 
-def _toml_problem(path: Path, message: str) -> Problem:
+def _toml_problem(path: Path, message: str, *, lines: int) -> Problem:
+    """Where the reader of TOML stumbled; at the end where it names no place."""
     match = _PLACE.search(message)
+    words = re.sub(r"\s*\(at .*\)$", "", message)
     if match is None:
-        return Problem(str(path), "TOML", message)
-    words = message[: match.start()].strip()
+        return Problem(str(path), "TOML", words, line=lines)
     return Problem(str(path), "TOML", words, line=int(match[1]), column=match[2])
