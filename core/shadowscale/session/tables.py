@@ -26,13 +26,17 @@ def with_tables(session: Session) -> Session:
     from shadowscale.data import read_photometry, read_velocities
 
     photometry, velocities = None, None
-    if session.photometry_sources:
-        paths, columns = _request(session.photometry_sources)
-        bands = [source.band for source in session.photometry_sources if source.band]
-        photometry = read_photometry(paths, columns=columns, band=bands[0] if bands else None)
-    if session.velocity_sources:
-        paths, columns = _request(session.velocity_sources)
-        velocities = read_velocities(paths, columns=columns)
+    light, speed = session.photometry_sources, session.velocity_sources
+    if light:
+        photometry = read_photometry(
+            [source.path for source in light],
+            columns=[source.columns for source in light],
+            band=[source.band or None for source in light],
+        )
+    if speed:
+        velocities = read_velocities(
+            [source.path for source in speed], columns=[source.columns for source in speed]
+        )
     read = replace(session, photometry=photometry, velocities=velocities)
     return with_exclusions(_with_checksums(read))
 
@@ -55,14 +59,6 @@ def checksum(path: str | Path) -> str:
     """The SHA-256 of a file, as hexadecimal digits."""
     with Path(path).open("rb") as stream:
         return hashlib.file_digest(stream, "sha256").hexdigest()
-
-
-def _request(sources: tuple[Source, ...]) -> tuple[list[Path], dict[str, str]]:
-    """Paths and the columns asked for; a later file's wish for a role wins."""
-    columns: dict[str, str] = {}
-    for source in sources:
-        columns.update(source.columns)
-    return [Path(source.path) for source in sources], columns
 
 
 def _with_checksums(session: Session) -> Session:

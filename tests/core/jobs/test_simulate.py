@@ -238,7 +238,7 @@ WRONG = [
     (SYSTEM + RUNS.replace("hours = 60", "hours = 6e9"), "at most 5000000 points"),
     (SYSTEM + '[photometry]\nkind = "counts"\n' + RUNS, "magnitude or flux, found 'counts'"),
     (SYSTEM, r"column 'photometry'|a value for 'photometry'"),
-    ("a = [1,\n", r"line 2: expected TOML, found Unclosed array"),
+    ("a = [1,\n", r"line 2: expected TOML, found Invalid value"),
     ("a = 1\nb = =\n", r"line 2, column '5': expected TOML"),
     ('{"a": }', r"line 1, column '7': expected JSON"),
 ]
