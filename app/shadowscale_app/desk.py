@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, fields, replace
 from pathlib import Path
 
@@ -28,13 +28,18 @@ class Change:
 
 
 class Desk(QObject):
-    """Holds the session. Signal `changed(session, names)`: which of its fields are new."""
+    """Holds the session. Signal `changed(session, names)`: which of its fields are new.
+
+    `complete(before, after)` adds to each step what follows from it at once.
+    """
 
     changed = Signal(object, object)
 
     def __init__(self, session: Session | None = None, parent: QObject | None = None) -> None:
         super().__init__(parent)
         self.path: Path | None = None
+        self.complete: Callable[[Session, Session], Session] = lambda _before, after: after
+        self._telling = False
         self._history = History(session or Session())
         self._saved = self._history.session
         self._shown = self._history.session
@@ -66,14 +71,15 @@ class Desk(QObject):
         """Do a step that can be undone."""
         if change.session is self.session:
             return
-        self._history.push(change.label, change.session, merge=change.merge or None)
+        session = self.complete(self.session, change.session)
+        self._history.push(change.label, session, merge=change.merge or None)
         self._tell()
 
     def settle(self, session: Session) -> None:
         """Take results that belong to the present step."""
         if session is not self.session:
             self._history.amend(session)
-            self._tell()
+        self._tell()
 
     def look(self, view: Mapping[str, object]) -> None:
         """Remember how things are shown; not a step."""
@@ -99,9 +105,16 @@ class Desk(QObject):
         self.changed.emit(self.session, frozenset())
 
     def _tell(self) -> None:
-        names = changed_names(self._shown, self.session)
-        self._shown = self.session
-        self.changed.emit(self.session, names)
+        if self._telling:
+            return  # whoever tells now goes on until all is told
+        self._telling = True
+        try:
+            while self._shown is not self.session:
+                names = changed_names(self._shown, self.session)
+                self._shown = self.session
+                self.changed.emit(self.session, names)
+        finally:
+            self._telling = False
 
 
 def changed_names(before: Session, after: Session) -> frozenset[str]:

@@ -31,6 +31,7 @@ class Live(QObject):
         self._timer.setSingleShot(True)
         self._timer.setInterval(THROTTLE_MS)
         self._timer.timeout.connect(self._submit)
+        desk.complete = _with_geometry
         lane.answered.connect(self._answered)
         desk.changed.connect(self._changed)
 
@@ -56,10 +57,6 @@ class Live(QObject):
         if "name" in names and "photometry" in names:  # another piece of work
             self.forget()
             return
-        if "markers" in names and session.markers is not None and "solution" not in names:
-            with trouble.guard("working out the geometry from the markers"):
-                self._desk.settle(with_contact_solution(session))
-            self._before = self._desk.session
         solved = session.solution is not None and before.solution is session.solution
         if self.following and solved and asks_for_solution(before, session):
             self.ask()
@@ -82,6 +79,19 @@ class Live(QObject):
             return
         assert isinstance(answer.result, Session)
         self._desk.settle(with_results(self._desk.session, answer.result))
+
+
+def _with_geometry(before: Session, after: Session) -> Session:
+    """A step that moved markers brings its contact solution along."""
+    if (
+        after.markers is None
+        or after.markers is before.markers
+        or after.contact is not before.contact
+    ):
+        return after
+    with trouble.guard("working out the geometry from the markers"):
+        return with_contact_solution(after)
+    return after
 
 
 def with_results(session: Session, found: Session) -> Session:

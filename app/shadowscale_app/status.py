@@ -22,6 +22,7 @@ class Status(QStatusBar):
         super().__init__(parent)
         self.setAccessibleName("Status")
         self.setSizeGripEnabled(False)
+        self.setContentsMargins(8, 0, 12, 0)
         self.words = QLabel("")
         self.words.setTextFormat(Qt.TextFormat.PlainText)
         self.live = QLabel("")

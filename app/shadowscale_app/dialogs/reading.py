@@ -183,9 +183,7 @@ class ReadingDialog(QDialog):
         for number, row in enumerate(rows):
             for column, text in enumerate(row):
                 item = QTableWidgetItem(text)
-                item.setTextAlignment(
-                    int(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
-                )
+                item.setTextAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
                 self.rows.setItem(number, column, item)
         self.rows.resizeColumnsToContents()
 

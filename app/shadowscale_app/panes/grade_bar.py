@@ -12,7 +12,7 @@ from shadowscale.view.rows import BADLY, FAIRLY, STRONG, WELL, Row
 from shadowscale_app import theme
 from shadowscale_app.models.quantities import ROW
 
-BAR = 46.0
+BAR = 34.0
 SIGNS = {WELL: "", FAIRLY: "!", BADLY: "!!"}
 
 
@@ -36,7 +36,7 @@ class GradeBar(QStyledItemDelegate):
             strong = abs(row.correlation) >= STRONG
             painter.setPen(QColor(now.badly if strong else now.quiet))
             painter.setFont(theme.small_font(-1.0))
-            words = area.adjusted(BAR + 18, 0, 0, 0)
+            words = area.adjusted(BAR + 15, 0, 0, 0)
             text = painter.fontMetrics().elidedText(
                 row.strongest, Qt.TextElideMode.ElideRight, int(words.width())
             )
@@ -58,7 +58,7 @@ class GradeBar(QStyledItemDelegate):
         painter.drawRoundedRect(QRectF(ground.left(), ground.top(), BAR * share, 5), 2, 2)
         painter.setPen(tint)
         painter.drawText(
-            QRectF(ground.right() + 3, area.top(), 14, area.height()),
+            QRectF(ground.right() + 2, area.top(), 14, area.height()),
             Qt.AlignmentFlag.AlignVCenter,
             SIGNS.get(row.grade, ""),
         )

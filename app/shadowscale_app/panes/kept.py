@@ -69,9 +69,7 @@ class KeptPane(Pane):
         for number, row in enumerate(found.rows):
             for column, text in enumerate(row.cells):
                 item = QTableWidgetItem(text)
-                item.setTextAlignment(
-                    int(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
-                )
+                item.setTextAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
                 self.table.setItem(number, column, item)
         self.table.horizontalHeader().setSectionResizeMode(QHeaderView.ResizeMode.ResizeToContents)
         self._enable()

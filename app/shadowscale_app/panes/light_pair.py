@@ -47,6 +47,9 @@ class LightPair(QWidget):
             self._show_points(session, look)
         if names & LIGHT or names & {"markers", "contact"}:
             self._show_models(session, look)
+        if "view" in names:
+            self.curve.set_inverted(look.magnitudes)
+            self.rest.box.invertY(look.magnitudes)
         if names & {"markers", "view"}:
             groups = (
                 look.groups if not self.only else tuple(g for g in look.groups if g == "contact")
@@ -164,8 +167,6 @@ class LightPair(QWidget):
             self._models.append(item)
 
     def _show_axes(self, session: Session, look: Look) -> None:
-        for picture in (self.curve, self.rest):
-            picture.box.invertY(look.magnitudes)
         self.curve.setLabel("left", "magnitude" if look.magnitudes else "light")
         self.rest.setLabel("left", "O \N{MINUS SIGN} C")
         period = (

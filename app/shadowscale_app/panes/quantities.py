@@ -22,6 +22,7 @@ from shadowscale.session.session import Session
 from shadowscale.view.rows import FREE, HELD, WITH_PRIOR, Row, quantity_rows, with_state, with_value
 from shadowscale_app.desk import Change
 from shadowscale_app.models.quantities import (
+    ERROR,
     GRADE,
     LIMITS,
     STATE,
@@ -34,9 +35,10 @@ from shadowscale_app.models.quantities import (
 from shadowscale_app.panes.grade_bar import GradeBar
 from shadowscale_app.panes.pane import Pane
 
+NOTHING = "Choose a quantity to move it"
 REACH = 100  # slider steps to either side of where it was taken up
 WATCHED = frozenset({"system", "solution", "plan"})
-WIDTHS = {SYMBOL: 74, VALUE: 92, 2: 92, UNIT: 40, STATE: 82, GRADE: 158}
+WIDTHS = {SYMBOL: 60, VALUE: 106, ERROR: 84, UNIT: 34, STATE: 84, GRADE: 112}
 
 
 class QuantitiesPane(Pane):
@@ -54,7 +56,7 @@ class QuantitiesPane(Pane):
         self.model = QuantityModel()
         self.table = QTableView()
         self.slider = QSlider(Qt.Orientation.Horizontal)
-        self.name = QLabel("Choose a quantity to move it")
+        self.name = QLabel(NOTHING)
         self.name.setObjectName("quiet")
         self._from = 0.0
         self._gesture = 0
@@ -115,12 +117,13 @@ class QuantitiesPane(Pane):
         table.verticalHeader().hide()
         table.verticalHeader().setDefaultSectionSize(22)
         header = table.horizontalHeader()
-        header.setStretchLastSection(True)
         header.setHighlightSections(False)
         header.setDefaultAlignment(Qt.AlignmentFlag.AlignLeft | Qt.AlignmentFlag.AlignVCenter)
         for column, width in WIDTHS.items():
             header.resizeSection(column, width)
-        header.setSectionResizeMode(LIMITS, QHeaderView.ResizeMode.Stretch)
+        header.setMinimumSectionSize(30)
+        header.setSectionResizeMode(GRADE, QHeaderView.ResizeMode.Stretch)
+        table.setColumnHidden(LIMITS, True)  # shown beside the slider and when resting the mouse
         table.setContextMenuPolicy(Qt.ContextMenuPolicy.CustomContextMenu)
         table.customContextMenuRequested.connect(self._menu)
         table.doubleClicked.connect(self._double_clicked)

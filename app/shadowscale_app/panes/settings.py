@@ -51,7 +51,7 @@ class SettingsPane(Pane):
         self._filling = False
         inner = QWidget()
         self._column = QVBoxLayout(inner)
-        self._column.setContentsMargins(10, 4, 10, 8)
+        self._column.setContentsMargins(10, 10, 10, 8)
         self._make_model_group()
         self._make_effects_group()
         self._band_group = QGroupBox("Bands")

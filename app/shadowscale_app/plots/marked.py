@@ -16,6 +16,7 @@ from shadowscale_app import theme
 from shadowscale_app.plots.marker import MarkerLine
 from shadowscale_app.plots.picture import Picture
 
+LABEL_HEIGHT = 0.08  # of the picture, from its upper edge to a marker's label
 STEP, COARSE, FINE = 5e-4, 10.0, 0.1  # cycles a key press; factors of Shift and Alt
 BANDS = {"window": (0.945, 1.0), "level": (0.885, 0.94), "excluded": (0.0, 1.0)}
 
@@ -45,6 +46,7 @@ class MarkedPicture(Picture):
         self.groups, self.only = set(groups), only
         self.lines: dict[str, MarkerLine] = {}
         self._bands: dict[str, pg.LinearRegionItem] = {}
+        self._inverted = False
         self._focused = ""
         self._start = 0.0
         self._gesture = 0
@@ -70,6 +72,17 @@ class MarkedPicture(Picture):
         if self._focused not in self.lines:
             self._focused = ""
 
+    def set_inverted(self, inverted: bool) -> None:
+        """The axis grows downwards, as magnitudes do; labels and bars stay on top."""
+        if inverted == self._inverted:
+            return
+        self._inverted = inverted
+        self.box.invertY(inverted)
+        for item in (*self.lines.values(), *self._bands.values()):
+            self.removeItem(item)
+        self.lines.clear()
+        self._bands.clear()
+
     def show_groups(self, groups: Iterable[str], markers: Markers | None) -> None:
         """Choose which kinds of markers are drawn."""
         self.groups = set(groups)
@@ -87,6 +100,11 @@ class MarkedPicture(Picture):
     def focused(self) -> str:
         """The marker that the keyboard moves; empty if none."""
         return self._focused
+
+    @property
+    def editor(self) -> QLineEdit | None:
+        """The little field in which a value is typed; None while it is closed."""
+        return self._editor
 
     def focus_marker(self, name: str) -> None:
         """Give one marker the keyboard."""
@@ -122,11 +140,10 @@ class MarkedPicture(Picture):
 
     def event(self, event: QEvent) -> bool:
         """Let Tab reach the markers: the graphics view would take it for itself."""
-        if event.type() == QEvent.Type.KeyPress and isinstance(event, QKeyEvent):
-            if event.key() in (Qt.Key.Key_Tab, Qt.Key.Key_Backtab):
-                forward = event.key() == Qt.Key.Key_Tab
-                if self.focusNextPrevChild(forward):
-                    return True
+        tabs = (Qt.Key.Key_Tab, Qt.Key.Key_Backtab)
+        pressed = isinstance(event, QKeyEvent) and event.type() == QEvent.Type.KeyPress
+        if pressed and event.key() in tabs and self.focusNextPrevChild(event.key() == tabs[0]):
+            return True
         return bool(super().event(event))
 
     def focusOutEvent(self, event: QFocusEvent) -> None:
@@ -176,7 +193,8 @@ class MarkedPicture(Picture):
         return sorted(self.lines, key=lambda name: self.lines[name].handle.phase)
 
     def _add_line(self, handle: Handle) -> None:
-        line = MarkerLine(handle, span=BANDS.get(handle.group, (0.0, 1.0)))
+        high = 1.0 - LABEL_HEIGHT if not self._inverted else LABEL_HEIGHT
+        line = MarkerLine(handle, span=self._span(handle.group), high=high)
         line.pulled.connect(self._pulled)
         line.let_go.connect(self._let_go)
         line.pointed_at.connect(self._pointed_at)
@@ -195,6 +213,10 @@ class MarkedPicture(Picture):
             handle = self.lines[name].handle
             self.told.emit(f"{handle.words}, phase {phase_text(handle.phase)}")
 
+    def _span(self, group: str) -> tuple[float, float]:
+        low, high = BANDS.get(group, (0.0, 1.0))
+        return (1.0 - high, 1.0 - low) if self._inverted else (low, high)
+
     def _show_bands(self, found: list[Handle]) -> None:
         edges: dict[str, list[float]] = {}
         groups: dict[str, str] = {}
@@ -210,7 +232,7 @@ class MarkedPicture(Picture):
                 band = pg.LinearRegionItem(
                     values=ends,
                     movable=False,
-                    span=BANDS[groups[stem]],
+                    span=self._span(groups[stem]),
                     pen=pg.mkPen(None),
                     brush=_band_brush(stem),
                 )

@@ -30,14 +30,16 @@ class MarkerLine(pg.InfiniteLine):
     pointed_at = Signal(str, bool)
 
     def __init__(
-        self, handle: Handle, *, span: tuple[float, float] = (0.0, 1.0), high: float = 0.97
+        self, handle: Handle, *, span: tuple[float, float] = (0.0, 1.0), high: float = 0.93
     ) -> None:
         super().__init__(pos=handle.phase, angle=90, movable=True, span=span)
         self.handle = handle
         self.focused = False
         self._held = False
         self._offset = 0.0
-        self.label = pg.InfLineLabel(self, text="", position=high, movable=False)
+        side = 1.0 if handle.short in ("1", "2") else 0.0
+        anchors = [(side, 0.5), (side, 0.5)]
+        self.label = pg.InfLineLabel(self, text="", position=high, movable=False, anchors=anchors)
         self.setZValue(20)
         self.setCursor(Qt.CursorShape.SplitHCursor)
         self.dress()

@@ -40,6 +40,7 @@ class Picture(pg.PlotWidget):
             axis.enableAutoSIPrefix(False)
             axis.setStyle(tickLength=-5, hideOverlappingLabels=True)
         self.getAxis("left").setWidth(62)
+        self.getAxis("bottom").setHeight(34)
         self.setLabel("left", left)
         self.setLabel("bottom", bottom)
         self.setMouseTracking(True)

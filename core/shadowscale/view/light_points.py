@@ -10,7 +10,7 @@ from shadowscale.data.photometry import USED, Floats, Ints, Photometry
 from shadowscale.fit.solution import Solution
 from shadowscale.session.session import Session
 
-SHIFT = 0.12  # of the range of one band, between two bands drawn in one picture
+SHIFT = 0.2  # of the range of one band, between two bands drawn in one picture
 
 
 @dataclass(frozen=True, eq=False)

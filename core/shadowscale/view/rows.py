@@ -225,7 +225,7 @@ def _with_correlation(row: Row, strongest: Mapping[str, tuple[float, str]]) -> R
     if found is None:
         return row
     value, other = found
-    text = f"{value:+.2f} with {symbol(other)}".replace("-", "\N{MINUS SIGN}")
+    text = f"{value:+.2f} {symbol(other)}".replace("-", "\N{MINUS SIGN}")
     return replace(row, strongest=text if abs(value) >= 0.1 else "", correlation=value)
 
 
