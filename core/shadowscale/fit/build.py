@@ -1,0 +1,159 @@
+"""From wishes and a start to the system that is fitted: which quantities it has, which are free."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping
+from difflib import get_close_matches
+
+from shadowscale.data.photometry import Photometry
+from shadowscale.data.velocities import Velocities
+from shadowscale.errors import UsageError
+from shadowscale.fit.limb import LimbChoice
+from shadowscale.fit.plan import EFFECTS, Plan
+from shadowscale.fit.system import System
+from shadowscale.light.laws import LAWS
+from shadowscale.quantities import BAND, QUANTITIES, SOURCE, Key, key, parse_key
+
+GEOMETRY = ("period", "epoch", "radius_sum", "radius_ratio", "inclination")
+SHAPE = ("ecosw", "esinw")
+
+
+def means(name: str, text: str) -> bool:
+    """Whether a user's `name` (`third_light`, `third_light[V]`) means the key `text`."""
+    if name == text:
+        return True
+    wished, found = parse_key(name), parse_key(text)
+    return (
+        wished.name == found.name
+        and wished.label in (None, found.label)
+        and wished.number in (None, found.number)
+    )
+
+
+def named(names: Iterable[str], text: str) -> str | None:
+    """The user's name that means the key, the most precise first."""
+    fitting = [name for name in names if means(name, text)]
+    return max(fitting, key=len) if fitting else None
+
+
+def check_plan(plan: Plan, photometry: Photometry, velocities: Velocities | None) -> None:
+    """UsageError where the plan names a quantity, band or source that is not there."""
+    sources = () if velocities is None else velocities.sources
+    basic = tuple(name for name, quantity in QUANTITIES.items() if quantity.basic)
+    wishes = [
+        *(("--free", name, basic) for name in plan.free),
+        *(("--fix", name, basic) for name in plan.fixed),
+        *(("--prior", prior.name, tuple(QUANTITIES)) for prior in plan.priors),
+    ]
+    for option, name, allowed in wishes:
+        try:
+            parsed = parse_key(name)
+        except ValueError:
+            raise UsageError(option, name, allowed) from None
+        if parsed.name not in allowed:
+            near = get_close_matches(parsed.name, allowed, n=1)
+            hint = f"; {near[0]!r} is one" if near else ""
+            raise UsageError(
+                option, name, expected=f"a quantity that the model is written in{hint}"
+            )
+        labels = {BAND: photometry.bands, SOURCE: sources}.get(QUANTITIES[parsed.name].scope, ())
+        if parsed.label is not None and parsed.label not in labels:
+            raise UsageError(option, name, tuple(f"{parsed.name}[{label}]" for label in labels))
+
+
+def build_system(
+    plan: Plan,
+    photometry: Photometry,
+    velocities: Velocities | None,
+    *,
+    start: Mapping[str, float],
+    limb: Mapping[tuple[int, str], LimbChoice],
+    eccentric: bool,
+    third_free: bool,
+    levels: str,
+    wavelengths: Mapping[str, float],
+) -> System:
+    """The system at `start` (geometry, `surface_brightness_ratio[band]`, velocities), ready to be fitted."""
+    values: dict[str, float] = {name: float(start[name]) for name in (*GEOMETRY, *SHAPE)}
+    free: list[str] = list(GEOMETRY)
+    if eccentric:
+        free += SHAPE
+    _add_velocities(values, free, velocities, start)
+    for band in photometry.bands:
+        _add_band(values, free, plan, band, start=start, limb=limb, third_free=third_free)
+    for name in values:
+        if (wish := named(plan.fixed, name)) is not None and not name.startswith("limb_darkening"):
+            values[name] = plan.fixed[wish][0]
+            free = [each for each in free if each != name]
+        elif named(plan.free, name) is not None and name not in free:
+            free.append(name)
+    stars = [star for star in (1, 2) if f"K{star}" in values]
+    return System(
+        values=values,
+        free=tuple(free),
+        law=plan.law,
+        bands=photometry.bands,
+        sources=() if velocities is None else velocities.sources,
+        priors=plan.priors,
+        exposure=plan.exposure,
+        levels=levels,
+        effects={name: plan.effects.get(name, "off") for name in EFFECTS},
+        light_time=plan.light_time == "auto" and len(stars) == 2,
+        wavelengths=dict(wavelengths),
+    )
+
+
+def _add_velocities(
+    values: dict[str, float],
+    free: list[str],
+    velocities: Velocities | None,
+    start: Mapping[str, float],
+) -> None:
+    if velocities is None:
+        return
+    for star, used in ((1, velocities.used1), (2, velocities.used2)):
+        if not used.any():
+            continue
+        for name in (f"K{star}", f"gamma{star}"):
+            values[name] = float(start[name])
+            free.append(name)
+        present = [
+            name
+            for n, name in enumerate(velocities.sources)
+            if (used & (velocities.source == n)).any()
+        ]
+        for source in present[1:]:
+            text = key(f"offset{star}", source)
+            values[text] = float(start.get(text, 0.0))
+            free.append(text)
+
+
+def _add_band(
+    values: dict[str, float],
+    free: list[str],
+    plan: Plan,
+    band: str,
+    *,
+    start: Mapping[str, float],
+    limb: Mapping[tuple[int, str], LimbChoice],
+    third_free: bool,
+) -> None:
+    brightness, third = key("surface_brightness_ratio", band), key("third_light", band)
+    values[brightness] = float(start[brightness])
+    values[third] = float(start.get(third, 0.0))
+    free.append(brightness)
+    if third_free:
+        free.append(third)
+    for star in (1, 2):
+        choice = limb[star, band]
+        for number in range(len(LAWS[plan.law].coefficients)):
+            text = str(Key(f"limb_darkening{star}", band, number + 1))
+            values[text] = choice.coefficients[number]
+            if choice.free:
+                free.append(text)
+    for effect in EFFECTS:
+        if plan.effects.get(effect, "off") == "fitted":
+            for star in (1, 2):
+                text = key(f"{effect}{star}", band)
+                values[text] = float(start.get(text, 0.0))
+                free.append(text)

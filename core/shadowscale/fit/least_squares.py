@@ -1,0 +1,145 @@
+"""Bounded least squares on normal equations: Levenberg and Marquardt's damping, projected on a box.
+
+The objective hands over chi-squared, gradient and Gauss-Newton matrix together (they cost one pass
+over the data), so that no Jacobian of all points is ever stored.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+Floats = NDArray[np.float64]
+
+
+@dataclass(frozen=True, eq=False)
+class Normal:
+    """Chi-squared at x, with J^T W r (downhill) and J^T W J."""
+
+    chi2: float
+    downhill: Floats
+    matrix: Floats
+
+
+@dataclass(frozen=True, eq=False)
+class Minimum:
+    """Where the search ended."""
+
+    x: Floats
+    normal: Normal
+    iterations: int
+    converged: bool
+
+    @property
+    def chi2(self) -> float:
+        """Chi-squared at the minimum."""
+        return self.normal.chi2
+
+
+def minimise(
+    objective: Callable[[Floats], Normal],
+    start: Floats,
+    *,
+    bounds: tuple[Floats, Floats],
+    most: int = 60,
+    tolerance: float = 1e-7,
+) -> Minimum:
+    """Go downhill from `start` within `bounds`.
+
+    Parameters
+    ----------
+    objective : callable
+        x to `Normal`; chi-squared may be inf where the model cannot be.
+    start : (m,) float64
+    bounds : (lower, upper), each (m,) float64
+    most : int
+        Steps at the most.
+    tolerance : float
+        Ends when a full step promises less than this in chi-squared.
+
+    Returns
+    -------
+    Minimum
+        `converged` is False when `most` steps did not suffice.
+    """
+    lower, upper = bounds
+    x = np.clip(start, lower, upper)
+    here = objective(x)
+    damping = 1e-3
+    for iteration in range(1, most + 1):
+        moving = _moving(x, here.downhill, lower, upper)
+        promised = _promise(here, moving)
+        if promised < tolerance:
+            return Minimum(x, here, iteration, True)
+        for _ in range(14):
+            trial = np.clip(x + _step(here, moving, damping), lower, upper)
+            there = objective(trial)
+            if there.chi2 < here.chi2:
+                break
+            damping = max(damping, 1e-7) * 6.0
+        else:
+            return Minimum(x, here, iteration, promised < 1e-2)
+        gained = here.chi2 - there.chi2
+        x, here = trial, there
+        damping = max(damping * 0.12, 1e-12)
+        if gained < tolerance * 0.1 and damping < 1e-4:
+            return Minimum(x, here, iteration, True)
+    return Minimum(x, here, most, False)
+
+
+def _moving(x: Floats, downhill: Floats, lower: Floats, upper: Floats) -> NDArray[np.bool_]:
+    """Coordinates that are free to follow the slope."""
+    at_lower = (x <= lower) & (downhill < 0.0)
+    at_upper = (x >= upper) & (downhill > 0.0)
+    return ~(at_lower | at_upper)
+
+
+def _scaled(normal: Normal, moving: NDArray[np.bool_]) -> tuple[Floats, Floats, Floats]:
+    """The moving part of the normal equations with a unit diagonal."""
+    matrix = normal.matrix[np.ix_(moving, moving)]
+    scale = np.sqrt(np.maximum(np.diag(matrix), 1e-300))
+    return matrix / np.outer(scale, scale), normal.downhill[moving] / scale, scale
+
+
+def _solve(matrix: Floats, right: Floats) -> Floats:
+    """Solve a symmetric system; by least squares where it is singular."""
+    try:
+        return np.linalg.solve(matrix, right)
+    except np.linalg.LinAlgError:
+        return np.linalg.lstsq(matrix, right, rcond=1e-14)[0]
+
+
+def _step(normal: Normal, moving: NDArray[np.bool_], damping: float) -> Floats:
+    """The damped step, zero for coordinates held by a bound."""
+    step = np.zeros(moving.size)
+    if moving.any():
+        matrix, right, scale = _scaled(normal, moving)
+        step[moving] = _solve(matrix + damping * np.eye(right.size), right) / scale
+    return step
+
+
+def _promise(normal: Normal, moving: NDArray[np.bool_]) -> float:
+    """How much chi-squared an undamped step would win on the quadratic model."""
+    if not moving.any():
+        return 0.0
+    matrix, right, _ = _scaled(normal, moving)
+    return float(right @ _solve(matrix + 1e-12 * np.eye(right.size), right))
+
+
+def covariance(normal: Normal) -> tuple[Floats, NDArray[np.bool_]]:
+    """Covariance (m, m) from the normal equations, and which coordinates the data do not hold.
+
+    A coordinate is not held when it is alone in a direction of no curvature.
+    """
+    scale = np.sqrt(np.maximum(np.diag(normal.matrix), 0.0))
+    held = scale > 0.0
+    safe = np.where(held, scale, 1.0)
+    scaled = normal.matrix / np.outer(safe, safe)
+    values, vectors = np.linalg.eigh(scaled)
+    small = values < 1e-13 * max(values[-1], 1e-300)
+    inverse = (vectors / np.where(small, 1e-13 * values[-1], values)) @ vectors.T
+    loose = ~held | ((vectors[:, small] ** 2).sum(axis=1) > 0.3)
+    return inverse / np.outer(safe, safe), loose

@@ -1,0 +1,78 @@
+"""Carrying the covariance of what was fitted to everything that follows from it."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+Floats = NDArray[np.float64]
+STEP = 0.02  # of a sigma: small enough to be linear, large enough for round-off
+
+
+@dataclass(frozen=True, eq=False)
+class Spread:
+    """Values of many quantities with their joint linear covariance.
+
+    names : of the quantities; values : (n,); slope : (n, m) to the m inputs; covariance : (m, m) of those
+    """
+
+    names: tuple[str, ...]
+    values: Floats
+    slope: Floats
+    covariance: Floats
+
+    @property
+    def joint(self) -> Floats:
+        """(n, n) covariance of the quantities."""
+        matrix: Floats = self.slope @ self.covariance @ self.slope.T
+        return matrix
+
+    @property
+    def sigma(self) -> Floats:
+        """(n,) standard deviations."""
+        variance = np.einsum("ij,jk,ik->i", self.slope, self.covariance, self.slope)
+        deviation: Floats = np.sqrt(np.maximum(variance, 0.0))
+        return deviation
+
+
+def propagated(
+    function: Callable[[Floats], Mapping[str, float]],
+    centre: Floats,
+    covariance: Floats,
+    *,
+    bounds: tuple[Floats, Floats],
+) -> Spread:
+    """Linear propagation by central differences of a small fraction of each input's sigma.
+
+    Where a bound is nearer than the step, the difference is one-sided. Quantities that are NaN at
+    the centre are left out.
+    """
+    here = function(centre)
+    names = tuple(name for name, value in here.items() if np.isfinite(value))
+    values = np.array([here[name] for name in names])
+    sigma = np.sqrt(np.maximum(np.diag(covariance), 0.0))
+    slope = np.zeros((len(names), centre.size))
+    lower, upper = bounds
+    for column in np.flatnonzero(sigma > 0.0):
+        step = STEP * sigma[column]
+        above, below = centre.copy(), centre.copy()
+        above[column] = min(centre[column] + step, upper[column])
+        below[column] = max(centre[column] - step, lower[column])
+        width = above[column] - below[column]
+        if width > 0.0:
+            slope[:, column] = _difference(function, above, below, names) / width
+    return Spread(names, values, slope, covariance)
+
+
+def _difference(
+    function: Callable[[Floats], Mapping[str, float]],
+    above: Floats,
+    below: Floats,
+    names: Sequence[str],
+) -> Floats:
+    high, low = function(above), function(below)
+    found = np.array([high.get(name, np.nan) - low.get(name, np.nan) for name in names])
+    return np.nan_to_num(found, nan=0.0)

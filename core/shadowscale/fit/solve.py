@@ -1,0 +1,332 @@
+"""The whole solution: from tables and wishes to a `Solution`, with no manual start."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field, replace
+
+import numpy as np
+
+from shadowscale.data.limb_tables import LimbTable, read_limb_table
+from shadowscale.data.photometry import Photometry
+from shadowscale.data.velocities import Velocities
+from shadowscale.errors import NotConvergedError
+from shadowscale.fit.alternatives import Branch, distinct_branches, mirrored
+from shadowscale.fit.build import build_system, check_plan, named
+from shadowscale.fit.decide import decision, needed
+from shadowscale.fit.limb import LimbChoice, limb_choice, teffs, wavelengths
+from shadowscale.fit.objective import Constraint
+from shadowscale.fit.plan import Plan
+from shadowscale.fit.priors import prior_constraints
+from shadowscale.fit.problem import Fitted, Problem, Weighting, fit_system
+from shadowscale.fit.result import assemble
+from shadowscale.fit.reweigh import reweighed
+from shadowscale.fit.solution import Decision, Solution
+from shadowscale.fit.start import Ground, find_ground
+from shadowscale.fit.system import System
+from shadowscale.light.laws import LAWS
+from shadowscale.progress import SILENT, Progress
+from shadowscale.quantities import key, parse_key
+
+FIRST_STEPS = 10  # of each start, before the poor ones are dropped
+KEPT_STARTS = 3
+LIMB_ROUNDS = 4
+
+
+@dataclass(eq=False)
+class _Work:
+    """What the steps hand on to each other."""
+
+    problem: Problem
+    plan: Plan
+    ground: Ground
+    table: LimbTable | None
+    progress: Progress
+    weighting: Weighting
+    limb: Mapping[tuple[int, str], LimbChoice] = field(default_factory=dict)
+    decisions: list[Decision] = field(default_factory=list)
+    notes: list[str] = field(default_factory=list)
+
+    def fit(self, system: System, most: int = 60) -> Fitted:
+        """Fit with the present weights and priors."""
+        rules = [rule for choice in self.limb.values() for rule in choice.constraints]
+        constraints: list[Constraint] = [*rules, *prior_constraints(self.plan, system)]
+        return fit_system(
+            self.problem, system, weighting=self.weighting, constraints=constraints, most=most
+        )
+
+
+def solve(
+    photometry: Photometry,
+    velocities: Velocities | None,
+    plan: Plan,
+    *,
+    progress: Progress = SILENT,
+) -> Solution:
+    """Solve a detached eclipsing binary.
+
+    Parameters
+    ----------
+    photometry : Photometry
+    velocities : Velocities or None
+    plan : Plan
+    progress : Progress
+        Told of each step; may raise `Stopped`.
+
+    Returns
+    -------
+    Solution
+
+    Raises
+    ------
+    UsageError
+        The plan names what the data do not have.
+    NoSolutionError
+        No eclipses, stars too close, or no minimum found.
+    """
+    check_plan(plan, photometry, velocities)
+    table = None if plan.limb_table is None else read_limb_table(plan.limb_table)
+    ground = find_ground(photometry, velocities, plan, progress)
+    problem = Problem(photometry, velocities)
+    work = _Work(problem, plan, ground, table, progress, problem.weighting())
+    best, branches = _explored(work)
+    best = _weighed(work, best)
+    best = _with_levels(work, best)
+    best = _with_third_light(work, best)
+    best = _with_orbit(work, best)
+    best = _weighed(work, best)
+    best, branches = _against_others(work, best, branches)
+    best = _with_limb_darkening(work, best)
+    if not best.minimum.converged:
+        raise NotConvergedError(
+            "the fit did not settle",
+            {"steps": best.minimum.iterations, "chi-squared": best.chi2},
+            "hold a quantity that the data do not determine, or give a better ephemeris",
+        )
+    progress.report(0.95, "uncertainties")
+    return assemble(
+        best, problem=problem, plan=plan, weighting=work.weighting, ground=ground,
+        branches=branches, decisions=work.decisions, notes=[*ground.measured.notes, *work.notes],
+    )  # fmt: skip
+
+
+def _explored(work: _Work) -> tuple[Fitted, list[Fitted]]:
+    """The best of several starts, and the other minima met on the way."""
+    fitted: list[Fitted] = []
+    starts = work.ground.starts
+    for number, start in enumerate(starts):
+        work.progress.report(
+            0.25 + 0.3 * number / len(starts), f"start {number + 1} of {len(starts)}"
+        )
+        if number == 0:
+            work.limb = _limb(work, start)
+        try:
+            fitted.append(work.fit(_system(work, start), most=FIRST_STEPS))
+        except np.linalg.LinAlgError:
+            continue
+    fitted = sorted((each for each in fitted if np.isfinite(each.chi2)), key=lambda each: each.chi2)
+    if not fitted:
+        raise NotConvergedError(
+            "no start describes two separate stars", {"starts": float(len(starts))}
+        )
+    chosen = distinct_branches(fitted)[:KEPT_STARTS]
+    finished = [each if each.minimum.converged else work.fit(each.system) for each in chosen]
+    finished.sort(key=lambda each: each.chi2)
+    return finished[0], finished[1:]
+
+
+def _system(work: _Work, start: Mapping[str, float]) -> System:
+    plan = work.plan
+    return build_system(
+        plan,
+        work.problem.photometry,
+        work.problem.velocities,
+        start=start,
+        limb=work.limb,
+        eccentric=plan.orbit != "circular",
+        third_free=False,
+        levels="one" if plan.levels == "auto" else plan.levels,
+        wavelengths=wavelengths(plan, work.problem.photometry.bands),
+    )
+
+
+def _limb(
+    work: _Work, values: Mapping[str, float], logg: Sequence[float] = (4.2, 4.2)
+) -> dict[tuple[int, str], LimbChoice]:
+    """Choices for both stars in every band."""
+    bands = work.problem.photometry.bands
+    at = wavelengths(work.plan, bands)
+    brightness = {band: values[key("surface_brightness_ratio", band)] for band in bands}
+    teff1, teff2, words = teffs(work.plan, brightness, at)
+    choices = {
+        (star, band): limb_choice(
+            work.plan, star, band, wavelength=at[band], teff=(teff1, teff2)[star - 1],
+            logg=logg[star - 1], table=work.table,
+        )
+        for star in (1, 2) for band in bands
+    }  # fmt: skip
+    told = sorted(
+        {f"star {star}, {band}: {choice.words}" for (star, band), choice in choices.items()}
+    )
+    work.decisions = [each for each in work.decisions if each.what != "limb darkening"]
+    work.decisions.append(
+        Decision(
+            "limb darkening",
+            work.plan.law,
+            f"{work.plan.law} law; {'; '.join(told)}; temperatures: {words}",
+        )
+    )
+    return choices
+
+
+def _weighed(work: _Work, best: Fitted) -> Fitted:
+    """Outliers set aside, errors scaled, jitter added; fitted again until nothing changes."""
+    for _ in range(5):
+        work.weighting, changed = reweighed(work.problem, best, work.weighting)
+        best = work.fit(best.system)
+        if not changed:
+            break
+    return best
+
+
+def _with_levels(work: _Work, best: Fitted) -> Fitted:
+    """One level a band, one a night, or a level and slope a night, as the data decide."""
+    if work.plan.levels != "auto":
+        return best
+    chosen, held = "one", best
+    for mode in ("night", "trend"):
+        extra = _level_count(work, mode) - _level_count(work, chosen)
+        if extra <= 0:
+            continue
+        other = work.fit(replace(held.system, levels=mode))
+        gain = held.chi2 - other.chi2
+        enough, limit = needed(gain, extra)
+        subject = "a level a night" if mode == "night" else "a level and a slope a night"
+        result = mode if enough else chosen
+        work.decisions.append(
+            decision("levels", chosen=result, gain=gain, extra=extra, limit=limit, subject=subject)
+        )
+        if not enough:
+            break
+        chosen, held = mode, other
+    return _weighed(work, held) if chosen != "one" else held
+
+
+def _level_count(work: _Work, mode: str) -> int:
+    segments = sum(data.segments for data in work.problem.bands(mode, work.weighting.why))
+    return 2 * segments if mode == "trend" else segments
+
+
+def _with_third_light(work: _Work, best: Fitted) -> Fitted:
+    """Third light free where the data demand it and the user said nothing."""
+    names = [key("third_light", band) for band in best.system.bands]
+    told = {*work.plan.free, *work.plan.fixed}
+    if any(named(told, name) for name in names if name):
+        return best
+    other = work.fit(replace(best.system, free=(*best.system.free, *names)))
+    gain = best.chi2 - other.chi2
+    enough, limit = needed(gain, len(names))
+    positive = all(other.system.values[name] > -0.02 for name in names)
+    take = enough and positive
+    work.decisions.append(
+        decision("third light", chosen="free" if take else "none", gain=gain, extra=len(names),
+                 limit=limit, subject="third light")
+    )  # fmt: skip
+    return _weighed(work, other) if take else best
+
+
+def _with_orbit(work: _Work, best: Fitted) -> Fitted:
+    """Circular unless the data demand an eccentricity."""
+    shape = [name for name in ("ecosw", "esinw") if name in best.system.free]
+    if work.plan.orbit == "eccentric" or not shape:
+        words = f"{work.plan.orbit}, as asked"
+        work.decisions.append(Decision("orbit", work.plan.orbit, words))
+        return best
+    told = {*work.plan.free, *(prior.name for prior in work.plan.priors)}
+    if told & {"ecosw", "esinw", "eccentricity", "omega"}:
+        work.decisions.append(Decision("orbit", "eccentric", "eccentric, as the wishes imply"))
+        return best
+    round_ = best.system.with_values(dict.fromkeys(shape, 0.0))
+    other = work.fit(replace(round_, free=tuple(n for n in best.system.free if n not in shape)))
+    gain = other.chi2 - best.chi2
+    enough, limit = needed(gain, len(shape))
+    work.decisions.append(
+        decision("orbit", chosen="eccentric" if enough else "circular", gain=gain, extra=len(shape),
+                 limit=limit, subject="an eccentric orbit")
+    )  # fmt: skip
+    return best if enough else other
+
+
+def _against_others(
+    work: _Work, best: Fitted, branches: list[Fitted]
+) -> tuple[Fitted, list[Branch]]:
+    """Fit the mirror solution and the other minima under the final weights; the best may change."""
+    work.progress.report(0.75, "looking for other solutions")
+    candidates = [best]
+    for values in [mirrored(best.system), *(each.system.values for each in branches)]:
+        geometry = {
+            name: value for name, value in values.items()
+            if name in best.system.free or name in ("ecosw", "esinw")
+        }  # fmt: skip
+        if not {"ecosw", "esinw"} & set(best.system.free):
+            geometry |= {"ecosw": best.system.values["ecosw"], "esinw": best.system.values["esinw"]}
+        other = work.fit(best.system.with_values(geometry))
+        if np.isfinite(other.chi2):
+            candidates.append(other)
+    candidates.sort(key=lambda each: each.chi2)
+    found = distinct_branches(candidates)
+    return found[0], [Branch(each, each.chi2 - found[0].chi2) for each in found[1:]]
+
+
+def _with_limb_darkening(work: _Work, best: Fitted) -> Fitted:
+    """Where a table is given: coefficients at the fitted gravity and temperature, until they agree."""
+    if work.table is None:
+        return best
+    from shadowscale.fit.derived import derived_value
+
+    for _ in range(LIMB_ROUNDS):
+        logg = [derived_value(best.system, name) for name in ("logg1", "logg2")]
+        held = [value if np.isfinite(value) else 4.2 for value in logg]
+        before = {at: choice.coefficients for at, choice in work.limb.items()}
+        work.limb = _limb(work, best.system.values, held)
+        change = max(
+            abs(new - old) for at, choice in work.limb.items()
+            for new, old in zip(choice.coefficients, before[at], strict=True)
+        )  # fmt: skip
+        if change < 1e-3:
+            break
+        best = work.fit(_moved_limb(best.system, work.limb))
+    return best
+
+
+def _moved_limb(system: System, limb: Mapping[tuple[int, str], LimbChoice]) -> System:
+    """Coefficients that are not free set to the new choice."""
+    count = len(LAWS[system.law].coefficients)
+    values = {
+        key(f"limb_darkening{star}", band, n + 1): choice.coefficients[n]
+        for (star, band), choice in limb.items() for n in range(count)
+    }  # fmt: skip
+    return system.with_values(
+        {name: value for name, value in values.items() if name not in system.free}
+    )
+
+
+def refit(
+    photometry: Photometry,
+    velocities: Velocities | None,
+    plan: Plan,
+    *,
+    system: System,
+    weighting: Weighting | None = None,
+) -> Fitted:
+    """Fit `system` from where it stands, its decisions kept: what follows a dragged marker."""
+    problem = Problem(photometry, velocities)
+    return fit_system(
+        problem,
+        system,
+        weighting=weighting or problem.weighting(),
+        constraints=prior_constraints(plan, system),
+    )
+
+
+__all__ = ["parse_key", "refit", "solve"]

@@ -1,0 +1,137 @@
+"""The free quantities as a vector for the solver, and back.
+
+Inclination is solved as cos^2 i, which is regular at 90 degrees; limb darkening in the sampling
+coordinates of its law; the rest as it is.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from functools import cached_property
+from math import acos, cos, degrees, radians, sqrt
+
+import numpy as np
+from numpy.typing import NDArray
+
+from shadowscale.fit.plan import EFFECTS
+from shadowscale.fit.system import System
+from shadowscale.light.laws import LAWS, Law
+from shadowscale.quantities import QUANTITIES, Key, key, parse_key
+
+Floats = NDArray[np.float64]
+
+
+def limb_keys(star: int, band: str, law: Law) -> tuple[str, ...]:
+    """Keys of one star's coefficients in one band."""
+    return tuple(
+        str(Key(f"limb_darkening{star}", band, number + 1))
+        for number in range(len(law.coefficients))
+    )
+
+
+@dataclass(frozen=True)
+class Vector:
+    """The map between a system's values and the solver's coordinates x.
+
+    Built from a system: keeps which keys are free and what everything else is held at.
+    """
+
+    system: System
+
+    @property
+    def names(self) -> tuple[str, ...]:
+        """Keys of the coordinates, in order."""
+        return self.system.free
+
+    @cached_property
+    def law(self) -> Law:
+        """The limb-darkening law."""
+        return LAWS[self.system.law]
+
+    @cached_property
+    def index(self) -> Mapping[str, int]:
+        """Position of each free key."""
+        return {name: number for number, name in enumerate(self.names)}
+
+    @cached_property
+    def limb_blocks(self) -> tuple[tuple[int, ...], ...]:
+        """Positions of the coefficients of each star and band whose limb darkening is free."""
+        blocks = []
+        for star in (1, 2):
+            for band in self.system.bands:
+                keys = limb_keys(star, band, self.law)
+                if all(name in self.index for name in keys):
+                    blocks.append(tuple(self.index[name] for name in keys))
+        return tuple(blocks)
+
+    @cached_property
+    def bounds(self) -> tuple[Floats, Floats]:
+        """Lower and upper limits of x."""
+        lower = np.array([QUANTITIES[parse_key(name).name].lower for name in self.names])
+        upper = np.array([QUANTITIES[parse_key(name).name].upper for name in self.names])
+        if "inclination" in self.index:
+            at = self.index["inclination"]
+            lower[at], upper[at] = 0.0, 1.0
+        for block in self.limb_blocks:
+            for position, (low, high) in zip(block, self.law.sampling_bounds, strict=True):
+                lower[position], upper[position] = low, high
+        return lower, upper
+
+    def pack(self, values: Mapping[str, float]) -> Floats:
+        """Coordinates of a system's values, moved inside the bounds."""
+        x = np.array([values[name] for name in self.names], dtype=np.float64)
+        if "inclination" in self.index:
+            at = self.index["inclination"]
+            x[at] = cos(radians(x[at])) ** 2
+        for block in self.limb_blocks:
+            x[list(block)] = self.law.to_sampling(x[list(block)])
+        lower, upper = self.bounds
+        return np.clip(x, lower, upper)
+
+    def unpack(self, x: Floats) -> dict[str, float]:
+        """All basic values of the system at x."""
+        free = x.astype(np.float64)
+        if "inclination" in self.index:
+            at = self.index["inclination"]
+            free[at] = degrees(acos(sqrt(min(1.0, max(0.0, free[at])))))
+        for block in self.limb_blocks:
+            free[list(block)] = self.law.from_sampling(x[list(block)])
+        values = dict(self.system.values)
+        values.update(zip(self.names, free.tolist(), strict=True))
+        return values
+
+    def limb_jacobian(self, x: Floats) -> Floats:
+        """(m, m) derivative of coefficients to coordinates; the identity elsewhere."""
+        jacobian = np.eye(len(self.names))
+        for block in self.limb_blocks:
+            rows = list(block)
+            jacobian[np.ix_(rows, rows)] = self.law.sampling_jacobian(x[rows])
+        return jacobian
+
+    def local(self, names: Sequence[str | None], x: Floats) -> Floats:
+        """(len(names), m) derivative of local quantities to x; None is a quantity that is not free."""
+        jacobian = self.limb_jacobian(x)
+        rows = np.zeros((len(names), len(self.names)))
+        for number, name in enumerate(names):
+            if name is not None and name in self.index:
+                rows[number] = jacobian[self.index[name]]
+        return rows
+
+
+def band_keys(system: System, band: str) -> list[str | None]:
+    """Keys of a band's local quantities, in the order of the compiled kernel (None: light time)."""
+    law = LAWS[system.law]
+    shared = [
+        "period",
+        "epoch",
+        "radius_sum",
+        "radius_ratio",
+        "inclination",
+        "ecosw",
+        "esinw",
+        None,
+    ]
+    own = [key("surface_brightness_ratio", band), key("third_light", band)]
+    effects = [key(f"{effect}{star}", band) for effect in EFFECTS for star in (1, 2)]
+    return [*shared, *own, *limb_keys(1, band, law), *limb_keys(2, band, law), *effects]

@@ -1,0 +1,177 @@
+"""Do random systems come back? `python tests/recovery --count 200`
+
+Draws detached binaries over the whole range the program claims, with data of 200 to 100,000 points
+in one to four bands, solves each with no manual start, and compares with the truth: how many are
+solved, the spread of the pulls (estimate less truth in sigmas), and the reported sigmas against
+the Cramer-Rao bound (the inverse of Fisher's information at the truth, priors included).
+"""
+
+from __future__ import annotations
+
+import argparse
+import json
+import sys
+import time
+from concurrent.futures import ProcessPoolExecutor
+from pathlib import Path
+
+import numpy as np
+
+sys.path.insert(0, str(Path(__file__).parent))
+
+from draw import draw_case
+
+PULLED = (
+    "period", "epoch", "radius_sum", "radius_ratio", "inclination", "ecosw", "esinw", "K1", "K2",
+    "gamma1", "surface_brightness_ratio", "third_light", "r1", "r2", "M1", "M2", "R1", "R2",
+)  # fmt: skip
+SOLVED_WITHIN = 6.0  # sigmas, of every pulled quantity: beyond it, another minimum was taken
+
+
+def run_case(number: int) -> dict[str, object]:
+    """Solve one case; what came of it, ready for JSON."""
+    from shadowscale.errors import ShadowscaleError
+    from shadowscale.fit.plan import Plan
+    from shadowscale.fit.solve import solve
+
+    case = draw_case(number)
+    third = case.truth.value("third_light", case.truth.bands[0])
+    plan = Plan(
+        period=case.truth.value("period") * (1 + 1e-6),
+        epoch=case.truth.value("epoch"),
+        exposure=case.truth.exposure,
+        free=("third_light",) if third > 0 else (),
+    )
+    began = time.perf_counter()
+    try:
+        solution = solve(case.photometry, case.velocities, plan)
+    except ShadowscaleError as error:
+        return {"case": number, "words": case.words, "error": str(error)}
+    spent = time.perf_counter() - began
+    return {
+        "case": number,
+        "words": case.words,
+        "seconds": spent,
+        "pulls": _pulls(case.truth, solution),
+        "bound": _bound_ratios(case, solution),
+        "alternatives": len(solution.alternatives),
+        "decisions": [each.words for each in solution.decisions if each.what != "limb darkening"],
+        "reduced_chi2": solution.fit.reduced_chi2,
+        "values": {n: solution.system.values[n] for n in PULLED if n in solution.system.values},
+    }
+
+
+def _pulls(truth, solution) -> dict[str, float]:
+    from shadowscale.fit.derived import derived_values
+
+    true = dict(truth.values) | derived_values(truth)
+    found = {}
+    for name, estimate in solution.estimates.items():
+        if name.split("[")[0] not in PULLED or not estimate.plus:
+            continue
+        difference = estimate.value - true[name]
+        if name == "epoch":
+            difference -= round(difference / true["period"]) * true["period"]
+        found[name] = difference / (estimate.plus if difference < 0 else estimate.minus)
+    return found
+
+
+def _bound_ratios(case, solution) -> dict[str, float]:
+    """Reported sigma over the Cramer-Rao bound at the truth, for what was fitted."""
+    from dataclasses import replace
+
+    from shadowscale.fit.least_squares import covariance
+    from shadowscale.fit.limb import GREY_SIGMA
+    from shadowscale.fit.objective import Constraint
+    from shadowscale.fit.problem import Problem
+
+    system = solution.system
+    epoch = system.values["epoch"]
+    true = {**system.values, **{n: v for n, v in case.truth.values.items() if n != "epoch"}}
+    cycles = round((epoch - case.truth.value("epoch")) / case.truth.value("period"))
+    true["epoch"] = case.truth.value("epoch") + cycles * case.truth.value("period")
+    at_truth = replace(system, values=true)
+    problem = Problem(case.photometry, case.velocities)
+    rules = [
+        Constraint(n, 0.0, GREY_SIGMA, True) for n in system.free if n.startswith("limb_darkening")
+    ]
+    objective = problem.objective(at_truth, problem.weighting(), rules)
+    x = objective.vector.pack(true)
+    matrix, _ = covariance(objective(x))
+    sigma = np.sqrt(np.diag(matrix))
+    reported, _ = covariance(_at_solution(problem, solution, rules))
+    ratio = np.sqrt(np.diag(reported)) / sigma
+    return {
+        n: float(r) for n, r in zip(system.free, ratio, strict=True) if n.split("[")[0] in PULLED
+    }
+
+
+def _at_solution(problem, solution, rules):
+    """Normal equations at the solution with the fit's own weights."""
+    from dataclasses import replace
+
+    weighting = replace(
+        problem.weighting(), why=solution.light.why, light_scale=solution.fit.error_scale
+    )
+    objective = problem.objective(solution.system, weighting, rules)
+    return objective(objective.vector.pack(solution.system.values))
+
+
+def main() -> None:
+    """Run the cases and print the table."""
+    parser = argparse.ArgumentParser(description=__doc__.splitlines()[0])
+    parser.add_argument("--count", type=int, default=200)
+    parser.add_argument("--first", type=int, default=1)
+    parser.add_argument("--workers", type=int, default=2)
+    parser.add_argument("--json", type=Path, help="write every case here")
+    options = parser.parse_args()
+    numbers = range(options.first, options.first + options.count)
+    if options.workers > 1:
+        with ProcessPoolExecutor(options.workers) as pool:
+            results = list(pool.map(run_case, numbers, chunksize=4))
+    else:
+        results = [run_case(number) for number in numbers]
+    if options.json:
+        options.json.write_text(json.dumps(results, indent=1))
+    report(results)
+
+
+def report(results: list[dict]) -> None:
+    """The table of rates, pulls and bounds."""
+    refused = [each for each in results if "error" in each]
+    fitted = [each for each in results if "error" not in each]
+    good = [e for e in fitted if max(abs(p) for p in e["pulls"].values()) < SOLVED_WITHIN]
+    print(f"{len(results)} systems; solved {len(good)} ({100 * len(good) / len(results):.1f} %)")
+    for each in refused:
+        print(f"  refused {each['case']}: {each['error']} [{each['words']}]")
+    for each in fitted:
+        if each not in good:
+            worst = max(each["pulls"], key=lambda name: abs(each["pulls"][name]))
+            print(f"  off {each['case']}: {worst} by {each['pulls'][worst]:.1f} sigma, "
+                  f"{each['alternatives']} alternatives [{each['words']}]")  # fmt: skip
+    print(
+        f"{'quantity':26} {'n':>5} {'mean pull':>10} {'std':>6} {'mad std':>8} {'sigma/bound':>12} {'5%..95%':>14}"
+    )
+    for name in PULLED:
+        pulls = np.array(
+            [p for e in good for n, p in e["pulls"].items() if n.split("[")[0] == name]
+        )
+        ratio = np.array(
+            [r for e in good for n, r in e["bound"].items() if n.split("[")[0] == name]
+        )
+        if pulls.size < 2:
+            continue
+        robust = 1.4826 * np.median(np.abs(pulls - np.median(pulls)))
+        line = f"{name:26} {pulls.size:5d} {pulls.mean():10.2f} {pulls.std():6.2f} {robust:8.2f}"
+        if ratio.size:
+            low, high = np.quantile(ratio, [0.05, 0.95])
+            line += f" {np.median(ratio):12.3f} {low:6.3f}..{high:6.3f}"
+        print(line)
+    everything = np.array([p for e in good for p in e["pulls"].values()])
+    print(f"{'all':26} {everything.size:5d} {everything.mean():10.2f} {everything.std():6.2f}")
+    seconds = [e["seconds"] for e in fitted]
+    print(f"seconds a system: median {np.median(seconds):.2f}, largest {max(seconds):.2f}")
+
+
+if __name__ == "__main__":
+    main()
