@@ -45,6 +45,7 @@ WIDEST_LOG_RATIO = (log(0.1), log(3.0))  # of partial eclipses, whose depths may
 BELIEVED_LOG_BRIGHTNESS = (log(0.6), 0.6)  # of a pair whose other eclipse was not seen
 SURE = 9.0  # chi2 by which one solution must beat another to stand alone
 SMALLEST_TIME_ERROR = 1e-5  # of a duration
+_GRID = np.linspace(0.0, 0.97, 30) ** 2  # of cos^2 i
 SMALLEST_DEPTH, LARGEST_DEPTH = 1e-5, 0.9999
 
 UNDETERMINED = (
@@ -245,7 +246,7 @@ def _place_by_depths(
     """The inclination at which both depths together account for all the light."""
     along, across = plane(unknowns, equations)
     c = equations.contacts
-    cos2i = np.linspace(0.0, 0.97, 60) ** 2
+    cos2i = _GRID
     outer = np.flatnonzero(~equations.inner)
     total = np.sqrt(along[outer].mean() + across[outer].mean() * cos2i)
     k = exp(unknowns[LOG_RATIO])
@@ -320,14 +321,14 @@ def _with_third_light(ground: Ground, best: Candidate, notes: list[str]) -> Cand
 
 
 def _along_the_valley(ground: Ground, best: Candidate) -> list[Candidate]:
-    """Other ratios of the radii that the same partial eclipses allow, the mirror first."""
+    """Other ratios that the same partial eclipses allow: the mirror, or both sides of k near 1."""
     low, high = ground.log_ratios
     middle = best.unknowns[LOG_RATIO]
-    wanted = [-middle, middle - (high - low) / 4, middle + (high - low) / 4]
+    aside = (high - low) / 4
+    mirrored = abs(middle) > 0.1 and low <= -middle <= high
     found: list[Candidate] = []
-    for log_ratio in wanted:
-        known = [middle, *(other.unknowns[LOG_RATIO] for other in found)]
-        if not low <= log_ratio <= high or min(abs(log_ratio - other) for other in known) < 0.05:
+    for log_ratio in (-middle,) if mirrored else (middle - aside, middle + aside):
+        if abs(log_ratio - middle) < 0.05:
             continue
         guess = best.guess.believing(LOG_RATIO, log_ratio, 0.02)
         other = solve(ground.equations, placed(guess, ground.eclipses, ground.equations))

@@ -25,7 +25,7 @@ HIGHEST = np.array([0.1, 0.93, 0.93, 0.95, 0.95, 5.0, 11.0, 0.95])
 MOST_ECCENTRIC = 0.93
 SMALLEST_LOG_RATIO = 1e-3  # k = 1 is a corner of |1-k|: a solution stays on its side
 STEPS, REWEIGHTED = 25, 2
-CONVERGED = 1e-6  # of chi2
+CONVERGED = 1e-4  # what a step must still promise in chi2
 
 
 @dataclass(frozen=True, eq=False)
@@ -85,25 +85,24 @@ def _descend(equations: Equations, guess: Guess, start: Floats, root: Floats) ->
     value, slopes = equations.evaluate(here)
     cost = _cost(root @ value, here, guess)
     for _ in range(STEPS):
-        step = _step(root @ value, root @ slopes, here, guess, damping)
+        step, promised = _step(root @ value, root @ slopes, here, guess, damping)
+        if promised <= CONVERGED * (1 + 0.01 * cost):
+            break
         there = _bounded(here + step, side)
         new_value, new_slopes = equations.evaluate(there)
         new_cost = _cost(root @ new_value, there, guess)
-        if not new_cost < cost:
+        if new_cost < cost:
+            here, value, slopes, cost = there, new_value, new_slopes, new_cost
+            damping = max(damping / 10, 1e-9)
+        else:
             damping *= 8
-            if damping > 1e8 or abs(new_cost - cost) <= CONVERGED * 1e-3 * (cost + 1e-3):
-                break
-            continue
-        gained = cost - new_cost
-        here, value, slopes, cost = there, new_value, new_slopes, new_cost
-        damping = max(damping / 10, 1e-9)
-        if gained <= CONVERGED * (cost + 1e-3):
-            break
     return here
 
 
-def _step(whitened: Floats, slopes: Floats, here: Floats, guess: Guess, damping: float) -> Floats:
-    """One damped step; cos^2 i stays where it is if it would leave its bound."""
+def _step(
+    whitened: Floats, slopes: Floats, here: Floats, guess: Guess, damping: float
+) -> tuple[Floats, float]:
+    """A damped step and the fall of chi2 it promises; cos^2 i stays if it would leave its bound."""
     gradient = slopes.T @ whitened + (here - guess.centre) / guess.sigma**2
     step = np.zeros(UNKNOWNS)
     held = np.zeros(UNKNOWNS, dtype=bool)
@@ -115,7 +114,7 @@ def _step(whitened: Floats, slopes: Floats, here: Floats, guess: Guess, damping:
         if here[COS2I] > 0 or step[COS2I] >= 0:
             break
         held[COS2I] = True
-    return step
+    return step, -float(gradient @ step)
 
 
 def _normal(

@@ -25,6 +25,7 @@ from shadowscale.geometry.contact_equations import (
     SUM,
 )
 from shadowscale.geometry.contacts import EclipseTiming
+from shadowscale.geometry.least_squares import Candidate, solve
 
 Floats = NDArray[np.float64]
 
@@ -36,7 +37,8 @@ NAMES = (
     "esinw",
     "surface_brightness_ratio",
 )
-PARTS = (0.5, 0.15, 0.85)  # of the range of ln k that partial depths allow
+PARTS = (0.1, 0.9, 0.3, 0.7)  # of the range of ln k that partial depths allow
+FIRM = 0.02  # of a ratio that is tried
 STEEPER = (0.3, 1.5)  # times cos^2 i: depths thinned by third light, or hidden edges
 SAME_RATIO, SAME_SUM, SAME_COSINE = 0.1, 0.03, 0.01  # starts nearer than that are one
 MOST = 8
@@ -62,20 +64,29 @@ def _places(ground: Ground) -> Iterator[Floats]:
     best, others, _ = solutions(ground)
     for solution in (best, *others):
         yield solution.unknowns
-    yield from (guess.unknowns for guess in ground.guesses)
-    yield from _with_ratios(ground, best.unknowns)
+    if ground.flat:
+        yield from (guess.unknowns for guess in ground.guesses)
+        yield from _as_partial(ground, best.unknowns)
+    else:
+        yield from _with_ratios(ground, best)
     for factor in STEEPER:
         yield _inclined(ground, best.unknowns, factor)
 
 
-def _with_ratios(ground: Ground, best: Floats) -> Iterator[Floats]:
-    """The orbit of the best solution with other ratios, read as partial eclipses."""
-    partial = tuple(replace(eclipse, flat=False) for eclipse in ground.eclipses)
-    low, high = (max(ground.log_ratios[0], -2.3), min(ground.log_ratios[1], 1.1))
-    guess = replace(ground.guesses[0], unknowns=best)
+def _with_ratios(ground: Ground, best: Candidate) -> Iterator[Floats]:
+    """Other ratios, each with the orbit and inclination that the same eclipses then ask for."""
+    low, high = ground.log_ratios
     for part in PARTS:
-        log_ratio = low + part * (high - low)
-        yield placed(guess.believing(LOG_RATIO, log_ratio, 1.0), partial, ground.equations).unknowns
+        guess = best.guess.believing(LOG_RATIO, low + part * (high - low), FIRM)
+        yield solve(ground.equations, placed(guess, ground.eclipses, ground.equations)).unknowns
+
+
+def _as_partial(ground: Ground, best: Floats) -> Iterator[Floats]:
+    """The same orbit with stars between the extremes, should the flat part be an illusion."""
+    partial = tuple(replace(eclipse, flat=False) for eclipse in ground.eclipses)
+    low, high = max(ground.log_ratios[0], log(0.1)), min(ground.log_ratios[1], log(3.0))
+    guess = replace(ground.guesses[0], unknowns=best).believing(LOG_RATIO, (low + high) / 2, FIRM)
+    yield placed(guess, partial, ground.equations).unknowns
 
 
 def _inclined(ground: Ground, best: Floats, factor: float) -> Floats:
