@@ -32,6 +32,7 @@ DAY = 86400.0  # [s]
 HOUR = 1 / 24  # [d]
 FLAG = 4  # what the column of quality holds for a spoilt point
 MOST_POINTS = 5_000_000
+IMPLIED = {"MJD": 2400000.5, "BTJD": 2457000.0, "BKJD": 2454833.0}  # offsets in a name [d]
 TIME_DIGITS = 6  # decimals of printed times [d]
 
 
@@ -305,7 +306,10 @@ def _velocity_times(
 
 
 def _time_name(scale: str, offset: float) -> str:
-    return scale if not offset else f"{scale}-{offset:g}" if offset % 1 else f"{scale}-{offset:.0f}"
+    """The header of the times; an offset is said unless the name implies it."""
+    if not offset or IMPLIED.get(scale) == offset:
+        return scale
+    return f"{scale}-{offset:.15g}"
 
 
 def _csv(header: Sequence[str], rows: Sequence[Sequence[str]]) -> str:

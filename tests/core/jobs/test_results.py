@@ -1,0 +1,134 @@
+"""Writing results, refusing to overwrite, and comparing a replay; from an invented solution."""
+
+import json
+from dataclasses import replace
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+from made_up import made_up_session
+from shadowscale.errors import NoSolutionError, NotDetachedError, UsageError
+from shadowscale.fit.solution import DERIVED, Estimate
+from shadowscale.jobs.replay import Difference, differences
+from shadowscale.jobs.results import check_targets, result_files, sheet_of, write_results
+from shadowscale.jobs.solve import IN_WINDOW, refuse_fatal, tables_to_solve
+from shadowscale.jobs.words import summary
+from shadowscale.judge.finding import FAIL, Finding
+from shadowscale.session import Markers, Session, Source
+
+
+@pytest.fixture(scope="module")
+def session():
+    return made_up_session()
+
+
+def test_all_files_are_written_and_named(session, tmp_path):
+    written = write_results(session, tmp_path / "new" / "folder")
+    assert [path.name for path in written] == list(result_files(session))
+    assert all(path.stat().st_size > 100 for path in written)
+    assert json.loads(written[0].read_text())["provenance"]["command"] == session.command
+    stored = json.loads((tmp_path / "new" / "folder" / "session.json").read_text())
+    assert stored["markers"]["primary"] == list(session.markers.primary)
+
+
+def test_a_second_time_needs_overwrite(session, tmp_path):
+    write_results(session, tmp_path)
+    (tmp_path / "sheet.csv").write_text("mine")
+    with pytest.raises(UsageError, match=r"a free place, or --overwrite"):
+        write_results(session, tmp_path)
+    assert (tmp_path / "sheet.csv").read_text() == "mine"
+    write_results(session, tmp_path, overwrite=True)
+    assert (tmp_path / "sheet.csv").read_text() != "mine"
+
+
+@pytest.mark.parametrize("name", ["light_curve.csv", "sheet.json"])
+def test_an_input_is_never_a_target_by_whatever_path(session, tmp_path, name):
+    (tmp_path / name).write_text("data")
+    link = tmp_path / "link"
+    link.symlink_to(tmp_path)
+    mine = replace(session, photometry_sources=(Source(str(link / name)),))
+    with pytest.raises(UsageError, match="a folder without the input files"):
+        check_targets(mine, tmp_path, result_files(mine), overwrite=True)
+    table = replace(session.plan, limb_table=str(tmp_path / name))
+    with pytest.raises(UsageError, match="a folder without the input files"):
+        check_targets(replace(session, plan=table), tmp_path, [name], overwrite=True)
+
+
+def test_a_file_where_a_folder_should_be(session, tmp_path):
+    (tmp_path / "file").write_text("")
+    with pytest.raises(UsageError, match="file is a file"):
+        check_targets(session, tmp_path / "file" / "deep", ["sheet.csv"], overwrite=True)
+    (tmp_path / "sheet.csv").mkdir()
+    with pytest.raises(UsageError, match="which exists"):
+        check_targets(session, tmp_path, ["sheet.csv"], overwrite=True)
+
+
+def test_a_full_disk_is_a_sentence_and_leaves_nothing_half(session, tmp_path, monkeypatch):
+    def full(*_):
+        raise OSError(28, "No space left on device")
+
+    monkeypatch.setattr("shadowscale.session.atomic.os.fsync", full)
+    with pytest.raises(UsageError, match=r"No space left on device.*|a folder that can be written"):
+        write_results(session, tmp_path / "out")
+    assert list((tmp_path / "out").iterdir()) == []
+
+
+def test_a_session_that_is_not_solved_has_no_sheet():
+    with pytest.raises(ValueError, match="not solved"):
+        sheet_of(made_up_session(solved=False))
+    with pytest.raises(ValueError, match="not solved"):
+        summary(Session(), Path("out"))
+
+
+def test_the_summary_shows_masses_doubts_and_the_folder(session):
+    lines = summary(session, Path("out")).splitlines()
+    assert "M1           1.2734 \N{PLUS-MINUS SIGN} 0.0090 solMass" in lines
+    assert "warn: radii exchanged fit only a little worse" in lines
+    assert "also possible: radii exchanged" in lines
+    assert lines[-1] == "results are in out"
+
+
+def test_a_fatal_finding_forbids_the_sheet():
+    mild = Finding("residuals", 1.0, 2.0, FAIL, "residuals are correlated", "x")
+    refuse_fatal((mild,))
+    fatal = Finding("period", 1.0, 2.0, FAIL, "twice the period fits better", "x", fatal=True)
+    with pytest.raises(NoSolutionError, match=r"twice the period fits better \(period = 1\)"):
+        refuse_fatal((mild, fatal))
+    close = Finding("fill-out", 0.99, 0.9, FAIL, "star 1 fills its lobe", "x", fatal=True)
+    with pytest.raises(NotDetachedError, match="star 1 fills its lobe"):
+        refuse_fatal((close,))
+
+
+def test_windows_that_the_observer_excluded_take_no_part(session):
+    markers = replace(session.markers, excluded=((0.20, 0.25), (-0.01, 0.02), (0.97, 0.98)))
+    table = tables_to_solve(replace(session, markers=markers))
+    phase = np.mod((table.time - session.plan.epoch) / session.plan.period, 1.0)
+    inside = ((phase > 0.20) & (phase < 0.25)) | (phase < 0.02) | (phase > 0.99)
+    inside |= (phase > 0.97) & (phase < 0.98)
+    why = table.reasons.index(IN_WINDOW)
+    assert inside.any()
+    assert np.array_equal((table.why == why), inside & session.photometry.used)
+    assert tables_to_solve(replace(session, markers=Markers((0, 0, 0, 0)))) is session.photometry
+    with pytest.raises(UsageError, match="at least one file of photometry"):
+        tables_to_solve(Session())
+
+
+def test_only_numbers_that_differ_are_told_the_largest_first(session):
+    saved = session.solution
+    assert differences(saved, saved) == ()
+    changed = dict(saved.estimates)
+    for name, factor in (("M1", 1 + 1e-5), ("M2", 1 + 1e-10), ("R1", 1.1)):
+        old = changed[name]
+        changed[name] = Estimate(old.value * factor, old.minus, old.plus, DERIVED)
+    del changed["R2"]
+    found = differences(saved, replace(saved, estimates=changed))
+    assert [item.name for item in found] == ["R2", "R2 minus", "R2 plus", "R1", "M1"]
+    assert str(found[0]).startswith("R2: was ")
+    assert str(found[0]).endswith("is none")
+
+
+def test_a_difference_is_relative_to_the_larger():
+    assert Difference("x", 1.0, 2.0).relative == 0.5
+    assert Difference("x", 0.0, 0.0).relative == 0.0
+    assert Difference("x", None, 1.0).relative == float("inf")
