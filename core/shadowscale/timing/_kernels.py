@@ -116,3 +116,126 @@ def _best_box(sum_to, mass_to, count_to, n, total, s1, m1, start1, width1, least
                 found_width = width
         width = max(width + 1, int(width * 1.4))
     return best, found, found_width
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def eclipse_rows(phase, band, bands, centre, nodes, node_weights, table, values, model, jacobian):  # type: ignore[no-untyped-def]
+    """Light of one eclipse and its derivatives (the equations are those of `shape_fit`).
+
+    phase : (n,) [cycles];  band : (n,) int64;  nodes, node_weights : (j,) parts of the exposure [cycles]
+    table : (2, s + 1) light lost and its slope on even separations 0...1, or (2, 0) for a trapezoid
+    values : (5 + 2 bands,) middle, duration, shape of ingress and of egress, depths, levels, slope
+    model : (n,), jacobian : (n, 5 + 2 bands), written
+    """
+    middle, duration = values[0], values[1]
+    edge = np.pi * duration
+    sine_edge = np.sin(edge)
+    for i in range(phase.size):
+        lost = 0.0
+        by_middle = 0.0
+        by_duration = 0.0
+        by_ingress = 0.0
+        by_egress = 0.0
+        for j in range(nodes.size):
+            angle = 2 * np.pi * (phase[i] + nodes[j] - middle)
+            # Beyond a quarter cycle the other side of the orbit begins.
+            if abs(angle) > np.pi / 2:
+                continue
+            x = np.sin(angle) / sine_edge
+            if abs(x) >= 1:
+                continue
+            right = angle > 0
+            f, by_x, by_shape = _lost(x, values[3] if right else values[2], table)
+            w = node_weights[j]
+            lost += w * f
+            by_middle -= w * by_x * 2 * np.pi * np.cos(angle) / sine_edge
+            by_duration -= w * by_x * x * np.pi * np.cos(edge) / sine_edge
+            if right:
+                by_egress += w * by_shape
+            else:
+                by_ingress += w * by_shape
+        b = band[i]
+        depth = values[4 + b]
+        level = values[4 + bands + b]
+        away = phase[i] - centre
+        tilt = 1 + values[values.size - 1] * away
+        light = 1 - depth * lost
+        dark = -level * tilt * depth
+        model[i] = level * tilt * light
+        for column in range(values.size):
+            jacobian[i, column] = 0.0
+        jacobian[i, 0] = dark * by_middle
+        jacobian[i, 1] = dark * by_duration
+        jacobian[i, 2] = dark * by_ingress
+        jacobian[i, 3] = dark * by_egress
+        jacobian[i, 4 + b] = -level * tilt * lost
+        jacobian[i, 4 + bands + b] = tilt * light
+        jacobian[i, values.size - 1] = level * away * light
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def _lost(x, shape, table):  # type: ignore[no-untyped-def]
+    """Light lost relative to the middle, its derivatives by x and by the shape parameter."""
+    if table.shape[1] == 0:
+        raw = (1 - abs(x)) / shape
+        if raw >= 1:
+            return 1.0, 0.0, 0.0
+        return raw, -np.sign(x) / shape, -raw / shape
+    separation = np.sqrt(max(shape + (1 - shape) * x * x, 1e-12))
+    middle = np.sqrt(max(shape, 1e-12))
+    value, slope = _read(separation, table)
+    peak, peak_slope = _read(middle, table)
+    value /= peak
+    slope /= peak * separation
+    by_shape = slope * (1 - x * x) / 2 - value * peak_slope / (2 * peak * middle)
+    return value, slope * (1 - shape) * x, by_shape
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def _read(separation, table):  # type: ignore[no-untyped-def]
+    """A table of even steps read at a separation 0...1, with its slope."""
+    steps = table.shape[1] - 1
+    place = min(separation, 1.0) * steps
+    low = min(int(place), steps - 1)
+    part = place - low
+    value = table[0, low] * (1 - part) + table[0, low + 1] * part
+    return value, table[1, low] * (1 - part) + table[1, low + 1] * part
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def shape_grid(phase, flux, sigma, band, bands, middle, durations, shapes, tables, stretches, chi2):  # type: ignore[no-untyped-def]
+    """chi2 of many shapes, with the depth and level of each band solved for each.
+
+    durations, shapes : (k, s) first guess of the duration and the shape parameter for each table
+    tables : (k, 2, steps + 1);  stretches : (t,) factors on the durations;  chi2 : (k, s, t), written
+    """
+    sums = np.empty((bands, 6))
+    for k in range(tables.shape[0]):
+        for s in range(shapes.shape[1]):
+            for t in range(stretches.size):
+                sine_edge = np.sin(np.pi * durations[k, s] * stretches[t])
+                sums[:] = 0.0
+                for i in range(phase.size):
+                    angle = 2 * np.pi * (phase[i] - middle)
+                    x = np.sin(angle) / sine_edge
+                    f = 0.0
+                    if abs(x) < 1 and abs(angle) < np.pi / 2:
+                        f = _lost(x, shapes[k, s], tables[k])[0]
+                    w = 1 / sigma[i] ** 2
+                    row = sums[band[i]]
+                    row[0] += w
+                    row[1] += w * f
+                    row[2] += w * f * f
+                    row[3] += w * flux[i]
+                    row[4] += w * flux[i] * f
+                    row[5] += w * flux[i] * flux[i]
+                total = 0.0
+                for b in range(bands):
+                    n, sf, sff, sy, syf, syy = sums[b]
+                    if n == 0:
+                        continue
+                    total += syy - sy * sy / n
+                    spread = sff - sf * sf / n
+                    if spread > 0:
+                        total -= (syf - sf * sy / n) ** 2 / spread
+                chi2[k, s, t] = total

@@ -13,7 +13,7 @@ import numpy as np
 
 from shadowscale.data.photometry import Floats
 from shadowscale.geometry.contacts import EclipseTiming
-from shadowscale.timing.profile import RATIOS, TRAPEZOID, Profile, discs
+from shadowscale.timing.profile import RATIOS, TRAPEZOID, Profile, Trapezoid, discs, library
 from shadowscale.timing.shape_fit import (
     DEPTH,
     DURATION,
@@ -22,14 +22,17 @@ from shadowscale.timing.shape_fit import (
     ShapeData,
     ShapeFit,
     fit_shape,
+    grid_chi2,
     merged,
     with_profile,
 )
 
+GRID_CELLS = 40
 CELLS = 120  # cells in one duration, when points are averaged
-_COARSE = (0, 4, 8, 10, 12, 16, 20)
+_FIRST = 3  # ratios fitted from the grid before the best one's neighbours
+_MOST_RATIOS = 9
+_STRETCHES = np.array([0.96, 0.98, 1.0, 1.02, 1.05])
 _SHAPE_GAIN = 9.0  # chi2 that a free egress, or a flat part, must bring (3 sigma)
-_DISC_LONGER = 1.04  # a disc profile is that much longer than the trapezoid through it
 
 
 @dataclass(frozen=True, eq=False)
@@ -60,12 +63,14 @@ def fit_eclipse(
     """
     rough = _trapezoid(data, middle, width)
     data = _thinned(data, float(rough.values[DURATION]))
-    if profile is not None:
-        tried = [fit_shape(data, profile, with_profile(rough, profile), symmetric=True)]
+    grid = None
+    if profile is None:
+        grid = _grid(data, rough)
+        tried = _disc_fits(data, grid)
     else:
-        tried = _disc_fits(data, rough)
+        tried = [fit_shape(data, profile, with_profile(rough, profile), symmetric=True)]
     best = min(tried, key=lambda fit: fit.chi2)
-    flat = _is_flat(data, best)
+    flat = _is_flat(data, best, grid)
     scale = max(best.scale, 1.0)
     free = fit_shape(data, best.profile, best.values)
     lopsided = best.chi2 - free.chi2 > _SHAPE_GAIN * scale and free.freedom > 10
@@ -102,46 +107,66 @@ def _start(data: ShapeData, middle: float, duration: float, ingress: float) -> F
     return np.concatenate([[middle, duration, ingress, ingress], depths, levels, [0.0]])
 
 
-def _disc_fits(data: ShapeData, rough: ShapeFit) -> list[ShapeFit]:
-    """Symmetric fits of discs, finer near the ratio that fits best."""
-    start = rough
-    values = rough.values.copy()
-    values[DURATION] *= _DISC_LONGER
-    start = ShapeFit(
-        rough.profile, values, rough.covariance, rough.chi2, rough.freedom, rough.centre
-    )
+@dataclass(frozen=True, eq=False)
+class _Grid:
+    """Values to start from (ratios, shapes, parameters) and their chi2 (ratios, shapes)."""
+
+    starts: Floats
+    chi2: Floats
+
+
+def _disc_fits(data: ShapeData, grid: _Grid) -> list[ShapeFit]:
+    """Symmetric fits of discs near the ratio that fits best; a grid over all shapes gives the starts."""
     found: dict[int, ShapeFit] = {}
-
-    def fit(index: int) -> None:
-        if index in found or not 0 <= index < len(RATIOS):
-            return
-        near = min(found, key=lambda other: abs(other - index)) if found else None
-        begin = start if near is None or abs(near - index) > 2 else found[near]
-        profile = discs(RATIOS[index])
-        found[index] = fit_shape(data, profile, with_profile(begin, profile), symmetric=True)
-
-    for index in _COARSE:
-        fit(index)
-    for step in (2, 1):
+    for index in np.argsort(grid.chi2.min(axis=1))[:_FIRST]:
+        found[int(index)] = _from_grid(data, grid, int(index))
+    while len(found) < _MOST_RATIOS:
         best = min(found, key=lambda index: found[index].chi2)
-        fit(best - step)
-        fit(best + step)
+        fresh = [n for n in (best - 1, best + 1) if 0 <= n < len(RATIOS) and n not in found]
+        if not fresh:
+            break
+        for index in fresh:
+            found[index] = _from_grid(data, grid, index)
     return list(found.values())
 
 
-def _is_flat(data: ShapeData, best: ShapeFit) -> bool:
+def _grid(data: ShapeData, rough: ShapeFit) -> _Grid:
+    """Starts with the width at half depth of the rough fit, each at its best stretch."""
+    part = rough.profile.ingress(float(rough.values[INGRESS]))[0]
+    width = float(rough.values[DURATION]) * (1 - part / 2)
+    lib = library()
+    durations = np.minimum(width / lib.half, 0.45)
+    if data.phase.size > 2 * GRID_CELLS:
+        data = merged(data, float(rough.values[DURATION]) / GRID_CELLS)
+    chi2 = grid_chi2(data, rough, durations, _STRETCHES)
+    best = chi2.argmin(axis=2)
+    starts = np.tile(rough.values, (*durations.shape, 1))
+    starts[..., DURATION] = durations * _STRETCHES[best]
+    starts[..., INGRESS] = starts[..., INGRESS + 1] = lib.shapes
+    return _Grid(starts, chi2.min(axis=2))
+
+
+def _from_grid(data: ShapeData, grid: _Grid, index: int, *, lower: float = 0.0) -> ShapeFit:
+    """Fit one ratio from its best place on the grid."""
+    allowed = np.where(library().shapes[index] >= lower, grid.chi2[index], np.inf)
+    start = grid.starts[index, int(np.argmin(allowed))]
+    return fit_shape(data, discs(RATIOS[index]), start, symmetric=True, lower=lower)
+
+
+def _is_flat(data: ShapeData, best: ShapeFit, grid: _Grid | None) -> bool:
     """Whether no eclipse without inner contacts fits nearly as well."""
     if best.profile.ingress(float(best.values[INGRESS]))[0] >= 1:
         return False
-    chi2 = np.inf
-    ratios = (0.5, 0.75, 1.0, 4 / 3, 2.0)
-    profiles = [TRAPEZOID] if best.profile is TRAPEZOID else [discs(ratio) for ratio in ratios]
-    for profile in profiles:
-        lower = 1.0 if profile is TRAPEZOID else profile.inner  # type: ignore[union-attr]
-        start = with_profile(best, profile)
-        fit = fit_shape(data, profile, start, symmetric=True, lower=lower)
-        chi2 = min(chi2, fit.chi2)
-    return bool(chi2 - best.chi2 > _SHAPE_GAIN * max(best.scale, 1.0))
+    limit = best.chi2 + _SHAPE_GAIN * max(best.scale, 1.0)
+    if grid is None or isinstance(best.profile, Trapezoid):
+        start = with_profile(best, best.profile)
+        return fit_shape(data, best.profile, start, symmetric=True, lower=1.0).chi2 > limit
+    partial = np.where(library().flat, np.inf, grid.chi2)
+    for index in np.argsort(partial.min(axis=1))[:_FIRST]:
+        lower = discs(RATIOS[index]).inner
+        if _from_grid(data, grid, int(index), lower=lower).chi2 < limit:
+            return False
+    return True
 
 
 def _timing(chosen: ShapeFit, tried: list[ShapeFit], *, flat: bool, first: int) -> EclipseTiming:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -51,6 +51,36 @@ def measure_eclipses(
     NoSolutionError
         If no eclipse stands out at this ephemeris, or the eclipses do not line up.
     """
+    together = see_eclipses(photometry, period=period, epoch=epoch, exposure=exposure)
+    return _named(together, given=epoch is not None)
+
+
+@dataclass(frozen=True, eq=False)
+class SeenTogether:
+    """The eclipses of a light curve, the deeper first, with the flattened points they were fitted to.
+
+    cycles : (n,) time in cycles from `origin`;  smear : exposure [cycles];  level : (bands,) flux outside
+    """
+
+    points: LightPoints
+    cycles: Floats
+    eclipses: tuple[SeenEclipse, ...]
+    level: Floats
+    period: float
+    origin: float
+    smear: float
+    notes: tuple[str, ...]
+
+    @property
+    def zero(self) -> float:
+        """Phase of the deeper eclipse."""
+        return self.eclipses[0].fit.timing.middle
+
+
+def see_eclipses(
+    photometry: Photometry, *, period: float, epoch: float | None = None, exposure: float = 0.0
+) -> SeenTogether:
+    """Fit both eclipses; parameters and errors as in `measure_eclipses`."""
     _check(period, exposure)
     raw = light_points(photometry)
     origin = float(np.median(raw.time)) if epoch is None else epoch
@@ -59,13 +89,11 @@ def measure_eclipses(
     points, notes = flattened(raw, cycles, dips)
     dips = _dips(points, cycles)
     smear = exposure / DAY / period
-    seen = _significant(
-        [see_eclipse(points, cycles, dips, n, smear=smear) for n in range(len(dips))], points
-    )
+    seen = [see_eclipse(points, cycles, dips, n, smear=smear) for n in range(len(dips))]
+    seen = _significant(seen, points)
     _check_alignment(points, cycles, seen)
-    found = _named(points, seen, notes, period=period, origin=origin, given=epoch is not None)
     level = band_levels(raw, outside_eclipse(cycles - np.floor(cycles), dips))
-    return replace(found, level=dict(zip(raw.bands, map(float, level), strict=True)))
+    return SeenTogether(points, cycles, tuple(seen), level, period, origin, smear, tuple(notes))
 
 
 def _check(period: float, exposure: float) -> None:
@@ -122,37 +150,28 @@ def _check_alignment(points: LightPoints, cycles: Floats, seen: list[SeenEclipse
         raise NoSolutionError(LINE_UP, numbers, help=HELP)
 
 
-def _named(
-    points: LightPoints,
-    seen: list[SeenEclipse],
-    notes: list[str],
-    *,
-    period: float,
-    origin: float,
-    given: bool,
-) -> MeasuredEclipses:
+def _named(together: SeenTogether, *, given: bool) -> MeasuredEclipses:
     """The result with phases from the middle of the deeper eclipse."""
-    zero = seen[0].fit.timing.middle
+    seen, zero, notes = together.eclipses, together.zero, list(together.notes)
     moved = zero - round(zero)
     if given and abs(moved) > 0.1:
         notes.append(f"the epoch was moved by {moved:+.4f} cycles to the deeper eclipse")
     if len(seen) == 1:
         notes.append("no second eclipse is seen")
-    primary, secondary = _shifted(seen[0], zero, 0.0), None
-    if len(seen) > 1:
-        secondary = _shifted(seen[1], zero, 0.5)
-    depths, errors = _per_band(points, seen)
+    primary = _shifted(seen[0], zero, 0.0)
+    secondary = _shifted(seen[1], zero, 0.5) if len(seen) > 1 else None
+    depths, errors = _per_band(together.points, seen)
     return MeasuredEclipses(
-        period=period,
-        epoch=origin + moved * period,
+        period=together.period,
+        epoch=together.origin + moved * together.period,
         primary=primary[0],
         secondary=None if secondary is None else secondary[0],
-        level={},
+        level=dict(zip(together.points.bands, map(float, together.level), strict=True)),
         depths=depths,
         depth_errors=errors,
         primary_window=primary[1],
         secondary_window=None if secondary is None else secondary[1],
-        scatter=_scatter(points, seen),
+        scatter=_scatter(together.points, seen),
         notes=tuple(notes),
     )
 
@@ -170,13 +189,13 @@ BandPair = tuple[float | None, float | None]
 
 
 def _per_band(
-    points: LightPoints, seen: list[SeenEclipse]
+    points: LightPoints, seen: tuple[SeenEclipse, ...]
 ) -> tuple[dict[str, BandPair], dict[str, BandPair]]:
     """Depths and their errors by band; None where a band has no points in an eclipse."""
     depths: dict[str, BandPair] = {}
     errors: dict[str, BandPair] = {}
     for number, band in enumerate(points.bands):
-        covered = [_covers(points, one, number) for one in seen] + [False]
+        covered = [bool(one.fit.depth_errors[number] > 0) for one in seen] + [False]
         value = [float(one.fit.depths[number]) for one in seen] + [0.0]
         error = [float(one.fit.depth_errors[number]) for one in seen] + [0.0]
         depths[band] = (value[0] if covered[0] else None, value[1] if covered[1] else None)
@@ -184,12 +203,7 @@ def _per_band(
     return depths, errors
 
 
-def _covers(points: LightPoints, seen: SeenEclipse, number: int) -> bool:
-    """Whether a band has points in an eclipse: only then does its depth have an error."""
-    return bool(seen.fit.depth_errors[number] > 0)
-
-
-def _scatter(points: LightPoints, seen: list[SeenEclipse]) -> dict[str, float]:
+def _scatter(points: LightPoints, seen: tuple[SeenEclipse, ...]) -> dict[str, float]:
     scatter = {}
     for number, band in enumerate(points.bands):
         parts = []

@@ -3,7 +3,7 @@
 `DISCS`: a darkened disc crossed by another on a straight path (linear law, u = 0.5). In units of the
 sum of the radii the separation is sqrt(w + (1 - w) x^2), where x = -1...1 from first to fourth contact
 and the shape parameter w is the squared impact parameter. `TRAPEZOID`: straight ingress and egress, whose shape
-parameter is the ingress in half durations.
+parameter is the ingress in half durations. The light itself is computed in `_kernels.eclipse_rows`.
 """
 
 from __future__ import annotations
@@ -13,21 +13,13 @@ from functools import lru_cache
 from math import pi
 
 import numpy as np
+from numpy.typing import NDArray
 
 from shadowscale.data.photometry import Floats
 
 DARKENING = 0.5  # [linear coefficient] between those of hot and cool stars in visible light
-_STEPS = 2000
+_STEPS = 1000
 _RINGS, _RING_WEIGHTS = np.polynomial.legendre.leggauss(32)
-
-
-@dataclass(frozen=True)
-class Shape:
-    """Light lost relative to the middle, and its derivatives by x and by the shape parameter."""
-
-    value: Floats
-    by_x: Floats
-    by_shape: Floats
 
 
 class Trapezoid:
@@ -36,16 +28,7 @@ class Trapezoid:
     name = "trapezoid"
     lower, upper = 0.01, 1.0
 
-    def shape(self, x: Floats, parameter: Floats) -> Shape:
-        """Light lost at x (n,) for shape parameters (n,)."""
-        distance = np.abs(x)
-        raw = (1 - distance) / parameter
-        slope = (raw > 0) & (raw < 1)
-        return Shape(
-            np.clip(raw, 0, 1),
-            np.where(slope, -np.sign(x) / parameter, 0.0),
-            np.where(slope, -raw / parameter, 0.0),
-        )
+    table: Floats = np.empty((2, 0))
 
     def ingress(self, parameter: float) -> tuple[float, float]:
         """Ingress in half durations, and its derivative by the parameter."""
@@ -65,33 +48,8 @@ class Discs:
         self.ratio = ratio
         self.name = f"discs {ratio:.3g}"
         self.inner = ((1 - ratio) / (1 + ratio)) ** 2  # squared separation at inner contact
-        self._table = hidden_fraction_table(ratio)
-        self._slope = np.gradient(self._table, 1 / _STEPS)
-
-    def _read(self, separation: Floats) -> tuple[Floats, Floats]:
-        place = np.minimum(separation, 1.0) * _STEPS
-        low = np.minimum(place.astype(np.int64), _STEPS - 1)
-        part = place - low
-        value = self._table[low] * (1 - part) + self._table[low + 1] * part
-        slope = self._slope[low] * (1 - part) + self._slope[low + 1] * part
-        return value, slope
-
-    def shape(self, x: Floats, parameter: Floats) -> Shape:
-        """Light lost at x (n,) for shape parameters (n,)."""
-        square = np.maximum(parameter + (1 - parameter) * x**2, 1e-12)
-        separation = np.sqrt(square)
-        inside = np.abs(x) < 1
-        value, slope = self._read(np.where(inside, separation, 1.0))
-        middle = np.sqrt(np.maximum(parameter, 1e-12))
-        peak, peak_slope = self._read(middle)
-        value = value / peak
-        slope = np.where(inside, slope / peak / separation, 0.0)
-        peak_slope = np.where(inside, peak_slope / peak / (2 * middle), 0.0)
-        return Shape(
-            value,
-            slope * (1 - parameter) * x,
-            slope * (1 - x**2) / 2 - value * peak_slope,
-        )
+        light = hidden_fraction_table(ratio)
+        self.table = np.stack([light, np.gradient(light, 1 / _STEPS)])
 
     def ingress(self, parameter: float) -> tuple[float, float]:
         """Ingress in half durations (1 where there is no inner contact), and its derivative."""
@@ -111,6 +69,38 @@ Profile = Trapezoid | Discs
 TRAPEZOID = Trapezoid()
 # The front disc from a thirtieth of the other to thirty times.
 RATIOS = tuple(float(ratio) for ratio in np.round(np.geomspace(1 / 32, 32, 21), 4))
+
+
+@dataclass(frozen=True, eq=False)
+class Library:
+    """Discs of all ratios at some shape parameters each: what a grid search looks through.
+
+    shapes : (ratios, s) parameters;  half : (ratios, s) x at half the depth;  flat : (ratios, s) inner contacts
+    tables : (ratios, 2, steps + 1)
+    """
+
+    shapes: Floats
+    half: Floats
+    flat: NDArray[np.bool_]
+    tables: Floats
+
+
+@lru_cache(maxsize=1)
+def library() -> Library:
+    """The library of `RATIOS`; made once."""
+    tables = np.stack([discs(ratio).table for ratio in RATIOS])
+    inner = np.array([discs(ratio).inner for ratio in RATIOS])[:, None]
+    flat = inner * np.linspace(0, 1, 6)[:-1]
+    partial = inner + (Discs.upper - inner) * np.linspace(0, 1, 9) ** 1.5
+    shapes = np.maximum(np.concatenate([flat, partial], axis=1), 0.0)
+    half = np.empty_like(shapes)
+    separation = np.linspace(0, 1, _STEPS + 1)
+    for row, table in enumerate(tables[:, 0]):
+        # Hidden light falls with separation, so it can be read backwards.
+        peak = np.interp(np.sqrt(shapes[row]), separation, table)
+        square = np.interp(peak / 2, table[::-1], separation[::-1]) ** 2
+        half[row] = np.sqrt((square - shapes[row]) / (1 - shapes[row]))
+    return Library(shapes, half, shapes < inner - 1e-12, tables)
 
 
 @lru_cache(maxsize=64)

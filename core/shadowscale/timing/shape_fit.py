@@ -18,11 +18,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from shadowscale.data.photometry import Floats, Ints
-from shadowscale.timing.profile import Profile
+from shadowscale.timing._kernels import eclipse_rows, shape_grid
+from shadowscale.timing.profile import Profile, library
 
 MIDDLE, DURATION, INGRESS, EGRESS, DEPTH = 0, 1, 2, 3, 4
 _STEPS = 60
-_SMALL_STEP = 3e-3  # chi2, against 1 for one sigma
+SMALL_STEP, SMALL_PART = 3e-3, 1e-4  # gain that ends the steps: in chi2, and in parts of chi2
 _NODES, _NODE_WEIGHTS = np.polynomial.legendre.leggauss(5)
 
 
@@ -72,7 +73,12 @@ class ShapeFit:
 
 
 def fit_shape(
-    data: ShapeData, profile: Profile, start: Floats, *, symmetric: bool = False, lower: float = 0.0
+    data: ShapeData,
+    profile: Profile,
+    start: Floats,
+    *,
+    symmetric: bool = False,
+    lower: float = 0.0,
 ) -> ShapeFit:
     """Fit one profile from a start.
 
@@ -92,41 +98,85 @@ def fit_shape(
     ShapeFit
         The covariance is that of the errors as given, not scaled.
     """
-    low, high = _limits(data, profile, start, lower)
-    values = np.clip(start, low, high)
-    tie = _tie(values.size, symmetric)
-    values = _tied(values, symmetric)
-    residual, jacobian = _residuals(data, profile, values)
+    limits = _limits(data, profile, start, lower)
+    values, residual, jacobian = _least(data, profile, start, symmetric, limits)
+    covariance = _inverse(jacobian.T @ jacobian)
+    if symmetric:
+        covariance[EGRESS], covariance[:, EGRESS] = covariance[INGRESS], covariance[:, INGRESS]
+        covariance[EGRESS, EGRESS] = covariance[INGRESS, INGRESS]
+    freedom = data.phase.size - values.size + int(symmetric)
+    return ShapeFit(profile, values, covariance, float(residual @ residual), freedom, data.centre)
+
+
+def _least(
+    data: ShapeData,
+    profile: Profile,
+    start: Floats,
+    symmetric: bool,
+    limits: tuple[Floats, Floats],
+) -> tuple[Floats, Floats, Floats]:
+    """Levenberg-Marquardt: values, residuals and Jacobian at the least chi2 within the limits."""
+    values = _bounded(start, symmetric, limits)
+    residual, jacobian = _residuals(data, profile, values, symmetric)
     chi2, damping = float(residual @ residual), 1e-3
     for _ in range(_STEPS):
-        reduced = jacobian @ tie
-        normal, gradient = reduced.T @ reduced, reduced.T @ residual
-        # What stands at a limit and is pushed outward takes no part in this step.
-        outward = tie.T @ (
-            ((values <= low) & (jacobian.T @ residual < 0))
-            | ((values >= high) & (jacobian.T @ residual > 0))
-        )
-        held = outward > 0
-        normal[held, :] = 0.0
-        normal[:, held] = 0.0
-        gradient[held] = 0.0
-        step = tie @ _damped(normal, gradient, damping)
-        trial = _tied(np.clip(values + step, low, high), symmetric)
-        trial_residual, trial_jacobian = _residuals(data, profile, trial)
-        trial_chi2 = float(trial_residual @ trial_residual)
-        if trial_chi2 <= chi2:
-            small = chi2 - trial_chi2 < _SMALL_STEP
-            values, residual, jacobian, chi2 = trial, trial_residual, trial_jacobian, trial_chi2
-            if small and damping <= 1:
+        step = _step(values, residual, jacobian, limits, damping)
+        trial = _bounded(values + step, symmetric, limits)
+        trial_residual, trial_jacobian = _residuals(data, profile, trial, symmetric)
+        gain = chi2 - float(trial_residual @ trial_residual)
+        if gain >= 0:
+            values, residual, jacobian, chi2 = trial, trial_residual, trial_jacobian, chi2 - gain
+            if gain < SMALL_STEP + SMALL_PART * chi2 and damping <= 1:
                 break
             damping = max(damping / 10, 1e-9)
         elif damping > 1e5:
             break
         else:
             damping *= 10
-    covariance = tie @ _inverse(_normal(jacobian @ tie)) @ tie.T
-    freedom = data.phase.size - tie.shape[1]
-    return ShapeFit(profile, values, covariance, chi2, freedom, data.centre)
+    return values, residual, jacobian
+
+
+def _step(
+    values: Floats,
+    residual: Floats,
+    jacobian: Floats,
+    limits: tuple[Floats, Floats],
+    damping: float,
+) -> Floats:
+    """A damped step; what stands at a limit and is pushed outward takes no part in it."""
+    normal, gradient = jacobian.T @ jacobian, residual @ jacobian
+    held = ((values <= limits[0]) & (gradient < 0)) | ((values >= limits[1]) & (gradient > 0))
+    if held.any():
+        normal[held, :] = 0.0
+        normal[:, held] = 0.0
+        gradient[held] = 0.0
+    scale = normal.diagonal()
+    normal.flat[:: values.size + 1] = scale * (1 + damping) + 1e-12 * scale.max() + 1e-300
+    return np.asarray(np.linalg.solve(normal, gradient))
+
+
+def grid_chi2(data: ShapeData, rough: ShapeFit, durations: Floats, stretches: Floats) -> Floats:
+    """chi2 (ratios, shapes, stretches) of the library's shapes at the middle and slope of a rough fit.
+
+    durations : (ratios, shapes) [cycles];  stretches : (t,) factors on them
+    """
+    lib = library()
+    chi2 = np.empty((*lib.shapes.shape, stretches.size))
+    tilt = 1 + rough.values[-1] * (data.phase - data.centre)
+    shape_grid(
+        data.phase,
+        data.flux / tilt,
+        data.sigma / tilt,
+        data.band,
+        data.bands,
+        rough.values[MIDDLE],
+        durations,
+        lib.shapes,
+        lib.tables,
+        stretches,
+        chi2,
+    )
+    return chi2
 
 
 def predicted(data: ShapeData, fit: ShapeFit) -> Floats:
@@ -168,16 +218,9 @@ def _limits(
     return low, high
 
 
-def _tie(size: int, symmetric: bool) -> Floats:
-    """Matrix from free to full parameters."""
-    full = np.eye(size)
-    if not symmetric:
-        return full
-    full[EGRESS, INGRESS] = 1.0
-    return np.delete(full, EGRESS, axis=1)
-
-
-def _tied(values: Floats, symmetric: bool) -> Floats:
+def _bounded(values: Floats, symmetric: bool, limits: tuple[Floats, Floats]) -> Floats:
+    """Within the limits, and the egress like the ingress where those are tied."""
+    values = np.minimum(np.maximum(values, limits[0]), limits[1])
     if symmetric:
         values[EGRESS] = values[INGRESS]
     return values
@@ -185,64 +228,36 @@ def _tied(values: Floats, symmetric: bool) -> Floats:
 
 def _model(data: ShapeData, profile: Profile, values: Floats) -> tuple[Floats, Floats]:
     """Flux (n,) and its Jacobian (n, m)."""
-    shape, by_middle, by_duration, by_shape, right = _smeared(data, profile, values)
-    bands = data.bands
-    depth = values[DEPTH : DEPTH + bands][data.band]
-    level = values[DEPTH + bands : DEPTH + 2 * bands][data.band]
-    tilt = 1 + values[-1] * (data.phase - data.centre)
-    base = level * tilt
-    light = 1 - depth * shape
-    jacobian = np.zeros((data.phase.size, values.size))
-    dark = -base * depth
-    jacobian[:, MIDDLE] = dark * by_middle
-    jacobian[:, DURATION] = dark * by_duration
-    jacobian[:, INGRESS] = np.where(right, 0.0, dark * by_shape)
-    jacobian[:, EGRESS] = np.where(right, dark * by_shape, 0.0)
-    rows = np.arange(data.phase.size)
-    jacobian[rows, DEPTH + data.band] = -base * shape
-    jacobian[rows, DEPTH + bands + data.band] = tilt * light
-    jacobian[:, -1] = level * (data.phase - data.centre) * light
-    return base * light, jacobian
-
-
-def _smeared(
-    data: ShapeData, profile: Profile, values: Floats
-) -> tuple[Floats, Floats, Floats, Floats, NDArray[np.bool_]]:
-    """Shape and its derivatives by middle, duration and shape parameter, averaged over the exposure."""
-    away = data.phase - values[MIDDLE]
-    right = away > 0
     if data.exposure < 0.02 * values[DURATION]:
-        return (*_shape_at(profile, away, values), right)
-    spread = away[:, None] + _NODES * data.exposure / 2
-    parts = [part @ (_NODE_WEIGHTS / 2) for part in _shape_at(profile, spread, values)]
-    return parts[0], parts[1], parts[2], parts[3], right
+        nodes, weights = np.zeros(1), np.ones(1)
+    else:
+        nodes, weights = _NODES * data.exposure / 2, _NODE_WEIGHTS / 2
+    model = np.empty(data.phase.size)
+    jacobian = np.empty((data.phase.size, values.size))
+    eclipse_rows(
+        data.phase,
+        data.band,
+        data.bands,
+        data.centre,
+        nodes,
+        weights,
+        profile.table,
+        values,
+        model,
+        jacobian,
+    )
+    return model, jacobian
 
 
-def _shape_at(
-    profile: Profile, away: Floats, values: Floats
-) -> tuple[Floats, Floats, Floats, Floats]:
-    """Shape at phases from the middle, and its derivatives by middle, duration and shape parameter."""
-    angle, edge = 2 * np.pi * away, np.pi * values[DURATION]
-    x = np.sin(angle) / np.sin(edge)
-    shape = profile.shape(x, np.where(away > 0, values[EGRESS], values[INGRESS]))
-    by_middle = shape.by_x * (-2 * np.pi * np.cos(angle) / np.sin(edge))
-    by_duration = shape.by_x * x * (-np.pi / np.tan(edge))
-    return shape.value, by_middle, by_duration, shape.by_shape
-
-
-def _residuals(data: ShapeData, profile: Profile, values: Floats) -> tuple[Floats, Floats]:
+def _residuals(
+    data: ShapeData, profile: Profile, values: Floats, symmetric: bool
+) -> tuple[Floats, Floats]:
     model, jacobian = _model(data, profile, values)
-    return (data.flux - model) / data.sigma, jacobian / data.sigma[:, None]
-
-
-def _normal(jacobian: Floats) -> Floats:
-    return np.asarray(jacobian.T @ jacobian)
-
-
-def _damped(normal: Floats, gradient: Floats, damping: float) -> Floats:
-    scale = np.diag(normal)
-    heavier = normal + np.diag(damping * scale + 1e-12 * scale.max() + 1e-300)
-    return np.linalg.solve(heavier, gradient)
+    if symmetric:
+        jacobian[:, INGRESS] += jacobian[:, EGRESS]
+        jacobian[:, EGRESS] = 0.0
+    jacobian /= data.sigma[:, None]
+    return (data.flux - model) / data.sigma, jacobian
 
 
 def _inverse(normal: Floats) -> Floats:

@@ -11,6 +11,7 @@ from shadowscale.data.photometry import Floats
 from shadowscale.timing.eclipse_fit import EclipseFit, fit_eclipse
 from shadowscale.timing.fold import Dip, nearest
 from shadowscale.timing.light_points import LightPoints, robust_scatter
+from shadowscale.timing.profile import TRAPEZOID, Profile
 from shadowscale.timing.results import Span
 from shadowscale.timing.shape_fit import ShapeData, predicted
 
@@ -19,6 +20,7 @@ FEWEST_OUTSIDE = 30  # points outside eclipse that the window should hold
 FEWEST_INSIDE = 3  # points in an eclipse that give a band's depth
 WIDEST_WINDOW = 0.24  # [cycles] half width
 OUTLIER = 5.0  # [sigma]
+_LAST = 3
 
 
 @dataclass(frozen=True, eq=False)
@@ -42,7 +44,13 @@ class SeenEclipse:
 
 
 def see_eclipse(
-    points: LightPoints, cycles: Floats, dips: tuple[Dip, ...], number: int, *, smear: float = 0.0
+    points: LightPoints,
+    cycles: Floats,
+    dips: tuple[Dip, ...],
+    number: int,
+    *,
+    smear: float = 0.0,
+    profile: Profile | None = None,
 ) -> SeenEclipse:
     """Fit one of the dips in a window from its box, then again without outliers in one from the fit.
 
@@ -57,24 +65,28 @@ def see_eclipse(
         Which of them; the others are kept out of the window.
     smear : float [cycles]
         Exposure.
+    profile : Profile, optional
+        Use this shape; the best discs where missing.
     """
     dip = dips[number]
     near = nearest(cycles, dip.middle)
     room, first = _room(dips, number), _first_band(points, cycles, dips)
     middle, width = dip.middle, 1.3 * dip.width
     kept = np.ones(cycles.size, bool)
-    for _ in range(3):
+    # Trapezoids place the window and show the outliers; the shape asked for comes last.
+    for turn, shape in enumerate((TRAPEZOID, TRAPEZOID, profile, profile)):
         window = _window(near, middle, width, room)
         inside = (near >= window[0]) & (near <= window[1])
         data = _shape_data(points, near, inside & kept, smear)
-        fit = fit_eclipse(data, middle=middle, width=min(width / 1.3, dip.width), first=first)
+        box = min(width / 1.3, 1.3 * dip.width)
+        fit = fit_eclipse(data, middle=middle, width=box, profile=shape, first=first)
         residuals = _residuals(points, near, inside, fit, smear)
         fresh = kept.copy()
         fresh[inside] = np.abs(residuals) < OUTLIER * max(robust_scatter(residuals), 1e-12)
         settled = abs(fit.timing.duration - width) < 0.15 * width and np.array_equal(fresh, kept)
-        kept, middle, width = fresh, fit.timing.middle, fit.timing.duration
-        if settled:
+        if turn == _LAST or (settled and turn == _LAST - 1):
             break
+        kept, middle, width = fresh, fit.timing.middle, fit.timing.duration
     return SeenEclipse(fit, window, residuals, inside, kept[inside])
 
 
