@@ -294,8 +294,8 @@ def solutions(ground: Ground) -> tuple[Candidate, list[Candidate], list[str]]:
     else:
         notes.append(UNDETERMINED)
         others = _along_the_valley(ground, best)
-    if best.unknowns[COS2I] == 0.0:
-        notes.append("The contacts ask for more than a central eclipse: i = 90 deg is the nearest.")
+    if best.unknowns[COS2I] < sqrt(best.covariance[COS2I, COS2I]):
+        notes.append("The eclipses are central within the errors: i may be 90 deg.")
     return best, others, notes
 
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from math import hypot
+from math import hypot, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
@@ -13,6 +13,7 @@ from shadowscale.geometry.contact_equations import (
     ECOSW,
     ESINW,
     LOG_RATIO,
+    SUM,
     UNKNOWNS,
     Equations,
 )
@@ -24,6 +25,7 @@ LOWEST = np.array([-0.1, -0.93, -0.93, 0.0, 1e-4, -5.0, -11.0, -0.3])
 HIGHEST = np.array([0.1, 0.93, 0.93, 0.95, 0.95, 5.0, 11.0, 0.95])
 MOST_ECCENTRIC = 0.93
 SMALLEST_LOG_RATIO = 1e-3  # k = 1 is a corner of |1-k|: a solution stays on its side
+LEAST_COSINE = 0.02  # of r1+r2: from a central eclipse the walk could not leave
 STEPS, REWEIGHTED = 25, 2
 CONVERGED = 1e-4  # what a step must still promise in chi2
 
@@ -71,30 +73,38 @@ def solve(equations: Equations, guess: Guess) -> Candidate:
         here = _descend(equations, guess, here, root)
     value, slopes = equations.evaluate(here)
     whitened = root @ value
-    normal, free = _normal(root @ slopes, guess)
     inverse = np.zeros((UNKNOWNS, UNKNOWNS))
-    inverse[np.ix_(free, free)] = np.linalg.inv(normal)
+    inverse[np.ix_(guess.free, guess.free)] = np.linalg.inv(_normal(root @ slopes, guess))
     gain = -inverse @ (root @ slopes).T @ (root @ answer)
     return Candidate(here, inverse, gain, float(whitened @ whitened), guess)
 
 
 def _descend(equations: Equations, guess: Guess, start: Floats, root: Floats) -> Floats:
-    """Levenberg-Marquardt with the weights held."""
+    """Levenberg-Marquardt with the weights held.
+
+    It walks in cos i, not cos^2 i: depths of nearly equal stars have a corner at cos^2 i = 0, and the
+    sign of cos i is free, so there is no bound to run into.
+    """
     side = np.copysign(1.0, guess.unknowns[LOG_RATIO])
     here, damping = start, 1e-3
     value, slopes = equations.evaluate(here)
     cost = _cost(root @ value, here, guess)
     for _ in range(STEPS):
+        cosine = max(sqrt(here[COS2I]), LEAST_COSINE * here[SUM])
+        slopes[:, COS2I] *= 2 * cosine
         step, promised = _step(root @ value, root @ slopes, here, guess, damping)
         if promised <= CONVERGED * (1 + 0.01 * cost):
             break
-        there = _bounded(here + step, side)
+        there = here + step
+        there[COS2I] = (cosine + step[COS2I]) ** 2
+        there = _bounded(there, side)
         new_value, new_slopes = equations.evaluate(there)
         new_cost = _cost(root @ new_value, there, guess)
         if new_cost < cost:
             here, value, slopes, cost = there, new_value, new_slopes, new_cost
             damping = max(damping / 10, 1e-9)
         else:
+            slopes[:, COS2I] /= 2 * cosine
             damping *= 8
     return here
 
@@ -102,31 +112,24 @@ def _descend(equations: Equations, guess: Guess, start: Floats, root: Floats) ->
 def _step(
     whitened: Floats, slopes: Floats, here: Floats, guess: Guess, damping: float
 ) -> tuple[Floats, float]:
-    """A damped step and the fall of chi2 it promises; cos^2 i stays if it would leave its bound."""
+    """A damped step and the fall of chi2 it promises."""
     gradient = slopes.T @ whitened + (here - guess.centre) / guess.sigma**2
+    normal = _normal(slopes, guess)
+    normal.flat[:: normal.shape[0] + 1] *= 1 + damping
     step = np.zeros(UNKNOWNS)
-    held = np.zeros(UNKNOWNS, dtype=bool)
-    for _ in range(2):
-        normal, free = _normal(slopes, guess, held)
-        normal.flat[:: normal.shape[0] + 1] *= 1 + damping
-        step[:] = 0.0
-        step[free] = -np.linalg.solve(normal, gradient[free])
-        if here[COS2I] > 0 or step[COS2I] >= 0:
-            break
-        held[COS2I] = True
+    step[guess.free] = -np.linalg.solve(normal, gradient[guess.free])
     return step, -float(gradient @ step)
 
 
-def _normal(
-    slopes: Floats, guess: Guess, held: NDArray[np.bool_] | None = None
-) -> tuple[Floats, NDArray[np.bool_]]:
-    """Normal matrix of the free unknowns, kept from being singular, and which these are."""
-    free = guess.free if held is None else guess.free & ~held
-    reduced = slopes[:, free]
-    normal = reduced.T @ reduced
+def _normal(slopes: Floats, guess: Guess) -> Floats:
+    """Normal matrix of the free unknowns, kept from being singular."""
+    reduced = slopes[:, guess.free]
+    normal = np.asarray(reduced.T @ reduced)
     diagonal = normal.flat[:: normal.shape[0] + 1]
-    normal.flat[:: normal.shape[0] + 1] = diagonal * (1 + 1e-10) + guess.sigma[free] ** -2.0 + 1e-6
-    return normal, free
+    normal.flat[:: normal.shape[0] + 1] = (
+        diagonal * (1 + 1e-10) + guess.sigma[guess.free] ** -2.0 + 1e-6
+    )
+    return normal
 
 
 def _cost(whitened: Floats, here: Floats, guess: Guess) -> float:
