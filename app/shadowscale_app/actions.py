@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from functools import partial
 from typing import TYPE_CHECKING
 
 from PySide6.QtGui import QAction, QKeySequence
@@ -213,17 +214,19 @@ class Actions:
         call = trouble.guarded(
             entry.words.lower().rstrip(ELLIPSIS), lambda: entry.call(self._bench)
         )
-        action.triggered.connect(lambda _=False: (call(), self.update(self._bench.desk.session)))
+        action.triggered.connect(lambda: self._run(call))
         self._bench.addAction(action)
         return action
+
+    def _run(self, call: Callable[[], None]) -> None:
+        call()
+        self.update(self._bench.desk.session)
 
     def _fill_recent(self) -> None:
         self.recent.clear()
         for path in self._bench.files.recent():
-            call = trouble.guarded(
-                f"opening {path.name}", lambda path=path: self._bench.files.open_paths([path])
-            )
-            self.recent.addAction(str(path)).triggered.connect(lambda _=False, call=call: call())
+            open_it = partial(self._bench.open_paths, [str(path)])
+            self.recent.addAction(str(path)).triggered.connect(open_it)
 
 
 def keys() -> tuple[tuple[str, str], ...]:

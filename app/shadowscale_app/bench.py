@@ -3,22 +3,16 @@
 from __future__ import annotations
 
 import sys
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from pathlib import Path
+from typing import Any
 
 from PySide6.QtCore import QEvent, Qt, QTimer
 from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
 from PySide6.QtWidgets import (
     QApplication,
-    QFrame,
     QMainWindow,
     QMessageBox,
-    QSplitter,
-    QStackedWidget,
-    QTabWidget,
-    QToolBar,
-    QVBoxLayout,
-    QWidget,
 )
 
 from shadowscale._version import __version__
@@ -32,19 +26,25 @@ from shadowscale_app.jobs import LiveLane, LongLane
 from shadowscale_app.live import Live
 from shadowscale_app.panes import all_panes
 from shadowscale_app.panes.pane import Pane
+from shadowscale_app.panes.periods import PeriodsPane
 from shadowscale_app.panes.start import StartPane
+from shadowscale_app.placing import place, tool_bar
 from shadowscale_app.points_desk import PointsDesk
 from shadowscale_app.status import Status
 from shadowscale_app.warm import Warmer
 from shadowscale_app.work import WorkDesk
 
-UPPER = ("Folded curve", "Whole series")
-LOWER = ("Eclipses", "Velocities", "Correlation", "Mass and radius")
-SIDE = ("Quantities", "Settings", "Doubts", "Kept", "Help")
-
 
 class Bench(QMainWindow):
     """The window."""
+
+    desk: Desk
+    files: Files
+    live: Live
+    work: WorkDesk
+    points: PointsDesk
+    brushing: bool
+    phase: float
 
     def __init__(self, *, desk: Desk | None = None, immediate: bool = False) -> None:
         super().__init__()
@@ -60,11 +60,10 @@ class Bench(QMainWindow):
         self.brushing = False
         self.start = StartPane()
         self.status = Status(self)
-        self._tabs: list[QTabWidget] = []
-        self._place()
+        self.stack, self._tabs = place(self)
         self.actions_table = Actions(self)
         self.actions_table.fill_menus()
-        self.actions_table.fill_bar(self._bar())
+        self.actions_table.fill_bar(tool_bar(self))
         self._connect()
         self.panes["Help"].write(self.panes.values(), keys())  # type: ignore[attr-defined]
         self.setAcceptDrops(True)
@@ -74,7 +73,8 @@ class Bench(QMainWindow):
     @property
     def scheme(self) -> str:
         """The chosen colours; empty: as the system has them."""
-        return str(QApplication.instance().property(theme.CHOICE) or theme.FOLLOW)
+        application = QApplication.instance()
+        return str((application and application.property(theme.CHOICE)) or theme.FOLLOW)
 
     def choose_scheme(self, name: str) -> None:
         """Light, dark, or as the system."""
@@ -190,52 +190,6 @@ class Bench(QMainWindow):
         """Follow the system's colours."""
         super().changeEvent(event)
 
-    def _place(self) -> None:
-        left = QSplitter(Qt.Orientation.Vertical)
-        left.addWidget(self._tabbed(UPPER))
-        left.addWidget(self._tabbed(LOWER))
-        left.setSizes([320, 330])
-        right = QSplitter(Qt.Orientation.Vertical)
-        right.addWidget(_framed(self.panes["To scale"]))
-        right.addWidget(_framed(self.panes["The two stars"]))
-        right.addWidget(self._tabbed(SIDE))
-        right.setSizes([190, 110, 330])
-        right.setStretchFactor(2, 1)
-        whole = QSplitter(Qt.Orientation.Horizontal)
-        whole.addWidget(left)
-        whole.addWidget(right)
-        whole.setSizes([780, 500])
-        whole.setStretchFactor(0, 1)
-        for split in (left, right, whole):
-            split.setHandleWidth(6)
-            split.setChildrenCollapsible(False)
-        holder = QWidget()
-        layout = QVBoxLayout(holder)
-        layout.setContentsMargins(6, 6, 6, 4)
-        layout.addWidget(whole)
-        self.stack = QStackedWidget()
-        self.stack.addWidget(self.start)
-        self.stack.addWidget(holder)
-        self.setCentralWidget(self.stack)
-        self.setStatusBar(self.status)
-
-    def _tabbed(self, titles: Sequence[str]) -> QTabWidget:
-        tabs = QTabWidget()
-        tabs.setDocumentMode(False)
-        tabs.setAccessibleName(", ".join(titles))
-        for title in titles:
-            number = tabs.addTab(self.panes[title], title)
-            tabs.setTabToolTip(number, self.panes[title].about)
-        self._tabs.append(tabs)
-        return tabs
-
-    def _bar(self) -> QToolBar:
-        bar = QToolBar("Tools")
-        bar.setMovable(False)
-        bar.setContextMenuPolicy(Qt.ContextMenuPolicy.PreventContextMenu)
-        self.addToolBar(bar)
-        return bar
-
     def _connect(self) -> None:
         self.desk.changed.connect(self._changed)
         for pane in self.panes.values():
@@ -244,12 +198,13 @@ class Bench(QMainWindow):
             pane.looked.connect(self.desk.look)
             pane.told.connect(self.status.tell)
             pane.pointed.connect(self._pointed)
-            pane.asked.connect(self.points.asked)
+            pane.asked.connect(self._asked)
         for teller in (self.live, self.work, self.points, self.warmer):
             teller.told.connect(self.status.tell)
         self.lane.busy.connect(self.status.show_live)
         self.long_lane.busy.connect(self.status.show_busy)
         self.long_lane.busy.connect(lambda _: self.actions_table.update(self.desk.session))
+        self.work.searched.connect(self._searched)
         self.long_lane.progressed.connect(self.status.show_progress)
         self.status.stop_wanted.connect(self.work.stop)
         self.start.open_wanted.connect(trouble.guarded("opening", self.files.ask_open))
@@ -259,6 +214,16 @@ class Bench(QMainWindow):
 
     def _wanted(self, change: Change) -> None:
         self.desk.apply(change)
+
+    def _asked(self, what: str, argument: Any) -> None:
+        calls: dict[str, Callable[[], object]] = {
+            "search period": self.work.search_period,
+            "fold": lambda: self.work.fold(*argument),
+            "brushed": lambda: self.points.brushed(argument),
+            "prior": lambda: self.points.prior(argument),
+        }
+        with trouble.guard(what):
+            calls[what]()
 
     def _let_go(self) -> None:
         self.desk.close_gesture()
@@ -289,19 +254,16 @@ class Bench(QMainWindow):
             with trouble.guard(f"showing {pane.title.lower()}"):
                 pane.display(session, names)
 
+    def _searched(self, found: object) -> None:
+        pane = self.panes["Period"]
+        assert isinstance(pane, PeriodsPane)
+        pane.show_search(found)
+        self.bring("Period")
+
     def _trouble(self, found: trouble.Trouble) -> None:
         dialog = TroubleDialog(found, self)
         dialog.setAttribute(Qt.WidgetAttribute.WA_DeleteOnClose)
         dialog.open()
-
-
-def _framed(pane: Pane) -> QFrame:
-    frame = QFrame()
-    frame.setObjectName("card")
-    layout = QVBoxLayout(frame)
-    layout.setContentsMargins(1, 1, 1, 1)
-    layout.addWidget(pane)
-    return frame
 
 
 def run(paths: Sequence[str]) -> int:

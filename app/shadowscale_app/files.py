@@ -180,8 +180,8 @@ class Files(QObject):
     def recent(self) -> list[Path]:
         """Files that were opened or saved last and are still there, newest first."""
         stored = settings().value(RECENT, [])
-        texts = [stored] if isinstance(stored, str) else list(stored or [])
-        return [Path(text) for text in texts if Path(text).exists()]
+        texts = stored if isinstance(stored, list) else [stored] if stored else []
+        return [Path(str(text)) for text in texts if Path(str(text)).exists()]
 
     def write_journal(self) -> None:
         """Write the session beside, so that a crash costs little."""

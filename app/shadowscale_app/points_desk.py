@@ -12,7 +12,6 @@ from PySide6.QtWidgets import QWidget
 from shadowscale.view.markers import without_span
 from shadowscale.view.rows import with_prior
 from shadowscale.view.selecting import light_set_aside, light_taken_back, set_aside_rows
-from shadowscale_app import trouble
 from shadowscale_app.desk import Change, Desk
 from shadowscale_app.dialogs.brushing import BACK, ask_brush
 from shadowscale_app.dialogs.prior import ask_prior
@@ -33,11 +32,6 @@ class PointsDesk(QObject):
         super().__init__(window)
         self._desk, self._window, self.ask = desk, window, ask
 
-    def asked(self, what: str, argument: Any) -> None:
-        """A pane asks for something that needs a question."""
-        with trouble.guard(what):
-            {"brushed": self._brushed, "prior": self._prior}[what](argument)
-
     def take_all_back(self) -> None:
         """All points that a person set aside take part again."""
         session = self._desk.session
@@ -54,7 +48,8 @@ class PointsDesk(QObject):
             if markers is not session.markers:
                 self._desk.apply(Change("Remove stretch", replace(session, markers=markers)))
 
-    def _brushed(self, rows: Any) -> None:
+    def brushed(self, rows: Any) -> None:
+        """Points were drawn round: ask what is to become of them."""
         answer = self.ask(self._window, len(rows))
         if answer is None:
             return
@@ -66,7 +61,8 @@ class PointsDesk(QObject):
                 Change(f"Set points aside: {answer}", light_set_aside(session, rows, answer))
             )
 
-    def _prior(self, key: str) -> None:
+    def prior(self, key: str) -> None:
+        """Ask for a prior on a quantity."""
         session = self._desk.session
         found = ask_prior(self._window, session, key)
         if found is not None:

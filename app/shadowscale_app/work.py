@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import replace
 
 from PySide6.QtCore import QObject, Signal
 
@@ -16,10 +15,11 @@ from shadowscale_app.live import with_results
 
 
 class WorkDesk(QObject):
-    """Starts long jobs and takes their answers. Signal `told(words)`, `solved()`."""
+    """Starts long jobs and takes their answers. Signals: `told(words)`, `solved()`, `searched(PeriodSearch)`."""
 
     told = Signal(str)
     solved = Signal()
+    searched = Signal(object)
 
     def __init__(self, desk: Desk, lane: LongLane, parent: QObject | None = None) -> None:
         super().__init__(parent)
@@ -66,7 +66,7 @@ class WorkDesk(QObject):
         session = self._desk.session
 
         def work(progress: Progress) -> object:
-            from shadowscale.jobs.starts import solve_from_many_starts
+            from shadowscale.view.starts import solve_from_many_starts
 
             return solve_from_many_starts(session, progress=progress)
 
@@ -96,14 +96,16 @@ class WorkDesk(QObject):
         self._desk.apply(Change("Solve", session))
         self.solved.emit()
 
-    def _take_period(self, found: object) -> None:
+    def fold(self, period: float, epoch: float) -> None:
+        """Take a period and epoch to start from."""
         from shadowscale.view.contacts import with_ephemeris
 
-        session = self._desk.session
-        period, epoch = found.period, found.epoch  # type: ignore[attr-defined]
-        self._desk.apply(
-            Change(
-                "Take period", with_ephemeris(replace(session, name=session.name), period, epoch)
-            )
-        )
-        self.told.emit(found.words)  # type: ignore[attr-defined]
+        self._desk.apply(Change("Fold anew", with_ephemeris(self._desk.session, period, epoch)))
+
+    def _take_period(self, found: object) -> None:
+        from shadowscale.timing.results import PeriodSearch
+
+        assert isinstance(found, PeriodSearch)
+        self.searched.emit(found)
+        self.fold(found.period, found.epoch)
+        self.told.emit(found.words)

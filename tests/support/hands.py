@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 from PySide6.QtCore import QEvent, QPoint, QPointF, Qt
 from PySide6.QtGui import QMouseEvent
 from PySide6.QtTest import QTest
@@ -38,7 +40,7 @@ def draw(
     QTest.mouseMove(port, places[0])
     QApplication.processEvents()
     QTest.mousePress(port, left, modifier, places[0])
-    for before, after in zip(places, places[1:], strict=False):
+    for before, after in pairwise(places):
         for step in range(1, STEPS + 1):
             way = after - before
             _move(

@@ -8,6 +8,7 @@ from shadowscale_app.panes.kept import KeptPane
 from shadowscale_app.panes.mass_radius import MassRadiusPane
 from shadowscale_app.panes.pairs import PairsPane
 from shadowscale_app.panes.pane import Pane
+from shadowscale_app.panes.periods import PeriodsPane
 from shadowscale_app.panes.quantities import QuantitiesPane
 from shadowscale_app.panes.series import SeriesPane
 from shadowscale_app.panes.settings import SettingsPane
@@ -21,6 +22,7 @@ KINDS: tuple[type[Pane], ...] = (
     EclipsesPane,
     VelocitiesPane,
     PairsPane,
+    PeriodsPane,
     MassRadiusPane,
     ToScalePane,
     StarsPane,

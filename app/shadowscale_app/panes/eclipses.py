@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QHBoxLayout, QLabel, QSplitter, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QLabel, QSplitter, QVBoxLayout, QWidget
 
-from shadowscale.session.session import Markers
+from shadowscale.session.session import Markers, Session
+from shadowscale.view.geometry_words import geometry_lines
+from shadowscale_app import theme
 from shadowscale_app.panes.light_pair import LightPair
 from shadowscale_app.panes.marking import Marking
 from shadowscale_app.panes.pane import Pane
@@ -43,14 +45,21 @@ class EclipsesPane(Pane):
             pair.pointed.connect(self.pointed)
             split.addWidget(_titled(f"{part.capitalize()} eclipse", pair))
             self._zoom(part, None)
-        layout = QHBoxLayout(self)
+        self.geometry_words = QLabel("")
+        self.geometry_words.setContentsMargins(10, 1, 10, 3)
+        self.geometry_words.setAccessibleName("Geometry")
+        layout = QVBoxLayout(self)
         layout.setContentsMargins(0, 0, 0, 0)
-        layout.addWidget(split)
+        layout.setSpacing(0)
+        layout.addWidget(split, 1)
+        layout.addWidget(self.geometry_words)
 
     def refresh(self, names: frozenset[str]) -> None:
         """Draw what changed; the view follows the markers only with another set of points or model."""
         for pair in self.pairs.values():
             pair.show_light(self.session, names)
+        if names & {"contact", "solution", "view"}:
+            self.geometry_words.setText(_geometry_text(self.session))
         if "photometry" in names or ("solution" in names and "markers" not in names):
             for part in PLAIN:
                 self._zoom(part, self.session.markers)
@@ -68,6 +77,20 @@ class EclipsesPane(Pane):
         if curve.home_x != (low - margin, high + margin):
             curve.home_x = (low - margin, high + margin)
             curve.setXRange(*curve.home_x, padding=0)
+
+
+def _geometry_text(session: Session) -> str:
+    """Rich text: the contacts' geometry and the fit's, one behind the other."""
+    now = theme.colours()
+    tints = {"contacts": now.contact, "fit": now.model}
+    parts = []
+    for line in geometry_lines(session):
+        cells = "&nbsp;&nbsp;".join(
+            f"{sign} <b>{value}</b><span style='color:{now.quiet}'>{error}</span>"
+            for sign, value, error in line.cells
+        )
+        parts.append(f"<span style='color:{tints[line.source]}'>{line.source}</span>&nbsp; {cells}")
+    return "&nbsp;&nbsp;&nbsp;&nbsp;".join(parts)
 
 
 def _titled(words: str, inner: QWidget) -> QWidget:

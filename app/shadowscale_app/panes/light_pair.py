@@ -77,7 +77,7 @@ class LightPair(QWidget):
         split.addWidget(self.rest)
         split.setStretchFactor(0, 3)
         split.setStretchFactor(1, 1)
-        split.setSizes([300, 110])
+        split.setSizes([220, 96])
         split.setHandleWidth(2)
         split.setChildrenCollapsible(False)
         layout = QVBoxLayout(self)
@@ -168,7 +168,7 @@ class LightPair(QWidget):
 
     def _show_axes(self, session: Session, look: Look) -> None:
         self.curve.setLabel("left", "magnitude" if look.magnitudes else "light")
-        self.rest.setLabel("left", "O \N{MINUS SIGN} C")
+        self.rest.setLabel("left", "O\N{MINUS SIGN}C")
         period = (
             session.system.value("period") if session.system is not None else session.plan.period
         )

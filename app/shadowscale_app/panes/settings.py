@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import replace
+from functools import partial
 
 from PySide6.QtCore import Qt
 from PySide6.QtWidgets import (
@@ -151,9 +152,7 @@ class SettingsPane(Pane):
                     effect,
                     EFFECT_STATES,
                     EFFECT_WORDS[effect] + " " + QUANTITIES[f"{effect}1"].effect,
-                    lambda plan, text, effect=effect: replace(
-                        plan, effects={**plan.effects, effect: text}
-                    ),
+                    partial(_with_effect, effect),
                 ),
             )
         self._column.addWidget(group)
@@ -177,7 +176,7 @@ class SettingsPane(Pane):
                 f"third {band}",
                 THIRD,
                 tip,
-                lambda plan, text, band=band: with_third_light(plan, band, free=text == "free"),
+                partial(_with_third_light, band),
             )
             self._band_form.addRow(words, box)
 
@@ -211,3 +210,11 @@ class SettingsPane(Pane):
     def _ask(self, label: str, plan: Plan) -> None:
         if not self._filling and plan != self.session.plan:
             self.wanted.emit(Change(label, replace(self.session, plan=plan)))
+
+
+def _with_effect(effect: str, plan: Plan, state: str) -> Plan:
+    return replace(plan, effects={**plan.effects, effect: state})
+
+
+def _with_third_light(band: str, plan: Plan, state: str) -> Plan:
+    return with_third_light(plan, band, free=state == "free")

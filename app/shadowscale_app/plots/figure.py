@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from pathlib import Path
 
-from PySide6.QtCore import QMarginsF, QRectF, QSize, QSizeF, Qt
+from PySide6.QtCore import QMarginsF, QPoint, QRectF, QSize, QSizeF, Qt
 from PySide6.QtGui import QImage, QPageSize, QPainter, QPdfWriter
 from PySide6.QtWidgets import QFileDialog, QWidget
 
@@ -78,4 +78,4 @@ def _save_pdf(widget: QWidget, path: Path) -> None:
 
 def _draw(widget: QWidget, painter: QPainter) -> None:
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-    widget.render(painter)
+    widget.render(painter, QPoint())

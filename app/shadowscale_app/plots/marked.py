@@ -136,14 +136,15 @@ class MarkedPicture(Picture):
             self.focus_marker(names[at])
             return True
         self.focus_marker("")
-        return super().focusNextPrevChild(forward)
+        return bool(super().focusNextPrevChild(forward))
 
     def event(self, event: QEvent) -> bool:
         """Let Tab reach the markers: the graphics view would take it for itself."""
         tabs = (Qt.Key.Key_Tab, Qt.Key.Key_Backtab)
-        pressed = isinstance(event, QKeyEvent) and event.type() == QEvent.Type.KeyPress
-        if pressed and event.key() in tabs and self.focusNextPrevChild(event.key() == tabs[0]):
-            return True
+        if isinstance(event, QKeyEvent) and event.type() == QEvent.Type.KeyPress:
+            key = event.key()
+            if key in tabs and self.focusNextPrevChild(key == tabs[0]):
+                return True
         return bool(super().event(event))
 
     def focusOutEvent(self, event: QFocusEvent) -> None:

@@ -116,7 +116,8 @@ class Picture(pg.PlotWidget):
         scene = self.mapToScene(position.toPoint())
         if not self.box.sceneBoundingRect().contains(scene):
             return None
-        return self.box.mapSceneToView(scene)
+        found: QPointF = self.box.mapSceneToView(scene)
+        return found
 
     def place_of(self, x: float, y: float) -> QPointF:
         """Where in the widget an axis value is."""
@@ -124,7 +125,8 @@ class Picture(pg.PlotWidget):
 
     def visible(self) -> QRectF:
         """What the axes show now."""
-        return self.box.viewRect()
+        found: QRectF = self.box.viewRect()
+        return found
 
     def link_x(self, other: Picture) -> None:
         """Move along with another picture sideways."""

@@ -158,7 +158,7 @@ def _draw_points(painter: QPainter, layer: Layer, transform: QTransform) -> None
     table[:, 4:6] = side * ratio
     table[:, 6:8] = 1.0 / ratio
     table[:, 8], table[:, 9] = 0.0, 1.0
-    painter.drawPixmapFragments(*fragments.drawargs(), stamp)
+    painter.drawPixmapFragments(*fragments.drawargs(), stamp)  # type: ignore[call-arg]
 
 
 def _draw_bars(painter: QPainter, layer: Layer, x: Any, y: Any, *, half: Any) -> None:

@@ -56,6 +56,6 @@ def binned(x: Floats, y: Floats, error: Floats, *, width: float) -> Bins:
     return Bins(
         np.bincount(cell, weight * x)[full] / total,
         np.bincount(cell, weight * y)[full] / total,
-        total**-0.5,
+        1.0 / np.sqrt(total),
         number[full],
     )

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from shadowscale.data.photometry import Floats
 from shadowscale.geometry.contacts import ContactSolution, EclipseTiming
@@ -132,12 +133,13 @@ def _level(session: Session, phase: Floats) -> Floats:
     return level
 
 
-def _outside(session: Session, phase: Floats) -> np.ndarray[tuple[int], np.dtype[np.bool_]]:
+def _outside(session: Session, phase: Floats) -> NDArray[np.bool_]:
     markers = session.markers
     assert markers is not None
     if markers.level:
-        return np.any([(phase >= low) & (phase <= high) for low, high in markers.level], axis=0)
-    found = np.ones(phase.size, dtype=bool)
+        spans = [(phase >= low) & (phase <= high) for low, high in markers.level]
+        return np.logical_or.reduce(spans)
+    found: NDArray[np.bool_] = np.ones(phase.size, dtype=bool)
     for contacts in (markers.primary, markers.secondary):
         if contacts is not None:
             found &= (phase < contacts[0]) | (phase > contacts[3])

@@ -50,9 +50,10 @@ def moved(markers: Markers, name: str, phase: float, *, symmetric: bool = False)
     if part in ("primary", "secondary"):
         return _moved_contact(markers, part, int(numbers[0]), phase=phase, symmetric=symmetric)
     if part.endswith("_window"):
-        return replace(
-            markers, **{part: _moved_edge(getattr(markers, part), int(numbers[0]), phase)}
-        )
+        span = _moved_edge(getattr(markers, part), int(numbers[0]), phase)
+        if part == "primary_window":
+            return replace(markers, primary_window=span)
+        return replace(markers, secondary_window=span)
     spans = list(getattr(markers, part))
     which, edge = int(numbers[0]), int(numbers[1])
     spans[which] = _moved_edge(spans[which], edge, phase)

@@ -1,0 +1,46 @@
+"""The geometry from the markers beside that of the fit, in one line each."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from shadowscale.fit.solution import DERIVED, Estimate
+from shadowscale.session.session import Session
+from shadowscale.view.written import symbol, unit_sign, value_and_error
+
+NAMES = ("r1", "r2", "inclination", "ecosw", "esinw")
+
+
+@dataclass(frozen=True)
+class GeometryLine:
+    """Where it comes from, and (symbol, value, error) of each quantity that is known."""
+
+    source: str
+    cells: tuple[tuple[str, str, str], ...]
+
+
+def geometry_lines(session: Session) -> tuple[GeometryLine, ...]:
+    """Contacts first, then the fit; only what there is."""
+    lines = []
+    contact, solution = session.contact, session.solution
+    if contact is not None:
+        known = {
+            name: Estimate(value, contact.errors.get(name), contact.errors.get(name), DERIVED)
+            for name, value in contact.values.items()
+        }
+        lines.append(GeometryLine("contacts", _cells(known)))
+    if solution is not None:
+        lines.append(GeometryLine("fit", _cells(dict(solution.estimates))))
+    return tuple(line for line in lines if line.cells)
+
+
+def _cells(known: dict[str, Estimate]) -> tuple[tuple[str, str, str], ...]:
+    found = []
+    for name in NAMES:
+        estimate = known.get(name)
+        if estimate is None or (name in ("ecosw", "esinw") and not estimate.plus):
+            continue
+        value, error = value_and_error(name, estimate)
+        sign = unit_sign("deg") if name == "inclination" else ""
+        found.append((symbol(name), value + sign, error))
+    return tuple(found)

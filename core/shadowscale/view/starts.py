@@ -1,0 +1,106 @@
+"""Solving from many starts: whether the data exclude everything but one pair of stars."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from math import sqrt
+
+import numpy as np
+
+from shadowscale.errors import NoSolutionError
+from shadowscale.fit.plan import Plan
+from shadowscale.fit.solution import Alternative, Solution
+from shadowscale.progress import SILENT, Progress
+from shadowscale.session.session import Session
+
+STARTS = 12
+SPREAD = {
+    "radius_sum": 0.08,
+    "radius_ratio": 0.45,
+    "inclination": 0.02,
+}  # relative, of the log or value
+SAME = 3.0  # solutions closer than this many errors in every quantity are one
+NOT_EXCLUDED = 25.0  # of chi-squared
+COMPARED = ("radius_sum", "radius_ratio", "inclination", "ecosw", "esinw")
+
+
+def solve_from_many_starts(session: Session, *, progress: Progress = SILENT) -> Session:
+    """The session with the best solution of many starts, the others among its alternatives.
+
+    Parameters
+    ----------
+    session : Session
+        Solved; its plan's seed makes the starts repeat.
+    progress : Progress
+        Told of each start; may raise `Stopped`.
+
+    Raises
+    ------
+    NoSolutionError
+        If no start leads to a solution.
+    """
+    from shadowscale.fit.solve import solve
+
+    if session.photometry is None or session.solution is None:
+        raise NoSolutionError("there is no solution to start from", help="solve first")
+    found: list[Solution] = [session.solution]
+    starts = _starts(session, np.random.default_rng(session.plan.seed))
+    for number, plan in enumerate(starts):
+        progress.report(number / len(starts), f"start {number + 1} of {len(starts)}")
+        try:
+            found.append(solve(session.photometry, session.velocities, plan))
+        except NoSolutionError:
+            continue
+    progress.report(1.0, "done")
+    best = min(found, key=lambda each: each.fit.chi2)
+    others = [
+        each for each in _distinct(found, best) if each.fit.chi2 - best.fit.chi2 < NOT_EXCLUDED
+    ]
+    alternatives = (*best.alternatives, *(_alternative(each, best) for each in others))
+    solution = replace(best, alternatives=alternatives)
+    return replace(session, solution=solution, system=solution.system, contact=solution.contact)
+
+
+def _starts(session: Session, random: np.random.Generator) -> list[Plan]:
+    system = session.system
+    assert system is not None
+    plans = []
+    for number in range(STARTS):
+        start = dict(session.plan.start)
+        turned = -1.0 if number % 2 else 1.0  # every other one begins with the radii exchanged
+        ratio = system.value("radius_ratio") ** turned
+        start["radius_ratio"] = ratio * float(
+            np.exp(SPREAD["radius_ratio"] * random.standard_normal())
+        )
+        total = system.value("radius_sum")
+        start["radius_sum"] = total * float(np.exp(SPREAD["radius_sum"] * random.standard_normal()))
+        tilt = abs(float(random.standard_normal())) * SPREAD["inclination"] * 90.0
+        start["inclination"] = min(90.0, max(60.0, system.value("inclination") + 1.0 - tilt))
+        plans.append(replace(session.plan, start=start))
+    return plans
+
+
+def _distinct(found: list[Solution], best: Solution) -> list[Solution]:
+    kept: list[Solution] = []
+    for solution in sorted(found, key=lambda each: each.fit.chi2):
+        if not any(_same(solution, other) for other in (best, *kept)):
+            kept.append(solution)
+    return kept
+
+
+def _same(first: Solution, second: Solution) -> bool:
+    for name in COMPARED:
+        pair = [each.estimates.get(name) for each in (first, second)]
+        if pair[0] is None or pair[1] is None:
+            continue
+        error = sqrt((pair[0].plus or 0.0) ** 2 + (pair[1].plus or 0.0) ** 2)
+        if abs(pair[0].value - pair[1].value) > SAME * max(error, 1e-6):
+            return False
+    return True
+
+
+def _alternative(solution: Solution, best: Solution) -> Alternative:
+    values = {
+        name: solution.system.values[name] for name in COMPARED if name in solution.system.values
+    }
+    return Alternative("found from another start", values, solution.fit.chi2 - best.fit.chi2)
