@@ -50,6 +50,9 @@ _LONG_KINDS = (
     (re.compile(r"(?i)\bjulian da(te|y)"), "JD"),
 )
 _SCALE = re.compile(rf"(?<![A-Z])({_SCALES})(?![A-Z])|(?<=JD)({_SCALES})(?![A-Z])")
+_SPOKEN_SCALE = re.compile(  # TT alone may be part of a star's name
+    rf"(?<![A-Z])(TDB|UTC)(?![A-Z])|(?:JD|IN|SCALE|SYSTEM|STANDARD)[\W_]{{0,3}}({_SCALES})(?![A-Z])"
+)
 _OFFSET = re.compile(r"(?<![\d.])(24\d{5}(?:\.\d*)?)(?![\d])")
 _TAKEN_OFF = re.compile(
     r"(?i)(?:[-\N{MINUS SIGN}\N{EN DASH}]|minus|less|offset|subtract\w*|zero ?point|reference)\D{0,25}(24\d{5}(?:\.\d*)?)(?!\d)"
@@ -59,6 +62,7 @@ _TAKEN_OFF = re.compile(
 _KEYS = re.compile(
     r"^(time|timesys|jdref\w*|.*(time|date).*(system|scale|unit|standard|zero|offset|ref).*|times?|dates?|.*\b[bhm]?jd\b.*)$"
 )
+_MOMENT = re.compile(r"^(m?jd|date|time|t)[-_ ]?(obs|beg|end|start|stop|mid|avg)")
 _SECONDS = re.compile(r"(?i)^(s|secs?|seconds?)$")
 _NO_KIND = (
     "the file does not say whether its Julian dates are barycentric, heliocentric or geocentric"
@@ -144,7 +148,7 @@ def _sources(
     keyed = [
         (f"{key} {value}", f"the line {key!r} of the header")
         for key, value in headers.items()
-        if _KEYS.match(key) and not key.startswith("date-obs")
+        if _KEYS.match(key) and not _MOMENT.match(key)
     ]
     spoken = [
         (comment, "a comment")
@@ -165,7 +169,8 @@ def _kind(sources: list[tuple[str, str]]) -> tuple[str, str, float | None, str]:
         if here and _better(here, kind):
             kind, said = here, where
             implied = _KINDS[here][2] if implied is None else implied
-        found = _SCALE.search(upper.replace("(", " ").replace(")", " "))
+        pattern = _SPOKEN_SCALE if where == "a comment" else _SCALE
+        found = pattern.search(upper.replace("(", " ").replace(")", " "))
         scale = scale or ((found[1] or found[2]) if found else "")
     return kind, scale, implied, said
 

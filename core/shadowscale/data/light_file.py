@@ -12,12 +12,12 @@ import numpy as np
 
 from shadowscale.data.bands import band_name
 from shadowscale.data.clocks import Clock
-from shadowscale.data.columns import Guess, photometry_columns
+from shadowscale.data.columns import Chosen, Guess
+from shadowscale.data.light_columns import photometry_columns
 from shadowscale.data.photometry import Floats, Ints, UnreadableRow
 from shadowscale.data.raw_table import RawTable
 from shadowscale.data.rows import (
     Bools,
-    Chosen,
     Reasons,
     clock_of,
     far_rows,

@@ -7,13 +7,12 @@ from collections.abc import Sequence
 import numpy as np
 
 from shadowscale.data.clocks import common_scale
+from shadowscale.data.columns import NOTHING_CHOSEN, Chosen
 from shadowscale.data.files import FilePath
 from shadowscale.data.levels import night_numbers, scaled, with_errors
 from shadowscale.data.light_file import MINIMUM_ROWS, LightPart, light_part
 from shadowscale.data.photometry import Floats, InputFile, Ints, Photometry
 from shadowscale.data.rows import (
-    NOTHING_CHOSEN,
-    Chosen,
     Reasons,
     input_file,
     middle,

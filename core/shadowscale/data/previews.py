@@ -8,13 +8,15 @@ from dataclasses import dataclass
 import numpy as np
 
 from shadowscale.data.clocks import Clock
-from shadowscale.data.columns import Guess, photometry_columns, velocity_columns
+from shadowscale.data.columns import NOTHING_CHOSEN, Chosen, Guess
 from shadowscale.data.files import READERS, FilePath, file_bytes, reader_for
+from shadowscale.data.light_columns import photometry_columns
 from shadowscale.data.light_file import bands_of_head
 from shadowscale.data.looks import velocities_by_look
 from shadowscale.data.photometry import UnreadableRow
 from shadowscale.data.raw_table import RawTable
-from shadowscale.data.rows import NOTHING_CHOSEN, Bools, Chosen, clock_of, split_rows
+from shadowscale.data.rows import Bools, clock_of, split_rows
+from shadowscale.data.velocity_columns import velocity_columns
 from shadowscale.errors import InputError, Problem, UsageError
 
 HEAD = 262_144  # bytes read of a long file

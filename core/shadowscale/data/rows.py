@@ -5,21 +5,19 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from os import PathLike, fspath
-from types import MappingProxyType
 
 import numpy as np
 from numpy.typing import NDArray
 
 from shadowscale.data.clocks import REACH, Clock, recognised_clock
-from shadowscale.data.columns import Guess
+from shadowscale.data.columns import Chosen, Guess
 from shadowscale.data.files import FilePath, read_table
 from shadowscale.data.photometry import Floats, InputFile, UnreadableRow
 from shadowscale.data.raw_table import RawTable
 from shadowscale.errors import InputError, Problem, TableError, TimeScaleError
 
-Chosen = Mapping[str, str | int]
 Bools = NDArray[np.bool_]
-NOTHING_CHOSEN: Chosen = MappingProxyType({})
+LARGEST_OFFSET = 2.6e6  # [d] between two zero points in use
 
 
 @dataclass
@@ -130,18 +128,20 @@ def clock_of(table: RawTable, time: Guess, columns: Chosen) -> Clock:
 
 
 def far_rows(path: str, time: Floats, line: NDArray[np.int64]) -> Bools:
-    """Rows whose time is far from all others; many of them mean that two clocks are mixed.
+    """Rows whose time is far from all others; many of them, an offset away, mean two clocks.
 
     Raises
     ------
     TimeScaleError
-        If more than one row in twenty is that far.
+        If more than two rows and one in twenty are that far.
     """
     if not len(time):
         return np.zeros(0, dtype=bool)
-    far = np.abs(time - np.median(time)) > REACH
-    if np.count_nonzero(far) > 0.05 * len(time):
-        row = int(np.flatnonzero(far)[0])
+    distance = np.abs(time - np.median(time))
+    far = distance > REACH
+    mixed = far & (distance < LARGEST_OFFSET)
+    if np.count_nonzero(mixed) > max(2, 0.05 * len(time)):
+        row = int(np.flatnonzero(mixed)[0])
         expected = f"times near {np.median(time):.6g}, as in other rows"
         help = "two kinds of Julian dates (MJD, JD) may be mixed"
         raise TimeScaleError(

@@ -11,10 +11,11 @@ from shadowscale.data.cells import is_number
 from shadowscale.data.files import FileBytes
 from shadowscale.data.layout import BLANKS, Layout, found_layout, looks_like_data, split
 from shadowscale.data.raw_table import RawTable
-from shadowscale.data.text_rows import SAMPLE, Head, Lines, parsed_rows
+from shadowscale.data.text_rows import ABOVE, SAMPLE, Head, Lines, parsed_rows
 from shadowscale.errors import Problem, TableError
 
 _INLINE = re.compile(r"(?:^|(?<=\s))#")
+_COLUMNS = re.compile(r"(?i)^(columns?|fields?|format)\s*[:=]\s*")
 _KEY = re.compile(r"^([A-Za-z][\w .()/-]{0,40}?)\s*[:=]\s*(\S.*)$")
 _UNITS = re.compile(r"^\[.*\]$|^\(.*\)$|^(d|days?|s|sec|jd|bjd|hjd|mjd|m?mag|km/?s|m/s|km s-1|e-/s|ppm|-|)$", re.I)  # fmt: skip
 
@@ -40,6 +41,7 @@ def read_text(file: FileBytes) -> RawTable:
     head = _head(lines, layout)
     columns, good, bad = parsed_rows(file.path, lines, layout=layout, head=head)
     headers, comments = _keys(lines.comments, head.commented)
+    comments += tuple(row.text for row in bad if row.reason == ABOVE)
     if layout.decimal_comma:
         notes.append("commas are read as decimal marks")
     return RawTable(
@@ -148,7 +150,7 @@ def _commented_head(lines: Lines, layout: Layout, first: int) -> Head:
     other = tuple(range(first))
     if above:
         number, comment = above[-1]
-        names = _names(comment.lstrip("# "), layout)
+        names = _names(_COLUMNS.sub("", comment.lstrip("# ")), layout)
         if names and number > lines.numbers[first] - 4:
             return Head(names, (), first, commented=number, other=other)
     return Head((), (), first, other=other)

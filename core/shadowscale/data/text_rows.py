@@ -15,6 +15,7 @@ from shadowscale.data.raw_table import Column, coded
 SAMPLE = 200  # lines from which the layout is found
 CHUNK = 20_000  # lines turned into numbers at once
 SHOWN_TEXT = 200  # characters of a bad line that are kept
+ABOVE = "text above the table"
 _MARK = "\x00"  # between lines; no text file holds it
 
 Cells = Sequence[Sequence[str]]
@@ -48,7 +49,7 @@ def parsed_rows(
 ) -> tuple[tuple[Column, ...], list[int], list[UnreadableRow]]:
     """Columns, the line number of each row, and the lines that are no rows."""
     bad = [
-        UnreadableRow(path, lines.numbers[index], "text above the table", _shown(lines, index))
+        UnreadableRow(path, lines.numbers[index], ABOVE, _shown(lines, index))
         for index in head.other
     ]
     good: list[int] = []
@@ -66,7 +67,7 @@ def parsed_rows(
             for part, column_cells in zip(parts, cells):
                 part.add(column_cells, layout.decimal_comma, len(good))
         good.extend(numbers)
-    names = head.names or tuple(f"column {k + 1}" for k in range(layout.columns))
+    names = [name or f"column {k + 1}" for k, name in enumerate(head.names or [""] * len(parts))]
     units = head.units or ("",) * layout.columns
     columns = tuple(part.column(*pair) for part, pair in zip(parts, zip(names, units)))
     return columns, good, bad

@@ -10,14 +10,12 @@ from pathlib import PurePath
 import numpy as np
 
 from shadowscale.data.clocks import Clock, common_scale
-from shadowscale.data.columns import Guess, velocity_columns
+from shadowscale.data.columns import NOTHING_CHOSEN, Chosen, Guess
 from shadowscale.data.files import FilePath
 from shadowscale.data.photometry import Floats, Ints, UnreadableRow
 from shadowscale.data.raw_table import RawTable
 from shadowscale.data.rows import (
-    NOTHING_CHOSEN,
     Bools,
-    Chosen,
     Reasons,
     clock_of,
     far_rows,
@@ -29,6 +27,7 @@ from shadowscale.data.rows import (
     split_rows,
 )
 from shadowscale.data.velocities import NO_MEASUREMENT, Velocities
+from shadowscale.data.velocity_columns import velocity_columns
 from shadowscale.errors import Problem, TableError, UnitError
 
 MINIMUM = 3  # velocities of either star

@@ -8,9 +8,10 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from shadowscale.data.columns import photometry_columns, velocity_columns
 from shadowscale.data.files import read_table
+from shadowscale.data.light_columns import photometry_columns
 from shadowscale.data.raw_table import RawTable
+from shadowscale.data.velocity_columns import velocity_columns
 from shadowscale.errors import ColumnError, UsageError
 from table_files import light, written
 
