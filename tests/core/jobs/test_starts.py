@@ -3,6 +3,7 @@
 from dataclasses import replace
 
 import pytest
+
 from made_up import made_up_session
 from shadowscale.errors import NotConvergedError
 from shadowscale.jobs import starts
