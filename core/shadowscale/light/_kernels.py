@@ -33,7 +33,7 @@ from shadowscale.light.laws import LINEAR, LOGARITHMIC, POWER_2, QUADRATIC, SQUA
 Floats = NDArray[np.float64]
 
 _STEPS = 11  # rungs of the ladder; each serves singularities four times nearer than the one before
-_NODES_FIRST, _NODES_MORE = 24, 5
+_NODES_FIRST, _NODES_MORE = 20, 5
 _NO_GAP = 1e-24  # kc^2 at inner contact, where the elliptic integrals alone are infinite
 
 
@@ -86,26 +86,17 @@ def _segment(angle: float) -> float:
 @njit(cache=True, nogil=True, error_model="numpy")
 def _arc_moments(angle: float) -> tuple[float, float]:
     """Integrals of sin^2(phi/2) and sin^4(phi/2) from 0 to angle; series for small angles."""
-    if angle > 0.5:
+    if angle > 0.4:
         sine = math.sin(angle)
         first = (angle - sine) / 2.0
         return first, (3.0 * angle - 4.0 * sine + sine * math.cos(angle)) / 8.0
     x2 = angle * angle
-    first = angle * x2 / 12.0 * (1.0 - x2 / 20.0 * (1.0 - x2 / 42.0 * (1.0 - x2 / 72.0)))
+    series = 1.0 - x2 / 72.0 * (1.0 - x2 / 110.0 * (1.0 - x2 / 156.0))
+    first = angle * x2 / 12.0 * (1.0 - x2 / 20.0 * (1.0 - x2 / 42.0 * series))
     # sin^4(x/2) = sum over n >= 2 of (-1)^n (4^n - 4)/(8 (2n)!) x^(2n)
-    second = (
-        angle
-        * x2
-        * x2
-        * (
-            1.0 / 80.0
-            + x2
-            * (
-                -1.0 / 672.0
-                + x2 * (1.0 / 11520.0 + x2 * (-17.0 / 5322240.0 + x2 * 31.0 / 377395200.0))
-            )
-        )
-    )
+    series = 17.0 / 5322240.0 - x2 * (31.0 / 377395200.0 - x2 / 638668800.0)
+    series = 1.0 / 80.0 - x2 * (1.0 / 672.0 - x2 * (1.0 / 11520.0 - x2 * series))
+    second = angle * x2 * x2 * series
     return first, second
 
 
@@ -268,7 +259,7 @@ def arc_power(
         r2 = gap2 + four * s
         if r2 > 1e-3:
             log2 = math.log(mu2)
-            g = math.exp(half * log2)
+            g = math.sqrt(mu2) if power == 1.0 else math.exp(half * log2)
             rest = (1.0 - g) / r2
         else:
             log2 = math.log1p(-r2)
@@ -450,3 +441,10 @@ def eclipse_point(d: float, p: float, law: int, c: Floats, out: Floats) -> None:
             out[5] = (3.0 / 7.0 * beta - (h0 - r3)) / mean
             out[6] = (0.5 * beta - (h0 - h2)) / mean
     out[0] = min(1.0, max(0.0, beta))
+
+
+@njit(cache=True, nogil=True, error_model="numpy")
+def eclipse_points(d: Floats, p: float, law: int, c: Floats, out: Floats) -> None:
+    """eclipse_point for every separation of d (n,), into the rows of out (n, 3+m)."""
+    for i in range(d.shape[0]):
+        eclipse_point(d[i], p, law, c, out[i])
