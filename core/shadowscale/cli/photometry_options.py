@@ -13,7 +13,7 @@ from shadowscale.errors import UsageError
 def add_photometry(parser: Parser) -> None:
     """The files, how to read them, and how to print the result."""
     parser.add_argument("inputs", metavar="PHOTOMETRY", nargs="*", help="photometry files")
-    parser.add_argument("--band", metavar="NAME", help="of photometry that does not say")
+    parser.add_argument("--band", metavar="NAME", help="band, in place of what the files say")
     parser.add_argument(
         "--columns", metavar="ROLE=NAME", action="append", default=[], help="how to read a column"
     )

@@ -26,7 +26,7 @@ def add_arguments(parser: Parser) -> None:
     add_output(parser)
     data = parser.add_argument_group("data")
     data.add_argument("--velocities", metavar="FILE", action="append", default=[])
-    data.add_argument("--band", metavar="NAME", help="of photometry that does not say")
+    data.add_argument("--band", metavar="NAME", help="band, in place of what the files say")
     data.add_argument(
         "--columns",
         metavar="ROLE=NAME",

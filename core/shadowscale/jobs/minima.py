@@ -34,13 +34,11 @@ def minima_table(
     O-C is against the ephemeris given; without one, against that of the period search, and where
     there are enough minima a line through them is told as well.
     """
-    from shadowscale.timing import fit_ephemeris, search_period, times_of_minimum
+    from shadowscale.timing.ephemeris import fit_ephemeris
+    from shadowscale.timing.minima import times_of_minimum
 
     given = period is not None and epoch is not None
-    if period is None or epoch is None:
-        search = search_period(photometry, progress=progress)
-        period = search.period if period is None else period
-        epoch = search.epoch if epoch is None else epoch
+    period, epoch = _ephemeris(photometry, period, epoch, progress=progress)
     minima = tuple(times_of_minimum(photometry, period=period, epoch=epoch))
     timed = [item for item in minima if not item.why_not]
     words = [
@@ -54,9 +52,25 @@ def minima_table(
         line = fit_ephemeris(tuple(timed))
         words.append(_line_words(line))
         facts |= {"fitted_period": line.period, "fitted_epoch": line.epoch}
+        facts["fitted_secondary_phase"] = line.secondary_phase
         facts |= {f"fitted_{name}_error": error for name, error in line.errors.items()}
     rows = [_row(item, period=period, epoch=epoch) for item in minima]
     return Table(COLUMNS, tuple(rows), tuple(words), facts)
+
+
+def _ephemeris(
+    photometry: Photometry, period: float | None, epoch: float | None, *, progress: Progress
+) -> tuple[float, float]:
+    """Period and epoch, what was not given found from the photometry."""
+    from shadowscale.timing.eclipses import measure_eclipses
+    from shadowscale.timing.period import search_period
+
+    if period is None:
+        search = search_period(photometry, progress=progress)
+        return search.period, search.epoch if epoch is None else epoch
+    if epoch is None:
+        return period, measure_eclipses(photometry, period=period).epoch
+    return period, epoch
 
 
 def _row(item: Minimum, *, period: float, epoch: float) -> tuple[Value, ...]:
@@ -77,7 +91,11 @@ def _row(item: Minimum, *, period: float, epoch: float) -> tuple[Value, ...]:
 
 def _line_words(line: Ephemeris) -> str:
     errors = line.errors
-    return (
+    words = (
         f"a line through them: {line.epoch:.5f} (error {errors['epoch']:.2g})"
         f" + {line.period:.8f} (error {errors['period']:.2g}) E"
     )
+    if line.secondary_phase is None:
+        return words
+    error = errors["secondary_phase"]
+    return f"{words}; secondary at phase {line.secondary_phase:.6f} (error {error:.2g})"

@@ -17,7 +17,7 @@ COLUMNS = (
 
 def period_table(photometry: Photometry, *, progress: Progress = SILENT) -> Table:
     """The periods that were weighed, the chosen one first."""
-    from shadowscale.timing import search_period
+    from shadowscale.timing.period import search_period
 
     search = search_period(photometry, progress=progress)
     rows = [

@@ -188,7 +188,7 @@ def _light(
     flux = model_light(system, band, time)
     added, flag = _noise(noise, time, scatter=scatter, random=random)
     if spec.photometry.kind == "magnitude":
-        value: Floats = item.magnitude - 2.5 * np.log10(flux) + added
+        value = np.asarray(item.magnitude - 2.5 * np.log10(flux) + added, dtype=np.float64)
         error = np.full(time.size, scatter)
     else:
         level = 10 ** (-0.4 * (item.magnitude - 12.0))
