@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass, field
 
 import numpy as np
 
@@ -13,6 +14,7 @@ from shadowscale.data.levels import night_numbers, scaled, with_errors
 from shadowscale.data.light_file import MINIMUM_ROWS, LightPart, light_part
 from shadowscale.data.photometry import Floats, InputFile, Ints, Photometry
 from shadowscale.data.rows import (
+    Bools,
     Reasons,
     input_file,
     middle,
@@ -73,60 +75,47 @@ def read_photometry(
 
 
 def _joined(parts: list[LightPart], reasons: Reasons) -> Photometry:
-    time = np.concatenate([part.time for part in parts])
-    order = np.argsort(time, kind="stable")
+    order = np.argsort(np.concatenate([part.time for part in parts]), kind="stable")
+    file = np.repeat(np.arange(len(parts)), [len(part.time) for part in parts])[order]
     bands, band = _all_bands(parts)
-    file = np.repeat(np.arange(len(parts)), [len(part.time) for part in parts])
 
     def ordered(name: str) -> Floats:
         return np.asarray(np.concatenate([getattr(part, name) for part in parts])[order])
 
-    time, band, file = time[order], band[order], file[order]
-    why = ordered("why").astype(np.int64)
-    _require_rows(parts, why, reasons)
-    magnitudes = np.array([part.magnitudes for part in parts])
-    flux, error, notes = scaled(
-        ordered("linear"),
-        ordered("linear_error"),
-        band=band,
-        file=file,
-        used=why == 0,
+    rows = _Rows(
+        time=ordered("time"),
+        linear=ordered("linear"),
+        linear_error=ordered("linear_error"),
+        band=band[order],
+        file=file.astype(np.int64),
+        why=ordered("why").astype(np.int64),
         bands=bands,
-        magnitudes=magnitudes,
-        paths=tuple(part.table.path for part in parts),
     )
-    not_finite = (why == 0) & ~np.isfinite(flux)
-    if np.any(not_finite):
-        why[not_finite] = reasons.number("the value is not finite")
-    night = night_numbers(time, band)
-    estimate = with_errors(flux, error, night=night, band=band, file=file, used=why == 0)
-    lacking = (why == 0) & ~estimate.usable
-    if np.any(lacking):
-        why[lacking] = reasons.number("the error is missing, zero or negative")
-    _require_rows(parts, why, reasons)
-    scale, more = common_scale([(part.table.path, part.clock, middle(part.time)) for part in parts])
-    used = [int(np.count_nonzero((why == 0) & (file == k))) for k in range(len(parts))]
-    estimated = tuple(bool(estimate.estimated[k]) for k in range(len(bands)))
-    notes = [*(note for part in parts for note in part.notes), *more, *notes]
-    notes += [f"band {b}: errors are missing and estimated from the scatter" for b, e in zip(bands, estimated) if e]  # fmt: skip
-    notes += _duplicates(time, band, ordered("value"))
+    _require_rows(parts, rows.why, reasons)
+    level_notes = _set_levels(rows, parts, reasons)
+    _require_rows(parts, rows.why, reasons)
+    scale, scale_notes = common_scale(
+        [(part.table.path, part.clock, middle(part.time)) for part in parts]
+    )
+    notes = [note for part in parts for note in part.notes]
+    notes += [*scale_notes, *level_notes, *_duplicates(rows.time, rows.band, ordered("value"))]
     return _read_only(
         Photometry(
-            time=time,
-            flux=flux,
-            flux_error=estimate.error,
-            band=band,
-            night=night,
-            file=file.astype(np.int64),
+            time=rows.time,
+            flux=rows.flux,
+            flux_error=rows.flux_error,
+            band=rows.band,
+            night=rows.night,
+            file=rows.file,
             line=ordered("line").astype(np.int64),
             value=ordered("value"),
             value_error=ordered("error"),
-            why=why,
+            why=rows.why,
             bands=bands,
-            files=_files(parts, used),
+            files=_files(parts, rows),
             time_scale=scale,
-            magnitudes=bool(np.all(magnitudes)),
-            errors_from_scatter=estimated,
+            magnitudes=all(part.magnitudes for part in parts),
+            errors_from_scatter=rows.estimated,
             reasons=tuple(reasons.known),
             unreadable=tuple(row for part in parts for row in part.unreadable),
             notes=tuple(notes),
@@ -136,7 +125,59 @@ def _joined(parts: list[LightPart], reasons: Reasons) -> Photometry:
     )
 
 
-def _files(parts: list[LightPart], used: list[int]) -> tuple[InputFile, ...]:
+@dataclass
+class _Rows:
+    """The rows of all files in time order, while levels and errors are being set."""
+
+    time: Floats
+    linear: Floats
+    linear_error: Floats
+    band: Ints
+    file: Ints
+    why: Ints
+    bands: tuple[str, ...]
+    flux: Floats = field(default_factory=lambda: np.empty(0))
+    flux_error: Floats = field(default_factory=lambda: np.empty(0))
+    night: Ints = field(default_factory=lambda: np.empty(0, np.int64))
+    estimated: tuple[bool, ...] = ()
+
+
+def _set_levels(rows: _Rows, parts: list[LightPart], reasons: Reasons) -> list[str]:
+    """Flux with each band near 1, nights, and errors where the files have none; notes on all that."""
+    rows.flux, error, notes = scaled(
+        rows.linear,
+        rows.linear_error,
+        band=rows.band,
+        file=rows.file,
+        used=rows.why == 0,
+        bands=rows.bands,
+        magnitudes=np.array([part.magnitudes for part in parts]),
+        paths=tuple(part.table.path for part in parts),
+    )
+    _set_aside(rows, ~np.isfinite(rows.flux), "the value is not finite", reasons)
+    rows.night = night_numbers(rows.time, rows.band)
+    used = rows.why == 0
+    found = with_errors(
+        rows.flux, error, night=rows.night, band=rows.band, file=rows.file, used=used
+    )
+    rows.flux_error = found.error
+    _set_aside(rows, ~found.usable, "the error is missing, zero or negative", reasons)
+    rows.estimated = tuple(found.estimated[k] for k in range(len(rows.bands)))
+    return notes + [
+        f"band {band}: errors are missing and estimated from the scatter"
+        for band, estimated in zip(rows.bands, rows.estimated)
+        if estimated
+    ]
+
+
+def _set_aside(rows: _Rows, which: Bools, reason: str, reasons: Reasons) -> None:
+    which = which & (rows.why == 0)
+    if np.any(which):
+        rows.why[which] = reasons.number(reason)
+
+
+def _files(parts: list[LightPart], rows: _Rows) -> tuple[InputFile, ...]:
+    used = [int(np.count_nonzero((rows.why == 0) & (rows.file == k))) for k in range(len(parts))]
     return tuple(
         input_file(part.table, part.guesses, part.clock, count) for part, count in zip(parts, used)
     )

@@ -40,6 +40,11 @@ FULL = np.linspace(2459000.0, 2459010.0, 50)
         ("time", "", {}, ("Times are HJD - 2450000",), 2450000.0, "HJD"),
         ("time", "", {}, ("times in BJD_TDB, 2450000 subtracted",), 2450000.0, "BJD_TDB"),
         ("time", "", {"time offset": "2457000"}, ("barycentric julian dates",), 2457000.0, "BJD"),
+        ("MJD-50000", "", {}, (), 2450000.5, "JD"),
+        ("time (MJD)", "", {}, (), 2400000.5, "JD"),
+        ("HJD", "", {}, ("TT Hya: times and magnitudes",), 0.0, "HJD"),
+        ("HJD", "", {}, ("times in the TT scale", "HJD TT"), 0.0, "HJD_TT"),
+        ("time", "", {"mjd-obs": "59000.5", "date-obs": "2020-05-31"}, (), 0.0, "unknown"),
         ("RJD", "", {}, (), 2400000.0, "JD"),
         ("date", "", {"jd offset": "2450000"}, (), 2450000.0, "JD"),
     ],
@@ -67,10 +72,19 @@ def test_what_the_user_says_goes_first() -> None:
     assert "the user" in clock.reason
 
 
+def test_what_the_user_says_of_the_scale_keeps_the_offset_of_the_file() -> None:
+    clock = recognised_clock(FULL - 2400000.5, name="MJD", told="HJD_UTC")
+    assert (clock.scale, clock.offset) == ("HJD_UTC", 2400000.5)
+    clock = recognised_clock(FULL - 2400000.5, name="time", told="MJD")
+    assert (clock.scale, clock.offset) == ("JD", 2400000.5)
+    clock = recognised_clock(FULL - 2457000, name="BTJD", told="unknown")
+    assert (clock.scale, clock.offset) == ("unknown", 2457000.0)
+
+
 def test_full_dates_need_no_offset_even_if_one_is_printed() -> None:
     clock = recognised_clock(FULL, name="BJD_TDB-2457000")
     assert (clock.scale, clock.offset) == ("BJD_TDB", 0.0)
-    assert "speaks of an offset 2457000, but the times are full" in clock.note
+    assert "offset 2457000 by the column's name, but the times are full" in clock.note
 
 
 def test_short_dates_named_hjd_are_taken_as_reduced_and_it_is_said() -> None:
@@ -132,6 +146,12 @@ def test_a_scale_half_said_is_put_together_with_a_note(tmp_path: Path) -> None:
     table = read_photometry([first, second])
     assert table.time_scale == "BJD"
     assert any("are put together" in note for note in table.notes)
+
+
+def test_two_scales_that_agree_to_milliseconds(tmp_path: Path) -> None:
+    first = _file(tmp_path, "a.csv", "BJD_TDB", 0.0, seed=1)
+    second = _file(tmp_path, "b.csv", "BJD_TT", 0.0, seed=2)
+    assert read_photometry([second, first]).time_scale == "BJD_TDB"
 
 
 def test_zero_points_far_apart_are_refused(tmp_path: Path) -> None:
