@@ -187,6 +187,13 @@ class Evidence:
             error=error[rows],
         )
 
+    @cached_property
+    def observed_phases(self) -> tuple[Floats, ...]:
+        """Phases of all rows offered to the fit, band by band."""
+        phase, band = self.solution.light.phase, self.photometry.band
+        offered = self.photometry.used & np.isfinite(phase)
+        return tuple(phase[offered & (band == place)] for place in range(len(self.bands)))
+
     def inside(self, window: EclipseWindow) -> tuple[Floats, Bools]:
         """Phase from an eclipse's middle for every used row, and which rows lie in the eclipse."""
         offset = window.offset(self.light.phase)

@@ -7,7 +7,9 @@ from math import isfinite
 
 
 def percent(fraction: float) -> str:
-    """A fraction as a percentage with two digits that matter."""
+    """A fraction as a percentage with two digits that matter; what is below 0.01 % is said to be so."""
+    if 0 < abs(fraction) < 1e-4:
+        return "under 0.01 %"
     return f"{number(100 * fraction)} %"
 
 

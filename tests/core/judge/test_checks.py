@@ -96,7 +96,7 @@ def half_primary() -> Case:
 def limb_moves_radii() -> Case:
     """Limb darkening free, and nearly all of k's error."""
     limb = "limb_darkening1[V].1"
-    case = with_free(GOOD, {limb: (0.6, 0.05)})
+    case = with_sigmas(with_free(GOOD, {limb: (0.6, 0.05)}), radius_ratio=0.02, r1=0.002, r2=0.002)
     return with_correlation(case, {("radius_ratio", limb): 0.97})
 
 
@@ -148,7 +148,7 @@ SPOILT: dict[str, tuple[Callable[[], Case], str, str]] = {
     "other solutions": (
         lambda: alternatives(Alternative("period twice as long", {"period": 4.87}, 1.5)),
         WARN,
-        "Period twice as long",
+        "period twice as long",
     ),
     "period": (equal_eclipses, WARN, "half of this one"),
     "eccentricity": (

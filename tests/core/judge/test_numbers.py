@@ -10,6 +10,7 @@ import pytest
 
 from made_up import EPOCH, INCLINATION, PERIOD, R1, R2, made_up_light
 from made_up_judge import (
+    dropped_by_fit,
     good_case,
     phase_of,
     set_aside,
@@ -17,6 +18,7 @@ from made_up_judge import (
     with_free,
     with_light,
     with_residuals,
+    with_sigmas,
     with_solution,
     with_system,
     with_values,
@@ -25,11 +27,11 @@ from shadowscale.fit.solution import Alternative, Decision
 from shadowscale.judge.audit import CHECKS
 from shadowscale.judge.checks.coverage import INGRESS_ERROR, Sides, covered_share, quadrature_counts
 from shadowscale.judge.checks.eclipses import mirror_solution
-from shadowscale.judge.checks.light import limb_share, radius_gradient
+from shadowscale.judge.checks.light import limb_error, limb_share, radius_gradient
 from shadowscale.judge.checks.orbit import eclipse_shift
 from shadowscale.judge.checks.period import measured_depth
 from shadowscale.judge.checks.residuals import neighbour_statistic, noise_factor
-from shadowscale.judge.checks.shape import lobe_shares, predicted_amplitude
+from shadowscale.judge.checks.shape import lobe_shares, predicted_amplitude, wave_in_residuals
 from shadowscale.judge.checks.stars import young_radius
 from shadowscale.judge.finding import FAIL, PASS, WARN
 from shadowscale.judge.windows import eclipse_windows, secondary_phase
@@ -526,3 +528,58 @@ def test_few_points_scatter_by_chance(name: str, verdict: str) -> None:
     fit = replace(GOOD.solution.fit, raw_reduced_chi2={name: 0.45})
 
     assert with_solution(GOOD, fit=fit).finding("size of the errors").verdict == verdict
+
+
+def test_dark_limb_within_its_error_is_a_warning() -> None:
+    """Power-2: the limb's intensity is 1 - c, so that its error is that of c."""
+    limb = "limb_darkening2[V].1"
+    loose = with_free(GOOD, {limb: (1.06, 0.04)})
+    sure = with_free(GOOD, {limb: (1.06, 0.01)})
+
+    assert limb_error(loose.evidence, "star 2 in band V") == pytest.approx(0.04, rel=1e-6)
+    assert loose.finding("limb darkening").verdict == WARN
+    assert sure.finding("limb darkening").verdict == FAIL
+
+
+def test_limb_darkening_that_rules_a_small_error_is_no_trouble() -> None:
+    limb = "limb_darkening1[V].1"
+    case = with_free(GOOD, {limb: (0.6, 0.05)})
+    case = with_correlation(case, {("radius_ratio", limb): 0.97, ("radius_sum", limb): 0.2})
+
+    finding = case.finding("limb darkening and radii")
+
+    assert finding.verdict == PASS
+    assert "of the radius" in finding.words
+
+
+def test_wave_left_in_the_residuals_is_found() -> None:
+    wave = -0.004 * np.cos(4 * pi * phase_of(GOOD))
+    noise = GOOD.photometry.flux - GOOD.solution.light.model
+    case = with_residuals(with_system(GOOD, levels="one"), noise + wave)
+
+    size, error = wave_in_residuals(case.evidence, 0)
+
+    assert size == pytest.approx(0.004, abs=4 * error)
+    assert error < 3e-4
+
+
+def test_full_lobe_of_an_unknown_radius_asks_for_the_ratio() -> None:
+    case = with_sigmas(with_values(GOOD, radius_sum=0.7), radius_ratio=0.5)
+
+    finding = case.finding("fill-out")
+
+    assert finding.fatal
+    assert "hardly knows" in finding.words
+
+
+def test_mirror_with_the_usual_order_is_recommended() -> None:
+    mirror = Alternative("radii exchanged", {"radius_ratio": 0.77}, 0.3)
+    case = with_solution(with_values(GOOD, radius_ratio=1.3), alternatives=(mirror,))
+
+    assert "the likelier one" in case.finding("order of densities").words
+
+
+def test_outliers_count_as_observed() -> None:
+    case = dropped_by_fit(GOOD, (phase_of(GOOD) > 0.005) & (phase_of(GOOD) < 0.05))
+
+    assert covered_share(case.evidence, case.evidence.windows[0], band=0) == pytest.approx(1.0)

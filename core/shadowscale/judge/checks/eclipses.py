@@ -8,7 +8,7 @@ from shadowscale.fit.solution import Alternative
 from shadowscale.judge.check import Check
 from shadowscale.judge.evidence import TINY, Evidence
 from shadowscale.judge.finding import Finding
-from shadowscale.judge.words import capital, listed, number, percent, sentence
+from shadowscale.judge.words import capital, listed, number, percent
 
 MIRROR_WITHIN = 0.25  # |ln(k k')| below which another solution counts as the mirror of this one
 NEARLY_CERTAIN = 0.95  # correlation above which two quantities cannot be told apart
@@ -125,7 +125,7 @@ def other_solutions(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     if not others:
         return check.passed("No other solution was found that the data do not exclude.")
     nearest = min(others, key=lambda other: other.delta_chi2)
-    words = sentence(nearest.words)
+    words = f"Another solution: {nearest.words.rstrip('.')}."
     if nearest.delta_chi2 < (check.limit or 0.0):
         return check.warned(
             f"{words} The data do not exclude it (chi-squared {_worse(nearest.delta_chi2)}).",

@@ -7,7 +7,7 @@ from math import inf, isfinite
 from shadowscale.judge.check import Check
 from shadowscale.judge.evidence import Evidence
 from shadowscale.judge.finding import PASS, WARN, Finding
-from shadowscale.judge.words import listed, number
+from shadowscale.judge.words import counted, listed, number
 from shadowscale.quantities import QUANTITIES, parse_key, quantity_of
 
 AT_BOUND = 1e-6  # of the bound, or of 1 where it is smaller
@@ -34,12 +34,12 @@ def convergence(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     fit = evidence.solution.fit
     if not fit.converged:
         return check.failed(
-            f"The fit had not settled after {fit.iterations} steps; its numbers are those of where it stopped. "
+            f"The fit had not settled after {counted(fit.iterations, 'step')}; its numbers are those of where it stopped. "
             "Start nearer (period, contacts), or hold fixed what the data do not fix.",
             fit.iterations,
             fatal=True,
         )
-    return check.passed(f"The fit settled after {fit.iterations} steps.", fit.iterations)
+    return check.passed(f"The fit settled after {counted(fit.iterations, 'step')}.", fit.iterations)
 
 
 def bounds(evidence: Evidence, check: Check) -> tuple[Finding, ...]:

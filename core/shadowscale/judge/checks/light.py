@@ -8,7 +8,7 @@ import numpy as np
 
 from shadowscale.data.photometry import Floats
 from shadowscale.judge.check import Check
-from shadowscale.judge.evidence import Evidence
+from shadowscale.judge.evidence import TINY, Evidence
 from shadowscale.judge.finding import Finding
 from shadowscale.judge.words import listed, number, percent
 from shadowscale.light.laws import LAWS
@@ -18,6 +18,9 @@ SURE = 3.0  # sigmas
 HEIGHTS = np.linspace(0.0, 1.0, 101)  # mu, limb to centre
 SMALL_RISE = 0.02  # of the central intensity: a limb brighter by less is rounding of the law
 AT_EDGE = 1e-6
+STEP = 1e-5
+SMALL_SHIFT = 0.005  # of a radius: below it limb darkening may rule the error without harm
+REMEDY = "Hold the coefficients at published values, or give them priors."
 
 
 def third_light(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
@@ -88,33 +91,64 @@ def limb_darkening(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     for name, coefficients in discs.items():
         if len(coefficients) != len(law.coefficients) or not np.all(np.isfinite(coefficients)):
             return check.failed(f"Limb darkening of {name} has missing or unusable coefficients.")
-        with np.errstate(all="ignore"):
-            curve = np.asarray(law.intensity(HEIGHTS, np.asarray(coefficients)), dtype=float)
+        curve = np.asarray(law.intensity(HEIGHTS, np.asarray(coefficients)), dtype=float)
         if not np.all(np.isfinite(curve)):
             return check.failed(f"Limb darkening of {name} gives no finite brightness.")
         lowest[name] = float(curve.min())
         rise[name] = float(np.max(np.maximum.accumulate(curve) - curve))
     dark, bright = min(lowest, key=lambda n: lowest[n]), max(rise, key=lambda n: rise[n])
-    if lowest[dark] < -AT_EDGE:
-        return check.failed(
-            f"Limb darkening of {dark} makes its limb darker than black ({number(lowest[dark])} of the centre). "
-            "Hold the coefficients at published values, or give them priors.",
-            lowest[dark],
-        )
+    if lowest[dark] < -SMALL_RISE:
+        return _dark_limb(evidence, check, name=dark, lowest=lowest[dark])
     if rise[bright] > SMALL_RISE:
         return check.warned(
             f"Limb darkening of {bright} makes the disc brighter towards the limb by {percent(rise[bright])}, as no normal star is. "
-            "Hold the coefficients at published values, or give them priors.",
+            f"{REMEDY}",
             lowest[dark],
         )
     stuck = [name for name in discs if _at_edge(evidence, name, discs[name])]
     if stuck:
         return check.warned(
             f"Limb darkening of {listed(stuck)} was pushed to the edge of what is possible: the curve does not fix it. "
-            "Hold the coefficients at published values, or give them priors.",
+            f"{REMEDY}",
             lowest[dark],
         )
     return check.passed("Every disc darkens from centre to limb as a star does.", lowest[dark])
+
+
+def _dark_limb(
+    evidence: Evidence, check: Check, *, name: str, lowest: float
+) -> tuple[Finding, ...]:
+    """A limb darker than black: a failure where it is so by more than its error."""
+    error = limb_error(evidence, name)
+    words = f"Limb darkening of {name} makes its limb darker than black ({percent(lowest)} of the centre"
+    if error > 0 and -lowest < SURE * error:
+        return check.warned(
+            f"{words}, within its error of {percent(error)}): the curve does not fix it. {REMEDY}",
+            lowest,
+        )
+    return check.failed(f"{words}). {REMEDY}", lowest)
+
+
+def limb_error(evidence: Evidence, name: str) -> float:
+    """Error of the lowest intensity of a disc from the covariance of its coefficients; 0 where held."""
+    star, band = _star_and_band(name)
+    coefficients = np.array(_discs(evidence)[name])
+    law = LAWS[evidence.solution.system.law]
+    keys = [key(f"limb_darkening{star}", band, n + 1) for n in range(coefficients.size)]
+    place = int(np.argmin(law.intensity(HEIGHTS, coefficients)))
+    height, gradient = HEIGHTS[place : place + 1], np.zeros(coefficients.size)
+    for n in range(coefficients.size):
+        step = np.zeros(coefficients.size)
+        step[n] = STEP
+        high, low = (law.intensity(height, coefficients + move)[0] for move in (step, -step))
+        gradient[n] = (high - low) / (2 * STEP)
+    matrix = np.nan_to_num([[evidence.covariance_of(a, b) for a in keys] for b in keys])
+    return sqrt(max(float(gradient @ matrix @ gradient), 0.0))
+
+
+def _star_and_band(name: str) -> tuple[str, str]:
+    """The parts of a disc's name."""
+    return name.split()[1], name.split("band ", 1)[1]
 
 
 def _discs(evidence: Evidence) -> dict[str, tuple[float, ...]]:
@@ -130,11 +164,10 @@ def _discs(evidence: Evidence) -> dict[str, tuple[float, ...]]:
 def _at_edge(evidence: Evidence, name: str, coefficients: tuple[float, ...]) -> bool:
     """Whether free coefficients stand at the edge of the law's own range."""
     law = LAWS[evidence.solution.system.law]
-    star, band = name.split()[1], name.split("band ", 1)[1]
+    star, band = _star_and_band(name)
     if not any(k.startswith(f"limb_darkening{star}[{band}]") for k in evidence.place):
         return False
-    with np.errstate(all="ignore"):
-        pair = np.asarray(law.to_sampling(np.asarray(coefficients)), dtype=float)
+    pair = np.asarray(law.to_sampling(np.asarray(coefficients)), dtype=float)
     return any(
         isfinite(bound) and abs(value - bound) < AT_EDGE
         for value, bounds in zip(pair, law.sampling_bounds)
@@ -156,14 +189,17 @@ def limb_darkening_and_radii(evidence: Evidence, check: Check) -> tuple[Finding,
         return check.silent("the radii have no errors.")
     star = max(shares, key=lambda s: shares[s])
     share = shares[star]
+    shift = sqrt(share) * evidence.sigma(f"r{star}") / max(evidence.radii[star - 1], TINY)
     words = f"Limb darkening makes {percent(share)} of the variance of r{star}"
-    if share > (check.limit or 1.0):
-        return check.warned(
-            f"{words}, more than all else together: coefficients known from elsewhere would shrink its error "
-            f"to {percent(sqrt(1 - share))} of what it is. Published coefficients as priors would help.",
-            share,
-        )
-    return check.passed(f"{words}, less than the rest.", share)
+    if share <= (check.limit or 1.0):
+        return check.passed(f"{words}, less than the rest.", share)
+    if shift < SMALL_SHIFT:
+        return check.passed(f"{words}, but that is only {percent(shift)} of the radius.", share)
+    return check.warned(
+        f"{words}, more than all else together, and {percent(shift)} of the radius. Published coefficients "
+        f"as priors could shrink its error to {percent(sqrt(1 - share))} of what it is.",
+        share,
+    )
 
 
 def _is_limb(name: str) -> bool:
@@ -233,6 +269,7 @@ CHECKS = (
         "Does the limb darkening move the radii more than their error?",
         limb_darkening_and_radii,
         0.5,
-        "half the variance: then limb darkening moves the radius more than everything else together (by definition)",
+        "half the variance: then limb darkening moves the radius more than everything else together (by definition); "
+        "below half a per cent of the radius it does no harm (our choice)",
     ),
 )

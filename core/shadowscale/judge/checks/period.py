@@ -15,6 +15,7 @@ from shadowscale.judge.words import number
 
 CORE = 0.5  # part of an eclipse, about its middle, from which a depth is measured
 SURE = 3.0  # sigmas
+FEWEST_VELOCITIES = 6
 
 
 @dataclass(frozen=True)
@@ -45,9 +46,9 @@ def measured_depth(evidence: Evidence, window: EclipseWindow, chosen: Bools) -> 
 
 def true_period(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     """Whether half or twice the period fits as well, from the two eclipses' depths and widths."""
-    if _two_velocity_curves(evidence):
+    if _velocity_curve(evidence):
         return check.passed(
-            "The velocities of both stars swing once a period, which confirms it against its half and its double."
+            "The velocities swing once a period, which confirms it against its half and its double."
         )
     primary, secondary = evidence.windows
     if not (primary.happens and secondary.happens):
@@ -85,10 +86,16 @@ def true_period(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     )
 
 
-def _two_velocity_curves(evidence: Evidence) -> bool:
-    if evidence.velocities is None:
+def _velocity_curve(evidence: Evidence) -> bool:
+    """Whether a star's amplitude is measured: at half the period it would vanish, at twice not fit."""
+    result = evidence.solution.velocity
+    if evidence.velocities is None or result is None:
         return False
-    return all(evidence.value(f"K{star}") > 5 * evidence.sigma(f"K{star}") > 0 for star in (1, 2))
+    return any(
+        int((why == 0).sum()) >= FEWEST_VELOCITIES
+        and evidence.value(f"K{star}") > 5 * evidence.sigma(f"K{star}") > 0
+        for star, why in ((1, result.why1), (2, result.why2))
+    )
 
 
 def _band_by_band(evidence: Evidence) -> tuple[list[float], list[float]]:

@@ -10,7 +10,7 @@ from shadowscale.data.photometry import Floats, Ints
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.solution import Solution, VelocityResult
 from shadowscale.judge.check import Check
-from shadowscale.judge.evidence import TINY, Evidence, LightRows
+from shadowscale.judge.evidence import TINY, Bools, Evidence, LightRows
 from shadowscale.judge.finding import Finding
 from shadowscale.judge.words import counted, listed, number, percent
 
@@ -221,20 +221,19 @@ def outliers(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
             f"{words}: that is no longer a few bad points, the model does not fit.", share
         )
     if share > (check.limit or 0.0):
-        return check.warned(
-            f"{words}, {_where(evidence, dropped)}. Look at them before trusting the fit.", share
-        )
+        where = f", {_where(evidence, dropped)}" if name == "photometry" else ""
+        return check.warned(f"{words}{where}. Look at them before trusting the fit.", share)
     return check.passed(f"{words}." if gone else "No point was set aside by the fit.", share)
 
 
-def _where(evidence: Evidence, dropped: np.ndarray[tuple[int, ...], np.dtype[np.bool_]]) -> str:
+def _where(evidence: Evidence, dropped: Bools) -> str:
     """How many of the dropped points lie in eclipse."""
     phase = evidence.solution.light.phase[dropped]
     phase = phase[np.isfinite(phase)]
     within = np.zeros(phase.size, dtype=bool)
     for window in evidence.windows:
         within |= np.abs(window.offset(phase)) < window.outer
-    return f"{int(within.sum())} of {int(dropped.sum())} photometric ones in eclipse"
+    return f"{int(within.sum())} of them in eclipse"
 
 
 def _dropped_velocities(table: Velocities | None, solution: Solution) -> list[tuple[str, int, int]]:
@@ -249,7 +248,7 @@ def _dropped_velocities(table: Velocities | None, solution: Solution) -> list[tu
 
 def _velocity_pairs(
     table: Velocities, result: VelocityResult
-) -> tuple[tuple[int, np.ndarray[tuple[int, ...], np.dtype[np.bool_]], Ints], ...]:
+) -> tuple[tuple[int, Bools, Ints], ...]:
     return ((1, table.used1, result.why1), (2, table.used2, result.why2))
 
 

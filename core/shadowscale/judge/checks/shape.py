@@ -38,6 +38,14 @@ def fill_out(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
         f"Star 1 reaches to {percent(fills[0])} and star 2 to {percent(fills[1])} of the radius of its Roche lobe{when}, "
         f"{_ratio_words(q, how)}"
     )
+    if worst >= FULL and _loose(evidence):
+        return check.failed(
+            f"{words}: the fit has ended where star {star} fills its lobe, but with a ratio of radii that it hardly knows. "
+            "Hold the ratio of radii at a likely value, or give a light ratio from spectra, and solve again.",
+            worst,
+            limit=FULL,
+            fatal=True,
+        )
     if worst >= FULL:
         return check.failed(
             f"{words}: star {star} fills its lobe. This pair is semi-detached or in contact; its stars are not "
@@ -81,6 +89,11 @@ def flattenings(evidence: Evidence, q: float) -> tuple[float, float]:
 
 def _usable(evidence: Evidence) -> bool:
     return evidence.eccentricity < 1 and all(0 < radius < inf for radius in evidence.radii)
+
+
+def _loose(evidence: Evidence) -> bool:
+    """Whether the ratio of radii is known no better than to a third."""
+    return evidence.sigma("radius_ratio") > abs(evidence.value("radius_ratio")) / 3
 
 
 def _ratio_words(q: float, how: str) -> str:
@@ -152,24 +165,27 @@ def ellipsoidal(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
         return check.passed(f"The ellipsoidal variation is part of the model ({state}).")
     found = {}
     for place, band in enumerate(evidence.bands):
-        predicted = predicted_amplitude(evidence, band)
-        error = _amplitude_error(evidence, place)
+        predicted, (seen, error) = (
+            predicted_amplitude(evidence, band),
+            wave_in_residuals(evidence, place),
+        )
         if isfinite(predicted) and error > 0:
-            found[band] = (predicted / error, predicted, error)
+            found[band] = (predicted / error, predicted, seen, error)
     if not found:
         return check.silent("too few points lie outside eclipse to show an ellipsoidal variation.")
     worst = max(found, key=lambda band: found[band][0])
-    away, predicted, error = found[worst]
-    words = (
-        f"The ellipsoidal variation, off in this model, is expected at {percent(predicted)} in band {worst}; "
-        f"the points outside eclipse show waves of {percent(error)}"
-    )
+    away, predicted, seen, error = found[worst]
+    words = f"The ellipsoidal variation, off in this model, is expected at {percent(predicted)} in band {worst}"
     if away > (check.limit or 0.0):
         return check.warned(
-            f"{words}, {number(away)} times less. Switch the effect on (predicted or fitted) and compare.",
+            f"{words}, {number(away)} times what the points outside eclipse can show (their residuals hold "
+            f"{number(100 * seen)} +- {percent(error)}). Switch the effect on (predicted or fitted) and compare.",
             away,
         )
-    return check.passed(f"{words}, so leaving it out does no harm.", away)
+    return check.passed(
+        f"{words}, too little for the points outside eclipse to show; leaving it out does no harm.",
+        away,
+    )
 
 
 def predicted_amplitude(evidence: Evidence, band: str) -> float:
@@ -197,14 +213,14 @@ def _darkening(evidence: Evidence, star: int, band: str) -> float:
     return gravity_darkening(teff, wavelength) if known else GRAVITY_DARKENING
 
 
-def _amplitude_error(evidence: Evidence, band: int) -> float:
-    """Error of a wave cos 2 phi through the points outside eclipse, beside the levels that the fit solves."""
+def wave_in_residuals(evidence: Evidence, band: int) -> tuple[float, float]:
+    """Amplitude of -cos 2 phi in the residuals outside eclipse beside the levels of the fit, and its error."""
     light = evidence.light
     chosen = np.flatnonzero(evidence.outside & (light.band == band))
     if chosen.size < FEWEST_OUTSIDE:
-        return 0.0
+        return nan, 0.0
     block = light.block[chosen] if evidence.solution.system.levels != "one" else 0 * chosen
-    weight, wave = light.error[chosen] ** -2, np.cos(4 * np.pi * light.phase[chosen])
+    weight, wave = light.error[chosen] ** -2, -np.cos(4 * np.pi * light.phase[chosen])
     rest = _without_mean(wave, weight, block)
     if evidence.solution.system.levels == "trend":
         time = _without_mean(light.time[chosen], weight, block)
@@ -213,7 +229,9 @@ def _amplitude_error(evidence: Evidence, band: int) -> float:
         )
         rest = rest - slope[block] * time
     power = float(np.sum(weight * rest**2))
-    return 1 / sqrt(power) if power > 0 else 0.0
+    if not power > 0:
+        return nan, 0.0
+    return float(np.sum(weight * rest * light.residual[chosen])) / power, 1 / sqrt(power)
 
 
 def _without_mean(values: Floats, weight: Floats, block: Ints) -> Floats:

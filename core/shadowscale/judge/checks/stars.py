@@ -16,6 +16,7 @@ LEAST_GRAVITY, GREATEST_GRAVITY = -0.5, 5.5  # [dex cgs]
 LEAST_DENSITY, GREATEST_DENSITY = 1e-8, 150.0  # [solar densities]
 TOO_SMALL = 0.7  # of the radius with which a star of that mass begins to burn hydrogen
 SURE = 3.0  # sigmas
+NOT_EXCLUDED = 9.0  # in chi-squared
 
 
 def masses(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
@@ -162,13 +163,27 @@ def order_of_densities(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     words = f"Star {heavy} is the more massive and {number(exp(min(abs(excess), 99)))} times as"
     limit = check.limit or 0.0
     if excess / error > limit and abs(log(q)) / error_q > limit:
+        reason = (
+            "the solution with the radii exchanged, which also fits, has the usual order and is the likelier one."
+            if _mirror_is_open(evidence)
+            else "perhaps the radii are exchanged, or mass was, or the pair is very young."
+        )
         return check.warned(
             f"{words} dense as the other ({number(excess / error)} sigma). Two stars of one age are the other "
-            "way round; perhaps the radii are exchanged, or mass was, or the pair is very young.",
+            f"way round; {reason}",
             excess / error,
         )
     return check.passed(
         f"{words} {'dense' if excess > 0 else 'thin'} as the other, as can be.", excess / error
+    )
+
+
+def _mirror_is_open(evidence: Evidence) -> bool:
+    """Whether a solution with the larger star exchanged is among those not excluded."""
+    k = evidence.value("radius_ratio")
+    return any(
+        (other.values.get("radius_ratio", k) - 1) * (k - 1) < 0 and other.delta_chi2 < NOT_EXCLUDED
+        for other in evidence.solution.alternatives
     )
 
 
