@@ -162,6 +162,14 @@ class Evidence:
     @cached_property
     def light(self) -> LightRows:
         """The rows that took part in the fit and make sense."""
+        return self._rows(self.solution.light.why == 0)
+
+    @cached_property
+    def offered(self) -> LightRows:
+        """The rows that were offered to the fit, its outliers among them."""
+        return self._rows(self.photometry.used)
+
+    def _rows(self, chosen: Bools) -> LightRows:
         table, result = self.photometry, self.solution.light
         scales = [self.solution.fit.error_scale.get(band, 1.0) for band in table.bands] or [1.0]
         with np.errstate(all="ignore"):
@@ -170,7 +178,7 @@ class Evidence:
             error = np.abs(table.flux_error / result.level) * np.take(scales, table.band)
             good = np.isfinite(model + residual + error + table.time + result.phase)
         good &= (error > TINY) & (error < HUGE) & (np.abs(residual) + np.abs(model) < HUGE)
-        rows = np.flatnonzero(good & (result.why == 0))
+        rows = np.flatnonzero(good & chosen)
         rows = rows[np.lexsort((table.time[rows], table.night[rows], table.band[rows]))]
         band, night = table.band[rows], table.night[rows]
         new = np.ones(rows.size, dtype=bool)
@@ -186,13 +194,6 @@ class Evidence:
             residual=residual[rows],
             error=error[rows],
         )
-
-    @cached_property
-    def observed_phases(self) -> tuple[Floats, ...]:
-        """Phases of all rows offered to the fit, band by band."""
-        phase, band = self.solution.light.phase, self.photometry.band
-        offered = self.photometry.used & np.isfinite(phase)
-        return tuple(phase[offered & (band == place)] for place in range(len(self.bands)))
 
     def inside(self, window: EclipseWindow) -> tuple[Floats, Bools]:
         """Phase from an eclipse's middle for every used row, and which rows lie in the eclipse."""

@@ -583,3 +583,13 @@ def test_outliers_count_as_observed() -> None:
     case = dropped_by_fit(GOOD, (phase_of(GOOD) > 0.005) & (phase_of(GOOD) < 0.05))
 
     assert covered_share(case.evidence, case.evidence.windows[0], band=0) == pytest.approx(1.0)
+
+
+def test_outliers_that_crowd_in_eclipse_accuse_the_model() -> None:
+    phase = phase_of(GOOD)
+    few = dropped_by_fit(GOOD, np.abs(phase - 0.03) < 0.002)
+    many = dropped_by_fit(GOOD, np.abs(phase - 0.03) < 0.02)
+
+    assert few.finding("outliers").verdict == WARN
+    assert many.finding("outliers").verdict == FAIL
+    assert "misses the shape or the place" in many.finding("outliers").words

@@ -153,7 +153,8 @@ def eclipse_coverage(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
 
 def covered_share(evidence: Evidence, window: EclipseWindow, *, band: int) -> float:
     """Share of `CELLS` equal parts of an eclipse that hold a point of one band, outliers counted."""
-    offset = window.offset(evidence.observed_phases[band])
+    light = evidence.offered
+    offset = window.offset(light.phase[light.band == band])
     offset = offset[np.abs(offset) < window.outer]
     cells = np.floor((offset / window.outer + 1) / 2 * CELLS).astype(int)
     return np.unique(np.clip(cells, 0, CELLS - 1)).size / CELLS

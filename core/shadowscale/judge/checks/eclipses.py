@@ -125,16 +125,12 @@ def other_solutions(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     if not others:
         return check.passed("No other solution was found that the data do not exclude.")
     nearest = min(others, key=lambda other: other.delta_chi2)
-    words = f"Another solution: {nearest.words.rstrip('.')}."
+    words = f"Another solution: {nearest.words.rstrip('.')}"
+    if "chi-squared" not in words:
+        words += f", chi-squared {_worse(nearest.delta_chi2)}"
     if nearest.delta_chi2 < (check.limit or 0.0):
-        return check.warned(
-            f"{words} The data do not exclude it (chi-squared {_worse(nearest.delta_chi2)}).",
-            nearest.delta_chi2,
-        )
-    return check.passed(
-        f"{words} The data exclude it (chi-squared {_worse(nearest.delta_chi2)}).",
-        nearest.delta_chi2,
-    )
+        return check.warned(f"{words}.", nearest.delta_chi2)
+    return check.passed(f"{words}; the data exclude it.", nearest.delta_chi2)
 
 
 CHECKS = (

@@ -99,10 +99,12 @@ def eclipse_shift(evidence: Evidence, window: EclipseWindow) -> tuple[float, flo
     """Shift in phase of the points of an eclipse against the model, and its error.
 
     First order: residual = -shift dF/dphase, weighted least squares; the slope is taken from the
-    model's own mean curve on a grid, band by band. The error carries the scatter where it is larger.
+    model's own mean curve on a grid, band by band. Points that the fit set aside count, since a shift
+    makes them. The error carries the scatter where it is larger.
     """
-    light = evidence.light
-    offset, within = evidence.inside(window)
+    light = evidence.offered
+    offset = window.offset(light.phase)
+    within = np.abs(offset) < window.outer
     slope = np.zeros(light.size)
     for place in range(len(evidence.bands)):
         chosen = np.flatnonzero(within & (light.band == place))

@@ -11,7 +11,7 @@ from shadowscale.data.velocities import Velocities
 from shadowscale.fit.solution import Solution, VelocityResult
 from shadowscale.judge.check import Check
 from shadowscale.judge.evidence import TINY, Bools, Evidence, LightRows
-from shadowscale.judge.finding import Finding
+from shadowscale.judge.finding import FAIL, WARN, Finding
 from shadowscale.judge.words import counted, listed, number, percent
 
 FAR_OFF = 25.0  # reduced chi-squared of a misfit of five times the errors
@@ -216,24 +216,37 @@ def outliers(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
         return check.failed("No point takes part in the fit.")
     share, name, gone = max(shares)
     words = f"{counted(gone, 'point')} of the {name} ({percent(share)}) set aside by the fit as outliers"
-    if share > 5 * (check.limit or 0.0):
+    limit, within = check.limit or 0.0, _in_eclipse(evidence, dropped)
+    if _crowded(evidence, within, int(dropped.sum())):
+        crowd = (
+            f"{within} of {counted(int(dropped.sum()), 'photometric outlier')} lie in eclipse: not bad points, but a "
+            "model that misses the shape or the place of the eclipses (an eccentric orbit, spots, a wrong period)."
+        )
+        return check.found(FAIL if share > limit else WARN, f"{words}; {crowd}", value=share)
+    if share > 5 * limit:
         return check.failed(
             f"{words}: that is no longer a few bad points, the model does not fit.", share
         )
-    if share > (check.limit or 0.0):
-        where = f", {_where(evidence, dropped)}" if name == "photometry" else ""
-        return check.warned(f"{words}{where}. Look at them before trusting the fit.", share)
+    if share > limit:
+        return check.warned(f"{words}. Look at them before trusting the fit.", share)
     return check.passed(f"{words}." if gone else "No point was set aside by the fit.", share)
 
 
-def _where(evidence: Evidence, dropped: Bools) -> str:
-    """How many of the dropped points lie in eclipse."""
-    phase = evidence.solution.light.phase[dropped]
-    phase = phase[np.isfinite(phase)]
+def _in_eclipse(evidence: Evidence, rows: Bools) -> int:
+    """How many of some rows of the photometry lie in eclipse."""
+    phase = evidence.solution.light.phase[rows]
     within = np.zeros(phase.size, dtype=bool)
     for window in evidence.windows:
         within |= np.abs(window.offset(phase)) < window.outer
-    return f"{int(within.sum())} of them in eclipse"
+    return int(within.sum())
+
+
+def _crowded(evidence: Evidence, within: int, whole: int) -> bool:
+    """Whether outliers lie in eclipse more often, by three sigma and five points, than points do."""
+    offered = evidence.photometry.used
+    share = _in_eclipse(evidence, offered) / max(int(offered.sum()), 1)
+    expected = share * whole
+    return within - expected > max(3 * sqrt(expected), 5.0)
 
 
 def _dropped_velocities(table: Velocities | None, solution: Solution) -> list[tuple[str, int, int]]:
