@@ -86,6 +86,7 @@ class ColumnSearch:
         self.table = table
         self.roles = roles
         self.given: dict[str, Guess] = {}
+        self.names_speak = False  # whether the name or unit of any column says what it is
         self.closed = {role for role, column in columns.items() if column == ""}
         for role, wanted in columns.items():
             if role in SETTINGS:
@@ -170,14 +171,23 @@ def give_time(search: ColumnSearch) -> None:
         found = search.named(f"({pattern}){_OFFSET}")
         if found and search.open("time"):
             search.give("time", found[0], _time_reason(search, found[0], rank))
+            search.names_speak = True
             return
     by_unit = [index for index in search.numeric() if _TIME_UNITS.match(search.unit(index))]
     search.give("time", by_unit[0] if by_unit else None, "the unit is one of time")
-    looks = time_column(search.table, [k for k in search.numeric() if not _is_phase(search, k)])
+    search.names_speak = search.has("time")
+    unfolded = [index for index in search.numeric() if not _is_phase(search, index)]
+    looks = time_column(search.table, unfolded, any_column=not search.table.named)
     if looks is not None:
         search.give("time", *looks)
     if not search.has("time"):
         raise ColumnError(_no_time(search))
+
+
+def role_names_speak(search: ColumnSearch) -> bool:
+    """Whether the name of any column is one of those that are known."""
+    patterns = _ROLE_NAMES.values()
+    return search.names_speak or any(search.named(one, numeric=False) for one in patterns)
 
 
 def _is_phase(search: ColumnSearch, index: int) -> bool:

@@ -11,6 +11,7 @@ from shadowscale.data.columns import (
     ColumnSearch,
     Guess,
     give_time,
+    role_names_speak,
 )
 from shadowscale.data.looks import light_by_look, uncertainty_by_look
 from shadowscale.data.raw_table import RawTable
@@ -135,7 +136,9 @@ def _give_light_otherwise(search: ColumnSearch) -> None:
         if found and search.open(role):
             _give_only(search, role, found, reason=f"the unit is one of {role}")
             return
-    raise ColumnError(search.missing("mag", "a magnitude or flux"))
+    if role_names_speak(search):
+        raise ColumnError(search.missing("mag", "a magnitude or flux"))
+    _give_by_place(search)
 
 
 def _short(name: str) -> str:

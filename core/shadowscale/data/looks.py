@@ -8,10 +8,11 @@ from shadowscale.data.photometry import Floats
 from shadowscale.data.raw_table import RawTable
 
 
-def time_column(table: RawTable, indices: list[int]) -> tuple[int, str] | None:
-    """The column that looks most like time, among `indices`; None if there is no column of numbers.
+def time_column(table: RawTable, indices: list[int], *, any_column: bool) -> tuple[int, str] | None:
+    """The column that looks most like time, among `indices`; None if none does.
 
-    Julian dates are known by their size; else the first column whose numbers mostly rise and differ.
+    Julian dates are known by their size; else the first column whose numbers mostly rise and do not
+    only count the rows; else, where `any_column`, the first column of numbers.
     """
     numeric = [index for index in indices if not table.columns[index].is_text]
     for index in numeric:
@@ -26,7 +27,7 @@ def time_column(table: RawTable, indices: list[int]) -> tuple[int, str] | None:
     for index in numeric:
         if _rises(table.columns[index].numbers) and not _counts(table.columns[index].numbers):
             return index, "the first column whose numbers rise"
-    return (numeric[0], "the first column of numbers") if numeric else None
+    return (numeric[0], "the first column of numbers") if any_column and numeric else None
 
 
 def _middle(numbers: Floats) -> float:

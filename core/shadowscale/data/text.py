@@ -127,11 +127,14 @@ def _head(lines: Lines, layout: Layout) -> Head:
         for index, line in enumerate(lines.content)
         if looks_like_data(layout.cells(line), layout.decimal_comma)
     )
-    above = [_names(lines.content[index], layout) for index in range(first)]
-    if first >= 2 and above[-1] and above[-2] and all(_UNITS.match(cell) for cell in above[-1]):
-        return Head(above[-2], above[-1], first, other=tuple(range(first - 2)))
-    if first and above[-1]:
-        return Head(above[-1], (), first, other=tuple(range(first - 1)))
+    for index in reversed(range(first)):
+        names = _names(lines.content[index], layout)
+        if not names:
+            continue
+        above = _names(lines.content[index - 1], layout) if index else ()
+        if above and all(_UNITS.match(cell) for cell in names):
+            return Head(above, names, index + 1, other=tuple(range(index - 1)))
+        return Head(names, (), index + 1, other=tuple(range(index)))
     return _commented_head(lines, layout, first)
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import csv
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 
@@ -105,10 +106,22 @@ def _cells(
     even = _even_cells(chunk, layout)
     if even is not None:
         return even, numbers
-    rows = [layout.cells(line) for line in chunk]
+    rows = _rows(chunk, layout)
     if set(map(len, rows)) != {layout.columns}:
         rows, numbers = _squared(path, rows, numbers, layout=layout, bad=bad)
     return list(zip(*rows)), numbers
+
+
+def _rows(chunk: list[str], layout: Layout) -> list[list[str]]:
+    """The cells of each line; quoted ones in one go where that gives a row a line."""
+    if layout.separator not in (BLANKS, MIXED) and any('"' in line for line in chunk):
+        try:
+            rows = list(csv.reader(chunk, delimiter=layout.separator, skipinitialspace=True))
+        except csv.Error:
+            rows = []
+        if len(rows) == len(chunk) and set(map(len, rows)) == {layout.columns}:
+            return rows
+    return [layout.cells(line) for line in chunk]
 
 
 def _even_cells(chunk: list[str], layout: Layout) -> Cells | None:
@@ -190,8 +203,10 @@ def _fast_numbers(cells: Sequence[str], decimal_comma: bool) -> Floats | None:
     joined = "".join(cells)
     if "_" in joined or (decimal_comma and "." in joined):  # float() takes 1_000
         return None
-    source = (cell.replace(",", ".") for cell in cells) if decimal_comma else cells
-    try:
-        return np.fromiter(map(float, source), np.float64, len(cells))
-    except ValueError:
-        return None
+    source = [cell.replace(",", ".") for cell in cells] if decimal_comma else cells
+    for filled in (source, [cell or "nan" for cell in source]):
+        try:
+            return np.fromiter(map(float, filled), np.float64, len(cells))
+        except ValueError:
+            continue
+    return None

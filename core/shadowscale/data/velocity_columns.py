@@ -4,7 +4,14 @@ from __future__ import annotations
 
 import re
 
-from shadowscale.data.columns import NOTHING_CHOSEN, Chosen, ColumnSearch, Guess, give_time
+from shadowscale.data.columns import (
+    NOTHING_CHOSEN,
+    Chosen,
+    ColumnSearch,
+    Guess,
+    give_time,
+    role_names_speak,
+)
 from shadowscale.data.looks import uncertainty_by_look
 from shadowscale.data.raw_table import RawTable
 from shadowscale.errors import ColumnError
@@ -41,6 +48,8 @@ def velocity_columns(table: RawTable, columns: Chosen = NOTHING_CHOSEN) -> tuple
         _give_star(search, star)
     if not search.has("rv1", "rv2"):
         _give_by_unit(search)
+    if not search.has("rv1", "rv2") and not role_names_speak(search):
+        _give_by_place(search)
     if not search.has("rv1", "rv2"):
         raise ColumnError(search.missing("rv1", "a radial velocity (such as rv1)"))
     search.give_by_name("source")

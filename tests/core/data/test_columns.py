@@ -192,3 +192,32 @@ def test_the_only_column_with_an_error_is_preferred(tmp_path: Path) -> None:
 def test_no_velocity(tmp_path: Path) -> None:
     with pytest.raises(ColumnError, match=r"a radial velocity \(such as rv1\), found none"):
         velocity_columns(table(tmp_path, "HJD,mag,err", "tme"))
+
+
+@pytest.mark.parametrize("header", ["col1,col2,col3", "eins,zwei,drei", ",data,"])
+def test_names_that_say_nothing_leave_it_to_place_and_look(header: str, tmp_path: Path) -> None:
+    guesses = photometry_columns(table(tmp_path, header, "tme"))
+    assert [(g.role, g.index) for g in guesses] == [("time", 0), ("mag", 1), ("error", 2)]
+    guesses = velocity_columns(table(tmp_path, header, "tvw"))
+    assert [(g.role, g.index) for g in guesses] == [("time", 0), ("rv1", 1), ("rv1_err", 2)]
+
+
+def test_a_folded_light_curve_is_refused(tmp_path: Path) -> None:
+    with pytest.raises(
+        ColumnError, match=r"found phases \('phase'\); give the unfolded light curve"
+    ):
+        photometry_columns(table(tmp_path, "phase,mag", "xm"))
+    guesses = photometry_columns(table(tmp_path, "phase,mag", "xm"), {"time": "phase"})
+    assert guesses[0].column == "phase"
+
+
+def test_calendar_dates_are_refused_with_advice(tmp_path: Path) -> None:
+    lines = [
+        "date,mag,err",
+        *(f"2021-03-04T21:{k:02d}:00,{m:.3f},0.01" for k, m in enumerate(MAGNITUDE)),
+    ]
+    raw = read_table(written(tmp_path, "a.csv", lines))
+    with pytest.raises(
+        ColumnError, match="found dates such as '2021-03-04T21:00:00'; turn the dates"
+    ):
+        photometry_columns(raw)

@@ -43,6 +43,8 @@ def _variants() -> dict[str, str | bytes]:
         "commented header": "\n".join(["# HJD mag err", *blank]),
         "commented header with commas": "\n".join(["#HJD,mag,err", *lines]),
         "units below the header": "\n".join([head, "d,mag,mag", *lines]),
+        "columns named in a comment": "\n".join(["# Columns: HJD, mag, err", *blank]),
+        "a word after the header": "\n".join([head, "cloud", *lines]),
         "blank lines": "\n\n".join([head, *lines]) + "\n\n\n",
         "comments between": "\n".join([head, *lines[:20], "# clouds", *lines[20:]]),
         "comments behind": "\n".join([head, *(line + "  # ok" for line in lines)]),
@@ -72,8 +74,10 @@ def test_every_way_of_writing_gives_the_same_numbers(name: str, tmp_path: Path) 
     np.testing.assert_allclose(table.value_error, error, rtol=1e-12)
     assert table.magnitudes
     assert table.time_scale == "HJD"
-    assert table.unreadable == ()
-    assert table.files[0].rows == len(time) == table.files[0].used
+    bad = 1 if name == "a word after the header" else 0
+    assert len(table.unreadable) == bad
+    assert table.files[0].rows == len(time) + bad
+    assert table.files[0].used == len(time)
 
 
 def test_line_numbers_are_those_of_the_file(tmp_path: Path) -> None:
@@ -153,6 +157,14 @@ def test_text_above_the_header_is_listed(tmp_path: Path) -> None:
     (bad,) = table.unreadable
     assert (bad.line, bad.reason) == (1, "text above the table")
     assert table.files[0].rows == 61
+
+
+def test_text_above_the_header_may_speak_of_the_time(tmp_path: Path) -> None:
+    lines = [f"{float(line[:14]) - 2450000:.6f}{line[14:]}" for line in rows()]
+    text = ["All times are HJD - 2450000 (UTC)", "time,mag,err", *lines]
+    table = read_photometry(written(tmp_path, "a.csv", text))
+    np.testing.assert_allclose(table.time, light()[0], rtol=0, atol=1e-6)
+    assert table.time_scale == "HJD_UTC"
 
 
 @pytest.mark.parametrize(
