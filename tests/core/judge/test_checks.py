@@ -130,7 +130,7 @@ SPOILT: dict[str, tuple[Callable[[], Case], str, str]] = {
     "absent": (
         lambda: with_solution(GOOD, absent={"M1": "needs both velocity curves"}),
         WARN,
-        "needs both velocity curves",
+        "Needs both velocity curves",
     ),
     "fill-out": (lambda: with_values(GOOD, radius_sum=0.70), FAIL, "semi-detached or in contact"),
     "oblateness": (lambda: with_values(GOOD, radius_sum=0.48), FAIL, "too much for two spheres"),

@@ -593,3 +593,12 @@ def test_outliers_that_crowd_in_eclipse_accuse_the_model() -> None:
     assert few.finding("outliers").verdict == WARN
     assert many.finding("outliers").verdict == FAIL
     assert "misses the shape or the place" in many.finding("outliers").words
+
+
+def test_ellipsoidal_variation_that_moves_nothing_is_no_trouble() -> None:
+    case = with_sigmas(with_system(GOOD, effects={}), r1=0.01, r2=0.01)
+
+    finding = case.finding("ellipsoidal variation")
+
+    assert finding.verdict == PASS
+    assert "within their errors" in finding.words

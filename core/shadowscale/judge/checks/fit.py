@@ -7,7 +7,7 @@ from math import inf, isfinite
 from shadowscale.judge.check import Check
 from shadowscale.judge.evidence import Evidence
 from shadowscale.judge.finding import PASS, WARN, Finding
-from shadowscale.judge.words import counted, listed, number
+from shadowscale.judge.words import counted, listed, number, sentence
 from shadowscale.quantities import QUANTITIES, parse_key, quantity_of
 
 AT_BOUND = 1e-6  # of the bound, or of 1 where it is smaller
@@ -109,7 +109,7 @@ def absent_quantities(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
             None,
             None,
             WARN if _expected(evidence, name) else PASS,
-            f"No {_meaning(name)}: {reason.rstrip('.')}.",
+            f"No value for the {_meaning(name)}. {sentence(reason)}",
             check.source,
         )
         for name, reason in evidence.solution.absent.items()

@@ -12,7 +12,7 @@ from shadowscale.judge.evidence import TINY, Evidence
 from shadowscale.judge.finding import Finding
 from shadowscale.judge.words import listed, number, percent
 from shadowscale.light.laws import LAWS
-from shadowscale.quantities import key, parse_key
+from shadowscale.quantities import key, parse_key, written
 
 SURE = 3.0  # sigmas
 HEIGHTS = np.linspace(0.0, 1.0, 101)  # mu, limb to centre
@@ -42,17 +42,18 @@ def third_light(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
         )
     if error > 0 and value / error < -(check.limit or SURE):
         return check.failed(
-            f"Third light in band {worst} is {percent(value)} +- {percent(error)}: negative by {number(-value / error)} sigma. "
+            f"Third light in band {worst} is {_third_words(value, error)}: negative by {number(-value / error)} sigma. "
             "The eclipses are deeper than two stars allow: too much sky or neighbour's light was taken off, or the model is wrong.",
             value / error,
         )
-    shown = listed([_third_words(band, *pair) for band, pair in found.items()])
+    shown = listed([f"{_third_words(*pair)} in {band}" for band, pair in found.items()])
     return check.passed(f"Third light: {shown}.", depths[worst])
 
 
-def _third_words(band: str, value: float, error: float) -> str:
-    spread = f" +- {percent(error)}" if error > 0 else " (held)"
-    return f"{percent(value)}{spread} in {band}"
+def _third_words(value: float, error: float) -> str:
+    if not error > 0:
+        return f"{percent(value)} (held)"
+    return f"{written(100 * value, 100 * error, 100 * error)} %"
 
 
 def third_light_and_inclination(evidence: Evidence, check: Check) -> tuple[Finding, ...]:

@@ -12,6 +12,7 @@ from shadowscale.judge.evidence import Evidence
 from shadowscale.judge.finding import Finding
 from shadowscale.judge.windows import EclipseWindow
 from shadowscale.judge.words import number, sentence
+from shadowscale.quantities import written
 
 SURE = 3.0  # sigmas
 NODES = 41
@@ -81,12 +82,12 @@ def place_of_eclipses(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     worst = max(found, key=lambda name: found[name][0])
     away, shift, error = found[worst]
     words = (
-        f"The {worst} eclipse lies {number(abs(shift))} +- {number(error)} minutes "
+        f"The {worst} eclipse lies {written(abs(shift), error, error)} minutes "
         f"{'later' if shift > 0 else 'earlier'} than the model has it"
     )
     if away > (check.limit or SURE):
         return check.warned(
-            f"{words} ({number(away)} sigma). A circular orbit, a wrong clock of some nights, a changing period or "
+            f"{words} ({number(away)} sigma). An orbit held circular that is not, a wrong clock of some nights, a changing period or "
             "spots can do that; try an eccentric orbit and look at O-C.",
             away,
         )

@@ -13,6 +13,7 @@ from shadowscale.judge.evidence import TINY, Evidence
 from shadowscale.judge.finding import Finding
 from shadowscale.judge.words import listed, number, percent
 from shadowscale.light.proximity import ellipsoidal_amplitude, gravity_darkening
+from shadowscale.quantities import written
 
 FULL = 0.95  # fill-out from which a lobe may as well be full
 USUAL_RATIOS = (0.2, 5.0)  # mass ratios that are tried where none was measured
@@ -176,16 +177,40 @@ def ellipsoidal(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     worst = max(found, key=lambda band: found[band][0])
     away, predicted, seen, error = found[worst]
     words = f"The ellipsoidal variation, off in this model, is expected at {percent(predicted)} in band {worst}"
-    if away > (check.limit or 0.0):
-        return check.warned(
-            f"{words}, {number(away)} times what the points outside eclipse can show (their residuals hold "
-            f"{number(100 * seen)} +- {percent(error)}). Switch the effect on (predicted or fitted) and compare.",
+    if away <= (check.limit or 0.0):
+        return check.passed(
+            f"{words}, too little for the points outside eclipse to show; leaving it out does no harm.",
             away,
         )
-    return check.passed(
-        f"{words}, too little for the points outside eclipse to show; leaving it out does no harm.",
+    shift, room = _shift_of_radii(evidence, predicted), _closest_radius(evidence)
+    if shift < room / 2:
+        return check.passed(
+            f"{words}. The data could show it, but it would move the radii by no more than about {percent(shift)}, "
+            f"within their errors.",
+            away,
+        )
+    return check.warned(
+        f"{words}, {number(away)} times what the points outside eclipse can show (their residuals hold "
+        f"{written(100 * seen, 100 * error, 100 * error)} %). Switch the effect on (predicted or fitted) and compare.",
         away,
     )
+
+
+def _shift_of_radii(evidence: Evidence, amplitude: float) -> float:
+    """Relative change of the radii where a depth is wrong by the amplitude: half that of the depth."""
+    model = evidence.light.model[evidence.inside(evidence.windows[0])[1]]
+    depth = 1 - float(model.min()) if model.size else 0.0
+    return amplitude / (2 * depth) if depth > 0 else inf
+
+
+def _closest_radius(evidence: Evidence) -> float:
+    """The smaller relative error of the two radii; 0 where there is none."""
+    found = [
+        evidence.sigma(f"r{star}") / radius
+        for star, radius in zip((1, 2), evidence.radii)
+        if radius > 0 and evidence.sigma(f"r{star}") > 0
+    ]
+    return min(found, default=0.0)
 
 
 def predicted_amplitude(evidence: Evidence, band: str) -> float:
@@ -262,6 +287,7 @@ CHECKS = (
         "Would the data show the ellipsoidal variation that the model leaves out?",
         ellipsoidal,
         3.0,
-        "amplitude by Morris & Naftilan 1993, ApJ 419, 344; three sigma of a wave through the points outside eclipse (common practice)",
+        "amplitude by Morris & Naftilan 1993, ApJ 419, 344; three sigma of a wave through the points outside eclipse (common practice), "
+        "unless it moves the radii by less than half their error (half the amplitude over the depth)",
     ),
 )

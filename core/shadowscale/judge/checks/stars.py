@@ -5,6 +5,7 @@ from __future__ import annotations
 from math import exp, hypot, isfinite, log, log10, nan
 
 from shadowscale.constants import DENSITY_SUN, LOGG_SUN
+from shadowscale.fit.solution import ASSUMED, FIXED
 from shadowscale.judge.check import Check
 from shadowscale.judge.evidence import Evidence
 from shadowscale.judge.finding import Finding
@@ -25,7 +26,9 @@ def masses(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     found = {name: value for name, value in found.items() if isfinite(value)}
     if not found:
         return check.silent("masses need velocities of both stars, or an assumed mass of one.")
-    shown = listed([f"{name} = {number(value)}" for name, value in found.items()])
+    shown = listed(
+        [f"{name} = {number(value)}{_assumed(evidence, name)}" for name, value in found.items()]
+    )
     bad = {
         name: value
         for name, value in found.items()
@@ -48,6 +51,11 @@ def masses(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
         value,
         limit=LEAST_MASS if value < LEAST_MASS else GREATEST_MASS,
     )
+
+
+def _assumed(evidence: Evidence, name: str) -> str:
+    estimate = evidence.solution.estimates.get(name)
+    return " (assumed)" if estimate is not None and estimate.how in (ASSUMED, FIXED) else ""
 
 
 def _beyond(value: float, sigma: float, lowest: float, highest: float) -> bool:
