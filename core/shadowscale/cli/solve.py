@@ -46,8 +46,8 @@ def run(arguments: Namespace) -> None:
     from shadowscale.jobs.solve import solve_session
     from shadowscale.jobs.words import summary
 
-    folder = Path(output_folder(arguments))
     session = _session(arguments)
+    folder = Path(output_folder(arguments))
     check_targets(session, folder, result_files(session), overwrite=arguments.overwrite)
     with bar(quiet=arguments.quiet or arguments.json_errors) as progress:
         solved = solve_session(session, progress=progress)

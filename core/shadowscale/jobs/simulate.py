@@ -173,8 +173,7 @@ def _times(run: Run, night: int) -> Floats:
     kept = np.ones(count, dtype=bool)
     for low, high in run.gaps:
         kept &= (hours < low) | (hours > high)
-    times: Floats = run.start + night * run.every + hours[kept] * HOUR
-    return times
+    return np.asarray(run.start + night * run.every + hours[kept] * HOUR, dtype=np.float64)
 
 
 def _light(
