@@ -20,7 +20,6 @@ from shadowscale.data.rows import (
     Bools,
     Reasons,
     clock_of,
-    far_rows,
     middle,
     notes_of,
     split_rows,
@@ -68,8 +67,8 @@ def light_part(table: RawTable, columns: Chosen, band: str | None, reasons: Reas
     roles = {guess.role: guess for guess in guesses}
     light = roles.get("flux") or roles["mag"]
     numeric = [roles[role] for role in ("time", light.role, "error") if role in roles]
-    keep, bad = split_rows(table, numeric, roles["time"])
     clock = clock_of(table, roles["time"], columns)
+    keep, bad = split_rows(table, numeric, time=roles["time"], clock=clock)
 
     count = int(np.count_nonzero(keep))
 
@@ -205,7 +204,6 @@ def _band_word(column: str) -> str:
 
 def _set_aside(part: LightPart, reasons: Reasons) -> None:
     value = part.linear
-    far = far_rows(part.table.path, part.time, part.line)
     zero = value == 0 if not part.magnitudes else np.zeros(len(value), dtype=bool)
     sentinel = np.abs(value) >= NO_MEASUREMENT if part.magnitudes else np.zeros(len(value), bool)
     for rows, reason in (
@@ -213,7 +211,6 @@ def _set_aside(part: LightPart, reasons: Reasons) -> None:
         (np.isinf(value), "the value is not finite"),
         (sentinel, "the magnitude stands for no measurement"),
         (zero, "the flux is exactly zero"),
-        (far, "the time is far from all others"),
     ):
         _mark(part, rows, reason, reasons)
 

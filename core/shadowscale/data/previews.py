@@ -105,10 +105,9 @@ def preview(
     bands: tuple[str, ...] = ()
     unreadable = table.unreadable
     if guesses:
-        numeric = [g for g in guesses if g.role not in ("band", "source", "quality")]
-        keep, bad = split_rows(table, numeric, roles["time"])
-        unreadable = (*unreadable, *bad)
         clock = clock_of(table, roles["time"], columns)
+        keep, bad, problems = _split(table, roles, clock)
+        unreadable = (*unreadable, *bad)
         bands = _bands(table, keep, roles, band) if kind == PHOTOMETRY else ()
     count = table.rows if table.estimated_rows is None else table.estimated_rows
     return Preview(
@@ -172,6 +171,17 @@ def _guesses(
         return (), error.problems
     except UsageError as error:
         return (), (Problem(table.path, "a known role", str(error)),)
+
+
+def _split(
+    table: RawTable, roles: Mapping[str, Guess], clock: Clock
+) -> tuple[Bools, list[UnreadableRow], tuple[Problem, ...]]:
+    words = ("band", "source", "quality", "airmass", "exposure")
+    numeric = [guess for role, guess in roles.items() if role not in words]
+    try:
+        return *split_rows(table, numeric, time=roles["time"], clock=clock), ()
+    except InputError as error:
+        return np.ones(len(table.line), dtype=bool), [], error.problems
 
 
 def _bands(

@@ -93,27 +93,6 @@ def _expected_number(column: str, cell: str) -> str:
     return reason
 
 
-def split_rows(
-    table: RawTable, numeric: Sequence[Guess], time: Guess
-) -> tuple[Bools, list[UnreadableRow]]:
-    """Which rows have a time and no words among their numbers, and the others with their reason."""
-    times = table.columns[time.index].numbers
-    reasons = odd_rows(table, numeric)
-    for row in np.flatnonzero(~np.isfinite(times)):
-        reasons.setdefault(int(row), f"column {time.column!r}: no time")
-    keep = np.ones(len(table.line), dtype=bool)
-    keep[list(reasons)] = False
-    bad = [
-        UnreadableRow(table.path, int(table.line[row]), reason, _row_text(table, row))
-        for row, reason in sorted(reasons.items())
-    ]
-    return keep, bad
-
-
-def _row_text(table: RawTable, row: int) -> str:
-    return " ".join(column.cell(row) for column in table.columns[:20])[:200]
-
-
 def clock_of(table: RawTable, time: Guess, columns: Chosen) -> Clock:
     """The clock of a table's times."""
     column = table.columns[time.index]
@@ -127,27 +106,52 @@ def clock_of(table: RawTable, time: Guess, columns: Chosen) -> Clock:
     )
 
 
-def far_rows(path: str, time: Floats, line: NDArray[np.int64]) -> Bools:
-    """Rows whose time is far from all others; many of them, an offset away, mean two clocks.
+def split_rows(
+    table: RawTable, numeric: Sequence[Guess], *, time: Guess, clock: Clock
+) -> tuple[Bools, list[UnreadableRow]]:
+    """Which rows have a time and no words among their numbers, and the others with their reason.
 
     Raises
     ------
     TimeScaleError
-        If more than two rows and one in twenty are that far.
+        If two kinds of Julian dates are mixed in the file.
     """
-    if not len(time):
-        return np.zeros(0, dtype=bool)
-    distance = np.abs(time - np.median(time))
-    far = distance > REACH
+    times = clock.full(table.columns[time.index].numbers)
+    reasons = odd_rows(table, numeric)
+    for row in np.flatnonzero(~np.isfinite(times)):
+        reasons.setdefault(int(row), f"column {time.column!r}: no time")
+    for row in np.flatnonzero(_far_rows(table, times)):
+        reasons.setdefault(int(row), f"column {time.column!r}: the time is far from all others")
+    keep = np.ones(len(table.line), dtype=bool)
+    keep[list(reasons)] = False
+    bad = [
+        UnreadableRow(table.path, int(table.line[row]), reason, _row_text(table, row))
+        for row, reason in sorted(reasons.items())
+    ]
+    return keep, bad
+
+
+def _far_rows(table: RawTable, times: Floats) -> Bools:
+    """Rows whose time is far from all others; many of them, an offset away, mean two clocks."""
+    finite = times[np.isfinite(times)]
+    if not len(finite):
+        return np.zeros(len(times), dtype=bool)
+    distance = np.abs(times - np.median(finite))
+    far = np.isfinite(times) & (distance > REACH)
     mixed = far & (distance < LARGEST_OFFSET)
-    if np.count_nonzero(mixed) > max(2, 0.05 * len(time)):
+    if np.count_nonzero(mixed) > max(2, 0.05 * len(finite)):
         row = int(np.flatnonzero(mixed)[0])
-        expected = f"times near {np.median(time):.6g}, as in other rows"
+        expected = f"times near {np.median(finite):.6g}, as in other rows"
         help = "two kinds of Julian dates (MJD, JD) may be mixed"
+        line = int(table.line[row])
         raise TimeScaleError(
-            Problem(path, expected, f"{time[row]:.6g}", line=int(line[row]), help=help)
+            Problem(table.path, expected, f"{times[row]:.6g}", line=line, help=help)
         )
     return far
+
+
+def _row_text(table: RawTable, row: int) -> str:
+    return " ".join(column.cell(row) for column in table.columns[:20])[:200]
 
 
 def input_file(table: RawTable, guesses: Sequence[Guess], clock: Clock, used: int) -> InputFile:

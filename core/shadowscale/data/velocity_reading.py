@@ -18,7 +18,6 @@ from shadowscale.data.rows import (
     Bools,
     Reasons,
     clock_of,
-    far_rows,
     input_file,
     notes_of,
     path_list,
@@ -94,7 +93,8 @@ def _part(table: RawTable, columns: Chosen, reasons: Reasons) -> _Part:
     guesses = velocity_columns(table, columns)
     roles = {guess.role: guess for guess in guesses}
     numeric = [guess for guess in guesses if guess.role != "source"]
-    keep, bad = split_rows(table, numeric, roles["time"])
+    clock = clock_of(table, roles["time"], columns)
+    keep, bad = split_rows(table, numeric, time=roles["time"], clock=clock)
     count = int(np.count_nonzero(keep))
 
     def numbers(role: str) -> Floats:
@@ -102,7 +102,6 @@ def _part(table: RawTable, columns: Chosen, reasons: Reasons) -> _Part:
             return np.full(count, np.nan)
         return np.asarray(table.columns[roles[role].index].numbers[keep])
 
-    clock = clock_of(table, roles["time"], columns)
     part = _Part(
         table=table,
         guesses=guesses,
@@ -178,7 +177,6 @@ def _set_sources(part: _Part, guess: Guess | None, keep: Bools) -> None:
 
 
 def _set_aside(part: _Part, reasons: Reasons) -> None:
-    far = far_rows(part.table.path, part.time, part.line)
     no_errors = not any(np.any(error > 0) for error in part.error)
     if no_errors:
         part.from_scatter = True
@@ -191,7 +189,6 @@ def _set_aside(part: _Part, reasons: Reasons) -> None:
         for rows, reason in (
             (missing, NO_MEASUREMENT),
             (np.isinf(velocity), "the velocity is not finite"),
-            (far, "the time is far from all others"),
             (~(np.isfinite(error) & (error > 0)), "the error is missing, zero or negative"),
         ):
             if np.any(rows & (why == 0)):

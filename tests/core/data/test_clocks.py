@@ -169,10 +169,12 @@ def test_two_zero_points_in_one_file_are_refused(tmp_path: Path) -> None:
         read_photometry(written(tmp_path, "a.txt", lines))
 
 
-def test_one_far_time_is_set_aside(tmp_path: Path) -> None:
+def test_one_far_time_is_listed(tmp_path: Path) -> None:
     time, magnitude, _ = light(60)
     time[10] = 0.0
     lines = [f"{t:.6f} {m:.4f}" for t, m in zip(time, magnitude)]
     table = read_photometry(written(tmp_path, "a.txt", lines))
     assert table.files[0].used == 59
-    assert table.reasons[table.why[0]] == "the time is far from all others"
+    assert [(row.line, row.reason) for row in table.unreadable] == [
+        (11, "column 'column 1': the time is far from all others")
+    ]

@@ -46,6 +46,12 @@ def test_problems_are_shown_and_the_user_settles_them(tmp_path: Path) -> None:
     assert "expected one of time, mag" in str(wrong.problems[0])
 
 
+def test_two_clocks_in_one_file_are_a_problem(tmp_path: Path) -> None:
+    lines = [f"{2459000 - 2400000.5 * (k % 2)} 11.2" for k in range(30)]
+    seen = preview(written(tmp_path, "a.txt", lines))
+    assert "two kinds of Julian dates" in str(seen.problems[0])
+
+
 def test_a_long_file_is_looked_at_in_part(tmp_path: Path) -> None:
     lines = [f"{2459000 + k * 1e-3:.4f},{1 + (k % 7) * 1e-3:.4f},0.001" for k in range(60_000)]
     path = written(tmp_path, "a.csv", ["BJD,flux,err", *lines])
