@@ -258,7 +258,7 @@ def arc_power(
             dphi = 2.0 * _WEIGHT[i]
         r2 = gap2 + four * s
         if r2 > 1e-3:
-            log2 = math.log(mu2)
+            log2 = math.log(max(mu2, 1e-300))
             g = math.sqrt(mu2) if power == 1.0 else math.exp(half * log2)
             rest = (1.0 - g) / r2
         else:

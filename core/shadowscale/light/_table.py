@@ -256,7 +256,7 @@ def read_table_value(table: Floats, p: float, d: float) -> float:
         return -float(row)
     a = table[row]
     value = a[0] + t * (a[1] + t * (a[2] + t * (a[3] + t * (a[4] + t * a[5]))))
-    return min(1.0, max(0.0, value))
+    return float(min(1.0, max(0.0, value)))
 
 
 @njit(cache=True, nogil=True, error_model="numpy")
