@@ -19,14 +19,12 @@ from shadowscale.fit.solution import (
     Solution,
 )
 from shadowscale.geometry.contacts import ContactSolution
-from shadowscale.judge.finding import PASS, WARN, Finding
+from shadowscale.judge.finding import PASS, Finding
 from shadowscale.light.laws import LAWS
 from shadowscale.quantities import BAND, QUANTITIES, SOURCE, SYSTEM, Quantity, key, quantity_of
 
 LIBRARIES = ("numpy", "scipy", "numba", "astropy")
-# What needs something beside light and velocities: its absence is ordinary, not a warning.
-OPTIONAL = ("teff1", "teff2", "L1", "L2", "Mbol1", "Mbol2", "distance")
-ABSENT = "absent"
+ABSENT = "absent: "
 
 
 @dataclass(frozen=True)
@@ -79,7 +77,7 @@ class Sheet:
     correlation_names, correlations
         Of the fitted and the main derived quantities.
     audit : tuple of Finding
-        The checks, then one line for each quantity that the data cannot give.
+        The checks, and one line for each quantity that the data cannot give.
     outliers : mapping of reason to number of rows
         Rows of all tables that do not take part.
     """
@@ -141,7 +139,7 @@ def make_sheet(
         correlations=tuple(tuple(map(float, row)) for row in solution.correlations),
         fit=solution.fit,
         alternatives=solution.alternatives,
-        audit=(*audit, *_absences(solution)),
+        audit=(*audit, *_absences(solution, audit)),
         contact=solution.contact,
         decisions=solution.decisions,
         notes=_notes(solution, photometry, velocities),
@@ -198,21 +196,16 @@ def _band_sheet(solution: Solution, band: str) -> BandSheet:
     return BandSheet(_entries(solution, BAND, band), law, limb, rms)
 
 
-def _absences(solution: Solution) -> Iterator[Finding]:
-    """One line for each quantity of the register that the solution does not give."""
-    expected = [name for name, quantity in QUANTITIES.items() if quantity.scope == SYSTEM]
-    reasons = dict(solution.absent)
-    for name in expected:
-        if name not in solution.estimates:
-            reasons.setdefault(name, "this solution does not give it")
-    for name in sorted(reasons, key=lambda text: _rank(text, expected)):
-        verdict = PASS if name in OPTIONAL else WARN
-        words = f"{name} is not given: {reasons[name]}"
-        yield Finding(f"{ABSENT} {name}", None, None, verdict, words, "what the data can give")
-
-
-def _rank(name: str, expected: list[str]) -> tuple[int, str]:
-    return (expected.index(name) if name in expected else len(expected), name)
+def _absences(solution: Solution, audit: tuple[Finding, ...]) -> Iterator[Finding]:
+    """A line for each quantity that is neither given nor told of by the audit."""
+    told = {finding.check for finding in audit}
+    for name, quantity in QUANTITIES.items():
+        check = f"{ABSENT}{name}"
+        if quantity.scope != SYSTEM or name in solution.estimates or check in told:
+            continue
+        reason = solution.absent.get(name, "this solution does not give it")
+        words = f"{name} is not given: {reason}."
+        yield Finding(check, None, None, PASS, words, "what the data can give")
 
 
 def _inputs(

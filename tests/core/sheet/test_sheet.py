@@ -13,6 +13,7 @@ import pytest
 
 from made_up import made_up_findings, made_up_session
 from shadowscale.fit.solution import DERIVED, Estimate
+from shadowscale.judge.finding import PASS, Finding
 from shadowscale.quantities import QUANTITIES, SYSTEM
 from shadowscale.sheet import RENDERINGS, as_csv, as_ecsv, as_json, as_tex, make_sheet
 from shadowscale.sheet.as_json import schema
@@ -97,18 +98,22 @@ def test_the_json_sheet_follows_its_schema(document):
 
 def test_every_promised_name_is_given_or_its_absence_told(document):
     checks = [item["check"] for item in document["audit"]]
-    told = {name.removeprefix("absent ") for name in checks if name.startswith("absent ")}
+    told = {name.removeprefix("absent: ") for name in checks if name.startswith("absent: ")}
     for name in NAMES:
         assert (name in document["quantities"]) != (name in told), name
     assert {name for name, item in QUANTITIES.items() if item.scope == SYSTEM} == set(NAMES)
 
 
 def test_an_absence_says_why(document):
-    (line,) = [item for item in document["audit"] if item["check"] == "absent distance"]
+    (line,) = [item for item in document["audit"] if item["check"] == "absent: distance"]
     assert line["words"].startswith("distance is not given: needs a magnitude")
     assert (line["value"], line["verdict"]) == (None, "pass")
-    (line,) = [item for item in document["audit"] if item["check"] == "absent logg1"]
-    assert line["verdict"] == "warn"
+
+
+def test_what_the_audit_told_is_not_told_again(session):
+    mine = Finding("absent: distance", None, None, PASS, "no distance", "x")
+    sheet = make_sheet(session.solution, session.photometry, audit=(mine,))
+    assert [item for item in sheet.audit if item.check == "absent: distance"] == [mine]
 
 
 def test_a_number_has_its_unit_error_and_origin(document, session):
