@@ -54,7 +54,8 @@ class EclipseWindow:
 
     def offset(self, phase: Floats) -> Floats:
         """Phase from the middle, -0.5...0.5."""
-        return np.mod(phase - self.middle + 0.5, 1.0) - 0.5
+        away = phase - self.middle
+        return np.asarray(away - np.rint(away))
 
 
 def eclipse_windows(
