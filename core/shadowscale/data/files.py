@@ -30,19 +30,19 @@ _FOREIGN = {
 class FileBytes:
     """The content of a file, decompressed, with the checksum of the file itself.
 
-    `size` is the size of the whole content where only its head was read, else that of `content`;
-    None where it cannot be known without reading all.
+    `size` is that of the whole content: more than is in `content` where only the head was read,
+    and then an estimate for compressed files. The checksum is empty where only the head was read.
     """
 
     path: str
     content: bytes
     sha256: str
-    size: int | None = None
+    size: int
 
     @property
     def partial(self) -> bool:
         """Whether only the head was read."""
-        return self.size is None or self.size > len(self.content)
+        return self.size > len(self.content)
 
 
 @dataclass(frozen=True)
@@ -111,14 +111,18 @@ def file_bytes(path: FilePath, limit: int = WHOLE) -> FileBytes:
     """
     name = fspath(path)
     raw = _raw_bytes(name, limit)
-    size = _size(name)
     if not raw:
         raise TableError(Problem(name, "a table", "an empty file"))
-    checksum = sha256(raw).hexdigest() if len(raw) >= size else ""
-    if raw.startswith(b"\x1f\x8b"):
-        content = _unpacked(name, raw, partial=len(raw) < size)
-        return FileBytes(name, content, checksum, None if len(raw) < size else len(content))
-    return FileBytes(name, raw, checksum, max(size, len(raw)))
+    size = max(_size(name), len(raw))
+    whole = len(raw) == size
+    packed = raw.startswith(b"\x1f\x8b")
+    content = _unpacked(name, raw, partial=not whole) if packed else raw
+    return FileBytes(
+        path=name,
+        content=content,
+        sha256=sha256(raw).hexdigest() if whole else "",
+        size=len(content) if whole else max(len(content) * size // len(raw), len(content) + 1),
+    )
 
 
 def read_table(path: FilePath) -> RawTable:

@@ -61,8 +61,8 @@ def read_photometry(
         If the files' times do not go together.
     """
     names = path_list(paths)
-    tables = read_all(names)
     chosen = per_file(columns, len(names))
+    tables = read_all(names, chosen)
     bands = (band,) * len(names) if band is None or isinstance(band, str) else tuple(band)
     if len(bands) != len(names):
         raise ValueError(f"band: {len(names)} files but {len(bands)} bands")

@@ -50,20 +50,25 @@ def per_file(columns: Chosen | Sequence[Chosen], number: int) -> tuple[Chosen, .
     return tuple(columns)
 
 
-def read_all(paths: tuple[str, ...]) -> list[RawTable]:
-    """All files; the problems of all are gathered, and a file given twice is one of them."""
+def read_all(paths: tuple[str, ...], chosen: tuple[Chosen, ...]) -> list[RawTable]:
+    """All files; the problems of all are gathered.
+
+    A file given twice is one of them, unless other columns are wanted from it.
+    """
     tables: list[RawTable] = []
     problems: list[Problem] = []
-    for path in paths:
+    seen: dict[tuple[str, tuple[tuple[str, str | int], ...]], str] = {}
+    for path, columns in zip(paths, chosen):
         try:
             table = read_table(path)
         except InputError as error:
             problems.extend(error.problems)
             continue
-        twin = next((other.path for other in tables if other.sha256 == table.sha256), None)
-        if twin is not None:
-            found = f"the same content as in {twin}"
+        key = (table.sha256, tuple(sorted(columns.items())))
+        if key in seen:
+            found = f"the same content as in {seen[key]}"
             problems.append(Problem(path, "a file of its own", found, help="name it once"))
+        seen.setdefault(key, path)
         tables.append(table)
     if problems:
         raise TableError(*problems)

@@ -39,7 +39,7 @@ def read_ecsv(file: FileBytes) -> RawTable:
             return replace(plain, notes=(*plain.notes, note))
     read = _raw_table(file, table, "ECSV", caught)
     numbers = _line_numbers(lines)
-    if file.partial and file.size is not None:
+    if file.partial:
         estimate = round(len(read.line) * file.size / max(len(file.content), 1))
         read = replace(read, estimated_rows=estimate)
     return replace(read, line=numbers) if len(numbers) == len(read.line) else read

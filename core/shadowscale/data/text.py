@@ -176,6 +176,6 @@ def _keys(
 
 
 def _estimated_rows(file: FileBytes, rows: int) -> int | None:
-    if not file.partial or file.size is None:
+    if not file.partial:
         return None
     return round(rows * file.size / max(len(file.content), 1))

@@ -53,6 +53,8 @@ def velocity_columns(table: RawTable, columns: Chosen = NOTHING_CHOSEN) -> tuple
     if not search.has("rv1", "rv2"):
         raise ColumnError(search.missing("rv1", "a radial velocity (such as rv1)"))
     search.give_by_name("source")
+    for star in (1, 2):
+        _give_error_beside(search, star)
     return search.result()
 
 
@@ -91,6 +93,16 @@ def _give_by_place(search: ColumnSearch) -> None:
         search.give(role, index, "by its place after the time")
     words = search.words()
     search.give("source", words[0] if words else None, "a column of words")
+
+
+def _give_error_beside(search: ColumnSearch, star: int) -> None:
+    """An error that no name tells, but that stands behind the velocity and looks like one."""
+    velocity = search.given.get(f"rv{star}")
+    if velocity is None or velocity.index + 1 not in search.numeric():
+        return
+    if _is_error(search, velocity.index, velocity.index + 1):
+        reason = f"stands behind {velocity.column!r}, and its numbers are small and not negative"
+        search.give(f"rv{star}_err", velocity.index + 1, reason)
 
 
 def _is_error(search: ColumnSearch, value: int, error: int) -> bool:

@@ -82,9 +82,9 @@ def read_velocities(
         If the columns, their unit or the times cannot be understood.
     """
     names = path_list(paths)
-    tables = read_all(names)
-    reasons = Reasons(["used", NO_MEASUREMENT])
     chosen = per_file(columns, len(names))
+    tables = read_all(names, chosen)
+    reasons = Reasons(["used", NO_MEASUREMENT])
     parts = [_part(table, columns, reasons) for table, columns in zip(tables, chosen)]
     return _joined(parts, reasons)
 

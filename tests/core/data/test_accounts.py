@@ -21,7 +21,7 @@ from shadowscale.errors import InputError, Problem
 from table_files import rows, written
 
 MANGLED = settings(
-    max_examples=150,
+    max_examples=80,
     deadline=None,
     suppress_health_check=[HealthCheck.function_scoped_fixture],
 )

@@ -83,6 +83,7 @@ def test_names_of_photometry(
         ("BJD,RV [km/s],sigma", "tvw", ["BJD", "RV [km/s]", "sigma", None, None]),
         ("BJD,Vr1,Vr2", "tvv", ["BJD", "Vr1", None, "Vr2", None]),
         ("BJD,rv_pri,rv_pri_err,rv_sec,rv_sec_err", "tvwvw", ["BJD", "rv_pri", "rv_pri_err", "rv_sec", "rv_sec_err"]),
+        ("Date,RV A (km/s),+-,RV B (km/s),+-", "tvwvw", ["Date", "RV A (km/s)", "+-", "RV B (km/s)", "+-"]),
         ("BJD,RV1,sig_RV1,RV2,sig_RV2", "tvwvw", ["BJD", "RV1", "sig_RV1", "RV2", "sig_RV2"]),
     ],
 )  # fmt: skip

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import gzip
 from pathlib import Path
 
 import numpy as np
@@ -59,6 +60,8 @@ def test_a_long_file_is_looked_at_in_part(tmp_path: Path) -> None:
     assert seen.estimated
     assert seen.row_count == pytest.approx(60_000, rel=0.01)
     assert seen.unreadable == ()
+    packed = preview(written(tmp_path, "a.csv.gz", gzip.compress(path.read_bytes(), 1)))
+    assert packed.row_count == pytest.approx(60_000, rel=0.2)
     whole = read_photometry(path)
     assert whole.files[0].rows == 60_000
 

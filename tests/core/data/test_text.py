@@ -213,6 +213,15 @@ def test_a_file_given_twice_is_refused(tmp_path: Path) -> None:
         read_photometry([first, second])
 
 
+def test_two_bands_side_by_side_are_read_by_naming_the_file_twice(tmp_path: Path) -> None:
+    time, magnitude, _ = light()
+    lines = [f"{t:.6f},{m + 0.7:.4f},{m:.4f}" for t, m in zip(time, magnitude)]
+    path = written(tmp_path, "a.csv", ["HJD,B,V", *lines])
+    table = read_photometry([path, path], columns=[{"mag": "B"}, {"mag": "V"}])
+    assert table.bands == ("B", "V")
+    np.testing.assert_allclose(table.value[table.band == 1], magnitude)
+
+
 @pytest.mark.long
 def test_two_million_rows_open(tmp_path: Path) -> None:
     count = 2_000_000
