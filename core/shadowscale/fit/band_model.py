@@ -9,14 +9,14 @@ from math import cos, pi, radians, sqrt
 import numpy as np
 from numpy.typing import NDArray
 
-from shadowscale.constants import C_KM_S
+from shadowscale.constants import C_KM_S, DAY
 from shadowscale.fit.plan import EFFECTS
 from shadowscale.fit.system import System
 from shadowscale.light import _band
+from shadowscale.light import _grid as _grid_module
 from shadowscale.light._table import fill_table, table_columns, table_rows
-from shadowscale.light.exposure import exposure_nodes
 from shadowscale.light._kernels import mean_intensity_point
-from shadowscale.light.laws import LAWS
+from shadowscale.light.laws import LAWS, Law
 from shadowscale.orbit._kernels import CONSTANTS_SIZE, orbit_constants
 from shadowscale.quantities import key
 
@@ -69,17 +69,18 @@ def light_time_of(values: Mapping[str, float]) -> float:
 
 @dataclass(frozen=True, eq=False)
 class BandModel:
-    """One band's model at given values, ready for the compiled kernels."""
+    """One band's model at given values: its loss of light on a grid of phases, and the rest."""
 
-    scalars: tuple[float, ...]  # period, epoch, light time, r1+r2, k
+    period: float
+    epoch: float
+    light_time: float
+    ratio: float
     constants: Floats
     brightness: float
     share1: float
     third: float
-    windows: Floats
-    offsets: Floats
-    weights: Floats
-    tables: tuple[Floats, Floats]
+    half_exposure: float  # [cycles]
+    grid: Floats
     means: tuple[Floats, Floats]
     effects_on: bool
     amplitudes: Floats
@@ -91,70 +92,91 @@ class BandModel:
     def at(cls, system: System, values: Mapping[str, float], band: str) -> BandModel:
         """Prepare a band of `system` with `values` in place of its own."""
         law = LAWS[system.law]
-        ratio, radius_sum = values["radius_ratio"], values["radius_sum"]
-        constants = constants_of(values)
-        light_time = light_time_of(values) if system.light_time else 0.0
-        tables, means = [], []
-        for star, size in ((1, ratio), (2, 1.0 / ratio)):
-            coefficients = np.array(
-                [
-                    values[key(f"limb_darkening{star}", band, n + 1)]
-                    for n in range(len(law.coefficients))
-                ]
-            )
-            table = np.empty((table_rows(size), table_columns(coefficients.size)))
-            fill_table(size, law.code, coefficients, table)
-            mean = np.empty(1 + coefficients.size)
-            mean_intensity_point(law.code, coefficients, mean)
-            tables.append(table)
-            means.append(mean)
+        ratio = values["radius_ratio"]
+        tables, means = zip(
+            *(_limb(law, values, star=star, band=band, size=size)
+              for star, size in ((1, ratio), (2, 1.0 / ratio))), strict=True,
+        )  # fmt: skip
         brightness = max(values[key("surface_brightness_ratio", band)], 1e-12)
-        light_ratio = brightness * ratio**2 * means[1][0] / means[0][0]
-        offsets, weights, margin = _exposure(system.exposure, values)
-        windows = np.empty(4)
-        _band.eclipse_windows(
-            constants, light_time, radius_sum, values["ecosw"], values["esinw"], margin, windows
-        )
+        share1 = 1.0 / (1.0 + brightness * ratio**2 * means[1][0] / means[0][0])
+        light_time = light_time_of(values) if system.light_time else 0.0
+        constants = constants_of(values)
+        half_exposure = system.exposure / DAY / values["period"] / 2
+        grid = _grid(
+            constants, light_time, values, share1=share1, brightness=brightness, means=means,
+            tables=tables, averaged=half_exposure > 0.0,
+        )  # fmt: skip
         amplitudes = np.array(
             [values.get(key(f"{effect}{star}", band), 0.0) for effect in EFFECTS for star in (1, 2)]
         )
         effects_on = bool(np.any(amplitudes != 0.0)) or "fitted" in system.effects.values()
         shared = _band.SHARED + 2 * len(law.coefficients)
         return cls(
-            (values["period"], values["epoch"], light_time, radius_sum, ratio), constants,
-            brightness, 1.0 / (1.0 + light_ratio), values[key("third_light", band)], windows,
-            offsets, weights, (tables[0], tables[1]), (means[0], means[1]), effects_on, amplitudes,
+            values["period"], values["epoch"], light_time, ratio, constants, brightness, share1,
+            values[key("third_light", band)], half_exposure, grid, means, effects_on, amplitudes,
             1.0 - cos2i_of(values), values["ecosw"],
             shared + (_band.EFFECTS if effects_on else 0),
         )  # fmt: skip
 
     def rows(self, time: Floats, work: Workspace) -> int:
         """Light and derivatives at `time` into the workspace; returns how many rows have derivatives."""
-        period, epoch, light_time, radius_sum, ratio = self.scalars
         found: int = _band.band_rows(
-            time, period, epoch, self.constants, light_time, radius_sum, ratio, self.brightness,
-            self.share1, self.third, self.windows, self.offsets, self.weights, *self.tables,
-            *self.means, self.effects_on, self.amplitudes, self.sin2i, self.ecosw, work.flux,
-            work.active, work.rows,
+            time, self.period, self.epoch, self.half_exposure, self.third, self.grid, self.constants,
+            self.light_time, self.share1, self.brightness, self.ratio, *self.means, self.effects_on,
+            self.amplitudes, self.sin2i, self.ecosw, work.flux, work.active, work.rows,
         )  # fmt: skip
         return found
 
     def light(self, time: Floats) -> Floats:
         """(n,) light at `time`, one outside eclipse where there are no small effects."""
-        period, epoch, light_time, radius_sum, ratio = self.scalars
         flux = np.empty(time.size)
+        columns = _grid_columns(self.means)
         _band.band_values(
-            np.ascontiguousarray(time, dtype=np.float64), period, epoch, self.constants, light_time,
-            radius_sum, ratio, self.share1, self.third, self.windows, self.offsets, self.weights,
-            *self.tables, self.effects_on, self.amplitudes, self.sin2i, self.ecosw, flux,
+            np.ascontiguousarray(time, dtype=np.float64), self.period, self.epoch, self.half_exposure,
+            self.third, self.grid, columns, self.constants, self.light_time, self.share1,
+            self.effects_on, self.amplitudes, self.sin2i, self.ecosw, flux,
         )  # fmt: skip
         return flux
 
 
-def _exposure(exposure: float, values: Mapping[str, float]) -> tuple[Floats, Floats, float]:
-    """Nodes and weights of the exposure, and how far outside an eclipse they reach [cycles]."""
-    smaller = (
-        min(1.0, values["radius_ratio"]) / (1.0 + values["radius_ratio"]) * values["radius_sum"]
+def _limb(
+    law: Law, values: Mapping[str, float], *, star: int, band: str, size: float
+) -> tuple[Floats, Floats]:
+    """Table of the hidden fraction of one star, and its disc mean with gradient."""
+    coefficients = np.array(
+        [values[key(f"limb_darkening{star}", band, n + 1)] for n in range(len(law.coefficients))]
     )
-    offsets, weights = exposure_nodes(exposure, values["period"], ingress=2 * smaller / (2 * pi))
-    return offsets, weights, float(offsets[-1])
+    table = np.empty((table_rows(size), table_columns(coefficients.size)))
+    fill_table(size, law.code, coefficients, table)
+    mean = np.empty(1 + coefficients.size)
+    mean_intensity_point(law.code, coefficients, mean)
+    return table, mean
+
+
+def _grid_columns(means: tuple[Floats, Floats]) -> int:
+    return _grid_module.FIXED + 2 * (means[0].size - 1)
+
+
+def _grid(
+    constants: Floats,
+    light_time: float,
+    values: Mapping[str, float],
+    *,
+    share1: float,
+    brightness: float,
+    means: tuple[Floats, Floats],
+    tables: tuple[Floats, Floats],
+    averaged: bool,
+) -> Floats:
+    """The loss of light over the phases of both eclipses."""
+    total, ratio = values["radius_sum"], values["radius_ratio"]
+    header = np.empty((_grid_module.HEADER, 6))
+    rows = _grid_module.lay_pieces(
+        constants, light_time, total, ratio, values["ecosw"], values["esinw"], header
+    )
+    grid = np.empty((rows, (3 if averaged else 2) * _grid_columns(means)))
+    grid[: header.shape[0], :6] = header
+    _grid_module.fill_grid(
+        constants, light_time, total, ratio, share1, brightness, *means, *tables, averaged, grid
+    )
+    return grid

@@ -14,6 +14,12 @@ from numpy.typing import NDArray
 
 Floats = NDArray[np.float64]
 
+# On the floor of a curved valley (quantities that the data hardly tell apart) steps go on for ever
+# and win nothing: PATIENCE of them that win less than STALLED in chi-squared end the search. That is
+# a seventh of a sigma from the minimum at most, in the direction that the data do not know anyway.
+PATIENCE = 4
+STALLED = 0.02
+
 
 @dataclass(frozen=True, eq=False)
 class Normal:
@@ -69,6 +75,7 @@ def minimise(
     x = np.clip(start, lower, upper)
     here = objective(x)
     damping = 1e-3
+    gains: list[float] = []
     for iteration in range(1, most + 1):
         moving = _moving(x, here.downhill, lower, upper)
         promised = _promise(here, moving)
@@ -79,13 +86,13 @@ def minimise(
             there = objective(trial)
             if there.chi2 < here.chi2:
                 break
-            damping = max(damping, 1e-7) * 6.0
+            damping = max(damping, 1e-7) * 5.0
         else:
-            return Minimum(x, here, iteration, promised < 1e-2)
-        gained = here.chi2 - there.chi2
+            return Minimum(x, here, iteration, promised < STALLED)
+        gains.append(here.chi2 - there.chi2)
         x, here = trial, there
         damping = max(damping * 0.12, 1e-12)
-        if gained < tolerance * 0.1 and damping < 1e-4:
+        if len(gains) >= PATIENCE and sum(gains[-PATIENCE:]) < STALLED:
             return Minimum(x, here, iteration, True)
     return Minimum(x, here, most, False)
 

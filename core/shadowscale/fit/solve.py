@@ -8,7 +8,7 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from shadowscale.data.limb_tables import LimbTable, read_limb_table
-from shadowscale.data.photometry import Photometry
+from shadowscale.data.photometry import Ints, Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.errors import NotConvergedError
 from shadowscale.fit.alternatives import Branch, distinct_branches, mirrored
@@ -18,7 +18,7 @@ from shadowscale.fit.limb import LimbChoice, limb_choice, teffs, wavelengths
 from shadowscale.fit.objective import Constraint
 from shadowscale.fit.plan import Plan
 from shadowscale.fit.priors import prior_constraints
-from shadowscale.fit.problem import Fitted, Problem, Weighting, fit_system
+from shadowscale.fit.problem import ROUGH, Fitted, Problem, Weighting, fit_system, thinned
 from shadowscale.fit.result import assemble
 from shadowscale.fit.reweigh import reweighed
 from shadowscale.fit.solution import Decision, Solution
@@ -31,6 +31,8 @@ from shadowscale.quantities import key, parse_key
 FIRST_STEPS = 10  # of each start, before the poor ones are dropped
 KEPT_STARTS = 3
 LIMB_ROUNDS = 4
+THINNED_ROWS = 5000
+EXPLORING_STEPS = 40
 
 
 @dataclass(eq=False)
@@ -46,14 +48,29 @@ class _Work:
     limb: Mapping[tuple[int, str], LimbChoice] = field(default_factory=dict)
     decisions: list[Decision] = field(default_factory=list)
     notes: list[str] = field(default_factory=list)
+    _thin: tuple[Ints, Ints] | None = None
 
-    def fit(self, system: System, most: int = 60) -> Fitted:
+    def fit(self, system: System) -> Fitted:
         """Fit with the present weights and priors."""
-        rules = [rule for choice in self.limb.values() for rule in choice.constraints]
-        constraints: list[Constraint] = [*rules, *prior_constraints(self.plan, system)]
         return fit_system(
-            self.problem, system, weighting=self.weighting, constraints=constraints, most=most
+            self.problem, system, weighting=self.weighting, constraints=self.constraints(system)
         )
+
+    def explore(self, system: System, *, most: int) -> Fitted:
+        """Fit roughly, to a thinned light curve."""
+        why = self.weighting.why
+        if self._thin is None or self._thin[0] is not why:
+            self._thin = (why, thinned(self.problem.photometry, why, THINNED_ROWS))
+        weighting = replace(self.weighting, why=self._thin[1])
+        return fit_system(
+            self.problem, system, weighting=weighting, constraints=self.constraints(system),
+            most=most, tolerance=ROUGH,
+        )  # fmt: skip
+
+    def constraints(self, system: System) -> list[Constraint]:
+        """All priors that act on the system."""
+        rules = [rule for choice in self.limb.values() for rule in choice.constraints]
+        return [*rules, *prior_constraints(self.plan, system)]
 
 
 def solve(
@@ -121,7 +138,7 @@ def _explored(work: _Work) -> tuple[Fitted, list[Fitted]]:
         if number == 0:
             work.limb = _limb(work, start)
         try:
-            fitted.append(work.fit(_system(work, start), most=FIRST_STEPS))
+            fitted.append(work.explore(_system(work, start), most=FIRST_STEPS))
         except np.linalg.LinAlgError:
             continue
     fitted = sorted((each for each in fitted if np.isfinite(each.chi2)), key=lambda each: each.chi2)
@@ -130,9 +147,9 @@ def _explored(work: _Work) -> tuple[Fitted, list[Fitted]]:
             "no start describes two separate stars", {"starts": float(len(starts))}
         )
     chosen = distinct_branches(fitted)[:KEPT_STARTS]
-    finished = [each if each.minimum.converged else work.fit(each.system) for each in chosen]
+    finished = [work.explore(each.system, most=EXPLORING_STEPS) for each in chosen]
     finished.sort(key=lambda each: each.chi2)
-    return finished[0], finished[1:]
+    return work.fit(finished[0].system), finished[1:]
 
 
 def _system(work: _Work, start: Mapping[str, float]) -> System:
@@ -270,7 +287,8 @@ def _against_others(
         }  # fmt: skip
         if not {"ecosw", "esinw"} & set(best.system.free):
             geometry |= {"ecosw": best.system.values["ecosw"], "esinw": best.system.values["esinw"]}
-        other = work.fit(best.system.with_values(geometry))
+        rough = work.explore(best.system.with_values(geometry), most=EXPLORING_STEPS)
+        other = work.fit(rough.system)
         if np.isfinite(other.chi2):
             candidates.append(other)
     candidates.sort(key=lambda each: each.chi2)
