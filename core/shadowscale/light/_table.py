@@ -30,11 +30,11 @@ from shadowscale.light._kernels import eclipse_point
 Floats = NDArray[np.float64]
 
 _NEAR = 32  # cells close to a contact
-_FAR = 28  # cells in the last, finest part
+_FAR = 32  # cells in the last, finest part
 _FINE = 0.06  # where that part begins, as a fraction of the side
 _REACH = 0.3  # x1 over the distance of the nearest other branch point
 _COARSE = 0.2  # wanted step in log x between
-_NEAREST = 1e-8  # inner and outer contacts closer than this are taken as one
+_NEAREST = 1e-9  # |1-p| below it is not resolved: only derivatives at separations below it suffer
 _FAR_START = _FINE / (2.0 - _FINE)
 _FAR_STEP = -math.log(_FAR_START) / _FAR
 
@@ -84,7 +84,7 @@ def _point(side: int, x: float, p: float, law: int, c: Floats, out: Floats) -> N
     if side == 0:
         d = (1.0 - p) - x
     elif side == 1:
-        d = abs(1.0 - p) + x
+        d = max(abs(1.0 - p) + x, 1e-200)  # p = 1: the limit d -> 0, not total cover
     else:
         d = (1.0 + p) - x
     eclipse_point(abs(d), p, law, c, out)

@@ -5,9 +5,9 @@ from __future__ import annotations
 import mpmath
 import numpy as np
 import pytest
+
 from derivatives import check_derivatives
 from limb_examples import ALL_CASES, PUBLISHED, exact_intensity
-
 from shadowscale.light._kernels import mean_intensity_point
 from shadowscale.light.laws import LAWS, law_named
 
