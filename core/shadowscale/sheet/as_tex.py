@@ -28,7 +28,7 @@ def as_tex(sheet: Sheet) -> str:
     """The numbers as a `tabular`; needs `booktabs`. Held values are in italics."""
     made = sheet.provenance
     lines = [
-        f"% {made.program}: {made.command}".rstrip(": "),
+        f"% {made.program}: {' '.join(made.command.split())}".rstrip(": "),
         f"% times in {made.time_scale}; errors are 68.3 % limits; solar units are nominal (IAU 2015 B3)",
         r"\begin{tabular}{llll}",
         r"\toprule",

@@ -9,10 +9,11 @@ from __future__ import annotations
 import csv
 from collections.abc import Iterable, Sequence
 from io import StringIO
-from math import isnan
 from typing import Any
 
-from shadowscale.data.photometry import Photometry, UnreadableRow
+import numpy as np
+
+from shadowscale.data.photometry import Floats, Photometry, UnreadableRow
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.solution import Solution
 
@@ -58,14 +59,14 @@ def light_curve(solution: Solution, photometry: Photometry) -> str:
         photometry.line.tolist(),
         photometry.time.tolist(),
         [photometry.bands[number] for number in photometry.band.tolist()],
-        _cells(photometry.value.tolist()),
-        _cells(photometry.value_error.tolist()),
-        _cells(result.phase.tolist()),
-        _cells(photometry.flux.tolist()),
-        _cells(photometry.flux_error.tolist()),
-        _cells(result.model.tolist()),
-        _cells((photometry.flux - result.model).tolist()),
-        _cells(result.level.tolist()),
+        _cells(photometry.value),
+        _cells(photometry.value_error),
+        _cells(result.phase),
+        _cells(photometry.flux),
+        _cells(photometry.flux_error),
+        _cells(result.model),
+        _cells(photometry.flux - result.model),
+        _cells(result.level),
         used,
         why,
     )
@@ -84,14 +85,14 @@ def velocity_curve(solution: Solution, velocities: Velocities) -> str:
         (velocities.rv2, velocities.rv2_error, result.model2, result.why2),
     ):
         used, why = _fate(codes.tolist(), result.reasons)
-        stars += [_cells(item.tolist()) for item in (observed, error, model, observed - model)]
+        stars += [_cells(item) for item in (observed, error, model, observed - model)]
         stars += [used, why]
     columns = (
         [paths[number] for number in velocities.file.tolist()],
         velocities.line.tolist(),
         velocities.time.tolist(),
         [velocities.sources[number] for number in velocities.source.tolist()],
-        _cells(result.phase.tolist()),
+        _cells(result.phase),
         *stars,
     )
     return _written(VELOCITY_HEADER, columns, velocities.unreadable, paths)
@@ -103,8 +104,12 @@ def _fate(codes: list[int], reasons: tuple[str, ...]) -> tuple[list[int], list[s
     return used, ["" if code == 0 else reasons[code] for code in codes]
 
 
-def _cells(numbers: list[float]) -> list[float | str]:
-    return ["" if isnan(number) else number for number in numbers]
+def _cells(numbers: Floats) -> list[float | str]:
+    """Numbers as they are written, nothing where there is none."""
+    found: list[float | str] = numbers.tolist()
+    for row in np.flatnonzero(np.isnan(numbers)):
+        found[row] = ""
+    return found
 
 
 def _written(
