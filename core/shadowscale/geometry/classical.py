@@ -34,7 +34,7 @@ from shadowscale.geometry.contact_equations import (
 )
 from shadowscale.geometry.contacts import ContactSolution, EclipseTiming
 from shadowscale.geometry.discs import hidden_light
-from shadowscale.geometry.least_squares import Candidate, Guess, solve
+from shadowscale.geometry.least_squares import HIGHEST, LOWEST, Candidate, Guess, solve
 from shadowscale.orbit import _kernels
 from shadowscale.orbit.longitude import ecosw_of_phase
 
@@ -274,9 +274,9 @@ def log_brightness(
     count = len(eclipses)
     hidden = np.maximum(hidden_light(sky[:, 0] / radii[:count], ratio[:count]), 1e-4)
     light1 = min(max(eclipses[0].depth / hidden[0], 1e-3), 0.999)
-    if count == 1:
-        return log((1 - light1) / light1 / k**2)
-    return log(eclipses[1].depth / hidden[1] / light1 / k**2)
+    light2 = 1 - light1 if count == 1 else eclipses[1].depth / hidden[1]
+    found = log(light2 / light1 / k**2)
+    return float(min(max(found, LOWEST[LOG_BRIGHTNESS]), HIGHEST[LOG_BRIGHTNESS]))
 
 
 def solutions(ground: Ground) -> tuple[Candidate, list[Candidate], list[str]]:
@@ -287,10 +287,11 @@ def solutions(ground: Ground) -> tuple[Candidate, list[Candidate], list[str]]:
     if len(ground.eclipses) == 1:
         notes.append(ONE_ECLIPSE)
     if ground.flat:
+        found = _with_third_light(ground, found, notes)
+        best = found[0]
         others = [other for other in found[1:] if other.chi2 - best.chi2 < SURE]
         if others:
             notes.append("k and 1/k both fit these times and depths.")
-        best = _with_third_light(ground, best, notes)
     else:
         notes.append(UNDETERMINED)
         others = _along_the_valley(ground, best)
@@ -305,17 +306,26 @@ def _rank(candidate: Candidate) -> float:
     return candidate.chi2 + 2 * bright + 0.5 * abs(float(candidate.unknowns[LOG_RATIO]))
 
 
-def _with_third_light(ground: Ground, best: Candidate, notes: list[str]) -> Candidate:
+def _with_third_light(ground: Ground, found: list[Candidate], notes: list[str]) -> list[Candidate]:
     """Let third light explain depths that the contacts contradict."""
+    best = found[0]
     if best.chi2 < SURE + len(ground.equations.times):
-        return best
-    guess = replace(best.guess, unknowns=best.unknowns).believing(THIRD, 0.0, 0.3)
-    diluted = solve(ground.equations, guess)
-    if diluted.chi2 > best.chi2 - SURE or diluted.unknowns[THIRD] < 0.01:
-        return best
+        return found
+    diluted = sorted(
+        (
+            solve(
+                ground.equations,
+                replace(other.guess, unknowns=other.unknowns).believing(THIRD, 0.0, 0.3),
+            )
+            for other in found
+        ),
+        key=_rank,
+    )
+    third = float(diluted[0].unknowns[THIRD])
+    if diluted[0].chi2 > best.chi2 - SURE or third < 0.01:
+        return found
     notes.append(
-        f"The depths are shallower than the contacts ask for; third light of about {diluted.unknowns[THIRD]:.2f} "
-        "would explain it."
+        f"The depths are shallower than the contacts ask for; third light of about {third:.2f} would explain it."
     )
     return diluted
 

@@ -106,6 +106,7 @@ class Equations:
             by_delta = light * by_d[n] / radii[star - 1]
             # ln of the star's radius and of p to ln k
             d_radius = (1 / (1 + k)) if star == 2 else -k / (1 + k)
+            slopes[n, SHIFT] = -by_delta * sky[n, _kernels.DELTA_CYCLES]
             slopes[n, ECOSW] = by_delta * sky[n, _kernels.DELTA_ECOSW]
             slopes[n, ESINW] = by_delta * sky[n, _kernels.DELTA_ESINW]
             # d delta/d cos^2 i is infinite at delta = 0, where the light does not feel it.

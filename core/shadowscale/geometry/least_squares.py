@@ -21,8 +21,8 @@ from shadowscale.geometry.contact_equations import (
 Floats = NDArray[np.float64]
 
 #                 shift  ecosw  esinw  cos2i  r1+r2  ln k  ln J   l3
-LOWEST = np.array([-0.1, -0.93, -0.93, 0.0, 1e-4, -5.0, -11.0, -0.3])
-HIGHEST = np.array([0.1, 0.93, 0.93, 0.95, 0.95, 5.0, 11.0, 0.95])
+LOWEST = np.array([-0.1, -0.93, -0.93, 0.0, 1e-4, -5.0, -9.0, -0.3])
+HIGHEST = np.array([0.1, 0.93, 0.93, 0.95, 0.95, 5.0, 9.0, 0.95])
 MOST_ECCENTRIC = 0.93
 SMALLEST_LOG_RATIO = 1e-3  # k = 1 is a corner of |1-k|: a solution stays on its side
 LEAST_COSINE = 0.02  # of r1+r2: from a central eclipse the walk could not leave
