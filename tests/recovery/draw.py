@@ -32,13 +32,13 @@ def draw_case(seed: int) -> Case:
     """A random case; the same for the same seed."""
     rng = np.random.default_rng(seed)
     while True:
-        truth, masses = _system(rng)
+        truth = _system(rng)
         case = _observed(seed, truth, rng)
         if case is not None:
             return case
 
 
-def _system(rng: np.random.Generator) -> tuple[System, tuple[float, float]]:
+def _system(rng: np.random.Generator) -> System:
     """Detached stars whose primary eclipse is the deeper one."""
     bands = BANDS[: rng.integers(1, 5)]
     while True:
@@ -72,10 +72,7 @@ def _system(rng: np.random.Generator) -> tuple[System, tuple[float, float]]:
             for star in (1, 2):
                 values[key(f"limb_darkening{star}", band, 1)] = float(rng.uniform(0.55, 0.8))
                 values[key(f"limb_darkening{star}", band, 2)] = float(rng.uniform(0.5, 0.9))
-        return System(values, (), "power-2", bands, ("spectrograph",), light_time=True), (
-            mass1,
-            mass1 * q,
-        )
+        return System(values, (), "power-2", bands, ("spectrograph",), light_time=True)
 
 
 def _observed(seed: int, truth: System, rng: np.random.Generator) -> Case | None:

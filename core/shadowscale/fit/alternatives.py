@@ -4,15 +4,17 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
-from math import log
+from math import hypot, log
 
 from shadowscale.fit.problem import Fitted
 from shadowscale.fit.solution import Alternative
 from shadowscale.fit.system import System
+from shadowscale.geometry.roche import lobe_radius
 
 NOT_EXCLUDED = 9.0  # in chi-squared: three sigma for one quantity
 SAME_SIDE = 0.15  # in ln k: nearer minima on one side of k = 1 are one valley
 OTHER_SIDE = 0.02
+OVERFLOW_HANDICAP = 25.0  # five sigma against a star larger than its Roche lobe
 
 
 @dataclass(frozen=True, eq=False)
@@ -26,6 +28,22 @@ class Branch:
 def mirrored(system: System) -> dict[str, float]:
     """The values with the radii exchanged; surface brightnesses, and so the depths, stay."""
     return {**system.values, "radius_ratio": 1.0 / system.values["radius_ratio"]}
+
+
+def preference(fitted: Fitted) -> float:
+    """Chi-squared, with a handicap for stars that overflow their Roche lobes: the spheres do not hold there.
+
+    A system without both velocities counts as one of equal masses.
+    """
+    values = fitted.system.values
+    ratio, total = values["radius_ratio"], values["radius_sum"]
+    q = 1.0
+    if values.get("K1", 0.0) > 0.0 and values.get("K2", 0.0) > 0.0:
+        q = values["K1"] / values["K2"]
+    nearest = 1.0 - hypot(values["ecosw"], values["esinw"])
+    radii = total / (1 + ratio), total * ratio / (1 + ratio)
+    full = max(radii[0] / lobe_radius(1 / q), radii[1] / lobe_radius(q)) / nearest
+    return fitted.chi2 + (OVERFLOW_HANDICAP if full > 1.0 else 0.0)
 
 
 def distinct_branches(sorted_fits: Sequence[Fitted]) -> list[Fitted]:

@@ -14,8 +14,8 @@ from shadowscale.fit.plan import EFFECTS
 from shadowscale.fit.system import System
 from shadowscale.light import _band
 from shadowscale.light import _grid as _grid_module
-from shadowscale.light._table import fill_table, table_columns, table_rows
 from shadowscale.light._kernels import mean_intensity_point
+from shadowscale.light._table import fill_table, table_columns, table_rows
 from shadowscale.light.laws import LAWS, Law
 from shadowscale.orbit._kernels import CONSTANTS_SIZE, orbit_constants
 from shadowscale.quantities import key

@@ -152,8 +152,11 @@ def _add_band(
             if choice.free:
                 free.append(text)
     for effect in EFFECTS:
-        if plan.effects.get(effect, "off") == "fitted":
-            for star in (1, 2):
-                text = key(f"{effect}{star}", band)
-                values[text] = float(start.get(text, 0.0))
-                free.append(text)
+        state = plan.effects.get(effect, "off")
+        for star in (1, 2):
+            if state != "off":
+                values[key(f"{effect}{star}", band)] = float(
+                    start.get(key(f"{effect}{star}", band), 0.0)
+                )
+            if state == "fitted":
+                free.append(key(f"{effect}{star}", band))

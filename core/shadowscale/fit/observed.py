@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -70,7 +71,7 @@ def band_data(photometry: Photometry, band: int, *, levels: str, why: Ints) -> B
 def _trend(time: Floats, starts: Ints) -> Floats:
     """Time within each segment, -1...1 from its first to its last row."""
     trend = np.zeros_like(time)
-    for low, high in zip(starts[:-1], starts[1:], strict=True):
+    for low, high in pairwise(starts):
         if high > low:
             first, last = time[low], time[high - 1]
             half = max((last - first) / 2, 1e-9)

@@ -11,9 +11,10 @@ from shadowscale.data.limb_tables import LimbTable, read_limb_table
 from shadowscale.data.photometry import Ints, Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.errors import NotConvergedError
-from shadowscale.fit.alternatives import Branch, distinct_branches, mirrored
+from shadowscale.fit.alternatives import Branch, distinct_branches, mirrored, preference
 from shadowscale.fit.build import build_system, check_plan, named
 from shadowscale.fit.decide import decision, needed
+from shadowscale.fit.effects import predicted_amplitudes
 from shadowscale.fit.limb import LimbChoice, limb_choice, teffs, wavelengths
 from shadowscale.fit.objective import Constraint
 from shadowscale.fit.plan import Plan
@@ -107,6 +108,7 @@ def solve(
     problem = Problem(photometry, velocities)
     work = _Work(problem, plan, ground, table, progress, problem.weighting())
     best, branches = _explored(work)
+    best = _with_effects(work, best)
     best = _weighed(work, best)
     best = _with_levels(work, best)
     best = _with_third_light(work, best)
@@ -114,6 +116,7 @@ def solve(
     best = _weighed(work, best)
     best, branches = _against_others(work, best, branches)
     best = _with_limb_darkening(work, best)
+    best = _with_effects(work, best)
     if not best.minimum.converged:
         raise NotConvergedError(
             "the fit did not settle",
@@ -148,7 +151,7 @@ def _explored(work: _Work) -> tuple[Fitted, list[Fitted]]:
         )
     chosen = distinct_branches(fitted)[:KEPT_STARTS]
     finished = [work.explore(each.system, most=EXPLORING_STEPS) for each in chosen]
-    finished.sort(key=lambda each: each.chi2)
+    finished.sort(key=preference)
     return work.fit(finished[0].system), finished[1:]
 
 
@@ -194,6 +197,44 @@ def _limb(
         )
     )
     return choices
+
+
+def _with_effects(work: _Work, best: Fitted) -> Fitted:
+    """Small effects that are asked for: predicted from the stars as fitted, or fitted from there."""
+    from shadowscale.fit.derived import derived_value
+
+    states = {name: state for name, state in best.system.effects.items() if state != "off"}
+    if not states:
+        return best
+    at = best.system.wavelengths
+    for _ in range(2):
+        brightness = {
+            band: best.system.values[key("surface_brightness_ratio", band)]
+            for band in best.system.bands
+        }
+        teff1, teff2, words = teffs(work.plan, brightness, at)
+        ratio = derived_value(best.system, "mass_ratio", _assumed(work.plan, best.system))
+        predicted = predicted_amplitudes(best.system, teff1=teff1, teff2=teff2, mass_ratio=ratio)
+        fresh = not any(
+            best.system.values[name] for name in predicted if name in best.system.values
+        )
+        moved = {
+            name: value for name, value in predicted.items()
+            if name in best.system.values and (fresh or name not in best.system.free)
+        }  # fmt: skip
+        best = work.fit(best.system.with_values(moved))
+    said = ", ".join(f"{name} {state}" for name, state in states.items())
+    assumed = "" if np.isfinite(ratio) else "; mass ratio taken as one for want of velocities"
+    work.decisions = [each for each in work.decisions if each.what != "small effects"]
+    words = f"{said}; predictions at {teff1:.0f} K and {teff2:.0f} K ({words}){assumed}"
+    work.decisions.append(Decision("small effects", said, words, predicted))
+    return best
+
+
+def _assumed(plan: Plan, system: System) -> dict[str, float]:
+    from shadowscale.fit.derived import assumed_inputs
+
+    return {name: value for name, (value, _) in assumed_inputs(plan, system).items()}
 
 
 def _weighed(work: _Work, best: Fitted) -> Fitted:
@@ -291,8 +332,7 @@ def _against_others(
         other = work.fit(rough.system)
         if np.isfinite(other.chi2):
             candidates.append(other)
-    candidates.sort(key=lambda each: each.chi2)
-    found = distinct_branches(candidates)
+    found = distinct_branches(sorted(candidates, key=preference))
     return found[0], [Branch(each, each.chi2 - found[0].chi2) for each in found[1:]]
 
 
