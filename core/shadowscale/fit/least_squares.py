@@ -1,5 +1,7 @@
 """Bounded least squares on normal equations: Levenberg and Marquardt's damping, projected on a box.
 
+The damping follows the quality of each step (Nielsen 1999, IMM-REP-1999-05, from memory).
+
 The objective hands over chi-squared, gradient and Gauss-Newton matrix together (they cost one pass
 over the data), so that no Jacobian of all points is ever stored.
 """
@@ -19,6 +21,7 @@ Floats = NDArray[np.float64]
 # a seventh of a sigma from the minimum at most, in the direction that the data do not know anyway.
 PATIENCE = 4
 STALLED = 0.02
+REJECTIONS = 16
 
 
 @dataclass(frozen=True, eq=False)
@@ -52,6 +55,7 @@ def minimise(
     bounds: tuple[Floats, Floats],
     most: int = 60,
     tolerance: float = 1e-7,
+    stalled: float = STALLED,
 ) -> Minimum:
     """Go downhill from `start` within `bounds`.
 
@@ -65,6 +69,8 @@ def minimise(
         Steps at the most.
     tolerance : float
         Ends when a full step promises less than this in chi-squared.
+    stalled : float
+        Ends as well when PATIENCE steps together win less than this.
 
     Returns
     -------
@@ -74,25 +80,29 @@ def minimise(
     lower, upper = bounds
     x = np.clip(start, lower, upper)
     here = objective(x)
-    damping = 1e-3
+    damping, growth = 1e-3, 2.0
     gains: list[float] = []
     for iteration in range(1, most + 1):
         moving = _moving(x, here.downhill, lower, upper)
         promised = _promise(here, moving)
         if promised < tolerance:
             return Minimum(x, here, iteration, True)
-        for _ in range(14):
-            trial = np.clip(x + _step(here, moving, damping), lower, upper)
-            there = objective(trial)
+        for _ in range(REJECTIONS):
+            step = np.clip(x + _step(here, moving, damping), lower, upper) - x
+            there = objective(x + step)
             if there.chi2 < here.chi2:
                 break
-            damping = max(damping, 1e-7) * 5.0
+            damping, growth = max(damping, 1e-8) * growth, growth * 2.0
         else:
-            return Minimum(x, here, iteration, promised < STALLED)
-        gains.append(here.chi2 - there.chi2)
-        x, here = trial, there
-        damping = max(damping * 0.12, 1e-12)
-        if len(gains) >= PATIENCE and sum(gains[-PATIENCE:]) < STALLED:
+            return Minimum(x, here, iteration, promised < stalled)
+        gained = here.chi2 - there.chi2
+        expected = float(step @ (2.0 * here.downhill - here.matrix @ step))
+        quality = min(gained / expected, 1.0) if expected > 0.0 else 1.0
+        damping *= max(0.1, 1.0 - (2.0 * quality - 1.0) ** 3)
+        growth = 2.0
+        gains.append(gained)
+        x, here = x + step, there
+        if len(gains) >= PATIENCE and sum(gains[-PATIENCE:]) < stalled:
             return Minimum(x, here, iteration, True)
     return Minimum(x, here, most, False)
 

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from shadowscale.data.photometry import Ints, Photometry
 from shadowscale.data.velocities import Velocities
-from shadowscale.fit.least_squares import Minimum, minimise
+from shadowscale.fit.least_squares import STALLED, Minimum, minimise
 from shadowscale.fit.objective import Constraint, Objective
 from shadowscale.fit.observed import BandData, StarVelocities, band_data, star_velocities
 from shadowscale.fit.system import System
@@ -18,7 +18,7 @@ from shadowscale.fit.vector import Vector
 
 Floats = NDArray[np.float64]
 FINAL = 1e-6  # gain in chi-squared that is left when a fit has settled: a thousandth of a sigma
-ROUGH = 1e-2  # the same while valleys are compared
+ROUGH, ROUGH_STALLED = 1e-2, 0.3  # the same while valleys are compared
 
 
 @dataclass(frozen=True, eq=False)
@@ -128,16 +128,17 @@ def fit_system(
     weighting: Weighting,
     constraints: Sequence[Constraint] = (),
     most: int = 60,
-    tolerance: float = FINAL,
+    rough: bool = False,
 ) -> Fitted:
-    """Fit the free quantities of `system` from where they are."""
+    """Fit the free quantities of `system` from where they are; `rough` is enough to compare valleys."""
     active = tuple(
         rule for rule in constraints if rule.function is not None or rule.name in system.free
     )
     objective = problem.objective(system, weighting, active)
     vector = objective.vector
     minimum = minimise(
-        objective, vector.pack(system.values), bounds=vector.bounds, most=most, tolerance=tolerance
-    )
+        objective, vector.pack(system.values), bounds=vector.bounds, most=most,
+        tolerance=ROUGH if rough else FINAL, stalled=ROUGH_STALLED if rough else STALLED,
+    )  # fmt: skip
     solved = system.with_values(vector.unpack(minimum.x))
     return Fitted(solved, objective, minimum, active)

@@ -19,7 +19,7 @@ from shadowscale.fit.limb import LimbChoice, limb_choice, teffs, wavelengths
 from shadowscale.fit.objective import Constraint
 from shadowscale.fit.plan import Plan
 from shadowscale.fit.priors import prior_constraints
-from shadowscale.fit.problem import ROUGH, Fitted, Problem, Weighting, fit_system, thinned
+from shadowscale.fit.problem import Fitted, Problem, Weighting, fit_system, thinned
 from shadowscale.fit.result import assemble
 from shadowscale.fit.reweigh import reweighed
 from shadowscale.fit.solution import Decision, Solution
@@ -34,6 +34,7 @@ KEPT_STARTS = 3
 LIMB_ROUNDS = 4
 THINNED_ROWS = 5000
 EXPLORING_STEPS = 40
+HOPELESS = 60.0  # in chi-squared of the thinned data: no full fit mends that
 
 
 @dataclass(eq=False)
@@ -65,7 +66,7 @@ class _Work:
         weighting = replace(self.weighting, why=self._thin[1])
         return fit_system(
             self.problem, system, weighting=weighting, constraints=self.constraints(system),
-            most=most, tolerance=ROUGH,
+            most=most, rough=True,
         )  # fmt: skip
 
     def constraints(self, system: System) -> list[Constraint]:
@@ -320,20 +321,21 @@ def _against_others(
 ) -> tuple[Fitted, list[Branch]]:
     """Fit the mirror solution and the other minima under the final weights; the best may change."""
     work.progress.report(0.75, "looking for other solutions")
+    others = [mirrored(best.system), *(each.system.values for each in branches)]
+    here = work.explore(best.system, most=FIRST_STEPS)
+    rough = [work.explore(_moved(best.system, values), most=EXPLORING_STEPS) for values in others]
+    hopeful = [each for each in rough if each.chi2 < here.chi2 + HOPELESS]
     candidates = [best]
-    for values in [mirrored(best.system), *(each.system.values for each in branches)]:
-        geometry = {
-            name: value for name, value in values.items()
-            if name in best.system.free or name in ("ecosw", "esinw")
-        }  # fmt: skip
-        if not {"ecosw", "esinw"} & set(best.system.free):
-            geometry |= {"ecosw": best.system.values["ecosw"], "esinw": best.system.values["esinw"]}
-        rough = work.explore(best.system.with_values(geometry), most=EXPLORING_STEPS)
-        other = work.fit(rough.system)
-        if np.isfinite(other.chi2):
-            candidates.append(other)
+    for each in distinct_branches([here, *sorted(hopeful, key=preference)])[1:]:
+        candidates.append(work.fit(each.system))
     found = distinct_branches(sorted(candidates, key=preference))
     return found[0], [Branch(each, each.chi2 - found[0].chi2) for each in found[1:]]
+
+
+def _moved(system: System, values: Mapping[str, float]) -> System:
+    """The system with another's values of what is free, and of the orbit's shape where that is free."""
+    taken = {name: value for name, value in values.items() if name in system.free}
+    return system.with_values(taken)
 
 
 def _with_limb_darkening(work: _Work, best: Fitted) -> Fitted:
