@@ -34,7 +34,7 @@ from shadowscale.geometry.contact_equations import (
 )
 from shadowscale.geometry.contacts import ContactSolution, EclipseTiming
 from shadowscale.geometry.discs import hidden_light
-from shadowscale.geometry.least_squares import HIGHEST, LOWEST, Candidate, Guess, solve
+from shadowscale.geometry.least_squares import HIGHEST, LOWEST, QUICK, Candidate, Guess, solve
 from shadowscale.orbit import _kernels
 from shadowscale.orbit.longitude import ecosw_of_phase
 
@@ -279,10 +279,14 @@ def log_brightness(
     return float(min(max(found, LOWEST[LOG_BRIGHTNESS]), HIGHEST[LOG_BRIGHTNESS]))
 
 
-def solutions(ground: Ground) -> tuple[Candidate, list[Candidate], list[str]]:
+def solutions(
+    ground: Ground, *, steps: tuple[int, ...] = QUICK
+) -> tuple[Candidate, list[Candidate], list[str]]:
     """The solution that is given, the others that the same data allow, and what to say."""
     notes: list[str] = []
-    found = sorted((solve(ground.equations, guess) for guess in ground.guesses), key=_rank)
+    found = sorted(
+        (solve(ground.equations, guess, steps=steps) for guess in ground.guesses), key=_rank
+    )
     best = found[0]
     if len(ground.eclipses) == 1:
         notes.append(ONE_ECLIPSE)

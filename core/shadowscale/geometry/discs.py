@@ -9,8 +9,9 @@ from __future__ import annotations
 from math import acos, asin, cos, pi, sin, sqrt
 
 import numpy as np
-from numba import njit
 from numpy.typing import ArrayLike, NDArray
+
+from shadowscale._compiled import compiled
 
 Floats = NDArray[np.float64]
 
@@ -52,7 +53,7 @@ def hidden_light_slopes(separation: Floats, ratio: Floats) -> Floats:
     return out
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _hidden(d: float, p: float, limb: float) -> float:
     """Gauss-Legendre in t, r = sin theta, theta = mid - half cos t over the partly covered ring."""
     whole = 1 - limb / 3
@@ -79,13 +80,13 @@ def _hidden(d: float, p: float, limb: float) -> float:
     return light / whole
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _fill(separation: Floats, ratio: Floats, limb: float, out: Floats) -> None:
     for n in range(separation.size):
         out[n] = _hidden(separation[n], ratio[n], limb)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _fill_slopes(separation: Floats, ratio: Floats, out: Floats) -> None:
     for n in range(separation.size):
         d, p = separation[n], ratio[n]

@@ -26,7 +26,8 @@ HIGHEST = np.array([0.1, 0.93, 0.93, 0.95, 0.95, 5.0, 9.0, 0.95])
 MOST_ECCENTRIC = 0.93
 SMALLEST_LOG_RATIO = 1e-3  # k = 1 is a corner of |1-k|: a solution stays on its side
 LEAST_COSINE = 0.02  # of r1+r2: from a central eclipse the walk could not leave
-STEPS, REWEIGHTED = 25, 2
+# Steps with the first weights, then with those of the solution.
+QUICK, THOROUGH = (16, 6), (50, 12)
 CONVERGED = 1e-4  # what a step must still promise in chi2
 
 
@@ -63,14 +64,14 @@ class Candidate:
     guess: Guess
 
 
-def solve(equations: Equations, guess: Guess) -> Candidate:
+def solve(equations: Equations, guess: Guess, *, steps: tuple[int, ...] = QUICK) -> Candidate:
     """Least squares from a guess; ends at the nearest physical solution."""
     side = np.copysign(1.0, guess.unknowns[LOG_RATIO])
     here = _bounded(guess.unknowns, side)
-    for _ in range(REWEIGHTED):
+    for count in steps:
         answer, covariance = equations.weights(here)
         root = _whitener(covariance)
-        here = _descend(equations, guess, here, root)
+        here = _descend(equations, guess, here, root, count)
     value, slopes = equations.evaluate(here)
     whitened = root @ value
     inverse = np.zeros((UNKNOWNS, UNKNOWNS))
@@ -79,7 +80,7 @@ def solve(equations: Equations, guess: Guess) -> Candidate:
     return Candidate(here, inverse, gain, float(whitened @ whitened), guess)
 
 
-def _descend(equations: Equations, guess: Guess, start: Floats, root: Floats) -> Floats:
+def _descend(equations: Equations, guess: Guess, start: Floats, root: Floats, steps: int) -> Floats:
     """Levenberg-Marquardt with the weights held.
 
     It walks in cos i, not cos^2 i: depths of nearly equal stars have a corner at cos^2 i = 0, and the
@@ -89,7 +90,7 @@ def _descend(equations: Equations, guess: Guess, start: Floats, root: Floats) ->
     here, damping = start, 1e-3
     value, slopes = equations.evaluate(here)
     cost = _cost(root @ value, here, guess)
-    for _ in range(STEPS):
+    for _ in range(steps):
         cosine = max(sqrt(here[COS2I]), LEAST_COSINE * here[SUM])
         slopes[:, COS2I] *= 2 * cosine
         step, promised = _step(root @ value, root @ slopes, here, guess, damping)

@@ -25,7 +25,7 @@ from shadowscale.geometry.contact_equations import (
     SUM,
 )
 from shadowscale.geometry.contacts import EclipseTiming
-from shadowscale.geometry.least_squares import Candidate, solve
+from shadowscale.geometry.least_squares import THOROUGH, Candidate, solve
 
 Floats = NDArray[np.float64]
 
@@ -61,7 +61,7 @@ def starts(
 
 def _places(ground: Ground) -> Iterator[Floats]:
     """Unknowns of each start, the most likely first."""
-    best, others, _ = solutions(ground)
+    best, others, _ = solutions(ground, steps=THOROUGH)
     for solution in (best, *others):
         yield solution.unknowns
     if ground.flat:
@@ -78,7 +78,8 @@ def _with_ratios(ground: Ground, best: Candidate) -> Iterator[Floats]:
     low, high = ground.log_ratios
     for part in PARTS:
         guess = best.guess.believing(LOG_RATIO, low + part * (high - low), FIRM)
-        yield solve(ground.equations, placed(guess, ground.eclipses, ground.equations)).unknowns
+        begin = placed(guess, ground.eclipses, ground.equations)
+        yield solve(ground.equations, begin, steps=THOROUGH).unknowns
 
 
 def _as_partial(ground: Ground, best: Floats) -> Iterator[Floats]:
