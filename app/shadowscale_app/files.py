@@ -89,11 +89,12 @@ class Files(QObject):
         if not adds and not self.may_leave():
             return
         base = session if adds else Session(name=path.stem)
-        sources = (*base.photometry_sources, Source(str(path.absolute()), reading.columns))
+        added = Source(str(path.absolute()), reading.columns, band=reading.band or "")
+        sources = (*base.photometry_sources, added)
         photometry = read_photometry(
             [source.path for source in sources],
             columns=[source.columns for source in sources],
-            band=reading.band,
+            band=[source.band or None for source in sources],
         )
         sources = _with_checksums(sources, photometry.files)
         fresh = replace(
