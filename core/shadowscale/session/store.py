@@ -21,6 +21,7 @@ from shadowscale.errors import Problem, SessionError
 from shadowscale.fit.plan import Plan
 from shadowscale.session.atomic import write_text
 from shadowscale.session.plain import PlainError, from_plain, to_plain
+from shadowscale.session.sense import check_sense
 from shadowscale.session.session import Session, Source
 from shadowscale.session.tables import checksum, with_tables
 
@@ -119,6 +120,7 @@ def from_document(document: Mapping[str, Any], path: Path) -> Session:
             raise SessionError(Problem(str(path), "no such entry in a session", repr(name)))
     try:
         session = from_plain(Session, body)
+        check_sense(session)
     except PlainError as error:
         problem = Problem(str(path), error.expected, error.found, column=error.where)
         raise SessionError(problem) from error
