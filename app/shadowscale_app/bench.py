@@ -31,7 +31,7 @@ from shadowscale_app.panes.start import StartPane
 from shadowscale_app.placing import place, tool_bar
 from shadowscale_app.points_desk import PointsDesk
 from shadowscale_app.status import Status
-from shadowscale_app.warm import Warmer
+from shadowscale_app.warm import READY, Warmer
 from shadowscale_app.work import WorkDesk
 
 
@@ -55,6 +55,8 @@ class Bench(QMainWindow):
         self.files = Files(self.desk, self)
         self.points = PointsDesk(self.desk, self)
         self.warmer = Warmer(self)
+        if immediate:
+            READY.reach()
         self.panes: dict[str, Pane] = {pane.title: pane for pane in all_panes()}
         self.phase = 0.0
         self.brushing = False
@@ -84,7 +86,7 @@ class Bench(QMainWindow):
         settings().setValue(theme.CHOICE, name)
         self.dress()
 
-    def dress(self) -> None:
+    def dress(self, *_: object) -> None:
         """Take the theme's colours everywhere."""
         application = QApplication.instance()
         assert isinstance(application, QApplication)
@@ -207,10 +209,11 @@ class Bench(QMainWindow):
         self.work.searched.connect(self._searched)
         self.long_lane.progressed.connect(self.status.show_progress)
         self.status.stop_wanted.connect(self.work.stop)
+        self.warmer.ready.connect(self._show_all)
         self.start.open_wanted.connect(trouble.guarded("opening", self.files.ask_open))
         self.start.path_wanted.connect(lambda path: self.open_paths([path]))
         trouble.bell().arose.connect(self._trouble)
-        QApplication.styleHints().colorSchemeChanged.connect(lambda _: self.dress())
+        QApplication.styleHints().colorSchemeChanged.connect(self.dress)
 
     def _wanted(self, change: Change) -> None:
         self.desk.apply(change)
@@ -259,6 +262,9 @@ class Bench(QMainWindow):
         assert isinstance(pane, PeriodsPane)
         pane.show_search(found)
         self.bring("Period")
+
+    def _show_all(self) -> None:
+        self._show(self.desk.session, ALL)
 
     def _trouble(self, found: trouble.Trouble) -> None:
         dialog = TroubleDialog(found, self)

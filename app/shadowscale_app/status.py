@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt, Signal
-from PySide6.QtWidgets import QLabel, QProgressBar, QStatusBar, QToolButton, QWidget
+from PySide6.QtWidgets import QLabel, QProgressBar, QSizePolicy, QStatusBar, QToolButton, QWidget
 
 from shadowscale.session.session import Session
 from shadowscale.view.doubts import counts
@@ -25,6 +25,7 @@ class Status(QStatusBar):
         self.setContentsMargins(8, 0, 12, 0)
         self.words = QLabel("")
         self.words.setTextFormat(Qt.TextFormat.PlainText)
+        self.words.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
         self.live = QLabel("")
         self.live.setObjectName("quiet")
         self.fit = QLabel("")

@@ -1,29 +1,43 @@
-"""After the window shows: load and compile what computing needs, with a word in the status line."""
+"""After the window shows: load and compile what computing needs, with a word in the status line.
+
+Until that is done the panes show what needs no model, so that nothing compiles on the window's thread.
+"""
 
 from __future__ import annotations
 
-import importlib
 import threading
 
 from PySide6.QtCore import QObject, Signal
 
-MODULES = (
-    "shadowscale.view.density",
-    "shadowscale.fit",
-    "shadowscale.jobs.solve",
-    "shadowscale.data",
-)
+from shadowscale_app import trouble
+
+
+class Readiness:
+    """Whether models can be computed without a wait."""
+
+    def __init__(self) -> None:
+        self._ready = threading.Event()
+
+    def __bool__(self) -> bool:
+        return self._ready.is_set()
+
+    def reach(self) -> None:
+        """From now on they can."""
+        self._ready.set()
+
+
+READY = Readiness()
 
 
 class Warmer(QObject):
-    """Loads modules in a thread. Signal `told(words)`."""
+    """Loads and compiles in a thread. Signals `told(words)`, `ready()`."""
 
     told = Signal(str)
+    ready = Signal()
 
     def __init__(self, parent: QObject | None = None) -> None:
         super().__init__(parent)
         self._thread: threading.Thread | None = None
-        self._closed = False
 
     def start(self) -> None:
         """Begin."""
@@ -32,16 +46,18 @@ class Warmer(QObject):
         self._thread.start()
 
     def close(self) -> None:
-        """Wait for the module that is being loaded, load no more."""
-        self._closed = True
+        """Wait until it is done: a compiler cannot be interrupted."""
         if self._thread is not None:
             self._thread.join()
             self._thread = None
 
     def _run(self) -> None:
-        for name in MODULES:
-            if self._closed:
-                return
-            importlib.import_module(name)
-        if not self._closed:
-            self.told.emit("Ready.")
+        from shadowscale.view.warming import warm
+
+        try:
+            warm()
+        except Exception as error:
+            trouble.tell("making ready to compute", error)
+        READY.reach()
+        self.told.emit("Ready.")
+        self.ready.emit()

@@ -7,7 +7,14 @@ from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
-from PySide6.QtCore import QSettings, QStandardPaths, QTimer, QtMsgType, qInstallMessageHandler
+from PySide6.QtCore import (
+    QEvent,
+    QSettings,
+    QStandardPaths,
+    QTimer,
+    QtMsgType,
+    qInstallMessageHandler,
+)
 from PySide6.QtWidgets import QApplication
 
 from made_up import made_up_session
@@ -79,7 +86,8 @@ def session() -> Session:
 @pytest.fixture
 def bench(qapp: QApplication, session: Session, told: list[trouble.Trouble]) -> Iterator[Bench]:
     """The window with that session; the fit does not follow, so that no solver is needed."""
-    theme.dress(qapp)
+    if not qapp.styleSheet():
+        theme.dress(qapp)
     window = Bench(immediate=True)
     window.live.following = False
     window.resize(1280, 720)
@@ -91,5 +99,5 @@ def bench(qapp: QApplication, session: Session, told: list[trouble.Trouble]) -> 
     window.hide()
     window.deleteLater()
     qapp.processEvents()
-    qapp.sendPostedEvents(None, 52)  # DeferredDelete
+    qapp.sendPostedEvents(None, QEvent.Type.DeferredDelete.value)
     assert [each.whole for each in told] == []

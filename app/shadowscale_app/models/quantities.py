@@ -11,7 +11,7 @@ from shadowscale.view.rows import FREE, HELD, WITH_PRIOR, Row
 from shadowscale.view.written import read_number
 from shadowscale_app import theme
 
-HEADERS = ("quantity", "value", "error", "unit", "state", "held by the data", "limits")
+HEADERS = ("name", "value", "error", "unit", "state", "held by the data", "limits")
 SYMBOL, VALUE, ERROR, UNIT, STATE, GRADE, LIMITS = range(7)
 Index = QModelIndex | QPersistentModelIndex
 ROW = Qt.ItemDataRole.UserRole

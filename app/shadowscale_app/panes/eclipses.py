@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QLabel, QSplitter, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QLabel, QSizePolicy, QSplitter, QVBoxLayout, QWidget
 
 from shadowscale.session.session import Markers, Session
 from shadowscale.view.geometry_words import geometry_lines
@@ -37,6 +37,7 @@ class EclipsesPane(Pane):
             )
             for part in PLAIN
         }
+        self._placed = False
         self.marking = Marking(self, tuple(self.pairs.values()))
         split = QSplitter(Qt.Orientation.Horizontal)
         split.setHandleWidth(4)
@@ -46,8 +47,11 @@ class EclipsesPane(Pane):
             split.addWidget(_titled(f"{part.capitalize()} eclipse", pair))
             self._zoom(part, None)
         self.geometry_words = QLabel("")
-        self.geometry_words.setContentsMargins(10, 1, 10, 3)
+        self.geometry_words.setContentsMargins(10, 0, 10, 2)
+        self.geometry_words.setFont(theme.small_font())
         self.geometry_words.setAccessibleName("Geometry")
+        # its text changes while a marker is dragged: the layout must not follow
+        self.geometry_words.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Minimum)
         layout = QVBoxLayout(self)
         layout.setContentsMargins(0, 0, 0, 0)
         layout.setSpacing(0)
@@ -55,14 +59,17 @@ class EclipsesPane(Pane):
         layout.addWidget(self.geometry_words)
 
     def refresh(self, names: frozenset[str]) -> None:
-        """Draw what changed; the view follows the markers only with another set of points or model."""
+        """Draw what changed; the view goes to the markers when they first appear, and stays while they move."""
         for pair in self.pairs.values():
             pair.show_light(self.session, names)
         if names & {"contact", "solution", "view"}:
             self.geometry_words.setText(_geometry_text(self.session))
-        if "photometry" in names or ("solution" in names and "markers" not in names):
+        if {"photometry", "name"} <= names:
+            self._placed = False
+        if not self._placed:
             for part in PLAIN:
                 self._zoom(part, self.session.markers)
+            self._placed = self.session.markers is not None
 
     def point(self, phase: float) -> None:
         """Show the phase under the cursor."""
@@ -90,7 +97,7 @@ def _geometry_text(session: Session) -> str:
             for sign, value, error in line.cells
         )
         parts.append(f"<span style='color:{tints[line.source]}'>{line.source}</span>&nbsp; {cells}")
-    return "&nbsp;&nbsp;&nbsp;&nbsp;".join(parts)
+    return "<br>".join(parts)
 
 
 def _titled(words: str, inner: QWidget) -> QWidget:

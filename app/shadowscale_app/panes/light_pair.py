@@ -4,19 +4,22 @@ from __future__ import annotations
 
 import pyqtgraph as pg
 from PySide6.QtCore import Qt, Signal
+from PySide6.QtGui import QPen
 from PySide6.QtWidgets import QSplitter, QVBoxLayout, QWidget
 
 from shadowscale.session.session import Session
 from shadowscale.view.bins import binned
-from shadowscale.view.curves import Curve, contact_curves, light_curves
+from shadowscale.view.curves import Curve, contact_curves, fitted_curves
 from shadowscale.view.light_points import LightPoints, band_shifts, light_over_phase, sensible_range
 from shadowscale.view.looks import Look, look_of
 from shadowscale_app import theme
 from shadowscale_app.plots.marked import MarkedPicture
 from shadowscale_app.plots.picture import Picture
 from shadowscale_app.plots.points import Layer, Points
+from shadowscale_app.warm import READY
 
 LIGHT = frozenset({"photometry", "system", "solution", "view", "plan", "exclusions"})
+MOST_BARS, PLAIN_SIZE, CROWDED_SIZE = 1200, 5.0, 3.2  # of one band; pixels
 POINTS = frozenset({"photometry", "solution", "view", "plan", "exclusions"})
 
 
@@ -121,17 +124,12 @@ class LightPair(QWidget):
             tint = now.band(points.band, bands)
             shape = theme.BAND_SHAPES[points.band % len(theme.BAND_SHAPES)]
             good, aside = points.used, ~points.used
+            crowd = int(good.sum())
+            bars = None if look.binned or crowd > MOST_BARS else points.error[good]
+            size = CROWDED_SIZE if crowd > MOST_BARS else PLAIN_SIZE
             faint = 0.25 if look.binned else 0.75
             found.append(
-                Layer(
-                    points.x[good],
-                    points.y[good] + shift,
-                    None if look.binned else points.error[good],
-                    tint,
-                    shape,
-                    4.5 if not self.only else 5.5,
-                    faint,
-                )
+                Layer(points.x[good], points.y[good] + shift, bars, tint, shape, size, faint)
             )
             found.append(
                 Layer(points.x[aside], points.y[aside] + shift, None, now.aside, "x", 6.0, 0.8)
@@ -144,27 +142,32 @@ class LightPair(QWidget):
         return tuple(found)
 
     def _show_models(self, session: Session, look: Look) -> None:
-        for item in self._models:
-            self.curve.removeItem(item)
-        self._models = []
-        if session.system is None:
-            return
         now = theme.colours()
-        fitted = light_curves(session.system, markers=session.markers, magnitudes=look.magnitudes)
-        self._add_curves(fitted, look, pen=pg.mkPen(now.model, width=2.0))
-        contacts = contact_curves(session, magnitudes=look.magnitudes)
-        self._add_curves(
-            contacts, look, pen=pg.mkPen(now.contact, width=1.3, style=Qt.PenStyle.DashLine)
+        pens = (
+            pg.mkPen(now.model, width=2.0),
+            pg.mkPen(now.contact, width=1.3, style=Qt.PenStyle.DashLine),
         )
-
-    def _add_curves(self, curves: tuple[Curve, ...], look: Look, *, pen: pg.QtGui.QPen) -> None:
-        shown = [curve for curve in curves if curve.label not in look.hidden]
-        shifts = self._shifts if len(self._shifts) == len(shown) else (0.0,) * len(shown)
-        for curve, shift in zip(shown, shifts, strict=True):
-            item = pg.PlotCurveItem(curve.x, curve.y + shift, pen=pen, antialias=True)
+        wanted: list[tuple[Curve, float, QPen]] = []
+        if READY:
+            fitted = fitted_curves(session, magnitudes=look.magnitudes)
+            contacts = contact_curves(session, magnitudes=look.magnitudes)
+            for curves, pen in zip((fitted, contacts), pens, strict=True):
+                wanted += [(curve, shift, pen) for curve, shift in self._shifted(curves, look)]
+        while len(self._models) < len(wanted):
+            item = pg.PlotCurveItem(antialias=True)
             item.setZValue(10)
             self.curve.addItem(item, ignoreBounds=True)
             self._models.append(item)
+        for number, item in enumerate(self._models):
+            item.setVisible(number < len(wanted))
+            if number < len(wanted):
+                curve, shift, pen = wanted[number]
+                item.setData(curve.x, curve.y + shift, pen=pen)
+
+    def _shifted(self, curves: tuple[Curve, ...], look: Look) -> list[tuple[Curve, float]]:
+        shown = [curve for curve in curves if curve.label not in look.hidden]
+        shifts = self._shifts if len(self._shifts) == len(shown) else (0.0,) * len(shown)
+        return list(zip(shown, shifts, strict=True))
 
     def _show_axes(self, session: Session, look: Look) -> None:
         self.curve.setLabel("left", "magnitude" if look.magnitudes else "light")

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import pyqtgraph as pg
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QSizePolicy, QVBoxLayout, QWidget
 
 from shadowscale.view.pairs import Pair, choices, most_correlated, pair
 from shadowscale.view.written import symbol
@@ -30,6 +30,7 @@ class PairsPane(Pane):
         self.words = QLabel("")
         self.words.setWordWrap(True)
         self.words.setObjectName("quiet")
+        self.words.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
         row = QHBoxLayout()
         row.setContentsMargins(8, 4, 8, 2)
         for box, name in zip(self.boxes, ("Across", "Upwards"), strict=True):

@@ -7,6 +7,8 @@ from pathlib import Path
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QGridLayout, QLabel, QPushButton, QVBoxLayout, QWidget
 
+from shadowscale_app.plots.emblem import Emblem
+
 MOST_RECENT = 6
 
 
@@ -38,6 +40,7 @@ class StartPane(QWidget):
         opening.clicked.connect(self.open_wanted)
         hint = QLabel("or drop files anywhere on this window")
         hint.setObjectName("quiet")
+        column.addWidget(Emblem())
         for widget in (title, words, opening, hint):
             column.addWidget(widget, 0, Qt.AlignmentFlag.AlignLeft)
         column.addSpacing(10)
@@ -57,14 +60,15 @@ class StartPane(QWidget):
         _empty(self._samples)
         _empty(self._recent)
         if samples:
-            self._samples.addWidget(_heading("Samples: invented stars, ready to solve"), 0, 0, 1, 2)
+            self._samples.addWidget(_heading("Samples: invented stars, ready to solve"), 0, 0)
         for number, (title, words, path) in enumerate(samples):
             button = QPushButton(f"{title}\n{words}")
             button.setObjectName("card")
             button.setAccessibleName(title)
-            button.setMinimumWidth(340)
+            button.setToolTip(words)
+            button.setMinimumWidth(720)
             button.clicked.connect(lambda _=False, path=path: self.path_wanted.emit(str(path)))
-            self._samples.addWidget(button, 1 + number // 2, number % 2)
+            self._samples.addWidget(button, 1 + number, 0)
         if recent:
             self._recent.addWidget(_heading("Recent"))
         for path in recent[:MOST_RECENT]:

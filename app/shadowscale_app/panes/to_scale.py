@@ -10,6 +10,7 @@ from shadowscale.view.scene import scene
 from shadowscale.view.written import phase_text
 from shadowscale_app.panes.pane import Pane
 from shadowscale_app.plots.sky import Sky
+from shadowscale_app.warm import READY
 
 STEPS = 2000  # of the slider in one cycle
 PLAY_MS, PLAY_STEPS = 33, 6
@@ -78,7 +79,7 @@ class ToScalePane(Pane):
 
     def _draw(self, by_contacts: bool) -> None:
         system = (contact_system(self.session) if by_contacts else None) or self.session.system
-        if system is None:
+        if system is None or not READY:
             self.sky.show_scene(None)
             self.words.setText("")
             return

@@ -12,6 +12,7 @@ from shadowscale_app import theme
 from shadowscale_app.panes.pane import Pane
 from shadowscale_app.plots.picture import Picture
 from shadowscale_app.plots.points import Layer, Points
+from shadowscale_app.warm import READY
 
 SHAPES = {1: "o", 2: "s"}
 DASHES = {1: Qt.PenStyle.SolidLine, 2: Qt.PenStyle.DashLine}
@@ -91,7 +92,7 @@ class VelocitiesPane(Pane):
         self._lines = []
         now, system = theme.colours(), self.session.system
         self._cursor.setPen(pg.mkPen(now.quiet, style=Qt.PenStyle.DotLine))
-        if not wanted or system is None or not system.has("K1"):
+        if not READY or not wanted or system is None or not system.has("K1"):
             return
         for curve in velocity_curves(system):
             star = int(curve.label[-1])

@@ -5,7 +5,7 @@ from __future__ import annotations
 from pathlib import Path
 
 from PySide6.QtCore import QMarginsF, QPoint, QRectF, QSize, QSizeF, Qt
-from PySide6.QtGui import QImage, QPageSize, QPainter, QPdfWriter
+from PySide6.QtGui import QImage, QPageSize, QPaintDevice, QPainter, QPdfWriter
 from PySide6.QtWidgets import QFileDialog, QWidget
 
 KINDS = ("png", "svg", "pdf")
@@ -43,10 +43,7 @@ def save_figure(widget: QWidget, path: Path) -> None:
 def _save_png(widget: QWidget, path: Path) -> None:
     image = QImage(widget.size() * SCALE, QImage.Format.Format_ARGB32)
     image.fill(Qt.GlobalColor.transparent)
-    painter = QPainter(image)
-    painter.scale(SCALE, SCALE)
-    _draw(widget, painter)
-    painter.end()
+    _draw(widget, image, scale=SCALE)
     image.save(str(path))
 
 
@@ -58,9 +55,7 @@ def _save_svg(widget: QWidget, path: Path) -> None:
     generator.setSize(QSize(widget.width(), widget.height()))
     generator.setViewBox(QRectF(widget.rect()))
     generator.setTitle(widget.accessibleName())
-    painter = QPainter(generator)
-    _draw(widget, painter)
-    painter.end()
+    _draw(widget, generator, scale=1.0)
 
 
 def _save_pdf(widget: QWidget, path: Path) -> None:
@@ -70,12 +65,15 @@ def _save_pdf(widget: QWidget, path: Path) -> None:
     writer.setPageSize(QPageSize(millimetres, QPageSize.Unit.Millimeter))
     writer.setPageMargins(QMarginsF(0, 0, 0, 0))
     writer.setTitle(widget.accessibleName())
-    painter = QPainter(writer)
-    painter.scale(writer.width() / widget.width(), writer.height() / widget.height())
-    _draw(widget, painter)
-    painter.end()
+    _draw(widget, writer, scale=writer.width() / widget.width())
 
 
-def _draw(widget: QWidget, painter: QPainter) -> None:
-    painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-    widget.render(painter, QPoint())
+def _draw(widget: QWidget, device: QPaintDevice, *, scale: float) -> None:
+    painter = QPainter(device)
+    try:  # a painter that is not ended before its device goes takes the program with it
+        painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+        painter.scale(scale, scale)
+        # through the plain widget: a graphics view's own `render` leaves out its frame and background
+        QWidget.render(widget, painter, QPoint())
+    finally:
+        painter.end()

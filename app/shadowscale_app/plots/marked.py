@@ -195,7 +195,7 @@ class MarkedPicture(Picture):
 
     def _add_line(self, handle: Handle) -> None:
         high = 1.0 - LABEL_HEIGHT if not self._inverted else LABEL_HEIGHT
-        line = MarkerLine(handle, span=self._span(handle.group), high=high)
+        line = MarkerLine(handle, span=self._span(handle.group), high=high, quiet=not self.only)
         line.pulled.connect(self._pulled)
         line.let_go.connect(self._let_go)
         line.pointed_at.connect(self._pointed_at)

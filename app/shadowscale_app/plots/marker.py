@@ -30,11 +30,17 @@ class MarkerLine(pg.InfiniteLine):
     pointed_at = Signal(str, bool)
 
     def __init__(
-        self, handle: Handle, *, span: tuple[float, float] = (0.0, 1.0), high: float = 0.93
+        self,
+        handle: Handle,
+        *,
+        span: tuple[float, float] = (0.0, 1.0),
+        high: float = 0.93,
+        quiet: bool = False,
     ) -> None:
         super().__init__(pos=handle.phase, angle=90, movable=True, span=span)
         self.handle = handle
         self.focused = False
+        self._quiet = quiet
         self._held = False
         self._offset = 0.0
         side = 1.0 if handle.short in ("1", "2") else 0.0
@@ -53,9 +59,9 @@ class MarkerLine(pg.InfiniteLine):
             pg.mkPen(tint, width=2.0 if self.focused else 1.2, style=DASHES[self.handle.group])
         )
         self.setHoverPen(pg.mkPen(tint, width=2.2))
-        text = self.handle.short
+        text = "" if self._quiet else self.handle.short
         if hot:
-            text = f"{text}  {phase_text(self.handle.phase)}".strip()
+            text = f"{self.handle.short}  {phase_text(self.handle.phase)}".strip()
         self.label.fill = pg.mkBrush(theme.colour(now.raised, 0.92 if text else 0.0))
         self.label.border = pg.mkPen(tint if hot else now.line) if text else pg.mkPen(None)
         self.label.setColor(tint)
@@ -65,6 +71,8 @@ class MarkerLine(pg.InfiniteLine):
 
     def follow(self, handle: Handle) -> None:
         """Stand where the session says."""
+        if handle == self.handle:
+            return
         self.handle = handle
         self.setPos(handle.phase)
         self.dress()

@@ -83,6 +83,7 @@ class Points(pg.GraphicsObject):
 
     def viewTransformChanged(self) -> None:
         """Paint anew after the view moved."""
+        super().viewTransformChanged()
         self.prepareGeometryChange()
         self._kept = None
 

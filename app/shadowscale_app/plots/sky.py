@@ -61,7 +61,7 @@ class Sky(QWidget):
         )
         scale = min(area.width() / (2.1 * (reach + biggest)), (area.height() - 30) / (2.1 * tall))
         middle = area.center() + QPointF(0, -4)
-        painter.setPen(QPen(QColor(255, 255, 255, 60), 1, Qt.PenStyle.DashLine))
+        painter.setPen(QPen(QColor(255, 255, 255, 60), 1))
         for orbit in (scene.sky1, scene.sky2):
             painter.drawPolyline(_polygon(orbit, middle, scale))
         for disc in sorted(scene.discs, key=lambda disc: -disc.depth):

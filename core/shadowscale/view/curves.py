@@ -2,16 +2,24 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
+from typing import Generic, TypeVar
 
 import numpy as np
 
 from shadowscale.data.photometry import Floats
+from shadowscale.fit.solution import Solution
 from shadowscale.fit.system import System
-from shadowscale.session.session import Markers, Session
+from shadowscale.geometry.contacts import ContactSolution
+from shadowscale.session.session import Session
 from shadowscale.view.light_points import to_magnitudes
 
 COARSE, FINE = 360, 260  # samples of a cycle, and of each eclipse
+PLAIN_SPANS = ((-0.12, 0.12), (0.38, 0.62))  # where eclipses are, if nothing is known of them
+MARGIN = 0.15  # of an eclipse's duration, to either side
+
+Found = TypeVar("Found")
 
 
 @dataclass(frozen=True, eq=False)
@@ -23,18 +31,26 @@ class Curve:
     y: Floats
 
 
-def light_curves(
-    system: System, *, markers: Markers | None = None, magnitudes: bool = False
-) -> tuple[Curve, ...]:
-    """The model's light in each band over phases -0.25...0.75."""
-    from shadowscale.fit.curves import model_curves
+def fitted_curves(session: Session, *, magnitudes: bool = False) -> tuple[Curve, ...]:
+    """The light of the session's system in each band over phases -0.25...0.75; empty without one."""
+    if session.system is None:
+        return ()
+    contact = None if session.solution is None else session.solution.contact
+    return _FITTED.of(session.system, contact or session.contact, magnitudes)
 
-    phases = sampled_phases(markers)
-    curves = model_curves(system, phases)
-    return tuple(
-        Curve(band, phases, to_magnitudes(flux) if magnitudes else flux)
-        for band, flux in curves.light.items()
-    )
+
+def contact_curves(session: Session, *, magnitudes: bool = False) -> tuple[Curve, ...]:
+    """The light that the contact markers alone give; empty where that says nothing new."""
+    system = contact_system(session)
+    return () if system is None else _CONTACT.of(system, session.contact, magnitudes)
+
+
+def contact_system(session: Session) -> System | None:
+    """The present system with the geometry of the contact solution put in.
+
+    None where the markers lie where the solution measured its own contacts: nothing to compare.
+    """
+    return _SYSTEM.of(session.system, session.contact, session.solution)
 
 
 def velocity_curves(system: System) -> tuple[Curve, ...]:
@@ -47,39 +63,62 @@ def velocity_curves(system: System) -> tuple[Curve, ...]:
     return tuple(Curve(label, phases, y) for label, y in found.items() if y is not None)
 
 
-def sampled_phases(markers: Markers | None) -> Floats:
-    """Phases -0.25...0.75, closer inside the eclipses (everywhere near 0 and 0.5 without markers)."""
-    parts = [np.linspace(-0.25, 0.75, COARSE)]
-    spans = [(-0.12, 0.12), (0.38, 0.62)]
-    if markers is not None:
-        contacts = [c for c in (markers.primary, markers.secondary) if c is not None]
-        spans = [_widened(c[0], c[3]) for c in contacts]
-    parts += [np.linspace(*span, FINE) for span in spans]
+def sampled_phases(contact: ContactSolution | None) -> Floats:
+    """Phases -0.25...0.75, closer inside the eclipses (near 0 and 0.5 where nothing is known of them)."""
+    spans = list(PLAIN_SPANS)
+    if contact is not None:
+        eclipses = [
+            each.contacts for each in (contact.primary, contact.secondary) if each is not None
+        ]
+        spans = [_widened(contacts[0], contacts[3]) for contacts in eclipses]
+    parts = [np.linspace(-0.25, 0.75, COARSE), *(np.linspace(*span, FINE) for span in spans)]
     phases: Floats = np.unique(np.concatenate(parts))
     return phases[(phases >= -0.25) & (phases <= 0.75)]
 
 
-def _widened(first: float, last: float) -> tuple[float, float]:
-    margin = 0.15 * (last - first)
-    return first - margin, last + margin
+def _light_curves(
+    system: System, contact: ContactSolution | None, magnitudes: bool
+) -> tuple[Curve, ...]:
+    from shadowscale.fit.curves import model_curves
 
-
-def contact_curves(session: Session, *, magnitudes: bool = False) -> tuple[Curve, ...]:
-    """The light that the contact markers alone give; empty without them or without a model to fill the rest."""
-    system = contact_system(session)
-    return (
-        ()
-        if system is None
-        else light_curves(system, markers=session.markers, magnitudes=magnitudes)
+    phases = sampled_phases(contact)
+    curves = model_curves(system, phases)
+    return tuple(
+        Curve(band, phases, to_magnitudes(flux) if magnitudes else flux)
+        for band, flux in curves.light.items()
     )
 
 
-def contact_system(session: Session) -> System | None:
-    """The present system with the geometry of the contact solution put in."""
-    if session.system is None or session.contact is None:
+def _contact_system(
+    system: System | None, contact: ContactSolution | None, solution: Solution | None
+) -> System | None:
+    if system is None or contact is None or (solution is not None and contact is solution.contact):
         return None
     names = ("radius_sum", "radius_ratio", "inclination", "ecosw", "esinw")
-    values = {
-        name: session.contact.values[name] for name in names if name in session.contact.values
-    }
-    return session.system.with_values(values) if "radius_sum" in values else None
+    values = {name: contact.values[name] for name in names if name in contact.values}
+    return system.with_values(values) if "radius_sum" in values else None
+
+
+def _widened(first: float, last: float) -> tuple[float, float]:
+    margin = MARGIN * (last - first)
+    return first - margin, last + margin
+
+
+class _Last(Generic[Found]):
+    """Remembers the last call of a pure function: several pictures ask for the same in a row."""
+
+    def __init__(self, function: Callable[..., Found]) -> None:
+        self._function = function
+        self._kept: tuple[tuple[object, ...], Found] | None = None
+
+    def of(self, *arguments: object) -> Found:
+        """The function's value; arguments are compared by identity, they are frozen."""
+        kept = self._kept
+        if kept is not None and all(a is b for a, b in zip(kept[0], arguments, strict=True)):
+            return kept[1]
+        found = self._function(*arguments)
+        self._kept = (arguments, found)
+        return found
+
+
+_FITTED, _CONTACT, _SYSTEM = _Last(_light_curves), _Last(_light_curves), _Last(_contact_system)

@@ -5,15 +5,15 @@ from __future__ import annotations
 from typing import Any
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from shadowscale._compiled import compiled
 from shadowscale.data.photometry import Floats
 
 Rectangle = tuple[float, float, float, float]  # left, right, bottom, top
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _count(x: Any, y: Any, rectangle: Any, cells: Any) -> None:
     """Add 1 to cells[row, column] for every point in the rectangle; row 0 is the top."""
     height, width = cells.shape

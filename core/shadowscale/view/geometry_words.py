@@ -2,13 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 from shadowscale.fit.solution import DERIVED, Estimate
 from shadowscale.session.session import Session
 from shadowscale.view.written import symbol, unit_sign, value_and_error
 
-NAMES = ("r1", "r2", "inclination", "ecosw", "esinw")
+NAMES = ("r1", "r2", "inclination")
+SHAPE = ("ecosw", "esinw")  # shown where the fit has them free
 
 
 @dataclass(frozen=True)
@@ -22,23 +24,27 @@ class GeometryLine:
 def geometry_lines(session: Session) -> tuple[GeometryLine, ...]:
     """Contacts first, then the fit; only what there is."""
     lines = []
+    free = () if session.system is None else session.system.free
+    names = (*NAMES, *(name for name in SHAPE if name in free))
     contact, solution = session.contact, session.solution
     if contact is not None:
         known = {
             name: Estimate(value, contact.errors.get(name), contact.errors.get(name), DERIVED)
             for name, value in contact.values.items()
         }
-        lines.append(GeometryLine("contacts", _cells(known)))
+        lines.append(GeometryLine("contacts", _cells(known, names)))
     if solution is not None:
-        lines.append(GeometryLine("fit", _cells(dict(solution.estimates))))
+        lines.append(GeometryLine("fit", _cells(solution.estimates, names)))
     return tuple(line for line in lines if line.cells)
 
 
-def _cells(known: dict[str, Estimate]) -> tuple[tuple[str, str, str], ...]:
+def _cells(
+    known: Mapping[str, Estimate], names: tuple[str, ...]
+) -> tuple[tuple[str, str, str], ...]:
     found = []
-    for name in NAMES:
+    for name in names:
         estimate = known.get(name)
-        if estimate is None or (name in ("ecosw", "esinw") and not estimate.plus):
+        if estimate is None:
             continue
         value, error = value_and_error(name, estimate)
         sign = unit_sign("deg") if name == "inclination" else ""

@@ -1,0 +1,173 @@
+"""Saving, opening, asking before work is lost, recovery, export, figures."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from pathlib import Path
+
+import pytest
+from PySide6.QtWidgets import QMessageBox
+
+from shadowscale.session.journal import Journal
+from shadowscale_app.bench import Bench
+from shadowscale_app.desk import Change
+from shadowscale_app.dialogs.exporting import export
+from shadowscale_app.files import journal_folder
+from shadowscale_app.plots.figure import KINDS, save_figure
+from shadowscale_app.samples import samples
+
+ANSWER = QMessageBox.StandardButton
+
+
+def opened(bench: Bench) -> None:
+    """Open the first sample."""
+    bench.open_paths([str(samples()[0][2])])
+
+
+def answer(monkeypatch: pytest.MonkeyPatch, button: QMessageBox.StandardButton) -> list[str]:
+    """Answer every question with one button; what was asked."""
+    asked: list[str] = []
+
+    def question(_parent: object, _title: str, text: str, *_: object) -> QMessageBox.StandardButton:
+        asked.append(text)
+        return button
+
+    monkeypatch.setattr(QMessageBox, "question", question)
+    return asked
+
+
+def rename(bench: Bench) -> None:
+    """Some step."""
+    bench.desk.apply(Change("Rename", replace(bench.desk.session, name="other")))
+
+
+def test_the_title_shows_unsaved_work(bench: Bench, tmp_path: Path) -> None:
+    opened(bench)
+    assert not bench.isWindowModified()
+    rename(bench)
+    assert bench.isWindowModified()
+    assert bench.windowTitle().startswith("other[*]")
+
+    assert bench.files.save_to(tmp_path / "work.json")
+
+    assert not bench.isWindowModified()
+    assert tmp_path / "work.json" == bench.files.recent()[0]
+
+
+def test_how_things_are_looked_at_is_no_unsaved_work(bench: Bench) -> None:
+    opened(bench)
+    bench.actions_table.by_name["magnitudes"].trigger()
+
+    assert bench.desk.session.view["magnitudes"] is True
+    assert not bench.desk.unsaved
+    assert bench.desk.history.undo_label is None
+
+
+def test_what_is_saved_opens_again(bench: Bench, tmp_path: Path) -> None:
+    opened(bench)
+    rename(bench)
+    bench.files.save_to(tmp_path / "work.json")
+
+    bench.open_paths([str(tmp_path / "work.json")])
+
+    assert bench.desk.session.name == "other"
+    assert bench.desk.session.photometry is not None
+
+
+def test_closing_asks_and_cancel_keeps_the_window(
+    bench: Bench, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    opened(bench)
+    rename(bench)
+    asked = answer(monkeypatch, ANSWER.Cancel)
+
+    assert not bench.close()
+    assert bench.isVisible()
+    assert asked == ["Save the changes of other?"]
+    answer(monkeypatch, ANSWER.Discard)
+    assert bench.close()
+
+
+def test_a_place_that_cannot_be_written_is_told_and_nothing_is_lost(
+    bench: Bench, told: list, tmp_path: Path
+) -> None:
+    opened(bench)
+    rename(bench)
+    (tmp_path / "folder.json").mkdir()
+
+    assert not bench.files.save_to(tmp_path / "folder.json")
+
+    assert "folder.json" in told[0].sentence
+    assert bench.desk.unsaved
+    told.clear()
+
+
+def test_work_of_a_window_that_is_gone_is_offered_and_opens(
+    bench: Bench, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    opened(bench)
+    rename(bench)
+    journal_folder().mkdir(parents=True, exist_ok=True)
+    journal = Journal(journal_folder())
+    journal.write(bench.desk.session)
+    text = journal.file.read_text(encoding="utf-8").replace(
+        '"pid": ', '"pid": 99'
+    )  # no such process
+    journal.file.write_text(text, encoding="utf-8")
+    bench.desk.begin(bench.desk.session)
+    asked = answer(monkeypatch, ANSWER.Yes)
+
+    bench.files.offer_recovery()
+
+    assert len(asked) == 1
+    assert "other" in asked[0]
+    assert bench.desk.session.name == "other"
+    assert bench.desk.unsaved
+    assert not journal.file.exists()
+
+
+def test_the_journal_is_written_only_where_there_is_something_to_lose(bench: Bench) -> None:
+    opened(bench)
+    bench.files.write_journal()
+    before = set(journal_folder().glob("*"))
+    rename(bench)
+
+    bench.files.write_journal()
+
+    assert len(set(journal_folder().glob("*")) - before) == 1
+    bench.files.end()
+    assert before == set(journal_folder().glob("*"))
+
+
+def test_export_writes_the_sheet_and_asks_before_it_replaces(
+    bench: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    written = export(bench, bench.desk.session, tmp_path)
+    assert {"sheet.json", "sheet.csv", "sheet.tex", "light_curve.csv"} <= {
+        path.name for path in written
+    }
+    asked = answer(monkeypatch, ANSWER.No)
+
+    again = export(bench, bench.desk.session, tmp_path)
+
+    assert again == ()
+    assert "sheet.json" in asked[0]
+
+
+@pytest.mark.parametrize("kind", KINDS)
+def test_any_picture_can_be_saved(bench: Bench, tmp_path: Path, kind: str) -> None:
+    heads = {"png": b"\x89PNG", "svg": b"<?xml", "pdf": b"%PDF"}
+    picture = bench.panes["Folded curve"].pair.curve
+
+    save_figure(picture, tmp_path / f"figure.{kind}")
+
+    content = (tmp_path / f"figure.{kind}").read_bytes()
+    assert content.startswith(heads[kind])
+    assert len(content) > 3000
+
+
+def test_another_ending_is_refused_in_words(bench: Bench, tmp_path: Path) -> None:
+    with pytest.raises(
+        ValueError, match=r"expected a file ending in \.png, \.svg or \.pdf, found 'figure\.bmp'"
+    ):
+        save_figure(bench.panes["To scale"].sky, tmp_path / "figure.bmp")

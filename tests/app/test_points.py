@@ -1,0 +1,73 @@
+"""Brushing points away with a reason, and back."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from hands import draw
+from shadowscale_app.bench import Bench
+from shadowscale_app.dialogs.brushing import BACK, BrushDialog
+
+
+def brush(bench: Bench, answer: str | None) -> int:
+    """Draw round the bottom of secondary eclipse and answer the question; how many points were asked about."""
+    counts: list[int] = []
+    bench.points.ask = lambda _parent, count: (counts.append(count), answer)[1]
+    if not bench.brushing:
+        bench.actions_table.by_name["brush"].trigger()
+    curve = bench.panes["Eclipses"].pairs["secondary"].curve
+    draw(curve, [(0.492, 0.76), (0.508, 0.76), (0.508, 0.70), (0.492, 0.70), (0.492, 0.755)])
+    return counts[0] if counts else 0
+
+
+def test_points_drawn_round_are_set_aside_with_the_reason(bench: Bench) -> None:
+    used = int(bench.desk.session.photometry.used.sum())
+
+    count = brush(bench, "clouds in the west")
+
+    photometry = bench.desk.session.photometry
+    assert count > 10
+    assert used - count == int(photometry.used.sum())
+    aside = photometry.why == photometry.reasons.index("clouds in the west")
+    phase = bench.desk.session.solution.light.phase[aside]
+    assert np.all((phase > 0.491) & (phase < 0.509))
+    last = bench.desk.session.exclusions[-1]
+    assert (last.table, last.file, last.reason) == ("light", "nights.csv", "clouds in the west")
+    assert sorted(photometry.line[aside]) == sorted(last.lines)
+
+
+def test_they_come_back_by_the_brush_and_by_undo(bench: Bench) -> None:
+    before = bench.desk.session.photometry
+    brush(bench, "flare")
+    bench.desk.undo()
+    assert before is bench.desk.session.photometry
+
+    brush(bench, "flare")
+    brush(bench, BACK)
+
+    assert int(before.used.sum()) == int(bench.desk.session.photometry.used.sum())
+    assert "flare" not in [each.reason for each in bench.desk.session.exclusions]
+
+
+def test_giving_up_changes_nothing(bench: Bench) -> None:
+    before = bench.desk.session
+
+    assert brush(bench, None) > 0
+
+    assert bench.desk.session is before
+
+
+def test_points_that_the_reader_rejected_do_not_come_back(bench: Bench) -> None:
+    flagged = bench.desk.session.photometry.why.tolist().index(1)
+
+    bench.restore_points()
+
+    assert bench.desk.session.photometry.why[flagged] == 1
+
+
+def test_the_question_gives_the_reason(bench: Bench) -> None:
+    dialog = BrushDialog(3, bench)
+    dialog.reason.setEditText("satellite")
+    assert dialog.reason.currentText() == "satellite"
+    assert not dialog.back
+    dialog.deleteLater()
