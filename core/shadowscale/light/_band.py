@@ -17,8 +17,8 @@ are computed at each point. No checks, nothing allocated per point, the GIL rele
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 
+from shadowscale._compiled import compiled
 from shadowscale.light._grid import FIXED, grid_loss, grid_losses
 from shadowscale.light.proximity import (
     SHAPES_FULL_SIZE,
@@ -37,7 +37,7 @@ _NODES = np.array([-np.sqrt(0.6), 0.0, np.sqrt(0.6)])
 _WEIGHTS = np.array([5.0, 8.0, 5.0]) / 18.0
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _prox(share1, amplitudes, shapes):
     """The small effects together, from their shapes."""
     share2 = 1.0 - share1
@@ -50,7 +50,7 @@ def _prox(share1, amplitudes, shapes):
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _effects(sky, sin2i, ecosw, share1, amplitudes, shapes, local, first):
     """The small effects at one instant and their derivatives (into `local`).
 
@@ -93,7 +93,7 @@ def _effects(sky, sin2i, ecosw, share1, amplitudes, shapes, local, first):
     return by_cycles
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def band_values(
     time, period, epoch, half_exposure, third, grid, columns, constants, light_time, share1,
     effects_on, amplitudes, sin2i, ecosw, flux,
@@ -112,7 +112,7 @@ def band_values(
         flux[i] = (1.0 - third) * light + third
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def band_rows(
     time, period, epoch, half_exposure, third, grid, constants, light_time, share1, brightness,
     ratio, mean1, mean2, effects_on, amplitudes, sin2i, ecosw, flux, active, rows,
@@ -179,7 +179,7 @@ def band_rows(
     return found
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def normal_equations(
     model, observed, weight, starts, trend, slopes, active, found, rows, columns, matrix, gradient,
     levels, expected,

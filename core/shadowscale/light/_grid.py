@@ -27,8 +27,8 @@ darkening. For exposures the values are integrands in theta.
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 
+from shadowscale._compiled import compiled
 from shadowscale.light._table import read_table
 from shadowscale.orbit._kernels import SKY_SIZE, sky_point, sky_point_value
 
@@ -40,14 +40,14 @@ CLOSE = 0.04  # |1 - k| over min(1, k) below which the inner contacts are crowde
 _TINY = 1e-12
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def secondary_phase(ecosw, esinw):
     """Phase of the conjunction with star 2 behind (Sterne's exact formula; Kopal 1959)."""
     root = np.sqrt(1.0 - ecosw * ecosw - esinw * esinw)
     return 0.5 + (np.arctan(ecosw / root) + ecosw * root / (1.0 - esinw * esinw)) / np.pi
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _closest(constants, light_time, conjunction, reach, sky):
     """Phase of least separation near a conjunction."""
     low, high = conjunction - reach, conjunction + reach
@@ -63,7 +63,7 @@ def _closest(constants, light_time, conjunction, reach, sky):
     return 0.5 * (low + high)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _crossing(constants, light_time, wanted, inside, step):
     """Phase, away from `inside` in the direction of `step`, where the separation reaches `wanted`."""
     near = inside
@@ -84,7 +84,7 @@ def _crossing(constants, light_time, wanted, inside, step):
     return 0.5 * (near + far)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _add_piece(grid, low, high, cells, eclipse):
     """One more piece in the header."""
     number = int(grid[MOST_PIECES, 0])
@@ -99,7 +99,7 @@ def _add_piece(grid, low, high, cells, eclipse):
     grid[MOST_PIECES, 0] = number + 1
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def lay_pieces(constants, light_time, radius_sum, ratio, ecosw, esinw, grid):
     """Cut both eclipses at their contacts; returns the rows that the grid needs.
 
@@ -138,7 +138,7 @@ def lay_pieces(constants, light_time, radius_sum, ratio, ecosw, esinw, grid):
     return int(grid[number - 1, 3]) + int(grid[number - 1, 2]) + 1
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def fill_grid(
     constants, light_time, radius_sum, ratio, share1, brightness, mean1, mean2, table1, table2,
     averaged, grid,
@@ -173,7 +173,7 @@ def fill_grid(
         _integrate(grid, columns)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _loss(
     sky, primary, radius_sum, ratio, share1, brightness, mean1, mean2, table1, table2, hidden, row
 ):  # fmt: skip
@@ -221,7 +221,7 @@ def _loss(
         row[FIXED + count_ld + j] += by_ratio * mean2[1 + j] / mean2[0]
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _slopes(grid, start, cells, columns):
     """Slopes of the derivative columns by fourth-order differences, one-sided at the ends."""
     last = start + cells
@@ -243,7 +243,7 @@ def _slopes(grid, start, cells, columns):
             ) / 12.0  # fmt: skip
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _integrate(grid, columns):
     """Running integrals of every column over phase, from the first piece of each eclipse on."""
     for number in range(int(grid[MOST_PIECES, 0])):
@@ -263,7 +263,7 @@ def _integrate(grid, columns):
                 grid[at + 1, 2 * columns + j] = total
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _cell(grid, phase, eclipse):
     """Row of the node before `phase` and the place in the cell; the phase lies inside the eclipse."""
     number = 0
@@ -283,7 +283,7 @@ def _cell(grid, phase, eclipse):
     return int(grid[number, 3]) + cell, place - cell, np.pi / cells
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _near(grid, cycles, eclipse, margin):
     """The phase of `cycles` beside an eclipse, and whether the eclipse (with a margin) holds it."""
     first, last = grid[MOST_PIECES, 1 + 2 * eclipse], grid[MOST_PIECES, 2 + 2 * eclipse]
@@ -292,7 +292,7 @@ def _near(grid, cycles, eclipse, margin):
     return phase, last > first and phase <= last + margin
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _integral(grid, phase, eclipse, column, columns):
     """The integral of one column up to `phase`."""
     first, last = grid[MOST_PIECES, 1 + 2 * eclipse], grid[MOST_PIECES, 2 + 2 * eclipse]
@@ -302,7 +302,7 @@ def _integral(grid, phase, eclipse, column, columns):
     return _cell_integral(grid, row, t, width, column, columns)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _cell_integral(grid, row, t, width, column, columns):
     """The running integral at the place t in the cell after `row`."""
     t2 = t * t
@@ -315,7 +315,7 @@ def _cell_integral(grid, row, t, width, column, columns):
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def grid_loss(grid, columns, cycles, half_exposure):
     """The loss of light at `cycles`, averaged over the exposure."""
     total = 0.0
@@ -337,7 +337,7 @@ def grid_loss(grid, columns, cycles, half_exposure):
     return total
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def grid_losses(grid, columns, cycles, half_exposure, out):
     """The loss and its derivatives into `out` (columns,); returns whether there is any."""
     touched = False
@@ -364,7 +364,7 @@ def grid_losses(grid, columns, cycles, half_exposure, out):
     return touched
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _add_average(grid, columns, phase, eclipse, half_exposure, out):
     """Add the exposure's average of every column."""
     first, last = grid[MOST_PIECES, 1 + 2 * eclipse], grid[MOST_PIECES, 2 + 2 * eclipse]

@@ -25,9 +25,9 @@ from __future__ import annotations
 import math
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from shadowscale._compiled import compiled
 from shadowscale.light.laws import LINEAR, LOGARITHMIC, POWER_2, QUADRATIC, SQUARE_ROOT
 
 Floats = NDArray[np.float64]
@@ -63,7 +63,7 @@ def _ladder() -> tuple[NDArray[np.int64], Floats, Floats]:
 _START, _SIN2, _WEIGHT = _ladder()
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def contact_distances(d: float, p: float) -> tuple[float, float, float]:
     """1+p-d, d+p-1 and 1+d-p, each without cancellation near its zero."""
     outer = 1.0 + (p - d) if p > 1.0 else (1.0 - d) + p
@@ -72,7 +72,7 @@ def contact_distances(d: float, p: float) -> tuple[float, float, float]:
     return outer, inner, cover
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _segment(angle: float) -> float:
     """angle - sin(angle) cos(angle), the area of a circle's segment; a series for small angles."""
     if angle > 0.4:
@@ -83,7 +83,7 @@ def _segment(angle: float) -> float:
     return 2.0 / 3.0 * angle**3 * series
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _arc_moments(angle: float) -> tuple[float, float]:
     """Integrals of sin^2(phi/2) and sin^4(phi/2) from 0 to angle; series for small angles."""
     if angle > 0.4:
@@ -100,7 +100,7 @@ def _arc_moments(angle: float) -> tuple[float, float]:
     return first, second
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _elliptic(kc: float, p: float, a: float, b: float) -> tuple[float, float, float]:
     """Bulirsch's cel(kc, p, a, b), and B = cel(kc, 1, 1, 0), D = cel(kc, 1, 0, 1), in one descent.
 
@@ -139,7 +139,7 @@ def _elliptic(kc: float, p: float, a: float, b: float) -> tuple[float, float, fl
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def closed_forms(
     d: float, p: float, outer: float, inner: float, cover: float
 ) -> tuple[float, float, float, float, float, float, float, float, float]:
@@ -208,7 +208,7 @@ def closed_forms(
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _rung(partial: bool, top2: float, kc2: float) -> int:
     """The step of the ladder for this geometry."""
     if partial:  # branch point at tan(s/2) = i kc/(1+k)
@@ -224,7 +224,7 @@ def _rung(partial: bool, top2: float, kc2: float) -> int:
     return step
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def arc_power(
     d: float, p: float, outer: float, inner: float, cover: float, power: float, area: float
 ) -> tuple[float, float, float, float, float, float]:
@@ -288,7 +288,7 @@ def arc_power(
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def arc_roots(
     d: float, p: float, outer: float, inner: float, cover: float, area: float
 ) -> tuple[float, float, float, float, float, float]:
@@ -341,7 +341,7 @@ def arc_roots(
     )
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def mean_intensity_point(law: int, c: Floats, out: Floats) -> None:
     """out[0] = mean intensity of the disc over that of its centre, out[1+j] = its derivative to c[j]."""
     if law == LINEAR:
@@ -372,7 +372,7 @@ def mean_intensity_point(law: int, c: Floats, out: Floats) -> None:
         out[4] = -0.5
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def eclipse_point(d: float, p: float, law: int, c: Floats, out: Floats) -> None:
     """Hidden fraction of the light and its derivatives, at one separation.
 
@@ -443,7 +443,7 @@ def eclipse_point(d: float, p: float, law: int, c: Floats, out: Floats) -> None:
     out[0] = min(1.0, max(0.0, beta))
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def eclipse_points(d: Floats, p: float, law: int, c: Floats, out: Floats) -> None:
     """eclipse_point for every separation of d (n,), into the rows of out (n, 3+m)."""
     for i in range(d.shape[0]):

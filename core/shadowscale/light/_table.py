@@ -22,9 +22,9 @@ from __future__ import annotations
 import math
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from shadowscale._compiled import compiled
 from shadowscale.light._kernels import eclipse_point
 
 Floats = NDArray[np.float64]
@@ -47,7 +47,7 @@ def table_columns(count: int) -> int:
     return 6 * (3 + count)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _extent(side: int, p: float) -> tuple[float, float]:
     """Length of a side, and distance of the nearest other branch point behind its contact."""
     e = abs(1.0 - p)
@@ -59,7 +59,7 @@ def _extent(side: int, p: float) -> tuple[float, float]:
     return h, h
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _parts(length: float, scale: float) -> tuple[float, int]:
     """x1 and the number of cells of the coarse part."""
     fine = _FINE * length
@@ -67,7 +67,7 @@ def _parts(length: float, scale: float) -> tuple[float, int]:
     return first, math.ceil(math.log(fine / first) / _COARSE)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def table_rows(p: float) -> int:
     """Rows that the table of a pair of stars needs."""
     rows = 1
@@ -78,7 +78,7 @@ def table_rows(p: float) -> int:
     return rows
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _point(side: int, x: float, p: float, law: int, c: Floats, out: Floats) -> None:
     """eclipse_point at distance x from a side's contact."""
     if side == 0:
@@ -92,7 +92,7 @@ def _point(side: int, x: float, p: float, law: int, c: Floats, out: Floats) -> N
         out[1] = -out[1]
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _store(values: Floats, table: Floats, start: int, cells: int) -> None:
     """Polynomials of `cells` cells from nodes -2...cells+2; values[:, 0] is the slope of beta."""
     columns = values.shape[1] - 1
@@ -120,7 +120,7 @@ def _store(values: Floats, table: Floats, start: int, cells: int) -> None:
                 row[6 * j + i] = total
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _fill_near(
     side: int, first: float, p: float, law: int, c: Floats, table: Floats, start: int
 ) -> None:
@@ -140,7 +140,7 @@ def _fill_near(
     _store(values, table, start, _NEAR)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _fill_coarse(
     side: int,
     first: float,
@@ -163,7 +163,7 @@ def _fill_coarse(
     _store(values, table, start, cells)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _fill_far(
     side: int, length: float, p: float, law: int, c: Floats, table: Floats, start: int
 ) -> None:
@@ -179,7 +179,7 @@ def _fill_far(
     _store(values, table, start, _FAR)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def fill_table(p: float, law: int, c: Floats, table: Floats) -> None:
     """Fill the table: (table_rows(p), table_columns(len(c))) float64, written in place.
 
@@ -214,7 +214,7 @@ def fill_table(p: float, law: int, c: Floats, table: Floats) -> None:
         start += _FAR
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _locate(table: Floats, d: float) -> tuple[int, float]:
     """Row and place in its cell; row 0 outside eclipse, row -1 where all is hidden."""
     e = table[0, 1]
@@ -248,7 +248,7 @@ def _locate(table: Floats, d: float) -> tuple[int, float]:
     return int(table[0, at + 5]) + cell, place - cell
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def read_table_value(table: Floats, p: float, d: float) -> float:
     """The hidden fraction at separation d >= 0."""
     row, t = _locate(table, d)
@@ -259,7 +259,7 @@ def read_table_value(table: Floats, p: float, d: float) -> float:
     return float(min(1.0, max(0.0, value)))
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def read_table(table: Floats, p: float, d: float, out: Floats) -> None:
     """Hidden fraction and derivatives at separation d >= 0, in out as by eclipse_point."""
     columns = table.shape[1] // 6

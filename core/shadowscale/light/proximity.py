@@ -25,9 +25,9 @@ from __future__ import annotations
 from math import acos, expm1, pi, radians, sin, sqrt
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
+from shadowscale._compiled import compiled
 from shadowscale.constants import C_KM_S, H_PLANCK, K_BOLTZMANN, C
 from shadowscale.orbit._kernels import COS_L, COS_L_BY, RHO, RHO_BY, SIN_L, SIN_L_BY
 
@@ -42,7 +42,7 @@ RADIATIVE_EXPONENT, CONVECTIVE_EXPONENT = 0.25, 0.08
 RADIATIVE_FROM, CONVECTIVE_TO = 7500.0, 6500.0  # [K]
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def lambert_phase(cos_angle: float) -> tuple[float, float]:
     """Lambert's phase law and its derivative, both to the cosine of the phase angle."""
     bounded = min(1.0, max(-1.0, cos_angle))
@@ -50,7 +50,7 @@ def lambert_phase(cos_angle: float) -> tuple[float, float]:
     return (sqrt(1.0 - bounded * bounded) + unlit * bounded) / pi, unlit / pi
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def proximity_shapes(
     rho: float, s: float, c: float, sin2i: float, ecosw: float, out: Floats
 ) -> None:
@@ -66,7 +66,7 @@ def proximity_shapes(
     out[BEAMING2] = c + ecosw
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def proximity_full(sky: Floats, sin2i: float, ecosw: float, out: Floats) -> None:
     """The shapes and their derivatives from what `sky_full` gives; SHAPES_FULL_SIZE places.
 

@@ -40,13 +40,11 @@ from __future__ import annotations
 from math import atan2, pi, sqrt
 
 import numpy as np
-from numba import njit
 from numpy.typing import NDArray
 
-Floats = NDArray[np.float64]
+from shadowscale._compiled import fused
 
-# "contract" lets a*b + c be one instruction; NaN and infinity keep their meaning.
-compiled = njit(cache=True, nogil=True, error_model="numpy", fastmath={"contract"})
+Floats = NDArray[np.float64]
 
 TURN = 2 * pi
 QUARTER_TURN, QUARTER_TURN_REST = 1.5707963267948966, 6.123233995736766e-17  # their sum is pi/2
@@ -74,7 +72,7 @@ SKY_FULL_SIZE = 25
 VELOCITY_SIZE = 4
 
 
-@compiled
+@fused
 def _sine_cosine(x: float) -> tuple[float, float]:
     """sin x and cos x together, for x within a few turns: twice as fast as two library calls.
 
@@ -105,7 +103,7 @@ def _sine_cosine(x: float) -> tuple[float, float]:
     return (-sine if place & 2 else sine), (-cosine if (place + 1) & 2 else cosine)
 
 
-@compiled
+@fused
 def _turned(sin_e: float, cos_e: float, step: float) -> tuple[float, float]:
     """Sine and cosine of the angle moved by a step below half a radian."""
     z = step * step
@@ -118,7 +116,7 @@ def _turned(sin_e: float, cos_e: float, step: float) -> tuple[float, float]:
     return sin_e * c + cos_e * s, cos_e * c - sin_e * s
 
 
-@compiled
+@fused
 def _nudged(sin_e: float, cos_e: float, step: float) -> tuple[float, float]:
     """The same for a step below 1e-2."""
     z = step * step
@@ -127,7 +125,7 @@ def _nudged(sin_e: float, cos_e: float, step: float) -> tuple[float, float]:
     return sin_e * c + cos_e * s, cos_e * c - sin_e * s
 
 
-@compiled
+@fused
 def _step(e: float, sin_e: float, cos_e: float, excess: float) -> float:
     """Correction of E where E - e sin E - M = excess: the reverted series to the fourth order."""
     inverse = 1.0 / (1.0 - e * cos_e)
@@ -138,7 +136,7 @@ def _step(e: float, sin_e: float, cos_e: float, excess: float) -> float:
     return y * (1.0 - y * (a - y * ((2 * square - b) + y * (5 * a * b + a / 12 - 5 * a * square))))
 
 
-@compiled
+@fused
 def _markley(mean: float, e: float) -> tuple[float, float, float]:
     """E, sin E, cos E for every e < 1: a cubic start, one fifth-order correction.
 
@@ -161,7 +159,7 @@ def _markley(mean: float, e: float) -> tuple[float, float, float]:
     return start + step, sin_e, cos_e
 
 
-@compiled
+@fused
 def _kepler(mean: float, e: float) -> tuple[float, float, float]:
     """E, sin E, cos E for -pi <= mean <= pi."""
     if e > SERIES_LIMIT:
@@ -177,14 +175,14 @@ def _kepler(mean: float, e: float) -> tuple[float, float, float]:
     return mean + (step + last), sin_e, cos_e
 
 
-@compiled
+@fused
 def eccentric_anomaly(mean: float, ecc: float) -> float:
     """E of Kepler's equation E - e sin E = M, for any M [rad] and 0 <= e < 1."""
     turns: float = TURN * np.rint(mean / TURN)
     return _kepler(mean - turns, ecc)[0] + turns
 
 
-@compiled
+@fused
 def orbit_constants(ecosw: float, esinw: float, cos2i: float, out: Floats) -> None:
     """What does not depend on time; `out` has CONSTANTS_SIZE places, named above."""
     h, k = esinw, ecosw
@@ -227,7 +225,7 @@ def orbit_constants(ecosw: float, esinw: float, cos2i: float, out: Floats) -> No
     out[Z_PRIMARY_COS2I] = 0.5 * rho / max(sin_i, TINY_SEPARATION)
 
 
-@compiled
+@fused
 def _anomaly(cycles: float, constants: Floats) -> tuple[float, float]:
     """sin E and cos E, light time left out."""
     turns = constants[MEAN_PRIMARY] + (cycles - np.rint(cycles))
@@ -236,14 +234,14 @@ def _anomaly(cycles: float, constants: Floats) -> tuple[float, float]:
     return sin_e, cos_e
 
 
-@compiled
+@fused
 def _longitude(sin_e: float, cos_e: float, constants: Floats) -> tuple[float, float]:
     """sin F and cos F from sin E and cos E."""
     c, s = constants[COS_OMEGA], constants[SIN_OMEGA]
     return sin_e * c + cos_e * s, cos_e * c - sin_e * s
 
 
-@compiled
+@fused
 def _place(sin_f: float, cos_f: float, constants: Floats) -> tuple[float, float]:
     """X and Y, equations (2) and (3)."""
     mix = constants[A_MIX]
@@ -253,7 +251,7 @@ def _place(sin_f: float, cos_f: float, constants: Floats) -> tuple[float, float]
     )
 
 
-@compiled
+@fused
 def sky_point_value(cycles: float, constants: Floats, light_time: float) -> tuple[float, float]:
     """Sky separation and z = (star 2 minus star 1, away from the observer), units of a."""
     sin_e, cos_e = _anomaly(cycles, constants)
@@ -268,7 +266,7 @@ def sky_point_value(cycles: float, constants: Floats, light_time: float) -> tupl
     return sqrt(x * x + y * y * constants[COS2I]), -y * constants[SIN_I]
 
 
-@compiled
+@fused
 def _derivatives(
     sin_f: float, cos_f: float, constants: Floats
 ) -> tuple[float, float, float, float, float, float]:
@@ -291,7 +289,7 @@ def _derivatives(
     )
 
 
-@compiled
+@fused
 def _seen(
     cycles: float, constants: Floats, light_time: float
 ) -> tuple[
@@ -318,7 +316,7 @@ def _seen(
     return x, y, x_tau, x_k, x_h, y_tau, y_k, y_h, tau_c, tau_k, tau_h, tau_i, behind
 
 
-@compiled
+@fused
 def sky_point(cycles: float, constants: Floats, light_time: float, out: Floats) -> None:
     """Separation, z, and the derivatives of the separation at fixed observed cycles; SKY_SIZE places."""
     x, y, x_tau, x_k, x_h, y_tau, y_k, y_h, tau_c, tau_k, tau_h, tau_i, tau_light = _seen(
@@ -338,14 +336,14 @@ def sky_point(cycles: float, constants: Floats, light_time: float, out: Floats) 
     out[DELTA_LIGHT_TIME] = delta_tau * tau_light
 
 
-@compiled
+@fused
 def sky_rows(cycles: Floats, constants: Floats, light_time: float, out: Floats) -> None:
     """`sky_point` of many instants, into out (n, SKY_SIZE)."""
     for i in range(cycles.size):
         sky_point(cycles[i], constants, light_time, out[i])
 
 
-@compiled
+@fused
 def sky_full(cycles: float, constants: Floats, light_time: float, out: Floats) -> None:
     """As `sky_point`, with rho, sin(nu + w), cos(nu + w), each with five derivatives; SKY_FULL_SIZE places."""
     x, y, x_tau, x_k, x_h, y_tau, y_k, y_h, tau_c, tau_k, tau_h, tau_i, tau_light = _seen(
@@ -383,7 +381,7 @@ def sky_full(cycles: float, constants: Floats, light_time: float, out: Floats) -
     out[DELTA_COS2I] += 0.5 * y * y * inverse
 
 
-@compiled
+@fused
 def velocity_point(cycles: float, constants: Floats, out: Floats) -> None:
     """w = cos(nu + omega) + e cos omega, and w to cycles, ecosw, esinw; VELOCITY_SIZE places.
 
@@ -402,7 +400,7 @@ def velocity_point(cycles: float, constants: Floats, out: Floats) -> None:
     out[3] = across * (x * y_h - y * x_h)
 
 
-@compiled
+@fused
 def velocity_point_value(cycles: float, constants: Floats) -> float:
     """w = cos(nu + omega) + e cos omega alone."""
     sin_e, cos_e = _anomaly(cycles, constants)

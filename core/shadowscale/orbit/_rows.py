@@ -2,12 +2,11 @@
 
 from __future__ import annotations
 
-from numba import njit
-
+from shadowscale._compiled import compiled
 from shadowscale.orbit._kernels import velocity_point
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def velocity_rows(time, period, epoch, constants, out):
     """w of each time and w to period, epoch, ecosw, esinw, into out (n, 5)."""
     for i in range(time.size):

@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import ArrayLike, NDArray
 
+from shadowscale._compiled import compiled
 from shadowscale.orbit import _kernels
 
 Floats = NDArray[np.float64]
@@ -63,7 +63,7 @@ def _checked(eccentricity: float) -> float:
     return float(eccentricity)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _fill_anomalies(mean: Floats, e: float, out: Floats) -> None:
     for i in range(mean.size):
         out[i] = _kernels.eccentric_anomaly(mean[i], e)

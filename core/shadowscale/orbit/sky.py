@@ -10,9 +10,9 @@ from __future__ import annotations
 from math import pi
 
 import numpy as np
-from numba import njit
 from numpy.typing import ArrayLike, NDArray
 
+from shadowscale._compiled import compiled
 from shadowscale.orbit import _kernels
 from shadowscale.orbit.elements import Orbit
 from shadowscale.orbit.longitude import cycles_at
@@ -121,7 +121,7 @@ def _track(times: ArrayLike, orbit: Orbit) -> Floats:
     return out
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _fill_track(cycles: Floats, constants: Floats, light_time: float, out: Floats) -> None:
     for i in range(cycles.size):
         out[i, 0], out[i, 1] = _kernels.sky_point_value(cycles[i], constants, light_time)

@@ -6,9 +6,9 @@ rv1 = gamma1 + K1 w,   rv2 = gamma2 - K2 w,   w = cos(nu + omega) + e cos omega
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
 from numpy.typing import ArrayLike, NDArray
 
+from shadowscale._compiled import compiled
 from shadowscale.orbit import _kernels
 from shadowscale.orbit.elements import Orbit
 from shadowscale.orbit.sky import orbit_constants
@@ -51,7 +51,7 @@ def velocity_shape(times: ArrayLike, orbit: Orbit) -> Floats:
     return out
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _fill_velocity(cycles: Floats, constants: Floats, out: Floats) -> None:
     for i in range(cycles.size):
         _kernels.velocity_point(cycles[i], constants, out[i])
