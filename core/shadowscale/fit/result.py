@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from math import acos, degrees, sqrt
+from math import acos, degrees, hypot, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
@@ -67,11 +67,12 @@ def assemble(
     branches: Sequence[Branch],
     decisions: Sequence[Decision],
     notes: Sequence[str],
+    ends: tuple[Floats, Floats] | None = None,
 ) -> Solution:
-    """Everything the sheet needs of a finished fit."""
+    """Everything the sheet needs of a finished fit; `ends` are the limits of a curved valley of k."""
     best_system, shift = _at_wished_epoch(best, plan)
-    spread, keys = _spread(best, plan, shift)
-    estimates = _estimates(best, plan, spread, shift)
+    spread, keys = _spread(best, plan, shift, ends)
+    estimates = _estimates(best, plan, spread, ends)
     fit = _summary(best, problem, weighting)
     names, correlations = _correlations(spread, best.system.free)
     light = light_result(best, problem, weighting)
@@ -101,11 +102,13 @@ def _at_wished_epoch(best: Fitted, plan: Plan) -> tuple[System, int]:
     return best.system.with_values({"epoch": values["epoch"] + cycles * values["period"]}), cycles
 
 
-def _spread(best: Fitted, plan: Plan, shift: int) -> tuple[Spread, Floats]:
+def _spread(
+    best: Fitted, plan: Plan, shift: int, ends: tuple[Floats, Floats] | None
+) -> tuple[Spread, Floats]:
     """Joint spread of all quantities, and the covariance (m, m) of the free keys."""
     vector = best.objective.vector
     x = best.minimum.x
-    matrix, _ = inverse_of(best.minimum.normal)
+    matrix = _across(best, ends)
     extra = assumed_inputs(plan, best.system)
     size = x.size
     whole = np.zeros((size + len(extra), size + len(extra)))
@@ -124,51 +127,69 @@ def _spread(best: Fitted, plan: Plan, shift: int) -> tuple[Spread, Floats]:
         return free | derived_values(best.system.with_values(values), assumed)
 
     centre = np.concatenate([x, [value for value, _ in extra.values()]])
-    spread = propagated(everything, centre, whole, bounds=bounds)
+    if ends is not None:
+        ends = (np.concatenate([ends[0], centre[size:]]), np.concatenate([ends[1], centre[size:]]))
+    spread = propagated(everything, centre, whole, bounds=bounds, ends=ends)
     rows = [spread.names.index(name) for name in best.system.free]
     keys = spread.joint[np.ix_(rows, rows)]
     return spread, keys
 
 
-def _estimates(best: Fitted, plan: Plan, spread: Spread, shift: int) -> dict[str, Estimate]:
+def _across(best: Fitted, ends: tuple[Floats, Floats] | None) -> Floats:
+    """Covariance of the coordinates; with a curved valley, what is left when k is held."""
+    matrix, _ = inverse_of(best.minimum.normal)
+    if ends is None:
+        return matrix
+    at = best.objective.vector.index["radius_ratio"]
+    column = matrix[:, at]
+    left: Floats = matrix - np.outer(column, column) / column[at]
+    return left
+
+
+def _estimates(
+    best: Fitted, plan: Plan, spread: Spread, ends: tuple[Floats, Floats] | None
+) -> dict[str, Estimate]:
     """Every quantity with its limits and how it was had, in the register's order."""
     system = best.system
-    sigma = dict(zip(spread.names, spread.sigma.tolist(), strict=True))
+    below, above = spread.limits
+    sigma = dict(zip(spread.names, zip(below.tolist(), above.tolist(), strict=True), strict=True))
     centre = dict(zip(spread.names, spread.values.tolist(), strict=True))
     assumed = assumed_inputs(plan, system)
     found: dict[str, Estimate] = {}
     for name, value in system.values.items():
         if name in system.free:
-            minus, plus = _limits(best, name, sigma[name])
+            minus, plus = sigma[name]
+            if name == "inclination":
+                minus, plus = _inclination_limits(best, spread, ends)
             found[name] = Estimate(centre[name], minus, plus, FITTED, _prior_of(plan, name))
         else:
             found[name] = Estimate(value, None, None, FIXED)
     for name, value in centre.items():
         if name not in found:
             how = ASSUMED if name in assumed else DERIVED
-            error = sigma[name]
-            held = error == 0.0
-            found[name] = Estimate(
-                value, None if held else error, None if held else error, how, _prior_of(plan, name)
-            )
+            minus, plus = sigma[name]
+            limits = (None, None) if minus == plus == 0.0 else (minus, plus)
+            found[name] = Estimate(value, *limits, how, _prior_of(plan, name))
     order = {name: number for number, name in enumerate(QUANTITIES)}
     return dict(sorted(found.items(), key=lambda item: order[parse_key(item[0]).name]))
 
 
-def _limits(best: Fitted, name: str, sigma: float) -> tuple[float, float]:
-    """68.3 % limits; for inclination by way of cos^2 i, in which the fit is linear."""
-    if name != "inclination":
-        return sigma, sigma
-    vector = best.objective.vector
-    at = vector.index[name]
-    matrix, _ = inverse_of(best.minimum.normal)
-    square, error = best.minimum.x[at], sqrt(max(matrix[at, at], 0.0))
-    centre = degrees(acos(sqrt(min(max(square, 0.0), 1.0))))
-    low = degrees(acos(sqrt(min(square + error, 1.0))))
-    high = degrees(acos(sqrt(max(square - error, 0.0))))
+def _inclination_limits(
+    best: Fitted, spread: Spread, ends: tuple[Floats, Floats] | None
+) -> tuple[float, float]:
+    """68.3 % limits by way of cos^2 i, in which the fit is linear; along a curved valley as found there."""
+    at = best.objective.vector.index["inclination"]
+    square, error = best.minimum.x[at], sqrt(max(_across(best, ends)[at, at], 0.0))
+    centre, low, high = (
+        degrees(acos(sqrt(min(max(value, 0.0), 1.0))))
+        for value in (square, square + error, square - error)
+    )
+    number = spread.names.index("inclination")
+    shifts = (spread.below[number], spread.above[number])
+    minus = hypot(centre - low, max(0.0, *(-shift for shift in shifts)))
     # At 90 degrees the upper side is closed: the limit there is as wide as the room left,
     # and never narrower than a tenth of the other side.
-    return centre - low, max(high - centre, 0.1 * (centre - low))
+    return minus, max(hypot(high - centre, max(0.0, *shifts)), 0.1 * minus)
 
 
 def _prior_of(plan: Plan, name: str) -> tuple[float, float] | None:
@@ -182,7 +203,7 @@ def _prior_of(plan: Plan, name: str) -> tuple[float, float] | None:
 
 def _correlations(spread: Spread, free: Sequence[str]) -> tuple[tuple[str, ...], Floats]:
     wanted = [*free, *(name for name in MAIN_DERIVED if name in spread.names)]
-    sigma = dict(zip(spread.names, spread.sigma, strict=True))
+    sigma = dict(zip(spread.names, np.sqrt(np.diag(spread.joint)), strict=True))
     names = tuple(name for name in wanted if sigma[name] > 0.0)
     rows = [spread.names.index(name) for name in names]
     joint = spread.joint[np.ix_(rows, rows)]

@@ -8,18 +8,20 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from shadowscale.data.limb_tables import LimbTable, read_limb_table
-from shadowscale.data.photometry import Ints, Photometry
+from shadowscale.data.photometry import Floats, Ints, Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.errors import NotConvergedError
 from shadowscale.fit.alternatives import Branch, distinct_branches, mirrored, preference
 from shadowscale.fit.build import build_system, check_plan, named
 from shadowscale.fit.decide import decision, needed
 from shadowscale.fit.effects import predicted_amplitudes
+from shadowscale.fit.least_squares import STALLED
 from shadowscale.fit.limb import LimbChoice, limb_choice, teffs, wavelengths
 from shadowscale.fit.objective import Constraint
 from shadowscale.fit.plan import Plan
 from shadowscale.fit.priors import prior_constraints
 from shadowscale.fit.problem import Fitted, Problem, Weighting, fit_system, thinned
+from shadowscale.fit.profile import valley
 from shadowscale.fit.result import assemble
 from shadowscale.fit.reweigh import reweighed
 from shadowscale.fit.solution import Decision, Solution
@@ -34,6 +36,7 @@ KEPT_STARTS = 3
 LIMB_ROUNDS = 4
 THINNED_ROWS = 5000
 EXPLORING_STEPS = 40
+VALLEY_ROUNDS = 3
 HOPELESS = 60.0  # in chi-squared of the thinned data: no full fit mends that
 
 
@@ -124,10 +127,12 @@ def solve(
             {"steps": best.minimum.iterations, "chi-squared": best.chi2},
             "hold a quantity that the data do not determine, or give a better ephemeris",
         )
-    progress.report(0.95, "uncertainties")
+    progress.report(0.9, "uncertainties")
+    best, ends = _with_valley(work, best)
     return assemble(
         best, problem=problem, plan=plan, weighting=work.weighting, ground=ground,
         branches=branches, decisions=work.decisions, notes=[*ground.measured.notes, *work.notes],
+        ends=ends,
     )  # fmt: skip
 
 
@@ -330,6 +335,23 @@ def _against_others(
         candidates.append(work.fit(each.system))
     found = distinct_branches(sorted(candidates, key=preference))
     return found[0], [Branch(each, each.chi2 - found[0].chi2) for each in found[1:]]
+
+
+def _with_valley(work: _Work, best: Fitted) -> tuple[Fitted, tuple[Floats, Floats] | None]:
+    """The limits of k along its valley, where that is curved; the best may move to a lower place in it."""
+    for _ in range(VALLEY_ROUNDS):
+        found = valley(best, work.fit)
+        if found is None:
+            return best, None
+        if found.best.chi2 >= best.chi2 - STALLED:
+            words = (
+                "the ratio of the radii lies in a curved valley: limits from its likelihood profile"
+            )
+            work.decisions.append(Decision("errors", "profile", words))
+            return best, (found.below, found.above)
+        freed = replace(found.best.system, free=best.system.free)
+        best = work.fit(freed)
+    return best, None
 
 
 def _moved(system: System, values: Mapping[str, float]) -> System:

@@ -1,0 +1,105 @@
+"""How far the ratio of the radii may go: its likelihood profile, where the valley is curved.
+
+In partial eclipses k, inclination, limb darkening and third light move together along a valley that
+is far from straight, and the curvature at the minimum tells too little (or too much). So k is held at
+values on both sides, the rest fitted again, until chi-squared is one above the minimum; the points
+found there give the 68.3 % limits along the valley (Wilks 1938; Pawitan 2001, In All Likelihood).
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from shadowscale.fit.least_squares import covariance
+from shadowscale.fit.problem import Fitted
+from shadowscale.fit.system import System
+
+Floats = NDArray[np.float64]
+NAME = "radius_ratio"
+FIRST = 0.7  # of the linear sigma: where the profile is tried first
+MOST_TRIES = 6
+STRAIGHT = 0.15  # relative departure of both limits from the linear sigma that is left alone
+
+
+@dataclass(frozen=True, eq=False)
+class Valley:
+    """Coordinates (m,) of the fit at both 68.3 % limits of k, and at the best point met on the way."""
+
+    below: Floats
+    above: Floats
+    best: Fitted
+
+
+def valley(best: Fitted, fit: Callable[[System], Fitted]) -> Valley | None:
+    """Profile k around a fit; None where k is not free or the linear errors serve.
+
+    `fit` fits a system from where it stands. A better minimum met on the way is handed back.
+    """
+    if NAME not in best.system.free:
+        return None
+    at = best.objective.vector.index[NAME]
+    matrix, _ = covariance(best.minimum.normal)
+    sigma = float(np.sqrt(max(matrix[at, at], 0.0)))
+    if not np.isfinite(sigma) or sigma <= 0.0:
+        return None
+    direction = matrix[:, at] / sigma
+    below, low = _limit(best, fit, direction=-direction, at=at)
+    above, high = _limit(best, fit, direction=direction, at=at)
+    lowest = min((best, low, high), key=lambda each: each.chi2)
+    straight = all(abs(place.step - 1.0) < STRAIGHT for place in (below, above))
+    if straight and lowest is best:
+        return None
+    return Valley(below.x, above.x, lowest)
+
+
+@dataclass(frozen=True, eq=False)
+class _Place:
+    """A point of the profile: coordinates, linear sigmas from the minimum, root of the rise."""
+
+    x: Floats
+    step: float
+    root: float
+
+
+def _limit(
+    best: Fitted, fit: Callable[[System], Fitted], *, direction: Floats, at: int
+) -> tuple[_Place, Fitted]:
+    """The point where chi-squared is one above the best, and the lowest fit met on the way."""
+    lower, upper = (float(bound[at]) for bound in best.objective.vector.bounds)
+    lowest, inner = best, _Place(best.minimum.x, 0.0, 0.0)
+    step = FIRST
+    for _ in range(MOST_TRIES):
+        wanted = best.minimum.x[at] + step * direction[at]
+        if not lower < wanted < upper:
+            break
+        fitted = fit(_held(best, inner.x + (step - inner.step) * direction, at=at, wanted=wanted))
+        rise = fitted.chi2 - best.chi2
+        if rise < lowest.chi2 - best.chi2:
+            lowest = fitted
+        outer = _Place(np.insert(fitted.minimum.x, at, wanted), step, np.sqrt(max(rise, 0.0)))
+        if rise >= 1.0:
+            return _between(inner, outer), lowest
+        inner = outer
+        step *= min(3.0, max(1.3, 1.15 / max(outer.root, 0.2)))
+    return inner, lowest
+
+
+def _held(best: Fitted, start: Floats, *, at: int, wanted: float) -> System:
+    """The system at `start`, its k held at `wanted`."""
+    vector = best.objective.vector
+    start = start.copy()
+    start[at] = wanted
+    values = vector.unpack(np.clip(start, *vector.bounds))
+    free = tuple(name for name in best.system.free if name != NAME)
+    return replace(best.system.with_values(values), free=free)
+
+
+def _between(inner: _Place, outer: _Place) -> _Place:
+    """Interpolate to a rise of one in its root, which is nearly linear in the distance."""
+    share = (1.0 - inner.root) / (outer.root - inner.root)
+    x = inner.x + share * (outer.x - inner.x)
+    return _Place(x, inner.step + share * (outer.step - inner.step), 1.0)
