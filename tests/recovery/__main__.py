@@ -81,7 +81,7 @@ def _bound_ratios(case, solution) -> dict[str, float]:
     from dataclasses import replace
 
     from shadowscale.fit.least_squares import covariance
-    from shadowscale.fit.limb import GREY_SIGMA
+    from shadowscale.fit.limb import GREY_COMMON, GREY_OWN
     from shadowscale.fit.objective import Constraint
     from shadowscale.fit.problem import Problem
 
@@ -93,7 +93,9 @@ def _bound_ratios(case, solution) -> dict[str, float]:
     at_truth = replace(system, values=true)
     problem = Problem(case.photometry, case.velocities)
     rules = [
-        Constraint(n, 0.0, GREY_SIGMA, True) for n in system.free if n.startswith("limb_darkening")
+        Constraint(name, 0.0, GREY_OWN, coordinate=True, common=name[-1], common_sigma=GREY_COMMON)
+        for name in system.free
+        if name.startswith("limb_darkening")
     ]
     objective = problem.objective(at_truth, problem.weighting(), rules)
     x = objective.vector.pack(true)

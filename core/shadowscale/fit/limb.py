@@ -22,10 +22,12 @@ UNKNOWN_TEFF = 6500.0  # [K] where none is given: middle of the range of well-st
 UNKNOWN_LOGG = 4.2
 UNKNOWN_WAVELENGTH = 600.0  # [nm]
 COOLEST, HOTTEST = 2500.0, 50000.0  # [K] where the grey atmosphere is asked
-# Grey atmospheres miss line blanketing: against published tables and the measured Sun they are
-# off by up to 0.1 in I(mu = 1/2). The prior is wider than that.
-GREY_SIGMA = 0.15
-TABLE_SIGMA = 0.05  # spread between published tables (common practice)
+# Grey atmospheres miss line blanketing: against published tables and the measured Sun they are off by
+# up to 0.1 in I(mu = 1/2), much the same way in every band and star. So the prior is wider than that,
+# and most of it is one error common to all.
+GREY_COMMON, GREY_OWN = 0.13, 0.08
+# Spread between published tables (common practice), common in the same way.
+TABLE_COMMON, TABLE_OWN = 0.04, 0.03
 
 
 @dataclass(frozen=True)
@@ -77,21 +79,41 @@ def limb_choice(
     if table is not None:
         start = table.coefficients(teff, logg, band, law=plan.law)
         words = f"published table at {teff:.0f} K, log g {logg:.2f}"
-        rules = () if told_free else _sampling_prior(plan.law, star, band, start, TABLE_SIGMA)
+        rules = (
+            ()
+            if told_free
+            else _sampling_prior(
+                plan.law, star, band, start=start, common=TABLE_COMMON, own=TABLE_OWN
+            )
+        )
         return LimbChoice(
             start,
             True,
             rules,
-            words + (", free" if told_free else f", prior of sigma {TABLE_SIGMA}"),
+            words
+            + (
+                ", free"
+                if told_free
+                else f", prior of sigma {TABLE_COMMON} common and {TABLE_OWN} each"
+            ),
         )
     start = grey_coefficients(min(max(teff, COOLEST), HOTTEST), wavelength, plan.law)
     words = f"grey atmosphere at {teff:.0f} K and {wavelength:.0f} nm"
-    rules = () if told_free else _sampling_prior(plan.law, star, band, start, GREY_SIGMA)
+    rules = (
+        ()
+        if told_free
+        else _sampling_prior(plan.law, star, band, start=start, common=GREY_COMMON, own=GREY_OWN)
+    )
     return LimbChoice(
         start,
         True,
         rules,
-        words + (", start only" if told_free else f", prior of sigma {GREY_SIGMA}"),
+        words
+        + (
+            ", start only"
+            if told_free
+            else f", prior of sigma {GREY_COMMON} common and {GREY_OWN} each"
+        ),
     )
 
 
@@ -106,20 +128,20 @@ def _checked(name: str, values: tuple[float, ...], wanted: tuple[str, ...]) -> t
 
 
 def _sampling_prior(
-    law_name: str, star: int, band: str, start: tuple[float, ...], sigma: float
+    law_name: str, star: int, band: str, *, start: tuple[float, ...], common: float, own: float
 ) -> tuple[Constraint, ...]:
     """A prior on the law's sampling coordinates; wider on those beyond the second, which are degenerate."""
     law = LAWS[law_name]
-    centre = law.to_sampling(np.array(start))
-    return tuple(
-        Constraint(
-            key(f"limb_darkening{star}", band, n + 1),
-            float(value),
-            sigma if n < 2 else 4 * sigma,
-            True,
-        )
-        for n, value in enumerate(centre)
-    )
+    found = []
+    for number, value in enumerate(law.to_sampling(np.array(start))):
+        wider = 1.0 if number < 2 else 4.0
+        found.append(
+            Constraint(
+                key(f"limb_darkening{star}", band, number + 1), float(value), own * wider,
+                coordinate=True, common=f"limb darkening {number + 1}", common_sigma=common * wider,
+            )
+        )  # fmt: skip
+    return tuple(found)
 
 
 def teff_from_brightness(teff1: float, ratio: float, wavelength: float) -> float:

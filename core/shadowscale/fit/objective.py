@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -27,6 +28,7 @@ class Constraint:
     coordinate : True if it stands on the solver's coordinate of that key (limb darkening's
         sampling pair) and not on the key's value
     function : for derived quantities, of all basic values
+    common, common_sigma : an error shared with all priors of the same `common` name, beside `sigma`
     """
 
     name: str
@@ -34,6 +36,8 @@ class Constraint:
     sigma: float
     coordinate: bool = False
     function: Callable[[Mapping[str, float]], float] | None = None
+    common: str = ""
+    common_sigma: float = 0.0
 
 
 @dataclass(eq=False)
@@ -179,8 +183,19 @@ class Objective:
                     jacobian[row] = self._slope(lambda each: each["inclination"], x)
             else:
                 residual[row] = rule.value - values[rule.name]
-        sigma = np.array([rule.sigma for rule in self.constraints])
-        return _normal(residual, jacobian, sigma)
+        scaled, weighted = self._whitener @ residual, self._whitener @ jacobian
+        return Normal(float(scaled @ scaled), weighted.T @ scaled, weighted.T @ weighted)
+
+    @cached_property
+    def _whitener(self) -> Floats:
+        """(n, n) matrix that makes the priors' errors independent and of unit size."""
+        rules = self.constraints
+        covariance = np.diag([rule.sigma**2 for rule in rules])
+        for row, one in enumerate(rules):
+            for column, two in enumerate(rules):
+                if one.common and one.common == two.common:
+                    covariance[row, column] += one.common_sigma * two.common_sigma
+        return np.linalg.inv(np.linalg.cholesky(covariance)) if rules else np.zeros((0, 0))
 
     def _slope(self, function: Callable[[Mapping[str, float]], float], x: Floats) -> Floats:
         """(m,) gradient of a function of the values, by central differences (it costs no data)."""
