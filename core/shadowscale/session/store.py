@@ -9,7 +9,6 @@ says so, or refuses where nothing but the same numbers will do.
 from __future__ import annotations
 
 import json
-import os
 from collections.abc import Mapping
 from dataclasses import replace
 from importlib.resources import files
@@ -18,8 +17,8 @@ from typing import Any
 
 from shadowscale._version import __version__
 from shadowscale.errors import Problem, SessionError
-from shadowscale.fit.plan import Plan
 from shadowscale.session.atomic import write_text
+from shadowscale.session.places import found_paths, stored_paths
 from shadowscale.session.plain import PlainError, from_plain, to_plain
 from shadowscale.session.sense import check_sense
 from shadowscale.session.session import Session, Source
@@ -84,17 +83,7 @@ def schema() -> dict[str, Any]:
 
 def session_document(session: Session, folder: Path | None) -> dict[str, Any]:
     """A session as plain dictionaries and lists; paths relative to `folder`, absolute without one."""
-    stored = replace(
-        session,
-        photometry_sources=_placed(session.photometry_sources, folder),
-        velocity_sources=_placed(session.velocity_sources, folder),
-        exclusions=tuple(
-            replace(exclusion, file=_place(exclusion.file, folder))
-            for exclusion in session.exclusions
-        ),
-        plan=_placed_plan(session.plan, folder),
-        kept=tuple(replace(kept, plan=_placed_plan(kept.plan, folder)) for kept in session.kept),
-    )
+    stored = stored_paths(session, folder)
     plain: dict[str, Any] = to_plain(replace(stored, photometry=None, velocities=None, notes=()))
     return {"schema": SCHEMA, "program": PROGRAM, **plain}
 
@@ -124,7 +113,7 @@ def from_document(document: Mapping[str, Any], path: Path) -> Session:
     except PlainError as error:
         problem = Problem(str(path), error.expected, error.found, column=error.where)
         raise SessionError(problem) from error
-    return _located(session, path)
+    return found_paths(session, path)
 
 
 def _version_help(version: object) -> str:
@@ -155,63 +144,6 @@ def _read(path: Path) -> dict[str, Any]:
 
 def _no_constant(text: str) -> float:
     raise ValueError(f"{text} is not JSON")
-
-
-def _place(file: str, folder: Path | None) -> str:
-    """A path as it is stored."""
-    if folder is None:
-        return Path(os.path.abspath(file)).as_posix()
-    try:
-        return Path(os.path.relpath(file, folder)).as_posix()
-    except ValueError:  # another drive
-        return Path(os.path.abspath(file)).as_posix()
-
-
-def _placed(sources: tuple[Source, ...], folder: Path | None) -> tuple[Source, ...]:
-    return tuple(replace(source, path=_place(source.path, folder)) for source in sources)
-
-
-def _placed_plan(plan: Plan, folder: Path | None) -> Plan:
-    return (
-        plan
-        if plan.limb_table is None
-        else replace(plan, limb_table=_place(plan.limb_table, folder))
-    )
-
-
-def _located(session: Session, path: Path) -> Session:
-    """The session with paths that can be opened; all files that are missing are told together."""
-    missing: list[Problem] = []
-
-    def found(stored: str) -> str:
-        places = [path.parent / stored, path.parent / Path(stored).name]
-        for place in places:
-            if place.is_file():
-                return os.path.normpath(place)
-        looked = " and ".join(dict.fromkeys(os.path.normpath(place) for place in places))
-        missing.append(Problem(str(path), f"the file {stored!r}", f"none at {looked}"))
-        return stored
-
-    def sources(of: tuple[Source, ...]) -> tuple[Source, ...]:
-        return tuple(replace(source, path=found(source.path)) for source in of)
-
-    def plan(of: Plan) -> Plan:
-        return of if of.limb_table is None else replace(of, limb_table=found(of.limb_table))
-
-    located = replace(
-        session,
-        photometry_sources=sources(session.photometry_sources),
-        velocity_sources=sources(session.velocity_sources),
-        exclusions=tuple(
-            replace(item, file=os.path.normpath(path.parent / item.file))
-            for item in session.exclusions
-        ),
-        plan=plan(session.plan),
-        kept=tuple(replace(kept, plan=plan(kept.plan)) for kept in session.kept),
-    )
-    if missing:
-        raise SessionError(*missing)
-    return located
 
 
 def _changed(session: Session) -> list[Source]:

@@ -64,6 +64,16 @@ def test_a_folder_that_moved_still_opens(folder):
     assert opened.photometry.time.size == 30
 
 
+def test_a_link_on_the_way_leads_to_the_right_file(folder):
+    (folder / "far" / "deep").mkdir(parents=True)
+    (folder / "far" / "nights.csv").write_text(LIGHT.replace("0.005", "0.007"))
+    (folder / "near").symlink_to(folder / "far" / "deep")
+    document = {"schema": 1, "photometry_sources": [{"path": "../nights.csv"}]}
+    (folder / "near" / "session.json").write_text(json.dumps(document))
+    opened = open_session(folder / "near" / "session.json")
+    assert opened.photometry.value_error[0] == 0.007
+
+
 def test_a_file_beside_the_session_is_found_by_its_name(folder):
     document = {"schema": 1, "photometry_sources": [{"path": "elsewhere/nights.csv"}]}
     (folder / "session.json").write_text(json.dumps(document))
