@@ -79,9 +79,15 @@ def _place(file: str, folder: Path | None) -> str:
     if folder is None:
         return Path(os.path.abspath(file)).as_posix()
     try:
-        return Path(os.path.relpath(file, folder)).as_posix()
+        return Path(os.path.relpath(_real(file), os.path.realpath(folder))).as_posix()
     except ValueError:  # another drive
         return Path(os.path.abspath(file)).as_posix()
+
+
+def _real(file: str) -> str:
+    """The file in its real folder; a link that is the file itself stays a link."""
+    path = Path(file)
+    return os.path.join(os.path.realpath(path.parent), path.name)
 
 
 def _placed(sources: tuple[Source, ...], folder: Path | None) -> tuple[Source, ...]:

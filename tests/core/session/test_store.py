@@ -72,6 +72,11 @@ def test_a_link_on_the_way_leads_to_the_right_file(folder):
     (folder / "near" / "session.json").write_text(json.dumps(document))
     opened = open_session(folder / "near" / "session.json")
     assert opened.photometry.value_error[0] == 0.007
+    session = Session(photometry_sources=(Source("nights.csv"),))
+    assert saved(session, folder / "near" / "other.json")["photometry_sources"][0]["path"] == (
+        "../../nights.csv"
+    )
+    assert open_session(folder / "near" / "other.json").photometry.value_error[0] == 0.005
 
 
 def test_a_file_beside_the_session_is_found_by_its_name(folder):
