@@ -1,0 +1,277 @@
+"""The system to scale, and correlations as a picture."""
+
+from __future__ import annotations
+
+from math import cos, pi, radians
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from shadowscale.data.photometry import Floats
+from shadowscale.light.laws import LAWS
+from shadowscale.quantities import parse_key
+from shadowscale.sheet.figure_data import Shown
+from shadowscale.sheet.figure_frame import (
+    BLUE,
+    FAINT,
+    INK,
+    SOFT,
+    STAR,
+    VERMILLION,
+    WIDTH,
+    YELLOW,
+    Place,
+)
+
+if TYPE_CHECKING:
+    from matplotlib.axes import Axes
+
+HEIGHT, TITLE = 3.0, 0.22  # [inches]
+FILL = {1: "#9cc7e2", 2: "#f0b78c"}
+CORRELATION_CELL = 0.155  # [inches]
+NAMES_ROOM = 0.95
+MOST_NAMES = 48
+
+
+def system_size(shown: Shown) -> tuple[float, float]:
+    """Width and height [inches]."""
+    return WIDTH, HEIGHT
+
+
+def draw_system(place: Place, shown: Shown) -> None:
+    """From above with both orbits, and both eclipses as they are seen, all to scale."""
+    estimates = shown.solution.estimates
+    values = {name: item.value for name, item in estimates.items()}
+    above = 3.62
+    _above(place, above, values)
+    number = len(shown.eclipses)
+    left = above + 0.1
+    height = (place.height - 0.05) / max(number, 1)
+    for row, eclipse in enumerate(shown.eclipses):
+        bottom = place.height - (row + 1) * height
+        room = (place.width - left, height - TITLE)
+        axes = _bare(place.axes(left, bottom, *room))
+        _seen(axes, eclipse, values, room=room)
+        name = "primary" if eclipse == 1 else "secondary"
+        axes.set_title(f"{name} eclipse, as seen", fontsize=7.5, pad=3)
+
+
+def _above(place: Place, width: float, values: dict[str, float]) -> None:
+    height = place.height - TITLE - 0.05
+    axes = _bare(place.axes(0.0, 0.0, width, height))
+    axes.set_title("from above, to scale", fontsize=7.5, pad=3)
+    ratio = values.get("mass_ratio")
+    shares = (0.0, 1.0) if ratio is None else (ratio / (1 + ratio), 1 / (1 + ratio))
+    e_cos, e_sin = values["ecosw"], values["esinw"]
+    radii = {1: values["r1"], 2: values["r2"]}
+    angle = np.linspace(0, 2 * pi, 361)
+    reach = 0.0
+    for star, share, sign in ((1, shares[0], 1), (2, shares[1], -1)):
+        x, z = _orbit(angle, e_cos, e_sin)
+        axes.plot(
+            sign * share * x,
+            sign * share * z,
+            color=STAR[star],
+            linewidth=0.9,
+            linestyle="-" if star == 1 else (0, (5, 1.5)),
+            zorder=1,
+        )
+        ahead = float(sign * share * x[0])
+        axes.plot(ahead, 0.0, "^" if star == 1 else "v", color=STAR[star], markersize=4)
+        x0, z0 = _orbit(np.array([pi / 2]), e_cos, e_sin)
+        at = (float(sign * share * x0[0]), float(sign * share * z0[0]))
+        _disc(axes, at, radii[star], star)
+        reach = max(reach, share * float(np.hypot(x, z).max()) + radii[star])
+    axes.plot(0, 0, "+", color=INK, markersize=5, markeredgewidth=0.6, zorder=1)
+    half = reach * width / height
+    axes.set_xlim(-half, half)
+    axes.set_ylim(-1.32 * reach, 1.02 * reach)
+    axes.set_aspect("equal", adjustable="box", anchor="C")
+    low = -1.30 * reach
+    axes.annotate(
+        "",
+        xy=(0, low),
+        xytext=(0, low + 0.2 * reach),
+        arrowprops={
+            "arrowstyle": "-|>",
+            "color": INK,
+            "linewidth": 0.7,
+            "shrinkA": 0,
+            "shrinkB": 0,
+        },
+    )
+    axes.text(0.05 * reach, low + 0.05 * reach, "to the observer", fontsize=7, va="bottom")
+    _sun(axes, values, corner=(-half, -1.3 * reach), reach=reach)
+
+
+def _orbit(longitude: Floats, ecosw: float, esinw: float) -> tuple[Floats, Floats]:
+    """Star 1 in its plane against the centre of mass [a]; z away from the observer."""
+    distance = (1 - ecosw**2 - esinw**2) / (
+        1 + ecosw * np.cos(longitude) + esinw * np.sin(longitude)
+    )
+    return distance * np.cos(longitude), distance * np.sin(longitude)
+
+
+def _sun(
+    axes: Axes, values: dict[str, float], *, corner: tuple[float, float], reach: float
+) -> None:
+    """The Sun at the same scale, or what there is to say of the scale."""
+    x, y = corner
+    if "a" not in values:
+        axes.plot([x + 0.06 * reach, x + 0.56 * reach], [y + 0.05 * reach] * 2, color=INK)
+        axes.text(
+            x + 0.06 * reach, y + 0.08 * reach, f"{0.5 * reach:.2g} a", fontsize=7, va="bottom"
+        )
+        return
+    radius = 1 / values["a"]
+    axes.add_patch(_circle((x + 0.06 * reach + radius, y + 0.04 * reach + radius), radius, YELLOW))
+    axes.text(x + 0.06 * reach, y + 0.09 * reach + 2 * radius, "the Sun", fontsize=7, va="bottom")
+    length = _round_length(0.5 * reach * values["a"])
+    start = x + 0.20 * reach + 2 * radius
+    axes.plot(
+        [start, start + length / values["a"]], [y + 0.05 * reach] * 2, color=INK, linewidth=0.9
+    )
+    axes.text(start, y + 0.08 * reach, f"{length:g} solar radii", fontsize=7, va="bottom")
+
+
+def _round_length(length: float) -> float:
+    """The nearest of 1, 2, 5 times a power of ten below."""
+    power = 10.0 ** np.floor(np.log10(length))
+    return float(next(step * power for step in (5.0, 2.0, 1.0) if step * power <= length * 1.0001))
+
+
+def _seen(axes: Axes, eclipse: int, values: dict[str, float], *, room: tuple[float, float]) -> None:
+    """Both discs on the sky at mid eclipse, and the path of the one in front."""
+    sign = 1.0 if eclipse == 1 else -1.0
+    e_cos, e_sin = values["ecosw"], values["esinw"]
+    front, behind = (2, 1) if eclipse == 1 else (1, 2)
+    radii = {1: values["r1"], 2: values["r2"]}
+    tilt = cos(radians(values["inclination"]))
+    span = np.linspace(-1.2, 1.2, 121)
+    x, depth = _orbit(sign * pi / 2 + span, e_cos, e_sin)
+    # the front star against the one behind: star 2 - star 1 in primary eclipse, the other way in secondary
+    path_x, path_y = -sign * x, -sign * depth * tilt
+    middle = int(np.argmin(np.hypot(path_x, path_y)))
+    _disc(axes, (0.0, 0.0), radii[behind], behind)
+    axes.plot(path_x, path_y, color=SOFT, linewidth=0.8, zorder=5, linestyle=(0, (4, 2)))
+    _disc(axes, (float(path_x[middle]), float(path_y[middle])), radii[front], front, zorder=4)
+    top = max(radii[behind], path_y[middle] + radii[front])
+    low = min(-radii[behind], path_y[middle] - radii[front])
+    centre, half = (top + low) / 2, 0.55 * (top - low)
+    wide = half * room[0] / room[1]
+    axes.set_xlim(-wide, wide)
+    axes.set_ylim(centre - half, centre + half)
+    axes.set_aspect("equal", adjustable="box", anchor="C")
+    if "a" in values:
+        radius = 1 / values["a"]
+        axes.add_patch(
+            _circle((wide - 1.15 * radius, centre - half + 1.15 * radius), radius, YELLOW)
+        )
+
+
+def _disc(
+    axes: Axes, at: tuple[float, float], radius: float, star: int, *, zorder: float = 3
+) -> None:
+    from matplotlib.patches import Circle
+
+    axes.add_patch(
+        Circle(at, radius, facecolor=FILL[star], edgecolor=STAR[star], linewidth=0.8,
+               zorder=zorder)
+    )  # fmt: skip
+    axes.text(*at, str(star), ha="center", va="center", fontsize=7.5, weight="bold",
+              zorder=zorder + 0.1)  # fmt: skip
+
+
+def _circle(at: tuple[float, float], radius: float, colour: str) -> Any:
+    from matplotlib.patches import Circle
+
+    return Circle(at, radius, facecolor=colour, edgecolor=INK, linewidth=0.5, zorder=6)
+
+
+def _bare(axes: Axes) -> Axes:
+    axes.set_axis_off()
+    return axes
+
+
+def correlations_size(shown: Shown) -> tuple[float, float]:
+    """Width and height [inches]."""
+    count = min(len(shown.solution.correlation_names), MOST_NAMES)
+    return WIDTH, count * _cell(count) + NAMES_ROOM + 0.1
+
+
+def _cell(count: int) -> float:
+    return min(CORRELATION_CELL, (WIDTH - NAMES_ROOM - 0.1) / max(count, 1))
+
+
+def draw_correlations(place: Place, shown: Shown) -> None:
+    """Half the matrix: squares for positive, circles for negative, their size the strength."""
+    names = shown.solution.correlation_names[:MOST_NAMES]
+    count = len(names)
+    side = count * _cell(count)
+    axes = place.axes(NAMES_ROOM, NAMES_ROOM, side, side)
+    matrix = np.nan_to_num(np.asarray(shown.solution.correlations)[:count, :count])
+    row, column = np.tril_indices(count, -1)
+    value = matrix[row, column]
+    largest = (72 * _cell(count) * 0.9) ** 2
+    for sign, shape, colour in ((1, "s", BLUE), (-1, "o", VERMILLION)):
+        those = sign * value > 0.03
+        axes.scatter(
+            column[those],
+            row[those],
+            s=largest * np.abs(value[those]),
+            marker=shape,
+            facecolor=colour if sign > 0 else "none",
+            edgecolor=colour,
+            linewidth=0.0 if sign > 0 else 0.8,
+        )
+    axes.set_xlim(-0.5, count - 0.5)
+    axes.set_ylim(count - 0.5, -0.5)
+    law = LAWS[shown.solution.system.law]
+    labels = [short_name(name, law.coefficients) for name in names]
+    axes.set_xticks(range(count), labels, rotation=90, fontsize=6.5)
+    axes.set_yticks(range(count), labels, fontsize=6.5)
+    axes.tick_params(length=0, top=False, right=False, pad=2)
+    _grid(axes, count)
+    for spine in ("top", "right"):
+        axes.spines[spine].set_visible(False)
+    _key(place, side)
+
+
+def _grid(axes: Axes, count: int) -> None:
+    """Lines between the cells of the lower half, in one piece."""
+    from matplotlib.collections import LineCollection
+
+    lines = [[(-0.5, n - 0.5), (n - 0.5, n - 0.5)] for n in range(1, count)]
+    lines += [[(n + 0.5, n + 0.5), (n + 0.5, count - 0.5)] for n in range(count - 1)]
+    axes.add_collection(LineCollection(lines, colors=FAINT, linewidths=0.3, zorder=0))
+
+
+def _key(place: Place, side: float) -> None:
+    """What the marks mean, in the empty half."""
+    left = NAMES_ROOM + max(0.62 * side, side - 1.7)
+    axes = _bare(place.axes(left, place.height - 0.95, 1.6, 0.85))
+    axes.set_xlim(0, 1.6)
+    axes.set_ylim(0, 0.85)
+    for row, (sign, shape, colour) in enumerate(((1, "s", BLUE), (-1, "o", VERMILLION))):
+        y = 0.72 - 0.24 * row
+        for step, value in enumerate((0.3, 0.6, 1.0)):
+            axes.scatter(
+                0.1 + 0.17 * step,
+                y,
+                s=(72 * CORRELATION_CELL * 0.9) ** 2 * value,
+                marker=shape,
+                facecolor=colour if sign > 0 else "none",
+                edgecolor=colour,
+                linewidth=0.0 if sign > 0 else 0.8,
+            )
+        axes.text(0.62, y, "positive" if sign > 0 else "negative", fontsize=7, va="center")
+    axes.text(0.02, 0.24, "0.3, 0.6, 1.0", fontsize=7, va="center")
+
+
+def short_name(text: str, coefficients: tuple[str, ...]) -> str:
+    """A key as a label in mathtext: `limb_darkening1[V].2` becomes `u_1 alpha, V`."""
+    parsed = parse_key(text)
+    label = f"${parsed.quantity.tex}$"
+    extra = [coefficients[parsed.number - 1]] if parsed.number is not None else []
+    extra += [parsed.label.replace("$", r"\$")] if parsed.label is not None else []
+    return label + (" " + ", ".join(extra) if extra else "")

@@ -1,0 +1,107 @@
+"""The figures of a solution: which there are, and how they are saved."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from io import BytesIO
+from types import MappingProxyType
+from typing import TYPE_CHECKING
+
+from shadowscale.sheet.figure_data import Shown
+from shadowscale.sheet.figure_frame import STYLE, Place
+from shadowscale.sheet.figure_light import (
+    draw_eclipses,
+    draw_light_curve,
+    eclipses_size,
+    light_curve_size,
+)
+from shadowscale.sheet.figure_system import (
+    correlations_size,
+    draw_correlations,
+    draw_system,
+    system_size,
+)
+from shadowscale.sheet.figure_velocity import (
+    draw_minima,
+    draw_velocities,
+    minima_size,
+    velocities_size,
+)
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
+
+FORMATS = ("pdf", "svg", "png")
+DOTS_AN_INCH = 200
+
+
+@dataclass(frozen=True)
+class Drawing:
+    """A figure: what draws it, its size [inches], whether a solution has it."""
+
+    draw: Callable[[Place, Shown], None]
+    size: Callable[[Shown], tuple[float, float]]
+    possible: Callable[[Shown], bool]
+
+
+FIGURES: Mapping[str, Drawing] = MappingProxyType(
+    {
+        "system": Drawing(draw_system, system_size, lambda shown: bool(shown.eclipses)),
+        "light_curve": Drawing(draw_light_curve, light_curve_size, lambda shown: bool(shown.bands)),
+        "eclipses": Drawing(
+            draw_eclipses, eclipses_size, lambda shown: bool(shown.bands and shown.eclipses)
+        ),
+        "velocities": Drawing(draw_velocities, velocities_size, lambda shown: bool(shown.stars)),
+        "minima": Drawing(draw_minima, minima_size, lambda shown: len(shown.minima) > 1),
+        "correlations": Drawing(
+            draw_correlations,
+            correlations_size,
+            lambda shown: len(shown.solution.correlation_names) > 1,
+        ),
+    }
+)
+
+
+def possible_figures(shown: Shown) -> tuple[str, ...]:
+    """The names of the figures that a solution has."""
+    return tuple(name for name, drawing in FIGURES.items() if drawing.possible(shown))
+
+
+def make_figure(name: str, shown: Shown) -> Figure:
+    """One figure, alone; to be saved inside `drawing_style`."""
+    from matplotlib.figure import Figure
+
+    drawing = FIGURES[name]
+    size = drawing.size(shown)
+    figure = Figure(figsize=size, dpi=DOTS_AN_INCH)
+    drawing.draw(Place(figure, 0.0, 0.0, *size), shown)
+    return figure
+
+
+def saved(figure: Figure, kind: str) -> bytes:
+    """A figure as a file of one of `FORMATS`; the same figure gives the same bytes."""
+    stream = BytesIO()
+    metadata = {
+        "pdf": {"CreationDate": None, "Producer": None, "Creator": "shadowscale"},
+        "svg": {"Date": None, "Creator": "shadowscale"},
+        "png": {"Software": "shadowscale"},
+    }
+    extra = {"pil_kwargs": {"compress_level": 5}} if kind == "png" else {}
+    figure.savefig(stream, format=kind, metadata=metadata[kind], **extra)
+    content = stream.getvalue()
+    if kind == "svg":  # pictures of points are to be shrunk smoothly, not by dropping pixels
+        content = content.replace(b"image-rendering:crisp-edges;image-rendering:pixelated", b"")
+    return content
+
+
+def all_figures(shown: Shown) -> dict[str, dict[str, bytes]]:
+    """Every figure of a solution in every format: name, format, bytes."""
+    from matplotlib import rc_context
+
+    found: dict[str, dict[str, bytes]] = {}
+    with rc_context(dict(STYLE)):
+        for name in possible_figures(shown):
+            figure = make_figure(name, shown)
+            found[name] = {kind: saved(figure, kind) for kind in FORMATS}
+    return found
