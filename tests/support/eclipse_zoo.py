@@ -5,6 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
+
+from shadowscale.data.photometry import Photometry
 from simple_eclipses import (
     Blemishes,
     Floats,
@@ -14,8 +16,6 @@ from simple_eclipses import (
     space_times,
     survey_times,
 )
-
-from shadowscale.data.photometry import Photometry
 
 CADENCES = ("space 30 min", "space 5 min", "ground", "survey")
 

@@ -13,6 +13,7 @@ from math import pi
 import numpy as np
 from numpy.typing import NDArray
 from scipy.optimize import brentq, minimize_scalar
+
 from shadowscale.data.photometry import Photometry
 
 Floats = NDArray[np.float64]

@@ -8,20 +8,27 @@ give the phase dispersion (one-way analysis of variance, Schwarzenberg-Czerny 19
 from __future__ import annotations
 
 import numpy as np
-from numba import njit
+
+from shadowscale._compiled import compiled
 
 GAIN_ONE, GAIN_TWO, GAIN_BINS, PHASE, WIDTH, PHASE_TWO, WIDTH_TWO, OCCUPIED = range(8)
+PART = 0.4
+WIDEST = 40  # widest box in narrowest ones
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
-def box_spectrum(time, value, weight, frequency, bins, least, out):  # type: ignore[no-untyped-def]
+@compiled
+def box_spectrum(time, value, weight, frequency, bins, narrowest, least, out):  # type: ignore[no-untyped-def]
     """Gains in chi2 at each frequency.
 
     time, value, weight : (n,) time from some origin [d], light with weighted mean zero, 1/sigma^2
     frequency : (m,) [1/d];  bins : (m,) int64 phase bins to use
-    least : fewest points in a box
+    narrowest : narrowest box [bins];  least : fewest points in a box
     out : (m, 8) gain of one box, of two boxes, of all bins; start and width of both boxes [cycles]; occupied bins
+
+    No boxes can gain more than all bins, so frequencies whose bins gain less than `PART` of the best boxes so
+    far are passed over; their gains stay 0.
     """
+    best_gain = 0.0
     top = 0
     for i in range(bins.size):
         top = max(top, bins[i])
@@ -60,65 +67,89 @@ def box_spectrum(time, value, weight, frequency, bins, least, out):  # type: ign
             if cell < n and mass[real] > 0:
                 dispersion += sums[real] ** 2 / mass[real]
                 occupied += 1
-        gain, place, width = _best_box(sum_to, mass_to, count_to, n, total, 0.0, 0.0, -1, 0, least)
+        for column in range(8):
+            out[i, column] = 0.0
+        out[i, 2] = dispersion
+        out[i, 7] = occupied
+        if dispersion < PART * best_gain:
+            continue
+        gain, place, width = _first_box(sum_to, mass_to, count_to, n, total, narrowest, least)
         out[i, 0] = gain
         out[i, 1] = gain
-        out[i, 2] = dispersion
         out[i, 3] = place / n
         out[i, 4] = width / n
-        out[i, 5] = 0.0
-        out[i, 6] = 0.0
-        out[i, 7] = occupied
-        if width > 0:
-            s1 = sum_to[place + width] - sum_to[place]
-            m1 = mass_to[place + width] - mass_to[place]
-            gain2, place2, width2 = _best_box(
-                sum_to, mass_to, count_to, n, total, s1, m1, place, width, least
+        best_gain = max(best_gain, gain)
+        # A second box gains hardly more than the first and best one.
+        if width > 0 and 2.2 * gain > best_gain:
+            both, place2, width2 = _second_box(
+                sum_to, mass_to, count_to, n, total, place, width, narrowest, least
             )
-            if width2 > 0 and gain2 > gain:
-                out[i, 1] = gain2
+            if width2 > 0 and both > gain:
+                out[i, 1] = both
                 out[i, 5] = place2 / n
                 out[i, 6] = width2 / n
+                best_gain = max(best_gain, both)
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
-def _best_box(sum_to, mass_to, count_to, n, total, s1, m1, start1, width1, least):  # type: ignore[no-untyped-def]
-    """Gain, start and width [bins] of the best box beside a first one (start1 < 0: none)."""
+@compiled
+def _first_box(sum_to, mass_to, count_to, n, total, narrowest, least):  # type: ignore[no-untyped-def]
+    """Gain, start and width [bins] of the best box; the light's weighted mean is zero."""
+    best = 0.0
+    room = 1.0  # gain = best/room; ratios are compared without dividing
+    found = 0
+    found_width = 0
+    width = narrowest
+    while width <= min(n // 4, WIDEST * narrowest):
+        step = 1 + width // 6
+        for j in range(0, n, step):
+            s = sum_to[j + width] - sum_to[j]
+            if s >= 0:
+                continue
+            m = mass_to[j + width] - mass_to[j]
+            spread = m * (total - m)
+            if s * s * room > best * spread and count_to[j + width] - count_to[j] >= least:
+                best = s * s
+                room = spread
+                found = j
+                found_width = width
+        width = max(width + 1, int(width * 1.4))
+    return best * total / room, found, found_width
+
+
+@compiled
+def _second_box(sum_to, mass_to, count_to, n, total, start, width1, narrowest, least):  # type: ignore[no-untyped-def]
+    """Gain of both, start and width [bins] of the best box beside the first, with three levels in all."""
+    s1 = sum_to[start + width1] - sum_to[start]
+    m1 = mass_to[start + width1] - mass_to[start]
+    first = s1 * s1 / m1
     best = 0.0
     found = 0
     found_width = 0
-    first = s1 * s1 / m1 if m1 > 0 else 0.0
-    width = 1
-    while width <= n // 4:
-        for j in range(n):
-            if start1 >= 0:
-                # The box and its own width around the first one stay free.
-                ahead = j - (start1 - width1 // 2)
-                if ahead < 0:
-                    ahead += n
-                if ahead < 2 * width1 or ahead + width > n:
-                    continue
-            m = mass_to[j + width] - mass_to[j]
+    # The first box and half its own width on either side stay free.
+    begin = start + width1 + width1 // 2 + 1
+    end = start + n - width1 // 2 - 1
+    width = narrowest
+    while width <= min(n // 4, WIDEST * narrowest):
+        step = 1 + width // 6
+        for place in range(begin, end - width + 1, step):
+            j = place if place < n else place - n
             s = sum_to[j + width] - sum_to[j]
+            if s >= 0:
+                continue
+            m = mass_to[j + width] - mass_to[j]
             rest = total - m - m1
-            if s >= 0 or rest <= 0 or m <= 0:
-                continue
-            if count_to[j + width] - count_to[j] < least:
-                continue
-            mean = s / m
-            level = -(s + s1) / rest
-            if mean >= level:
-                continue
-            gain = first + s * mean + level * level * rest
-            if gain > best:
-                best = gain
-                found = j
-                found_width = width
+            level = -(s + s1)
+            gain = first + s * s / m + level * level / rest
+            if gain > best and s * rest < level * m:
+                if count_to[j + width] - count_to[j] >= least:
+                    best = gain
+                    found = j
+                    found_width = width
         width = max(width + 1, int(width * 1.4))
     return best, found, found_width
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def eclipse_rows(phase, band, bands, centre, nodes, node_weights, table, values, model, jacobian):  # type: ignore[no-untyped-def]
     """Light of one eclipse and its derivatives (the equations are those of `shape_fit`).
 
@@ -173,7 +204,7 @@ def eclipse_rows(phase, band, bands, centre, nodes, node_weights, table, values,
         jacobian[i, values.size - 1] = level * away * light
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _lost(x, shape, table):  # type: ignore[no-untyped-def]
     """Light lost relative to the middle, its derivatives by x and by the shape parameter."""
     if table.shape[1] == 0:
@@ -191,7 +222,7 @@ def _lost(x, shape, table):  # type: ignore[no-untyped-def]
     return value, slope * (1 - shape) * x, by_shape
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def _read(separation, table):  # type: ignore[no-untyped-def]
     """A table of even steps read at a separation 0...1, with its slope."""
     steps = table.shape[1] - 1
@@ -202,7 +233,7 @@ def _read(separation, table):  # type: ignore[no-untyped-def]
     return value, table[1, low] * (1 - part) + table[1, low + 1] * part
 
 
-@njit(cache=True, nogil=True, error_model="numpy")
+@compiled
 def shape_grid(phase, flux, sigma, band, bands, middle, durations, shapes, tables, stretches, chi2):  # type: ignore[no-untyped-def]
     """chi2 of many shapes, with the depth and level of each band solved for each.
 

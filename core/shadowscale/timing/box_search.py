@@ -13,7 +13,7 @@ from shadowscale.timing.search_data import SearchData
 
 SHORTEST = 0.2  # [d]
 NARROWEST = 0.02  # T14/P of a period of one day; a third of that of two suns, seen edge on
-DRIFT = 0.5  # phase drift over the whole span between trial frequencies, in narrowest durations
+DRIFT = 0.6  # phase drift over the whole span between trial frequencies, in narrowest durations
 FEWEST_IN_BOX = 3
 _BLOCK = 4000
 
@@ -41,8 +41,8 @@ def frequencies(shortest: float, longest: float, span: float) -> Floats:
 
 
 def phase_bins(frequency: Floats, points: int) -> Ints:
-    """Bins so that the narrowest eclipse fills two."""
-    return np.clip(2 / narrowest(1 / frequency), 60, 1000).astype(np.int64)
+    """Bins so that the narrowest eclipse fills one and a half."""
+    return np.clip(1.6 / narrowest(1 / frequency), 50, 1000).astype(np.int64)
 
 
 def spectrum(data: SearchData, frequency: Floats, progress: Progress, words: str = "") -> Spectrum:
@@ -58,6 +58,7 @@ def spectrum(data: SearchData, frequency: Floats, progress: Progress, words: str
             data.weight,
             frequency[rows],
             bins[rows],
+            1,
             FEWEST_IN_BOX,
             table[rows],
         )

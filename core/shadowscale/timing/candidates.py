@@ -78,7 +78,7 @@ def close_look(data: SearchData, period: float) -> Candidate:
     comb = comb[comb > 0]
     bins = np.minimum(3 * phase_bins(comb, data.time.size), 1500)
     table = np.empty((comb.size, 8))
-    _kernels.box_spectrum(data.time, data.value, data.weight, comb, bins, FEWEST_IN_BOX, table)
+    _kernels.box_spectrum(data.time, data.value, data.weight, comb, bins, 3, FEWEST_IN_BOX, table)
     best = int(np.argmax(table[:, _kernels.GAIN_TWO]))
     return _candidate(data, float(1 / comb[best]), table[best])
 

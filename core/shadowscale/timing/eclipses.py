@@ -89,8 +89,8 @@ def see_eclipses(
     points, notes = flattened(raw, cycles, dips)
     dips = _dips(points, cycles)
     smear = exposure / DAY / period
-    seen = [see_eclipse(points, cycles, dips, n, smear=smear) for n in range(len(dips))]
-    seen = _significant(seen, points)
+    fitted = [see_eclipse(points, cycles, dips, n, smear=smear) for n in range(len(dips))]
+    seen = _significant([one for one in fitted if one is not None], points)
     _check_alignment(points, cycles, seen)
     level = band_levels(raw, outside_eclipse(cycles - np.floor(cycles), dips))
     return SeenTogether(points, cycles, tuple(seen), level, period, origin, smear, tuple(notes))
@@ -121,12 +121,11 @@ def _significant(seen: list[SeenEclipse], points: LightPoints) -> list[SeenEclip
     kept = [one for one in seen if one.signal > LEAST_SIGNAL]
     if kept:
         return sorted(kept, key=lambda one: -one.fit.timing.depth)
-    best = max(seen, key=lambda one: one.signal)
-    numbers = {
-        "depth": best.fit.timing.depth,
-        "error of the depth": float(best.fit.depth_errors.max()),
-        "noise of a point": float(np.median(points.noise)),
-    }
+    numbers = {"noise of a point": float(np.median(points.noise))}
+    if seen:
+        best = max(seen, key=lambda one: one.signal)
+        numbers["depth"] = best.fit.timing.depth
+        numbers["error of the depth"] = float(best.fit.depth_errors.max())
     raise NoSolutionError("no eclipse stands out at this period", numbers, help=HELP)
 
 

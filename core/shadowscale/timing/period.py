@@ -10,15 +10,17 @@ from shadowscale.progress import SILENT, Progress
 from shadowscale.timing import _kernels
 from shadowscale.timing.box_search import SHORTEST, Spectrum, frequencies, spectrum
 from shadowscale.timing.candidates import Candidate, candidates
-from shadowscale.timing.detached import check_detached
+from shadowscale.timing.detached import check_detached, check_radii
 from shadowscale.timing.light_points import LightPoints, light_points
+from shadowscale.timing.red_noise import check_red_noise
 from shadowscale.timing.results import PeriodCandidate, PeriodSearch
 from shadowscale.timing.search_data import SearchData, search_data, without_slow_variation
 from shadowscale.timing.settle import Settled, settled
+from shadowscale.timing.weigh import AS_GOOD, Weighed, weighed
 
 LONGEST = 0.95  # of the span: an eclipse must come twice
 LEAST_GAIN = 60.0  # chi2 of the best dips; white noise gives 45 at most in 1e7 trials
-LEAST_OVER_NOISE = 6.0  # best gain over the scatter of gains between frequencies
+SAME = 3e-3  # relative difference of two periods that are one
 SHOWN = 6
 HELP = "give the period, or more data"
 
@@ -65,9 +67,13 @@ def search_period(
     _check_dips(found, seen, data)
     check_detached(data, found[0].period)
     progress.report(0.9, "measuring the eclipses")
-    best = settled(points, data, found[0])
+    results = _weighed(points, data, found, limits)
+    best = settled(points, results)
+    durations = tuple(one.fit.timing.duration for one in best.refined.eclipses)
+    check_radii(best.refined.period, durations)
+    check_red_noise(data, best.refined)
     progress.report(1.0, "period found")
-    return _result(best, found, data)
+    return _result(best, results)
 
 
 def _limits(given: tuple[float, float] | None, span: float) -> tuple[float, float]:
@@ -119,37 +125,43 @@ class _Part:
 
 def _check_dips(found: list[Candidate], seen: Spectrum, data: SearchData) -> None:
     gain = seen.table[:, _kernels.GAIN_TWO]
-    scatter = float(np.median(np.abs(gain - np.median(gain)))) * 1.4826
-    clear = (gain.max() - np.median(gain)) / max(scatter, 1e-9)
-    if found and gain.max() > LEAST_GAIN and clear > LEAST_OVER_NOISE:
+    if found and gain.max() > LEAST_GAIN:
         return
     numbers = {
         "best gain in chi2": float(gain.max()),
         "needed": LEAST_GAIN,
-        "peak over scatter": float(clear),
         "noise of a point": float(np.median(data.weight) ** -0.5),
     }
     raise NoSolutionError("no repeating eclipse is seen", numbers, help=HELP)
 
 
-def _result(best: Settled, found: list[Candidate], data: SearchData) -> PeriodSearch:
-    lowest = found[0].cost
-    weighed = [
-        PeriodCandidate(
-            each.period,
-            data.origin + each.dips[0].middle * each.period,
-            float(lowest / each.cost) if each.cost > 0 else 0.0,
-            f"{len(each.dips)} dips, deepest {max(dip.depth for dip in each.dips):.3g}",
-        )
-        for each in found[:SHOWN]
-        if abs(each.period / best.refined.period - 1) > 3e-3
-    ]
+def _weighed(
+    points: LightPoints, data: SearchData, found: list[Candidate], limits: tuple[float, float]
+) -> list[Weighed]:
+    results = weighed(points, data, found, limits)
+    if not results:
+        numbers = {"deepest dip": found[0].dips[0].depth, "period": found[0].period}
+        raise NoSolutionError("no eclipse stands out at the best period", numbers, help=HELP)
+    return results
+
+
+def _result(best: Settled, results: list[Weighed]) -> PeriodSearch:
+    lowest = results[0].cost
+    others = []
+    for each in results:
+        seen = each.refined
+        if abs(seen.period / best.refined.period - 1) < SAME:
+            continue
+        words = "fits as well" if each.cost - lowest < AS_GOOD else "fits worse"
+        depths = ", ".join(f"{one.fit.timing.depth:.3g}" for one in seen.eclipses)
+        words = f"{words}; minima of depth {depths}"
+        others.append(PeriodCandidate(seen.period, seen.epoch, lowest / each.cost, words))
     chosen = PeriodCandidate(best.refined.period, best.refined.epoch, 1.0, best.words)
     return PeriodSearch(
         period=best.refined.period,
         epoch=best.refined.epoch,
         period_error=best.refined.period_error,
-        candidates=(chosen, *weighed),
+        candidates=(chosen, *others[:SHOWN]),
         words=best.words,
         ambiguous=best.other is not None,
         other=best.other,

@@ -10,6 +10,7 @@ from shadowscale.data.photometry import Floats
 from shadowscale.timing.fold import Dip, nearest
 from shadowscale.timing.levels import flattened
 from shadowscale.timing.light_points import LightPoints
+from shadowscale.timing.profile import TRAPEZOID
 from shadowscale.timing.window_fit import SeenEclipse, see_eclipse, slope_and_residual
 
 ROUNDS = 3
@@ -32,7 +33,9 @@ class Refined:
     cycles_seen: tuple[int, ...]
 
 
-def refined(raw: LightPoints, period: float, origin: float, dips: tuple[Dip, ...]) -> Refined:
+def refined(
+    raw: LightPoints, period: float, origin: float, dips: tuple[Dip, ...]
+) -> Refined | None:
     """Least squares for period and epoch with the shapes held, shapes measured again in each round.
 
     Parameters
@@ -44,14 +47,20 @@ def refined(raw: LightPoints, period: float, origin: float, dips: tuple[Dip, ...
 
     Returns
     -------
-    Refined
-        The deepest eclipse first.
+    Refined or None
+        The deepest eclipse first; None where no dip has points enough to be fitted.
     """
     error = np.inf
     for turn in range(ROUNDS):
         cycles = (raw.time - origin) / period
         points, _ = flattened(raw, cycles, dips)
-        seen = [see_eclipse(points, cycles, dips, number) for number in range(len(dips))]
+        fitted = [
+            see_eclipse(points, cycles, dips, number, profile=TRAPEZOID)
+            for number in range(len(dips))
+        ]
+        seen = [one for one in fitted if one is not None]
+        if not seen:
+            return None
         if turn == ROUNDS - 1:
             break
         shift, stretch, error = _steps(points, cycles, seen)

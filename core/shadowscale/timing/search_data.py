@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 from scipy.ndimage import median_filter
 
 from shadowscale.data.photometry import Floats
@@ -12,7 +13,8 @@ from shadowscale.timing.light_points import LightPoints, robust_scatter
 
 MOST_POINTS = 6000  # neighbours are averaged where there are more
 WIDEST_CELL = 0.014  # [d] and no wider than this
-ISOLATED_GAP = 0.012  # [d] no eclipse comes and goes between neighbours nearer than this
+ISOLATED_GAP = 0.03  # [d] no eclipse comes and goes between neighbours nearer than this
+ALONE = 0.2  # spread of the neighbours over the drop of a lone point
 WILD = 6.0  # [sigma]
 SLOW_WINDOW = 1.2  # [d] longer than most eclipses, shorter than most slow variation
 SLOW_CELL = 0.1  # [d]
@@ -75,14 +77,22 @@ def _data(time: Floats, value: Floats, weight: Floats) -> SearchData:
     return SearchData(float(time[0]), time - time[0], value - mean, np.ascontiguousarray(weight))
 
 
-def _isolated(time: Floats, value: Floats, sigma: Floats) -> np.ndarray:
-    """(n,) True for single points far from both neighbours, where neighbours are close in time."""
+def _isolated(time: Floats, value: Floats, sigma: Floats) -> NDArray[np.bool_]:
+    """(n,) True for single points far from both neighbours, which agree with each other and with theirs.
+
+    In an eclipse the neighbours of a low point are low as well, or lie on its branches.
+    """
     rows = np.zeros(time.size, bool)
-    near = np.diff(time) < ISOLATED_GAP
-    step = np.diff(value)
-    limit = WILD * np.hypot(sigma[1:], sigma[:-1])
-    up, down = step > limit, step < -limit
-    rows[1:-1] = near[:-1] & near[1:] & ((down[:-1] & up[1:]) | (up[:-1] & down[1:]))
+    if time.size < 5:
+        return rows
+    middle, sides = value[2:-2], (value[:-4], value[1:-3], value[3:-1], value[4:])
+    level = np.mean(sides, axis=0)
+    spread = np.ptp(sides, axis=0)
+    drop = np.abs(middle - level)
+    near = time[4:] - time[:-4] < 4 * ISOLATED_GAP
+    rows[2:-2] = (
+        near & (drop > WILD * sigma[2:-2]) & (spread < np.maximum(ALONE * drop, 3 * sigma[2:-2]))
+    )
     return rows
 
 

@@ -13,11 +13,10 @@ from dataclasses import dataclass, field, replace
 import numpy as np
 
 from shadowscale.errors import NoSolutionError
-from shadowscale.timing.candidates import Candidate
 from shadowscale.timing.fold import Dip, find_dips, phases
 from shadowscale.timing.light_points import LightPoints
 from shadowscale.timing.refine import Refined, dip_near, refined
-from shadowscale.timing.search_data import SearchData
+from shadowscale.timing.weigh import Weighed, as_good
 from shadowscale.timing.window_fit import SeenEclipse
 
 DIFFER = 5.0  # [sigma] of a difference between the two minima
@@ -26,7 +25,8 @@ DEPTH_FLOOR, DURATION_FLOOR, MIDDLE_FLOOR = (
     0.02,
     0.01,
 )  # what a measurement may be off, relative
-LEAST_SIGNAL = 5.0  # depth over error
+FAR = 3e-3  # relative difference of two periods that are not the same
+WIDEST_PAIR = 0.6  # r1 + r2: two lobes that touch have 0.76 (Eggleton 1983, ApJ 268, 368, q = 1)
 DARK_POWER = 2.5  # depth^2.5 is about the brightness ratio of a companion of main sequence
 
 
@@ -40,41 +40,44 @@ class Settled:
     numbers: Mapping[str, float] = field(default_factory=dict)
 
 
-def settled(points: LightPoints, data: SearchData, best: Candidate) -> Settled:
-    """Choose between the best candidate's period, its double and its half."""
-    origin = float(np.median(points.time))
-    shift = (origin - data.origin) / best.period
-    dips = tuple(replace(dip, middle=(dip.middle - shift) % 1) for dip in best.dips)
-    single = _seen_clearly(refined(points, best.period, origin, dips))
+def settled(points: LightPoints, results: list[Weighed]) -> Settled:
+    """Choose among the weighed candidates, and then between a period, its double and its half."""
+    good = as_good(results)
+    single = good[0].refined
+    _check_repeats(single)
+    chosen = _settled_one(points, single)
+    others = [
+        each.refined.period
+        for each in good[1:]
+        if abs(each.refined.period / chosen.refined.period - 1) > FAR
+    ]
+    if others and chosen.other is None:
+        words = f"{chosen.words}; {others[0]:.6g} d fits the observed nights as well"
+        return replace(chosen, words=words, other=others[0])
+    return chosen
+
+
+def _settled_one(points: LightPoints, single: Refined) -> Settled:
     double = _doubled(points, single)
     if double is not None:
         differing = _differences(double.eclipses)
-        if max(differing.values()) > DIFFER:
-            name = max(differing, key=lambda key: differing[key])
-            words = f"even and odd minima differ in {name} by {differing[name]:.1f} sigma, so the period is twice that of the dips"
+        name = max(differing, key=lambda key: differing[key])
+        if differing[name] > DIFFER:
+            words = (
+                f"even and odd minima differ in {name} by {differing[name]:.1f} sigma, so the period "
+                "is twice that of the dips"
+            )
             return Settled(double, words, None, differing)
-    _check_repeats(single)
-    if len(single.eclipses) > 1:
-        numbers = _differences(single.eclipses[:2])
-        if max(numbers.values()) > DIFFER:
-            return _of_two_minima(single, double, numbers)
-        # Equal minima half a cycle apart: the question is that of one minimum on half the period.
-        return _of_one_minimum(_halved(points, single), single)
-    return _of_one_minimum(single, double)
-
-
-def _seen_clearly(found: Refined) -> Refined:
-    """Without dips that do not stand out."""
-    rows = [n for n, one in enumerate(found.eclipses) if one.signal > LEAST_SIGNAL]
-    if not rows:
-        best = found.eclipses[0]
-        numbers = {"depth": best.fit.timing.depth, "signal over noise": best.signal}
-        raise NoSolutionError("no eclipse stands out at the best period", numbers)
-    return replace(
-        found,
-        eclipses=tuple(found.eclipses[n] for n in rows),
-        cycles_seen=tuple(found.cycles_seen[n] for n in rows),
-    )
+    if len(single.eclipses) == 1:
+        return _of_one_minimum(single, double)
+    numbers = _differences(single.eclipses[:2])
+    if max(numbers.values()) > DIFFER:
+        return _of_two_minima(single, double, numbers)
+    # Equal minima half a cycle apart: the question is that of one minimum on half the period.
+    half = _halved(points, single)
+    if half is None or half.eclipses[0].signal < single.eclipses[0].signal:
+        return _of_two_minima(single, double, numbers)
+    return _of_one_minimum(half, single)
 
 
 def _doubled(points: LightPoints, single: Refined) -> Refined | None:
@@ -92,6 +95,8 @@ def _doubled(points: LightPoints, single: Refined) -> Refined | None:
         if np.count_nonzero(away < 0.3 * each.width) < 4:
             return None
     found = refined(points, 2 * single.period, single.origin, pair)
+    if found is None or len(found.eclipses) < 2:
+        return None
     return found if all(one.signal > 2 for one in found.eclipses) else None
 
 
@@ -120,7 +125,7 @@ def _check_repeats(found: Refined) -> None:
     )
 
 
-def _halved(points: LightPoints, double: Refined) -> Refined:
+def _halved(points: LightPoints, double: Refined) -> Refined | None:
     """Two equal minima as one on half the period."""
     timing = double.eclipses[0].fit.timing
     width = 2 * timing.duration / 1.3
@@ -132,7 +137,7 @@ def _of_two_minima(
     single: Refined, double: Refined | None, numbers: Mapping[str, float]
 ) -> Settled:
     name = max(numbers, key=lambda key: numbers[key])
-    words = f"two minima a cycle that differ in {name} by {numbers[name]:.1f} sigma"
+    words = f"two minima a cycle that differ most in {name}, by {numbers[name]:.1f} sigma"
     return Settled(single, words + _alike(double), None, numbers)
 
 
@@ -144,14 +149,20 @@ def _alike(double: Refined | None) -> str:
 
 def _of_one_minimum(single: Refined, double: Refined | None) -> Settled:
     """One dip a cycle: a dark companion, or two equal stars on twice the period."""
-    depth = single.eclipses[0].fit.timing.depth
-    unseen = _unseen_depth(single)
-    numbers = {"depth": depth, "deepest unseen second minimum": unseen}
-    if double is None or single.eclipses[0].fit.timing.duration > 0.25:
+    timing = single.eclipses[0].fit.timing
+    depth, unseen = timing.depth, _unseen_depth(single)
+    radii = float(np.sin(np.pi * min(timing.duration, 0.5)))
+    numbers = {"depth": depth, "deepest unseen second minimum": unseen, "r1 + r2 at least": radii}
+    if double is None:
         words = "one minimum a cycle; twice the period cannot be tested with these cycles"
         return Settled(single, words, 2 * single.period, numbers)
-    likely_dark = unseen > depth * depth**DARK_POWER
-    if likely_dark:
+    if radii > WIDEST_PAIR:
+        words = (
+            f"even and odd minima are alike, but one eclipse a cycle of this length needs r1 + r2 = {radii:.2f}, "
+            "no detached pair: two equal stars on twice the period of the dips"
+        )
+        return Settled(double, words, single.period, numbers)
+    if unseen > depth * depth**DARK_POWER:
         words = (
             "one minimum a cycle; two equal stars on twice the period would look the same "
             f"(a second minimum up to {unseen:.2g} would go unseen)"

@@ -15,7 +15,6 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 
 import numpy as np
-from numpy.typing import NDArray
 
 from shadowscale.data.photometry import Floats, Ints
 from shadowscale.timing._kernels import eclipse_rows, shape_grid

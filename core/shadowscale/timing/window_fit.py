@@ -17,6 +17,7 @@ from shadowscale.timing.shape_fit import ShapeData, predicted
 
 MARGIN = 0.4  # light on either side of an eclipse, in durations
 FEWEST_OUTSIDE = 30  # points outside eclipse that the window should hold
+FEWEST_IN_WINDOW = 10  # points to fit an eclipse at all
 FEWEST_INSIDE = 3  # points in an eclipse that give a band's depth
 WIDEST_WINDOW = 0.24  # [cycles] half width
 OUTLIER = 5.0  # [sigma]
@@ -51,7 +52,7 @@ def see_eclipse(
     *,
     smear: float = 0.0,
     profile: Profile | None = None,
-) -> SeenEclipse:
+) -> SeenEclipse | None:
     """Fit one of the dips in a window from its box, then again without outliers in one from the fit.
 
     Parameters
@@ -67,6 +68,11 @@ def see_eclipse(
         Exposure.
     profile : Profile, optional
         Use this shape; the best discs where missing.
+
+    Returns
+    -------
+    SeenEclipse or None
+        None where too few points are in the window.
     """
     dip = dips[number]
     near = nearest(cycles, dip.middle)
@@ -77,7 +83,10 @@ def see_eclipse(
     for turn, shape in enumerate((TRAPEZOID, TRAPEZOID, profile, profile)):
         window = _window(near, middle, width, room)
         inside = (near >= window[0]) & (near <= window[1])
-        data = _shape_data(points, near, inside & kept, smear)
+        rows = inside & kept
+        if rows.sum() < FEWEST_IN_WINDOW or not np.any(np.abs(near[rows] - middle) < width / 2):
+            return None
+        data = _shape_data(points, near, rows, smear)
         box = min(width / 1.3, 1.3 * dip.width)
         fit = fit_eclipse(data, middle=middle, width=box, profile=shape, first=first)
         residuals = _residuals(points, near, inside, fit, smear)

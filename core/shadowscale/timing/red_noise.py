@@ -1,0 +1,64 @@
+"""Whether dips stand out of slow noise: a few nights below the others are no eclipses."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from shadowscale.data.photometry import Floats
+from shadowscale.errors import NoSolutionError
+from shadowscale.timing.light_points import robust_scatter
+from shadowscale.timing.refine import Refined
+from shadowscale.timing.search_data import SearchData
+from shadowscale.timing.weigh import depth_and_residuals
+
+LEAST_SIGNAL = 6.0
+FEWEST_CELLS = 6
+
+
+def check_red_noise(data: SearchData, found: Refined) -> None:
+    """NoSolutionError if the deeper eclipse is within the slow noise.
+
+    The noise of a mean depth over N eclipses of n points is sqrt(white^2/n + red^2/N), red the scatter of
+    means over the length of an eclipse beyond what white noise gives (Pont, Zucker & Queloz 2006, MNRAS
+    373, 231).
+    """
+    deepest = found.eclipses[0]
+    timing = deepest.fit.timing
+    depth, residual = depth_and_residuals(data, found)
+    red = _red_scatter(data, found, residual, timing.duration * found.period)
+    cycles = max(found.cycles_seen[0], 1)
+    error = float(np.hypot(timing.depth / max(deepest.signal, 1e-9), red / np.sqrt(cycles)))
+    if depth > LEAST_SIGNAL * error:
+        return
+    numbers = {
+        "depth": depth,
+        "slow noise": red,
+        "eclipses seen": float(cycles),
+        "depth over its noise": depth / error,
+        "needed": LEAST_SIGNAL,
+    }
+    raise NoSolutionError("the dips do not stand out of the slow variation", numbers)
+
+
+def _red_scatter(data: SearchData, found: Refined, residual: Floats, length: float) -> float:
+    """Scatter of means over a time [d] beyond that of white noise, outside the eclipses."""
+    rows = np.ones(residual.size, bool)
+    cycles = (data.origin - found.origin + data.time) / found.period
+    for one in found.eclipses:
+        away = cycles - one.fit.timing.middle
+        rows &= np.abs(away - np.round(away)) > 0.6 * one.fit.timing.duration
+    mean, noise = _cell_means(data.time[rows], residual[rows], data.weight[rows], length)
+    if mean.size < FEWEST_CELLS:
+        return 0.0
+    return float(np.sqrt(max(robust_scatter(mean) ** 2 - float(np.median(noise)) ** 2, 0.0)))
+
+
+def _cell_means(
+    time: Floats, value: Floats, weight: Floats, length: float
+) -> tuple[Floats, Floats]:
+    """Means in cells of time, and their white noise."""
+    if time.size == 0:
+        return np.empty(0), np.empty(0)
+    _, number = np.unique(np.floor(time / length), return_inverse=True)
+    mass = np.bincount(number, weight)
+    return np.bincount(number, weight * value) / mass, mass**-0.5
