@@ -39,6 +39,7 @@ class Desk(QObject):
         super().__init__(parent)
         self.path: Path | None = None
         self.complete: Callable[[Session, Session], Session] = lambda _before, after: after
+        self.travelling = False
         self._telling = False
         self._history = History(session or Session())
         self._saved = self._history.session
@@ -91,18 +92,24 @@ class Desk(QObject):
 
     def undo(self) -> None:
         """One step back."""
-        self._history.undo()
-        self._tell()
+        self._travel(self._history.undo)
 
     def redo(self) -> None:
         """One step forward."""
-        self._history.redo()
-        self._tell()
+        self._travel(self._history.redo)
 
     def mark_saved(self, path: Path) -> None:
         """The present session is in that file."""
         self.path, self._saved = path, self.session
         self.changed.emit(self.session, frozenset())
+
+    def _travel(self, go: Callable[[], Session]) -> None:
+        go()
+        self.travelling = True
+        try:
+            self._tell()
+        finally:
+            self.travelling = False
 
     def _tell(self) -> None:
         if self._telling:

@@ -9,7 +9,7 @@ from PySide6.QtCore import QObject, QTimer, Signal
 from shadowscale.progress import Progress
 from shadowscale.session.session import Session
 from shadowscale.view.contacts import with_contact_solution
-from shadowscale.view.wishes import asks_for_solution
+from shadowscale.view.wishes import asks_for_solution, for_refit
 from shadowscale_app import trouble
 from shadowscale_app.desk import Desk
 from shadowscale_app.jobs import Answer, LiveLane
@@ -57,14 +57,17 @@ class Live(QObject):
         if "name" in names and "photometry" in names:  # another piece of work
             self.forget()
             return
+        if self._desk.travelling:  # a state that was left and is taken up again has its solution
+            self.forget()
+            return
         solved = session.solution is not None and before.solution is session.solution
         if self.following and solved and asks_for_solution(before, session):
             self.ask()
 
     def _submit(self) -> None:
-        session = self._desk.session
-        if session.photometry is None:
+        if self._desk.session.photometry is None:
             return
+        session = for_refit(self._desk.session)
 
         def work(progress: Progress) -> Session:
             from shadowscale.jobs.solve import solve_session

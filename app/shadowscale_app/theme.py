@@ -202,6 +202,8 @@ def _sheet(now: Colours) -> str:
     QPushButton#card {{ text-align: left; background: {now.raised}; border: 1px solid {now.line};
                         border-radius: 6px; padding: 8px 12px; }}
     QPushButton#card:hover, QPushButton#card:focus {{ border-color: {now.accent}; }}
+    QDialogButtonBox, QMessageBox {{ dialogbuttonbox-buttons-have-icons: 0; }}
+    QSpinBox, QDoubleSpinBox {{ min-height: 22px; }}
     QLabel#quiet {{ color: {now.quiet}; }}
     QLabel#title {{ font-weight: 600; }}
     QFrame#card {{ background: {now.raised}; border: 1px solid {now.line}; }}

@@ -39,7 +39,7 @@ def test_values_errors_and_units_are_those_of_the_solution(bench: Bench) -> None
     ) == ("0.26900", "\N{PLUS-MINUS SIGN}0.00040")
     assert cell(bench, "third_light[V]", SYMBOL) == "l3 V"
     assert "held" in cell(bench, "third_light[V]", STATE)
-    assert "with prior" in cell(bench, "radius_ratio", STATE)
+    assert "prior" in cell(bench, "radius_ratio", STATE)
 
 
 def test_typing_a_value_changes_the_model_at_once(bench: Bench) -> None:

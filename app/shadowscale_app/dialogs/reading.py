@@ -118,13 +118,16 @@ class ReadingDialog(QDialog):
         if self.kind == "photometry":
             self.band.setPlaceholderText("such as V")
             self.band.setAccessibleName("Band of the whole file")
-            for column, widget in enumerate((QLabel("Band"), self.band)):
+            for column, widget in enumerate((QLabel("Band of the file"), self.band)):
                 grid.addWidget(widget, line + 1, column)
         self.form.setObjectName("quiet")
         self.foot.setWordWrap(True)
         self.rows.setEditTriggers(QAbstractItemView.EditTrigger.NoEditTriggers)
         self.rows.setAccessibleName("First rows of the file")
-        self.rows.setMaximumHeight(210)
+        self.rows.setMaximumHeight(220)
+        self.rows.verticalHeader().setDefaultSectionSize(22)
+        self.rows.verticalHeader().hide()
+        self.rows.setShowGrid(False)
         self.buttons.accepted.connect(self.accept)
         self.buttons.rejected.connect(self.reject)
         layout = QVBoxLayout(self)

@@ -7,6 +7,8 @@ from PySide6.QtWidgets import QMessageBox, QWidget
 
 from shadowscale_app.trouble import Trouble
 
+AS_BEFORE = "The session is as it was."
+
 
 class TroubleDialog(QMessageBox):
     """Readable and copyable; it says that the session is as it was."""
@@ -18,7 +20,7 @@ class TroubleDialog(QMessageBox):
         self.setIcon(expected)
         self.setWindowTitle("Shadowscale")
         self.setText(f"This happened while {trouble.doing}:")
-        self.setInformativeText(f"{trouble.sentence}\n\nThe session is as it was.")
+        self.setInformativeText(trouble.sentence + (f"\n\n{AS_BEFORE}" if trouble.expected else ""))
         if not trouble.expected:
             self.setDetailedText(trouble.details)
         copy = self.addButton("Copy", QMessageBox.ButtonRole.ActionRole)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import Any
 
 from PySide6.QtCore import QAbstractTableModel, QModelIndex, QPersistentModelIndex, Qt, Signal
-from PySide6.QtGui import QColor, QFont
+from PySide6.QtGui import QColor
 
 from shadowscale.view.rows import FREE, HELD, WITH_PRIOR, Row
 from shadowscale.view.written import read_number
@@ -18,7 +18,7 @@ ROW = Qt.ItemDataRole.UserRole
 MARKS = {
     FREE: "\N{WHITE CIRCLE} free",
     HELD: "\N{BLACK CIRCLE} held",
-    WITH_PRIOR: "\N{BULLSEYE} with prior",
+    WITH_PRIOR: "\N{BULLSEYE} prior",
 }
 
 
@@ -86,14 +86,6 @@ class QuantityModel(QAbstractTableModel):
             return int(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
         if role == Qt.ItemDataRole.ForegroundRole and index.column() in (ERROR, UNIT, LIMITS):
             return QColor(theme.colours().quiet)
-        if (
-            role == Qt.ItemDataRole.FontRole
-            and index.column() == VALUE
-            and row.state in (FREE, WITH_PRIOR)
-        ):
-            font = QFont()
-            font.setBold(True)
-            return font
         return None
 
     def setData(self, index: Index, value: Any, role: int = Qt.ItemDataRole.EditRole) -> bool:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
+from shadowscale_app.panes.chips import BandChips
 from shadowscale_app.panes.light_pair import LightPair
 from shadowscale_app.panes.marking import Marking
 from shadowscale_app.panes.pane import Pane
@@ -26,13 +27,19 @@ class FoldedPane(Pane):
         self.pair.curve.setXRange(-0.26, 0.76, padding=0)
         self.pair.pointed.connect(self.pointed)
         self.marking = Marking(self, (self.pair,))
+        self.chips = BandChips()
+        self.chips.looked.connect(self.looked)
         layout = QVBoxLayout(self)
         layout.setContentsMargins(0, 0, 0, 0)
-        layout.addWidget(self.pair)
+        layout.setSpacing(0)
+        layout.addWidget(self.chips)
+        layout.addWidget(self.pair, 1)
 
     def refresh(self, names: frozenset[str]) -> None:
         """Draw what changed."""
         self.pair.show_light(self.session, names)
+        if names & {"photometry", "view"}:
+            self.chips.show_bands(self.session)
 
     def point(self, phase: float) -> None:
         """Show the phase under the cursor."""

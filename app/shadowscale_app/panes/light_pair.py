@@ -10,7 +10,13 @@ from PySide6.QtWidgets import QSplitter, QVBoxLayout, QWidget
 from shadowscale.session.session import Session
 from shadowscale.view.bins import binned
 from shadowscale.view.curves import Curve, contact_curves, fitted_curves
-from shadowscale.view.light_points import LightPoints, band_shifts, light_over_phase, sensible_range
+from shadowscale.view.light_points import (
+    LightPoints,
+    band_shifts,
+    ephemeris,
+    light_over_phase,
+    sensible_range,
+)
 from shadowscale.view.looks import Look, look_of
 from shadowscale_app import theme
 from shadowscale_app.plots.marked import MarkedPicture
@@ -41,14 +47,20 @@ class LightPair(QWidget):
         self._cursor = [_cursor_line(), _cursor_line()]
         self._zero = pg.InfiniteLine(0.0, angle=0)
         self._shifts: tuple[float, ...] = ()
+        self._folding: tuple[float, float] | None = None
         self._place()
 
     def show_light(self, session: Session, names: frozenset[str]) -> None:
         """Draw what changed."""
         look = look_of(session.view)
-        if names & POINTS:
+        folding = ephemeris(session)
+        if names & POINTS or folding != self._folding:
+            self._folding = folding
             self._show_points(session, look)
-        if names & LIGHT or names & {"markers", "contact"}:
+            self._show_residuals(session, look)
+        elif "system" in names:
+            self._show_residuals(session, look)
+        if names & LIGHT or "contact" in names:
             self._show_models(session, look)
         if "view" in names:
             self.curve.set_inverted(look.magnitudes)
@@ -101,24 +113,31 @@ class LightPair(QWidget):
     def _show_points(self, session: Session, look: Look) -> None:
         light = _visible(light_over_phase(session, magnitudes=look.magnitudes), look)
         self._shifts = band_shifts(light, magnitudes=look.magnitudes)
-        count = len(session.photometry.bands) if session.photometry is not None else 0
-        self.points.show_layers(self._layers(light, look, shifts=self._shifts, bands=count))
-        rest = _visible(light_over_phase(session, magnitudes=look.magnitudes, residuals=True), look)
+        self.points.show_layers(self._layers(light, look, shifts=self._shifts, session=session))
+        _fit_height(self.curve, sensible_range(light, self._shifts))
+
+    def _show_residuals(self, session: Session, look: Look) -> None:
+        computed = READY or (
+            session.solution is not None and session.system is session.solution.system
+        )
+        rest: tuple[LightPoints, ...] = ()
+        if computed:
+            found = light_over_phase(session, magnitudes=look.magnitudes, residuals=True)
+            rest = _visible(found, look)
         level = tuple(0.0 for _ in rest)
-        self.rest_points.show_layers(self._layers(rest, look, shifts=level, bands=count))
-        for picture, points, shifts in (
-            (self.curve, light, self._shifts),
-            (self.rest, rest, level),
-        ):
-            found = sensible_range(points, shifts)
-            if found is not None:
-                picture.home_y = found
-                picture.setYRange(*found, padding=0)
+        self.rest_points.show_layers(self._layers(rest, look, shifts=level, session=session))
+        _fit_height(self.rest, sensible_range(rest, level))
 
     def _layers(
-        self, light: tuple[LightPoints, ...], look: Look, *, shifts: tuple[float, ...], bands: int
+        self,
+        light: tuple[LightPoints, ...],
+        look: Look,
+        *,
+        shifts: tuple[float, ...],
+        session: Session,
     ) -> tuple[Layer, ...]:
         now = theme.colours()
+        bands = 0 if session.photometry is None else len(session.photometry.bands)
         found: list[Layer] = []
         for points, shift in zip(light, shifts, strict=True):
             tint = now.band(points.band, bands)
@@ -182,6 +201,12 @@ class LightPair(QWidget):
         else:
             axis.setScale(1.0)
             axis.setLabel("phase")
+
+
+def _fit_height(picture: Picture, found: tuple[float, float] | None) -> None:
+    if found is not None and found != picture.home_y:
+        picture.home_y = found
+        picture.setYRange(*found, padding=0)
 
 
 def _visible(light: tuple[LightPoints, ...], look: Look) -> tuple[LightPoints, ...]:

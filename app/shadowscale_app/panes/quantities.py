@@ -38,7 +38,7 @@ from shadowscale_app.panes.pane import Pane
 NOTHING = "Choose a quantity to move it"
 REACH = 100  # slider steps to either side of where it was taken up
 WATCHED = frozenset({"system", "solution", "plan"})
-WIDTHS = {SYMBOL: 62, VALUE: 122, ERROR: 92, UNIT: 34, STATE: 80, GRADE: 96}
+WIDTHS = {SYMBOL: 64, VALUE: 110, ERROR: 88, UNIT: 34, STATE: 62, GRADE: 110}
 
 
 class QuantitiesPane(Pane):

@@ -5,14 +5,18 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import replace
 from functools import partial
+from pathlib import Path
 
 from PySide6.QtCore import Qt
 from PySide6.QtWidgets import (
     QComboBox,
     QDoubleSpinBox,
+    QFileDialog,
     QFormLayout,
     QGroupBox,
     QLabel,
+    QLineEdit,
+    QPushButton,
     QScrollArea,
     QVBoxLayout,
     QWidget,
@@ -26,8 +30,11 @@ from shadowscale.view.wishes import (
     LAW_NAMES,
     LEVEL_WORDS,
     ORBIT_WORDS,
+    read_pair,
     third_light_wish,
     with_third_light,
+    with_wavelength,
+    written_pair,
 )
 from shadowscale_app.desk import Change
 from shadowscale_app.panes.pane import Pane
@@ -48,6 +55,9 @@ class SettingsPane(Pane):
         super().__init__(parent)
         self.boxes: dict[str, QComboBox] = {}
         self.exposure = QDoubleSpinBox()
+        self.teffs = (QLineEdit(), QLineEdit())
+        self.table = QPushButton()
+        self.waves: dict[str, QDoubleSpinBox] = {}
         self._bands: tuple[str, ...] = ()
         self._filling = False
         inner = QWidget()
@@ -55,6 +65,7 @@ class SettingsPane(Pane):
         self._column.setContentsMargins(10, 10, 10, 8)
         self._make_model_group()
         self._make_effects_group()
+        self._make_stars_group()
         self._band_group = QGroupBox("Bands")
         self._band_form = QFormLayout(self._band_group)
         self._column.addWidget(self._band_group)
@@ -84,7 +95,14 @@ class SettingsPane(Pane):
             self._select(effect, plan.effects.get(effect, "off"))
         for band in self._bands:
             self._select(f"third {band}", third_light_wish(plan, band))
+            self.waves[band].setValue(plan.wavelengths.get(band, 0.0))
         self.exposure.setValue(plan.exposure)
+        for name, field in zip(("teff1", "teff2"), self.teffs, strict=True):
+            field.setText(written_pair(getattr(plan, name)))
+        table = plan.limb_table
+        self.table.setText(
+            "Choose\N{HORIZONTAL ELLIPSIS}" if table is None else f"Drop {Path(table).name}"
+        )
         self._filling = False
 
     def _make_model_group(self) -> None:
@@ -157,6 +175,43 @@ class SettingsPane(Pane):
             )
         self._column.addWidget(group)
 
+    def _make_stars_group(self) -> None:
+        group = QGroupBox("Stars and limb darkening")
+        form = QFormLayout(group)
+        tip = "Effective temperature with its sigma in K, for luminosities and limb darkening; empty: unknown."
+        for name, field in zip(("teff1", "teff2"), self.teffs, strict=True):
+            field.setPlaceholderText("such as 6350 \N{PLUS-MINUS SIGN} 110")
+            field.setToolTip(tip)
+            field.setAccessibleName(f"Temperature of star {name[-1]}")
+            field.editingFinished.connect(partial(self._take_teff, name, field))
+            form.addRow(f"Temperature {name[-1]} [K]", field)
+        self.table.setToolTip(
+            "A file of published limb-darkening coefficients; without one a grey atmosphere is taken."
+        )
+        self.table.setAccessibleName("Limb-darkening table")
+        self.table.clicked.connect(self._choose_table)
+        form.addRow("Limb table", self.table)
+        self._column.addWidget(group)
+
+    def _take_teff(self, name: str, field: QLineEdit) -> None:
+        try:
+            pair = read_pair(field.text())
+        except ValueError as problem:
+            self.told.emit(str(problem))
+            return
+        if pair != getattr(self.session.plan, name):
+            plan = self.session.plan
+            plan = replace(plan, teff1=pair) if name == "teff1" else replace(plan, teff2=pair)
+            self._ask(f"Set temperature {name[-1]}", plan)
+
+    def _choose_table(self) -> None:
+        if self.session.plan.limb_table is not None:
+            self._ask("Drop limb table", replace(self.session.plan, limb_table=None))
+            return
+        path, _ = QFileDialog.getOpenFileName(self, "Limb-darkening table")
+        if path:
+            self._ask("Set limb table", replace(self.session.plan, limb_table=path))
+
     def _make_bands(self, photometry: Photometry | None) -> None:
         bands = () if photometry is None else photometry.bands
         if bands == self._bands:
@@ -179,6 +234,20 @@ class SettingsPane(Pane):
                 partial(_with_third_light, band),
             )
             self._band_form.addRow(words, box)
+            wave = QDoubleSpinBox()
+            wave.setRange(0.0, 30000.0)
+            wave.setDecimals(0)
+            wave.setSuffix(" nm")
+            wave.setSpecialValueText("by its name")
+            wave.setKeyboardTracking(False)
+            wave.setAccessibleName(f"Wavelength of {band}")
+            wave.setToolTip("Where the band lies; sets where limb darkening starts.")
+            wave.valueChanged.connect(partial(self._take_wavelength, band))
+            self.waves[band] = wave
+            self._band_form.addRow(f"Wavelength of {band}", wave)
+
+    def _take_wavelength(self, band: str, value: float) -> None:
+        self._ask(f"Set wavelength of {band}", with_wavelength(self.session.plan, band, value))
 
     def _box(
         self,

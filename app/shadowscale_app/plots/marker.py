@@ -11,6 +11,7 @@ from shadowscale.view.markers import Handle
 from shadowscale.view.written import phase_text
 from shadowscale_app import theme
 
+EDGE = 0.25  # of the picture
 DASHES = {
     "contact": Qt.PenStyle.DashLine,
     "window": Qt.PenStyle.SolidLine,
@@ -43,9 +44,7 @@ class MarkerLine(pg.InfiniteLine):
         self._quiet = quiet
         self._held = False
         self._offset = 0.0
-        side = 1.0 if handle.short in ("1", "2") else 0.0
-        anchors = [(side, 0.5), (side, 0.5)]
-        self.label = pg.InfLineLabel(self, text="", position=high, movable=False, anchors=anchors)
+        self.label = pg.InfLineLabel(self, text="", position=high, movable=False)
         self.setZValue(20)
         self.setCursor(Qt.CursorShape.SplitHCursor)
         self.dress()
@@ -66,8 +65,18 @@ class MarkerLine(pg.InfiniteLine):
         self.label.border = pg.mkPen(tint if hot else now.line) if text else pg.mkPen(None)
         self.label.setColor(tint)
         self.label.setFont(theme.small_font(-1.0 if not hot else -0.5))
+        self._turn_label(hot)
         self.label.setFormat(text)
         self.label.setZValue(30 if hot else 21)
+
+    def _turn_label(self, hot: bool) -> None:
+        """Outward of the eclipse; with its value inward where it would leave the picture."""
+        side = 1.0 if self.handle.short in ("1", "2") else 0.0
+        view = self.viewRect() if hot and self.getViewBox() is not None else None
+        if view is not None and view.width() > 0:
+            across = (self.value() - view.left()) / view.width()
+            side = 0.0 if across < EDGE else 1.0 if across > 1.0 - EDGE else side
+        self.label.anchors = [(side, 0.5), (side, 0.5)]
 
     def follow(self, handle: Handle) -> None:
         """Stand where the session says."""

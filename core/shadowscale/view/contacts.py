@@ -138,7 +138,8 @@ def _outside(session: Session, phase: Floats) -> NDArray[np.bool_]:
     assert markers is not None
     if markers.level:
         spans = [(phase >= low) & (phase <= high) for low, high in markers.level]
-        return np.logical_or.reduce(spans)
+        inside: NDArray[np.bool_] = np.logical_or.reduce(spans)
+        return inside
     found: NDArray[np.bool_] = np.ones(phase.size, dtype=bool)
     for contacts in (markers.primary, markers.secondary):
         if contacts is not None:

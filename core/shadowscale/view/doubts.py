@@ -7,8 +7,10 @@ from dataclasses import dataclass
 
 from shadowscale.judge.finding import FAIL, PASS, WARN, Finding
 from shadowscale.session.session import Session
+from shadowscale.view.light_points import fitting_solution
 from shadowscale.view.written import symbol
 
+SHOWN_LINES = 10
 _ORDER = {FAIL: 0, WARN: 1, PASS: 2}
 
 
@@ -42,6 +44,7 @@ def _lines(session: Session) -> Iterator[Doubt]:
             yield Doubt(
                 "", finding.verdict, finding.check, finding.words, _numbers(finding), finding.source
             )
+    yield from _rows(session)
     contact = session.contact
     if contact is not None and contact.notes:
         yield Doubt("From the contacts")
@@ -66,6 +69,27 @@ def _lines(session: Session) -> Iterator[Doubt]:
     if solution.notes:
         yield Doubt("Notes")
         yield from (Doubt("", "", "", note) for note in solution.notes)
+
+
+def _rows(session: Session) -> Iterator[Doubt]:
+    """How many rows of the tables do not take part, by reason."""
+    photometry, solution = session.photometry, fitting_solution(session)
+    if photometry is None:
+        return
+    why = photometry.why if solution is None else solution.light.why
+    reasons = photometry.reasons if solution is None else solution.light.reasons
+    found = [(reason, int((why == code).sum())) for code, reason in enumerate(reasons) if code]
+    found += [
+        (f"{row.file}, line {row.line}: {row.reason}", 1)
+        for row in photometry.unreadable[:SHOWN_LINES]
+    ]
+    shown = [(words, count) for words, count in found if count]
+    if shown:
+        yield Doubt("Rows set aside")
+        yield from (Doubt("", "", f"{count}", words) for words, count in shown)
+    more = len(photometry.unreadable) - SHOWN_LINES
+    if more > 0:
+        yield Doubt("", "", f"{more}", "more lines that cannot be read")
 
 
 def _numbers(finding: Finding) -> str:

@@ -10,6 +10,7 @@ from shadowscale.data.photometry import USED, Floats, Ints, Photometry
 from shadowscale.fit.solution import Solution
 from shadowscale.session.session import Session
 
+MAGNITUDE = 2.5 / np.log(10.0)  # of a small relative change of flux
 SHIFT = 0.2  # of the range of one band, between two bands drawn in one picture
 
 
@@ -107,7 +108,10 @@ def _by_band(
     solution = fitting_solution(session)
     if residuals and solution is None:
         return ()
-    y, error = _values(photometry, solution, magnitudes=magnitudes, residuals=residuals)
+    model = None
+    if residuals and solution is not None:
+        model = model_of_rows(session, solution)
+    y, error = _values(photometry, solution, model, magnitudes=magnitudes)
     why = (
         photometry.why
         if solution is None
@@ -141,17 +145,34 @@ def fitting_solution(session: Session) -> Solution | None:
     return solution
 
 
+def model_of_rows(session: Session, solution: Solution) -> Floats:
+    """(n,) the model with levels at every row: of the solution, or of a system moved by hand since."""
+    system, photometry = session.system, session.photometry
+    if system is None or photometry is None or system is solution.system:
+        return solution.light.model
+    from shadowscale.fit.model import model_light
+
+    model = np.empty_like(photometry.flux)
+    for number, band in enumerate(photometry.bands):
+        rows = photometry.band == number
+        model[rows] = model_light(system, band, photometry.time[rows])
+    moved: Floats = model * solution.light.level
+    return moved
+
+
 def _values(
-    photometry: Photometry, solution: Solution | None, *, magnitudes: bool, residuals: bool
+    photometry: Photometry, solution: Solution | None, model: Floats | None, *, magnitudes: bool
 ) -> tuple[Floats, Floats]:
+    """Light, or with a model what it leaves over, and the errors; levels taken off."""
     level = np.ones_like(photometry.flux) if solution is None else solution.light.level
     flux, error = photometry.flux / level, photometry.flux_error / level
-    if residuals and solution is not None:
-        model = solution.light.model / level
-        if magnitudes:
-            return to_magnitudes(flux) - to_magnitudes(model), 1.0857 * error / flux
-        return flux - model, error
-    return (to_magnitudes(flux), 1.0857 * error / flux) if magnitudes else (flux, error)
+    if magnitudes:
+        shown = to_magnitudes(flux)
+        if model is not None:
+            shown = shown - to_magnitudes(model / level)
+        with np.errstate(invalid="ignore", divide="ignore"):
+            return shown, np.where(flux > 0, MAGNITUDE * error / flux, 0.0)
+    return (flux if model is None else flux - model / level), error
 
 
 def sensible_range(

@@ -41,8 +41,8 @@ def velocities_over_phase(session: Session) -> tuple[VelocityPoints, ...]:
         rv, error = getattr(table, f"rv{star}"), getattr(table, f"rv{star}_error")
         why = getattr(table, f"why{star}") if result is None else getattr(result, f"why{star}")
         rows = np.flatnonzero(np.isfinite(rv))
-        model = np.full(rv.size, np.nan) if result is None else getattr(result, f"model{star}")
         shift = _offsets(session, star)[table.source]
+        model = _model(session, result, star, shift)
         points.append(
             VelocityPoints(
                 star,
@@ -62,6 +62,20 @@ def _result(session: Session) -> VelocityResult | None:
     if table is None or solution is None or solution.velocity is None:
         return None
     return solution.velocity if solution.velocity.model1.size == table.time.size else None
+
+
+def _model(session: Session, result: VelocityResult | None, star: int, shift: Floats) -> Floats:
+    """The model at every row: of the solution, or of a system moved by hand since; NaN without one."""
+    table, system, solution = session.velocities, session.system, session.solution
+    assert table is not None
+    if result is None or system is None or solution is None:
+        return np.full(table.time.size, np.nan)
+    if system is solution.system or not system.has(f"K{star}"):
+        found: Floats = getattr(result, f"model{star}")
+        return found
+    from shadowscale.fit.model import model_velocities
+
+    return model_velocities(system, star, table.time) + shift
 
 
 def _offsets(session: Session, star: int) -> Floats:

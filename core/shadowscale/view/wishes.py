@@ -5,8 +5,11 @@ from __future__ import annotations
 from dataclasses import replace
 
 from shadowscale.fit.plan import Plan
-from shadowscale.session.session import Session
+from shadowscale.session.session import Markers, Session
+from shadowscale.view.curves import contact_system
+from shadowscale.view.written import read_number
 
+GEOMETRY = ("radius_sum", "radius_ratio", "inclination", "ecosw", "esinw")
 LAW_NAMES = ("linear", "quadratic", "square-root", "logarithmic", "power-2", "four-parameter")
 ORBIT_WORDS = {"auto": "as the data decide", "circular": "circular", "eccentric": "eccentric"}
 LEVEL_WORDS = {
@@ -37,10 +40,62 @@ def with_third_light(plan: Plan, band: str, *, free: bool) -> Plan:
 
 
 def asks_for_solution(before: Session, after: Session) -> bool:
-    """Whether what changed between two sessions changes what a fit would find."""
+    """Whether what changed between two sessions asks for a new fit."""
     if before.photometry is not after.photometry or before.velocities is not after.velocities:
         return after.photometry is not None
     if replace(before.plan, start={}) != replace(after.plan, start={}):
         return True
-    spans = [session.markers.excluded if session.markers else () for session in (before, after)]
-    return spans[0] != spans[1]
+    return _pulled(before.markers) != _pulled(after.markers)
+
+
+def for_refit(session: Session) -> Session:
+    """The session with a plan that starts where the work stands: its ephemeris, and what the markers say."""
+    system, plan = session.system, session.plan
+    if system is None:
+        return session
+    start = dict(plan.start)
+    moved = contact_system(session)
+    if moved is not None:
+        start |= {name: moved.values[name] for name in GEOMETRY if name in moved.free}
+    fresh = replace(
+        plan,
+        period=plan.period or system.value("period"),
+        epoch=plan.epoch or system.value("epoch"),
+        start=start,
+    )
+    return replace(session, plan=fresh)
+
+
+def read_pair(text: str) -> tuple[float, float] | None:
+    """A value with its sigma as a person types it: `6350 110`, `6350 +- 110`; None for an empty text.
+
+    Raises
+    ------
+    ValueError
+        If there are not two numbers, or sigma is not positive.
+    """
+    words = text.replace("\N{PLUS-MINUS SIGN}", " ").replace("+-", " ").replace("+/-", " ").split()
+    if not words:
+        return None
+    if len(words) != 2:
+        raise ValueError(f"expected a value and its sigma, such as 6350 110, found {text!r}")
+    value, sigma = read_number(words[0]), read_number(words[1])
+    if sigma <= 0:
+        raise ValueError(f"sigma must be positive, found {sigma:g}")
+    return value, sigma
+
+
+def written_pair(pair: tuple[float, float] | None) -> str:
+    """The text that `read_pair` reads back."""
+    return "" if pair is None else f"{pair[0]:g} \N{PLUS-MINUS SIGN} {pair[1]:g}"
+
+
+def with_wavelength(plan: Plan, band: str, nanometres: float) -> Plan:
+    """The plan with the wavelength of one band [nm]; 0: as the band's name has it."""
+    others = {name: value for name, value in plan.wavelengths.items() if name != band}
+    return replace(plan, wavelengths={**others, band: nanometres} if nanometres > 0 else others)
+
+
+def _pulled(markers: Markers | None) -> tuple[object, ...]:
+    """What of the markers a fit may depend on."""
+    return () if markers is None else (markers.primary, markers.secondary, markers.excluded)
