@@ -200,9 +200,11 @@ def test_no_two_actions_share_a_key() -> None:
 def test_the_right_click_menu_is_ours(bench: Bench) -> None:
     menu = bench.panes["Folded curve"].pair.curve.menu()
 
-    assert [
-        a.text() for a in menu.actions()
-    ] == ["Copy picture", "Save figure\N{HORIZONTAL ELLIPSIS}", "Reset view"]
+    assert [a.text() for a in menu.actions()] == [
+        "Copy picture",
+        "Save figure\N{HORIZONTAL ELLIPSIS}",
+        "Reset view",
+    ]
     menu.deleteLater()
 
 

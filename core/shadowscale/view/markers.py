@@ -134,10 +134,10 @@ def _moved_contact(
         left, right = (0, 3) if number in (0, 3) else (1, 2)
         new[left], new[right] = middle - half, middle + half
     else:
-        lower = old[number - 1] if number else -float("inf")
-        upper = old[number + 1] if number < 3 else float("inf")
-        gap = 0.0 if number in (1, 2) else LEAST  # a partial eclipse has no flat part
-        new[number] = _between(phase, lower + gap, upper - gap)
+        # in a partial eclipse second and third contact may meet, the others never do
+        lower = old[number - 1] + (0.0 if number == 2 else LEAST) if number else -1.0
+        upper = old[number + 1] - (0.0 if number == 1 else LEAST) if number < 3 else 2.0
+        new[number] = _between(phase, lower, upper)
     return replace(markers, **{part: tuple(new)})
 
 
