@@ -54,7 +54,8 @@ def run_case(number: int) -> dict[str, object]:
         "seconds": spent,
         "pulls": _pulls(case.truth, solution),
         "bound": _bound_ratios(case, solution),
-        "alternatives": len(solution.alternatives),
+        "sides": [alternative.values["radius_ratio"] > 1 for alternative in solution.alternatives],
+        "side": case.truth.value("radius_ratio") > 1,
         "decisions": [each.words for each in solution.decisions if each.what != "limb darkening"],
         "reduced_chi2": solution.fit.reduced_chi2,
         "values": {n: solution.system.values[n] for n in PULLED if n in solution.system.values},
@@ -143,14 +144,17 @@ def report(results: list[dict]) -> None:
     refused = [each for each in results if "error" in each]
     fitted = [each for each in results if "error" not in each]
     good = [e for e in fitted if max(abs(p) for p in e["pulls"].values()) < SOLVED_WITHIN]
-    print(f"{len(results)} systems; solved {len(good)} ({100 * len(good) / len(results):.1f} %)")
+    said = [e for e in fitted if e not in good and e["side"] in e["sides"]]
+    share = 100 * (len(good) + len(said)) / len(results)
+    print(f"{len(results)} systems; truth within the errors {len(good)}; the data allow k and 1/k, and")
+    print(f"the truth is the one listed as alternative {len(said)}; together {share:.1f} %")
     for each in refused:
         print(f"  refused {each['case']}: {each['error']} [{each['words']}]")
     for each in fitted:
         if each not in good:
             worst = max(each["pulls"], key=lambda name: abs(each["pulls"][name]))
             print(f"  off {each['case']}: {worst} by {each['pulls'][worst]:.1f} sigma, "
-                  f"{each['alternatives']} alternatives [{each['words']}]")  # fmt: skip
+                  f"{len(each['sides'])} alternatives [{each['words']}]")  # fmt: skip
     print(
         f"{'quantity':26} {'n':>5} {'mean pull':>10} {'std':>6} {'mad std':>8} {'sigma/bound':>12} {'5%..95%':>14}"
     )

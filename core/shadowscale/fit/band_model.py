@@ -144,7 +144,8 @@ def _limb(
 ) -> tuple[Floats, Floats]:
     """Table of the hidden fraction of one star, and its disc mean with gradient."""
     coefficients = np.array(
-        [values[key(f"limb_darkening{star}", band, n + 1)] for n in range(len(law.coefficients))]
+        [values[key(f"limb_darkening{star}", band, n + 1)] for n in range(len(law.coefficients))],
+        dtype=np.float64,
     )
     table = np.empty((table_rows(size), table_columns(coefficients.size)))
     fill_table(size, law.code, coefficients, table)

@@ -3,16 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
-from difflib import get_close_matches
 
 from shadowscale.data.photometry import Photometry
 from shadowscale.data.velocities import Velocities
-from shadowscale.errors import UsageError
 from shadowscale.fit.limb import LimbChoice
 from shadowscale.fit.plan import EFFECTS, Plan
 from shadowscale.fit.system import System
 from shadowscale.light.laws import LAWS
-from shadowscale.quantities import BAND, QUANTITIES, SOURCE, Key, key, parse_key
+from shadowscale.quantities import Key, key, parse_key
 
 GEOMETRY = ("period", "epoch", "radius_sum", "radius_ratio", "inclination")
 SHAPE = ("ecosw", "esinw")
@@ -30,35 +28,15 @@ def means(name: str, text: str) -> bool:
     )
 
 
+def is_basic(name: str) -> bool:
+    """Whether the model is written in the quantity of a user's name."""
+    return parse_key(name).quantity.basic
+
+
 def named(names: Iterable[str], text: str) -> str | None:
     """The user's name that means the key, the most precise first."""
     fitting = [name for name in names if means(name, text)]
     return max(fitting, key=len) if fitting else None
-
-
-def check_plan(plan: Plan, photometry: Photometry, velocities: Velocities | None) -> None:
-    """UsageError where the plan names a quantity, band or source that is not there."""
-    sources = () if velocities is None else velocities.sources
-    basic = tuple(name for name, quantity in QUANTITIES.items() if quantity.basic)
-    wishes = [
-        *(("--free", name, basic) for name in plan.free),
-        *(("--fix", name, basic) for name in plan.fixed),
-        *(("--prior", prior.name, tuple(QUANTITIES)) for prior in plan.priors),
-    ]
-    for option, name, allowed in wishes:
-        try:
-            parsed = parse_key(name)
-        except ValueError:
-            raise UsageError(option, name, allowed) from None
-        if parsed.name not in allowed:
-            near = get_close_matches(parsed.name, allowed, n=1)
-            hint = f"; {near[0]!r} is one" if near else ""
-            raise UsageError(
-                option, name, expected=f"a quantity that the model is written in{hint}"
-            )
-        labels = {BAND: photometry.bands, SOURCE: sources}.get(QUANTITIES[parsed.name].scope, ())
-        if parsed.label is not None and parsed.label not in labels:
-            raise UsageError(option, name, tuple(f"{parsed.name}[{label}]" for label in labels))
 
 
 def build_system(
@@ -81,11 +59,16 @@ def build_system(
     _add_velocities(values, free, velocities, start)
     for band in photometry.bands:
         _add_band(values, free, plan, band, start=start, limb=limb, third_free=third_free)
+    asked = [*plan.free, *(prior.name for prior in plan.priors if is_basic(prior.name))]
     for name in values:
         if (wish := named(plan.fixed, name)) is not None and not name.startswith("limb_darkening"):
             values[name] = plan.fixed[wish][0]
             free = [each for each in free if each != name]
-        elif named(plan.free, name) is not None and name not in free:
+        elif (
+            name not in free
+            and not name.startswith("limb_darkening")
+            and named(asked, name) is not None
+        ):
             free.append(name)
     stars = [star for star in (1, 2) if f"K{star}" in values]
     return System(

@@ -70,6 +70,10 @@ class Stars:
         if np.isfinite(k1) and np.isfinite(k2):
             one, two = absolute.masses(period, k1, k2, **self.tilt)
             return float(one), float(two)
+        ratio = self.given("mass_ratio")
+        if np.isfinite(ratio) and np.isfinite(k1):
+            one, two = absolute.masses(period, k1, k1 / ratio, **self.tilt)
+            return float(one), float(two)
         mass1 = self.given("M1")
         if np.isfinite(mass1) and np.isfinite(k1):
             companion = absolute.companion_mass(period, k1, mass=mass1, **self.tilt)
@@ -82,7 +86,7 @@ class Stars:
         if np.isfinite(self.given("mass_ratio")):
             return self.given("mass_ratio")
         one, two = self.masses
-        return two / one
+        return two / one if one > 0.0 else nan
 
     @cached_property
     def axis(self) -> float:
@@ -290,5 +294,7 @@ def _why_absent(name: str, system: System) -> str:
     if name == "logg2" and "K1" not in system.values:
         return "needs the velocity amplitude of star 1"
     if not both and "K1" in system.values:
-        return "only star 1 was measured: needs an assumed M1"
+        return "only star 1 was measured: needs an assumed M1 or mass ratio"
+    if "K2" in system.values:
+        return "only star 2 was measured: needs the velocities of star 1"
     return "no velocities: no scale"

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from functools import cached_property
+from math import cos, radians
 
 import numpy as np
 from numpy.typing import NDArray
@@ -180,7 +181,7 @@ class Objective:
             elif at is not None:
                 residual[row], jacobian[row] = rule.value - values[rule.name], limb[at]
                 if rule.name == "inclination":
-                    jacobian[row] = self._slope(lambda each: each["inclination"], x)
+                    jacobian[row, at] = inclination_slope(values[rule.name], rule.sigma)
             else:
                 residual[row] = rule.value - values[rule.name]
         scaled, weighted = self._whitener @ residual, self._whitener @ jacobian
@@ -208,6 +209,17 @@ class Objective:
             above, below = function(self.vector.unpack(up)), function(self.vector.unpack(down))
             slope[column] = (above - below) / (2 * step)
         return slope
+
+
+def inclination_slope(inclination: float, sigma: float) -> float:
+    """Mean slope of the inclination [deg] to cos^2 i over one `sigma` [deg] of a prior.
+
+    The slope at a point grows without bound towards 90 degrees, where the prior would then seem
+    infinitely sharp.
+    """
+    lower = max(inclination - sigma, 0.0)
+    upper = min(inclination + sigma, 90.0)
+    return (upper - lower) / (cos(radians(upper)) ** 2 - cos(radians(lower)) ** 2)
 
 
 def _normal(residual: Floats, jacobian: Floats, error: Floats) -> Normal:

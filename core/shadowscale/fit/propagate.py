@@ -93,4 +93,7 @@ def _difference(
 ) -> Floats:
     high, low = function(above), function(below)
     found = np.array([high.get(name, np.nan) - low.get(name, np.nan) for name in names])
+    if "omega" in names:  # an angle: the short way round
+        at = names.index("omega")
+        found[at] = (found[at] + 180.0) % 360.0 - 180.0
     return np.nan_to_num(found, nan=0.0)

@@ -33,7 +33,7 @@ from shadowscale.fit.solution import (
     Solution,
     VelocityResult,
 )
-from shadowscale.fit.start import Ground
+from shadowscale.fit.start import Ground, wished_epoch
 from shadowscale.fit.system import System
 from shadowscale.quantities import QUANTITIES, key, parse_key
 
@@ -96,9 +96,10 @@ def assemble(
 def _at_wished_epoch(best: Fitted, plan: Plan) -> tuple[System, int]:
     """The system with its epoch moved by whole cycles to the one the user named, and the cycles."""
     values = best.system.values
-    if plan.epoch is None:
+    wished = wished_epoch(plan)
+    if wished is None:
         return best.system, 0
-    cycles = round((plan.epoch - values["epoch"]) / values["period"])
+    cycles = round((wished - values["epoch"]) / values["period"])
     return best.system.with_values({"epoch": values["epoch"] + cycles * values["period"]}), cycles
 
 

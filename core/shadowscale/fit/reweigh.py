@@ -7,7 +7,7 @@ from dataclasses import replace
 import numpy as np
 from numpy.typing import NDArray
 
-from shadowscale.data.photometry import Ints
+from shadowscale.data.photometry import Ints, Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.objective import Objective
 from shadowscale.fit.observed import StarVelocities
@@ -18,6 +18,7 @@ from shadowscale.fit.weights import (
     needed_jitter,
     scatter_scale,
     velocity_outliers,
+    wild_rows,
 )
 
 SETTLED = 0.003  # relative change of a scale that is not worth another fit
@@ -28,6 +29,25 @@ ORBIT_TAKES = 2.0  # quantities that a star's velocities alone pay for: K and ga
 def reasons_with_outlier(reasons: tuple[str, ...]) -> tuple[str, ...]:
     """The table's reasons, with the fit's own at the end."""
     return reasons if LIGHT_CODE in reasons else (*reasons, LIGHT_CODE)
+
+
+def without_wild_rows(problem: Problem, weighting: Weighting) -> Weighting:
+    """The weights with rows set aside that no star explains."""
+    why = _wild(problem.photometry)
+    return weighting if why is problem.photometry.why else replace(weighting, why=why)
+
+
+def _wild(photometry: Photometry) -> Ints:
+    """`why` of the table with wild rows set aside; the table's own array where there are none."""
+    why = photometry.why
+    code = reasons_with_outlier(photometry.reasons).index(LIGHT_CODE)
+    for band in range(len(photometry.bands)):
+        rows = np.flatnonzero((photometry.band == band) & (photometry.why == 0))
+        wild = wild_rows(photometry.flux[rows]) if rows.size else np.zeros(0, dtype=np.bool_)
+        if wild.any():
+            why = why.copy()
+            why[rows[wild]] = code
+    return why
 
 
 def reweighed(problem: Problem, fitted: Fitted, weighting: Weighting) -> tuple[Weighting, bool]:
@@ -53,10 +73,9 @@ def reweighed(problem: Problem, fitted: Fitted, weighting: Weighting) -> tuple[W
 def _light_why(problem: Problem, fitted: Fitted, weighting: Weighting) -> Ints:
     photometry = problem.photometry
     code = reasons_with_outlier(photometry.reasons).index(LIGHT_CODE)
-    everything = problem.objective(
-        fitted.system, replace(weighting, why=photometry.why), fitted.constraints
-    )
-    why = photometry.why.copy()
+    tame = _wild(photometry)
+    everything = problem.objective(fitted.system, replace(weighting, why=tame), fitted.constraints)
+    why = tame.copy()
     parts = everything.light_parts(fitted.minimum.x)
     for data in everything.bands:
         far = light_outliers(data, parts[data.band][2])

@@ -10,9 +10,10 @@ import numpy as np
 from shadowscale.data.limb_tables import LimbTable, read_limb_table
 from shadowscale.data.photometry import Floats, Ints, Photometry
 from shadowscale.data.velocities import Velocities
-from shadowscale.errors import NotConvergedError
+from shadowscale.errors import NotConvergedError, NotDetachedError
 from shadowscale.fit.alternatives import Branch, distinct_branches, mirrored, preference
-from shadowscale.fit.build import build_system, check_plan, named
+from shadowscale.fit.build import build_system, named
+from shadowscale.fit.check import check_plan, check_wishes
 from shadowscale.fit.decide import decision, needed
 from shadowscale.fit.effects import predicted_amplitudes
 from shadowscale.fit.least_squares import STALLED
@@ -23,7 +24,7 @@ from shadowscale.fit.priors import prior_constraints
 from shadowscale.fit.problem import Fitted, Problem, Weighting, fit_system, thinned
 from shadowscale.fit.profile import valley
 from shadowscale.fit.result import assemble
-from shadowscale.fit.reweigh import reweighed
+from shadowscale.fit.reweigh import reweighed, without_wild_rows
 from shadowscale.fit.solution import Decision, Solution
 from shadowscale.fit.start import Ground, find_ground
 from shadowscale.fit.system import System
@@ -37,6 +38,7 @@ LIMB_ROUNDS = 4
 THINNED_ROWS = 5000
 EXPLORING_STEPS = 40
 VALLEY_ROUNDS = 3
+MOST_DIM_STARTS = 4
 HOPELESS = 60.0  # in chi-squared of the thinned data: no full fit mends that
 
 
@@ -110,7 +112,8 @@ def solve(
     table = None if plan.limb_table is None else read_limb_table(plan.limb_table)
     ground = find_ground(photometry, velocities, plan, progress)
     problem = Problem(photometry, velocities)
-    work = _Work(problem, plan, ground, table, progress, problem.weighting())
+    weighting = without_wild_rows(problem, problem.weighting())
+    work = _Work(problem, plan, ground, table, progress, weighting)
     best, branches = _explored(work)
     best = _with_effects(work, best)
     best = _weighed(work, best)
@@ -140,20 +143,25 @@ def _explored(work: _Work) -> tuple[Fitted, list[Fitted]]:
     """The best of several starts, and the other minima met on the way."""
     fitted: list[Fitted] = []
     starts = work.ground.starts
+    if _told_of_third_light(work.plan, work.problem.photometry.bands, free_only=True):
+        starts = (*starts, *work.ground.dim_starts)
     for number, start in enumerate(starts):
         work.progress.report(
             0.25 + 0.3 * number / len(starts), f"start {number + 1} of {len(starts)}"
         )
         if number == 0:
             work.limb = _limb(work, start)
+            check_wishes(work.plan, _system(work, start))
         try:
             fitted.append(work.explore(_system(work, start), most=FIRST_STEPS))
         except np.linalg.LinAlgError:
             continue
-    fitted = sorted((each for each in fitted if np.isfinite(each.chi2)), key=lambda each: each.chi2)
+    fitted = sorted((each for each in fitted if np.isfinite(each.chi2)), key=preference)
     if not fitted:
-        raise NotConvergedError(
-            "no start describes two separate stars", {"starts": float(len(starts))}
+        raise NotDetachedError(
+            "no two separate stars make eclipses as long as these",
+            {"r1 + r2": work.ground.contact.values.get("radius_sum", np.nan)},
+            "a close pair needs a model of stars that touch",
         )
     chosen = distinct_branches(fitted)[:KEPT_STARTS]
     finished = [work.explore(each.system, most=EXPLORING_STEPS) for each in chosen]
@@ -284,10 +292,14 @@ def _level_count(work: _Work, mode: str) -> int:
 def _with_third_light(work: _Work, best: Fitted) -> Fitted:
     """Third light free where the data demand it and the user said nothing."""
     names = [key("third_light", band) for band in best.system.bands]
-    told = {*work.plan.free, *work.plan.fixed}
-    if any(named(told, name) for name in names if name):
+    if _told_of_third_light(work.plan, best.system.bands):
         return best
-    other = work.fit(replace(best.system, free=(*best.system.free, *names)))
+    freed = replace(best.system, free=(*best.system.free, *names))
+    dim = [_moved(freed, start) for start in work.ground.dim_starts[:MOST_DIM_STARTS]]
+    rough = min(
+        (work.explore(system, most=FIRST_STEPS) for system in (freed, *dim)), key=preference
+    )
+    other = min((work.fit(freed), work.fit(rough.system)), key=preference)
     gain = best.chi2 - other.chi2
     enough, limit = needed(gain, len(names))
     positive = all(other.system.values[name] > -0.02 for name in names)
@@ -297,6 +309,14 @@ def _with_third_light(work: _Work, best: Fitted) -> Fitted:
                  limit=limit, subject="third light")
     )  # fmt: skip
     return _weighed(work, other) if take else best
+
+
+def _told_of_third_light(plan: Plan, bands: Sequence[str], *, free_only: bool = False) -> bool:
+    """Whether the user said what to do with third light; `free_only`: that it is to be free."""
+    told = {*plan.free, *(prior.name for prior in plan.priors)}
+    told |= set() if free_only else set(plan.fixed)
+    told = {name for name in told if name.startswith("third_light")}
+    return any(named(told, key("third_light", band)) for band in bands)
 
 
 def _with_orbit(work: _Work, best: Fitted) -> Fitted:

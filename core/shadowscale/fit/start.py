@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -12,7 +12,12 @@ from shadowscale.data.photometry import Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.band_model import constants_of
 from shadowscale.fit.plan import Plan
-from shadowscale.geometry.contacts import ContactSolution, contact_solution, starting_points
+from shadowscale.geometry.contacts import (
+    ContactSolution,
+    EclipseTiming,
+    contact_solution,
+    starting_points,
+)
 from shadowscale.orbit._rows import velocity_rows
 from shadowscale.progress import Progress
 from shadowscale.quantities import key
@@ -22,6 +27,7 @@ from shadowscale.timing.results import MeasuredEclipses, PeriodSearch
 
 Floats = NDArray[np.float64]
 Start = dict[str, float]
+TRIED_THIRD_LIGHT = 0.3
 
 
 @dataclass(frozen=True, eq=False)
@@ -32,6 +38,7 @@ class Ground:
     measured: MeasuredEclipses
     contact: ContactSolution
     starts: tuple[Start, ...]
+    dim_starts: tuple[Start, ...] = ()  # the same with third light
 
 
 def find_ground(
@@ -45,7 +52,7 @@ def find_ground(
         Where there are no eclipses, or the stars are too close.
     """
     search = None
-    period, epoch = plan.period, plan.epoch
+    period, epoch = plan.period, wished_epoch(plan)
     if period is None:
         progress.report(0.02, "searching the period")
         search = search_period(photometry, progress=progress)
@@ -53,12 +60,82 @@ def find_ground(
         epoch = search.epoch if epoch is None else epoch
     progress.report(0.2, "measuring the eclipses")
     measured = measure_eclipses(photometry, period=period, epoch=epoch, exposure=plan.exposure)
-    contact = contact_solution(measured.primary, measured.secondary, period=measured.period)
-    starts = tuple(
-        _complete(dict(point), measured, photometry, velocities, plan)
-        for point in starting_points(measured.primary, measured.secondary, period=measured.period)
+    contact, starts = _contacts(measured, photometry, velocities, plan)
+    if measured.secondary is not None and _backwards(starts[0], velocities):
+        measured = exchanged(measured)
+        contact, starts = _contacts(measured, photometry, velocities, plan)
+    dimmed = _diluted(measured, 1.0 - TRIED_THIRD_LIGHT)
+    _, dim = _contacts(dimmed, photometry, velocities, plan)
+    third = {key("third_light", band): TRIED_THIRD_LIGHT for band in photometry.bands}
+    return Ground(search, measured, contact, starts, tuple(start | third for start in dim))
+
+
+def wished_epoch(plan: Plan) -> float | None:
+    """The epoch near which the user wants the fitted one: as given, or as in a prior."""
+    prior = next((each.values[0] for each in plan.priors if each.name == "epoch"), None)
+    return plan.epoch if plan.epoch is not None else prior
+
+
+def _contacts(
+    measured: MeasuredEclipses, photometry: Photometry, velocities: Velocities | None, plan: Plan
+) -> tuple[ContactSolution, tuple[Start, ...]]:
+    """The contact solution and the starts that go with it."""
+    eclipses = measured.primary, measured.secondary
+    contact = contact_solution(*eclipses, period=measured.period)
+    points = starting_points(*eclipses, period=measured.period)
+    starts = (_complete(dict(point), measured, photometry, velocities, plan) for point in points)
+    return contact, tuple(starts)
+
+
+def _backwards(start: Start, velocities: Velocities | None) -> bool:
+    """Whether the velocities say that star 1 is the one behind at the other minimum."""
+    if velocities is None:
+        return False
+    slopes = signed_amplitudes(start, velocities)
+    return bool(slopes) and sum(slopes.values()) < 0.0
+
+
+def exchanged(measured: MeasuredEclipses) -> MeasuredEclipses:
+    """The same eclipses with the other one as the primary."""
+    secondary = measured.secondary
+    if secondary is None:
+        return measured
+    middle = secondary.middle
+    word = (
+        "star 1 of the velocities is eclipsed at the shallower minimum, which is therefore "
+        "the primary here"
     )
-    return Ground(search, measured, contact, starts)
+    return replace(
+        measured,
+        epoch=measured.epoch + middle * measured.period,
+        primary=replace(secondary, middle=0.0),
+        secondary=replace(measured.primary, middle=1.0 - middle),
+        depths={band: (two or 0.0, one) for band, (one, two) in measured.depths.items()},
+        depth_errors={
+            band: (two or 0.0, one) for band, (one, two) in measured.depth_errors.items()
+        },
+        primary_window=_moved(measured.secondary_window or measured.primary_window, -middle),
+        secondary_window=_moved(measured.primary_window, 1.0 - middle),
+        notes=(*measured.notes, word),
+    )
+
+
+def _moved(span: tuple[float, float], by: float) -> tuple[float, float]:
+    return span[0] + by, span[1] + by
+
+
+def _diluted(measured: MeasuredEclipses, share: float) -> MeasuredEclipses:
+    """The eclipses as deep as they would be without the rest of the light."""
+
+    def deeper(timing: EclipseTiming) -> EclipseTiming:
+        return replace(timing, depth=min(timing.depth / share, 0.99))
+
+    secondary = measured.secondary
+    return replace(
+        measured,
+        primary=deeper(measured.primary),
+        secondary=None if secondary is None else deeper(secondary),
+    )
 
 
 def _complete(
@@ -95,27 +172,37 @@ def velocity_start(values: Mapping[str, float], velocities: Velocities | None) -
     """K, gamma and offsets of both stars by linear least squares on the orbit of `values`."""
     if velocities is None:
         return {}
-    constants = constants_of(values)
-    rows = np.empty((velocities.time.size, 5))
-    velocity_rows(velocities.time, values["period"], values["epoch"], constants, rows)
     found: Start = {}
-    for star, sign in ((1, 1.0), (2, -1.0)):
-        used = velocities.used1 if star == 1 else velocities.used2
-        observed = (velocities.rv1 if star == 1 else velocities.rv2)[used]
-        if observed.size:
-            found |= _linear(
-                star, sign * rows[used, 0], observed, velocities, velocities.source[used]
-            )
+    for star, (solved, present) in _linear_orbits(values, velocities).items():
+        found |= {f"K{star}": max(solved[0], 0.1), f"gamma{star}": solved[1]}
+        for column, number in enumerate(present[1:], start=2):
+            name = key(f"offset{star}", velocities.sources[number])
+            found[name] = solved[column] - solved[1]
     return found
 
 
-def _linear(
-    star: int, shape: Floats, observed: Floats, velocities: Velocities, source: NDArray[np.int64]
-) -> Start:
-    present = np.unique(source)
-    design = np.column_stack([shape] + [(source == number).astype(float) for number in present])
-    solved = np.linalg.lstsq(design, observed, rcond=None)[0]
-    found = {f"K{star}": float(max(solved[0], 0.1)), f"gamma{star}": float(solved[1])}
-    for column, number in enumerate(present[1:], start=2):
-        found[key(f"offset{star}", velocities.sources[number])] = float(solved[column] - solved[1])
+def signed_amplitudes(values: Mapping[str, float], velocities: Velocities) -> dict[int, float]:
+    """K of each measured star, negative where it moves against the orbit of `values`."""
+    return {star: solved[0] for star, (solved, _) in _linear_orbits(values, velocities).items()}
+
+
+def _linear_orbits(
+    values: Mapping[str, float], velocities: Velocities
+) -> dict[int, tuple[list[float], list[int]]]:
+    """For each measured star: amplitude and a level a source, and which sources there are."""
+    constants = constants_of(values)
+    rows = np.empty((velocities.time.size, 5))
+    time = np.array(velocities.time)
+    velocity_rows(time, values["period"], values["epoch"], constants, rows)
+    found = {}
+    for star, sign in ((1, 1.0), (2, -1.0)):
+        used = velocities.used1 if star == 1 else velocities.used2
+        if not used.any():
+            continue
+        observed = (velocities.rv1 if star == 1 else velocities.rv2)[used]
+        source = velocities.source[used]
+        present = np.unique(source)
+        design = np.column_stack([sign * rows[used, 0], *(source == n for n in present)])
+        solved = np.linalg.lstsq(design.astype(np.float64), observed, rcond=None)[0]
+        found[star] = (solved.tolist(), present.tolist())
     return found

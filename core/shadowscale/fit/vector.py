@@ -20,6 +20,7 @@ from shadowscale.light.laws import LAWS, Law
 from shadowscale.quantities import QUANTITIES, Key, key, parse_key
 
 Floats = NDArray[np.float64]
+LEAST_INCLINATION = 5.0  # [deg] below it separate stars make no eclipse
 
 
 def limb_keys(star: int, band: str, law: Law) -> tuple[str, ...]:
@@ -72,7 +73,7 @@ class Vector:
         upper = np.array([QUANTITIES[parse_key(name).name].upper for name in self.names])
         if "inclination" in self.index:
             at = self.index["inclination"]
-            lower[at], upper[at] = 0.0, 1.0
+            lower[at], upper[at] = 0.0, cos(radians(LEAST_INCLINATION)) ** 2
         for block in self.limb_blocks:
             for position, (low, high) in zip(block, self.law.sampling_bounds, strict=True):
                 lower[position], upper[position] = low, high

@@ -35,6 +35,18 @@ def light_outliers(data: BandData, expected: Floats) -> NDArray[np.bool_]:
     return far if far.mean() <= MOST_OUTLIERS else np.zeros_like(far)
 
 
+def wild_rows(flux: Floats) -> NDArray[np.bool_]:
+    """(n,) rows that no star explains, to be set aside before the first fit.
+
+    Above the band by more than three times the range that holds 99 % of it, or below zero by half the
+    median: an eclipse is neither.
+    """
+    low, middle, high = np.quantile(flux, [0.005, 0.5, 0.995])
+    reach = 3.0 * max(high - low, 1e-6 * abs(middle))
+    wild: NDArray[np.bool_] = (flux > high + reach) | (flux < -0.5 * middle)
+    return wild if wild.mean() <= MOST_OUTLIERS else np.zeros_like(wild)
+
+
 def velocity_outliers(residual: Floats, error: Floats) -> NDArray[np.bool_]:
     """(n,) velocities too far from the model; none where fewer than eight tell the scatter."""
     none = np.zeros(residual.size, dtype=np.bool_)

@@ -1,0 +1,128 @@
+"""Whether a plan can be meant: names, numbers and choices, against the data that are there."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from difflib import get_close_matches
+
+import numpy as np
+
+from shadowscale.data.photometry import Photometry
+from shadowscale.data.velocities import Velocities
+from shadowscale.errors import UsageError
+from shadowscale.fit.build import is_basic, means
+from shadowscale.fit.derived import ASSUMABLE, assumed_inputs, derived_value
+from shadowscale.fit.plan import (
+    EFFECT_STATES,
+    EFFECTS,
+    INTERVALS,
+    LEVELS,
+    LIGHT_TIME,
+    ORBITS,
+    Plan,
+    Prior,
+)
+from shadowscale.fit.system import System
+from shadowscale.light.laws import LAWS
+from shadowscale.quantities import BAND, QUANTITIES, SOURCE, parse_key
+
+
+def check_plan(plan: Plan, photometry: Photometry, velocities: Velocities | None) -> None:
+    """UsageError where the plan names a quantity, band, source or choice that is not there."""
+    _check_choices(plan)
+    sources = () if velocities is None else velocities.sources
+    for option, name, basic_only in _names(plan):
+        _check_name(option, name, basic_only=basic_only, bands=photometry.bands, sources=sources)
+    for name, values in plan.fixed.items():
+        _check_fixed(name, values)
+    for prior in plan.priors:
+        _check_prior(prior)
+    both = [p.name for p in plan.priors for name in plan.fixed if _same(p.name, name)]
+    if both:
+        raise UsageError("--prior", both[0], expected="a quantity that is not held by --fix")
+
+
+def _same(one: str, two: str) -> bool:
+    return means(one, two) or means(two, one)
+
+
+def _names(plan: Plan) -> list[tuple[str, str, bool]]:
+    return [
+        *(("--free", name, True) for name in plan.free),
+        *(("--fix", name, True) for name in plan.fixed),
+        *(("--prior", prior.name, False) for prior in plan.priors),
+    ]
+
+
+def _check_choices(plan: Plan) -> None:
+    choices: list[tuple[str, str, tuple[str, ...]]] = [
+        ("--law", plan.law, tuple(LAWS)),
+        ("--orbit", plan.orbit, ORBITS),
+        ("--levels", plan.levels, LEVELS),
+        ("--light-time", plan.light_time, LIGHT_TIME),
+        ("--intervals", plan.intervals, INTERVALS),
+        *(("--effect", name, EFFECTS) for name in plan.effects),
+        *(("--effect", state, EFFECT_STATES) for state in plan.effects.values()),
+    ]
+    for option, found, allowed in choices:
+        if found not in allowed:
+            raise UsageError(option, found, allowed)
+
+
+def _check_name(
+    option: str, name: str, *, basic_only: bool, bands: tuple[str, ...], sources: tuple[str, ...]
+) -> None:
+    basic = tuple(text for text, quantity in QUANTITIES.items() if quantity.basic)
+    allowed = basic if basic_only else tuple(QUANTITIES)
+    try:
+        parsed = parse_key(name)
+    except ValueError:
+        raise UsageError(option, name, allowed) from None
+    if parsed.name not in allowed:
+        near = get_close_matches(parsed.name, allowed, n=1)
+        hint = f"; {near[0]!r} is one" if near else ""
+        raise UsageError(option, name, expected=f"a quantity that the model is written in{hint}")
+    if parsed.number is not None:
+        raise UsageError(option, name, expected="all coefficients of a star and band together")
+    labels = {BAND: bands, SOURCE: sources}.get(parsed.quantity.scope, ())
+    if parsed.label is not None and parsed.label not in labels:
+        raise UsageError(option, name, tuple(f"{parsed.name}[{label}]" for label in labels))
+
+
+def _check_fixed(name: str, values: tuple[float, ...]) -> None:
+    quantity = parse_key(name).quantity
+    shown = ",".join(f"{value:g}" for value in values)
+    if not name.startswith("limb_darkening") and len(values) != 1:
+        raise UsageError("--fix", f"{name}={shown}", expected="one value")
+    for value in values:
+        if not quantity.lower <= value <= quantity.upper:
+            limits = f"a value within {quantity.lower:g}...{quantity.upper:g}"
+            raise UsageError("--fix", f"{name}={shown}", expected=limits)
+
+
+def _check_prior(prior: Prior) -> None:
+    shown = f"{prior.name}={','.join(f'{v:g}' for v in (*prior.values, *prior.sigmas))}"
+    if len(prior.values) != len(prior.sigmas) or not prior.values:
+        raise UsageError("--prior", shown, expected="a sigma for every value")
+    if not all(np.isfinite(s) and s > 0 for s in prior.sigmas) or not np.all(
+        np.isfinite(prior.values)
+    ):
+        raise UsageError("--prior", shown, expected="finite values and sigmas above 0")
+
+
+def check_wishes(plan: Plan, system: System) -> None:
+    """UsageError where a wish touches nothing in the system that the data allow."""
+    for option, name, _ in _names(plan):
+        if is_basic(name):
+            found = any(means(name, key) for key in system.values)
+        else:
+            found = name in ASSUMABLE or _can_be_had(name, plan, system)
+        if not found:
+            raise UsageError(option, name, expected="a quantity that these data can give")
+
+
+def _can_be_had(name: str, plan: Plan, system: System) -> bool:
+    assumed: Mapping[str, float] = {
+        each: value for each, (value, _) in assumed_inputs(plan, system).items()
+    }
+    return bool(np.isfinite(derived_value(system, name, assumed)))
