@@ -9,7 +9,7 @@ import numpy as np
 
 from shadowscale.data.photometry import Photometry
 from shadowscale.data.velocities import Velocities
-from shadowscale.errors import UsageError
+from shadowscale.errors import NotConstrainedError, UsageError
 from shadowscale.fit.build import is_basic, means
 from shadowscale.fit.derived import ASSUMABLE, assumed_inputs, derived_value
 from shadowscale.fit.plan import (
@@ -22,9 +22,12 @@ from shadowscale.fit.plan import (
     Plan,
     Prior,
 )
+from shadowscale.fit.problem import Fitted
 from shadowscale.fit.system import System
 from shadowscale.light.laws import LAWS
 from shadowscale.quantities import BAND, QUANTITIES, SOURCE, parse_key
+
+UNEXPLAINED = 0.7  # share of a star's velocity scatter that an orbit may leave
 
 
 def check_plan(plan: Plan, photometry: Photometry, velocities: Velocities | None) -> None:
@@ -126,3 +129,25 @@ def _can_be_had(name: str, plan: Plan, system: System) -> bool:
         each: value for each, (value, _) in assumed_inputs(plan, system).items()
     }
     return bool(np.isfinite(derived_value(system, name, assumed)))
+
+
+def check_velocities_follow(fitted: Fitted) -> None:
+    """NotConstrainedError where the orbit explains next to nothing of a star's velocities."""
+    for data in fitted.objective.stars:
+        spread = float(np.std(data.velocity))
+        left = float(np.std(fitted.objective.velocity_residuals(fitted.minimum.x, data)))
+        noise = float(np.median(fitted.objective.velocity_errors(data)))
+        if (
+            data.time.size >= 4
+            and left > UNEXPLAINED * spread
+            and spread > 4.0 * float(np.median(data.error))
+        ):
+            raise NotConstrainedError(
+                f"the velocities of star {data.star} do not follow the period of the eclipses",
+                {
+                    "scatter [km/s]": spread,
+                    "left by the orbit [km/s]": left,
+                    "errors [km/s]": noise,
+                },
+                "check period, epoch, time system and which column is which star",
+            )

@@ -13,7 +13,7 @@ from shadowscale.data.velocities import Velocities
 from shadowscale.errors import NotConvergedError, NotDetachedError
 from shadowscale.fit.alternatives import Branch, distinct_branches, mirrored, preference
 from shadowscale.fit.build import build_system, named
-from shadowscale.fit.check import check_plan, check_wishes
+from shadowscale.fit.check import check_plan, check_velocities_follow, check_wishes
 from shadowscale.fit.decide import decision, needed
 from shadowscale.fit.effects import predicted_amplitudes
 from shadowscale.fit.least_squares import STALLED
@@ -130,6 +130,7 @@ def solve(
             {"steps": best.minimum.iterations, "chi-squared": best.chi2},
             "hold a quantity that the data do not determine, or give a better ephemeris",
         )
+    check_velocities_follow(best)
     progress.report(0.9, "uncertainties")
     best, ends = _with_valley(work, best)
     return assemble(

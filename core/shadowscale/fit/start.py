@@ -28,6 +28,7 @@ from shadowscale.timing.results import MeasuredEclipses, PeriodSearch
 Floats = NDArray[np.float64]
 Start = dict[str, float]
 TRIED_THIRD_LIGHT = 0.3
+LEAST_SCORE = 0.2  # of period candidates that velocities may prefer
 
 
 @dataclass(frozen=True, eq=False)
@@ -56,8 +57,8 @@ def find_ground(
     if period is None:
         progress.report(0.02, "searching the period")
         search = search_period(photometry, progress=progress)
-        period = search.period
-        epoch = search.epoch if epoch is None else epoch
+        period, found = period_of_velocities(search, velocities)
+        epoch = found if epoch is None else epoch
     progress.report(0.2, "measuring the eclipses")
     measured = measure_eclipses(photometry, period=period, epoch=epoch, exposure=plan.exposure)
     contact, starts = _contacts(measured, photometry, velocities, plan)
@@ -68,6 +69,45 @@ def find_ground(
     _, dim = _contacts(dimmed, photometry, velocities, plan)
     third = {key("third_light", band): TRIED_THIRD_LIGHT for band in photometry.bands}
     return Ground(search, measured, contact, starts, tuple(start | third for start in dim))
+
+
+def period_of_velocities(
+    search: PeriodSearch, velocities: Velocities | None
+) -> tuple[float, float]:
+    """Period and epoch of a search, chosen by the velocities where they tell the candidates apart.
+
+    Eclipses alone may leave P, 2P and P/2; velocities swing once a period. A candidate takes the
+    place of the first one when a sine curve of its period leaves less than half the chi-squared.
+    """
+    first = search.period, search.epoch
+    if velocities is None:
+        return first
+    likely = [each for each in search.candidates if each.score > LEAST_SCORE]
+    if not likely:
+        return first
+    chi2 = {each.period: _sine_chi2(each.period, velocities) for each in likely}
+    best = min(likely, key=lambda each: chi2[each.period])
+    if chi2[best.period] < 0.5 * chi2.get(search.period, np.inf):
+        return best.period, best.epoch
+    return first
+
+
+def _sine_chi2(period: float, velocities: Velocities) -> float:
+    """Chi-squared of a sine curve through each star's velocities, a level a source."""
+    total = 0.0
+    for rv, error, used in (
+        (velocities.rv1, velocities.rv1_error, velocities.used1),
+        (velocities.rv2, velocities.rv2_error, velocities.used2),
+    ):
+        if not used.any():
+            continue
+        angle = 2 * np.pi * velocities.time[used] / period
+        source = velocities.source[used]
+        levels = [source == number for number in np.unique(source)]
+        design = np.column_stack([np.cos(angle), np.sin(angle), *levels]) / error[used, None]
+        solved = np.linalg.lstsq(design, rv[used] / error[used], rcond=None)[0]
+        total += float(np.sum((rv[used] / error[used] - design @ solved) ** 2))
+    return total
 
 
 def wished_epoch(plan: Plan) -> float | None:
