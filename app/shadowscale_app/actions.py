@@ -117,10 +117,10 @@ TABLE: tuple[Entry, ...] = (
     Entry("undo", "Undo", "Edit", lambda b: b.desk.undo(), Std.Undo, "Take back the last step", bar="Undo"),
     Entry("redo", "Redo", "Edit", lambda b: b.desk.redo(), "Ctrl+Shift+Z", "Do again what was taken back", bar="Redo"),
     Entry("brush", "Brush", "Edit", lambda b: b.toggle_brush(), "B", "Draw round points to set them aside or take them back", _has_light, lambda b: b.brushing, bar="Brush", rule_before=True),
-    Entry("restore", "Take back all points set aside by hand", "Edit", lambda b: b.restore_points(), "", "", lambda s: bool(s.exclusions)),
+    Entry("restore", "Take back all points set aside by hand", "Edit", lambda b: b.points.take_all_back(), "", "", lambda s: bool(s.exclusions)),
     Entry("level", "Add stretch outside eclipse here", "Edit", _span("level"), "Ctrl+L", "At the phase under the cursor", _has_markers, rule_before=True),
     Entry("excluded", "Add excluded stretch here", "Edit", _span("excluded"), "Ctrl+X", "At the phase under the cursor", _has_markers),
-    Entry("drop_span", "Remove stretch with the keyboard's marker", "Edit", lambda b: b.drop_span(), "Del", "", _has_markers),
+    Entry("drop_span", "Remove stretch with the keyboard's marker", "Edit", lambda b: b.points.drop_span(b.pictures()), "Del", "", _has_markers),
     Entry("keep", f"Keep this solution{ELLIPSIS}", "Edit", lambda b: b.panes["Kept"].ask_name(), "Ctrl+K", "Remember it under a name", _is_solved, rule_before=True),  # type: ignore[attr-defined]
     Entry("solve", "Solve", "Solve", lambda b: b.work.solve(), "F5", "Find masses and radii from the data", _has_light, bar="Solve"),
     Entry("follow", "Fit follows changes", "Solve", lambda b: b.toggle_follow(), "F6", "Fit again by itself after each change", _always, lambda b: b.live.following, bar="Follow"),

@@ -7,7 +7,7 @@ from collections.abc import Callable, Sequence
 from pathlib import Path
 from typing import Any
 
-from PySide6.QtCore import QEvent, Qt, QTimer
+from PySide6.QtCore import QByteArray, Qt, QTimer
 from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
 from PySide6.QtWidgets import (
     QApplication,
@@ -25,14 +25,19 @@ from shadowscale_app.files import Files, sample_sessions, settings
 from shadowscale_app.jobs import LiveLane, LongLane
 from shadowscale_app.live import Live
 from shadowscale_app.panes import all_panes
+from shadowscale_app.panes.pairs import PairsPane
 from shadowscale_app.panes.pane import Pane
 from shadowscale_app.panes.periods import PeriodsPane
 from shadowscale_app.panes.start import StartPane
 from shadowscale_app.placing import place, tool_bar
+from shadowscale_app.plots.figure import ask_and_save
+from shadowscale_app.plots.picture import Picture
 from shadowscale_app.points_desk import PointsDesk
 from shadowscale_app.status import Status
 from shadowscale_app.warm import READY, Warmer
 from shadowscale_app.work import WorkDesk
+
+GEOMETRY = "geometry"
 
 
 class Bench(QMainWindow):
@@ -70,6 +75,9 @@ class Bench(QMainWindow):
         self.panes["Help"].write(self.panes.values(), keys())  # type: ignore[attr-defined]
         self.setAcceptDrops(True)
         self.resize(1280, 760)
+        geometry = settings().value(GEOMETRY)
+        if isinstance(geometry, QByteArray):
+            self.restoreGeometry(geometry)
         self._changed(self.desk.session, ALL)
 
     @property
@@ -118,20 +126,8 @@ class Bench(QMainWindow):
         if not self.live.following:
             self.live.forget()
 
-    def restore_points(self) -> None:
-        """Take back all points that a person set aside."""
-        self.points.take_all_back()
-
-    def drop_span(self) -> None:
-        """Remove the stretch whose edge has the keyboard."""
-        self.points.drop_span(
-            [picture for picture in self.pictures() if hasattr(picture, "focused")]
-        )
-
-    def pictures(self) -> list:  # type: ignore[type-arg]
+    def pictures(self) -> list[Picture]:
         """All plots."""
-        from shadowscale_app.plots.picture import Picture
-
         return [picture for pane in self.panes.values() for picture in pane.findChildren(Picture)]
 
     def reset_views(self) -> None:
@@ -141,9 +137,6 @@ class Bench(QMainWindow):
 
     def save_figure(self) -> None:
         """Save the picture that has the keyboard, else the upper pane."""
-        from shadowscale_app.plots.figure import ask_and_save
-        from shadowscale_app.plots.picture import Picture
-
         focused = QApplication.focusWidget()
         shown = focused if isinstance(focused, Picture) else self._tabs[0].currentWidget()
         ask_and_save(shown)
@@ -177,6 +170,7 @@ class Bench(QMainWindow):
         if not self.files.may_leave():
             event.ignore()
             return
+        settings().setValue(GEOMETRY, self.saveGeometry())
         self.end()
         event.accept()
 
@@ -187,10 +181,6 @@ class Bench(QMainWindow):
         self.lane.close()
         self.long_lane.close()
         self.warmer.close()
-
-    def changeEvent(self, event: QEvent) -> None:
-        """Follow the system's colours."""
-        super().changeEvent(event)
 
     def _connect(self) -> None:
         self.desk.changed.connect(self._changed)
@@ -223,6 +213,7 @@ class Bench(QMainWindow):
             "search period": self.work.search_period,
             "fold": lambda: self.work.fold(*argument),
             "brushed": lambda: self.points.brushed(argument),
+            "pair": lambda: self._show_pair(argument),
             "prior": lambda: self.points.prior(argument),
         }
         with trouble.guard(what):
@@ -256,6 +247,12 @@ class Bench(QMainWindow):
         for pane in self.panes.values():
             with trouble.guard(f"showing {pane.title.lower()}"):
                 pane.display(session, names)
+
+    def _show_pair(self, names: tuple[str, str]) -> None:
+        pane = self.panes["Correlation"]
+        assert isinstance(pane, PairsPane)
+        pane.choose(*names)
+        self.bring("Correlation")
 
     def _searched(self, found: object) -> None:
         pane = self.panes["Period"]

@@ -11,7 +11,13 @@ from PySide6.QtWidgets import QWidget
 
 from shadowscale.view.markers import without_span
 from shadowscale.view.rows import with_prior
-from shadowscale.view.selecting import light_set_aside, light_taken_back, set_aside_rows
+from shadowscale.view.selecting import (
+    everything_taken_back,
+    light_set_aside,
+    light_taken_back,
+    velocities_set_aside,
+    velocities_taken_back,
+)
 from shadowscale_app.desk import Change, Desk
 from shadowscale_app.dialogs.brushing import BACK, ask_brush
 from shadowscale_app.dialogs.prior import ask_prior
@@ -34,32 +40,32 @@ class PointsDesk(QObject):
 
     def take_all_back(self) -> None:
         """All points that a person set aside take part again."""
-        session = self._desk.session
-        self._desk.apply(
-            Change("Take all points back", light_taken_back(session, set_aside_rows(session)))
-        )
+        session = everything_taken_back(self._desk.session)
+        self._desk.apply(Change("Take all points back", session))
 
     def drop_span(self, pictures: Iterable[Any]) -> None:
         """Remove the stretch whose edge has the keyboard."""
         session = self._desk.session
-        names = [picture.focused for picture in pictures if picture.focused]
+        names = [name for picture in pictures if (name := getattr(picture, "focused", ""))]
         if names and session.markers is not None:
             markers = without_span(session.markers, names[0])
             if markers is not session.markers:
                 self._desk.apply(Change("Remove stretch", replace(session, markers=markers)))
 
     def brushed(self, rows: Any) -> None:
-        """Points were drawn round: ask what is to become of them."""
-        answer = self.ask(self._window, len(rows))
+        """Points were drawn round: ask what is to become of them. `rows` is a mapping for velocities."""
+        velocities = isinstance(rows, dict)
+        count = sum(len(each) for each in rows.values()) if velocities else len(rows)
+        answer = self.ask(self._window, count)
         if answer is None:
             return
         session = self._desk.session
         if answer == BACK:
-            self._desk.apply(Change("Take points back", light_taken_back(session, rows)))
+            taken = velocities_taken_back if velocities else light_taken_back
+            self._desk.apply(Change("Take points back", taken(session, rows)))
         else:
-            self._desk.apply(
-                Change(f"Set points aside: {answer}", light_set_aside(session, rows, answer))
-            )
+            aside = velocities_set_aside if velocities else light_set_aside
+            self._desk.apply(Change(f"Set points aside: {answer}", aside(session, rows, answer)))
 
     def prior(self, key: str) -> None:
         """Ask for a prior on a quantity."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+from PySide6.QtWidgets import QApplication
 
 from hands import draw
 from shadowscale_app.bench import Bench
@@ -60,7 +61,7 @@ def test_giving_up_changes_nothing(bench: Bench) -> None:
 def test_points_that_the_reader_rejected_do_not_come_back(bench: Bench) -> None:
     flagged = bench.desk.session.photometry.why.tolist().index(1)
 
-    bench.restore_points()
+    bench.points.take_all_back()
 
     assert bench.desk.session.photometry.why[flagged] == 1
 
@@ -71,3 +72,34 @@ def test_the_question_gives_the_reason(bench: Bench) -> None:
     assert dialog.reason.currentText() == "satellite"
     assert not dialog.back
     dialog.deleteLater()
+
+
+def test_velocities_are_set_aside_by_the_brush_too(bench: Bench) -> None:
+    bench.bring("Velocities")
+    counts: list[int] = []
+    bench.points.ask = lambda _parent, count: (counts.append(count), "blended lines")[1]
+    bench.actions_table.by_name["brush"].trigger()
+    before = bench.desk.session.velocities
+    QApplication.processEvents()
+    view = bench.panes["Velocities"].curve.visible()
+    gamma = -14.2
+    box = [
+        (-0.1, gamma - 60),
+        (0.1, gamma - 60),
+        (0.1, gamma + 60),
+        (-0.1, gamma + 60),
+        (-0.1, gamma - 55),
+    ]
+    assert view.contains(0.0, gamma)
+
+    draw(bench.panes["Velocities"].curve, box)
+
+    after = bench.desk.session.velocities
+    gone = int(before.used1.sum() + before.used2.sum() - after.used1.sum() - after.used2.sum())
+    assert gone == counts[0] > 0
+    assert {"rv1", "rv2"} == {each.table for each in bench.desk.session.exclusions[1:]}
+    bench.points.take_all_back()
+    again = bench.desk.session.velocities
+    assert np.array_equal(before.why1, again.why1)
+    assert np.array_equal(before.why2, again.why2)
+    assert tuple(each for each in bench.desk.session.exclusions if each.table != "light") == ()

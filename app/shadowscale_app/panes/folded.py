@@ -17,7 +17,7 @@ class FoldedPane(Pane):
     about = (
         "Every measurement at its phase in the orbit. Phase 0 is the middle of primary eclipse. The solid line "
         "is the fitted model, the dashed line the model that your contact markers alone give. Bars along the top "
-        "are the eclipse windows and the stretches outside eclipse; crosses are points set aside."
+        "are the eclipse windows and the stretches outside eclipse; crosses are points set aside, rings those that the fit took for outliers."
     )
 
     def __init__(self, parent: QWidget | None = None) -> None:

@@ -142,7 +142,8 @@ class LightPair(QWidget):
         for points, shift in zip(light, shifts, strict=True):
             tint = now.band(points.band, bands)
             shape = theme.BAND_SHAPES[points.band % len(theme.BAND_SHAPES)]
-            good, aside = points.used, ~points.used
+            good, aside = points.used, ~points.used & ~points.outlier
+            out = points.outlier
             crowd = int(good.sum())
             bars = None if look.binned or crowd > MOST_BARS else points.error[good]
             size = CROWDED_SIZE if crowd > MOST_BARS else PLAIN_SIZE
@@ -152,6 +153,9 @@ class LightPair(QWidget):
             )
             found.append(
                 Layer(points.x[aside], points.y[aside] + shift, None, now.aside, "x", 6.0, 0.8)
+            )
+            found.append(
+                Layer(points.x[out], points.y[out] + shift, None, now.badly, "ring", 7.0, 0.9)
             )
             if look.binned:
                 bins = binned(

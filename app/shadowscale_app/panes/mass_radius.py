@@ -8,6 +8,7 @@ from PySide6.QtWidgets import QVBoxLayout, QWidget
 from shadowscale.view.mass_radius import measured_stars, published_stars
 from shadowscale_app import theme
 from shadowscale_app.panes.pane import Pane
+from shadowscale_app.plots.log_axis import LogAxis
 from shadowscale_app.plots.picture import Picture
 
 
@@ -23,7 +24,10 @@ class MassRadiusPane(Pane):
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self.picture = Picture(
-            "Mass and radius", left="radius [R\N{SUN}]", bottom="mass [M\N{SUN}]"
+            "Mass and radius",
+            left="radius [R\N{SUN}]",
+            bottom="mass [M\N{SUN}]",
+            axes={side: LogAxis(side) for side in ("left", "bottom")},
         )
         self.picture.getPlotItem().setLogMode(True, True)
         self.others = pg.ScatterPlotItem(hoverable=True, tip=lambda x, y, data: data)

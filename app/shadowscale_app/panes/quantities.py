@@ -47,7 +47,7 @@ class QuantitiesPane(Pane):
     title = "Quantities"
     about = (
         "Every number of the model and what follows from it. Free ones are fitted, held ones stay, a prior pulls. "
-        "Type a value or use the slider below to see what it does to the curve; double-click the state to change it. "
+        "Type a value or use the slider below to see what it does to the curve; double-click the state to change it, or the correlation to see it as a picture. "
         "The bar shows the error relative to the value: green below 1 %, one sign above, two signs above 5 %."
     )
 
@@ -173,6 +173,8 @@ class QuantitiesPane(Pane):
 
     def _double_clicked(self, index: QModelIndex) -> None:
         row = self.model.rows[index.row()]
+        if index.column() == GRADE and row.partner:
+            self.asked.emit("pair", (row.key, row.partner))
         if index.column() == STATE and row.basic:
             self.set_state(row.key, HELD if row.state != HELD else FREE)
 

@@ -103,7 +103,9 @@ def _layers(
     for points, shift in zip(light, shifts, strict=True):
         tint = now.band(points.band, bands)
         shape = theme.BAND_SHAPES[points.band % len(theme.BAND_SHAPES)]
-        good, aside = points.used, ~points.used
+        good, aside = points.used, ~points.used & ~points.outlier
+        out = points.outlier
+        found.append(Layer(points.x[out], points.y[out] + shift, None, now.badly, "ring", 7.0, 0.9))
         found.append(
             Layer(
                 points.x[good], points.y[good] + shift, points.error[good], tint, shape, 4.0, 0.75

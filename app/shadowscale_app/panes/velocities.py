@@ -4,9 +4,11 @@ from __future__ import annotations
 
 import pyqtgraph as pg
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QLabel, QSplitter, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QLabel, QSizePolicy, QSplitter, QVBoxLayout, QWidget
 
 from shadowscale.view.curves import velocity_curves
+from shadowscale.view.geometry_words import velocity_cells
+from shadowscale.view.selecting import outlined_velocities
 from shadowscale.view.velocity_points import VelocityPoints, velocities_over_phase
 from shadowscale_app import theme
 from shadowscale_app.panes.pane import Pane
@@ -44,6 +46,13 @@ class VelocitiesPane(Pane):
         self.nothing.setObjectName("quiet")
         self.nothing.setAlignment(Qt.AlignmentFlag.AlignCenter)
         self.nothing.setWordWrap(True)
+        self.numbers = QLabel("")
+        self.numbers.setFont(theme.small_font())
+        self.numbers.setContentsMargins(10, 0, 10, 2)
+        self.numbers.setAccessibleName("Amplitudes and systemic velocities")
+        self.numbers.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Minimum)
+        self.curve.outlined.connect(lambda corners: self._outlined(corners, residuals=False))
+        self.rest.outlined.connect(lambda corners: self._outlined(corners, residuals=True))
         self._place()
 
     def refresh(self, names: frozenset[str]) -> None:
@@ -56,6 +65,13 @@ class VelocitiesPane(Pane):
         self.points.show_layers(_layers(found, residual=False))
         self.rest_points.show_layers(_layers(found, residual=True))
         self._show_models(bool(found))
+        quiet = theme.colours().quiet
+        self.numbers.setText(
+            "&nbsp;&nbsp;&nbsp;".join(
+                f"{sign} <b>{value}</b> <span style='color:{quiet}'>{error}</span>"
+                for sign, value, error in velocity_cells(self.session)
+            )
+        )
 
     def point(self, phase: float) -> None:
         """Show the phase under the cursor."""
@@ -84,7 +100,13 @@ class VelocitiesPane(Pane):
         layout = QVBoxLayout(self)
         layout.setContentsMargins(0, 0, 0, 0)
         layout.addWidget(self.split)
+        layout.addWidget(self.numbers)
         layout.addWidget(self.nothing)
+
+    def _outlined(self, corners: tuple[tuple[float, float], ...], *, residuals: bool) -> None:
+        rows = outlined_velocities(self.session, corners, residuals=residuals)
+        if rows:
+            self.asked.emit("brushed", rows)
 
     def _show_models(self, wanted: bool) -> None:
         for line in self._lines:

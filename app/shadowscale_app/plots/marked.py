@@ -204,6 +204,7 @@ class MarkedPicture(Picture):
 
     def _pulled(self, name: str, phase: float, one_side: bool) -> None:
         self.pulled.emit(name, phase, one_side, self._gesture)
+        self._pointed_at(name, True)
 
     def _let_go(self, name: str) -> None:
         self.let_go.emit(name)

@@ -24,9 +24,15 @@ class Picture(pg.PlotWidget):
     outlined = Signal(object)
 
     def __init__(
-        self, name: str, *, left: str = "", bottom: str = "", parent: QWidget | None = None
+        self,
+        name: str,
+        *,
+        left: str = "",
+        bottom: str = "",
+        axes: dict[str, pg.AxisItem] | None = None,
+        parent: QWidget | None = None,
     ) -> None:
-        super().__init__(parent=parent, viewBox=Box())
+        super().__init__(parent=parent, viewBox=Box(), axisItems=axes)
         self.name = name
         self.home_x: tuple[float, float] | None = None
         self.home_y: tuple[float, float] | None = None

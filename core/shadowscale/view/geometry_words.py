@@ -1,4 +1,4 @@
-"""The geometry from the markers beside that of the fit, in one line each."""
+"""The geometry from the markers beside that of the fit, and the velocities' numbers, in one line each."""
 
 from __future__ import annotations
 
@@ -6,10 +6,12 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 
 from shadowscale.fit.solution import DERIVED, Estimate
+from shadowscale.quantities import parse_key
 from shadowscale.session.session import Session
 from shadowscale.view.written import symbol, unit_sign, value_and_error
 
 NAMES = ("r1", "r2", "inclination")
+VELOCITY_NAMES = ("K1", "K2", "gamma1", "gamma2", "offset1", "offset2")
 SHAPE = ("ecosw", "esinw")  # shown where the fit has them free
 
 
@@ -36,6 +38,18 @@ def geometry_lines(session: Session) -> tuple[GeometryLine, ...]:
     if solution is not None:
         lines.append(GeometryLine("fit", _cells(solution.estimates, names)))
     return tuple(line for line in lines if line.cells)
+
+
+def velocity_cells(session: Session) -> tuple[tuple[str, str, str], ...]:
+    """(symbol, value with unit, error) of amplitudes, systemic velocities and offsets; empty without a solution."""
+    if session.solution is None:
+        return ()
+    found = []
+    for name, estimate in session.solution.estimates.items():
+        if parse_key(name).name in VELOCITY_NAMES:
+            value, error = value_and_error(name, estimate)
+            found.append((symbol(name), value, error))
+    return tuple(found)
 
 
 def _cells(

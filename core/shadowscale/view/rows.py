@@ -49,6 +49,7 @@ class Row:
     grade: str = NONE
     strongest: str = ""
     correlation: float = 0.0
+    partner: str = ""
 
 
 def quantity_rows(session: Session) -> tuple[Row, ...]:
@@ -226,7 +227,9 @@ def _with_correlation(row: Row, strongest: Mapping[str, tuple[float, str]]) -> R
         return row
     value, other = found
     text = f"{value:+.2f} {symbol(other)}".replace("-", "\N{MINUS SIGN}")
-    return replace(row, strongest=text if abs(value) >= 0.1 else "", correlation=value)
+    return replace(
+        row, strongest=text if abs(value) >= 0.1 else "", correlation=value, partner=other
+    )
 
 
 def _group(quantity: Quantity) -> str:

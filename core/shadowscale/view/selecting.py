@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import replace
 
 import numpy as np
@@ -16,6 +17,7 @@ from shadowscale.view.light_points import (
     light_over_time,
 )
 from shadowscale.view.looks import Look
+from shadowscale.view.velocity_points import velocities_over_phase
 
 Corners = tuple[tuple[float, float], ...]
 
@@ -87,9 +89,71 @@ def light_taken_back(session: Session, rows: Ints) -> Session:
         (photometry.files[file].path, int(line))
         for file, line in zip(photometry.file[chosen], photometry.line[chosen], strict=True)
     }
-    exclusions = tuple(_without(exclusion, back) for exclusion in session.exclusions)
+    exclusions = tuple(_without(exclusion, back, "light") for exclusion in session.exclusions)
     kept = tuple(exclusion for exclusion in exclusions if exclusion.lines)
     return replace(session, photometry=photometry.restored(chosen), exclusions=kept)
+
+
+def outlined_velocities(
+    session: Session, corners: Corners, *, residuals: bool = False
+) -> dict[int, Ints]:
+    """Rows of the velocities inside an outline drawn over phase, star by star."""
+    found = {}
+    for points in velocities_over_phase(session):
+        rows = points.rows[inside(points.x, points.residual if residuals else points.y, corners)]
+        if rows.size:
+            found[points.star] = rows
+    return found
+
+
+def velocities_set_aside(session: Session, rows: Mapping[int, Ints], reason: str) -> Session:
+    """The session with these rows of each star's velocities set aside for a reason."""
+    table, exclusions = session.velocities, list(session.exclusions)
+    if table is None:
+        return session
+    for star, chosen_rows in rows.items():
+        chosen = np.zeros(table.time.size, dtype=bool)
+        chosen[chosen_rows] = True
+        chosen &= table.used1 if star == 1 else table.used2
+        for number, file in enumerate(table.files):
+            lines = table.line[chosen & (table.file == number)]
+            if lines.size:
+                numbers = tuple(int(line) for line in lines)
+                exclusions.append(Exclusion(f"rv{star}", file.path, numbers, reason))
+        table = table.excluded(star, chosen, reason)
+    return replace(session, velocities=table, exclusions=tuple(exclusions))
+
+
+def velocities_taken_back(session: Session, rows: Mapping[int, Ints]) -> Session:
+    """The session with these rows of each star's velocities taking part again, if a person had set them aside."""
+    table, exclusions = session.velocities, session.exclusions
+    if table is None:
+        return session
+    for star, chosen_rows in rows.items():
+        name = f"rv{star}"
+        ours = {each.reason for each in session.exclusions if each.table == name}
+        codes = [code for code, reason in enumerate(table.reasons) if reason in ours]
+        chosen = np.zeros(table.time.size, dtype=bool)
+        chosen[chosen_rows] = True
+        chosen &= np.isin(table.why1 if star == 1 else table.why2, codes)
+        back = {
+            (table.files[file].path, int(line))
+            for file, line in zip(table.file[chosen], table.line[chosen], strict=True)
+        }
+        exclusions = tuple(_without(each, back, name) for each in exclusions)
+        table = table.restored(star, chosen)
+    kept = tuple(each for each in exclusions if each.lines)
+    return replace(session, velocities=table, exclusions=kept)
+
+
+def everything_taken_back(session: Session) -> Session:
+    """The session with all rows that a person set aside taking part again."""
+    session = light_taken_back(session, set_aside_rows(session))
+    table = session.velocities
+    if table is None:
+        return session
+    everything = np.arange(table.time.size)
+    return velocities_taken_back(session, {1: everything, 2: everything})
 
 
 def set_aside_rows(session: Session) -> Ints:
@@ -109,8 +173,8 @@ def _rows(points: tuple[LightPoints, ...], shifts: tuple[float, ...], corners: C
     return np.concatenate(found) if found else np.zeros(0, dtype=np.int64)
 
 
-def _without(exclusion: Exclusion, back: set[tuple[str, int]]) -> Exclusion:
-    if exclusion.table != "light":
+def _without(exclusion: Exclusion, back: set[tuple[str, int]], table: str) -> Exclusion:
+    if exclusion.table != table:
         return exclusion
     lines = tuple(line for line in exclusion.lines if (exclusion.file, line) not in back)
     return replace(exclusion, lines=lines)

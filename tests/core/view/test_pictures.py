@@ -204,9 +204,16 @@ def test_markers_on_the_true_contacts_give_the_true_stars() -> None:
     """The markers lie at the exact contacts of a circular orbit, the depths come from noisy points."""
     contact = contact_solution_of_markers(made_up_session())
 
-    true = {"radius_sum": R1 + R2, "inclination": INCLINATION, "radius_ratio": R2 / R1}
-    for name, value in true.items():
-        assert abs(contact.values[name] - value) < 3 * contact.errors[name], name
+    true = {
+        "radius_sum": (R1 + R2, 0.003),
+        "radius_ratio": (R2 / R1, 0.06),
+        "inclination": (INCLINATION, 1.0),
+    }
+    for name, (
+        value,
+        tolerance,
+    ) in true.items():  # contacts know nothing of the third light that is there
+        assert abs(contact.values[name] - value) < tolerance, name
     assert contact.errors["radius_sum"] < 0.01
 
 
