@@ -140,11 +140,11 @@ def _second_box(sum_to, mass_to, count_to, n, total, start, width1, narrowest, l
             rest = total - m - m1
             level = -(s + s1)
             gain = first + s * s / m + level * level / rest
-            if gain > best and s * rest < level * m:
-                if count_to[j + width] - count_to[j] >= least:
-                    best = gain
-                    found = j
-                    found_width = width
+            enough = count_to[j + width] - count_to[j] >= least
+            if enough and gain > best and s * rest < level * m:
+                best = gain
+                found = j
+                found_width = width
         width = max(width + 1, int(width * 1.4))
     return best, found, found_width
 
@@ -154,7 +154,8 @@ def eclipse_rows(phase, band, bands, centre, nodes, node_weights, table, values,
     """Light of one eclipse and its derivatives (the equations are those of `shape_fit`).
 
     phase : (n,) [cycles];  band : (n,) int64;  nodes, node_weights : (j,) parts of the exposure [cycles]
-    table : (2, s + 1) light lost and its slope on even separations 0...1, or (2, 0) for a trapezoid
+    table : (2, s + 1) light lost, and its slope over the separation, on even separations 0...1;
+        (2, 0) for a trapezoid
     values : (5 + 2 bands,) middle, duration, shape of ingress and of egress, depths, levels, slope
     model : (n,), jacobian : (n, 5 + 2 bands), written
     """
@@ -212,19 +213,17 @@ def _lost(x, shape, table):  # type: ignore[no-untyped-def]
         if raw >= 1:
             return 1.0, 0.0, 0.0
         return raw, -np.sign(x) / shape, -raw / shape
-    separation = np.sqrt(max(shape + (1 - shape) * x * x, 1e-12))
-    middle = np.sqrt(max(shape, 1e-12))
-    value, slope = _read(separation, table)
-    peak, peak_slope = _read(middle, table)
+    value, curve = _read(np.sqrt(shape + (1 - shape) * x * x), table)
+    peak, peak_curve = _read(np.sqrt(shape), table)
     value /= peak
-    slope /= peak * separation
-    by_shape = slope * (1 - x * x) / 2 - value * peak_slope / (2 * peak * middle)
-    return value, slope * (1 - shape) * x, by_shape
+    curve /= peak
+    by_shape = curve * (1 - x * x) / 2 - value * peak_curve / (2 * peak)
+    return value, curve * (1 - shape) * x, by_shape
 
 
 @compiled
 def _read(separation, table):  # type: ignore[no-untyped-def]
-    """A table of even steps read at a separation 0...1, with its slope."""
+    """A table of even steps read at a separation 0...1, with its slope over the separation (finite at 0)."""
     steps = table.shape[1] - 1
     place = min(separation, 1.0) * steps
     low = min(int(place), steps - 1)

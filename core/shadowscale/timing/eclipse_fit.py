@@ -13,7 +13,16 @@ import numpy as np
 
 from shadowscale.data.photometry import Floats
 from shadowscale.geometry.contacts import EclipseTiming
-from shadowscale.timing.profile import RATIOS, TRAPEZOID, Profile, Trapezoid, discs, library
+from shadowscale.timing.profile import (
+    FINE,
+    LADDER,
+    RATIOS,
+    TRAPEZOID,
+    Profile,
+    Trapezoid,
+    discs,
+    library,
+)
 from shadowscale.timing.shape_fit import (
     DEPTH,
     DURATION,
@@ -29,8 +38,9 @@ from shadowscale.timing.shape_fit import (
 
 GRID_CELLS = 40
 CELLS = 120  # cells in one duration, when points are averaged
-_FIRST = 3  # ratios fitted from the grid before the best one's neighbours
-_MOST_RATIOS = 9
+_FIRST = 2  # ratios fitted from the grid before the best one's neighbours
+_MOST_RATIOS = 8
+_TOLD_APART = 1.0  # chi2
 _STRETCHES = np.array([0.96, 0.98, 1.0, 1.02, 1.05])
 _SHAPE_GAIN = 9.0  # chi2 that a free egress, or a flat part, must bring (3 sigma)
 
@@ -43,6 +53,7 @@ class EclipseFit:
     timing: EclipseTiming
     depths: Floats
     depth_errors: Floats
+    signal: float  # square root of the scaled chi2 that the eclipse explains beyond a sloping line
 
 
 def fit_eclipse(
@@ -78,7 +89,19 @@ def fit_eclipse(
     timing = _timing(chosen, tried, flat=flat, first=first)
     rows = slice(DEPTH, DEPTH + data.bands)
     errors = np.sqrt(scale * np.diag(chosen.covariance)[rows])
-    return EclipseFit(chosen, timing, chosen.depths, errors)
+    signal = np.sqrt(max(_line_chi2(data) - chosen.chi2, 0.0) / scale)
+    return EclipseFit(chosen, timing, chosen.depths, errors, float(signal))
+
+
+def _line_chi2(data: ShapeData) -> float:
+    """chi2 of a level for each band and a slope, without any eclipse."""
+    rows = np.zeros((data.phase.size, data.bands + 1))
+    rows[np.arange(data.phase.size), data.band] = 1.0
+    rows[:, -1] = data.phase - data.centre
+    rows /= data.sigma[:, None]
+    light = data.flux / data.sigma
+    left = light - rows @ np.linalg.lstsq(rows, light, rcond=None)[0]
+    return float(left @ left)
 
 
 def _thinned(data: ShapeData, duration: float) -> ShapeData:
@@ -116,18 +139,55 @@ class _Grid:
 
 
 def _disc_fits(data: ShapeData, grid: _Grid) -> list[ShapeFit]:
-    """Symmetric fits of discs near the ratio that fits best; a grid over all shapes gives the starts."""
-    found: dict[int, ShapeFit] = {}
-    for index in np.argsort(grid.chi2.min(axis=1))[:_FIRST]:
-        found[int(index)] = _from_grid(data, grid, int(index))
+    """Symmetric fits of discs near the ratios that fit best, smaller and larger front discs apart.
+
+    A grid over all shapes gives the starts. The two kinds differ in the bottom, curved or flat, and each
+    has a least chi2 of its own.
+    """
+    equal = len(RATIOS) // 2
+    fits: list[ShapeFit] = []
+    for kind in (range(equal + 1), range(equal, len(RATIOS))):
+        found: dict[int, ShapeFit] = {}  # by place on the ladder
+        order = sorted(kind, key=lambda index: float(grid.chi2[index].min()))
+        for index in order[:_FIRST]:
+            found[index * FINE] = _from_grid(data, grid, index)
+        _walk(data, grid, found)
+        _fit_between(data, found)
+        fits += found.values()
+    return fits
+
+
+def _walk(data: ShapeData, grid: _Grid, found: dict[int, ShapeFit]) -> None:
+    """Fit neighbours on the coarse ladder until the best one has both."""
     while len(found) < _MOST_RATIOS:
-        best = min(found, key=lambda index: found[index].chi2)
-        fresh = [n for n in (best - 1, best + 1) if 0 <= n < len(RATIOS) and n not in found]
+        best = _best(found)
+        fresh = [place for place in (best - FINE, best + FINE) if 0 <= place < len(LADDER)]
+        fresh = [place for place in fresh if place not in found]
         if not fresh:
-            break
-        for index in fresh:
-            found[index] = _from_grid(data, grid, index)
-    return list(found.values())
+            return
+        for place in fresh:
+            found[place] = _from_grid(data, grid, place // FINE)
+
+
+def _best(found: dict[int, ShapeFit]) -> int:
+    return min(found, key=lambda place: found[place].chi2)
+
+
+def _fit_between(data: ShapeData, found: dict[int, ShapeFit]) -> None:
+    """Halve the steps around the best ratio while the data tell the neighbours from it."""
+    step = FINE
+    while step > 1:
+        best = _best(found)
+        limit = found[best].chi2 + _TOLD_APART * max(found[best].scale, 1.0)
+        sides = [found[place].chi2 for place in (best - step, best + step) if place in found]
+        if max(sides) < limit:
+            return
+        step //= 2
+        for place in (best - step, best + step):
+            if 0 <= place < len(LADDER) and place not in found:
+                profile = discs(LADDER[place])
+                start = with_profile(found[best], profile)
+                found[place] = fit_shape(data, profile, start, symmetric=True)
 
 
 def _grid(data: ShapeData, rough: ShapeFit) -> _Grid:

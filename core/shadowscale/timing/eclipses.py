@@ -12,12 +12,13 @@ from shadowscale.errors import NoSolutionError
 from shadowscale.geometry.contacts import EclipseTiming
 from shadowscale.timing.fold import Dip, find_dips, nearest
 from shadowscale.timing.levels import band_levels, flattened, outside_eclipse
-from shadowscale.timing.light_points import LightPoints, light_points, robust_scatter
+from shadowscale.timing.light_points import LightPoints, isolated, light_points, robust_scatter
 from shadowscale.timing.results import MeasuredEclipses, Span
 from shadowscale.timing.window_fit import SeenEclipse, see_eclipse
 
+PLACES = 3  # where a second eclipse is looked for
 LEAST_GAIN = 20.0  # chi2 that a box must explain to be looked at
-LEAST_SIGNAL = 5.0  # depth over its error
+LEAST_SIGNAL = 6.0  # [sigma]
 SMEARED = 3.0  # scatter in eclipse over scatter outside that tells a wrong period ...
 SMEARED_DEPTH = 0.15  # ... where it is also that part of the depth
 STRAY = 0.25  # part of the faint points outside the measured eclipses that tells a wrong period
@@ -87,10 +88,8 @@ def see_eclipses(
     cycles = (raw.time - origin) / period
     dips = _dips(raw, cycles)
     points, notes = flattened(raw, cycles, dips)
-    dips = _dips(points, cycles)
     smear = exposure / DAY / period
-    fitted = [see_eclipse(points, cycles, dips, n, smear=smear) for n in range(len(dips))]
-    seen = _significant([one for one in fitted if one is not None], points)
+    seen = _significant(_fitted(points, cycles, smear), points)
     _check_alignment(points, cycles, seen)
     level = band_levels(raw, outside_eclipse(cycles - np.floor(cycles), dips))
     return SeenTogether(points, cycles, tuple(seen), level, period, origin, smear, tuple(notes))
@@ -103,13 +102,30 @@ def _check(period: float, exposure: float) -> None:
         raise ValueError(f"exposure must not be negative, found {exposure!r}")
 
 
-def _dips(points: LightPoints, cycles: Floats) -> tuple[Dip, ...]:
-    """Dips of the fold, all bands together; NoSolutionError without any."""
+def _fitted(points: LightPoints, cycles: Floats, smear: float) -> list[SeenEclipse]:
+    """The best dip and, of a few places for a second one, the first where an eclipse can be fitted."""
+    first, tried = None, ()
+    for _ in range(PLACES):
+        dips = _dips(points, cycles, besides=tried)
+        if first is None:
+            first = see_eclipse(points, cycles, dips, 0, smear=smear)
+        second = see_eclipse(points, cycles, dips, 1, smear=smear) if len(dips) > 1 else None
+        if second is not None and second.signal > LEAST_SIGNAL:
+            return [one for one in (first, second) if one is not None]
+        if len(dips) < 2:
+            break
+        tried = (*tried, dips[1])
+    return [] if first is None else [first]
+
+
+def _dips(points: LightPoints, cycles: Floats, *, besides: tuple[Dip, ...] = ()) -> tuple[Dip, ...]:
+    """Dips of the fold, all bands together, the strongest first; NoSolutionError without any."""
     level = band_levels(points, np.ones(cycles.size, bool))[points.band]
-    sigma = points.sigma / level
+    value, sigma = points.flux / level - 1, points.sigma / level
+    weight = np.where(isolated(points.time, value, sigma), 0.0, sigma**-2)
     bins = int(np.clip(cycles.size / 3, 60, 400))
-    dips = find_dips(cycles - np.floor(cycles), points.flux / level - 1, sigma**-2, bins=bins)
-    dips = tuple(dip for dip in dips if dip.gain > LEAST_GAIN)
+    found = find_dips(cycles - np.floor(cycles), value, weight, bins=bins, besides=besides)
+    dips = tuple(dip for dip in found if dip.gain > LEAST_GAIN)
     if not dips:
         numbers = {"noise of a point": float(np.median(sigma)), "points": float(cycles.size)}
         raise NoSolutionError("no eclipse stands out at this period", numbers, help=HELP)
@@ -125,7 +141,7 @@ def _significant(seen: list[SeenEclipse], points: LightPoints) -> list[SeenEclip
     if seen:
         best = max(seen, key=lambda one: one.signal)
         numbers["depth"] = best.fit.timing.depth
-        numbers["error of the depth"] = float(best.fit.depth_errors.max())
+        numbers["depth over its noise"] = best.signal
     raise NoSolutionError("no eclipse stands out at this period", numbers, help=HELP)
 
 

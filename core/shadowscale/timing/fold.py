@@ -32,7 +32,14 @@ def nearest(phase: Floats, centre: float) -> Floats:
     return np.asarray(phase - np.round(phase - centre))
 
 
-def find_dips(phase: Floats, value: Floats, weight: Floats, *, bins: int = 400) -> tuple[Dip, ...]:
+def find_dips(
+    phase: Floats,
+    value: Floats,
+    weight: Floats,
+    *,
+    bins: int = 400,
+    besides: tuple[Dip, ...] = (),
+) -> tuple[Dip, ...]:
     """The deepest box-shaped dip of a folded curve and the best second one beside it.
 
     Parameters
@@ -41,6 +48,8 @@ def find_dips(phase: Floats, value: Floats, weight: Floats, *, bins: int = 400) 
         0...1.
     value, weight : (n,) float64
         Flux relative to some level, and one over sigma squared.
+    besides : tuple of Dip
+        Places where the second dip is not to be looked for.
 
     Returns
     -------
@@ -63,6 +72,9 @@ def find_dips(phase: Floats, value: Floats, weight: Floats, *, bins: int = 400) 
     place, width = first
     # A band of its own width on either side stays free of the second dip: shoulders are no eclipse.
     taken[(place - width + np.arange(3 * width)) % bins] = True
+    for dip in besides:
+        start, span = (dip.middle - dip.width) * bins, int(2 * dip.width * bins) + 1
+        taken[(int(start) + np.arange(span)) % bins] = True
     inside = (place + np.arange(width)) % bins
     second = _best_box(sums, mass, taken, float(sums[inside].sum()), float(mass[inside].sum()))
     return _as_dips(sums, mass, [first] if second is None else [first, second])

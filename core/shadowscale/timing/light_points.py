@@ -12,6 +12,9 @@ from shadowscale.errors import NoSolutionError
 
 FEWEST_POINTS = 20
 MAD_TO_SIGMA = 1.4826  # median absolute deviation to standard deviation of a normal distribution
+ISOLATED_GAP = 0.03  # [d] no eclipse comes and goes between neighbours nearer than this
+ALONE = 0.2  # spread of the neighbours over the drop of a lone point
+WILD = 6.0  # [sigma]
 NEIGHBOUR_GAP = 0.1  # [d] points nearer than this are neighbours
 
 
@@ -90,6 +93,24 @@ def neighbour_scatter(time: Floats, flux: Floats) -> float | None:
     if near.sum() < max(20, 0.2 * time.size):
         return None
     return robust_scatter(np.diff(flux)[near]) / np.sqrt(2)
+
+
+def isolated(time: Floats, value: Floats, sigma: Floats) -> NDArray[np.bool_]:
+    """(n,) True for single points far from both neighbours, which agree with each other and with theirs.
+
+    In an eclipse the neighbours of a low point are low as well, or lie on its branches.
+    """
+    rows = np.zeros(time.size, bool)
+    if time.size < 5:
+        return rows
+    middle, sides = value[2:-2], (value[:-4], value[1:-3], value[3:-1], value[4:])
+    level = np.mean(sides, axis=0)
+    spread = np.ptp(sides, axis=0)
+    drop = np.abs(middle - level)
+    near = time[4:] - time[:-4] < 4 * ISOLATED_GAP
+    calm = spread < np.maximum(ALONE * drop, 4 * sigma[2:-2])
+    rows[2:-2] = near & (drop > WILD * sigma[2:-2]) & calm
+    return rows
 
 
 def _with_noise(points: LightPoints) -> LightPoints:

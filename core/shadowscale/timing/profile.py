@@ -49,7 +49,10 @@ class Discs:
         self.name = f"discs {ratio:.3g}"
         self.inner = ((1 - ratio) / (1 + ratio)) ** 2  # squared separation at inner contact
         light = hidden_fraction_table(ratio)
-        self.table = np.stack([light, np.gradient(light, 1 / _STEPS)])
+        separation = np.maximum(np.linspace(0, 1, _STEPS + 1), 0.5 / _STEPS)
+        curve = np.gradient(light, 1 / _STEPS) / separation
+        curve[0] = curve[1]  # the light is even in the separation
+        self.table = np.stack([light, curve])
 
     def ingress(self, parameter: float) -> tuple[float, float]:
         """Ingress in half durations (1 where there is no inner contact), and its derivative."""
@@ -68,7 +71,9 @@ class Discs:
 Profile = Trapezoid | Discs
 TRAPEZOID = Trapezoid()
 # The front disc from a thirtieth of the other to thirty times.
-RATIOS = tuple(float(ratio) for ratio in np.round(np.geomspace(1 / 32, 32, 21), 4))
+FINE = 16  # steps of the fine ladder of ratios in one of the coarse
+LADDER = tuple(float(ratio) for ratio in np.geomspace(1 / 32, 32, 20 * FINE + 1))
+RATIOS = LADDER[::FINE]
 
 
 @dataclass(frozen=True, eq=False)
@@ -103,7 +108,7 @@ def library() -> Library:
     return Library(shapes, half, shapes < inner - 1e-12, tables)
 
 
-@lru_cache(maxsize=64)
+@lru_cache(maxsize=512)
 def discs(ratio: float) -> Discs:
     """The profile of two discs; tables are made once."""
     return Discs(ratio)

@@ -5,17 +5,13 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 from scipy.ndimage import median_filter
 
 from shadowscale.data.photometry import Floats
-from shadowscale.timing.light_points import LightPoints, robust_scatter
+from shadowscale.timing.light_points import LightPoints, isolated, robust_scatter
 
 MOST_POINTS = 6000  # neighbours are averaged where there are more
 WIDEST_CELL = 0.014  # [d] and no wider than this
-ISOLATED_GAP = 0.03  # [d] no eclipse comes and goes between neighbours nearer than this
-ALONE = 0.2  # spread of the neighbours over the drop of a lone point
-WILD = 6.0  # [sigma]
 SLOW_WINDOW = 1.2  # [d] longer than most eclipses, shorter than most slow variation
 SLOW_CELL = 0.1  # [d]
 
@@ -49,7 +45,7 @@ def search_data(points: LightPoints) -> SearchData:
         ]
     )[points.band]
     value, sigma = points.flux / level - 1, points.sigma / level
-    kept = ~_isolated(points.time, value, sigma)
+    kept = ~isolated(points.time, value, sigma)
     # Nothing is brighter than both stars together: what lies above is cut to the noise.
     top = np.median(value) + 4 * max(robust_scatter(value[value > 0]), float(np.median(sigma)))
     return _data(*_averaged(points.time[kept], np.minimum(value, top)[kept], sigma[kept] ** -2.0))
@@ -75,25 +71,6 @@ def without_slow_variation(data: SearchData) -> SearchData | None:
 def _data(time: Floats, value: Floats, weight: Floats) -> SearchData:
     mean = float(weight @ value / weight.sum())
     return SearchData(float(time[0]), time - time[0], value - mean, np.ascontiguousarray(weight))
-
-
-def _isolated(time: Floats, value: Floats, sigma: Floats) -> NDArray[np.bool_]:
-    """(n,) True for single points far from both neighbours, which agree with each other and with theirs.
-
-    In an eclipse the neighbours of a low point are low as well, or lie on its branches.
-    """
-    rows = np.zeros(time.size, bool)
-    if time.size < 5:
-        return rows
-    middle, sides = value[2:-2], (value[:-4], value[1:-3], value[3:-1], value[4:])
-    level = np.mean(sides, axis=0)
-    spread = np.ptp(sides, axis=0)
-    drop = np.abs(middle - level)
-    near = time[4:] - time[:-4] < 4 * ISOLATED_GAP
-    rows[2:-2] = (
-        near & (drop > WILD * sigma[2:-2]) & (spread < np.maximum(ALONE * drop, 3 * sigma[2:-2]))
-    )
-    return rows
 
 
 def _averaged(time: Floats, value: Floats, weight: Floats) -> tuple[Floats, Floats, Floats]:

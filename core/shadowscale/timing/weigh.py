@@ -16,7 +16,7 @@ from shadowscale.timing.search_data import SearchData
 from shadowscale.timing.shape_fit import ShapeData, ShapeFit, predicted
 
 WEIGHED = 5
-LEAST_SIGNAL = 5.0  # depth over error
+LEAST_SIGNAL = 6.0  # [sigma]
 LEAST_DEPTH = 0.02  # of the deeper eclipse: less is no second eclipse but the light between
 UNLIKE = 4.0  # ratio of the durations of two eclipses; e = 0.6 gives 4
 FARTHEST = 5.0  # [sigma] a point counts no more than this

@@ -6,6 +6,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.ndimage import median_filter
 
 from shadowscale.data.photometry import Floats
 from shadowscale.timing.eclipse_fit import EclipseFit, fit_eclipse
@@ -21,6 +22,7 @@ FEWEST_IN_WINDOW = 10  # points to fit an eclipse at all
 FEWEST_INSIDE = 3  # points in an eclipse that give a band's depth
 WIDEST_WINDOW = 0.24  # [cycles] half width
 OUTLIER = 5.0  # [sigma]
+NEIGHBOURS = 9  # points whose median an outlier is measured from
 _LAST = 3
 
 
@@ -37,11 +39,8 @@ class SeenEclipse:
 
     @property
     def signal(self) -> float:
-        """Depth over its error, all bands together."""
-        if self.fit.timing.depth <= 0:
-            return 0.0
-        errors = np.maximum(self.fit.depth_errors, 1e-9)
-        return float(np.sqrt(np.sum((self.fit.depths / errors) ** 2)))
+        """How far the eclipse stands out [sigma]; 0 for light gained instead of lost."""
+        return self.fit.signal if self.fit.timing.depth > 0 else 0.0
 
 
 def see_eclipse(
@@ -91,12 +90,23 @@ def see_eclipse(
         fit = fit_eclipse(data, middle=middle, width=box, profile=shape, first=first)
         residuals = _residuals(points, near, inside, fit, smear)
         fresh = kept.copy()
-        fresh[inside] = np.abs(residuals) < OUTLIER * max(robust_scatter(residuals), 1e-12)
+        fresh[inside] = _ordinary(near[inside], residuals)
         settled = abs(fit.timing.duration - width) < 0.15 * width and np.array_equal(fresh, kept)
         if turn == _LAST or (settled and turn == _LAST - 1):
             break
         kept, middle, width = fresh, fit.timing.middle, fit.timing.duration
     return SeenEclipse(fit, window, residuals, inside, kept[inside])
+
+
+def _ordinary(phase: Floats, residuals: Floats) -> NDArray[np.bool_]:
+    """(n,) True for points that are no outliers among their neighbours in phase.
+
+    A shape that does not quite fit leaves residuals that neighbours share; those are no outliers.
+    """
+    order = np.argsort(phase, kind="stable")
+    away = np.empty_like(residuals)
+    away[order] = residuals[order] - median_filter(residuals[order], NEIGHBOURS, mode="nearest")
+    return np.asarray(np.abs(away) < OUTLIER * max(robust_scatter(away), 1e-12))
 
 
 def _room(dips: tuple[Dip, ...], number: int) -> float:
