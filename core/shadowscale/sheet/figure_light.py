@@ -39,8 +39,13 @@ NAMES = {1: "primary", 2: "secondary"}
 
 def light_curve_size(shown: Shown) -> tuple[float, float]:
     """Width and height [inches]."""
+    return WIDTH, _height(shown, 2.5, 1.85)
+
+
+def _height(shown: Shown, alone: float, each: float) -> float:
+    """Of a figure with a part for every band; two bands leave room for another figure on a page."""
     count = len(shown.bands)
-    return WIDTH, min(TALLEST, TOP + FOOT + 2.55 * count)
+    return min(TALLEST, TOP + FOOT + (alone if count == 1 else each * count))
 
 
 def draw_light_curve(place: Place, shown: Shown) -> None:
@@ -64,7 +69,7 @@ def draw_light_curve(place: Place, shown: Shown) -> None:
 
 def eclipses_size(shown: Shown) -> tuple[float, float]:
     """Width and height [inches]."""
-    return WIDTH, min(TALLEST, TOP + FOOT + 2.75 * len(shown.bands))
+    return WIDTH, _height(shown, 2.75, 2.05)
 
 
 def draw_eclipses(place: Place, shown: Shown) -> None:

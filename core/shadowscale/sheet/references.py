@@ -24,10 +24,14 @@ class Reference:
 
     def bibtex(self) -> str:
         """The entry."""
-        lines = [f"@{self.kind}{{{self.key},", f"  author = {{{self.author}}},"]
-        lines.append(f"  title = {{{{{self.title}}}}},")
-        lines += [f"  {name} = {{{value}}}," for name, value in self.fields.items()]
-        return "\n".join([*lines, f"  year = {{{self.year}}}", "}"])
+        rest = [f"{name} = {{{value}}}" for name, value in self.fields.items()]
+        lines = (
+            f"@{self.kind}{{{self.key},",
+            f"  author = {{{self.author}}},",
+            f"  title = {{{{{self.title}}}}},",
+            f"  {', '.join([*rest, f'year = {{{self.year}}}'])}}}",
+        )
+        return "\n".join(lines)
 
 
 AJ, APJ, MNRAS = "Astronomical Journal", "Astrophysical Journal", "Monthly Notices of the RAS"

@@ -43,10 +43,7 @@ GROUPS: tuple[tuple[str, tuple[str, ...]], ...] = (
     ("Geometry", ("radius_sum", "radius_ratio", "r1", "r2", "impact1", "impact2")),
     ("Eclipses", ("T14_1", "T23_1", "T14_2", "T23_2", "depth1", "depth2")),
 )  # fmt: skip
-MAIN: Mapping[int, tuple[str, ...]] = {
-    1: ("M1", "R1", "logg1", "L1", "density1", "r1"),
-    2: ("M2", "R2", "logg2", "L2", "density2", "r2"),
-}
+MAIN = ("M", "R", "logg", "L", "density", "r")
 MAIN_ORBIT = ("period", "a", "mass_ratio", "inclination", "eccentricity")
 SHOWN_MAIN = 4
 CONTACT_NAMES = (
@@ -138,11 +135,14 @@ def _picture(report: Report, name: str) -> tuple[Block, ...]:
 
 def _glance(report: Report) -> Iterator[Section]:
     sheet = report.sheet
+    given = sheet.quantities
+    both = [stem for stem in MAIN if f"{stem}1" in given and f"{stem}2" in given]
+    stems = [stem for stem in MAIN if stem in both[:SHOWN_MAIN]]
     rows = [
-        (f"Star {star}", _results(sheet.quantities, names)[:SHOWN_MAIN])
-        for star, names in MAIN.items()
+        (f"Star {star}", _results(given, [f"{stem}{star}" for stem in stems])) for star in (1, 2)
     ]
-    rows.append(("Orbit", _results(sheet.quantities, MAIN_ORBIT)))
+    moving = [name for name in MAIN_ORBIT if name in given and given[name].estimate.plus]
+    rows.append(("Orbit", _results(given, moving)))
     blocks: list[Block] = [Results(tuple(row for row in rows if row[1]))]
     blocks.append(Paragraph(glance(sheet)))
     blocks += _picture(report, "system")
@@ -333,14 +333,16 @@ def _correlations(report: Report) -> Iterator[Section]:
 def _audit(report: Report) -> Iterator[Section]:
     checks = [each for each in report.sheet.audit if not each.check.startswith(ABSENT)]
     counts = {kind: sum(each.verdict == kind for each in checks) for kind in (FAIL, WARN, PASS)}
-    words = {FAIL: "failed", WARN: "to be read", PASS: "passed"}
+    words = {FAIL: "failed", WARN: "warned", PASS: "passed"}
     text = listed([f"{count} {words[kind]}" for kind, count in counts.items() if count])
     order = {FAIL: 0, WARN: 1, PASS: 2}
     items = [
         Verdict(each.verdict, each.check, plain(each.words), _limits(each), plain(each.source))
         for each in sorted(checks, key=lambda each: order.get(each.verdict, 0))
     ]
-    intro = Paragraph(f"Whether the model may speak: {text or 'no checks were made'}.")
+    intro = Paragraph(
+        f"Whether the model may speak. Of {len(checks)} checks {text or 'none was made'}."
+    )
     yield Section("audit", "Audit", (intro, Verdicts(tuple(items))))
 
 
@@ -354,7 +356,11 @@ def _decisions(report: Report) -> Iterator[Section]:
     sheet = report.sheet
     blocks: list[Block] = []
     if sheet.decisions:
-        columns = (Column("What", 0.18), Column("Chosen", 0.2), Column("Why", 0.62, small=True))
+        columns = (
+            Column("What", 0.18),
+            Column("Chosen", 0.2, small=True),
+            Column("Why", 0.62, small=True),
+        )
         rows = tuple(
             (plain(each.what), plain(each.chosen), plain(each.words)) for each in sheet.decisions
         )

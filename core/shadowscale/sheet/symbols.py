@@ -77,8 +77,8 @@ def marked(tex: str) -> str:
 
 
 def plain(text: str) -> str:
-    """Text of a person or a file, without the marks of symbols."""
-    return text.replace(BEGIN, "").replace(END, "")
+    """Text of a person or a file, without the marks of symbols; per cent signs stay with their numbers."""
+    return text.replace(BEGIN, "").replace(END, "").replace(" %", "\N{NO-BREAK SPACE}%")
 
 
 def unit_words(unit: str) -> str:
