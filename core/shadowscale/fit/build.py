@@ -141,5 +141,6 @@ def _add_band(
                 values[key(f"{effect}{star}", band)] = float(
                     start.get(key(f"{effect}{star}", band), 0.0)
                 )
-            if state == "fitted":
+            # Both stars' tides, and both beamings, have one shape: only their sum can be fitted.
+            if state == "fitted" and (star == 1 or effect == "reflection"):
                 free.append(key(f"{effect}{star}", band))

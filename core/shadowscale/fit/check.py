@@ -121,7 +121,8 @@ def check_wishes(plan: Plan, system: System) -> None:
         else:
             found = name in ASSUMABLE or _can_be_had(name, plan, system)
         if not found:
-            raise UsageError(option, name, expected="a quantity that these data can give")
+            wanted = "" if "K1" in system.values else " (velocities are missing)"
+            raise UsageError(option, name, expected=f"a quantity that these data can give{wanted}")
 
 
 def _can_be_had(name: str, plan: Plan, system: System) -> bool:

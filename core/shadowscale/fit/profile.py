@@ -21,7 +21,8 @@ from shadowscale.fit.system import System
 Floats = NDArray[np.float64]
 NAME = "radius_ratio"
 FIRST = 0.7  # of the linear sigma: where the profile is tried first
-MOST_TRIES = 6
+MOST_TRIES = 9
+NARROW = 0.4  # in the root of the rise: near enough to interpolate
 STRAIGHT = 0.15  # relative departure of both limits from the linear sigma that is left alone
 
 
@@ -70,7 +71,7 @@ def _limit(
 ) -> tuple[_Place, Fitted]:
     """The point where chi-squared is one above the best, and the lowest fit met on the way."""
     lower, upper = (float(bound[at]) for bound in best.objective.vector.bounds)
-    lowest, inner = best, _Place(best.minimum.x, 0.0, 0.0)
+    lowest, inner, outer = best, _Place(best.minimum.x, 0.0, 0.0), None
     step = FIRST
     for _ in range(MOST_TRIES):
         wanted = best.minimum.x[at] + step * direction[at]
@@ -80,12 +81,21 @@ def _limit(
         rise = fitted.chi2 - best.chi2
         if rise < lowest.chi2 - best.chi2:
             lowest = fitted
-        outer = _Place(np.insert(fitted.minimum.x, at, wanted), step, np.sqrt(max(rise, 0.0)))
-        if rise >= 1.0:
-            return _between(inner, outer), lowest
-        inner = outer
-        step *= min(3.0, max(1.3, 1.15 / max(outer.root, 0.2)))
-    return inner, lowest
+        x = np.insert(fitted.minimum.x, at, wanted)
+        place = _Place(x, step, np.sqrt(max(rise, 0.0)))
+        inner, outer = (place, outer) if rise < 1.0 else (inner, place)
+        if outer is not None and outer.root - inner.root < NARROW:
+            break
+        step = _next_step(inner, outer)
+    return (inner if outer is None else _between(inner, outer)), lowest
+
+
+def _next_step(inner: _Place, outer: _Place | None) -> float:
+    """Farther out while the rise is below one; then between, nearer the inner end where it rises steeply."""
+    if outer is None:
+        return inner.step * min(3.0, max(1.3, 1.15 / max(inner.root, 0.2)))
+    share = (1.0 - inner.root) / (outer.root - inner.root)
+    return inner.step + min(max(share, 0.25), 0.75) * (outer.step - inner.step)
 
 
 def _held(best: Fitted, start: Floats, *, at: int, wanted: float) -> System:

@@ -240,6 +240,10 @@ def _with_effects(work: _Work, best: Fitted) -> Fitted:
         best = work.fit(best.system.with_values(moved))
     said = ", ".join(f"{name} {state}" for name, state in states.items())
     assumed = "" if np.isfinite(ratio) else "; mass ratio taken as one for want of velocities"
+    if any(states.get(name) == "fitted" for name in ("ellipsoidal", "beaming")):
+        assumed += (
+            "; the part of star 2 is held as predicted, since that of star 1 has the same shape"
+        )
     work.decisions = [each for each in work.decisions if each.what != "small effects"]
     words = f"{said}; predictions at {teff1:.0f} K and {teff2:.0f} K ({words}){assumed}"
     work.decisions.append(Decision("small effects", said, words, predicted))
