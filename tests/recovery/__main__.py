@@ -73,7 +73,8 @@ def _pulls(truth, solution) -> dict[str, float]:
         difference = estimate.value - true[name]
         if name == "epoch":
             difference -= round(difference / true["period"]) * true["period"]
-        found[name] = difference / (estimate.plus if difference < 0 else estimate.minus)
+        side = estimate.plus if difference < 0 else estimate.minus
+        found[name] = difference / side if side else np.copysign(99.0, difference)
     return found
 
 
@@ -146,7 +147,9 @@ def report(results: list[dict]) -> None:
     good = [e for e in fitted if max(abs(p) for p in e["pulls"].values()) < SOLVED_WITHIN]
     said = [e for e in fitted if e not in good and e["side"] in e["sides"]]
     share = 100 * (len(good) + len(said)) / len(results)
-    print(f"{len(results)} systems; truth within the errors {len(good)}; the data allow k and 1/k, and")
+    print(
+        f"{len(results)} systems; truth within the errors {len(good)}; the data allow k and 1/k, and"
+    )
     print(f"the truth is the one listed as alternative {len(said)}; together {share:.1f} %")
     for each in refused:
         print(f"  refused {each['case']}: {each['error']} [{each['words']}]")

@@ -21,6 +21,7 @@ from shadowscale.fit.system import System
 Floats = NDArray[np.float64]
 NAME = "radius_ratio"
 FIRST = 0.7  # of the linear sigma: where the profile is tried first
+LARGEST_FIRST = 0.3  # and at most this share of k itself
 MOST_TRIES = 9
 NARROW = 0.4  # in the root of the rise: near enough to interpolate
 STRAIGHT = 0.15  # relative departure of both limits from the linear sigma that is left alone
@@ -72,11 +73,12 @@ def _limit(
     """The point where chi-squared is one above the best, and the lowest fit met on the way."""
     lower, upper = (float(bound[at]) for bound in best.objective.vector.bounds)
     lowest, inner, outer = best, _Place(best.minimum.x, 0.0, 0.0), None
-    step = FIRST
+    step = min(FIRST, LARGEST_FIRST * best.minimum.x[at] / abs(float(direction[at])))
     for _ in range(MOST_TRIES):
         wanted = best.minimum.x[at] + step * direction[at]
         if not lower < wanted < upper:
-            break
+            step = (inner.step + step) / 2
+            continue
         fitted = fit(_held(best, inner.x + (step - inner.step) * direction, at=at, wanted=wanted))
         rise = fitted.chi2 - best.chi2
         if rise < lowest.chi2 - best.chi2:
