@@ -79,6 +79,18 @@ def add_output(parser: Parser) -> None:
     )
 
 
+def add_report(parser: Parser) -> None:
+    """Whether the report is written."""
+    parser.add_argument(
+        "--report", metavar="yes|no", default="yes", help="report and figures, default yes"
+    )
+
+
+def wants_report(arguments: Namespace) -> bool:
+    """Whether the report is to be written."""
+    return choice("--report", arguments.report, ("yes", "no")) == "yes"
+
+
 def output_folder(arguments: Namespace) -> str:
     """The folder that results go to; UsageError where none was said."""
     if not arguments.out:

@@ -6,7 +6,7 @@ from argparse import Namespace
 from pathlib import Path
 
 from shadowscale.cli.bar import bar
-from shadowscale.cli.parser import Parser, add_output, output_folder
+from shadowscale.cli.parser import Parser, add_output, add_report, output_folder, wants_report
 from shadowscale.errors import UsageError
 
 WORDS = "do a saved session again: the same numbers, or what differs"
@@ -16,6 +16,7 @@ def add_arguments(parser: Parser) -> None:
     """The arguments of the command."""
     parser.add_argument("session", metavar="SESSION", nargs="?", help="a solved session file")
     add_output(parser)
+    add_report(parser)
 
 
 def run(arguments: Namespace) -> None:
@@ -28,9 +29,11 @@ def run(arguments: Namespace) -> None:
         raise UsageError("SESSION", "nothing", expected="a solved session file")
     folder = Path(output_folder(arguments))
     session = open_session(Path(arguments.session), same_files=True)
-    check_targets(session, folder, result_files(session), overwrite=arguments.overwrite)
+    report = wants_report(arguments)
+    names = result_files(session, report=report)
+    check_targets(session, folder, names, overwrite=arguments.overwrite)
     with bar(quiet=arguments.quiet or arguments.json_errors) as progress:
         replayed = replay_session(session, progress=progress, path=Path(arguments.session))
-    write_results(replayed.session, folder, overwrite=arguments.overwrite)
+    write_results(replayed.session, folder, overwrite=arguments.overwrite, report=report)
     if not arguments.quiet:
         print(replayed.words())

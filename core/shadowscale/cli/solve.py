@@ -9,7 +9,14 @@ from dataclasses import replace
 from pathlib import Path
 
 from shadowscale.cli.bar import bar
-from shadowscale.cli.parser import Parser, add_output, output_folder, pairs
+from shadowscale.cli.parser import (
+    Parser,
+    add_output,
+    add_report,
+    output_folder,
+    pairs,
+    wants_report,
+)
 from shadowscale.cli.plan_options import add_plan_options, given_options, plan_from
 from shadowscale.errors import UsageError
 from shadowscale.session.session import Session, Source
@@ -24,6 +31,7 @@ def add_arguments(parser: Parser) -> None:
         "inputs", metavar="INPUT", nargs="*", help="photometry files, or one session file"
     )
     add_output(parser)
+    add_report(parser)
     data = parser.add_argument_group("data")
     data.add_argument("--velocities", metavar="FILE", action="append", default=[])
     data.add_argument("--band", metavar="NAME", help="band, in place of what the files say")
@@ -48,10 +56,12 @@ def run(arguments: Namespace) -> None:
 
     session = _session(arguments)
     folder = Path(output_folder(arguments))
-    check_targets(session, folder, result_files(session), overwrite=arguments.overwrite)
+    report = wants_report(arguments)
+    names = result_files(session, report=report)
+    check_targets(session, folder, names, overwrite=arguments.overwrite)
     with bar(quiet=arguments.quiet or arguments.json_errors) as progress:
         solved = solve_session(session, progress=progress)
-    write_results(solved, folder, overwrite=arguments.overwrite)
+    write_results(solved, folder, overwrite=arguments.overwrite, report=report)
     if not arguments.quiet:
         for note in session.notes:
             print(f"shadowscale: note: {note}", file=sys.stderr)

@@ -7,13 +7,17 @@ from dataclasses import replace
 from pathlib import Path
 
 from shadowscale.errors import UsageError
-from shadowscale.session.atomic import write_text
+from shadowscale.jobs.reporting import report_contents, report_files
+from shadowscale.session.atomic import write_bytes
 from shadowscale.session.session import Session
 from shadowscale.session.store import save_session
 from shadowscale.sheet import RENDERINGS, Sheet, light_curve, make_sheet, velocity_curve
+from shadowscale.sheet.figure_data import Shown
+from shadowscale.sheet.model_curve import model_curve
 
 SESSION_FILE = "session.json"
 LIGHT_FILE, VELOCITY_FILE = "light_curve.csv", "velocity_curve.csv"
+MODEL_FILE = "model_curve.csv"
 
 
 def sheet_of(session: Session) -> Sheet:
@@ -36,14 +40,26 @@ def sheet_of(session: Session) -> Sheet:
     )
 
 
-def result_files(session: Session) -> tuple[str, ...]:
-    """The names of the files that `write_results` writes."""
+def result_files(session: Session, *, report: bool = True) -> tuple[str, ...]:
+    """The names of all files that `write_results` may write; figures that say nothing are left out."""
     curves = (LIGHT_FILE, VELOCITY_FILE) if session.velocity_sources else (LIGHT_FILE,)
-    return (*RENDERINGS, *curves, SESSION_FILE)
+    names = (*RENDERINGS, *curves, MODEL_FILE, SESSION_FILE)
+    return (*names, *report_files(session)) if report else names
 
 
-def write_results(session: Session, folder: Path, *, overwrite: bool = False) -> tuple[Path, ...]:
+def write_results(
+    session: Session, folder: Path, *, overwrite: bool = False, report: bool = True
+) -> tuple[Path, ...]:
     """Write everything a solved session gives; each file whole or not at all.
+
+    Parameters
+    ----------
+    session : Session
+    folder : Path
+    overwrite : bool
+        Replace files that are there.
+    report : bool
+        Write the report and the figures, too, which takes longer than the rest.
 
     Returns
     -------
@@ -56,16 +72,15 @@ def write_results(session: Session, folder: Path, *, overwrite: bool = False) ->
         A file is there already and `overwrite` is False, or is an input, or the folder cannot be
         written.
     """
-    names = result_files(session)
-    check_targets(session, folder, names, overwrite=overwrite)
-    texts = _texts(session)
+    check_targets(session, folder, result_files(session, report=report), overwrite=overwrite)
+    contents = _contents(session, report=report)
     try:
-        for name, text in texts.items():
-            write_text(folder / name, text)
+        for name, content in contents.items():
+            write_bytes(folder / name, content)
         save_session(replace(session, notes=()), folder / SESSION_FILE)
     except OSError as error:
         raise not_writable(folder, error) from error
-    return tuple(folder / name for name in names)
+    return tuple(folder / name for name in (*contents, SESSION_FILE))
 
 
 def check_targets(session: Session, folder: Path, names: Iterable[str], *, overwrite: bool) -> None:
@@ -99,13 +114,16 @@ def not_writable(folder: Path, error: OSError) -> UsageError:
     return UsageError("--out", f"{folder} ({reason})", expected="a folder that can be written")
 
 
-def _texts(session: Session) -> dict[str, str]:
-    """The text of each file but the session."""
+def _contents(session: Session, *, report: bool) -> dict[str, bytes]:
+    """The content of each file but the session."""
     sheet, solution, photometry = sheet_of(session), session.solution, session.photometry
     assert solution is not None
     assert photometry is not None
+    shown = Shown(solution, photometry, session.velocities)
     texts = {name: rendered(sheet) for name, rendered in RENDERINGS.items()}
     texts[LIGHT_FILE] = light_curve(solution, photometry)
     if session.velocities is not None:
         texts[VELOCITY_FILE] = velocity_curve(solution, session.velocities)
-    return texts
+    texts[MODEL_FILE] = model_curve(shown)
+    contents = {name: text.encode("utf-8") for name, text in texts.items()}
+    return contents | report_contents(session, sheet, shown) if report else contents

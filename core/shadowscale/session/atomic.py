@@ -8,6 +8,11 @@ from pathlib import Path
 
 
 def write_text(path: Path, text: str) -> None:
+    """Write text as UTF-8, see `write_bytes`."""
+    write_bytes(path, text.encode("utf-8"))
+
+
+def write_bytes(path: Path, content: bytes) -> None:
     """Write beside the place, make sure it is on disk, then rename; an old file stays until then.
 
     Raises
@@ -18,8 +23,8 @@ def write_text(path: Path, text: str) -> None:
     path.parent.mkdir(parents=True, exist_ok=True)
     handle, temporary = tempfile.mkstemp(dir=path.parent, prefix=f".{path.name}.", suffix=".part")
     try:
-        with os.fdopen(handle, "w", encoding="utf-8", newline="") as stream:
-            stream.write(text)
+        with os.fdopen(handle, "wb") as stream:
+            stream.write(content)
             stream.flush()
             os.fsync(stream.fileno())
         os.chmod(temporary, _mode(path))

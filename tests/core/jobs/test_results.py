@@ -24,8 +24,9 @@ def session():
 
 
 def test_all_files_are_written_and_named(session, tmp_path):
-    written = write_results(session, tmp_path / "new" / "folder")
-    assert [path.name for path in written] == list(result_files(session))
+    folder = tmp_path / "new" / "folder"
+    written = write_results(session, folder)
+    assert {str(path.relative_to(folder)) for path in written} == set(result_files(session))
     assert all(path.stat().st_size > 100 for path in written)
     assert json.loads(written[0].read_text())["provenance"]["command"] == session.command
     stored = json.loads((tmp_path / "new" / "folder" / "session.json").read_text())
@@ -33,12 +34,12 @@ def test_all_files_are_written_and_named(session, tmp_path):
 
 
 def test_a_second_time_needs_overwrite(session, tmp_path):
-    write_results(session, tmp_path)
+    write_results(session, tmp_path, report=False)
     (tmp_path / "sheet.csv").write_text("mine")
     with pytest.raises(UsageError, match=r"a free place, or --overwrite"):
-        write_results(session, tmp_path)
+        write_results(session, tmp_path, report=False)
     assert (tmp_path / "sheet.csv").read_text() == "mine"
-    write_results(session, tmp_path, overwrite=True)
+    write_results(session, tmp_path, overwrite=True, report=False)
     assert (tmp_path / "sheet.csv").read_text() != "mine"
 
 
@@ -70,7 +71,7 @@ def test_a_full_disk_is_a_sentence_and_leaves_nothing_half(session, tmp_path, mo
 
     monkeypatch.setattr("shadowscale.session.atomic.os.fsync", full)
     with pytest.raises(UsageError, match=r"No space left on device.*|a folder that can be written"):
-        write_results(session, tmp_path / "out")
+        write_results(session, tmp_path / "out", report=False)
     assert list((tmp_path / "out").iterdir()) == []
 
 
