@@ -7,7 +7,7 @@ from collections.abc import Callable, Sequence
 from pathlib import Path
 from typing import Any
 
-from PySide6.QtCore import QByteArray, Qt, QTimer
+from PySide6.QtCore import QByteArray, QSize, Qt, QTimer
 from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
 from PySide6.QtWidgets import (
     QApplication,
@@ -17,6 +17,7 @@ from PySide6.QtWidgets import (
 
 from shadowscale._version import __version__
 from shadowscale.session.session import Session
+from shadowscale.view.light_points import ephemeris
 from shadowscale_app import theme, trouble
 from shadowscale_app.actions import Actions, keys
 from shadowscale_app.desk import ALL, Change, Desk
@@ -38,6 +39,8 @@ from shadowscale_app.warm import READY, Warmer
 from shadowscale_app.work import WorkDesk
 
 GEOMETRY = "geometry"
+MOST_TROUBLES = 3
+NO_PERIOD = "No period yet: Solve finds it (F5), or search the period (F7)."
 
 
 class Bench(QMainWindow):
@@ -74,7 +77,7 @@ class Bench(QMainWindow):
         self._connect()
         self.panes["Help"].write(self.panes.values(), keys())  # type: ignore[attr-defined]
         self.setAcceptDrops(True)
-        self.resize(1280, 760)
+        self.resize(self.screen().availableSize().boundedTo(QSize(1440, 860)))
         geometry = settings().value(GEOMETRY)
         if isinstance(geometry, QByteArray):
             self.restoreGeometry(geometry)
@@ -196,6 +199,7 @@ class Bench(QMainWindow):
         self.lane.busy.connect(self.status.show_live)
         self.long_lane.busy.connect(self.status.show_busy)
         self.long_lane.busy.connect(lambda _: self.actions_table.update(self.desk.session))
+        self.work.solved.connect(lambda: self.bring("Folded curve"))
         self.work.searched.connect(self._searched)
         self.long_lane.progressed.connect(self.status.show_progress)
         self.status.stop_wanted.connect(self.work.stop)
@@ -228,15 +232,16 @@ class Bench(QMainWindow):
             pane.point(phase)
 
     def _changed(self, session: Session, names: frozenset[str]) -> None:
+        name = session.name if session.photometry is not None else "no data"
+        self.setWindowTitle(f"{name}[*] \N{EM DASH} Shadowscale")
         self.setWindowModified(self.desk.unsaved)
-        self.setWindowTitle(
-            f"{session.name}[*] \N{EM DASH} Shadowscale"
-            if session.photometry is not None
-            else "Shadowscale"
-        )
         self._show(session, names)
         self.actions_table.update(session)
         self.status.show_session(session)
+        if {"photometry", "name"} <= names and session.photometry is not None:
+            folded = ephemeris(session) is not None
+            self.bring("Folded curve" if folded else "Whole series")
+            self.status.tell(" ".join(session.notes) or ("" if folded else NO_PERIOD))
 
     def _show(self, session: Session, names: frozenset[str]) -> None:
         self.stack.setCurrentIndex(
@@ -259,11 +264,15 @@ class Bench(QMainWindow):
         assert isinstance(pane, PeriodsPane)
         pane.show_search(found)
         self.bring("Period")
+        self.bring("Folded curve")
 
     def _show_all(self) -> None:
         self._show(self.desk.session, ALL)
 
     def _trouble(self, found: trouble.Trouble) -> None:
+        shown = [each.trouble.sentence for each in self.findChildren(TroubleDialog)]
+        if found.sentence in shown or len(shown) >= MOST_TROUBLES:
+            return  # one window is enough for a trouble that comes again and again; the log has them all
         dialog = TroubleDialog(found, self)
         dialog.setAttribute(Qt.WidgetAttribute.WA_DeleteOnClose)
         dialog.open()

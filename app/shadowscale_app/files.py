@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
+from contextlib import contextmanager
 from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from PySide6.QtCore import QObject, QSettings, QStandardPaths, QTimer
-from PySide6.QtWidgets import QFileDialog, QMessageBox, QWidget
+from PySide6.QtCore import QObject, QSettings, QStandardPaths, Qt, QTimer
+from PySide6.QtWidgets import QApplication, QFileDialog, QMessageBox, QWidget
 
 from shadowscale.session.session import Session, Source
 from shadowscale_app import trouble
@@ -72,8 +73,9 @@ class Files(QObject):
         from shadowscale.session.store import open_session
 
         if self.may_leave():
-            session = open_session(path)
-            self._desk.begin(session, path)
+            with waiting():
+                session = open_session(path)
+                self._desk.begin(session, path)
             self._remember(path)
 
     def open_photometry(self, paths: Sequence[Path]) -> None:
@@ -91,11 +93,12 @@ class Files(QObject):
         base = session if adds else Session(name=path.stem)
         added = Source(str(path.absolute()), reading.columns, band=reading.band or "")
         sources = (*base.photometry_sources, added)
-        photometry = read_photometry(
-            [source.path for source in sources],
-            columns=[source.columns for source in sources],
-            band=[source.band or None for source in sources],
-        )
+        with waiting():
+            photometry = read_photometry(
+                [source.path for source in sources],
+                columns=[source.columns for source in sources],
+                band=[source.band or None for source in sources],
+            )
         sources = _with_checksums(sources, photometry.files)
         fresh = replace(
             base,
@@ -231,6 +234,16 @@ class Files(QObject):
     def _folder(self) -> str:
         recent = self.recent()
         return str(recent[0].parent) if recent else os.getcwd()
+
+
+@contextmanager
+def waiting() -> Iterator[None]:
+    """The cursor says that it takes a moment."""
+    QApplication.setOverrideCursor(Qt.CursorShape.WaitCursor)
+    try:
+        yield
+    finally:
+        QApplication.restoreOverrideCursor()
 
 
 def settings() -> QSettings:

@@ -8,6 +8,7 @@ from PySide6.QtCore import QObject, Signal
 
 from shadowscale.progress import Progress
 from shadowscale.session.session import Session
+from shadowscale.view.summary import summary
 from shadowscale_app import trouble
 from shadowscale_app.desk import Change, Desk
 from shadowscale_app.jobs import Answer, LongLane
@@ -54,7 +55,7 @@ class WorkDesk(QObject):
         photometry = self._desk.session.photometry
 
         def work(progress: Progress) -> object:
-            from shadowscale.timing import search_period
+            from shadowscale.timing.period import search_period
 
             assert photometry is not None
             return search_period(photometry, progress=progress)
@@ -94,6 +95,7 @@ class WorkDesk(QObject):
         assert isinstance(found, Session)
         session = with_start_markers(with_results(self._desk.session, found))
         self._desk.apply(Change("Solve", session))
+        self.told.emit(f"Solved: {summary(session)}.")
         self.solved.emit()
 
     def fold(self, period: float, epoch: float) -> None:

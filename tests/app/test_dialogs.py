@@ -149,3 +149,16 @@ def test_a_prior_needs_a_positive_sigma(bench: Bench) -> None:
     dialog.sigma.setText("0,02")
     assert pytest.approx(dialog.numbers()) == (0.78145695, 0.02)
     dialog.deleteLater()
+
+
+def test_a_trouble_that_comes_again_opens_one_window(
+    bench: Bench, told: list[trouble.Trouble]
+) -> None:
+    for _ in range(5):
+        trouble.tell("drawing", ValueError("the same again"))
+
+    dialogs = bench.findChildren(TroubleDialog)
+    assert len(dialogs) == 1
+    assert len(told) == 5
+    dialogs[0].close()
+    told.clear()

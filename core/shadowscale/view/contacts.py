@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from shadowscale.data.photometry import Floats
 from shadowscale.geometry.contacts import ContactSolution, EclipseTiming
 from shadowscale.session.session import Markers, Session, Span
-from shadowscale.view.light_points import ephemeris, fitting_solution, fold
+from shadowscale.view.light_points import ephemeris, fitting_solution, folded_time
 
 CORE = (
     0.12  # part of the duration about the middle that gives the depth where there is no flat bottom
@@ -57,7 +57,7 @@ def markers_at(contact: ContactSolution) -> Markers:
 
 def with_ephemeris(session: Session, period: float, epoch: float) -> Session:
     """The session with a period and epoch to start from, and markers measured on the curve folded with them."""
-    from shadowscale.timing import measure_eclipses
+    from shadowscale.timing.eclipses import measure_eclipses
 
     plan = replace(session.plan, period=period, epoch=epoch)
     changed = replace(
@@ -102,13 +102,13 @@ def _depth(session: Session, span: Span) -> tuple[float, float]:
     photometry, found = session.photometry, ephemeris(session)
     assert photometry is not None
     assert found is not None
-    phase = fold(photometry.time, *found)
-    light = photometry.flux / _level(session, phase)
+    phase = folded_time(photometry, *found)
     inside = photometry.used & (phase >= span[0]) & (phase <= span[1])
+    level = _level(session, phase)
     for band in range(len(photometry.bands)):
         rows = inside & (photometry.band == band)
         if rows.any():
-            values = light[rows]
+            values = photometry.flux[rows] / level[rows]
             scatter = (
                 float(np.std(values))
                 if values.size > 2

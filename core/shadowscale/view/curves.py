@@ -2,9 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import dataclass
-from typing import Generic, TypeVar
 
 import numpy as np
 
@@ -13,13 +11,12 @@ from shadowscale.fit.solution import Solution
 from shadowscale.fit.system import System
 from shadowscale.geometry.contacts import ContactSolution
 from shadowscale.session.session import Session
+from shadowscale.view.last import Last
 from shadowscale.view.light_points import to_magnitudes
 
 COARSE, FINE = 360, 260  # samples of a cycle, and of each eclipse
 PLAIN_SPANS = ((-0.12, 0.12), (0.38, 0.62))  # where eclipses are, if nothing is known of them
 MARGIN = 0.15  # of an eclipse's duration, to either side
-
-Found = TypeVar("Found")
 
 
 @dataclass(frozen=True, eq=False)
@@ -104,21 +101,4 @@ def _widened(first: float, last: float) -> tuple[float, float]:
     return first - margin, last + margin
 
 
-class _Last(Generic[Found]):
-    """Remembers the last call of a pure function: several pictures ask for the same in a row."""
-
-    def __init__(self, function: Callable[..., Found]) -> None:
-        self._function = function
-        self._kept: tuple[tuple[object, ...], Found] | None = None
-
-    def of(self, *arguments: object) -> Found:
-        """The function's value; arguments are compared by identity, they are frozen."""
-        kept = self._kept
-        if kept is not None and all(a is b for a, b in zip(kept[0], arguments, strict=True)):
-            return kept[1]
-        found = self._function(*arguments)
-        self._kept = (arguments, found)
-        return found
-
-
-_FITTED, _CONTACT, _SYSTEM = _Last(_light_curves), _Last(_light_curves), _Last(_contact_system)
+_FITTED, _CONTACT, _SYSTEM = Last(_light_curves), Last(_light_curves), Last(_contact_system)

@@ -5,8 +5,13 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import dataclass
 
+import numpy as np
+
+from shadowscale.data.photometry import Photometry
+from shadowscale.fit.solution import Solution
 from shadowscale.judge.finding import FAIL, PASS, WARN, Finding
 from shadowscale.session.session import Session
+from shadowscale.view.last import Last
 from shadowscale.view.light_points import fitting_solution
 from shadowscale.view.written import symbol
 
@@ -76,9 +81,7 @@ def _rows(session: Session) -> Iterator[Doubt]:
     photometry, solution = session.photometry, fitting_solution(session)
     if photometry is None:
         return
-    why = photometry.why if solution is None else solution.light.why
-    reasons = photometry.reasons if solution is None else solution.light.reasons
-    found = [(reason, int((why == code).sum())) for code, reason in enumerate(reasons) if code]
+    found = list(_COUNTS.of(photometry, solution))
     found += [
         (f"{row.file}, line {row.line}: {row.reason}", 1)
         for row in photometry.unreadable[:SHOWN_LINES]
@@ -90,6 +93,16 @@ def _rows(session: Session) -> Iterator[Doubt]:
     more = len(photometry.unreadable) - SHOWN_LINES
     if more > 0:
         yield Doubt("", "", f"{more}", "more lines that cannot be read")
+
+
+def _counted(photometry: Photometry, solution: Solution | None) -> tuple[tuple[str, int], ...]:
+    why = photometry.why if solution is None else solution.light.why
+    reasons = photometry.reasons if solution is None else solution.light.reasons
+    numbers = np.bincount(why, minlength=len(reasons))
+    return tuple((reason, int(numbers[code])) for code, reason in enumerate(reasons) if code)
+
+
+_COUNTS = Last(_counted)
 
 
 def _numbers(finding: Finding) -> str:

@@ -8,7 +8,9 @@ import numpy as np
 
 from shadowscale.data.photometry import USED, Floats, Ints, Photometry
 from shadowscale.fit.solution import Solution
+from shadowscale.fit.system import System
 from shadowscale.session.session import Session
+from shadowscale.view.last import Last
 
 MAGNITUDE = 2.5 / np.log(10.0)  # of a small relative change of flux
 SHIFT = 0.2  # of the range of one band, between two bands drawn in one picture
@@ -61,8 +63,15 @@ def light_over_phase(
     found = ephemeris(session)
     if session.photometry is None or found is None:
         return ()
-    x = fold(session.photometry.time, *found)
-    return _by_band(session, x, magnitudes=magnitudes, residuals=residuals, zero=0.0)
+    solution = fitting_solution(session)
+    if residuals:
+        return _RESIDUALS.of(session.photometry, solution, session.system, *found, magnitudes)
+    return _LIGHT.of(session.photometry, solution, *found, magnitudes)
+
+
+def folded_time(photometry: Photometry, period: float, epoch: float) -> Floats:
+    """Phases of all rows, -0.25...0.75; the last answer is kept."""
+    return _PHASE.of(photometry, period, epoch)
 
 
 def light_over_time(
@@ -71,8 +80,12 @@ def light_over_time(
     """All bands against time less `zero` [d]."""
     if session.photometry is None:
         return ()
+    solution = fitting_solution(session)
+    model = _model_for(session.photometry, solution, session.system) if residuals else None
+    if residuals and model is None:
+        return ()
     x = session.photometry.time - zero
-    return _by_band(session, x, magnitudes=magnitudes, residuals=residuals, zero=zero)
+    return _by_band(session.photometry, solution, x, model, magnitudes=magnitudes, zero=zero)
 
 
 def band_shifts(points: tuple[LightPoints, ...], *, magnitudes: bool = False) -> tuple[float, ...]:
@@ -100,40 +113,51 @@ def to_magnitudes(flux: Floats) -> Floats:
         return -2.5 * np.log10(np.where(flux > 0, flux, np.nan))
 
 
-def _by_band(
-    session: Session, x: Floats, *, magnitudes: bool, residuals: bool, zero: float
+def _light(
+    photometry: Photometry, solution: Solution | None, period: float, epoch: float, magnitudes: bool
 ) -> tuple[LightPoints, ...]:
-    photometry = session.photometry
-    assert photometry is not None
-    solution = fitting_solution(session)
-    if residuals and solution is None:
+    x = folded_time(photometry, period, epoch)
+    return _by_band(photometry, solution, x, None, magnitudes=magnitudes, zero=0.0)
+
+
+def _residuals(
+    photometry: Photometry,
+    solution: Solution | None,
+    system: System | None,
+    period: float,
+    epoch: float,
+    magnitudes: bool,
+) -> tuple[LightPoints, ...]:
+    model = _model_for(photometry, solution, system)
+    if model is None:
         return ()
-    model = None
-    if residuals and solution is not None:
-        model = model_of_rows(session, solution)
+    x = folded_time(photometry, period, epoch)
+    return _by_band(photometry, solution, x, model, magnitudes=magnitudes, zero=0.0)
+
+
+def _by_band(
+    photometry: Photometry,
+    solution: Solution | None,
+    x: Floats,
+    model: Floats | None,
+    *,
+    magnitudes: bool,
+    zero: float,
+) -> tuple[LightPoints, ...]:
     y, error = _values(photometry, solution, model, magnitudes=magnitudes)
-    why = (
-        photometry.why
-        if solution is None
-        else np.where(photometry.why == USED, solution.light.why, photometry.why)
-    )
+    why = photometry.why
+    if solution is not None:
+        why = np.where(photometry.why == USED, solution.light.why, photometry.why)
     outlier = (photometry.why == USED) & (why != USED)
     found = []
     for number, label in enumerate(photometry.bands):
         rows = np.flatnonzero((photometry.band == number) & np.isfinite(y))
         found.append(
             LightPoints(
-                number,
-                label,
-                x[rows],
-                y[rows],
-                error[rows],
-                rows,
-                why[rows] == USED,
-                outlier[rows],
-                zero,
+                number, label, x[rows], y[rows], error[rows], rows, why[rows] == USED,
+                outlier[rows], zero,
             )
-        )
+        )  # fmt: skip
     return tuple(found)
 
 
@@ -145,10 +169,13 @@ def fitting_solution(session: Session) -> Solution | None:
     return solution
 
 
-def model_of_rows(session: Session, solution: Solution) -> Floats:
+def _model_for(
+    photometry: Photometry, solution: Solution | None, system: System | None
+) -> Floats | None:
     """(n,) the model with levels at every row: of the solution, or of a system moved by hand since."""
-    system, photometry = session.system, session.photometry
-    if system is None or photometry is None or system is solution.system:
+    if solution is None:
+        return None
+    if system is None or system is solution.system:
         return solution.light.model
     from shadowscale.fit.model import model_light
 
@@ -192,3 +219,7 @@ def sensible_range(
     low, high = min(end[0] for end in ends), max(end[1] for end in ends)
     margin = 0.12 * (high - low) or 1e-3
     return low - margin, high + margin
+
+
+_PHASE = Last(lambda photometry, period, epoch: fold(photometry.time, period, epoch))
+_LIGHT, _RESIDUALS = Last(_light), Last(_residuals)
