@@ -110,7 +110,7 @@ TABLE: tuple[Entry, ...] = (
     Entry("velocities", f"Add velocities{ELLIPSIS}", "File", lambda b: b.files.ask_velocities(), "Ctrl+Shift+O", "Add a table of radial velocities", _has_light, bar="Velocities"),
     Entry("save", "Save", "File", lambda b: b.files.save(), Std.Save, "Save the session", _has_light, bar="Save", rule_before=True),
     Entry("save_as", f"Save as{ELLIPSIS}", "File", lambda b: b.files.save_as(), Std.SaveAs, "Save the session in another file", _has_light),
-    Entry("export", f"Export sheet{ELLIPSIS}", "File", lambda b: b.files.ask_export(), "Ctrl+E", "Write the sheet, curves and session to a folder", _is_solved, bar="Export"),
+    Entry("export", f"Export sheet{ELLIPSIS}", "File", lambda b: b.work.export(b.files.ask_export()), "Ctrl+E", "Write the sheet, curves and session to a folder", _is_solved, bar="Export"),
     Entry("figure", f"Save figure of the picture in front{ELLIPSIS}", "File", lambda b: b.save_figure(), "Ctrl+Shift+E", "PDF, SVG or PNG", _has_light),
     Entry("close", "Close session", "File", lambda b: b.files.close_session(), Std.Close, "Back to the start page", _has_light, rule_before=True),
     Entry("quit", "Quit", "File", lambda b: b.close(), Std.Quit),

@@ -19,6 +19,7 @@ from shadowscale_app.dialogs.reading import Reading, ask_reading
 
 if TYPE_CHECKING:
     from shadowscale.session.journal import Journal
+    from shadowscale_app.dialogs.exporting import Target
 
 ORGANISATION, PROGRAM = "Shadowscale", "Shadowscale"
 RECENT, MOST_RECENT = "recent", 10
@@ -156,11 +157,11 @@ class Files(QObject):
             return True
         return False
 
-    def ask_export(self) -> None:
-        """Ask for a folder and write the sheet and all the rest there."""
-        from shadowscale_app.dialogs.exporting import ask_export
+    def ask_export(self) -> Target | None:
+        """Ask where the sheet and all the rest are to be written."""
+        from shadowscale_app.dialogs.exporting import ask_target
 
-        ask_export(self._window, self._desk.session, self._folder())
+        return ask_target(self._window, self._desk.session, self._folder())
 
     def close_session(self) -> None:
         """Back to the start page."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QObject, Signal
 
@@ -13,6 +14,9 @@ from shadowscale_app import trouble
 from shadowscale_app.desk import Change, Desk
 from shadowscale_app.jobs import Answer, LongLane
 from shadowscale_app.live import with_results
+
+if TYPE_CHECKING:
+    from shadowscale_app.dialogs.exporting import Target
 
 
 class WorkDesk(QObject):
@@ -98,11 +102,30 @@ class WorkDesk(QObject):
         self.told.emit(f"Solved: {summary(session)}.")
         self.solved.emit()
 
+    def export(self, target: Target | None) -> None:
+        """Write the sheet and all that belongs to it."""
+        if target is None:
+            return
+        session = self._desk.session
+
+        def work(progress: Progress) -> object:
+            from shadowscale.jobs.results import write_results
+
+            progress.report(0.05, "writing")
+            return write_results(session, target.folder, overwrite=target.replace)
+
+        self._start(f"exporting to {target.folder}", work, self._take_written)
+
     def fold(self, period: float, epoch: float) -> None:
         """Take a period and epoch to start from."""
         from shadowscale.view.contacts import with_ephemeris
 
         self._desk.apply(Change("Fold anew", with_ephemeris(self._desk.session, period, epoch)))
+
+    def _take_written(self, found: object) -> None:
+        assert isinstance(found, tuple)
+        folders = {str(path.parent) for path in found}
+        self.told.emit(f"{len(found)} files written to {min(folders, key=len)}.")
 
     def _take_period(self, found: object) -> None:
         from shadowscale.timing.results import PeriodSearch

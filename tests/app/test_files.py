@@ -8,10 +8,11 @@ from pathlib import Path
 import pytest
 from PySide6.QtWidgets import QMessageBox
 
+from shadowscale.jobs import results as jobs_results
 from shadowscale.session.journal import Journal
 from shadowscale_app.bench import Bench
 from shadowscale_app.desk import Change
-from shadowscale_app.dialogs.exporting import export
+from shadowscale_app.dialogs.exporting import agreed_target
 from shadowscale_app.files import journal_folder
 from shadowscale_app.plots.figure import KINDS, save_figure
 from shadowscale_app.samples import samples
@@ -142,15 +143,19 @@ def test_the_journal_is_written_only_where_there_is_something_to_lose(bench: Ben
 def test_export_writes_the_sheet_and_asks_before_it_replaces(
     bench: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    written = export(bench, bench.desk.session, tmp_path)
-    assert {"sheet.json", "sheet.csv", "sheet.tex", "light_curve.csv"} <= {
-        path.name for path in written
-    }
+    monkeypatch.setattr(
+        jobs_results, "report_contents", lambda *_, **__: {}
+    )  # figures have tests of their own
+    bench.work.export(agreed_target(bench, bench.desk.session, tmp_path))
+    assert bench.long_lane.wait_until_idle()
+    written = {path.name for path in tmp_path.iterdir()}
+    assert {"sheet.json", "sheet.csv", "sheet.tex", "light_curve.csv", "session.json"} <= written
+    assert "files written" in bench.status.words.text()
     asked = answer(monkeypatch, ANSWER.No)
 
-    again = export(bench, bench.desk.session, tmp_path)
+    again = agreed_target(bench, bench.desk.session, tmp_path)
 
-    assert again == ()
+    assert again is None
     assert "sheet.json" in asked[0]
 
 
