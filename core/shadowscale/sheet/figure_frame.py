@@ -15,7 +15,8 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
-INK, SOFT, FAINT = "#1f2328", "#767d86", "#c9ced6"
+INK, SOFT, FAINT = "#1f2328", "#767d86", "#c9ced6"  # a page may give these others
+DARK = "#15181c"  # on light fillings, whatever the page
 BLUE, VERMILLION, GREEN = "#0072b2", "#d55e00", "#009e73"
 ORANGE, SKY, PURPLE, YELLOW = "#e69f00", "#56b4e9", "#cc79a7", "#f0e442"
 STAR = {1: BLUE, 2: VERMILLION}
@@ -80,8 +81,8 @@ class Place:
         return self.figure.add_axes(rectangle)
 
 
-def label_band(axes: Axes, text: str, *, low: bool = False) -> None:
-    """The name of a panel in its left corner, inside; `low` where the curve runs along the top."""
+def label_band(axes: Axes, text: str, *, low: bool = False, bold: bool = True) -> None:
+    """Words in the left corner of a panel, inside; `low` where the curve runs along the top."""
     y, side = (5.0, "bottom") if low else (-5.0, "top")
     axes.annotate(
         text,
@@ -90,7 +91,7 @@ def label_band(axes: Axes, text: str, *, low: bool = False) -> None:
         xycoords="axes fraction",
         textcoords="offset points",
         va=side,
-        weight="bold",
+        weight="bold" if bold else "normal",
         zorder=6,
     )
 

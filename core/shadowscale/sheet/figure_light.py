@@ -159,8 +159,8 @@ def _residual_panel(
     aside = seen & ~points.used
     draw_set_aside(axes, phase[aside], points.residual[aside])
     draw_means(axes, phase[used], points.residual[used], bins=bins)
-    minus = "O \N{MINUS SIGN} C"
-    axes.set_ylabel(f"{minus} [mmag]" if shown.magnitudes else f"{minus} [10$^{{-3}}$]")
+    axes.set_ylabel("O \N{MINUS SIGN} C")
+    label_band(axes, "mmag" if shown.magnitudes else "parts per thousand", bold=False)
     few_ticks(axes, y=4)
 
 

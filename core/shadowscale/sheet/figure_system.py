@@ -13,6 +13,7 @@ from shadowscale.quantities import parse_key
 from shadowscale.sheet.figure_data import Shown
 from shadowscale.sheet.figure_frame import (
     BLUE,
+    DARK,
     FAINT,
     INK,
     SOFT,
@@ -66,6 +67,7 @@ def _above(place: Place, width: float, values: dict[str, float]) -> None:
     radii = {1: values["r1"], 2: values["r2"]}
     angle = np.linspace(0, 2 * pi, 361)
     reach = 0.0
+    discs = []
     for star, share, sign in ((1, shares[0], 1), (2, shares[1], -1)):
         x, z = _orbit(angle, e_cos, e_sin)
         axes.plot(
@@ -80,8 +82,10 @@ def _above(place: Place, width: float, values: dict[str, float]) -> None:
         axes.plot(ahead, 0.0, "^" if star == 1 else "v", color=STAR[star], markersize=4)
         x0, z0 = _orbit(np.array([pi / 2]), e_cos, e_sin)
         at = (float(sign * share * x0[0]), float(sign * share * z0[0]))
-        _disc(axes, at, radii[star], star)
+        discs.append((at, star))
         reach = max(reach, share * float(np.hypot(x, z).max()) + radii[star])
+    for at, star in discs:
+        _disc(axes, at, radii[star], star, beside=radii[star] < 0.06 * reach)
     axes.plot(0, 0, "+", color=INK, markersize=5, markeredgewidth=0.6, zorder=1)
     half = reach * width / height
     axes.set_xlim(-half, half)
@@ -115,23 +119,25 @@ def _orbit(longitude: Floats, ecosw: float, esinw: float) -> tuple[Floats, Float
 def _sun(
     axes: Axes, values: dict[str, float], *, corner: tuple[float, float], reach: float
 ) -> None:
-    """The Sun at the same scale, or what there is to say of the scale."""
-    x, y = corner
+    """The Sun at the same scale, and a length."""
+    x, y = corner[0] + 0.06 * reach, corner[1] + 0.04 * reach
     if "a" not in values:
-        axes.plot([x + 0.06 * reach, x + 0.56 * reach], [y + 0.05 * reach] * 2, color=INK)
-        axes.text(
-            x + 0.06 * reach, y + 0.08 * reach, f"{0.5 * reach:.2g} a", fontsize=7, va="bottom"
-        )
+        _length(axes, (x, y), 0.5, "half the semi-major axis", reach=reach)
         return
     radius = 1 / values["a"]
-    axes.add_patch(_circle((x + 0.06 * reach + radius, y + 0.04 * reach + radius), radius, YELLOW))
-    axes.text(x + 0.06 * reach, y + 0.09 * reach + 2 * radius, "the Sun", fontsize=7, va="bottom")
+    axes.add_patch(_circle((x + radius, y + radius), radius, YELLOW))
+    axes.text(x + 2 * radius + 0.04 * reach, y + radius, "the Sun", fontsize=7, va="center")
     length = _round_length(0.5 * reach * values["a"])
-    start = x + 0.20 * reach + 2 * radius
-    axes.plot(
-        [start, start + length / values["a"]], [y + 0.05 * reach] * 2, color=INK, linewidth=0.9
-    )
-    axes.text(start, y + 0.08 * reach, f"{length:g} solar radii", fontsize=7, va="bottom")
+    above = y + max(2 * radius + 0.1 * reach, 0.16 * reach)
+    _length(axes, (x, above), length / values["a"], f"{length:g} solar radii", reach=reach)
+
+
+def _length(
+    axes: Axes, at: tuple[float, float], length: float, words: str, *, reach: float
+) -> None:
+    """A bar of a length, with its words above."""
+    axes.plot([at[0], at[0] + length], [at[1]] * 2, color=INK, linewidth=0.9)
+    axes.text(at[0], at[1] + 0.04 * reach, words, fontsize=7, va="bottom")
 
 
 def _round_length(length: float) -> float:
@@ -142,6 +148,8 @@ def _round_length(length: float) -> float:
 
 def _seen(axes: Axes, eclipse: int, values: dict[str, float], *, room: tuple[float, float]) -> None:
     """Both discs on the sky at mid eclipse, and the path of the one in front."""
+    from matplotlib.patches import Circle
+
     sign = 1.0 if eclipse == 1 else -1.0
     e_cos, e_sin = values["ecosw"], values["esinw"]
     front, behind = (2, 1) if eclipse == 1 else (1, 2)
@@ -155,6 +163,8 @@ def _seen(axes: Axes, eclipse: int, values: dict[str, float], *, room: tuple[flo
     _disc(axes, (0.0, 0.0), radii[behind], behind)
     axes.plot(path_x, path_y, color=SOFT, linewidth=0.8, zorder=5, linestyle=(0, (4, 2)))
     _disc(axes, (float(path_x[middle]), float(path_y[middle])), radii[front], front, zorder=4)
+    hidden = {"edgecolor": STAR[behind], "facecolor": "none", "linestyle": (0, (1, 2))}
+    axes.add_patch(Circle((0.0, 0.0), radii[behind], linewidth=0.6, zorder=4.5, **hidden))
     top = max(radii[behind], path_y[middle] + radii[front])
     low = min(-radii[behind], path_y[middle] - radii[front])
     centre, half = (top + low) / 2, 0.55 * (top - low)
@@ -170,22 +180,36 @@ def _seen(axes: Axes, eclipse: int, values: dict[str, float], *, room: tuple[flo
 
 
 def _disc(
-    axes: Axes, at: tuple[float, float], radius: float, star: int, *, zorder: float = 3
+    axes: Axes,
+    at: tuple[float, float],
+    radius: float,
+    star: int,
+    *,
+    zorder: float = 3,
+    beside: bool = False,
 ) -> None:
+    """A star with its number, beside it where it is too small."""
     from matplotlib.patches import Circle
 
-    axes.add_patch(
-        Circle(at, radius, facecolor=FILL[star], edgecolor=STAR[star], linewidth=0.8,
-               zorder=zorder)
-    )  # fmt: skip
-    axes.text(*at, str(star), ha="center", va="center", fontsize=7.5, weight="bold",
-              zorder=zorder + 0.1)  # fmt: skip
+    colours = {"facecolor": FILL[star], "edgecolor": STAR[star]}
+    axes.add_patch(Circle(at, radius, linewidth=0.8, zorder=zorder, **colours))
+    axes.annotate(
+        str(star),
+        at,
+        (7.0, 6.0) if beside else (0.0, 0.0),
+        textcoords="offset points",
+        ha="center",
+        va="center",
+        weight="bold",
+        color=INK if beside else DARK,
+        zorder=zorder + 0.1,
+    )
 
 
 def _circle(at: tuple[float, float], radius: float, colour: str) -> Any:
     from matplotlib.patches import Circle
 
-    return Circle(at, radius, facecolor=colour, edgecolor=INK, linewidth=0.5, zorder=6)
+    return Circle(at, radius, facecolor=colour, edgecolor=DARK, linewidth=0.5, zorder=6)
 
 
 def _bare(axes: Axes) -> Axes:

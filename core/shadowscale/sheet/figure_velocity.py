@@ -136,7 +136,7 @@ def _residuals(axes: Axes, points: StarPoints) -> None:
     axes.set_ylim(-limit, limit)
     axes.set_xlim(*WHOLE)
     axes.set_ylabel("O \N{MINUS SIGN} C")
-    label_band(axes, f"star {points.star} [km/s]")
+    label_band(axes, f"star {points.star}, km/s", bold=False)
     few_ticks(axes, y=4)
 
 
