@@ -10,6 +10,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -123,10 +124,12 @@ def _scaled(normal: Normal, moving: NDArray[np.bool_]) -> tuple[Floats, Floats, 
 
 def _solve(matrix: Floats, right: Floats) -> Floats:
     """Solve a symmetric system; by least squares where it is singular."""
+    solved: NDArray[Any]
     try:
-        return np.linalg.solve(matrix, right)
+        solved = np.linalg.solve(matrix, right)
     except np.linalg.LinAlgError:
-        return np.linalg.lstsq(matrix, right, rcond=1e-14)[0]
+        solved = np.linalg.lstsq(matrix, right, rcond=1e-14)[0]
+    return solved
 
 
 def _step(normal: Normal, moving: NDArray[np.bool_], damping: float) -> Floats:

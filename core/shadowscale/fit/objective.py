@@ -6,6 +6,7 @@ from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from functools import cached_property
 from math import cos, radians
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -93,7 +94,8 @@ class Objective:
     def velocity_errors(self, data: StarVelocities) -> Floats:
         """(n,) errors with jitter added in quadrature [km/s]."""
         extra = np.array([self.jitter.get((data.star, int(s)), 0.0) for s in data.source])
-        return np.sqrt(data.error**2 + extra**2)
+        errors: Floats = np.sqrt(data.error**2 + extra**2)
+        return errors
 
     def _light(self, values: Mapping[str, float], x: Floats, data: BandData) -> Normal:
         """One band, with errors as given."""
@@ -196,7 +198,10 @@ class Objective:
             for column, two in enumerate(rules):
                 if one.common and one.common == two.common:
                     covariance[row, column] += one.common_sigma * two.common_sigma
-        return np.linalg.inv(np.linalg.cholesky(covariance)) if rules else np.zeros((0, 0))
+        whitener: NDArray[Any] = np.zeros((0, 0))
+        if rules:
+            whitener = np.linalg.inv(np.linalg.cholesky(covariance))
+        return whitener
 
     def _slope(self, function: Callable[[Mapping[str, float]], float], x: Floats) -> Floats:
         """(m,) gradient of a function of the values, by central differences (it costs no data)."""

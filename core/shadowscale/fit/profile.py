@@ -8,18 +8,20 @@ found there give the 68.3 % limits along the valley (Wilks 1938; Pawitan 2001, I
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
+from shadowscale.fit.alternatives import Branch
 from shadowscale.fit.least_squares import covariance
 from shadowscale.fit.problem import Fitted
 from shadowscale.fit.system import System
 
 Floats = NDArray[np.float64]
 NAME = "radius_ratio"
+PLATEAU = 4.0  # in chi-squared: two sigma
 FIRST = 0.7  # of the linear sigma: where the profile is tried first
 LARGEST_FIRST = 0.3  # and at most this share of k itself
 MOST_TRIES = 9
@@ -56,6 +58,36 @@ def valley(best: Fitted, fit: Callable[[System], Fitted]) -> Valley | None:
     if straight and lowest is best:
         return None
     return Valley(below.x, above.x, lowest)
+
+
+def widened(
+    best: Fitted, ends: tuple[Floats, Floats] | None, branches: Sequence[Branch]
+) -> tuple[Floats, Floats] | None:
+    """The limits of k, reaching out to other minima that the data hardly tell from the best.
+
+    Between two minima within two sigma of each other the profile is a plateau, of which the point
+    where it first rises by one says little. `ends` itself is handed back where there are none such.
+    """
+    if NAME not in best.system.free:
+        return ends
+    at = best.objective.vector.index[NAME]
+    equal = [
+        branch.fitted.minimum.x
+        for branch in branches
+        if branch.delta_chi2 < PLATEAU and branch.fitted.system.free == best.system.free
+    ]
+    if not equal:
+        return ends
+    below, above = ends or _linear_ends(best, at)
+    below = min([below, *equal], key=lambda x: float(x[at]))
+    above = max([above, *equal], key=lambda x: float(x[at]))
+    return below, above
+
+
+def _linear_ends(best: Fitted, at: int) -> tuple[Floats, Floats]:
+    matrix, _ = covariance(best.minimum.normal)
+    shift = matrix[:, at] / np.sqrt(matrix[at, at])
+    return best.minimum.x - shift, best.minimum.x + shift
 
 
 @dataclass(frozen=True, eq=False)

@@ -92,8 +92,9 @@ def _difference(
     names: Sequence[str],
 ) -> Floats:
     high, low = function(above), function(below)
-    found = np.array([high.get(name, np.nan) - low.get(name, np.nan) for name in names])
+    found: Floats = np.array([high.get(name, np.nan) - low.get(name, np.nan) for name in names])
     if "omega" in names:  # an angle: the short way round
         at = names.index("omega")
         found[at] = (found[at] + 180.0) % 360.0 - 180.0
-    return np.nan_to_num(found, nan=0.0)
+    found[~np.isfinite(found)] = 0.0
+    return found

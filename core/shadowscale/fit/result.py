@@ -169,8 +169,9 @@ def _estimates(
         if name not in found:
             how = ASSUMED if name in assumed else DERIVED
             minus, plus = sigma[name]
-            limits = (None, None) if minus == plus == 0.0 else (minus, plus)
-            found[name] = Estimate(value, *limits, how, _prior_of(plan, name))
+            sure = minus == plus == 0.0
+            low, high = (None, None) if sure else (minus, plus)
+            found[name] = Estimate(value, low, high, how, _prior_of(plan, name))
     order = {name: number for number, name in enumerate(QUANTITIES)}
     return dict(sorted(found.items(), key=lambda item: order[parse_key(item[0]).name]))
 
@@ -227,13 +228,13 @@ def _summary(best: Fitted, problem: Problem, weighting: Weighting) -> FitSummary
         points += data.time.size
         levels += per_level * data.segments
     rms_velocity = {}
-    for data in objective.stars:
-        residual = objective.velocity_residuals(x, data)
-        rms_velocity[f"star {data.star}"] = float(np.sqrt(np.mean(residual**2)))
-        raw[f"velocities, star {data.star}"] = float(
-            np.sum((residual / data.error) ** 2) / max(residual.size - 2, 1)
+    for star in objective.stars:
+        residual = objective.velocity_residuals(x, star)
+        rms_velocity[f"star {star.star}"] = float(np.sqrt(np.mean(residual**2)))
+        raw[f"velocities, star {star.star}"] = float(
+            np.sum((residual / star.error) ** 2) / max(residual.size - 2, 1)
         )
-        chi2 += float(np.sum((residual / objective.velocity_errors(data)) ** 2))
+        chi2 += float(np.sum((residual / objective.velocity_errors(star)) ** 2))
         points += residual.size
     free = x.size + levels
     sources = best.system.sources

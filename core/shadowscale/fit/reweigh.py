@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import replace
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -133,7 +135,7 @@ def _velocity_code(velocities: Velocities) -> int:
     return reasons_with_outlier(velocities.reasons).index(LIGHT_CODE)
 
 
-def _differs(new: dict, old: dict) -> bool:  # type: ignore[type-arg]
+def _differs(new: Mapping[Any, float], old: Mapping[Any, float]) -> bool:
     if set(new) != set(old):
         return True
     return any(abs(new[at] - old[at]) > 0.01 * max(abs(old[at]), 1e-9) for at in new)

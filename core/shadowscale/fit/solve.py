@@ -22,7 +22,7 @@ from shadowscale.fit.objective import Constraint
 from shadowscale.fit.plan import Plan
 from shadowscale.fit.priors import prior_constraints
 from shadowscale.fit.problem import Fitted, Problem, Weighting, fit_system, thinned
-from shadowscale.fit.profile import valley
+from shadowscale.fit.profile import valley, widened
 from shadowscale.fit.result import assemble
 from shadowscale.fit.reweigh import reweighed, without_wild_rows
 from shadowscale.fit.solution import Decision, Solution
@@ -114,14 +114,14 @@ def solve(
     problem = Problem(photometry, velocities)
     weighting = without_wild_rows(problem, problem.weighting())
     work = _Work(problem, plan, ground, table, progress, weighting)
-    best, branches = _explored(work)
+    best, met = _explored(work)
     best = _with_effects(work, best)
     best = _weighed(work, best)
     best = _with_levels(work, best)
     best = _with_third_light(work, best)
     best = _with_orbit(work, best)
     best = _weighed(work, best)
-    best, branches = _against_others(work, best, branches)
+    best, branches = _against_others(work, best, met)
     best = _with_limb_darkening(work, best)
     best = _with_effects(work, best)
     if not best.minimum.converged:
@@ -133,10 +133,13 @@ def solve(
     check_velocities_follow(best)
     progress.report(0.9, "uncertainties")
     best, ends = _with_valley(work, best)
+    if (wide := widened(best, ends, branches)) is not ends:
+        words = "other solutions are as good within two sigma: the limits take them in"
+        work.decisions.append(Decision("errors", "alternatives", words))
     return assemble(
         best, problem=problem, plan=plan, weighting=work.weighting, ground=ground,
         branches=branches, decisions=work.decisions, notes=[*ground.measured.notes, *work.notes],
-        ends=ends,
+        ends=wide,
     )  # fmt: skip
 
 

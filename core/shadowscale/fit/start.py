@@ -150,10 +150,8 @@ def exchanged(measured: MeasuredEclipses) -> MeasuredEclipses:
         epoch=measured.epoch + middle * measured.period,
         primary=replace(secondary, middle=0.0),
         secondary=replace(measured.primary, middle=1.0 - middle),
-        depths={band: (two or 0.0, one) for band, (one, two) in measured.depths.items()},
-        depth_errors={
-            band: (two or 0.0, one) for band, (one, two) in measured.depth_errors.items()
-        },
+        depths={band: (two, one) for band, (one, two) in measured.depths.items()},
+        depth_errors={band: (two, one) for band, (one, two) in measured.depth_errors.items()},
         primary_window=_moved(measured.secondary_window or measured.primary_window, -middle),
         secondary_window=_moved(measured.primary_window, 1.0 - middle),
         notes=(*measured.notes, word),
@@ -202,7 +200,7 @@ def _brightness(point: Start, measured: MeasuredEclipses, photometry: Photometry
     for band in photometry.bands:
         first, second = measured.depths.get(band, (measured.primary.depth, None))
         value = overall
-        if secondary is not None and second is not None and first > 0 and second > 0:
+        if secondary is not None and first and second and first > 0 and second > 0:
             value = overall * (second / first) / (secondary.depth / measured.primary.depth)
         found[key("surface_brightness_ratio", band)] = float(np.clip(value, 1e-3, 30.0))
     return found

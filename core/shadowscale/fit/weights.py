@@ -61,7 +61,7 @@ def velocity_outliers(residual: Floats, error: Floats) -> NDArray[np.bool_]:
 def error_scale(chi2: float, points: int, taken: float) -> float:
     """Factor on the errors of a band that makes its reduced chi-squared one."""
     freedom = max(points - taken, 1.0)
-    return max(np.sqrt(chi2 / freedom), 1e-6)
+    return max(float(np.sqrt(chi2 / freedom)), 1e-6)
 
 
 def needed_jitter(residual: Floats, error: Floats, taken: float) -> float:
