@@ -31,7 +31,7 @@ class Live(QObject):
         self._timer.setSingleShot(True)
         self._timer.setInterval(THROTTLE_MS)
         self._timer.timeout.connect(self._submit)
-        desk.complete = _with_geometry
+        desk.complete = self._with_geometry
         lane.answered.connect(self._answered)
         desk.changed.connect(self._changed)
 
@@ -51,6 +51,17 @@ class Live(QObject):
         """Nothing that was asked for is wanted any more."""
         self._timer.stop()
         self._lane.drop()
+
+    def _with_geometry(self, before: Session, after: Session) -> Session:
+        """A step that moved markers brings its contact solution along."""
+        same = after.markers is before.markers or after.contact is not before.contact
+        if after.markers is None or same:
+            return after
+        try:
+            return with_contact_solution(after)
+        except ValueError as problem:  # the markers are no pair of eclipses
+            self.told.emit(str(problem))
+            return replace(after, contact=None)
 
     def _changed(self, session: Session, names: frozenset[str]) -> None:
         before, self._before = self._before, session
@@ -82,19 +93,6 @@ class Live(QObject):
             return
         assert isinstance(answer.result, Session)
         self._desk.settle(with_results(self._desk.session, answer.result))
-
-
-def _with_geometry(before: Session, after: Session) -> Session:
-    """A step that moved markers brings its contact solution along."""
-    if (
-        after.markers is None
-        or after.markers is before.markers
-        or after.contact is not before.contact
-    ):
-        return after
-    with trouble.guard("working out the geometry from the markers"):
-        return with_contact_solution(after)
-    return after
 
 
 def with_results(session: Session, found: Session) -> Session:

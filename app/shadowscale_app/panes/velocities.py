@@ -35,9 +35,7 @@ class VelocitiesPane(Pane):
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self.curve = Picture("Velocity curves", left="km/s")
-        self.rest = Picture(
-            "Residuals of the velocities", left="O \N{MINUS SIGN} C", bottom="phase"
-        )
+        self.rest = Picture("Residuals of the velocities", left="O\N{MINUS SIGN}C", bottom="phase")
         self.points, self.rest_points = Points(), Points()
         self._lines: list[pg.InfiniteLine | pg.PlotCurveItem] = []
         self._cursor = pg.InfiniteLine(0.0, angle=90)
@@ -48,6 +46,7 @@ class VelocitiesPane(Pane):
         self.nothing.setWordWrap(True)
         self.numbers = QLabel("")
         self.numbers.setFont(theme.small_font())
+        self.numbers.setWordWrap(True)
         self.numbers.setContentsMargins(10, 0, 10, 2)
         self.numbers.setAccessibleName("Amplitudes and systemic velocities")
         self.numbers.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Minimum)

@@ -7,6 +7,7 @@ from dataclasses import dataclass, replace
 
 from shadowscale.session.session import Markers, Span
 
+LONGEST = 0.45  # cycles from first to fourth contact
 LEAST = 1e-5  # cycles between neighbouring contacts
 _ORDINALS = ("first", "second", "third", "fourth")
 _SPANS = {"level": "stretch outside eclipse", "excluded": "excluded stretch"}
@@ -135,15 +136,17 @@ def _moved_contact(
         new[left], new[right] = middle - half, middle + half
     else:
         # in a partial eclipse second and third contact may meet, the others never do
-        lower = old[number - 1] + (0.0 if number == 2 else LEAST) if number else -1.0
-        upper = old[number + 1] - (0.0 if number == 1 else LEAST) if number < 3 else 2.0
+        lower = old[number - 1] + (0.0 if number == 2 else LEAST) if number else old[3] - LONGEST
+        upper = (
+            old[number + 1] - (0.0 if number == 1 else LEAST) if number < 3 else old[0] + LONGEST
+        )
         new[number] = _between(phase, lower, upper)
     return replace(markers, **{part: tuple(new)})
 
 
 def _half_limits(contacts: tuple[float, float, float, float], number: int) -> tuple[float, float]:
     if number in (0, 3):
-        return (contacts[2] - contacts[1]) / 2 + LEAST, 0.25
+        return (contacts[2] - contacts[1]) / 2 + LEAST, LONGEST / 2
     return 0.0, (contacts[3] - contacts[0]) / 2 - LEAST
 
 

@@ -33,6 +33,7 @@ def test_whatever_is_pulled_contacts_and_spans_stay_in_order(
 
     for contacts in (after.primary, after.secondary):
         assert contacts[0] < contacts[1] <= contacts[2] < contacts[3]
+        assert contacts[3] - contacts[0] < 0.5  # no eclipse takes half the orbit
     for span in (after.primary_window, after.secondary_window, *after.level, *after.excluded):
         assert span[0] < span[1]
 
