@@ -55,6 +55,12 @@ def fused(function: F) -> F:
     return cast(F, _cached(dispatcher))
 
 
+def summed(function: F) -> F:
+    """As `fused`; sums may be taken in another order, so that several numbers are added at once."""
+    dispatcher = njit(nogil=True, error_model="numpy", fastmath={"contract", "reassoc"})(function)
+    return cast(F, _cached(dispatcher))
+
+
 def fingerprint(file: str) -> str:
     """Of the program's version, a module, and all modules of the engine that it imports.
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import cache
 from math import cos, pi, radians, sqrt
 
 import numpy as np
@@ -12,27 +13,15 @@ from numpy.typing import NDArray
 from shadowscale.constants import C_KM_S, DAY
 from shadowscale.fit.plan import EFFECTS
 from shadowscale.fit.system import System
-from shadowscale.light import _band
-from shadowscale.light import _grid as _grid_module
+from shadowscale.light import _band, _grid, _smooth
 from shadowscale.light._kernels import mean_intensity_point
-from shadowscale.light._table import fill_table, table_columns, table_rows
-from shadowscale.light.laws import LAWS, Law
+from shadowscale.light.laws import LAWS
 from shadowscale.orbit._kernels import CONSTANTS_SIZE, orbit_constants
-from shadowscale.quantities import key
+from shadowscale.quantities import Key, key
 
 Floats = NDArray[np.float64]
 INCREDIBLE_ECCENTRICITY = 0.95
-
-
-@dataclass(eq=False)
-class Workspace:
-    """Arrays of one band that are used again at every evaluation."""
-
-    flux: Floats
-    active: NDArray[np.int64]
-    rows: Floats
-    expected: Floats
-    levels: Floats
+LEAST_BRIGHTNESS = 1e-12
 
 
 def possible(values: Mapping[str, float]) -> bool:
@@ -67,117 +56,133 @@ def light_time_of(values: Mapping[str, float]) -> float:
     return root * (values["K2"] - values["K1"]) / (2 * pi * C_KM_S * sine)
 
 
+@dataclass(frozen=True)
+class BandKeys:
+    """Keys of what one band has of its own."""
+
+    brightness: str
+    third: str
+    limb1: tuple[str, ...]
+    limb2: tuple[str, ...]
+    effects: tuple[str, ...]
+
+
+@cache
+def keys_of(band: str, coefficients: int) -> BandKeys:
+    """The keys of a band whose law has so many coefficients."""
+    limb1, limb2 = (
+        tuple(str(Key(f"limb_darkening{star}", band, n + 1)) for n in range(coefficients))
+        for star in (1, 2)
+    )
+    return BandKeys(
+        key("surface_brightness_ratio", band), key("third_light", band), limb1, limb2,
+        tuple(key(f"{effect}{star}", band) for effect in EFFECTS for star in (1, 2)),
+    )  # fmt: skip
+
+
 @dataclass(frozen=True, eq=False)
 class BandModel:
-    """One band's model at given values: its loss of light on a grid of phases, and the rest."""
+    """One band's model at given values: its loss of light and small effects over phase.
 
-    period: float
-    epoch: float
-    light_time: float
-    ratio: float
-    constants: Floats
-    brightness: float
-    share1: float
-    third: float
-    half_exposure: float  # [cycles]
-    grid: Floats
-    means: tuple[Floats, Floats]
-    effects_on: bool
-    amplitudes: Floats
-    sin2i: float
-    ecosw: float
-    columns: int
+    The arrays are those of `shadowscale.light._band`.
+    """
+
+    curve: Floats
+    pieces: Floats
+    cells: Floats
+    effects: Floats
 
     @classmethod
-    def at(cls, system: System, values: Mapping[str, float], band: str) -> BandModel:
+    def at(
+        cls, system: System, values: Mapping[str, float], band: str, *, derivatives: bool = False
+    ) -> BandModel:
         """Prepare a band of `system` with `values` in place of its own."""
         law = LAWS[system.law]
-        ratio = values["radius_ratio"]
-        tables, means = zip(
-            *(_limb(law, values, star=star, band=band, size=size)
-              for star, size in ((1, ratio), (2, 1.0 / ratio))), strict=True,
-        )  # fmt: skip
-        brightness = max(values[key("surface_brightness_ratio", band)], 1e-12)
-        share1 = 1.0 / (1.0 + brightness * ratio**2 * means[1][0] / means[0][0])
+        count = len(law.coefficients)
+        keys = keys_of(band, count)
+        limb1, mean1 = _limb(law.code, values, keys.limb1)
+        limb2, mean2 = _limb(law.code, values, keys.limb2)
+        total, ratio = values["radius_sum"], values["radius_ratio"]
+        brightness = max(values[keys.brightness], LEAST_BRIGHTNESS)
+        share1 = float(1.0 / (1.0 + brightness * ratio**2 * mean2[0] / mean1[0]))
         light_time = light_time_of(values) if system.light_time else 0.0
-        constants = constants_of(values)
         half_exposure = system.exposure / DAY / values["period"] / 2
-        grid = _grid(
-            constants, light_time, values, share1=share1, brightness=brightness, means=means,
-            tables=tables, averaged=half_exposure > 0.0,
+        constants = constants_of(values)
+        curve = np.empty(_band.curve_size(count))
+        curve[: _band.MEANS] = (
+            values["period"], values["epoch"], half_exposure, values[keys.third], ratio, brightness,
         )  # fmt: skip
-        amplitudes = np.array(
-            [values.get(key(f"{effect}{star}", band), 0.0) for effect in EFFECTS for star in (1, 2)]
+        curve[_band.MEANS : _band.MEANS + count] = mean1[1:] / mean1[0]
+        curve[_band.MEANS + count :] = mean2[1:] / mean2[0]
+        pieces = np.empty((_grid.PIECES_SIZE, 5))
+        number = _grid.lay_pieces(
+            constants, light_time, total, ratio, values["ecosw"], values["esinw"], pieces
         )
-        effects_on = bool(np.any(amplitudes != 0.0)) or "fitted" in system.effects.values()
-        shared = _band.SHARED + 2 * len(law.coefficients)
-        return cls(
-            values["period"], values["epoch"], light_time, ratio, constants, brightness, share1,
-            values[key("third_light", band)], half_exposure, grid, means, effects_on, amplitudes,
-            1.0 - cos2i_of(values), values["ecosw"],
-            shared + (_band.EFFECTS if effects_on else 0),
+        cells = np.empty((number, _grid.ORDER, _grid.grid_columns(count, derivatives=derivatives)))
+        _grid.fill_cells(
+            pieces, constants, light_time, total, ratio, share1, brightness, law.code, limb1, limb2,
+            mean1, mean2, half_exposure > 0.0, cells,
         )  # fmt: skip
-
-    def rows(self, time: Floats, work: Workspace) -> int:
-        """Light and derivatives at `time` into the workspace; returns how many rows have derivatives."""
-        found: int = _band.band_rows(
-            time, self.period, self.epoch, self.half_exposure, self.third, self.grid, self.constants,
-            self.light_time, self.share1, self.brightness, self.ratio, *self.means, self.effects_on,
-            self.amplitudes, self.sin2i, self.ecosw, work.flux, work.active, work.rows,
-        )  # fmt: skip
-        return found
+        effects = _effects(system, values, keys, constants, light_time, half_exposure, share1)
+        return cls(curve, pieces, cells, effects)
 
     def light(self, time: Floats) -> Floats:
-        """(n,) light at `time`, one outside eclipse where there are no small effects."""
+        """(n,) light at `time` in any order, one outside eclipse where there are no small effects."""
+        time = np.ascontiguousarray(time, dtype=np.float64)
+        if not _band.in_order(time):
+            return self._unsorted(time)
         flux = np.empty(time.size)
-        columns = _grid_columns(self.means)
-        _band.band_values(
-            np.ascontiguousarray(time, dtype=np.float64), self.period, self.epoch, self.half_exposure,
-            self.third, self.grid, columns, self.constants, self.light_time, self.share1,
-            self.effects_on, self.amplitudes, self.sin2i, self.ecosw, flux,
-        )  # fmt: skip
+        _band.band_values(time, self.curve, self.pieces, self.cells, self.effects, flux)
+        return flux
+
+    def derivatives(self, time: Floats) -> Floats:
+        """(n, columns) derivatives of the light to the local quantities at sorted times.
+
+        The model must have been prepared with derivatives.
+        """
+        rows = np.empty((time.size, self.columns))
+        _band.band_rows(time, self.curve, self.pieces, self.cells, self.effects, rows)
+        return rows
+
+    @property
+    def columns(self) -> int:
+        """How many local quantities have derivatives."""
+        shared = _band.SHARED + self.curve.size - _band.MEANS
+        return shared + (_smooth.EFFECTS if self.effects.size else 0)
+
+    def _unsorted(self, time: Floats) -> Floats:
+        flux = np.full(time.size, np.nan)
+        order = np.argsort(time, kind="stable")
+        order = order[np.isfinite(time[order])]
+        flux[order] = self.light(time[order])
         return flux
 
 
-def _limb(
-    law: Law, values: Mapping[str, float], *, star: int, band: str, size: float
-) -> tuple[Floats, Floats]:
-    """Table of the hidden fraction of one star, and its disc mean with gradient."""
-    coefficients = np.array(
-        [values[key(f"limb_darkening{star}", band, n + 1)] for n in range(len(law.coefficients))],
-        dtype=np.float64,
-    )
-    table = np.empty((table_rows(size), table_columns(coefficients.size)))
-    fill_table(size, law.code, coefficients, table)
+def _limb(code: int, values: Mapping[str, float], keys: tuple[str, ...]) -> tuple[Floats, Floats]:
+    """Coefficients of one star, and its disc mean with gradient."""
+    coefficients = np.array([values[name] for name in keys], dtype=np.float64)
     mean = np.empty(1 + coefficients.size)
-    mean_intensity_point(law.code, coefficients, mean)
-    return table, mean
+    mean_intensity_point(code, coefficients, mean)
+    return coefficients, mean
 
 
-def _grid_columns(means: tuple[Floats, Floats]) -> int:
-    return _grid_module.FIXED + 2 * (means[0].size - 1)
-
-
-def _grid(
+def _effects(
+    system: System,
+    values: Mapping[str, float],
+    keys: BandKeys,
     constants: Floats,
     light_time: float,
-    values: Mapping[str, float],
-    *,
+    half_exposure: float,
     share1: float,
-    brightness: float,
-    means: tuple[Floats, Floats],
-    tables: tuple[Floats, Floats],
-    averaged: bool,
 ) -> Floats:
-    """The loss of light over the phases of both eclipses."""
-    total, ratio = values["radius_sum"], values["radius_ratio"]
-    header = np.empty((_grid_module.HEADER, 6))
-    rows = _grid_module.lay_pieces(
-        constants, light_time, total, ratio, values["ecosw"], values["esinw"], header
-    )
-    grid = np.empty((rows, (3 if averaged else 2) * _grid_columns(means)))
-    grid[: header.shape[0], :6] = header
-    _grid_module.fill_grid(
-        constants, light_time, total, ratio, share1, brightness, *means, *tables, averaged, grid
-    )
-    return grid
+    """The small effects over phase; no cells where they are off."""
+    amplitudes = np.array([values.get(name, 0.0) for name in keys.effects])
+    if not amplitudes.any() and "fitted" not in system.effects.values():
+        return np.empty((0, _grid.ORDER, _smooth.EFFECT_COLUMNS))
+    count = _smooth.effect_cells(sqrt(values["ecosw"] ** 2 + values["esinw"] ** 2))
+    cells = np.empty((count, _grid.ORDER, _smooth.EFFECT_COLUMNS))
+    _smooth.fill_effects(
+        constants, light_time, half_exposure, share1, amplitudes, 1.0 - cos2i_of(values),
+        values["ecosw"], cells,
+    )  # fmt: skip
+    return cells

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 from itertools import pairwise
 
 import numpy as np
@@ -10,6 +11,7 @@ from numpy.typing import NDArray
 
 from shadowscale.data.photometry import Floats, Ints, Photometry
 from shadowscale.data.velocities import Velocities
+from shadowscale.light import _band
 
 
 @dataclass(frozen=True, eq=False)
@@ -33,6 +35,23 @@ class BandData:
     def segments(self) -> int:
         """How many levels are solved."""
         return self.starts.size - 1
+
+    @cached_property
+    def reference(self) -> Floats:
+        """(s,) a flux near the level of each segment: its median."""
+        return np.array(
+            [
+                np.median(self.flux[low:high]) if high > low else 1.0
+                for low, high in pairwise(self.starts)
+            ]
+        )
+
+    @cached_property
+    def blocks(self) -> Floats:
+        """Sums over blocks of rows, for chi-squared of what lies outside eclipse."""
+        blocks = np.empty((_band.SUMS, self.time.size // _band.BLOCK))
+        _band.block_sums(self.flux, self.weight, self.starts, self.trend, self.reference, blocks)
+        return blocks
 
 
 @dataclass(frozen=True, eq=False)

@@ -110,13 +110,39 @@ class Vector:
             jacobian[np.ix_(rows, rows)] = self.law.sampling_jacobian(x[rows])
         return jacobian
 
-    def local(self, names: Sequence[str | None], x: Floats) -> Floats:
-        """(len(names), m) derivative of local quantities to x; None is a quantity that is not free."""
-        jacobian = self.limb_jacobian(x)
-        rows = np.zeros((len(names), len(self.names)))
-        for number, name in enumerate(names):
-            if name is not None and name in self.index:
-                rows[number] = jacobian[self.index[name]]
+    def local(self, names: Sequence[str | None]) -> LocalMap:
+        """Which of some local quantities x moves, and how; None is a quantity that is no key."""
+        moved = [number for number, name in enumerate(names) if name in self.index]
+        at = [self.index[str(names[number])] for number in moved]
+        fixed = np.zeros((len(moved), len(self.names)))
+        fixed[np.arange(len(moved)), at] = 1.0
+        blocks = [
+            (np.ix_([at.index(place) for place in block], block), list(block))
+            for block in self.limb_blocks
+            if all(place in at for place in block)
+        ]
+        return LocalMap(np.array(moved, dtype=np.int64), fixed, tuple(blocks), self.law)
+
+
+@dataclass(frozen=True, eq=False)
+class LocalMap:
+    """From a band's local quantities to x.
+
+    wanted : (k,) numbers of the local quantities that x moves
+    fixed : (k, m) their derivatives to x, but for limb darkening
+    blocks : where in (k, m) each pair of limb darkening stands, and where in x
+    """
+
+    wanted: NDArray[np.int64]
+    fixed: Floats
+    blocks: tuple[tuple[tuple[NDArray[np.int64], ...], list[int]], ...]
+    law: Law
+
+    def jacobian(self, x: Floats) -> Floats:
+        """(k, m) derivatives of the local quantities to x."""
+        rows = self.fixed.copy()
+        for places, block in self.blocks:
+            rows[places] = self.law.sampling_jacobian(x[block])
         return rows
 
 

@@ -2,12 +2,19 @@
 
 from __future__ import annotations
 
+import numpy as np
+from numpy.typing import NDArray
+
 from shadowscale._compiled import compiled
 from shadowscale.orbit._kernels import velocity_point
 
+Floats = NDArray[np.float64]
+
 
 @compiled
-def velocity_rows(time, period, epoch, constants, out):
+def velocity_rows(
+    time: Floats, period: float, epoch: float, constants: Floats, out: Floats
+) -> None:
     """w of each time and w to period, epoch, ecosw, esinw, into out (n, 5)."""
     for i in range(time.size):
         cycles = (time[i] - epoch) / period
