@@ -36,7 +36,8 @@ def as_ecsv(sheet: Sheet) -> str:
 def _row(entry: Entry) -> str:
     estimate = entry.estimate
     numbers = (estimate.value, estimate.minus, estimate.plus)
-    words = (entry.quantity.unit, estimate.how, entry.meaning)
+    # an empty cell would be read as a missing one; astropy knows 1 as the unit of a pure number
+    words = (entry.quantity.unit or "1", estimate.how, entry.meaning)
     cells = [_quoted(entry.key), *map(_number, numbers), *map(_quoted, words)]
     return ",".join(cells)
 

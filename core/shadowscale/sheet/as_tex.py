@@ -25,7 +25,10 @@ _SPECIAL = re.compile(r"([&%$#_{}])")
 
 
 def as_tex(sheet: Sheet) -> str:
-    """The numbers as a `tabular`; needs `booktabs`. Held values are in italics."""
+    """The numbers as a `tabular` and one more for each band and source; needs `booktabs`.
+
+    Held values are in italics.
+    """
     made = sheet.provenance
     lines = [
         f"% {made.program}: {' '.join(made.command.split())}".rstrip(": "),
@@ -45,8 +48,10 @@ def as_tex(sheet: Sheet) -> str:
 
 
 def _section(title: str, entries: list[Entry]) -> list[str]:
+    """A table of its own, since a `tabular` cannot go over the end of a page."""
     heading = rf"\multicolumn{{4}}{{l}}{{{_escaped(title)}}} \\"
-    return [r"\midrule", heading, *map(_row, entries)]
+    end = [r"\bottomrule", r"\end{tabular}", "", r"\medskip", "", r"\begin{tabular}{llll}"]
+    return [*end, r"\toprule", heading, r"\midrule", *map(_row, entries)]
 
 
 def _row(entry: Entry) -> str:
