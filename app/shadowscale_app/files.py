@@ -84,7 +84,9 @@ class Files(QObject):
         from shadowscale.data import read_photometry
 
         path = paths[0]
-        reading = self._ask(self._window, path, "photometry")
+        reading = self._ask(
+            self._window, path, "photometry", may_add=self._desk.session.photometry is not None
+        )
         if reading is None:
             return
         session = self._desk.session

@@ -70,7 +70,7 @@ def test_rows_that_cannot_be_read_are_named(dialog: ReadingDialog) -> None:
 
 
 def test_opening_a_table_begins_a_session_as_it_was_read(bench: Bench, table: Path) -> None:
-    bench.files._ask = lambda *_: Reading({}, "R")
+    bench.files._ask = lambda *_, **__: Reading({}, "R")
 
     bench.open_paths([str(table)])
 
@@ -83,7 +83,7 @@ def test_opening_a_table_begins_a_session_as_it_was_read(bench: Bench, table: Pa
 
 
 def test_a_session_that_was_read_keeps_its_columns(bench: Bench, table: Path) -> None:
-    bench.files._ask = lambda *_: Reading({"mag": "check"}, None)
+    bench.files._ask = lambda *_, **__: Reading({"mag": "check"}, None)
 
     bench.open_paths([str(table)])
 
@@ -162,3 +162,24 @@ def test_a_trouble_that_comes_again_opens_one_window(
     assert len(told) == 5
     dialogs[0].close()
     told.clear()
+
+
+def test_a_second_table_can_be_added_to_the_session(
+    bench: Bench, table: Path, tmp_path: Path
+) -> None:
+    bench.files._ask = lambda *_, **__: Reading({}, "R")
+    bench.open_paths([str(table)])
+    other = tmp_path / "later.csv"
+    other.write_text(table.read_text(encoding="utf-8").replace("24600", "24601"), encoding="utf-8")
+    asked: list[bool] = []
+    bench.files._ask = lambda *_, may_add: (asked.append(may_add), Reading({}, "I", adds=True))[1]
+
+    bench.open_paths([str(other)])
+
+    session = bench.desk.session
+    assert asked == [True]
+    assert session.photometry.bands == ("R", "I")
+    assert len(session.photometry_sources) == 2
+    assert bench.desk.history.undo_label == "Add later.csv"
+    bench.desk.undo()
+    assert bench.desk.session.photometry.bands == ("R",)

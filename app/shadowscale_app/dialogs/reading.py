@@ -48,9 +48,11 @@ class Reading:
     adds: bool = False
 
 
-def ask_reading(parent: QWidget | None, path: Path, kind: str) -> Reading | None:
+def ask_reading(
+    parent: QWidget | None, path: Path, kind: str, *, may_add: bool = False
+) -> Reading | None:
     """Show the dialog; None if the person gave up."""
-    dialog = ReadingDialog(path, kind, parent)
+    dialog = ReadingDialog(path, kind, parent, may_add=may_add)
     return dialog.reading() if dialog.exec() == QDialog.DialogCode.Accepted else None
 
 

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from math import log10
-
 from PySide6.QtCore import QModelIndex, QPersistentModelIndex, QRectF, Qt
 from PySide6.QtGui import QColor, QPainter
 from PySide6.QtWidgets import QStyledItemDelegate, QStyleOptionViewItem
@@ -17,7 +15,7 @@ SIGNS = {WELL: "", FAIRLY: "!", BADLY: "!!"}
 
 
 class GradeBar(QStyledItemDelegate):
-    """Paints a bar from 0.01 % (short) to 100 % (full), coloured and signed by its grade."""
+    """Paints the row's bar, coloured and signed by its grade."""
 
     def paint(
         self,
@@ -30,7 +28,7 @@ class GradeBar(QStyledItemDelegate):
         now = theme.colours()
         painter.save()
         area = QRectF(option.rect).adjusted(5, 0, -3, 0)
-        if row.relative is not None and row.relative > 0:
+        if row.bar > 0:
             self._bar(painter, area, row, now)
         if row.strongest:
             strong = abs(row.correlation) >= STRONG
@@ -46,7 +44,6 @@ class GradeBar(QStyledItemDelegate):
         painter.restore()
 
     def _bar(self, painter: QPainter, area: QRectF, row: Row, now: theme.Colours) -> None:
-        share = min(1.0, max(0.06, (log10(row.relative or 1e-4) + 4.0) / 4.0))
         tint = QColor(
             {WELL: now.well, FAIRLY: now.fairly, BADLY: now.badly}.get(row.grade, now.quiet)
         )
@@ -55,7 +52,7 @@ class GradeBar(QStyledItemDelegate):
         painter.setBrush(QColor(now.grid))
         painter.drawRoundedRect(ground, 2, 2)
         painter.setBrush(tint)
-        painter.drawRoundedRect(QRectF(ground.left(), ground.top(), BAR * share, 5), 2, 2)
+        painter.drawRoundedRect(QRectF(ground.left(), ground.top(), BAR * row.bar, 5), 2, 2)
         painter.setPen(tint)
         painter.drawText(
             QRectF(ground.right() + 2, area.top(), 14, area.height()),

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
-from math import isfinite
+from math import isfinite, log10
 from types import MappingProxyType
 
 from shadowscale.fit.plan import Prior
@@ -26,7 +26,7 @@ _VELOCITY = ("K1", "K2", "gamma1", "gamma2", "offset1", "offset2")
 class Row:
     """One quantity of the table; texts are ready for the screen.
 
-    relative : the error over the value, or None where that says nothing
+    relative : the error over the value, or None where that says nothing; bar : 0 to 1, for a glance
     grade : `well`, `fairly`, `badly` or empty; `strongest` names the strongest correlation
     """
 
@@ -46,6 +46,7 @@ class Row:
     step: float
     bounds_text: str
     relative: float | None = None
+    bar: float = 0.0
     grade: str = NONE
     strongest: str = ""
     correlation: float = 0.0
@@ -167,6 +168,7 @@ def _row(name: str, estimate: Estimate, state: str) -> Row:
         step=quantity.step,
         bounds_text=bounds(quantity) if quantity.basic else "",
         relative=relative,
+        bar=_bar(relative),
         grade=_grade(relative),
     )
 
@@ -198,6 +200,13 @@ def _grade(relative: float | None) -> str:
     if relative <= WELL_BELOW:
         return WELL
     return BADLY if relative > BADLY_ABOVE else FAIRLY
+
+
+def _bar(relative: float | None) -> float:
+    """Length 0 to 1 of a bar from an error of 0.01 % (short) to the whole value (full)."""
+    if relative is None or relative <= 0:
+        return 0.0
+    return min(1.0, max(0.06, (log10(relative) + 4.0) / 4.0))
 
 
 def _strongest(solution: Solution) -> dict[str, tuple[float, str]]:
