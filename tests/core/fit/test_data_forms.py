@@ -178,3 +178,14 @@ def test_stars_swap_names_with_their_eclipses() -> None:
     assert shift == pytest.approx(0.5, abs=1e-3)
     assert found["radius_ratio"].value == pytest.approx(1 / 0.78, abs=0.01)
     assert found["surface_brightness_ratio[V]"].value == pytest.approx(1 / 1.6, abs=0.01)
+
+
+def test_velocities_name_the_stars() -> None:
+    """Where velocities say which star is behind, they name star 1, be its eclipse the shallower one."""
+    truth = invented(bands={"V": 1.6}, ecosw=0.1, esinw=0.05)
+    photometry = observed(truth, middles=(0.0, secondary_phase(truth)))
+    found = solved(truth, photometry=photometry, velocities=observed_velocities(truth))
+    notes = " ".join(found.solution.notes)
+
+    _assert_recovered(found, (*GEOMETRY, "ecosw", "esinw", "K1", "K2"))
+    assert "star 1 of the velocities is eclipsed at the shallower minimum" in notes
