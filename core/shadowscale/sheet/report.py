@@ -8,7 +8,7 @@ from functools import cached_property
 from math import isfinite, sqrt
 
 from shadowscale.fit.plan import Plan
-from shadowscale.fit.solution import Estimate
+from shadowscale.fit.solution import Decision, Estimate
 from shadowscale.judge.finding import FAIL, PASS, WARN, Finding
 from shadowscale.light.laws import LAWS
 from shadowscale.quantities import QUANTITIES, decimals_for
@@ -362,7 +362,8 @@ def _decisions(report: Report) -> Iterator[Section]:
             Column("Why", 0.62, small=True),
         )
         rows = tuple(
-            (plain(each.what), plain(each.chosen), plain(each.words)) for each in sheet.decisions
+            (plain(each.what), plain(each.chosen), plain(each.words) + _predicted(each))
+            for each in sheet.decisions
         )
         blocks.append(Table(columns, (("", rows),)))
     blocks += _alternatives(sheet)
@@ -375,6 +376,18 @@ def _decisions(report: Report) -> Iterator[Section]:
         blocks.append(Table((Column("Notes", 1.0, small=True),), (("", rows),)))
     if blocks:
         yield Section("decisions", "Decisions and alternatives", tuple(blocks))
+
+
+def _predicted(decision: Decision) -> str:
+    """The predicted amplitudes of small effects, to be read beside fitted ones."""
+    if "fitted" not in decision.chosen:
+        return ""
+    shown = [
+        f"{key} {number(value, 3)}"
+        for key, value in decision.numbers.items()
+        if key.split("[")[0] in QUANTITIES
+    ]
+    return f"; predicted: {plain(listed(shown))}" if shown else ""
 
 
 def _alternatives(sheet: Sheet) -> Iterator[Block]:
