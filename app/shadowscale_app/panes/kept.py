@@ -40,6 +40,7 @@ class KeptPane(Pane):
         self.table.setAlternatingRowColors(True)
         self.table.setShowGrid(False)
         self.table.verticalHeader().setDefaultSectionSize(22)
+        self.table.horizontalHeader().setStretchLastSection(True)
         self.keep = QPushButton("Keep present")
         self.back = QPushButton("Go back to chosen")
         self.drop = QPushButton("Forget chosen")

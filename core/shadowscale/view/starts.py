@@ -12,6 +12,7 @@ from shadowscale.fit.plan import Plan
 from shadowscale.fit.solution import Alternative, Solution
 from shadowscale.progress import SILENT, Progress
 from shadowscale.session.session import Session
+from shadowscale.view.wishes import for_refit
 
 STARTS = 12
 SPREAD = {
@@ -64,9 +65,10 @@ def solve_from_many_starts(session: Session, *, progress: Progress = SILENT) -> 
 def _starts(session: Session, random: np.random.Generator) -> list[Plan]:
     system = session.system
     assert system is not None
+    plan = for_refit(session).plan  # the ephemeris stands; only the geometry is started anew
     plans = []
     for number in range(STARTS):
-        start = dict(session.plan.start)
+        start = dict(plan.start)
         turned = -1.0 if number % 2 else 1.0  # every other one begins with the radii exchanged
         ratio = system.value("radius_ratio") ** turned
         start["radius_ratio"] = ratio * float(
@@ -76,7 +78,7 @@ def _starts(session: Session, random: np.random.Generator) -> list[Plan]:
         start["radius_sum"] = total * float(np.exp(SPREAD["radius_sum"] * random.standard_normal()))
         tilt = abs(float(random.standard_normal())) * SPREAD["inclination"] * 90.0
         start["inclination"] = min(90.0, max(60.0, system.value("inclination") + 1.0 - tilt))
-        plans.append(replace(session.plan, start=start))
+        plans.append(replace(plan, start=start))
     return plans
 
 

@@ -1,0 +1,82 @@
+"""Solving from many starts: what is kept of them."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import Any
+
+import pytest
+
+from made_up import made_up_session
+from shadowscale.errors import NoSolutionError, NotConvergedError, Stopped
+from shadowscale.fit import solve as fit_solve
+from shadowscale.fit.solution import Solution
+from shadowscale.view.starts import STARTS, solve_from_many_starts
+
+
+class Answers:
+    """Stands in for the solver: every other start finds the radii exchanged, one finds nothing."""
+
+    def __init__(self) -> None:
+        self.plans: list[Any] = []
+
+    def __call__(self, photometry: object, velocities: object, plan: Any) -> Solution:
+        self.plans.append(plan)
+        if len(self.plans) == 3:
+            raise NotConvergedError("the fit did not settle")
+        solution = made_up_session().solution
+        if len(self.plans) % 2:
+            return solution
+        estimates = dict(solution.estimates)
+        estimates["radius_ratio"] = replace(estimates["radius_ratio"], value=1.28)
+        system = solution.system.with_values({"radius_ratio": 1.28})
+        fit = replace(solution.fit, chi2=solution.fit.chi2 + 4.0)
+        return replace(solution, estimates=estimates, system=system, fit=fit)
+
+
+@pytest.fixture
+def answers(monkeypatch: pytest.MonkeyPatch) -> Answers:
+    found = Answers()
+    monkeypatch.setattr(fit_solve, "solve", found)
+    return found
+
+
+def test_the_best_is_kept_and_the_others_are_alternatives(answers: Answers) -> None:
+    session = made_up_session()
+
+    found = solve_from_many_starts(session)
+
+    assert len(answers.plans) == STARTS
+    assert session.solution.fit.chi2 == found.solution.fit.chi2
+    new = [each for each in found.solution.alternatives if each.words == "found from another start"]
+    assert [(pytest.approx(each.delta_chi2), each.values["radius_ratio"]) for each in new] == [
+        (4.0, 1.28)
+    ]
+
+
+def test_starts_differ_and_repeat_with_their_seed(answers: Answers) -> None:
+    solve_from_many_starts(made_up_session())
+    solve_from_many_starts(made_up_session())
+
+    first, second = answers.plans[:STARTS], answers.plans[STARTS:]
+    assert [plan.start for plan in first] == [plan.start for plan in second]
+    ratios = [plan.start["radius_ratio"] for plan in first]
+    assert min(ratios) < 1 < max(ratios)
+    assert len(set(ratios)) == STARTS
+    assert all(60 <= plan.start["inclination"] <= 90 for plan in first)
+
+
+def test_it_stops_when_asked(answers: Answers) -> None:
+    class Impatient:
+        def report(self, fraction: float, words: str) -> None:
+            if fraction > 0.2:
+                raise Stopped
+
+    with pytest.raises(Stopped, match=r"^$"):
+        solve_from_many_starts(made_up_session(), progress=Impatient())
+    assert len(answers.plans) < STARTS
+
+
+def test_there_must_be_a_solution_to_start_from() -> None:
+    with pytest.raises(NoSolutionError, match=r"there is no solution to start from.*solve first"):
+        solve_from_many_starts(made_up_session(solved=False))
