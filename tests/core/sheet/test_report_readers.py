@@ -1,0 +1,51 @@
+"""The sheet's table through TeX and astropy, as a reader of papers would use them."""
+
+import shutil
+import subprocess
+
+import pytest
+
+from made_up import made_up_session
+from shadowscale.jobs.results import sheet_of
+from shadowscale.quantities import QUANTITIES
+from shadowscale.sheet import as_ecsv, as_tex
+
+ARTICLE = r"\documentclass{article}\usepackage{booktabs}\begin{document}\input{sheet}\end{document}"
+
+
+@pytest.fixture(scope="module")
+def sheet():
+    return sheet_of(made_up_session(("V", "I_%&#")))
+
+
+def test_tex_sets_the_table_in_a_plain_article(sheet, tmp_path):
+    engine = shutil.which("pdflatex")
+    if engine is None:
+        pytest.skip("no pdflatex here; apt-get install texlive-latex-recommended")
+    (tmp_path / "sheet.tex").write_text(as_tex(sheet))
+    (tmp_path / "paper.tex").write_text(ARTICLE)
+    done = subprocess.run(
+        [engine, "-interaction=nonstopmode", "-halt-on-error", "paper.tex"],
+        cwd=tmp_path,
+        capture_output=True,
+        text=True,
+        check=False,
+    )
+    assert done.returncode == 0, done.stdout[-2000:]
+    assert "Overfull" not in done.stdout
+    assert (tmp_path / "paper.pdf").stat().st_size > 10_000
+
+
+def test_astropy_gives_every_number_its_unit(sheet):
+    from astropy import units
+    from astropy.table import Table
+
+    table = Table.read(as_ecsv(sheet), format="ascii.ecsv")
+    given = {str(row["name"]): row["value"] * units.Unit(str(row["unit"])) for row in table}
+    assert given["M1"].to_value("kg") == pytest.approx(
+        sheet.quantities["M1"].estimate.value * 1.98841e30, rel=1e-5
+    )  # nominal solar mass, IAU 2015 B3 with CODATA 2018 G
+    assert given["radius_ratio"].unit == units.dimensionless_unscaled
+    for name, quantity in given.items():
+        if name in QUANTITIES and QUANTITIES[name].unit:
+            assert quantity.unit == units.Unit(QUANTITIES[name].unit)
