@@ -12,6 +12,8 @@ from math import isfinite
 
 from shadowscale.quantities import BAND, QUANTITIES, SOURCE, SYSTEM, Quantity
 
+__all__ = ["PAGES", "Page", "page", "pages", "quantities_page"]
+
 # In reading order.
 PAGES = ("first_sheet", "data", "wishes", "reading", "files", "compare", "quantities")
 _SCOPES = (

@@ -7,6 +7,7 @@ colour vision; shape and filling say the same once more.
 from __future__ import annotations
 
 from collections.abc import Mapping
+from contextlib import AbstractContextManager
 from dataclasses import dataclass
 from types import MappingProxyType
 from typing import TYPE_CHECKING, Any
@@ -57,6 +58,14 @@ STYLE: Mapping[str, Any] = MappingProxyType(
         "path.simplify": True,
     }
 )
+
+
+def drawing_style() -> AbstractContextManager[None]:
+    """The look of all figures while it lasts; matplotlib's own settings come back after."""
+    from matplotlib import rc_context
+
+    settings: Any = dict(STYLE)
+    return rc_context(settings)
 
 
 @dataclass(frozen=True)

@@ -6,22 +6,18 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from io import BytesIO
 from types import MappingProxyType
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
+from shadowscale.sheet.figure_correlations import correlations_size, draw_correlations
 from shadowscale.sheet.figure_data import Shown
-from shadowscale.sheet.figure_frame import STYLE, Place
+from shadowscale.sheet.figure_frame import Place, drawing_style
 from shadowscale.sheet.figure_light import (
     draw_eclipses,
     draw_light_curve,
     eclipses_size,
     light_curve_size,
 )
-from shadowscale.sheet.figure_system import (
-    correlations_size,
-    draw_correlations,
-    draw_system,
-    system_size,
-)
+from shadowscale.sheet.figure_system import draw_system, system_size
 from shadowscale.sheet.figure_velocity import (
     draw_minima,
     draw_velocities,
@@ -87,7 +83,7 @@ def saved(figure: Figure, kind: str) -> bytes:
         "svg": {"Date": None, "Creator": "shadowscale"},
         "png": {"Software": "shadowscale"},
     }
-    extra = {"pil_kwargs": {"compress_level": 5}} if kind == "png" else {}
+    extra: Any = {"pil_kwargs": {"compress_level": 5}} if kind == "png" else {}
     figure.savefig(stream, format=kind, metadata=metadata[kind], **extra)
     content = stream.getvalue()
     if kind == "svg":  # pictures of points are to be shrunk smoothly, not by dropping pixels
@@ -97,10 +93,8 @@ def saved(figure: Figure, kind: str) -> bytes:
 
 def all_figures(shown: Shown) -> dict[str, dict[str, bytes]]:
     """Every figure of a solution in every format: name, format, bytes."""
-    from matplotlib import rc_context
-
     found: dict[str, dict[str, bytes]] = {}
-    with rc_context(dict(STYLE)):
+    with drawing_style():
         for name in possible_figures(shown):
             figure = make_figure(name, shown)
             found[name] = {kind: saved(figure, kind) for kind in FORMATS}

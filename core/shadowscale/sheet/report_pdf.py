@@ -24,7 +24,7 @@ from shadowscale.sheet.document import (
     Verdicts,
 )
 from shadowscale.sheet.figure_data import Shown
-from shadowscale.sheet.figure_frame import FAINT, INK, STYLE, Place
+from shadowscale.sheet.figure_frame import FAINT, INK, Place, drawing_style
 from shadowscale.sheet.figures import FIGURES
 from shadowscale.sheet.report_text import Face, Line, Piece, add_pieces, lines_of, text_width
 from shadowscale.sheet.symbols import flat
@@ -101,10 +101,9 @@ class _Setter:
 
 def as_pdf(document: Document, shown: Shown) -> bytes:
     """The report as a PDF file; the same solution gives the same bytes."""
-    from matplotlib import rc_context
     from matplotlib.backends.backend_pdf import PdfPages
 
-    with rc_context(dict(STYLE)):
+    with drawing_style():
         setter = _Setter(shown)
         _head(setter, document)
         for section in document.sections:

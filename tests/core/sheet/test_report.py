@@ -17,9 +17,10 @@ from shadowscale.sheet.figure_data import Shown
 from shadowscale.sheet.figures import FIGURES, all_figures
 from shadowscale.sheet.methods import methods_of
 from shadowscale.sheet.references import REFERENCES, bibliography
-from shadowscale.sheet.report import GROUPS, Report, make_document
+from shadowscale.sheet.report import Report, make_document
 from shadowscale.sheet.report_html import as_html
 from shadowscale.sheet.report_pdf import as_pdf
+from shadowscale.sheet.report_tables import GROUPS
 from shadowscale.sheet.report_words import number, value_and_error
 from shadowscale.sheet.symbols import flat, marked, runs, symbol_runs
 

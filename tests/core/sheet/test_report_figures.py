@@ -12,7 +12,7 @@ from made_up import EPOCH, INCLINATION, PERIOD, R1, R2, made_up_photometry, made
 from made_up import made_up_solution as solution_of
 from pages import pdf_size, png_size
 from shadowscale.sheet.figure_data import Shown, around, eclipse_window
-from shadowscale.sheet.figure_frame import STYLE
+from shadowscale.sheet.figure_frame import drawing_style
 from shadowscale.sheet.figure_points import points_picture
 from shadowscale.sheet.figures import DOTS_AN_INCH, FIGURES, FORMATS, make_figure, saved
 from shadowscale.sheet.model_curve import model_curve
@@ -20,9 +20,7 @@ from shadowscale.sheet.model_curve import model_curve
 
 @pytest.fixture(autouse=True)
 def style():
-    from matplotlib import rc_context
-
-    with rc_context(dict(STYLE)):
+    with drawing_style():
         yield
 
 
