@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
-from functools import cached_property
+from functools import cached_property, lru_cache
 from math import atan2, cos, degrees, hypot, nan, radians
 
 import numpy as np
@@ -101,11 +101,9 @@ class Stars:
     @cached_property
     def contacts(self) -> ContactPhases:
         """Exact contacts of both eclipses."""
-        return contact_phases(
-            self.get("radius_sum"), self.get("radius_ratio"), self.get("inclination"),
-            self.get("ecosw"), self.get("esinw"),
-            light_time=light_time_of(self.system.values) if self.system.light_time else 0.0,
-        )  # fmt: skip
+        light_time = light_time_of(self.system.values) if self.system.light_time else 0.0
+        names = ("radius_sum", "radius_ratio", "inclination", "ecosw", "esinw")
+        return _contacts(*(self.get(name) for name in names), light_time)
 
     @cached_property
     def depths(self) -> tuple[float, float]:
@@ -116,6 +114,19 @@ class Stars:
         light = model.light(epoch + np.where(np.isfinite(middles), middles, 0.25) * period)
         lost = np.where(np.isfinite(middles), 1.0 - light, nan)
         return float(lost[0]), float(lost[1])
+
+
+@lru_cache(maxsize=256)
+def _contacts(
+    radius_sum: float,
+    ratio: float,
+    inclination: float,
+    ecosw: float,
+    esinw: float,
+    light_time: float,
+) -> ContactPhases:
+    """Contacts, kept: most quantities of a system do not move them."""
+    return contact_phases(radius_sum, ratio, inclination, ecosw, esinw, light_time=light_time)
 
 
 def _impact(stars: Stars, sign: float) -> float:

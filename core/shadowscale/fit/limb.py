@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from math import exp, log, log1p
 
@@ -19,7 +19,7 @@ from shadowscale.light.laws import LAWS
 from shadowscale.quantities import key
 
 UNKNOWN_TEFF = 6500.0  # [K] where none is given: middle of the range of well-studied pairs
-UNKNOWN_LOGG = 4.2
+UNKNOWN_LOGGS = (4.2, 4.2)
 UNKNOWN_WAVELENGTH = 600.0  # [nm]
 COOLEST, HOTTEST = 2500.0, 50000.0  # [K] where the grey atmosphere is asked
 # Grey atmospheres miss line blanketing: against published tables and the measured Sun they are off by
@@ -171,3 +171,26 @@ def teffs(
     if not plan.teff1:
         words = f"star 1 taken as {UNKNOWN_TEFF:.0f} K for want of a value, " + words
     return first, teff_from_brightness(first, brightness[band], at[band]), words
+
+
+def limb_choices(
+    plan: Plan,
+    bands: tuple[str, ...],
+    values: Mapping[str, float],
+    *,
+    logg: Sequence[float] = UNKNOWN_LOGGS,
+    table: LimbTable | None = None,
+) -> tuple[dict[tuple[int, str], LimbChoice], str]:
+    """Choices for both stars in every band at the brightness ratios of `values`, and their story."""
+    at = wavelengths(plan, bands)
+    brightness = {band: values[key("surface_brightness_ratio", band)] for band in bands}
+    teff1, teff2, words = teffs(plan, brightness, at)
+    choices = {
+        (star, band): limb_choice(
+            plan, star, band, wavelength=at[band], teff=(teff1, teff2)[star - 1],
+            logg=logg[star - 1], table=table,
+        )
+        for star in (1, 2) for band in bands
+    }  # fmt: skip
+    told = sorted({f"star {star}, {band}: {each.words}" for (star, band), each in choices.items()})
+    return choices, f"{plan.law} law; {'; '.join(told)}; temperatures: {words}"

@@ -25,6 +25,8 @@ PLATEAU = 4.0  # in chi-squared: two sigma
 FIRST = 0.7  # of the linear sigma: where the profile is tried first
 LARGEST_FIRST = 0.3  # and at most this share of k itself
 MOST_TRIES = 9
+PROBE, MOST_PROBES = 1.5, 8  # factors of k that a plateau is followed by
+TOLD = 2.0  # rise of chi-squared from which on the data tell something
 NARROW = 0.4  # in the root of the rise: near enough to interpolate
 STRAIGHT = 0.15  # relative departure of both limits from the linear sigma that is left alone
 
@@ -121,7 +123,26 @@ def _limit(
         if outer is not None and outer.root - inner.root < NARROW:
             break
         step = _next_step(inner, outer)
-    return (inner if outer is None else _between(inner, outer)), lowest
+    if outer is None:
+        return inner, lowest
+    return _beyond(_between(inner, outer), best, fit, sign=np.sign(direction[at]), at=at), lowest
+
+
+def _beyond(
+    place: _Place, best: Fitted, fit: Callable[[System], Fitted], *, sign: float, at: int
+) -> _Place:
+    """Farther out where chi-squared does not go on rising: a plateau below two tells nothing."""
+    lower, upper = (float(bound[at]) for bound in best.objective.vector.bounds)
+    for _ in range(MOST_PROBES):
+        wanted = float(place.x[at]) * PROBE**sign
+        if not lower < wanted < upper:
+            break
+        fitted = fit(_held(best, place.x, at=at, wanted=wanted))
+        rise = fitted.chi2 - best.chi2
+        if rise > TOLD:
+            break
+        place = _Place(np.insert(fitted.minimum.x, at, wanted), np.inf, np.sqrt(max(rise, 0.0)))
+    return place
 
 
 def _next_step(inner: _Place, outer: _Place | None) -> float:

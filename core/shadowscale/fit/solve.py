@@ -17,7 +17,7 @@ from shadowscale.fit.check import check_plan, check_velocities_follow, check_wis
 from shadowscale.fit.decide import decision, needed
 from shadowscale.fit.effects import predicted_amplitudes
 from shadowscale.fit.least_squares import STALLED
-from shadowscale.fit.limb import LimbChoice, limb_choice, teffs, wavelengths
+from shadowscale.fit.limb import UNKNOWN_LOGGS, LimbChoice, limb_choices, teffs, wavelengths
 from shadowscale.fit.objective import Constraint
 from shadowscale.fit.plan import Plan
 from shadowscale.fit.priors import prior_constraints
@@ -30,7 +30,7 @@ from shadowscale.fit.start import Ground, find_ground
 from shadowscale.fit.system import System
 from shadowscale.light.laws import LAWS
 from shadowscale.progress import SILENT, Progress
-from shadowscale.quantities import key, parse_key
+from shadowscale.quantities import key
 
 FIRST_STEPS = 10  # of each start, before the poor ones are dropped
 KEPT_STARTS = 3
@@ -189,31 +189,13 @@ def _system(work: _Work, start: Mapping[str, float]) -> System:
 
 
 def _limb(
-    work: _Work, values: Mapping[str, float], logg: Sequence[float] = (4.2, 4.2)
+    work: _Work, values: Mapping[str, float], logg: Sequence[float] = UNKNOWN_LOGGS
 ) -> dict[tuple[int, str], LimbChoice]:
-    """Choices for both stars in every band."""
+    """Choices for both stars in every band, told among the decisions."""
     bands = work.problem.photometry.bands
-    at = wavelengths(work.plan, bands)
-    brightness = {band: values[key("surface_brightness_ratio", band)] for band in bands}
-    teff1, teff2, words = teffs(work.plan, brightness, at)
-    choices = {
-        (star, band): limb_choice(
-            work.plan, star, band, wavelength=at[band], teff=(teff1, teff2)[star - 1],
-            logg=logg[star - 1], table=work.table,
-        )
-        for star in (1, 2) for band in bands
-    }  # fmt: skip
-    told = sorted(
-        {f"star {star}, {band}: {choice.words}" for (star, band), choice in choices.items()}
-    )
+    choices, words = limb_choices(work.plan, bands, values, logg=logg, table=work.table)
     work.decisions = [each for each in work.decisions if each.what != "limb darkening"]
-    work.decisions.append(
-        Decision(
-            "limb darkening",
-            work.plan.law,
-            f"{work.plan.law} law; {'; '.join(told)}; temperatures: {words}",
-        )
-    )
+    work.decisions.append(Decision("limb darkening", work.plan.law, words))
     return choices
 
 
@@ -419,24 +401,3 @@ def _moved_limb(system: System, limb: Mapping[tuple[int, str], LimbChoice]) -> S
     return system.with_values(
         {name: value for name, value in values.items() if name not in system.free}
     )
-
-
-def refit(
-    photometry: Photometry,
-    velocities: Velocities | None,
-    plan: Plan,
-    *,
-    system: System,
-    weighting: Weighting | None = None,
-) -> Fitted:
-    """Fit `system` from where it stands, its decisions kept: what follows a dragged marker."""
-    problem = Problem(photometry, velocities)
-    return fit_system(
-        problem,
-        system,
-        weighting=weighting or problem.weighting(),
-        constraints=prior_constraints(plan, system),
-    )
-
-
-__all__ = ["parse_key", "refit", "solve"]
