@@ -2,7 +2,8 @@
 
 A trapezoid finds the place; then discs of several ratios are tried, since a plain trapezoid cuts the
 rounded ends of an eclipse and gives too short a duration. The covariance holds the spread between the
-ratios that the data do not tell apart.
+ratios that the data do not tell apart, and what an unknown limb darkening does: a star with u = 0.8 (0.2)
+looks 1.7 % shorter (longer) eclipsed, so the duration is never surer than 0.9 %.
 """
 
 from __future__ import annotations
@@ -38,6 +39,10 @@ from shadowscale.timing.shape_fit import (
 
 GRID_CELLS = 40
 CELLS = 120  # cells in one duration, when points are averaged
+# Duration, ingress, egress and depth change by these parts for each unit of the linear coefficient that the
+# profile is off; measured on simulated spheres with coefficients 0.2 and 0.8, ratios 0.1 to 3.
+BY_DARKENING = (-0.057, -0.11, -0.11, 0.0)
+DARKENING_SIGMA = 0.15  # what is known of the coefficient without spectra
 _FIRST = 2  # ratios fitted from the grid before the best one's neighbours
 _MOST_RATIOS = 8
 _TOLD_APART = 1.0  # chi2
@@ -233,6 +238,8 @@ def _timing(chosen: ShapeFit, tried: list[ShapeFit], *, flat: bool, first: int) 
     values, rows = _contact_values(chosen, flat=flat, first=first)
     covariance = rows @ chosen.covariance @ rows.T * max(chosen.scale, 1.0)
     covariance = covariance + _spread(chosen, tried, flat=flat, first=first)
+    if not isinstance(chosen.profile, Trapezoid):
+        covariance = covariance + _of_darkening(values)
     return EclipseTiming(
         middle=float(values[0]),
         duration=float(values[1]),
@@ -270,6 +277,12 @@ def _ingress(fit: ShapeFit, place: int) -> tuple[float, float]:
         return part, slope
     ends = [fit.profile.ingress(float(end))[0] for end in (low, high)]
     return part, (ends[1] - ends[0]) / float(high - low)
+
+
+def _of_darkening(values: Floats) -> Floats:
+    """Covariance (5, 5) from not knowing the limb darkening that the profile takes as 0.5."""
+    change = DARKENING_SIGMA * np.array([0.0, *BY_DARKENING]) * values
+    return np.outer(change, change)
 
 
 def _spread(chosen: ShapeFit, tried: list[ShapeFit], *, flat: bool, first: int) -> Floats:

@@ -18,6 +18,9 @@ FEWEST_PAIRS = 3
 REACH = (
     0.01  # axes on either side of the best (two half steps at least), in the length of the minimum
 )
+UNLIKE = (
+    1.2  # squared differences of the branches over twice their variance: noise has 1, a slope 2
+)
 UNEVEN = 0.02  # relative scatter of the spacing above which the light is interpolated
 
 
@@ -53,7 +56,10 @@ def folded_minimum(time: Floats, flux: Floats, noise: float) -> FoldedMinimum | 
     axes = np.arange(2 * FEWEST_PAIRS, 2 * (last - FEWEST_PAIRS) + 1)
     if axes.size < 3:
         return None
-    best = int(axes[np.argmin([_mean_square(light, int(axis)) for axis in axes])])
+    unlike = [_mean_square(light, int(axis)) for axis in axes]
+    best = int(axes[np.argmin(unlike)])
+    if min(unlike) > UNLIKE:
+        return None
     reach = max(2, round(REACH * 2 * last))
     used = np.arange(max(axes[0], best - reach), min(axes[-1], best + reach) + 1)
     if used.size < 3:

@@ -88,11 +88,20 @@ def robust_scatter(values: Floats) -> float:
 
 
 def neighbour_scatter(time: Floats, flux: Floats) -> float | None:
-    """Noise from the differences of neighbours in time; None where too few points are neighbours."""
-    near = np.diff(time) < NEIGHBOUR_GAP
+    """Noise from points against the line through their neighbours; None where too few have near ones.
+
+    Differences of two neighbours would take the branches of eclipses for noise.
+    """
+    if time.size < 3:
+        return None
+    span = time[2:] - time[:-2]
+    near = (span < 2 * NEIGHBOUR_GAP) & (span > 0)
     if near.sum() < max(20, 0.2 * time.size):
         return None
-    return robust_scatter(np.diff(flux)[near]) / np.sqrt(2)
+    part = (time[1:-1] - time[:-2])[near] / span[near]
+    line = flux[:-2][near] * (1 - part) + flux[2:][near] * part
+    away = (flux[1:-1][near] - line) / np.sqrt(1 + part**2 + (1 - part) ** 2)
+    return robust_scatter(away)
 
 
 def isolated(time: Floats, value: Floats, sigma: Floats) -> NDArray[np.bool_]:

@@ -17,6 +17,7 @@ from shadowscale.timing.window_fit import SeenEclipse
 FEWEST = 5  # points in the eclipse
 FEWEST_ON_BRANCH = 2
 STEPS = 12
+SHOWS = 9.0  # gain in chi2 of a slope that is not chance
 FARTHEST = 0.5  # shift that is still this eclipse, in durations
 
 
@@ -150,11 +151,39 @@ def _why_not(single: _Single, inside: NDArray[np.bool_]) -> str:
 def _by_template(
     together: SeenTogether, seen: SeenEclipse, single: _Single, band: int
 ) -> tuple[float, float] | None:
-    """Time and error from the mean eclipse moved in time; None if it runs away."""
+    """Time and error from the mean eclipse moved in time; None if it runs away.
+
+    A slope of the light is part of the shift's error, so it is fitted only where it shows.
+    """
+    found = _moved(together, seen, single, band, tilted=False)
+    if _both_sides(single):
+        tilted = _moved(together, seen, single, band, tilted=True)
+        if tilted is not None and (found is None or tilted.chi2 < found.chi2 - tilted.least_gain):
+            found = tilted
+    if found is None:
+        return None
+    return (
+        single.expected + found.shift * together.period,
+        found.error * together.period,
+    )
+
+
+@dataclass(frozen=True)
+class _Moved:
+    """A template moved by `shift` [cycles]; the error is scaled to the scatter."""
+
+    shift: float
+    error: float
+    chi2: float
+    least_gain: float  # in chi2, of a slope that shows
+
+
+def _moved(
+    together: SeenTogether, seen: SeenEclipse, single: _Single, band: int, *, tilted: bool
+) -> _Moved | None:
+    """Least squares for shift and level, and slope if asked for."""
     shift, level = 0.0, np.array([1.0, 0.0])
-    tilted = _both_sides(single)
-    normal = np.eye(1)
-    residual = np.zeros(1)
+    rows, residual = np.zeros((1, 1)), np.zeros(1)
     for _ in range(STEPS):
         shape, slope = _template(together, seen, single, band, shift)
         line = level[0] + level[1] * single.away
@@ -163,18 +192,17 @@ def _by_template(
             columns.append(single.away * shape)
         rows = np.stack(columns, axis=1) / single.sigma[:, None]
         residual = (single.flux - shape * line) / single.sigma
-        normal = rows.T @ rows
-        step = np.linalg.pinv(normal, hermitian=True) @ (rows.T @ residual)
+        step = np.linalg.lstsq(rows, residual, rcond=None)[0]
         shift += float(step[0])
         level[: step.size - 1] += step[1:]
         if abs(shift) > FARTHEST * 2 * single.half:
             return None
         if abs(step[0]) < 1e-7 * single.half:
             break
-    freedom = max(single.away.size - normal.shape[0], 1)
-    scale = max(1.0, float(residual @ residual) / freedom)
-    error = np.sqrt(np.linalg.pinv(normal, hermitian=True)[0, 0] * scale)
-    return single.expected + shift * together.period, float(error * together.period)
+    chi2 = float(residual @ residual)
+    scale = max(1.0, chi2 / max(single.away.size - rows.shape[1], 1))
+    variance = np.linalg.pinv(rows.T @ rows, hermitian=True)[0, 0]
+    return _Moved(shift, float(np.sqrt(variance * scale)), chi2, SHOWS * scale)
 
 
 def _both_sides(single: _Single) -> bool:

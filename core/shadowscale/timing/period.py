@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 
 from shadowscale.data.photometry import Photometry
@@ -12,7 +14,8 @@ from shadowscale.timing.box_search import SHORTEST, Spectrum, frequencies, spect
 from shadowscale.timing.candidates import Candidate, candidates
 from shadowscale.timing.detached import check_detached, check_radii
 from shadowscale.timing.light_points import LightPoints, light_points
-from shadowscale.timing.red_noise import check_red_noise
+from shadowscale.timing.red_noise import check_red_noise, check_within_nights
+from shadowscale.timing.refine import polished
 from shadowscale.timing.results import PeriodCandidate, PeriodSearch
 from shadowscale.timing.search_data import SearchData, search_data, without_slow_variation
 from shadowscale.timing.settle import Settled, settled
@@ -69,9 +72,11 @@ def search_period(
     progress.report(0.9, "measuring the eclipses")
     results = _weighed(points, data, found, limits)
     best = settled(points, results)
+    best = replace(best, refined=polished(points, best.refined))
     durations = tuple(one.fit.timing.duration for one in best.refined.eclipses)
     check_radii(best.refined.period, durations)
     check_red_noise(data, best.refined)
+    check_within_nights(data, best.refined)
     progress.report(1.0, "period found")
     return _result(best, results)
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from shadowscale.data.photometry import Floats
+from shadowscale.data.photometry import Floats, Ints
 from shadowscale.errors import NoSolutionError
 from shadowscale.timing.light_points import robust_scatter
 from shadowscale.timing.refine import Refined
@@ -13,6 +13,10 @@ from shadowscale.timing.weigh import depth_and_residuals
 
 LEAST_SIGNAL = 6.0
 FEWEST_CELLS = 6
+RUN_GAP = 0.3  # [d] a longer one begins another night
+POINTS_OF_RUN = 8
+LEAST_WITHIN = 0.5
+LEAST_GAIN = 40.0
 
 
 def check_red_noise(data: SearchData, found: Refined) -> None:
@@ -38,6 +42,41 @@ def check_red_noise(data: SearchData, found: Refined) -> None:
         "needed": LEAST_SIGNAL,
     }
     raise NoSolutionError("the dips do not stand out of the slow variation", numbers)
+
+
+def check_within_nights(data: SearchData, found: Refined) -> None:
+    """NoSolutionError if only the levels of nights differ, and no night shows light going or coming.
+
+    Where points come in runs, the fitted eclipses are compared with the light after each run's mean is
+    taken from both; they must still be there. Single points, as of a survey, cannot be asked.
+    """
+    number = np.cumsum(np.diff(data.time, prepend=data.time[0]) > RUN_GAP)
+    count = np.bincount(number)[number]
+    rows = count >= POINTS_OF_RUN
+    if rows.mean() < 0.5:
+        return
+    model = data.value - depth_and_residuals(data, found)[1]
+    shape, light = (_without_means(v, data.weight, number)[rows] for v in (model, data.value))
+    weight = data.weight[rows]
+    power = float(weight @ shape**2)
+    share = float(weight @ (shape * light)) / power if power > 0 else 0.0
+    gain = share**2 * power
+    if share > LEAST_WITHIN and gain > LEAST_GAIN:
+        return
+    numbers = {
+        "part of the eclipses that is seen within nights": share,
+        "needed": LEAST_WITHIN,
+        "gain in chi2 within nights": gain,
+    }
+    raise NoSolutionError(
+        "nights differ in level, but none shows the light of an eclipse change", numbers
+    )
+
+
+def _without_means(value: Floats, weight: Floats, number: Ints) -> Floats:
+    """Values less the weighted mean of their run."""
+    mass = np.bincount(number, weight)
+    return np.asarray(value - (np.bincount(number, weight * value) / mass)[number])
 
 
 def _red_scatter(data: SearchData, found: Refined, residual: Floats, length: float) -> float:

@@ -9,11 +9,12 @@ import numpy as np
 from shadowscale.data.photometry import Floats
 from shadowscale.timing.fold import Dip, nearest
 from shadowscale.timing.levels import flattened
-from shadowscale.timing.light_points import LightPoints
-from shadowscale.timing.profile import TRAPEZOID
+from shadowscale.timing.light_points import LightPoints, isolated
+from shadowscale.timing.profile import TRAPEZOID, Profile
 from shadowscale.timing.window_fit import SeenEclipse, see_eclipse, slope_and_residual
 
-ROUNDS = 3
+ROUNDS = 7
+SMALL = 0.1  # step of the period that ends the rounds, in its error
 
 
 @dataclass(frozen=True, eq=False)
@@ -34,7 +35,12 @@ class Refined:
 
 
 def refined(
-    raw: LightPoints, period: float, origin: float, dips: tuple[Dip, ...]
+    raw: LightPoints,
+    period: float,
+    origin: float,
+    dips: tuple[Dip, ...],
+    *,
+    profile: Profile | None = TRAPEZOID,
 ) -> Refined | None:
     """Least squares for period and epoch with the shapes held, shapes measured again in each round.
 
@@ -44,33 +50,69 @@ def refined(
     period, origin : float [d]
         Start; the dips' phases count from `origin`, which should be near the middle of the data.
     dips : tuple of Dip
+    profile : Profile or None
+        Shape of the eclipses; None for the best discs.
 
     Returns
     -------
     Refined or None
         The deepest eclipse first; None where no dip has points enough to be fitted.
     """
-    error = np.inf
+    error, settled = np.inf, False
+    calm = raw.at(~isolated(raw.time, raw.flux, raw.sigma))
     for turn in range(ROUNDS):
-        cycles = (raw.time - origin) / period
-        points, _ = flattened(raw, cycles, dips)
-        fitted = [
-            see_eclipse(points, cycles, dips, number, profile=TRAPEZOID)
-            for number in range(len(dips))
-        ]
-        seen = [one for one in fitted if one is not None]
+        last = settled or turn == ROUNDS - 1
+        # Outliers among the folded points are left out only when the eclipses are in line.
+        used = raw if last else calm
+        cycles = (used.time - origin) / period
+        points, _ = flattened(used, cycles, dips)
+        seen = _all_seen(points, cycles, dips, profile, clip=last)
         if not seen:
             return None
-        if turn == ROUNDS - 1:
+        if last:
             break
         shift, stretch, error = _steps(points, cycles, seen)
+        settled = abs(stretch) < SMALL * error and turn > 0
         origin, period = origin + shift * period, period * (1 + stretch)
-        error *= period
+    error *= period
     seen.sort(key=lambda one: -one.fit.timing.depth)
     counts = tuple(_cycles_seen(cycles, one) for one in seen)
     middle = seen[0].fit.timing.middle
     epoch = origin + period * (middle - np.round(middle))
     return Refined(period, error, float(epoch), origin, tuple(seen), points, cycles, counts)
+
+
+def _all_seen(
+    points: LightPoints,
+    cycles: Floats,
+    dips: tuple[Dip, ...],
+    profile: Profile | None,
+    *,
+    clip: bool,
+) -> list[SeenEclipse]:
+    """The dips that can be fitted."""
+    fitted = [
+        see_eclipse(points, cycles, dips, number, profile=profile, clip=clip)
+        for number in range(len(dips))
+    ]
+    return [one for one in fitted if one is not None]
+
+
+def polished(raw: LightPoints, found: Refined) -> Refined:
+    """The same with the best discs as template: trapezoids leave errors where few points trace an eclipse."""
+    dips = tuple(
+        Dip(
+            one.fit.timing.middle % 1,
+            one.fit.timing.duration / 1.3,
+            one.fit.timing.depth,
+            one.signal**2,
+        )
+        for one in found.eclipses
+    )
+    better = refined(raw, found.period, found.origin, dips, profile=None)
+    if better is None or len(better.eclipses) < len(found.eclipses):
+        return found
+    return better
 
 
 def _steps(

@@ -20,11 +20,8 @@ from shadowscale.timing.weigh import Weighed, as_good
 from shadowscale.timing.window_fit import SeenEclipse
 
 DIFFER = 5.0  # [sigma] of a difference between the two minima
-DEPTH_FLOOR, DURATION_FLOOR, MIDDLE_FLOOR = (
-    0.005,
-    0.02,
-    0.01,
-)  # what a measurement may be off, relative
+# What a measurement may be off: relative to depth or duration, and the same for a single point in the eclipse.
+DEPTH_FLOOR, DURATION_FLOOR, MIDDLE_FLOOR = (0.005, 0.15), (0.02, 0.6), (0.01, 0.2)
 FAR = 3e-3  # relative difference of two periods that are not the same
 WIDEST_PAIR = 0.6  # r1 + r2: two lobes that touch have 0.76 (Eggleton 1983, ApJ 268, 368, q = 1)
 DARK_POWER = 2.5  # depth^2.5 is about the brightness ratio of a companion of main sequence
@@ -101,19 +98,32 @@ def _doubled(points: LightPoints, single: Refined) -> Refined | None:
 
 
 def _differences(pair: tuple[SeenEclipse, ...]) -> dict[str, float]:
-    """How far two minima differ [sigma], with a floor for what a measurement may be off."""
+    """How far two minima differ [sigma], with a floor for what a measurement may be off.
+
+    The floor grows where few points trace an eclipse: then it matters where on the branches they fall.
+    """
     first, second = (one.fit.timing for one in pair)
     errors = [np.sqrt(np.diag(one.covariance)) for one in (first, second)]
+    few = 1 / max(min(_points_inside(one) for one in pair), 1)
     apart = abs((first.middle - second.middle) % 1 - 0.5)
     depth = (first.depth + second.depth) / 2
     duration = (first.duration + second.duration) / 2
+
+    def sigmas(difference: float, place: int, unit: float, floors: tuple[float, float]) -> float:
+        floor = (floors[0] + floors[1] * few) * unit
+        return float(difference / np.hypot(np.hypot(errors[0][place], errors[1][place]), floor))
+
     return {
-        "depth": abs(first.depth - second.depth)
-        / np.hypot(np.hypot(errors[0][4], errors[1][4]), DEPTH_FLOOR * depth),
-        "duration": abs(first.duration - second.duration)
-        / np.hypot(np.hypot(errors[0][1], errors[1][1]), DURATION_FLOOR * duration),
-        "spacing": apart / np.hypot(np.hypot(errors[0][0], errors[1][0]), MIDDLE_FLOOR * duration),
+        "depth": sigmas(abs(first.depth - second.depth), 4, depth, DEPTH_FLOOR),
+        "duration": sigmas(abs(first.duration - second.duration), 1, duration, DURATION_FLOOR),
+        "spacing": sigmas(apart, 0, duration, MIDDLE_FLOOR),
     }
+
+
+def _points_inside(one: SeenEclipse) -> int:
+    """Points between first and fourth contact in the window."""
+    width = one.window[1] - one.window[0]
+    return int(one.inside.sum() * min(one.fit.timing.duration / width, 1.0))
 
 
 def _check_repeats(found: Refined) -> None:

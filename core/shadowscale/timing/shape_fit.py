@@ -260,8 +260,12 @@ def _residuals(
 
 
 def _inverse(normal: Floats) -> Floats:
-    """Inverse of a normal matrix; directions without information get zero variance."""
-    scale = np.sqrt(np.maximum(np.diag(normal), 1e-300))
-    return np.linalg.pinv(normal / np.outer(scale, scale), rcond=1e-12, hermitian=True) / np.outer(
-        scale, scale
-    )
+    """Inverse of a normal matrix; parameters without information get zero variance."""
+    known = np.flatnonzero(normal.diagonal() > 0)
+    part = normal[np.ix_(known, known)]
+    scale = np.sqrt(part.diagonal())
+    covariance = np.zeros_like(normal)
+    covariance[np.ix_(known, known)] = np.linalg.pinv(
+        part / np.outer(scale, scale), rcond=1e-12, hermitian=True
+    ) / np.outer(scale, scale)
+    return covariance

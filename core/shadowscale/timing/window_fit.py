@@ -51,6 +51,7 @@ def see_eclipse(
     *,
     smear: float = 0.0,
     profile: Profile | None = None,
+    clip: bool = True,
 ) -> SeenEclipse | None:
     """Fit one of the dips in a window from its box, then again without outliers in one from the fit.
 
@@ -67,6 +68,8 @@ def see_eclipse(
         Exposure.
     profile : Profile, optional
         Use this shape; the best discs where missing.
+    clip : bool
+        Leave outliers out; not while the period is still off, for then the eclipses themselves stray.
 
     Returns
     -------
@@ -90,7 +93,8 @@ def see_eclipse(
         fit = fit_eclipse(data, middle=middle, width=box, profile=shape, first=first)
         residuals = _residuals(points, near, inside, fit, smear)
         fresh = kept.copy()
-        fresh[inside] = _ordinary(near[inside], residuals)
+        if clip:
+            fresh[inside] = _ordinary(near[inside], residuals)
         settled = abs(fit.timing.duration - width) < 0.15 * width and np.array_equal(fresh, kept)
         if turn == _LAST or (settled and turn == _LAST - 1):
             break
