@@ -204,6 +204,7 @@ QUANTITIES: Mapping[str, Quantity] = _register(
         "velocity offset of a source against the first, star 1",
         SOURCE,
         basic=True,
+        effect="Moves the velocities of one source against those of the first.",
     ),
     Quantity(
         "offset2",
@@ -216,6 +217,7 @@ QUANTITIES: Mapping[str, Quantity] = _register(
         "velocity offset of a source against the first, star 2",
         SOURCE,
         basic=True,
+        effect="Moves the velocities of one source against those of the first.",
     ),
     Quantity(
         "surface_brightness_ratio",

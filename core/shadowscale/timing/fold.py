@@ -93,9 +93,10 @@ def _best_box(
         box_sum = sum_to[width : width + bins] - sum_to[:bins]
         box_mass = mass_to[width : width + bins] - mass_to[:bins]
         free = (taken_to[width : width + bins] == taken_to[:bins]) & (box_mass > 0)
-        rest_mass = np.maximum(total - box_mass - other_mass, 1e-300)
+        # A box that holds (nearly) all the light has no rest to lie below.
+        rest_mass = np.maximum(total - box_mass - other_mass, 1e-9 * total)
         rest = -(box_sum + other_sum)
-        mean = box_sum / np.maximum(box_mass, 1e-300)
+        mean = box_sum / np.maximum(box_mass, 1e-9 * total)
         gain = mean * box_sum + rest**2 / rest_mass
         gain = np.where(free & (mean < rest / rest_mass), gain, 0.0)
         place = int(np.argmax(gain))
