@@ -161,8 +161,8 @@ def test_a_disk_that_cannot_be_written_to_costs_nothing_but_time(monkeypatch, tm
 def test_the_fingerprint_follows_imports_of_imports():
     names = {path.relative_to(PACKAGE).as_posix() for path in closure("light/_band.py")}
 
-    # _band reads the grid, which reads the table, which is filled by the kernels, which know the laws.
-    expected = {"light/_grid.py", "light/_table.py", "light/_kernels.py", "light/laws.py"}
+    # _band reads the grid, which is filled by the kernels, which know the laws.
+    expected = {"light/_grid.py", "light/_kernels.py", "light/laws.py"}
     assert expected <= names
     assert "orbit/_kernels.py" in names
     assert "cli/parser.py" not in names

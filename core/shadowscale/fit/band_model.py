@@ -22,6 +22,7 @@ from shadowscale.quantities import Key, key
 Floats = NDArray[np.float64]
 INCREDIBLE_ECCENTRICITY = 0.95
 LEAST_BRIGHTNESS = 1e-12
+INSTANT = 1e-4  # exposures shorter than this part of an ingress change the light by less than 1e-7
 
 
 def possible(values: Mapping[str, float]) -> bool:
@@ -106,7 +107,8 @@ class BandModel:
         brightness = max(values[keys.brightness], LEAST_BRIGHTNESS)
         share1 = float(1.0 / (1.0 + brightness * ratio**2 * mean2[0] / mean1[0]))
         light_time = light_time_of(values) if system.light_time else 0.0
-        half_exposure = system.exposure / DAY / values["period"] / 2
+        # In cycles of the period that the fit starts with: the derivative to the period is that of the phases.
+        half_exposure = system.exposure / DAY / system.values["period"] / 2
         constants = constants_of(values)
         curve = np.empty(_band.curve_size(count))
         curve[: _band.MEANS] = (
@@ -116,8 +118,11 @@ class BandModel:
         curve[_band.MEANS + count :] = mean2[1:] / mean2[0]
         pieces = np.empty((_grid.PIECES_SIZE, 5))
         number = _grid.lay_pieces(
-            constants, light_time, total, ratio, values["ecosw"], values["esinw"], pieces
-        )
+            constants, light_time, total, ratio, values["ecosw"], values["esinw"],
+            half_exposure > 0.0, pieces,
+        )  # fmt: skip
+        if half_exposure < INSTANT * _grid.shortest_piece(pieces):
+            curve[_band.HALF_EXPOSURE] = half_exposure = 0.0
         cells = np.empty((number, _grid.ORDER, _grid.grid_columns(count, derivatives=derivatives)))
         _grid.fill_cells(
             pieces, constants, light_time, total, ratio, share1, brightness, law.code, limb1, limb2,

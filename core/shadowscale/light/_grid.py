@@ -8,7 +8,8 @@ x. Each eclipse is therefore cut at its contacts, and each piece is covered by c
 
 which crowds them with the fourth power at both ends and makes the loss a smooth function of s. In each
 cell stands a polynomial of degree five in t = 0...1: that of the loss from values and exact slopes,
-those of its derivatives from six nodes. Measured: 6e-9 of the light at the worst.
+those of its derivatives from six nodes. Measured on 4000 random pairs of every kind: the light is right
+to 1.1e-8 at the worst, 4e-10 in the median.
 
 Averaged over an exposure the loss is [L(phase + h) - L(phase - h)]/(2h) with L its integral over phase.
 Then the cells hold the integrals of such polynomials, of loss dphase/ds, exact in each cell: an
@@ -49,6 +50,8 @@ PIECES_SIZE = MOST_PIECES + 3
 FIXED = 9  # columns before limb darkening
 ORDER = 7  # coefficients of a cell; the last is for integrals
 CELLS, FINE_CELLS, FLAT_CELLS = 48, 80, 32
+# Integrands vanish at both ends of a piece, where short exposures divide by as little: more cells.
+AVERAGED = 1.5
 CLOSE = 0.04  # |1 - k| over min(1, k) below which the inner contacts are crowded by the outer radii
 REACH = 0.12  # of the search for the closest approach around a conjunction [cycles]
 _TINY = 1e-12
@@ -79,33 +82,45 @@ def secondary_phase(ecosw: float, esinw: float) -> float:
 
 
 @fused
-def _closest(constants: Floats, light_time: float, conjunction: float, sky: Floats) -> float:
+def _far_end(
+    constants: Floats, light_time: float, conjunction: float, step: float, side: float, sky: Floats
+) -> float:
+    """Phase beside a conjunction, on its side of the sky, from which the stars come closer towards it."""
+    for _ in range(40):
+        sky_point(conjunction + step, constants, light_time, sky)
+        if sky[1] * side > 0.0 and sky[2] * step > 0.0:
+            break
+        step *= 0.7
+    return conjunction + step
+
+
+@fused
+def _closest(
+    constants: Floats, light_time: float, conjunction: float, side: float, sky: Floats
+) -> float:
     """Phase of least separation near a conjunction, where delta ddelta/dphase has its root.
 
     Regula falsi with the Illinois rule (Dowell & Jarratt 1971, BIT 11, 168).
     """
-    low, high = conjunction - REACH, conjunction + REACH
-    sky_point(low, constants, light_time, sky)
+    low = _far_end(constants, light_time, conjunction, -REACH, side, sky)
     at_low = sky[0] * sky[2]
-    sky_point(high, constants, light_time, sky)
+    high = _far_end(constants, light_time, conjunction, REACH, side, sky)
     at_high = sky[0] * sky[2]
-    if at_low >= 0.0 or at_high <= 0.0:
-        return conjunction
     middle = conjunction
-    side = 0
+    last = 0
     for _ in range(80):
         sky_point(middle, constants, light_time, sky)
         here = sky[0] * sky[2]
         if here > 0.0:
             high, at_high = middle, here
-            if side == 1:
+            if last == 1:
                 at_low *= 0.5
-            side = 1
+            last = 1
         else:
             low, at_low = middle, here
-            if side == -1:
+            if last == -1:
                 at_high *= 0.5
-            side = -1
+            last = -1
         if here == 0.0 or high - low < _EXACT:
             break
         before = middle
@@ -117,19 +132,30 @@ def _closest(constants: Floats, light_time: float, conjunction: float, sky: Floa
 
 @fused
 def _crossing(
-    constants: Floats, light_time: float, wanted: float, inside: float, step: float, sky: Floats
+    constants: Floats,
+    light_time: float,
+    wanted: float,
+    inside: float,
+    step: float,
+    side: float,
+    sky: Floats,
 ) -> float:
     """Phase, away from `inside` in the direction of `step`, where the separation reaches `wanted`.
 
-    Newton's iteration on delta^2, which is nearly a parabola there, kept in a bracket.
+    Newton's iteration on delta^2, which is nearly a parabola there, kept in a bracket. The bracket stays
+    on its side of the sky, where some separation is larger than the radii, for the stars do not touch.
     """
     near = far = inside
-    for _ in range(60):
+    for _ in range(100):
         far = near + step
-        if sky_point_value(far, constants, light_time)[0] >= wanted or abs(far - inside) > 0.5:
+        apart, behind = sky_point_value(far, constants, light_time)
+        if behind * side <= 0.0:
+            step *= 0.5
+        elif apart >= wanted:
             break
-        near = far
-        step *= 1.5
+        else:
+            near = far
+            step *= 1.5
     at = far
     for _ in range(80):
         sky_point(at, constants, light_time, sky)
@@ -149,7 +175,7 @@ def _crossing(
 
 
 @fused
-def _add_piece(pieces: Floats, low: float, high: float, cells: int, eclipse: int) -> None:
+def _add_piece(pieces: Floats, low: float, high: float, cells: float, eclipse: int) -> None:
     """One more piece behind the others."""
     row = pieces[int(pieces[COUNTS, 0])]
     row[0] = 0.5 * (low + high)
@@ -169,27 +195,30 @@ def lay_pieces(
     ratio: float,
     ecosw: float,
     esinw: float,
+    averaged: bool,
     pieces: Floats,
 ) -> int:
     """Cut both eclipses at their contacts; fills `pieces` and returns the number of cells."""
     sky = np.empty(SKY_SIZE)
     inner = radius_sum * abs(1.0 - ratio) / (1.0 + ratio)
     step = radius_sum / 12.0
-    cells = FINE_CELLS if abs(1.0 - ratio) < CLOSE * min(1.0, ratio) else CELLS
+    more = AVERAGED if averaged else 1.0
+    cells = more * (FINE_CELLS if abs(1.0 - ratio) < CLOSE * min(1.0, ratio) else CELLS)
     pieces[:] = 0.0
     for eclipse in range(2):
         conjunction = 0.0 if eclipse == 0 else secondary_phase(ecosw, esinw)
-        middle = _closest(constants, light_time, conjunction, sky)
+        side = -1.0 if eclipse == 0 else 1.0
+        middle = _closest(constants, light_time, conjunction, side, sky)
         closest = sky_point_value(middle, constants, light_time)[0]
         first, last = 1.0, -1.0
         if closest < radius_sum:
-            first = _crossing(constants, light_time, radius_sum, middle, -step, sky)
-            last = _crossing(constants, light_time, radius_sum, middle, step, sky)
+            first = _crossing(constants, light_time, radius_sum, middle, -step, side, sky)
+            last = _crossing(constants, light_time, radius_sum, middle, step, side, sky)
             if closest < inner:
-                second = _crossing(constants, light_time, inner, middle, -step, sky)
-                third = _crossing(constants, light_time, inner, middle, step, sky)
+                second = _crossing(constants, light_time, inner, middle, -step, side, sky)
+                third = _crossing(constants, light_time, inner, middle, step, side, sky)
                 _add_piece(pieces, first, second, cells, eclipse)
-                _add_piece(pieces, second, third, FLAT_CELLS, eclipse)
+                _add_piece(pieces, second, third, more * FLAT_CELLS, eclipse)
                 _add_piece(pieces, third, last, cells, eclipse)
             else:
                 _add_piece(pieces, first, middle, cells, eclipse)
@@ -199,6 +228,15 @@ def lay_pieces(
         pieces[SPANS + eclipse, 2] = pieces[COUNTS, 1]
         pieces[COUNTS, 1] += 1
     return int(pieces[COUNTS, 1])
+
+
+@fused
+def shortest_piece(pieces: Floats) -> float:
+    """Half the length of the shortest piece [cycles]; infinite if there are none."""
+    found = np.inf
+    for number in range(int(pieces[COUNTS, 0])):
+        found = min(found, pieces[number, 1])
+    return found
 
 
 @fused
@@ -224,8 +262,8 @@ def fill_cells(
     """
     columns = cells.shape[2]
     cells[:] = 0.0
-    values = np.zeros((FINE_CELLS + 1, columns))
-    slopes = np.empty(FINE_CELLS + 1)
+    most = int(AVERAGED * FINE_CELLS) + 1
+    values, slopes = np.zeros((most, columns)), np.empty(most)
     row = np.empty(FIXED + 2 * limb1.size)
     used = min(columns, row.size)
     sky = np.empty(SKY_SIZE)
