@@ -185,8 +185,9 @@ def _sampled() -> tuple[Solved, tuple[str, ...], Floats]:
 
     random = np.random.default_rng(5)
     middle = np.array([centre[name] for name in names])
-    start = random.multivariate_normal(middle, solution.covariance, 24)
-    sampler = emcee.EnsembleSampler(24, len(names), log_posterior)
+    start = random.multivariate_normal(middle, solution.covariance, 32)
+    moves = [(emcee.moves.DEMove(), 0.5), (emcee.moves.StretchMove(), 0.5)]
+    sampler = emcee.EnsembleSampler(32, len(names), log_posterior, moves=moves)
     sampler._random.seed(17)
     sampler.run_mcmc(start, 600)
     return found, names, sampler.get_chain(discard=100, flat=True)
