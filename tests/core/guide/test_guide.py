@@ -27,7 +27,7 @@ def test_every_file_of_the_guide_is_a_page_and_has_a_title():
 
 
 def test_the_page_of_quantities_is_the_register():
-    """To make it again: write what `quantities_page()` returns into quantities.md."""
+    """To make it again: `python -m shadowscale.guide`."""
     text = page("quantities").text
     assert text == quantities_page()
     names = re.findall(r"^\| `(\w+)` \|", text, re.MULTILINE)
