@@ -1,0 +1,68 @@
+"""`python tests/bench`: what the engine does, how fast, beside what a practitioner writes today.
+
+Prints one table of medians (in brackets: of the shortest runs, which a busy machine spoils least) and
+writes it as JSON beside versions, cores and date.
+"""
+
+from __future__ import annotations
+
+import argparse
+import json
+import os
+import platform
+from datetime import UTC, datetime
+from importlib.metadata import version
+from pathlib import Path
+
+from processes import timed_processes
+from timing import table, timed
+from works import all_works
+
+PACKAGES = ("shadowscale", "numpy", "scipy", "numba", "llvmlite", "batman-package")
+REPEATS = 9
+
+
+def main() -> None:
+    """Measure, print, write."""
+    options = _options()
+    repeats = 2 if options.quick else options.repeats
+    results = []
+    if not options.processes_only:
+        for work in all_works(quick=options.quick):
+            results.append(timed(work, repeats))
+    if not options.works_only:
+        results += timed_processes(1 if options.quick else 3, quick=options.quick)
+    print(f"{platform.processor() or platform.machine()}, {os.cpu_count()} cores, "
+          f"{datetime.now(UTC):%Y-%m-%d}; load {_load()}")  # fmt: skip
+    print(table(results))
+    if options.json is not None:
+        about = {
+            "date": datetime.now(UTC).isoformat(timespec="seconds"),
+            "python": platform.python_version(),
+            "platform": platform.platform(),
+            "cores": os.cpu_count(),
+            "load": _load(),
+            "versions": {name: version(name) for name in PACKAGES},
+            "works": [each.as_dict() for each in results],
+        }
+        options.json.write_text(json.dumps(about, indent=1) + "\n", encoding="utf-8")
+
+
+def _load() -> str:
+    return f"{os.getloadavg()[0]:.1f}" if hasattr(os, "getloadavg") else "unknown"
+
+
+def _options() -> argparse.Namespace:
+    parser = argparse.ArgumentParser(prog="tests/bench", description=__doc__)
+    parser.add_argument("--quick", action="store_true", help="only show that everything runs")
+    parser.add_argument(
+        "--repeats", type=int, default=REPEATS, help=f"runs each, default {REPEATS}"
+    )
+    parser.add_argument("--json", type=Path, help="file for all numbers")
+    parser.add_argument("--works-only", action="store_true", help="no whole processes")
+    parser.add_argument("--processes-only", action="store_true", help="whole processes alone")
+    return parser.parse_args()
+
+
+if __name__ == "__main__":
+    main()
