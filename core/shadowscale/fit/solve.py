@@ -24,7 +24,7 @@ from shadowscale.fit.priors import prior_constraints
 from shadowscale.fit.problem import Fitted, Problem, Weighting, fit_system, thinned
 from shadowscale.fit.profile import valley, widened
 from shadowscale.fit.result import assemble
-from shadowscale.fit.reweigh import reweighed, without_wild_rows
+from shadowscale.fit.reweigh import reasons_with_outlier, reweighed, without_wild_rows
 from shadowscale.fit.solution import Decision, Solution
 from shadowscale.fit.start import Ground, find_ground
 from shadowscale.fit.system import System
@@ -110,9 +110,11 @@ def solve(
     """
     check_plan(plan, photometry, velocities)
     table = None if plan.limb_table is None else read_limb_table(plan.limb_table)
-    ground = find_ground(photometry, velocities, plan, progress)
     problem = Problem(photometry, velocities)
     weighting = without_wild_rows(problem, problem.weighting())
+    reasons = reasons_with_outlier(photometry.reasons)
+    tame = replace(photometry, why=weighting.why, reasons=reasons)
+    ground = find_ground(tame, velocities, plan, progress)
     work = _Work(problem, plan, ground, table, progress, weighting)
     best, met = _explored(work)
     best = _with_effects(work, best)

@@ -154,7 +154,7 @@ def exchanged(measured: MeasuredEclipses) -> MeasuredEclipses:
         depth_errors={band: (two, one) for band, (one, two) in measured.depth_errors.items()},
         primary_window=_moved(measured.secondary_window or measured.primary_window, -middle),
         secondary_window=_moved(measured.primary_window, 1.0 - middle),
-        notes=(*measured.notes, word),
+        notes=(*(note for note in measured.notes if "epoch was moved" not in note), word),
     )
 
 
