@@ -2,23 +2,38 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 
 from PySide6.QtCore import QObject, QTimer, Signal
 
+from shadowscale.fit.plan import Plan
 from shadowscale.progress import Progress
 from shadowscale.session.session import Session
 from shadowscale.view.contacts import with_contact_solution
+from shadowscale.view.follow import Origin, can_follow, follow, origin_of
 from shadowscale.view.wishes import asks_for_solution, for_refit
 from shadowscale_app import trouble
 from shadowscale_app.desk import Desk
-from shadowscale_app.jobs import Answer, LiveLane
+from shadowscale_app.jobs import Answer, LiveLane, Work
 
 THROTTLE_MS = 60  # between two requests while something is being dragged
 
 
+@dataclass(frozen=True, eq=False)
+class Request:
+    """A fit that was asked for; a quick one starts from the solution and is not stopped by newer ones."""
+
+    session: Session
+    quick: bool
+
+
 class Live(QObject):
-    """Watches the desk. Signal `told(words)`."""
+    """Watches the desk. Signal `told(words)`.
+
+    While a solution is there for the same model it is followed, which takes a tenth of a second: what is
+    asked for meanwhile waits, so that the picture keeps up with the hand. Otherwise the whole solver runs,
+    and a newer request stops it.
+    """
 
     told = Signal(str)
 
@@ -27,6 +42,9 @@ class Live(QObject):
         self.following = True
         self._desk, self._lane = desk, lane
         self._before = desk.session
+        self._origin = origin_of(desk.session)
+        self._asked: Request | None = None
+        self._again = False
         self._timer = QTimer(self)
         self._timer.setSingleShot(True)
         self._timer.setInterval(THROTTLE_MS)
@@ -42,15 +60,20 @@ class Live(QObject):
 
     def wait_until_idle(self) -> bool:
         """For tests: let everything that was asked for arrive."""
-        if self._timer.isActive():
-            self._timer.stop()
-            self._submit()
-        return self._lane.wait_until_idle()
+        while True:
+            if self._timer.isActive():
+                self._timer.stop()
+                self._submit()
+            if not self._lane.wait_until_idle():
+                return False
+            if not self._timer.isActive():
+                return True
 
     def forget(self) -> None:
         """Nothing that was asked for is wanted any more."""
         self._timer.stop()
         self._lane.drop()
+        self._asked, self._again = None, False
 
     def _with_geometry(self, before: Session, after: Session) -> Session:
         """A step that moved markers brings its contact solution along."""
@@ -65,6 +88,8 @@ class Live(QObject):
 
     def _changed(self, session: Session, names: frozenset[str]) -> None:
         before, self._before = self._before, session
+        if session.solution is not self._origin.solution:
+            self._origin = origin_of(session)
         if "name" in names and "photometry" in names:  # another piece of work
             self.forget()
             return
@@ -76,29 +101,52 @@ class Live(QObject):
             self.ask()
 
     def _submit(self) -> None:
-        if self._desk.session.photometry is None:
+        session, origin = self._desk.session, self._origin
+        if session.photometry is None:
             return
-        session = for_refit(self._desk.session)
-
-        def work(progress: Progress) -> Session:
-            from shadowscale.jobs.solve import solve_session
-
-            return solve_session(session, progress=progress)
-
-        self._lane.submit(work)
+        if self._asked is not None and self._asked.quick:
+            self._again = True
+            return
+        self._asked = Request(session, can_follow(session, origin))
+        self._lane.submit(_following(session, origin) if self._asked.quick else _solving(session))
 
     def _answered(self, answer: Answer) -> None:
+        asked, self._asked = self._asked, None
+        again, self._again = self._again, False
         if answer.error is not None:
             self.told.emit(str(trouble.trouble_of("fitting", answer.error).sentence))
-            return
-        assert isinstance(answer.result, Session)
-        self._desk.settle(with_results(self._desk.session, answer.result))
+        elif asked is not None and (not again or asked.session.plan is self._desk.session.plan):
+            assert isinstance(answer.result, Session)
+            found = answer.result
+            self._origin = Origin(found.solution, asked.session.plan, asked.session.markers)
+            self._desk.settle(with_results(self._desk.session, found))
+        if again:
+            self.ask()
 
 
-def with_results(session: Session, found: Session) -> Session:
-    """The session with another's solution; its own markers, contacts and wishes stay."""
+def _following(session: Session, origin: Origin) -> Work:
+    return lambda _: follow(session, origin)
+
+
+def _solving(session: Session) -> Work:
+    ready = for_refit(session)
+
+    def work(progress: Progress) -> Session:
+        from shadowscale.jobs.solve import solve_session
+
+        return solve_session(ready, progress=progress)
+
+    return work
+
+
+def with_results(session: Session, found: Session, *, plan: Plan | None = None) -> Session:
+    """The session with another's solution; its own markers, contacts and wishes stay.
+
+    With `plan` that is what the session keeps, so that doing it again gives the same solution.
+    """
     return replace(
         session,
+        plan=plan or session.plan,
         system=found.system,
         solution=found.solution,
         audit=found.audit,

@@ -75,7 +75,7 @@ class WorkDesk(QObject):
 
             return solve_from_many_starts(session, progress=progress)
 
-        self._start("searching from many starts", work, self._take_solution)
+        self._start("searching from many starts", work, self._take_search)
 
     def _start(
         self, doing: str, work: Callable[[Progress], object], take: Callable[[object], None]
@@ -99,6 +99,15 @@ class WorkDesk(QObject):
         assert isinstance(found, Session)
         session = with_start_markers(with_results(self._desk.session, found))
         self._desk.apply(Change("Solve", session))
+        self._tell_solved(session)
+
+    def _take_search(self, found: object) -> None:
+        assert isinstance(found, Session)
+        session = with_results(self._desk.session, found, plan=found.plan)
+        self._desk.apply(Change("Search from many starts", session))
+        self._tell_solved(session)
+
+    def _tell_solved(self, session: Session) -> None:
         self.told.emit(f"Solved: {summary(session)}.")
         self.solved.emit()
 

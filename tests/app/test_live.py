@@ -14,17 +14,21 @@ from shadowscale.errors import NotConvergedError
 from shadowscale.jobs import solve as jobs_solve
 from shadowscale.progress import SILENT, Progress
 from shadowscale.session.session import Session
-from shadowscale.view.rows import with_state
+from shadowscale.view.follow import Origin, markers_moved
+from shadowscale.view.markers import moved
+from shadowscale.view.rows import with_state, with_value
+from shadowscale_app import live
 from shadowscale_app.bench import Bench
 from shadowscale_app.desk import Change
 from shadowscale_app.models.quantities import VALUE
 
 
 class Solver:
-    """Stands in for the solver: answers with an inclination of its own, when it is let."""
+    """Stands in for both solvers: answers with an inclination of its own, when it is let."""
 
     def __init__(self) -> None:
         self.asked: list[Session] = []
+        self.moved: list[bool] = []
         self.gate = threading.Event()
         self.gate.set()
         self.error: Exception | None = None
@@ -33,6 +37,15 @@ class Solver:
         self.asked.append(session)
         self.gate.wait(20)
         progress.report(0.5, "fitting")
+        return self.answer(session)
+
+    def follow(self, session: Session, origin: Origin) -> Session:
+        self.asked.append(session)
+        self.moved.append(markers_moved(session, origin))
+        self.gate.wait(20)
+        return self.answer(session)
+
+    def answer(self, session: Session) -> Session:
         if self.error is not None:
             raise self.error
         found = made_up_session().solution
@@ -48,6 +61,7 @@ class Solver:
 def solver(monkeypatch: pytest.MonkeyPatch) -> Solver:
     found = Solver()
     monkeypatch.setattr(jobs_solve, "solve_session", found)
+    monkeypatch.setattr(live, "follow", found.follow)
     return found
 
 
@@ -83,16 +97,51 @@ def test_a_drag_is_followed_by_a_fit_and_the_table_shows_it(
     assert start - 0.006 == pytest.approx(following.desk.session.markers.primary[0], abs=1e-3)
 
 
-def test_the_fit_starts_where_the_markers_point(following: Bench, solver: Solver) -> None:
+def test_only_moved_markers_give_the_fit_its_start(following: Bench, solver: Solver) -> None:
     picture = following.panes["Eclipses"].pairs["primary"].curve
     start = following.desk.session.markers.primary[0]
 
     drag(picture, start, start - 0.006)
     assert following.live.wait_until_idle()
+    hold_third_light(following)
+    assert following.live.wait_until_idle()
 
-    contact = following.desk.session.contact.values["radius_sum"]
-    assert contact == pytest.approx(solver.asked[-1].plan.start["radius_sum"])
-    assert "radius_sum" not in following.desk.session.plan.start  # the person's own wishes stay
+    assert solver.moved == [True] * (len(solver.moved) - 1) + [False]
+    assert solver.asked[-2].contact is following.desk.session.contact
+
+
+def test_while_a_quick_fit_runs_the_next_one_waits_and_takes_the_newest(
+    following: Bench, solver: Solver
+) -> None:
+    solver.gate.clear()
+    markers = following.desk.session.markers
+    following.live._submit()
+    for step in range(1, 6):
+        moved_markers = moved(markers, "primary.0", markers.primary[0] - 1e-3 * step)
+        following.desk.apply(
+            Change("Move", replace(following.desk.session, markers=moved_markers), "a drag")
+        )
+        following.live._timer.stop()
+        following.live._submit()
+
+    solver.gate.set()
+    assert following.live.wait_until_idle()
+
+    assert len(solver.asked) == 2
+    assert solver.asked[-1].markers is following.desk.session.markers
+    assert shown_inclination(following) == "82.000"
+
+
+def test_another_model_needs_the_whole_solver(following: Bench, solver: Solver) -> None:
+    session = following.desk.session
+    following.desk.apply(
+        Change("Law", replace(session, plan=replace(session.plan, law="quadratic")))
+    )
+
+    assert following.live.wait_until_idle()
+
+    assert len(solver.asked) == 1
+    assert solver.moved == []
 
 
 def test_a_fit_is_no_step_of_its_own(following: Bench, solver: Solver) -> None:
@@ -110,20 +159,33 @@ def test_a_fit_is_no_step_of_its_own(following: Bench, solver: Solver) -> None:
 
 def test_an_overtaken_fit_never_arrives(following: Bench, solver: Solver) -> None:
     solver.gate.clear()
+    for law in ("linear", "quadratic"):
+        session = following.desk.session
+        following.desk.apply(Change("Law", replace(session, plan=replace(session.plan, law=law))))
+        following.live._timer.stop()
+        following.live._submit()
+
+    solver.gate.set()
+    assert following.live.wait_until_idle()
+
+    assert solver.asked[-1].plan.law == "quadratic"
+    assert shown_inclination(following) == f"{80 + len(solver.asked)}.000"
+
+
+def test_a_quick_fit_of_other_wishes_is_not_shown(following: Bench, solver: Solver) -> None:
+    solver.gate.clear()
     hold_third_light(following)
     following.live._timer.stop()
     following.live._submit()
-    following.desk.apply(
-        Change("Free", with_state(following.desk.session, "third_light[V]", "free"))
-    )
+    following.desk.apply(Change("Set", with_value(following.desk.session, "third_light[V]", 0.05)))
     following.live._timer.stop()
     following.live._submit()
 
     solver.gate.set()
     assert following.live.wait_until_idle()
 
-    assert "third_light[V]" in solver.asked[-1].plan.free
-    assert shown_inclination(following) == f"{80 + len(solver.asked)}.000"
+    assert [each.plan.fixed["third_light[V]"] for each in solver.asked] == [(0.02,), (0.05,)]
+    assert shown_inclination(following) == "82.000"
 
 
 def test_undo_while_a_fit_runs_drops_its_answer(following: Bench, solver: Solver) -> None:

@@ -30,6 +30,8 @@ class Marking:
             return
         symmetric = not one_side and _circular(self._pane)
         markers = moved(session.markers, name, phase, symmetric=symmetric)
+        if markers == session.markers:
+            return  # held by a neighbour, or let go where it was
         change = Change(
             describe_move(markers, name), replace(session, markers=markers), f"{name} {gesture}"
         )

@@ -26,7 +26,9 @@ COMPARED = ("radius_sum", "radius_ratio", "inclination", "ecosw", "esinw")
 
 
 def solve_from_many_starts(session: Session, *, progress: Progress = SILENT) -> Session:
-    """The session with the best solution of many starts, the others among its alternatives.
+    """The session with the best solution of many starts and the plan that leads there.
+
+    The others are among its alternatives.
 
     Parameters
     ----------
@@ -41,25 +43,35 @@ def solve_from_many_starts(session: Session, *, progress: Progress = SILENT) -> 
         If no start leads to a solution.
     """
     from shadowscale.fit.solve import solve
+    from shadowscale.jobs.solve import tables_to_solve
 
     if session.photometry is None or session.solution is None:
         raise NoSolutionError("there is no solution to start from", help="solve first")
     found: list[Solution] = [session.solution]
+    plans = [session.plan]
     starts = _starts(session, np.random.default_rng(session.plan.seed))
     for number, plan in enumerate(starts):
         progress.report(number / len(starts), f"start {number + 1} of {len(starts)}")
         try:
-            found.append(solve(session.photometry, session.velocities, plan))
+            found.append(solve(tables_to_solve(session), session.velocities, plan))
         except NoSolutionError:
             continue
+        plans.append(plan)
     progress.report(1.0, "done")
-    best = min(found, key=lambda each: each.fit.chi2)
+    number = min(range(len(found)), key=lambda index: found[index].fit.chi2)
+    best = found[number]
     others = [
         each for each in _distinct(found, best) if each.fit.chi2 - best.fit.chi2 < NOT_EXCLUDED
     ]
     alternatives = (*best.alternatives, *(_alternative(each, best) for each in others))
     solution = replace(best, alternatives=alternatives)
-    return replace(session, solution=solution, system=solution.system, contact=solution.contact)
+    return replace(
+        session,
+        plan=plans[number],
+        solution=solution,
+        system=solution.system,
+        contact=solution.contact,
+    )
 
 
 def _starts(session: Session, random: np.random.Generator) -> list[Plan]:

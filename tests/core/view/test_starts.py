@@ -80,3 +80,20 @@ def test_it_stops_when_asked(answers: Answers) -> None:
 def test_there_must_be_a_solution_to_start_from() -> None:
     with pytest.raises(NoSolutionError, match=r"there is no solution to start from.*solve first"):
         solve_from_many_starts(made_up_session(solved=False))
+
+
+def test_the_plan_that_led_to_the_best_is_kept(
+    answers: Answers, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def better(photometry: object, velocities: object, plan: Any) -> Solution:
+        solution = answers(photometry, velocities, plan)
+        chi2 = solution.fit.chi2 - 50.0 * (len(answers.plans) == 5)
+        return replace(solution, fit=replace(solution.fit, chi2=chi2))
+
+    monkeypatch.setattr(fit_solve, "solve", better)
+    session = made_up_session()
+
+    found = solve_from_many_starts(session)
+
+    assert found.plan is answers.plans[4]
+    assert found.plan.start["radius_ratio"] != session.system.value("radius_ratio")
