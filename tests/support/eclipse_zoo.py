@@ -73,7 +73,7 @@ def _random_binary(rng: np.random.Generator, times: Floats, longest: float) -> S
     if total > 0.8 * (1 - e):
         return None
     impact = rng.uniform(0, 0.85) * total
-    binary = SimpleBinary(
+    return SimpleBinary(
         period=period,
         epoch=float(times[0] + rng.uniform(0, period)),
         r1=r1,
@@ -84,7 +84,6 @@ def _random_binary(rng: np.random.Generator, times: Floats, longest: float) -> S
         brightness=(float(rng.choice([1.0, rng.uniform(0.02, 1.2)])),),
         third=float(rng.choice([0.0, rng.uniform(0, 0.4)])),
     )
-    return binary
 
 
 def _observable(binary: SimpleBinary, times: Floats, noise: float, *, fewest: int) -> bool:
@@ -98,7 +97,7 @@ def _observable(binary: SimpleBinary, times: Floats, noise: float, *, fewest: in
     phase = (times - binary.epoch) / binary.period
     away = phase - (contacts[0] + contacts[-1]) / 2
     inside = np.abs(away - np.round(away)) < 0.3 * (contacts[-1] - contacts[0])
-    cycles, count = np.unique(np.round(away[inside]), return_counts=True)
+    count = np.unique(np.round(away[inside]), return_counts=True)[1]
     enough = 1 if times.size < 1000 else 3
     good = count >= enough
     return bool(good.sum() >= fewest and depth * np.sqrt(inside.sum()) > 12 * noise)

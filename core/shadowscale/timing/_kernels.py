@@ -10,6 +10,7 @@ from __future__ import annotations
 import numpy as np
 
 from shadowscale._compiled import compiled
+from shadowscale.data.photometry import Floats, Ints
 
 GAIN_ONE, GAIN_TWO, GAIN_BINS, PHASE, WIDTH, PHASE_TWO, WIDTH_TWO, OCCUPIED = range(8)
 PART = 0.4
@@ -17,7 +18,16 @@ WIDEST = 40  # widest box in narrowest ones
 
 
 @compiled
-def box_spectrum(time, value, weight, frequency, bins, narrowest, least, out):  # type: ignore[no-untyped-def]
+def box_spectrum(
+    time: Floats,
+    value: Floats,
+    weight: Floats,
+    frequency: Floats,
+    bins: Ints,
+    narrowest: int,
+    least: int,
+    out: Floats,
+) -> None:
     """Gains in chi2 at each frequency.
 
     time, value, weight : (n,) time from some origin [d], light with weighted mean zero, 1/sigma^2
@@ -92,7 +102,15 @@ def box_spectrum(time, value, weight, frequency, bins, narrowest, least, out):  
 
 
 @compiled
-def _first_box(sum_to, mass_to, count_to, n, total, narrowest, least):  # type: ignore[no-untyped-def]
+def _first_box(
+    sum_to: Floats,
+    mass_to: Floats,
+    count_to: Floats,
+    n: int,
+    total: float,
+    narrowest: int,
+    least: int,
+) -> tuple[float, int, int]:
     """Gain, start and width [bins] of the best box; the light's weighted mean is zero."""
     best = 0.0
     room = 1.0  # gain = best/room; ratios are compared without dividing
@@ -117,7 +135,17 @@ def _first_box(sum_to, mass_to, count_to, n, total, narrowest, least):  # type: 
 
 
 @compiled
-def _second_box(sum_to, mass_to, count_to, n, total, start, width1, narrowest, least):  # type: ignore[no-untyped-def]
+def _second_box(
+    sum_to: Floats,
+    mass_to: Floats,
+    count_to: Floats,
+    n: int,
+    total: float,
+    start: int,
+    width1: int,
+    narrowest: int,
+    least: int,
+) -> tuple[float, int, int]:
     """Gain of both, start and width [bins] of the best box beside the first, with three levels in all."""
     s1 = sum_to[start + width1] - sum_to[start]
     m1 = mass_to[start + width1] - mass_to[start]
@@ -150,7 +178,18 @@ def _second_box(sum_to, mass_to, count_to, n, total, start, width1, narrowest, l
 
 
 @compiled
-def eclipse_rows(phase, band, bands, centre, nodes, node_weights, table, values, model, jacobian):  # type: ignore[no-untyped-def]
+def eclipse_rows(
+    phase: Floats,
+    band: Ints,
+    bands: int,
+    centre: float,
+    nodes: Floats,
+    node_weights: Floats,
+    table: Floats,
+    values: Floats,
+    model: Floats,
+    jacobian: Floats,
+) -> None:
     """Light of one eclipse and its derivatives (the equations are those of `shape_fit`).
 
     phase : (n,) [cycles];  band : (n,) int64;  nodes, node_weights : (j,) parts of the exposure [cycles]
@@ -206,7 +245,11 @@ def eclipse_rows(phase, band, bands, centre, nodes, node_weights, table, values,
 
 
 @compiled
-def _lost(x, shape, table):  # type: ignore[no-untyped-def]
+def _lost(
+    x: float,
+    shape: float,
+    table: Floats,
+) -> tuple[float, float, float]:
     """Light lost relative to the middle, its derivatives by x and by the shape parameter."""
     if table.shape[1] == 0:
         raw = (1 - abs(x)) / shape
@@ -222,7 +265,10 @@ def _lost(x, shape, table):  # type: ignore[no-untyped-def]
 
 
 @compiled
-def _read(separation, table):  # type: ignore[no-untyped-def]
+def _read(
+    separation: float,
+    table: Floats,
+) -> tuple[float, float]:
     """A table of even steps read at a separation 0...1, with its slope over the separation (finite at 0)."""
     steps = table.shape[1] - 1
     place = min(separation, 1.0) * steps
@@ -233,7 +279,19 @@ def _read(separation, table):  # type: ignore[no-untyped-def]
 
 
 @compiled
-def shape_grid(phase, flux, sigma, band, bands, middle, durations, shapes, tables, stretches, chi2):  # type: ignore[no-untyped-def]
+def shape_grid(
+    phase: Floats,
+    flux: Floats,
+    sigma: Floats,
+    band: Ints,
+    bands: int,
+    middle: float,
+    durations: Floats,
+    shapes: Floats,
+    tables: Floats,
+    stretches: Floats,
+    chi2: Floats,
+) -> None:
     """chi2 of many shapes, with the depth and level of each band solved for each.
 
     durations, shapes : (k, s) first guess of the duration and the shape parameter for each table

@@ -74,7 +74,7 @@ def ranked(found: list[Candidate], points: int) -> list[Candidate]:
 def close_look(data: SearchData, period: float) -> Candidate:
     """The best period in a fine comb around a seed, with its dips."""
     step = DRIFT * float(narrowest(np.array(period))) / data.span / FINER
-    comb = 1 / period + step * np.arange(-2 * FINER, 2 * FINER + 1)
+    comb: Floats = 1 / period + step * np.arange(-2.0 * FINER, 2 * FINER + 1)
     comb = comb[comb > 0]
     bins = np.minimum(3 * phase_bins(comb, data.time.size), 1500)
     table = np.empty((comb.size, 8))

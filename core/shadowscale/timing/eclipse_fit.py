@@ -292,4 +292,4 @@ def _spread(chosen: ShapeFit, tried: list[ShapeFit], *, flat: bool, first: int) 
     weight = np.array([np.exp(-(fit.chi2 - best.chi2) / (2 * scale)) for fit in tried])
     centre = _contact_values(best, flat=flat, first=first)[0]
     away = np.array([_contact_values(fit, flat=flat, first=first)[0] for fit in tried]) - centre
-    return (away * (weight / weight.sum())[:, None]).T @ away
+    return np.asarray((away * (weight / weight.sum())[:, None]).T @ away)

@@ -104,7 +104,8 @@ def _check(period: float, exposure: float) -> None:
 
 def _fitted(points: LightPoints, cycles: Floats, smear: float) -> list[SeenEclipse]:
     """The best dip and, of a few places for a second one, the first where an eclipse can be fitted."""
-    first, tried = None, ()
+    first: SeenEclipse | None = None
+    tried: tuple[Dip, ...] = ()
     for _ in range(PLACES):
         dips = _dips(points, cycles, besides=tried)
         if first is None:

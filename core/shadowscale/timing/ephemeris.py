@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 
 import numpy as np
+from numpy.typing import NDArray
 
 from shadowscale.data.photometry import Floats
 from shadowscale.errors import NoSolutionError
@@ -60,7 +61,7 @@ def fit_ephemeris(minima: Sequence[Minimum], *, quadratic: bool = False) -> Ephe
     )
 
 
-def _check(cycle: Floats, second: Floats, fewest: int) -> None:
+def _check(cycle: Floats, second: NDArray[np.bool_], fewest: int) -> None:
     primary = np.unique(cycle[~second]).size
     secondary = np.unique(cycle[second]).size
     enough = max(primary, secondary) >= fewest and (primary > 0 or secondary == 0)

@@ -62,9 +62,11 @@ def find_dips(
     up to a fifth of a cycle, after Kovacs, Zucker & Mazeh 2002, A&A 391, 369.
     """
     cell = np.minimum((phase * bins).astype(np.int64), bins - 1)
-    mass = np.bincount(cell, weight, bins)
+    mass: Floats = np.bincount(cell, weight, bins).astype(float)
     total = mass.sum()
-    sums = np.bincount(cell, weight * (value - (weight @ value) / total), bins)
+    sums: Floats = np.bincount(cell, weight * (value - (weight @ value) / total), bins).astype(
+        float
+    )
     first = _best_box(sums, mass, np.zeros(bins, bool), 0.0, 0.0)
     if first is None:
         return ()

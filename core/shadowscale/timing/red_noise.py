@@ -11,7 +11,7 @@ from shadowscale.timing.refine import Refined
 from shadowscale.timing.search_data import SearchData
 from shadowscale.timing.weigh import depth_and_residuals
 
-LEAST_SIGNAL = 6.0
+LEAST_SIGNAL = 4.0
 FEWEST_CELLS = 6
 RUN_GAP = 0.3  # [d] a longer one begins another night
 POINTS_OF_RUN = 8
@@ -50,7 +50,7 @@ def check_within_nights(data: SearchData, found: Refined) -> None:
     Where points come in runs, the fitted eclipses are compared with the light after each run's mean is
     taken from both; they must still be there. Single points, as of a survey, cannot be asked.
     """
-    number = np.cumsum(np.diff(data.time, prepend=data.time[0]) > RUN_GAP)
+    number = np.cumsum(np.diff(data.time, prepend=data.time[0]) > RUN_GAP).astype(np.int64)
     count = np.bincount(number)[number]
     rows = count >= POINTS_OF_RUN
     if rows.mean() < 0.5:
@@ -99,5 +99,5 @@ def _cell_means(
     if time.size == 0:
         return np.empty(0), np.empty(0)
     _, number = np.unique(np.floor(time / length), return_inverse=True)
-    mass = np.bincount(number, weight)
-    return np.bincount(number, weight * value) / mass, mass**-0.5
+    mass: Floats = np.bincount(number, weight).astype(float)
+    return np.bincount(number, weight * value) / mass, 1 / np.sqrt(mass)

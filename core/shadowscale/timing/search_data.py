@@ -83,7 +83,7 @@ def _averaged(time: Floats, value: Floats, weight: Floats) -> tuple[Floats, Floa
             cell = width
             break
     number = np.cumsum(np.diff(np.floor(time / cell), prepend=np.floor(time[0] / cell)) > 0)
-    mass = np.bincount(number, weight)
+    mass: Floats = np.bincount(number, weight).astype(float)
     origin = time[0]
     mean_time = origin + np.bincount(number, weight * (time - origin)) / mass
     return mean_time, np.bincount(number, weight * value) / mass, mass

@@ -21,7 +21,7 @@ from shadowscale.timing.window_fit import SeenEclipse
 
 DIFFER = 5.0  # [sigma] of a difference between the two minima
 # What a measurement may be off: relative to depth or duration, and the same for a single point in the eclipse.
-DEPTH_FLOOR, DURATION_FLOOR, MIDDLE_FLOOR = (0.005, 0.15), (0.02, 0.6), (0.01, 0.2)
+DEPTH_FLOOR, DURATION_FLOOR, MIDDLE_FLOOR = (0.01, 0.4), (0.04, 1.2), (0.01, 0.3)
 FAR = 3e-3  # relative difference of two periods that are not the same
 WIDEST_PAIR = 0.6  # r1 + r2: two lobes that touch have 0.76 (Eggleton 1983, ApJ 268, 368, q = 1)
 DARK_POWER = 2.5  # depth^2.5 is about the brightness ratio of a companion of main sequence
