@@ -38,12 +38,12 @@ def light_outliers(data: BandData, expected: Floats) -> NDArray[np.bool_]:
 def wild_rows(flux: Floats) -> NDArray[np.bool_]:
     """(n,) rows that no star explains, to be set aside before the first fit.
 
-    Above the band by more than three times the range that holds 99 % of it, or below zero by half the
-    median: an eclipse is neither.
+    Above the middle of the band by ten times what its brighter half usually reaches (the 95 % point),
+    or below zero by half the middle: an eclipse is neither.
     """
-    low, middle, high = np.quantile(flux, [0.005, 0.5, 0.995])
-    reach = 3.0 * max(high - low, 1e-6 * abs(middle))
-    wild: NDArray[np.bool_] = (flux > high + reach) | (flux < -0.5 * middle)
+    middle, high = np.quantile(flux, [0.5, 0.95])
+    reach = 10.0 * max(float(high - middle), 1e-6 * abs(float(middle)))
+    wild: NDArray[np.bool_] = (flux > middle + reach) | (flux < -0.5 * middle)
     return wild if wild.mean() <= MOST_OUTLIERS else np.zeros_like(wild)
 
 
