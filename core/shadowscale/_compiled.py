@@ -61,6 +61,7 @@ def summed(function: F) -> F:
     return cast(F, _cached(dispatcher))
 
 
+@cache
 def fingerprint(file: str) -> str:
     """Of the program's version, a module, and all modules of the engine that it imports.
 

@@ -5,10 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-from scipy.ndimage import median_filter
 
 from shadowscale.data.photometry import Floats
 from shadowscale.timing.light_points import LightPoints, isolated, robust_scatter
+from shadowscale.timing.running import running_median
 
 MOST_POINTS = 6000  # neighbours are averaged where there are more
 WIDEST_CELL = 0.014  # [d] and no wider than this
@@ -62,7 +62,7 @@ def without_slow_variation(data: SearchData) -> SearchData | None:
     mass = np.bincount(cells, data.weight, size)
     centres = (np.arange(size) + 0.5) * SLOW_CELL
     mean = np.interp(centres, centres[filled], total[filled] / mass[filled])
-    slow = median_filter(mean, size=int(SLOW_WINDOW / SLOW_CELL) + 1, mode="nearest")
+    slow = running_median(mean, int(SLOW_WINDOW / SLOW_CELL) + 1)
     return _data(
         data.origin + data.time, data.value - np.interp(data.time, centres, slow), data.weight
     )

@@ -6,7 +6,6 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.ndimage import median_filter
 
 from shadowscale.data.photometry import Floats
 from shadowscale.timing.eclipse_fit import EclipseFit, fit_eclipse
@@ -14,6 +13,7 @@ from shadowscale.timing.fold import Dip, nearest
 from shadowscale.timing.light_points import LightPoints, robust_scatter
 from shadowscale.timing.profile import TRAPEZOID, Profile
 from shadowscale.timing.results import Span
+from shadowscale.timing.running import running_median
 from shadowscale.timing.shape_fit import ShapeData, predicted
 
 MARGIN = 0.4  # light on either side of an eclipse, in durations
@@ -109,7 +109,7 @@ def _ordinary(phase: Floats, residuals: Floats) -> NDArray[np.bool_]:
     """
     order = np.argsort(phase, kind="stable")
     away = np.empty_like(residuals)
-    away[order] = residuals[order] - median_filter(residuals[order], NEIGHBOURS, mode="nearest")
+    away[order] = residuals[order] - running_median(residuals[order], NEIGHBOURS)
     return np.asarray(np.abs(away) < OUTLIER * max(robust_scatter(away), 1e-12))
 
 
