@@ -157,6 +157,13 @@ class Bench(QMainWindow):
         with trouble.guard("opening " + ", ".join(Path(path).name for path in paths)):
             self.files.open_paths([Path(path) for path in paths])
 
+    def open_sample(self, path: str) -> None:
+        """Open a sample and solve it, so that a newcomer sees a whole sheet at once."""
+        self.open_paths([path])
+        session = self.desk.session
+        if session.photometry is not None and session.solution is None:
+            self.work.solve()
+
     def dragEnterEvent(self, event: QDragEnterEvent) -> None:
         """Files may be dropped anywhere."""
         if event.mimeData().hasUrls():
@@ -206,6 +213,7 @@ class Bench(QMainWindow):
         self.warmer.ready.connect(self._show_all)
         self.start.open_wanted.connect(trouble.guarded("opening", self.files.ask_open))
         self.start.path_wanted.connect(lambda path: self.open_paths([path]))
+        self.start.sample_wanted.connect(self.open_sample)
         trouble.bell().arose.connect(self._trouble)
         QApplication.styleHints().colorSchemeChanged.connect(self.dress)
 
@@ -215,6 +223,7 @@ class Bench(QMainWindow):
     def _asked(self, what: str, argument: Any) -> None:
         calls: dict[str, Callable[[], object]] = {
             "search period": self.work.search_period,
+            "solve": self.work.solve,
             "fold": lambda: self.work.fold(*argument),
             "brushed": lambda: self.points.brushed(argument),
             "pair": lambda: self._show_pair(argument),

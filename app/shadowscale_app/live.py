@@ -16,7 +16,7 @@ from shadowscale_app import trouble
 from shadowscale_app.desk import Desk
 from shadowscale_app.jobs import Answer, LiveLane, Work
 
-THROTTLE_MS = 60  # between two requests while something is being dragged
+THROTTLE_MS = 60  # before the whole solver is asked: the hand may not be done yet
 
 
 @dataclass(frozen=True, eq=False)
@@ -47,7 +47,6 @@ class Live(QObject):
         self._again = False
         self._timer = QTimer(self)
         self._timer.setSingleShot(True)
-        self._timer.setInterval(THROTTLE_MS)
         self._timer.timeout.connect(self._submit)
         desk.complete = self._with_geometry
         lane.answered.connect(self._answered)
@@ -56,7 +55,8 @@ class Live(QObject):
     def ask(self) -> None:
         """Ask for a full solution of the present session."""
         if not self._timer.isActive():
-            self._timer.start()
+            quick = can_follow(self._desk.session, self._origin)
+            self._timer.start(0 if quick else THROTTLE_MS)
 
     def wait_until_idle(self) -> bool:
         """For tests: let everything that was asked for arrive."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 
 import pytest
 from PySide6.QtCore import Qt
@@ -11,6 +12,7 @@ from PySide6.QtWidgets import QApplication
 
 from made_up import made_up_session
 from shadowscale.geometry.published import PUBLISHED
+from shadowscale.guide import page
 from shadowscale.view.pairs import pair
 from shadowscale_app import theme
 from shadowscale_app.actions import MENUS, TABLE, keys
@@ -216,3 +218,31 @@ def test_the_scheme_reaches_every_picture(bench: Bench, scheme: str) -> None:
     for picture in bench.pictures():
         assert picture.box.background.brush().color().name().upper() == ground.upper()
     bench.choose_scheme(theme.FOLLOW)
+
+
+def test_before_a_solution_the_empty_panes_offer_to_solve(
+    bench: Bench, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    asked: list[str] = []
+    monkeypatch.setattr(bench.work, "solve", lambda: asked.append("solve"))
+    raw = made_up_session(solved=False)
+    bench.desk.begin(replace(raw, plan=replace(raw.plan, period=None, epoch=None)))
+    QApplication.processEvents()
+    pane = bench.panes["Eclipses"]
+
+    assert not pane.pairs["primary"].isVisible()
+    QTest.mouseClick(pane.inviting.invitation.button, Qt.MouseButton.LeftButton)
+    bench.desk.begin(made_up_session())
+
+    assert asked == ["solve"]
+    assert pane.pairs["primary"].isVisible()
+
+
+def test_the_help_holds_the_guide(bench: Bench) -> None:
+    pane = bench.panes["Help"]
+    assert "F5" in pane.text.toPlainText()
+
+    pane.choice.setCurrentIndex(pane.choice.findData("data"))
+
+    heading = page("data").title
+    assert pane.text.toPlainText().startswith(heading)

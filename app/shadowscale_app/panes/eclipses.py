@@ -7,12 +7,15 @@ from PySide6.QtWidgets import QLabel, QSizePolicy, QSplitter, QVBoxLayout, QWidg
 
 from shadowscale.session.session import Markers, Session
 from shadowscale.view.geometry_words import geometry_lines
+from shadowscale.view.light_points import ephemeris
 from shadowscale_app import theme
+from shadowscale_app.panes.empty import Inviting
 from shadowscale_app.panes.light_pair import LightPair
 from shadowscale_app.panes.marking import Marking
 from shadowscale_app.panes.pane import Pane
 
 PLAIN = {"primary": (-0.1, 0.1), "secondary": (0.4, 0.6)}
+NOTHING = "Both eclipses appear here, enlarged, once the period is known."
 MARGIN = 0.28  # of the duration, to either side
 
 
@@ -46,6 +49,8 @@ class EclipsesPane(Pane):
             pair.pointed.connect(self.pointed)
             split.addWidget(_titled(f"{part.capitalize()} eclipse", pair))
             self._zoom(part, None)
+        self.inviting = Inviting(split, NOTHING, "Solve")
+        self.inviting.accepted.connect(lambda: self.asked.emit("solve", None))
         self.geometry_words = QLabel("")
         self.geometry_words.setContentsMargins(10, 0, 10, 2)
         self.geometry_words.setFont(theme.small_font())
@@ -55,11 +60,12 @@ class EclipsesPane(Pane):
         layout = QVBoxLayout(self)
         layout.setContentsMargins(0, 0, 0, 0)
         layout.setSpacing(0)
-        layout.addWidget(split, 1)
+        layout.addWidget(self.inviting, 1)
         layout.addWidget(self.geometry_words)
 
     def refresh(self, names: frozenset[str]) -> None:
         """Draw what changed; the view goes to the markers when they first appear, and stays while they move."""
+        self.inviting.show_picture(ephemeris(self.session) is not None)
         for pair in self.pairs.values():
             pair.show_light(self.session, names)
         if names & {"contact", "solution", "view"}:

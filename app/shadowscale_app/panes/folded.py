@@ -4,10 +4,16 @@ from __future__ import annotations
 
 from PySide6.QtWidgets import QVBoxLayout, QWidget
 
+from shadowscale.view.light_points import ephemeris
 from shadowscale_app.panes.chips import BandChips
+from shadowscale_app.panes.empty import Inviting
 from shadowscale_app.panes.light_pair import LightPair
 from shadowscale_app.panes.marking import Marking
 from shadowscale_app.panes.pane import Pane
+
+NOTHING = (
+    "All points over the phase of the orbit appear here once the period is known. Solving finds it."
+)
 
 
 class FoldedPane(Pane):
@@ -33,10 +39,13 @@ class FoldedPane(Pane):
         layout.setContentsMargins(0, 0, 0, 0)
         layout.setSpacing(0)
         layout.addWidget(self.chips)
-        layout.addWidget(self.pair, 1)
+        self.inviting = Inviting(self.pair, NOTHING, "Solve")
+        self.inviting.accepted.connect(lambda: self.asked.emit("solve", None))
+        layout.addWidget(self.inviting, 1)
 
     def refresh(self, names: frozenset[str]) -> None:
         """Draw what changed."""
+        self.inviting.show_picture(ephemeris(self.session) is not None)
         self.pair.show_light(self.session, names)
         if names & {"photometry", "view"}:
             self.chips.show_bands(self.session)

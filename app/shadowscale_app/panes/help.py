@@ -1,12 +1,13 @@
-"""What each picture shows, and the keys."""
+"""What each picture shows, the keys, and the guide that comes with the program."""
 
 from __future__ import annotations
 
 from collections.abc import Iterable
 from html import escape
 
-from PySide6.QtWidgets import QTextBrowser, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QComboBox, QTextBrowser, QVBoxLayout, QWidget
 
+from shadowscale.guide import page, pages
 from shadowscale_app.panes.pane import Pane
 
 MARKER_KEYS = (
@@ -22,21 +23,29 @@ MARKER_KEYS = (
         "zoom, move a picture; Shift and drag zooms into a rectangle; double click shows everything",
     ),
 )
+PICTURES = "The pictures and the keys"
 
 
 class HelpPane(Pane):
-    """One page, made from the panes' own words and the table of actions."""
+    """A page made from the panes' own words and the table of actions; the guide's pages behind it."""
 
     title = "Help"
-    about = "What each picture shows, and all keys."
+    about = "What each picture shows, all keys, and the guide."
 
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
+        self._own = ""
+        self.choice = QComboBox()
+        self.choice.setAccessibleName("Page of the help")
+        self.choice.addItem(PICTURES, "")
+        self.choice.currentIndexChanged.connect(self._show)
         self.text = QTextBrowser()
+        self.text.setOpenLinks(False)
         self.text.setFrameShape(QTextBrowser.Shape.NoFrame)
         self.text.setAccessibleName("Help")
         layout = QVBoxLayout(self)
-        layout.setContentsMargins(0, 0, 0, 0)
+        layout.setContentsMargins(8, 8, 0, 0)
+        layout.addWidget(self.choice)
         layout.addWidget(self.text)
 
     def write(self, panes: Iterable[Pane], keys: Iterable[tuple[str, str]]) -> None:
@@ -49,4 +58,15 @@ class HelpPane(Pane):
                 f"<tr><td><b>{escape(key)}</b>&nbsp;&nbsp;</td><td>{escape(words)}</td></tr>"
             )
         parts.append("</table>")
-        self.text.setHtml("".join(parts))
+        self._own = "".join(parts)
+        if self.choice.count() == 1:
+            for each in pages():
+                self.choice.addItem(each.title, each.name)
+        self._show()
+
+    def _show(self, _index: int = 0) -> None:
+        name = self.choice.currentData()
+        if name:
+            self.text.setMarkdown(page(name).text)
+        else:
+            self.text.setHtml(self._own)

@@ -9,8 +9,11 @@ from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QSizePolicy, QVBox
 from shadowscale.view.pairs import Pair, choices, most_correlated, pair
 from shadowscale.view.written import symbol
 from shadowscale_app import theme
+from shadowscale_app.panes.empty import Inviting
 from shadowscale_app.panes.pane import Pane
 from shadowscale_app.plots.picture import Picture
+
+NOTHING = "How the errors of two quantities hang together is drawn here once there is a solution."
 
 
 class PairsPane(Pane):
@@ -43,13 +46,16 @@ class PairsPane(Pane):
         layout.setContentsMargins(0, 0, 0, 0)
         layout.setSpacing(0)
         layout.addLayout(row)
-        layout.addWidget(self.picture, 1)
+        self.inviting = Inviting(self.picture, NOTHING, "Solve")
+        self.inviting.accepted.connect(lambda: self.asked.emit("solve", None))
+        layout.addWidget(self.inviting, 1)
 
     def refresh(self, names: frozenset[str]) -> None:
         """Show the pairs of the present solution."""
         if not names & {"solution", "view"}:
             return
         solution = self.session.solution
+        self.inviting.show_picture(solution is not None)
         names_now = choices(solution) if solution is not None else ()
         if [self.boxes[0].itemData(n) for n in range(self.boxes[0].count())] != list(names_now):
             start = most_correlated(solution) if solution is not None else None

@@ -38,7 +38,7 @@ from shadowscale_app.panes.pane import Pane
 NOTHING = "Choose a quantity to move it"
 REACH = 100  # slider steps to either side of where it was taken up
 WATCHED = frozenset({"system", "solution", "plan"})
-WIDTHS = {SYMBOL: 64, VALUE: 110, ERROR: 88, UNIT: 34, STATE: 62, GRADE: 110}
+WIDTHS = {SYMBOL: 74, VALUE: 112, ERROR: 92, UNIT: 34, STATE: 62, GRADE: 104}
 
 
 class QuantitiesPane(Pane):
@@ -63,7 +63,8 @@ class QuantitiesPane(Pane):
         self._make_table()
         self._make_slider()
         row = QHBoxLayout()
-        row.setContentsMargins(8, 3, 8, 4)
+        row.setContentsMargins(10, 5, 12, 6)
+        row.setSpacing(12)
         row.addWidget(self.name)
         row.addWidget(self.slider, 1)
         layout = QVBoxLayout(self)

@@ -13,10 +13,11 @@ MOST_RECENT = 6
 
 
 class StartPane(QWidget):
-    """Signals: `open_wanted()`, `path_wanted(str)`."""
+    """Signals: `open_wanted()`, `path_wanted(str)`, `sample_wanted(str)`."""
 
     open_wanted = Signal()
     path_wanted = Signal(str)
+    sample_wanted = Signal(str)
 
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
@@ -60,14 +61,16 @@ class StartPane(QWidget):
         _empty(self._samples)
         _empty(self._recent)
         if samples:
-            self._samples.addWidget(_heading("Samples: invented stars, ready to solve"), 0, 0)
+            self._samples.addWidget(
+                _heading("Samples: invented stars, opened and solved at a click"), 0, 0
+            )
         for number, (title, words, path) in enumerate(samples):
             button = QPushButton(f"{title}\n{words}")
             button.setObjectName("card")
             button.setAccessibleName(title)
             button.setToolTip(words)
             button.setMinimumWidth(720)
-            button.clicked.connect(lambda _=False, path=path: self.path_wanted.emit(str(path)))
+            button.clicked.connect(lambda _=False, path=path: self.sample_wanted.emit(str(path)))
             self._samples.addWidget(button, 1 + number, 0)
         if recent:
             self._recent.addWidget(_heading("Recent"))

@@ -66,7 +66,8 @@ class ToScalePane(Pane):
 
     def _place(self) -> None:
         row = QHBoxLayout()
-        row.setContentsMargins(6, 2, 8, 2)
+        row.setContentsMargins(8, 4, 12, 4)
+        row.setSpacing(10)
         row.addWidget(self.play)
         row.addWidget(self.slider, 1)
         row.addWidget(self.words)

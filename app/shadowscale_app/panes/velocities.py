@@ -20,6 +20,9 @@ SHAPES = {1: "o", 2: "s"}
 DASHES = {1: Qt.PenStyle.SolidLine, 2: Qt.PenStyle.DashLine}
 WATCHED = frozenset({"velocities", "system", "solution", "plan"})
 NOTHING = "No velocities. Open a table of them to weigh the stars: masses need K1 and K2."
+UNFOLDED = (
+    "Velocities appear here over the phase of the orbit once the period is known. Solving finds it."
+)
 
 
 class VelocitiesPane(Pane):
@@ -60,6 +63,7 @@ class VelocitiesPane(Pane):
             return
         found = velocities_over_phase(self.session)
         self.nothing.setVisible(not found)
+        self.nothing.setText(NOTHING if self.session.velocities is None else UNFOLDED)
         self.split.setVisible(bool(found))
         self.points.show_layers(_layers(found, residual=False))
         self.rest_points.show_layers(_layers(found, residual=True))

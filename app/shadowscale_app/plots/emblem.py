@@ -10,9 +10,9 @@ from shadowscale_app import theme
 
 HEIGHT, WIDTH = 120, 720
 RADIUS, SHADOW = 30.0, 21.0
-PLACES = (0.12, 0.31, 0.5, 0.69, 0.88)
+PLACES = (0.13, 0.31, 0.5, 0.69, 0.87)
 # how far the shadow is from the star's middle at each place, in radii, and the light that is left
-STEPS = ((-2.2, 0.0), (-1.05, 0.42), (0.0, 1.0), (1.05, 0.42), (2.2, 0.0))
+STEPS = ((-2.1, 0.0), (-1.05, 0.42), (0.0, 1.0), (1.05, 0.42), (2.1, 0.0))
 DROP = 26.0
 
 
