@@ -12,10 +12,11 @@ import os
 import platform
 from datetime import UTC, datetime
 from importlib.metadata import version
+from importlib.util import find_spec
 from pathlib import Path
 
 from processes import timed_processes
-from timing import table, timed
+from timing import CLOCKS, table, timed
 from works import all_works
 
 PACKAGES = ("shadowscale", "numpy", "scipy", "numba", "llvmlite", "batman-package")
@@ -29,11 +30,15 @@ def main() -> None:
     results = []
     if not options.processes_only:
         for work in all_works(quick=options.quick):
-            results.append(timed(work, repeats))
+            results.append(timed(work, repeats, CLOCKS[options.clock]))
+    if not options.works_only and find_spec("PySide6") is not None:
+        from desktop import desktop_results
+
+        results += desktop_results(quick=options.quick)
     if not options.works_only:
         results += timed_processes(1 if options.quick else 3, quick=options.quick)
     print(f"{platform.processor() or platform.machine()}, {os.cpu_count()} cores, "
-          f"{datetime.now(UTC):%Y-%m-%d}; load {_load()}")  # fmt: skip
+          f"{datetime.now(UTC):%Y-%m-%d}; {options.clock} clock, load {_load()}")  # fmt: skip
     print(table(results))
     if options.json is not None:
         about = {
@@ -41,6 +46,7 @@ def main() -> None:
             "python": platform.python_version(),
             "platform": platform.platform(),
             "cores": os.cpu_count(),
+            "clock": options.clock,
             "load": _load(),
             "versions": {name: version(name) for name in PACKAGES},
             "works": [each.as_dict() for each in results],
@@ -58,6 +64,8 @@ def _options() -> argparse.Namespace:
     parser.add_argument(
         "--repeats", type=int, default=REPEATS, help=f"runs each, default {REPEATS}"
     )
+    parser.add_argument("--clock", choices=CLOCKS, default="wall",
+                        help="cpu: only what this process computed, where others are busy")  # fmt: skip
     parser.add_argument("--json", type=Path, help="file for all numbers")
     parser.add_argument("--works-only", action="store_true", help="no whole processes")
     parser.add_argument("--processes-only", action="store_true", help="whole processes alone")

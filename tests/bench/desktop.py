@@ -1,0 +1,164 @@
+"""How soon the desktop follows a hand: from a move of the mouse to what is painted of it."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Iterator
+from contextlib import contextmanager
+from pathlib import Path
+from tempfile import TemporaryDirectory
+from time import perf_counter, sleep
+from typing import TYPE_CHECKING
+
+from timing import Timed
+
+from shadowscale.fit.plan import Plan
+from shadowscale.jobs.simulate import simulate, write_simulation
+from shadowscale.jobs.solve import solve_session
+from shadowscale.jobs.spec import (
+    BandSpec,
+    Noise,
+    PhotometrySpec,
+    Run,
+    Spec,
+    VelocitySource,
+    VelocitySpec,
+)
+from shadowscale.session.session import Session, Source
+from shadowscale.session.tables import with_tables
+from shadowscale.view.contacts import with_start_markers
+
+if TYPE_CHECKING:
+    from PySide6.QtCore import QPoint
+
+    from shadowscale_app.bench import Bench
+    from shadowscale_app.plots.marked import MarkedPicture
+
+NIGHTS, QUICK_NIGHTS = 40, 4
+HOURS, CADENCE = 10.0, 72.0  # 500 points a night
+MOVES, QUICK_MOVES = 25, 3
+START = 12  # pixels until a press is surely a drag
+BETWEEN = 0.03  # [s] moves that come faster are passed over by the plots
+LONGEST = 20.0  # [s] for a fit to arrive
+EPOCH = 2459000.3127
+SYSTEM = {
+    "period": 2.4371926, "epoch": EPOCH, "r1": 0.151, "r2": 0.118, "inclination": 88.2,
+    "ecosw": 0.0, "esinw": 0.0, "K1": 98.4, "K2": 112.9, "gamma1": -14.2, "gamma2": -14.2,
+}  # fmt: skip
+
+
+def desktop_results(*, quick: bool) -> list[Timed]:
+    """Seconds from a move of the mouse to the painted contact solution, and to the painted fit."""
+    os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
+    with TemporaryDirectory() as folder:
+        session = _solved(Path(folder), QUICK_NIGHTS if quick else NIGHTS)
+        with _bench(session) as bench:
+            moves = _moved(bench, QUICK_MOVES if quick else MOVES)
+    assert session.photometry is not None
+    size = f"{session.photometry.time.size} points"
+    contact, fit = zip(*moves[1:], strict=True)
+    return [
+        Timed("drag: contact solution painted", size, "", None, True, "target 60 ms", contact),
+        Timed("drag: whole fit painted", size, "", None, True, "target 150 ms", fit),
+    ]
+
+
+def _moved(bench: Bench, moves: int) -> list[tuple[float, float]]:
+    """The first contact of primary eclipse pulled outwards, a pixel a move."""
+    from PySide6.QtCore import Qt
+    from PySide6.QtTest import QTest
+    from PySide6.QtWidgets import QApplication
+
+    pair = bench.panes["Eclipses"].pairs["primary"]  # type: ignore[attr-defined]
+    picture: MarkedPicture = pair.curve
+    phase = picture.lines["primary.0"].value()
+    view = picture.visible()
+    place = picture.place_of(phase, view.top() + 0.3 * view.height()).toPoint()
+    QTest.mouseMove(picture.viewport(), place)
+    QApplication.processEvents()
+    QTest.mousePress(picture.viewport(), Qt.MouseButton.LeftButton, pos=place)
+    for _ in range(START):
+        _step(picture, place)
+        QApplication.processEvents()
+    bench.live.wait_until_idle()
+    return [_timed_move(bench, picture, place) for _ in range(moves)]
+
+
+def _timed_move(bench: Bench, picture: MarkedPicture, place: QPoint) -> tuple[float, float]:
+    """One move: seconds to the painted contact solution, and to the painted fit."""
+    from PySide6.QtWidgets import QApplication
+
+    before = bench.desk.session
+    sleep(BETWEEN)
+    start = perf_counter()
+    _step(picture, place)
+    picture.viewport().repaint()
+    shown = perf_counter() - start
+    if bench.desk.session.contact is before.contact:
+        raise RuntimeError("the marker did not follow the mouse")
+    while bench.desk.session.solution is before.solution:
+        QApplication.processEvents()
+        if perf_counter() - start > LONGEST:
+            raise RuntimeError("the fit did not follow the marker")
+    picture.viewport().repaint()
+    followed = perf_counter() - start
+    bench.live.wait_until_idle()
+    return shown, followed
+
+
+def _step(picture: MarkedPicture, place: QPoint) -> None:
+    """A pixel to the left with the button held; QTest's own moves carry no buttons on every platform."""
+    from PySide6.QtCore import QEvent, QPointF, Qt
+    from PySide6.QtGui import QMouseEvent
+    from PySide6.QtWidgets import QApplication
+
+    place.setX(place.x() - 1)
+    port, button = picture.viewport(), Qt.MouseButton
+    event = QMouseEvent(
+        QEvent.Type.MouseMove, QPointF(place), QPointF(port.mapToGlobal(place)), button.NoButton,
+        button.LeftButton, Qt.KeyboardModifier.NoModifier,
+    )  # fmt: skip
+    QApplication.sendEvent(port, event)
+
+
+@contextmanager
+def _bench(session: Session) -> Iterator[Bench]:
+    from PySide6.QtWidgets import QApplication
+
+    from shadowscale_app import theme
+    from shadowscale_app.bench import Bench
+    from shadowscale_app.warm import READY
+
+    application = QApplication.instance() or QApplication(["bench"])
+    assert isinstance(application, QApplication)
+    theme.dress(application)
+    READY.reach()
+    window = Bench()
+    window.resize(1440, 900)
+    window.desk.begin(session)
+    window.show()
+    application.processEvents()
+    yield window
+    window.end()
+    window.hide()
+
+
+def _solved(folder: Path, nights: int) -> Session:
+    spec = Spec(
+        system=SYSTEM,
+        bands={"V": BandSpec(0.62, (0.62, 0.55), (0.68, 0.60))},
+        photometry=PhotometrySpec(
+            (Run(EPOCH - 0.2, HOURS, CADENCE, nights),), Noise(0.003), errors=True
+        ),
+        velocities=VelocitySpec(EPOCH, EPOCH + 60, (VelocitySource("north", 24),)),
+        seed=1,
+    )
+    write_simulation(simulate(spec), folder)
+    names = sorted(folder.glob("photometry*"))
+    session = Session(
+        name="invented pair",
+        plan=Plan(period=SYSTEM["period"], epoch=EPOCH),
+        photometry_sources=tuple(Source(str(name)) for name in names),
+        velocity_sources=(Source(str(folder / "velocities.csv")),),
+    )
+    return with_start_markers(solve_session(with_tables(session)))
