@@ -237,7 +237,7 @@ def solved(
 @cache
 def ordinary() -> Solved:
     """Two stars in one band with the velocities of both: total and annular, circular, no third light."""
-    truth = invented()
+    truth = invented(light_time=True)  # as the engine takes it where both stars were measured
     return solved(truth, velocities=observed_velocities(truth))
 
 

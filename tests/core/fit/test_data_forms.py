@@ -157,7 +157,7 @@ def test_only_primary_eclipses_were_seen() -> None:
 def test_the_period_is_found_where_none_is_given() -> None:
     truth = ordinary().truth
     random = np.random.default_rng(9)
-    time = EPOCH - 20 + np.arange(40 * 150) / 150
+    time = EPOCH - 20 + np.arange(40 * 60) / 60
     flux = model_light(truth, "V", time) + 2e-3 * random.standard_normal(time.size)
     found = solved(
         truth, Plan(levels="one"), photometry=photometry_of(time, flux, 2e-3),
