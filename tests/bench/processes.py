@@ -78,24 +78,29 @@ def timed_processes(repeats: int, *, quick: bool) -> list[Timed]:
 def _timed(process: Process, repeats: int) -> Timed:
     _run(process)
     runs = [_run(process) for _ in range(repeats)]
-    checked = f"wanted {process.wanted}" if process.wanted else ""
+    checked = f"computing {min(run[1] for run in runs):.2f} s"
+    checked += f"; wanted {process.wanted}" if process.wanted else ""
     return Timed(
         process.name, process.size, "", None, False, checked, tuple(run[0] for run in runs),
-        peak=max(run[1] for run in runs),
+        peak=max(run[2] for run in runs),
     )  # fmt: skip
 
 
-def _run(process: Process) -> tuple[float, float]:
-    """Seconds and peak memory [MB] of one run; a failure ends the measurement with its words."""
+def _run(process: Process) -> tuple[float, float, float]:
+    """Seconds, those of computing, and peak memory [MB] of one run; a failure ends the measurement with its words."""
     environment = {**os.environ, "PYTHONPATH": str(Path(__file__).parent)}
     launcher = [sys.executable, "-I", "-S", str(Path(__file__).with_name("launcher.py"))]
     done = subprocess.run(
         [*launcher, *process.words], env=environment, capture_output=True, text=True, check=False
     )
-    took, peak, status = done.stderr.split()[-3:]
+    took, busy, peak, status = done.stderr.split()[-4:]
     if status != "0":
         raise SystemExit(f"{process.name}: {done.stderr[-2000:]}")
-    return float(took), float(peak) / (1024 * 1024 if sys.platform == "darwin" else 1024)
+    return (
+        float(took),
+        float(busy),
+        float(peak) / (1024 * 1024 if sys.platform == "darwin" else 1024),
+    )
 
 
 def tables(folder: Path, points: int, pairs: int) -> tuple[Path, Path]:

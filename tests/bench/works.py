@@ -60,6 +60,11 @@ def moved(values: dict[str, float], turn: int) -> dict[str, float]:
     return {**values, "epoch": values["epoch"] + 1e-9 * (turn % 1000)}
 
 
+def shifted(system: System, turn: int) -> System:
+    """The same in the engine's terms."""
+    return system.with_values({"epoch": system.values["epoch"] + 1e-9 * (turn % 1000)})
+
+
 def light_curves(sizes: Sequence[int], wanted: dict[int, float]) -> list[Work]:
     """Light alone, quadratic law."""
     works = []
@@ -70,7 +75,7 @@ def light_curves(sizes: Sequence[int], wanted: dict[int, float]) -> list[Work]:
         works.append(
             Work(
                 "light curve, quadratic, e = 0.37", f"{size:,} points",
-                lambda t=times, n=turn: model_light(system_of(moved(VALUES, next(n))), BAND, t),
+                lambda s=system, t=times, n=turn: model_light(shifted(s, next(n)), BAND, t),
                 lambda r=rival, n=turn: r.light(moved(VALUES, next(n))),
                 COMPOSITE, wanted.get(size), checked=f"light differs by {apart:.0e}",
             )
@@ -110,9 +115,7 @@ def derivatives(size: int) -> list[Work]:
         return objective(start + 1e-9 * (next(turn) % 1000))
 
     def rows() -> object:
-        model = BandModel.at(
-            system, system_of(moved(VALUES, next(turn))).values, BAND, derivatives=True
-        )
+        model = BandModel.at(system, shifted(system, next(turn)).values, BAND, derivatives=True)
         return model.derivatives(times)
 
     def bare() -> object:
@@ -176,7 +179,8 @@ def laws(size: int) -> list[Work]:
     times, turn = times_of(size), count()
 
     def light(law: str) -> Callable[[], object]:
-        return lambda: model_light(system_of(moved(VALUES, next(turn)), law), BAND, times)
+        system = system_of(VALUES, law)
+        return lambda: model_light(shifted(system, next(turn)), BAND, times)
 
     said = f"{size:,} points"
     return [
@@ -191,9 +195,8 @@ def exposures(size: int) -> list[Work]:
     times, turn = times_of(size), count()
 
     def light(exposure: float) -> Callable[[], object]:
-        return lambda: model_light(
-            system_of(moved(values, next(turn)), exposure=exposure), BAND, times
-        )
+        system = system_of(values, exposure=exposure)
+        return lambda: model_light(shifted(system, next(turn)), BAND, times)
 
     some = values["epoch"] + np.linspace(-0.08, 0.08, 41)
     parts = (np.arange(4000) + 0.5) / 4000 - 0.5
@@ -209,11 +212,12 @@ def exposures(size: int) -> list[Work]:
 def growth(size: int) -> list[Work]:
     """Ten times the points; and ten times the points outside eclipse alone."""
     short, long, turn = times_of(size), times_of(10 * size), count()
-    light = model_light(system_of(VALUES), BAND, long)
+    system = system_of(VALUES)
+    light = model_light(system, BAND, long)
     quiet = np.sort(np.concatenate([short, long[light == 1.0]]))
 
     def at(times: Floats) -> Callable[[], object]:
-        return lambda: model_light(system_of(moved(VALUES, next(turn))), BAND, times)
+        return lambda: model_light(shifted(system, next(turn)), BAND, times)
 
     said = f"{size:,} points"
     return [
