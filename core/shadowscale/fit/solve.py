@@ -135,6 +135,7 @@ def solve(
     check_velocities_follow(best)
     progress.report(0.9, "uncertainties")
     best, ends = _with_valley(work, best)
+    branches = [Branch(each.fitted, each.fitted.chi2 - best.chi2) for each in branches]
     if (wide := widened(best, ends, branches)) is not ends:
         words = "other solutions are as good within two sigma: the limits take them in"
         work.decisions.append(Decision("errors", "alternatives", words))
