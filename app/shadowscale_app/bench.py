@@ -265,8 +265,8 @@ class Bench(QMainWindow):
     def _show_pair(self, names: tuple[str, str]) -> None:
         pane = self.panes["Correlation"]
         assert isinstance(pane, PairsPane)
-        pane.choose(*names)
         self.bring("Correlation")
+        pane.choose(*names)
 
     def _searched(self, found: object) -> None:
         pane = self.panes["Period"]

@@ -75,6 +75,7 @@ def test_play_moves_the_stars_and_pause_stops_them(bench: Bench, qtbot: object) 
 
 
 def test_the_ellipse_throws_the_errors_as_its_shadows(bench: Bench) -> None:
+    bench.bring("Correlation")
     pane = bench.panes["Correlation"]
     pane.choose("radius_sum", "radius_ratio")
     found = pair(bench.desk.session.solution, "radius_sum", "radius_ratio")
@@ -147,6 +148,7 @@ def test_doubts_are_listed_gravest_first(bench: Bench) -> None:
 
 
 def test_the_mass_radius_picture_names_every_paper(bench: Bench) -> None:
+    bench.bring("Mass and radius")
     pane = bench.panes["Mass and radius"]
 
     words = list(pane.others.data["data"])
@@ -246,3 +248,14 @@ def test_the_help_holds_the_guide(bench: Bench) -> None:
 
     heading = page("data").title
     assert pane.text.toPlainText().startswith(heading)
+
+
+def test_a_pane_behind_catches_up_when_it_comes_to_the_front(bench: Bench) -> None:
+    pane = bench.panes["Correlation"]
+    bench.desk.begin(made_up_session(("V", "I")))
+    assert pane.boxes[0].count() == 0
+
+    bench.bring("Correlation")
+
+    assert pane.boxes[0].count() > 1
+    assert pane.session is bench.desk.session

@@ -15,6 +15,7 @@ from shadowscale_app.plots.picture import Picture
 class MassRadiusPane(Pane):
     """The picture; rest the mouse on a point to see which star and which paper."""
 
+    patient = True
     title = "Mass and radius"
     about = (
         "Both stars among stars of well-studied detached pairs with published masses and radii; rest the mouse on a "

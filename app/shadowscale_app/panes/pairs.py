@@ -19,6 +19,7 @@ NOTHING = "How the errors of two quantities hang together is drawn here once the
 class PairsPane(Pane):
     """The picture of any two quantities."""
 
+    patient = True
     title = "Correlation"
     about = (
         "The common uncertainty of two quantities. The inner ellipse throws the quoted errors as its shadows on the "

@@ -38,7 +38,7 @@ from shadowscale_app.panes.pane import Pane
 NOTHING = "Choose a quantity to move it"
 REACH = 100  # slider steps to either side of where it was taken up
 WATCHED = frozenset({"system", "solution", "plan"})
-WIDTHS = {SYMBOL: 66, VALUE: 108, ERROR: 102, UNIT: 30, STATE: 60, GRADE: 104}
+WIDTHS = {SYMBOL: 64, VALUE: 114, ERROR: 100, UNIT: 34, STATE: 60, GRADE: 104}
 
 
 class QuantitiesPane(Pane):
