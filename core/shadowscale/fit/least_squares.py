@@ -23,6 +23,7 @@ Floats = NDArray[np.float64]
 PATIENCE = 4
 STALLED = 0.02
 REJECTIONS = 16
+BLOCKED = 1.0  # promise of a step that may be left when every trial was rejected
 
 
 @dataclass(frozen=True, eq=False)
@@ -95,7 +96,8 @@ def minimise(
                 break
             damping, growth = max(damping, 1e-8) * growth, growth * 2.0
         else:
-            return Minimum(x, here, iteration, promised < stalled)
+            # No step however short goes down: the floor, as far as the numbers tell.
+            return Minimum(x, here, iteration, promised < BLOCKED)
         gained = here.chi2 - there.chi2
         expected = float(step @ (2.0 * here.downhill - here.matrix @ step))
         quality = min(gained / expected, 1.0) if expected > 0.0 else 1.0
