@@ -82,7 +82,10 @@ def add_output(parser: Parser) -> None:
 def add_report(parser: Parser) -> None:
     """Whether the report is written."""
     parser.add_argument(
-        "--report", metavar="yes|no", default="no", help="report and figures too (some seconds more), default no"
+        "--report",
+        metavar="yes|no",
+        default="no",
+        help="report and figures too (some seconds more), default no",
     )
 
 

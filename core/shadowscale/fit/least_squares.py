@@ -131,7 +131,7 @@ def _solve(matrix: Floats, right: Floats) -> Floats:
         solved = np.linalg.solve(matrix, right)
     except np.linalg.LinAlgError:
         solved = np.linalg.lstsq(matrix, right, rcond=1e-14)[0]
-    return solved
+    return np.asarray(solved, dtype=np.float64)
 
 
 def _step(normal: Normal, moving: NDArray[np.bool_], damping: float) -> Floats:

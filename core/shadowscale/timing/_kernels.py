@@ -279,6 +279,153 @@ def _read(
 
 
 @compiled
+def least_shape(
+    phase: Floats,
+    flux: Floats,
+    sigma: Floats,
+    band: Ints,
+    bands: int,
+    centre: float,
+    nodes: Floats,
+    node_weights: Floats,
+    table: Floats,
+    low: Floats,
+    high: Floats,
+    symmetric: bool,
+    stop: Floats,
+    values: Floats,
+    normal: Floats,
+) -> float:
+    """Levenberg-Marquardt for the shape of one eclipse within limits; returns the least chi2.
+
+    The first arrays as in `eclipse_rows`; low, high : (m,) limits
+    symmetric : egress like ingress;  stop : most steps, gain in chi2 that ends them, and that in parts of chi2
+    values : (m,) start, then the solution;  normal : (m, m) information matrix there, written
+    """
+    size = values.size
+    model = np.empty(phase.size)
+    jacobian = np.empty((phase.size, size))
+    gradient = np.empty(size)
+    trial_normal = np.empty((size, size))
+    trial_gradient = np.empty(size)
+    trial = np.empty(size)
+    _bound(values, low, high, symmetric)
+    eclipse_rows(phase, band, bands, centre, nodes, node_weights, table, values, model, jacobian)
+    chi2 = _information(flux, sigma, model, jacobian, symmetric, normal, gradient)
+    damping = 1e-3
+    for _ in range(int(stop[0])):
+        trial[:] = values
+        _add_step(trial, normal, gradient, low, high, damping)
+        _bound(trial, low, high, symmetric)
+        eclipse_rows(phase, band, bands, centre, nodes, node_weights, table, trial, model, jacobian)
+        gain = chi2 - _information(
+            flux, sigma, model, jacobian, symmetric, trial_normal, trial_gradient
+        )
+        if gain >= 0:
+            values[:] = trial
+            normal[:] = trial_normal
+            gradient[:] = trial_gradient
+            chi2 -= gain
+            if gain < stop[1] + stop[2] * chi2 and damping <= 1:
+                break
+            damping = max(damping / 10, 1e-9)
+        elif damping > 1e5:
+            break
+        else:
+            damping *= 10
+    return chi2
+
+
+@compiled
+def _bound(values: Floats, low: Floats, high: Floats, symmetric: bool) -> None:
+    """Into the limits, and the egress like the ingress where those are tied."""
+    for i in range(values.size):
+        values[i] = min(max(values[i], low[i]), high[i])
+    if symmetric:
+        values[3] = values[2]
+
+
+@compiled
+def _information(
+    flux: Floats,
+    sigma: Floats,
+    model: Floats,
+    jacobian: Floats,
+    symmetric: bool,
+    normal: Floats,
+    gradient: Floats,
+) -> float:
+    """chi2; the normal matrix (m, m) and gradient (m,) are written. A tied egress has none of its own."""
+    size = gradient.size
+    normal[:] = 0.0
+    gradient[:] = 0.0
+    chi2 = 0.0
+    for i in range(flux.size):
+        weight = 1 / sigma[i]
+        residual = (flux[i] - model[i]) * weight
+        chi2 += residual * residual
+        row = jacobian[i]
+        if symmetric:
+            row[2] += row[3]
+            row[3] = 0.0
+        for a in range(size):
+            left = row[a] * weight
+            if left == 0.0:
+                continue
+            gradient[a] += left * residual
+            for b in range(a + 1):
+                normal[a, b] += left * row[b] * weight
+    for a in range(size):
+        for b in range(a):
+            normal[b, a] = normal[a, b]
+    return chi2
+
+
+@compiled
+def _add_step(
+    values: Floats, normal: Floats, gradient: Floats, low: Floats, high: Floats, damping: float
+) -> None:
+    """Add a damped step; what stands at a limit and is pushed outward takes no part in it."""
+    size = values.size
+    top = 0.0
+    for a in range(size):
+        top = max(top, normal[a, a])
+    free = np.empty(size, np.int64)
+    count = 0
+    for a in range(size):
+        outward = (values[a] <= low[a] and gradient[a] < 0) or (
+            values[a] >= high[a] and gradient[a] > 0
+        )
+        if not outward and normal[a, a] > 0:
+            free[count] = a
+            count += 1
+    # Cholesky factor of the damped matrix of the free parameters, then both substitutions.
+    factor = np.zeros((count, count))
+    step = np.zeros(count)
+    for a in range(count):
+        for b in range(a + 1):
+            total = normal[free[a], free[b]]
+            if a == b:
+                total = total * (1 + damping) + 1e-12 * top
+            for c in range(b):
+                total -= factor[a, c] * factor[b, c]
+            if a == b:
+                factor[a, a] = np.sqrt(max(total, 1e-14 * top))
+            else:
+                factor[a, b] = total / factor[b, b]
+        total = gradient[free[a]]
+        for c in range(a):
+            total -= factor[a, c] * step[c]
+        step[a] = total / factor[a, a]
+    for a in range(count - 1, -1, -1):
+        total = step[a]
+        for c in range(a + 1, count):
+            total -= factor[c, a] * step[c]
+        step[a] = total / factor[a, a]
+        values[free[a]] += step[a]
+
+
+@compiled
 def shape_grid(
     phase: Floats,
     flux: Floats,

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from shadowscale.data.photometry import Floats, Ints
 from shadowscale.timing.fold import Dip, nearest
-from shadowscale.timing.light_points import LightPoints, robust_scatter
+from shadowscale.timing.light_points import LightPoints, robust_scatter, thinned
 
 HALF = 1.0  # half the eclipse's duration in widths of its box, with room to spare
 BESIDE = 1.6  # how far light beside an eclipse is used, in widths of its box
@@ -67,7 +67,7 @@ def band_levels(points: LightPoints, outside: NDArray[np.bool_]) -> Floats:
         rows = points.band == number
         if rows.any():
             best = rows & outside if (rows & outside).any() else rows
-            levels[number] = np.median(points.flux[best])
+            levels[number] = np.median(thinned(points.flux[best]))
     return levels
 
 

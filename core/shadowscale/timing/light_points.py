@@ -11,6 +11,7 @@ from shadowscale.data.photometry import Floats, Ints, Photometry
 from shadowscale.errors import NoSolutionError
 
 FEWEST_POINTS = 20
+ENOUGH = 100_000  # values whose median is as good as that of all
 MAD_TO_SIGMA = 1.4826  # median absolute deviation to standard deviation of a normal distribution
 ISOLATED_GAP = 0.03  # [d] no eclipse comes and goes between neighbours nearer than this
 ALONE = 0.2  # spread of the neighbours over the drop of a lone point
@@ -80,10 +81,30 @@ def light_points(photometry: Photometry) -> LightPoints:
     return _with_noise(points)
 
 
+def averaged(points: LightPoints, width: float) -> LightPoints:
+    """Means of each band in cells of time [d]."""
+    cell = np.floor((points.time - points.time[0]) / width).astype(np.int64)
+    _, first, number = np.unique(
+        cell * len(points.bands) + points.band, return_index=True, return_inverse=True
+    )
+    weight = points.sigma**-2.0
+    mass: Floats = np.bincount(number, weight).astype(float)
+    time = points.time[0] + np.bincount(number, weight * (points.time - points.time[0])) / mass
+    flux = np.bincount(number, weight * points.flux) / mass
+    kept = replace(points.at(first), time=time, flux=flux, sigma=1 / np.sqrt(mass))
+    return kept.at(np.argsort(time, kind="stable"))
+
+
+def thinned(values: Floats) -> Floats:
+    """Some of very many values, evenly taken, for a median that needs no more."""
+    return values[:: values.size // ENOUGH + 1]
+
+
 def robust_scatter(values: Floats) -> float:
     """Standard deviation from the median absolute deviation."""
     if values.size == 0:
         return 0.0
+    values = thinned(values)
     return float(MAD_TO_SIGMA * np.median(np.abs(values - np.median(values))))
 
 
@@ -134,7 +155,7 @@ def _with_noise(points: LightPoints) -> LightPoints:
 def _band_noise(points: LightPoints) -> tuple[Floats, float]:
     """Errors of one band: as given relative to each other, on the scale of the neighbours' scatter."""
     given = points.sigma
-    typical = float(np.nanmedian(given)) if np.isfinite(given).any() else 0.0
+    typical = float(np.nanmedian(thinned(given))) if np.isfinite(given).any() else 0.0
     noise = neighbour_scatter(points.time, points.flux)
     if not noise:
         noise = typical or robust_scatter(points.flux) or 1e-6

@@ -13,16 +13,23 @@ from shadowscale.timing import _kernels
 from shadowscale.timing.box_search import SHORTEST, Spectrum, frequencies, spectrum
 from shadowscale.timing.candidates import Candidate, candidates
 from shadowscale.timing.detached import check_detached, check_radii
-from shadowscale.timing.light_points import LightPoints, light_points
+from shadowscale.timing.light_points import LightPoints, averaged, light_points
 from shadowscale.timing.red_noise import check_red_noise, check_within_nights
 from shadowscale.timing.refine import polished
 from shadowscale.timing.results import PeriodCandidate, PeriodSearch
-from shadowscale.timing.search_data import SearchData, search_data, without_slow_variation
+from shadowscale.timing.search_data import (
+    SearchData,
+    quiet_merged,
+    search_data,
+    without_slow_variation,
+)
 from shadowscale.timing.settle import Settled, settled
 from shadowscale.timing.weigh import AS_GOOD, Weighed, weighed
 
 LONGEST = 0.95  # of the span: an eclipse must come twice
 LEAST_GAIN = 60.0  # chi2 of the best dips; white noise gives 45 at most in 1e7 trials
+MOST_POINTS = 12_000  # more are averaged ...
+CELLS = (0.0015, 0.0035)  # [d] ... in cells of this width, the second where the first is not enough
 SAME = 3e-3  # relative difference of two periods that are one
 SHOWN = 6
 HELP = "give the period, or more data"
@@ -63,7 +70,7 @@ def search_period(
     phase bins name candidates; the least cost of any shape in the eclipses and one level outside
     ranks them; the eclipses themselves, measured on twice the period, settle it.
     """
-    points = light_points(photometry)
+    points = _few_enough(light_points(photometry))
     limits = _limits(period_range, points.span)
     data, seen = _searched(points, limits, progress)
     found = candidates(data, seen, limits)
@@ -79,6 +86,15 @@ def search_period(
     check_within_nights(data, best.refined)
     progress.report(1.0, "period found")
     return _result(best, results)
+
+
+def _few_enough(points: LightPoints) -> LightPoints:
+    """Neighbours averaged where there are more points than the shapes of eclipses need."""
+    for width in CELLS:
+        if points.time.size <= MOST_POINTS:
+            break
+        points = averaged(points, width)
+    return points
 
 
 def _limits(given: tuple[float, float] | None, span: float) -> tuple[float, float]:
@@ -99,13 +115,15 @@ def _searched(
     points: LightPoints, limits: tuple[float, float], progress: Progress
 ) -> tuple[SearchData, Spectrum]:
     """Search the light as it is and, where that can be had, without slow variation; keep the clearer."""
-    raw = search_data(points)
+    dense = search_data(points)
+    calm = without_slow_variation(dense)
+    raw = quiet_merged(dense)
     trial = frequencies(*limits, raw.span)
-    calm = without_slow_variation(raw)
     share = 0.85 if calm is None else 0.42
     best = raw, spectrum(raw, trial, _Part(progress, 0.0, share))
     if calm is None:
         return best
+    calm = quiet_merged(calm)
     other = calm, spectrum(calm, trial, _Part(progress, share, 2 * share))
     return max((best, other), key=_clearness)
 

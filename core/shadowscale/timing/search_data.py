@@ -14,6 +14,9 @@ MOST_POINTS = 6000  # neighbours are averaged where there are more
 WIDEST_CELL = 0.014  # [d] and no wider than this
 SLOW_WINDOW = 1.2  # [d] longer than most eclipses, shorter than most slow variation
 SLOW_CELL = 0.1  # [d]
+LEAST_SLOW = 0.3  # scatter of the running median over the noise of a point that is worth taking out
+QUIET = 2.5  # [sigma] from the usual level
+LONGEST_RUNS = (0.06, 0.15)  # [d] the second where the first leaves too many
 
 
 @dataclass(frozen=True, eq=False)
@@ -52,7 +55,7 @@ def search_data(points: LightPoints) -> SearchData:
 
 
 def without_slow_variation(data: SearchData) -> SearchData | None:
-    """The same less a running median, where the data are dense enough to have one."""
+    """The same less a running median, where the data are dense enough to have one and it is not flat."""
     cells = np.floor(data.time / SLOW_CELL).astype(np.int64)
     size = int(cells[-1]) + 1
     filled = np.bincount(cells, minlength=size) > 0
@@ -63,9 +66,34 @@ def without_slow_variation(data: SearchData) -> SearchData | None:
     centres = (np.arange(size) + 0.5) * SLOW_CELL
     mean = np.interp(centres, centres[filled], total[filled] / mass[filled])
     slow = running_median(mean, int(SLOW_WINDOW / SLOW_CELL) + 1)
+    if robust_scatter(slow) < LEAST_SLOW * float(np.median(data.weight)) ** -0.5:
+        return None
     return _data(
         data.origin + data.time, data.value - np.interp(data.time, centres, slow), data.weight
     )
+
+
+def quiet_merged(data: SearchData) -> SearchData:
+    """The same with runs of points at the usual level averaged, where there are very many.
+
+    Light that does not change needs few points; those that dip, or stray, are kept one by one.
+    """
+    for longest in LONGEST_RUNS:
+        if data.time.size <= MOST_POINTS:
+            break
+        data = _runs_averaged(data, longest)
+    return data
+
+
+def _runs_averaged(data: SearchData, longest: float) -> SearchData:
+    away = np.abs(data.value - np.median(data.value)) * np.sqrt(data.weight)
+    quiet = away < QUIET
+    step = np.diff(np.floor(data.time / longest), prepend=-1.0) > 0
+    begins = step | ~quiet | np.concatenate([[True], ~quiet[:-1]])
+    number = np.cumsum(begins) - 1
+    mass: Floats = np.bincount(number, data.weight).astype(float)
+    time = data.origin + np.bincount(number, data.weight * data.time) / mass
+    return _data(time, np.bincount(number, data.weight * data.value) / mass, mass)
 
 
 def _data(time: Floats, value: Floats, weight: Floats) -> SearchData:

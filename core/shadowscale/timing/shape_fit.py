@@ -17,12 +17,14 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from shadowscale.data.photometry import Floats, Ints
-from shadowscale.timing._kernels import eclipse_rows, shape_grid
+from shadowscale.timing._kernels import eclipse_rows, least_shape, shape_grid
 from shadowscale.timing.profile import Profile, library
 
 MIDDLE, DURATION, INGRESS, EGRESS, DEPTH = 0, 1, 2, 3, 4
-_STEPS = 60
-SMALL_STEP, SMALL_PART = 3e-3, 1e-4  # gain that ends the steps: in chi2, and in parts of chi2
+# Most steps; gain in chi2 that ends them; the same in parts of chi2.
+STOP = np.array([60.0, 3e-3, 1e-4])
+SINGULAR = 1e12  # condition of an information matrix beyond which directions are unknown
+SHORT_EXPOSURE = 0.02  # of the duration: no need to average
 _NODES, _NODE_WEIGHTS = np.polynomial.legendre.leggauss(5)
 
 
@@ -97,61 +99,30 @@ def fit_shape(
     ShapeFit
         The covariance is that of the errors as given, not scaled.
     """
-    limits = _limits(data, profile, start, lower)
-    values, residual, jacobian = _least(data, profile, start, symmetric, limits)
-    covariance = _inverse(jacobian.T @ jacobian)
+    low, high = _limits(data, profile, start, lower)
+    values, normal = start.copy(), np.empty((start.size, start.size))
+    chi2 = least_shape(
+        data.phase,
+        data.flux,
+        data.sigma,
+        data.band,
+        data.bands,
+        data.centre,
+        *_exposure_nodes(data, start[DURATION]),
+        profile.table,
+        low,
+        high,
+        symmetric,
+        STOP,
+        values,
+        normal,
+    )
+    covariance = _inverse(normal)
     if symmetric:
         covariance[EGRESS], covariance[:, EGRESS] = covariance[INGRESS], covariance[:, INGRESS]
         covariance[EGRESS, EGRESS] = covariance[INGRESS, INGRESS]
     freedom = data.phase.size - values.size + int(symmetric)
-    return ShapeFit(profile, values, covariance, float(residual @ residual), freedom, data.centre)
-
-
-def _least(
-    data: ShapeData,
-    profile: Profile,
-    start: Floats,
-    symmetric: bool,
-    limits: tuple[Floats, Floats],
-) -> tuple[Floats, Floats, Floats]:
-    """Levenberg-Marquardt: values, residuals and Jacobian at the least chi2 within the limits."""
-    values = _bounded(start, symmetric, limits)
-    residual, jacobian = _residuals(data, profile, values, symmetric)
-    chi2, damping = float(residual @ residual), 1e-3
-    for _ in range(_STEPS):
-        step = _step(values, residual, jacobian, limits, damping)
-        trial = _bounded(values + step, symmetric, limits)
-        trial_residual, trial_jacobian = _residuals(data, profile, trial, symmetric)
-        gain = chi2 - float(trial_residual @ trial_residual)
-        if gain >= 0:
-            values, residual, jacobian, chi2 = trial, trial_residual, trial_jacobian, chi2 - gain
-            if gain < SMALL_STEP + SMALL_PART * chi2 and damping <= 1:
-                break
-            damping = max(damping / 10, 1e-9)
-        elif damping > 1e5:
-            break
-        else:
-            damping *= 10
-    return values, residual, jacobian
-
-
-def _step(
-    values: Floats,
-    residual: Floats,
-    jacobian: Floats,
-    limits: tuple[Floats, Floats],
-    damping: float,
-) -> Floats:
-    """A damped step; what stands at a limit and is pushed outward takes no part in it."""
-    normal, gradient = jacobian.T @ jacobian, residual @ jacobian
-    held = ((values <= limits[0]) & (gradient < 0)) | ((values >= limits[1]) & (gradient > 0))
-    if held.any():
-        normal[held, :] = 0.0
-        normal[:, held] = 0.0
-        gradient[held] = 0.0
-    scale = normal.diagonal()
-    normal.flat[:: values.size + 1] = scale * (1 + damping) + 1e-12 * scale.max() + 1e-300
-    return np.asarray(np.linalg.solve(normal, gradient))
+    return ShapeFit(profile, values, covariance, chi2, freedom, data.centre)
 
 
 def grid_chi2(data: ShapeData, rough: ShapeFit, durations: Floats, stretches: Floats) -> Floats:
@@ -180,7 +151,19 @@ def grid_chi2(data: ShapeData, rough: ShapeFit, durations: Floats, stretches: Fl
 
 def predicted(data: ShapeData, fit: ShapeFit) -> Floats:
     """The fitted flux at the points of `data`."""
-    return _model(data, fit.profile, fit.values)[0]
+    model = np.empty(data.phase.size)
+    eclipse_rows(
+        data.phase,
+        data.band,
+        data.bands,
+        data.centre,
+        *_exposure_nodes(data, fit.values[DURATION]),
+        fit.profile.table,
+        fit.values,
+        model,
+        np.empty((data.phase.size, fit.values.size)),
+    )
+    return model
 
 
 def with_profile(fit: ShapeFit, profile: Profile) -> Floats:
@@ -217,46 +200,11 @@ def _limits(
     return low, high
 
 
-def _bounded(values: Floats, symmetric: bool, limits: tuple[Floats, Floats]) -> Floats:
-    """Within the limits, and the egress like the ingress where those are tied."""
-    values = np.minimum(np.maximum(values, limits[0]), limits[1])
-    if symmetric:
-        values[EGRESS] = values[INGRESS]
-    return values
-
-
-def _model(data: ShapeData, profile: Profile, values: Floats) -> tuple[Floats, Floats]:
-    """Flux (n,) and its Jacobian (n, m)."""
-    if data.exposure < 0.02 * values[DURATION]:
-        nodes, weights = np.zeros(1), np.ones(1)
-    else:
-        nodes, weights = _NODES * data.exposure / 2, _NODE_WEIGHTS / 2
-    model = np.empty(data.phase.size)
-    jacobian = np.empty((data.phase.size, values.size))
-    eclipse_rows(
-        data.phase,
-        data.band,
-        data.bands,
-        data.centre,
-        nodes,
-        weights,
-        profile.table,
-        values,
-        model,
-        jacobian,
-    )
-    return model, jacobian
-
-
-def _residuals(
-    data: ShapeData, profile: Profile, values: Floats, symmetric: bool
-) -> tuple[Floats, Floats]:
-    model, jacobian = _model(data, profile, values)
-    if symmetric:
-        jacobian[:, INGRESS] += jacobian[:, EGRESS]
-        jacobian[:, EGRESS] = 0.0
-    jacobian /= data.sigma[:, None]
-    return (data.flux - model) / data.sigma, jacobian
+def _exposure_nodes(data: ShapeData, duration: float) -> tuple[Floats, Floats]:
+    """Parts of the exposure [cycles] and their weights; one where the exposure is short."""
+    if data.exposure < SHORT_EXPOSURE * duration:
+        return np.zeros(1), np.ones(1)
+    return _NODES * data.exposure / 2, _NODE_WEIGHTS / 2
 
 
 def _inverse(normal: Floats) -> Floats:
@@ -264,8 +212,14 @@ def _inverse(normal: Floats) -> Floats:
     known = np.flatnonzero(normal.diagonal() > 0)
     part = normal[np.ix_(known, known)]
     scale = np.sqrt(part.diagonal())
+    scaled = part / np.outer(scale, scale)
+    try:
+        inverse = np.linalg.inv(scaled)
+        regular = bool(np.all(inverse.diagonal() > 0) and inverse.diagonal().max() < SINGULAR)
+    except np.linalg.LinAlgError:
+        regular = False
+    if not regular:
+        inverse = np.linalg.pinv(scaled, rcond=1 / SINGULAR, hermitian=True)
     covariance = np.zeros_like(normal)
-    covariance[np.ix_(known, known)] = np.linalg.pinv(
-        part / np.outer(scale, scale), rcond=1e-12, hermitian=True
-    ) / np.outer(scale, scale)
+    covariance[np.ix_(known, known)] = inverse / np.outer(scale, scale)
     return covariance
