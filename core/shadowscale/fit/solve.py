@@ -116,6 +116,7 @@ def solve(
     tame = replace(photometry, why=weighting.why, reasons=reasons)
     ground = find_ground(tame, velocities, plan, progress)
     work = _Work(problem, plan, ground, table, progress, weighting)
+    work.decisions += _period_told(ground)
     best, met = _explored(work)
     best = _with_effects(work, best)
     best = _weighed(work, best)
@@ -144,6 +145,19 @@ def solve(
         branches=branches, decisions=work.decisions, notes=[*ground.measured.notes, *work.notes],
         ends=wide,
     )  # fmt: skip
+
+
+def _period_told(ground: Ground) -> list[Decision]:
+    """How the period was settled, where it was searched."""
+    search, used = ground.search, ground.measured.period
+    if search is None:
+        return []
+    words = search.words
+    if abs(used / search.period - 1.0) > 0.1:
+        words = f"{used:.7g} d by the velocities, which do not swing in {search.period:.7g} d"
+    elif search.ambiguous and search.other:
+        words += f"; {search.other:.7g} d fits as well"
+    return [Decision("period", f"{used:.7g} d", words)]
 
 
 def _explored(work: _Work) -> tuple[Fitted, list[Fitted]]:
