@@ -84,7 +84,12 @@ PAIRS: Mapping[str, Pair] = {
         noise=Noise(0.001, red=0.004, red_time=0.5), cadence=300.0, nights=24, error_factor=0.3
     ),
     "blended": Pair(
-        system={"inclination": 82.0}, band={"third_light": 0.1}, plan=ephemeris(free=("third_light",))
+        system={"r1": 0.16, "r2": 0.08, "inclination": 86.0},
+        band={"third_light": 0.1},
+        noise=Noise(0.001),
+        plan=ephemeris(
+            free=("third_light",), fixed={"limb_darkening1": LIMB1, "limb_darkening2": LIMB2}
+        ),
     ),
     "too deep": Pair(band={"third_light": -0.2}, plan=ephemeris(free=("third_light",))),
     "edge on": Pair(system={"inclination": 90.0}),

@@ -10,6 +10,7 @@ from shadowscale.judge.evidence import TINY, Evidence
 from shadowscale.judge.finding import Finding
 from shadowscale.judge.words import capital, listed, number, percent
 
+NEARLY_EQUAL = 0.3  # in ln k between the two: then both say that the radii are about equal
 MIRROR_WITHIN = 0.25  # |ln(k k')| below which another solution counts as the mirror of this one
 NEARLY_CERTAIN = 0.95  # correlation above which two quantities cannot be told apart
 ADVICE = "A light ratio measured in the spectra, given as a prior on light_ratio, would settle it."
@@ -94,7 +95,8 @@ def _known_mirror(evidence: Evidence, check: Check, *, mirror: Alternative) -> t
     if not isfinite(worse):
         return check.silent("the solution with the radii exchanged has no chi-squared.")
     words = f"With the radii exchanged (k = {number(other)}) chi-squared is {_worse(worse)}"
-    if worse < (check.limit or 0.0) and apart < 2:
+    alike = abs(log(other / evidence.value("radius_ratio"))) < NEARLY_EQUAL
+    if worse < (check.limit or 0.0) and apart < 2 and alike:
         return check.passed(f"{words}, but that lies within the errors of k.", worse)
     if worse < (check.limit or 0.0):
         return check.warned(
