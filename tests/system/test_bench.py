@@ -7,7 +7,7 @@ import subprocess
 import sys
 from pathlib import Path
 
-BENCH = Path(__file__).parents[1] / "bench"
+BENCH = Path(__file__).parents[1] / "benchmarks"
 
 
 def test_quick_run_fills_the_table(tmp_path):

@@ -1,4 +1,4 @@
-"""`python tests/bench`: what the engine does, how fast, beside what a practitioner writes today.
+"""`python tests/benchmarks`: what the engine does, how fast, beside what a practitioner writes today.
 
 Prints one table of medians (in brackets: of the shortest runs, which a busy machine spoils least) and
 writes it as JSON beside versions, cores and date.
@@ -59,7 +59,7 @@ def _load() -> str:
 
 
 def _options() -> argparse.Namespace:
-    parser = argparse.ArgumentParser(prog="tests/bench", description=__doc__)
+    parser = argparse.ArgumentParser(prog="tests/benchmarks", description=__doc__)
     parser.add_argument("--quick", action="store_true", help="only show that everything runs")
     parser.add_argument(
         "--repeats", type=int, default=REPEATS, help=f"runs each, default {REPEATS}"
