@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import os
+from concurrent.futures import ThreadPoolExecutor
 from dataclasses import dataclass
 
 import numpy as np
@@ -46,23 +48,25 @@ def phase_bins(frequency: Floats, points: int) -> Ints:
 
 
 def spectrum(data: SearchData, frequency: Floats, progress: Progress, words: str = "") -> Spectrum:
-    """The spectrum of dips; `Progress` is told and may stop it."""
+    """The spectrum of dips, on all processors; `Progress` is told and may stop it."""
     table = np.empty((frequency.size, 8))
     bins = phase_bins(frequency, data.time.size)
-    block = int(np.clip(2e8 / max(data.time.size, 2000), 200, _BLOCK * 10))
-    for low in range(0, frequency.size, block):
+    block = int(np.clip(1e8 / max(data.time.size, 2000), 100, _BLOCK * 5))
+
+    def fill(low: int) -> int:
         rows = slice(low, low + block)
         box_spectrum(
-            data.time,
-            data.value,
-            data.weight,
-            frequency[rows],
-            bins[rows],
-            1,
-            FEWEST_IN_BOX,
-            table[rows],
-        )
-        progress.report(min(1.0, (low + block) / frequency.size), words or "searching periods")
+            data.time, data.value, data.weight, frequency[rows], bins[rows],
+            1, FEWEST_IN_BOX, table[rows],
+        )  # fmt: skip
+        return low + block
+
+    pool = ThreadPoolExecutor(os.cpu_count())
+    try:
+        for done in pool.map(fill, range(0, frequency.size, block)):
+            progress.report(min(1.0, done / frequency.size), words or "searching periods")
+    finally:
+        pool.shutdown(cancel_futures=True)
     return Spectrum(frequency, table)
 
 
