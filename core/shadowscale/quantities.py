@@ -10,6 +10,7 @@ from __future__ import annotations
 import re
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import cache
 from math import floor, inf, isfinite, log10
 from types import MappingProxyType
 
@@ -706,6 +707,7 @@ class Key:
         return QUANTITIES[self.name]
 
 
+@cache
 def parse_key(text: str) -> Key:
     """Take a key apart; ValueError if it has not the form of one or names no quantity."""
     match = _KEY.match(text.strip())
@@ -715,6 +717,7 @@ def parse_key(text: str) -> Key:
     return Key(match["name"], match["label"], None if number is None else int(number))
 
 
+@cache
 def key(name: str, label: str | None = None, number: int | None = None) -> str:
     """Put a key together."""
     return str(Key(name, label, number))

@@ -39,7 +39,7 @@ HOURS, CADENCE = 10.0, 72.0  # 500 points a night
 MOVES, QUICK_MOVES = 25, 3
 START = 12  # pixels until a press is surely a drag
 BETWEEN = 0.03  # [s] moves that come faster are passed over by the plots
-LONGEST = 20.0  # [s] for a fit to arrive
+LONGEST_MS = 20_000  # for a fit to arrive
 EPOCH = 2459000.3127
 SYSTEM = {
     "period": 2.4371926, "epoch": EPOCH, "r1": 0.151, "r2": 0.118, "inclination": 88.2,
@@ -86,8 +86,6 @@ def _moved(bench: Bench, moves: int) -> list[tuple[float, float]]:
 
 def _timed_move(bench: Bench, picture: MarkedPicture, place: QPoint) -> tuple[float, float]:
     """One move: seconds to the painted contact solution, and to the painted fit."""
-    from PySide6.QtWidgets import QApplication
-
     before = bench.desk.session
     sleep(BETWEEN)
     start = perf_counter()
@@ -96,14 +94,31 @@ def _timed_move(bench: Bench, picture: MarkedPicture, place: QPoint) -> tuple[fl
     shown = perf_counter() - start
     if bench.desk.session.contact is before.contact:
         raise RuntimeError("the marker did not follow the mouse")
-    while bench.desk.session.solution is before.solution:
-        QApplication.processEvents()
-        if perf_counter() - start > LONGEST:
-            raise RuntimeError("the fit did not follow the marker")
+    _wait_for_fit(bench, before)
     picture.viewport().repaint()
     followed = perf_counter() - start
     bench.live.wait_until_idle()
     return shown, followed
+
+
+def _wait_for_fit(bench: Bench, before: Session) -> None:
+    """Let the event loop sleep and wake as it does under a hand, until another solution is there."""
+    from PySide6.QtCore import QEventLoop, QTimer
+
+    loop, late = QEventLoop(), QTimer()
+    late.setSingleShot(True)
+    late.timeout.connect(lambda: loop.exit(1))
+    late.start(LONGEST_MS)
+
+    def look() -> None:
+        if bench.desk.session.solution is not before.solution:
+            loop.exit(0)
+
+    bench.desk.changed.connect(look)
+    failed = loop.exec()
+    bench.desk.changed.disconnect(look)
+    if failed:
+        raise RuntimeError("the fit did not follow the marker")
 
 
 def _step(picture: MarkedPicture, place: QPoint) -> None:

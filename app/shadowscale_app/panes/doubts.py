@@ -25,6 +25,7 @@ class DoubtsPane(Pane):
 
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
+        self._words = ""
         self.text = QTextBrowser()
         self.text.setFrameShape(QTextBrowser.Shape.NoFrame)
         self.text.setAccessibleName("Doubts about the solution")
@@ -36,10 +37,11 @@ class DoubtsPane(Pane):
         """Write the list anew."""
         if names & {"solution", "audit", "contact", "view"}:
             found = doubts(self.session)
-            self.text.setHtml(
-                "".join(_line(doubt) for doubt in found)
-                or "<p>Nothing yet: there is no solution.</p>"
-            )
+            words = "".join(_line(doubt) for doubt in found)
+            words = words or "<p>Nothing yet: there is no solution.</p>"
+            if words != self._words:
+                self._words = words
+                self.text.setHtml(words)
 
 
 def _line(doubt: Doubt) -> str:

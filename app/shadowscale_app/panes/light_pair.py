@@ -25,6 +25,8 @@ from shadowscale_app.plots.points import Layer, Points
 from shadowscale_app.warm import READY
 
 LIGHT = frozenset({"photometry", "system", "solution", "view", "plan", "exclusions"})
+STILL = 0.02  # of a picture's height: less does not move its axis
+MOST_CROSSES = 200  # more of them are drawn small and faint
 MOST_BARS, PLAIN_SIZE, CROWDED_SIZE = 1200, 5.0, 3.2  # of one band; pixels
 POINTS = frozenset({"photometry", "solution", "view", "plan", "exclusions"})
 
@@ -48,6 +50,7 @@ class LightPair(QWidget):
         self._zero = pg.InfiniteLine(0.0, angle=0)
         self._shifts: tuple[float, ...] = ()
         self._folding: tuple[float, float] | None = None
+        self._axes: tuple[bool, float | None] | None = None  # in magnitudes; period of the hours
         self._place()
 
     def show_light(self, session: Session, names: frozenset[str]) -> None:
@@ -151,8 +154,10 @@ class LightPair(QWidget):
             found.append(
                 Layer(points.x[good], points.y[good] + shift, bars, tint, shape, size, faint)
             )
+            few = int(aside.sum()) <= MOST_CROSSES
+            cross = (6.0, 0.8) if few else (3.5, 0.35)
             found.append(
-                Layer(points.x[aside], points.y[aside] + shift, None, now.aside, "x", 6.0, 0.8)
+                Layer(points.x[aside], points.y[aside] + shift, None, now.aside, "x", *cross)
             )
             found.append(
                 Layer(points.x[out], points.y[out] + shift, None, now.badly, "ring", 7.0, 0.9)
@@ -193,11 +198,15 @@ class LightPair(QWidget):
         return list(zip(shown, shifts, strict=True))
 
     def _show_axes(self, session: Session, look: Look) -> None:
-        self.curve.setLabel("left", "magnitude" if look.magnitudes else "light")
-        self.rest.setLabel("left", "O\N{MINUS SIGN}C")
         period = (
             session.system.value("period") if session.system is not None else session.plan.period
         )
+        axes = (look.magnitudes, period if look.hours else None)
+        if axes == self._axes:
+            return
+        self._axes = axes
+        self.curve.setLabel("left", "magnitude" if look.magnitudes else "light")
+        self.rest.setLabel("left", "O\N{MINUS SIGN}C")
         axis = self.rest.getAxis("bottom")
         if look.hours and period is not None:
             axis.setScale(period * 24.0)
@@ -208,7 +217,11 @@ class LightPair(QWidget):
 
 
 def _fit_height(picture: Picture, found: tuple[float, float] | None) -> None:
-    if found is not None and found != picture.home_y:
+    if found is None:
+        return
+    old = picture.home_y
+    still = STILL * (found[1] - found[0])
+    if old is None or max(abs(found[0] - old[0]), abs(found[1] - old[1])) > still:
         picture.home_y = found
         picture.setYRange(*found, padding=0)
 

@@ -18,6 +18,7 @@ from PySide6.QtGui import QImage, QPainter, QPen, QPixmap, QTransform
 from shadowscale_app import theme
 
 MOST_POINTS = 20_000
+UNSEEN = 0.2  # pixels that points may move before they are painted anew
 
 
 @dataclass(frozen=True, eq=False)
@@ -45,14 +46,25 @@ class Points(pg.GraphicsObject):
         self.setZValue(1)
 
     def show_layers(self, layers: tuple[Layer, ...]) -> None:
-        """Replace what is drawn."""
+        """Replace what is drawn; what moves by less than can be seen stays as it is painted."""
+        layers = tuple(layer for layer in layers if len(layer.x))
+        if self._kept is not None and self._looks_as(layers):
+            return
         self.prepareGeometryChange()
-        self._layers = tuple(layer for layer in layers if len(layer.x))
+        self._layers = layers
         self._bounds = _bounds(self._layers)
         self._version += 1
         self._kept = None
         self.informViewBoundsChanged()
         self.update()
+
+    def _looks_as(self, layers: tuple[Layer, ...]) -> bool:
+        """Whether other layers would give the picture that is kept."""
+        wide, high = self.pixelVectors()
+        if wide is None or high is None or len(layers) != len(self._layers):
+            return False
+        room = (UNSEEN * abs(wide.x()), UNSEEN * abs(high.y()))
+        return all(_alike(*pair, room) for pair in zip(self._layers, layers, strict=True))
 
     @property
     def layers(self) -> tuple[Layer, ...]:
@@ -132,6 +144,17 @@ def _count(layer: Layer, rect: QRectF) -> int:
     from shadowscale.view.density import points_in_view
 
     return points_in_view(layer.x, (rect.left(), rect.right(), rect.top(), rect.bottom()))
+
+
+def _alike(one: Layer, two: Layer, room: tuple[float, float]) -> bool:
+    """Whether two layers differ by less than `room` in x and y, and in nothing else."""
+    look = [(each.colour, each.shape, each.size, each.opacity) for each in (one, two)]
+    if look[0] != look[1] or len(one.x) != len(two.x) or (one.error is None) != (two.error is None):
+        return False
+    pairs = [(one.x, two.x, room[0]), (one.y, two.y, room[1])]
+    if one.error is not None:
+        pairs.append((one.error, two.error, room[1]))
+    return all(old is new or bool(np.abs(old - new).max() <= most) for old, new, most in pairs)
 
 
 def _bounds(layers: tuple[Layer, ...]) -> QRectF:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+from pyqtgraph.functions import arrayToQPolygonF
 from PySide6.QtCore import QPointF, QRectF, Qt
 from PySide6.QtGui import QBrush, QColor, QPainter, QPaintEvent, QPen, QPolygonF, QRadialGradient
 from PySide6.QtWidgets import QSizePolicy, QWidget
@@ -140,4 +141,4 @@ def _paint_disc(painter: QPainter, disc: Disc, place: QPointF, radius: float, st
 def _polygon(
     orbit: np.ndarray[tuple[int, int], np.dtype[np.float64]], middle: QPointF, scale: float
 ) -> QPolygonF:
-    return QPolygonF([QPointF(middle.x() + x * scale, middle.y() - y * scale) for x, y in orbit])
+    return arrayToQPolygonF(middle.x() + orbit[:, 0] * scale, middle.y() - orbit[:, 1] * scale)

@@ -7,6 +7,8 @@ from dataclasses import dataclass, replace
 from math import isfinite, log10
 from types import MappingProxyType
 
+import numpy as np
+
 from shadowscale.fit.plan import Prior
 from shadowscale.fit.solution import ASSUMED, DERIVED, FITTED, Estimate, Solution
 from shadowscale.fit.system import System
@@ -211,23 +213,16 @@ def _bar(relative: float | None) -> float:
 
 def _strongest(solution: Solution) -> dict[str, tuple[float, str]]:
     names, matrix = solution.correlation_names, solution.correlations
-    found = {}
-    for row, name in enumerate(names):
-        others = [
-            (abs(matrix[row, column]), matrix[row, column], other)
-            for column, other in enumerate(names)
-            if other != name and isfinite(matrix[row, column]) and not _related(name, other)
-        ]
-        if others:
-            _, value, other = max(others, key=lambda item: item[0])
-            found[name] = (float(value), other)
-    return found
-
-
-def _related(name: str, other: str) -> bool:
-    """A derived quantity is no news to the basic ones that it is made of."""
-    basic = [parse_key(text).quantity.basic for text in (name, other)]
-    return basic[0] != basic[1]
+    basic = np.array([parse_key(name).quantity.basic for name in names], dtype=bool)
+    # A derived quantity is no news to the basic ones that it is made of.
+    news = (basic[:, None] == basic) & ~np.eye(len(names), dtype=bool) & np.isfinite(matrix)
+    size = np.where(news, np.abs(matrix), -1.0)
+    best = size.argmax(axis=1) if names else ()
+    return {
+        names[row]: (float(matrix[row, at]), names[at])
+        for row, at in enumerate(best)
+        if news[row, at]
+    }
 
 
 def _with_correlation(row: Row, strongest: Mapping[str, tuple[float, str]]) -> Row:
