@@ -126,6 +126,7 @@ TABLE: tuple[Entry, ...] = (
     Entry("follow", "Fit follows changes", "Solve", lambda b: b.toggle_follow(), "F6", "Fit again by itself after each change", _always, lambda b: b.live.following, bar="Follow"),
     Entry("period", "Search period", "Solve", lambda b: b.work.search_period(), "F7", "Period and epoch from the photometry", _has_light, rule_before=True),
     Entry("starts", "Search from many starts", "Solve", lambda b: b.work.search_starts(), "F8", "Look for other solutions that the data do not exclude", _is_solved),
+    Entry("measure", "Measure contacts in the eclipse windows", "Solve", lambda b: b.work.measure_contacts(), "F9", "Put the contact markers where the points in the windows have them", _has_markers),
     Entry("stop", "Stop", "Solve", lambda b: b.work.stop(), "Ctrl+.", "Stop what is running"),
     Entry("magnitudes", "Magnitudes", "View", _look("magnitudes"), "M", "Magnitudes instead of light", _always, _looks("magnitudes"), bar="Mag"),
     Entry("hours", "Hours instead of phase", "View", _look("hours"), "H", "Hours from mid primary eclipse", _always, _looks("hours"), bar="Hours"),

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QObject, Signal
@@ -76,6 +77,25 @@ class WorkDesk(QObject):
             return solve_from_many_starts(session, progress=progress)
 
         self._start("searching from many starts", work, self._take_search)
+
+    def measure_contacts(self) -> None:
+        """Measure the contacts anew from the points in the eclipse windows."""
+        session = self._desk.session
+
+        def work(progress: Progress) -> object:
+            from shadowscale.view.contacts import with_measured_contacts
+
+            progress.report(0.1, "measuring the contacts")
+            return with_measured_contacts(session)
+
+        self._start("measuring the contacts", work, self._take_contacts)
+
+    def _take_contacts(self, found: object) -> None:
+        assert isinstance(found, Session)
+        session = self._desk.session
+        measured = replace(session, markers=found.markers, contact=found.contact)
+        self._desk.apply(Change("Measure contacts", measured))
+        self.told.emit("Contacts measured from the points in the eclipse windows.")
 
     def _start(
         self, doing: str, work: Callable[[Progress], object], take: Callable[[object], None]

@@ -106,6 +106,10 @@ class MarkedPicture(Picture):
         """The little field in which a value is typed; None while it is closed."""
         return self._editor
 
+    def on_something(self) -> bool:
+        """Whether the mouse rests on a marker."""
+        return any(line.mouseHovering for line in self.lines.values())
+
     def focus_marker(self, name: str) -> None:
         """Give one marker the keyboard."""
         if self._focused in self.lines:
@@ -117,7 +121,7 @@ class MarkedPicture(Picture):
             self._start = line.handle.phase
             self._gesture += 1
             words = f"{line.handle.words}, phase {phase_text(line.handle.phase)}"
-            self.setAccessibleDescription(words)
+            self.setAccessibleDescription(f"{words}: {line.handle.effect}")
             self.told.emit(
                 words
                 + " \N{EM DASH} arrows move it, Shift coarse, Alt fine, Enter types, Escape puts back"
@@ -199,6 +203,7 @@ class MarkedPicture(Picture):
         line.pulled.connect(self._pulled)
         line.let_go.connect(self._let_go)
         line.pointed_at.connect(self._pointed_at)
+        line.chosen.connect(self._chosen)
         self.lines[handle.name] = line
         self.addItem(line, ignoreBounds=True)
 
@@ -213,7 +218,13 @@ class MarkedPicture(Picture):
     def _pointed_at(self, name: str, inside: bool) -> None:
         if inside and name in self.lines:
             handle = self.lines[name].handle
-            self.told.emit(f"{handle.words}, phase {phase_text(handle.phase)}")
+            self.told.emit(f"{handle.words}, phase {phase_text(handle.phase)}: {handle.effect}")
+
+    def _chosen(self, name: str, typing: bool) -> None:
+        self.setFocus()
+        self.focus_marker(name)
+        if typing and name in self.lines and self._editor is None:
+            self._ask_value(self.lines[name])
 
     def _span(self, group: str) -> tuple[float, float]:
         low, high = BANDS.get(group, (0.0, 1.0))

@@ -12,6 +12,7 @@ from shadowscale.view.written import phase_text
 from shadowscale_app import theme
 
 EDGE = 0.25  # of the picture
+HANDLING = "Drag it, or click and use the arrow keys (Shift coarse, Alt fine); a double click types its phase."
 DASHES = {
     "contact": Qt.PenStyle.DashLine,
     "window": Qt.PenStyle.SolidLine,
@@ -23,12 +24,14 @@ DASHES = {
 class MarkerLine(pg.InfiniteLine):
     """One handle's line.
 
-    Signals: `pulled(name, phase, one_side)` while dragged, `let_go(name)`, `pointed_at(name, bool)`.
+    Signals: `pulled(name, phase, one_side)` while dragged, `let_go(name)`, `pointed_at(name, bool)`,
+    `chosen(name, typing)` by a click, or a double click that wants to type its value.
     """
 
     pulled = Signal(str, float, bool)
     let_go = Signal(str)
     pointed_at = Signal(str, bool)
+    chosen = Signal(str, bool)
 
     def __init__(
         self,
@@ -47,6 +50,7 @@ class MarkerLine(pg.InfiniteLine):
         self.label = pg.InfLineLabel(self, text="", position=high, movable=False)
         self.setZValue(20)
         self.setCursor(Qt.CursorShape.SplitHCursor)
+        self.setToolTip(f"{_capital(handle.words)}: {handle.effect}.\n{HANDLING}")
         self.dress()
 
     def dress(self) -> None:
@@ -116,7 +120,11 @@ class MarkerLine(pg.InfiniteLine):
             self.let_go.emit(self.handle.name)
 
     def mouseClickEvent(self, event: Any) -> None:
-        """A click gives the line the keyboard."""
+        """A click gives the line the keyboard, a double click opens the field for its value."""
         if event.button() == Qt.MouseButton.LeftButton:
             event.accept()
-            self.pointed_at.emit(self.handle.name, True)
+            self.chosen.emit(self.handle.name, event.double())
+
+
+def _capital(words: str) -> str:
+    return words[:1].upper() + words[1:]

@@ -141,5 +141,9 @@ class Picture(pg.PlotWidget):
     def mouseDoubleClickEvent(self, event: QMouseEvent) -> None:
         """A double click shows everything again."""
         super().mouseDoubleClickEvent(event)
-        if event.button() == Qt.MouseButton.LeftButton:
+        if event.button() == Qt.MouseButton.LeftButton and not self.on_something():
             self.reset_view()
+
+    def on_something(self) -> bool:
+        """Whether the mouse rests on a thing that answers a double click by itself."""
+        return False

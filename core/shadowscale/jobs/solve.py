@@ -4,16 +4,16 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
-import numpy as np
-
 from shadowscale.data.photometry import Photometry
 from shadowscale.errors import NoSolutionError, NotDetachedError, UsageError
 from shadowscale.judge.finding import Finding
 from shadowscale.progress import SILENT, Progress
 from shadowscale.session.session import Session
+from shadowscale.session.spans import within
 from shadowscale.session.tables import with_tables
 
 IN_WINDOW = "in a window that the observer excluded"
+NOT_FOR_LEVEL = "outside eclipse, and not in a stretch that the observer marked for the level"
 
 
 @dataclass(frozen=True)
@@ -67,20 +67,25 @@ def solve_session(session: Session, *, progress: Progress = SILENT) -> Session:
 
 
 def tables_to_solve(session: Session) -> Photometry:
-    """The photometry of a session without the phase windows that its markers exclude."""
+    """The photometry of a session with the rows set aside that its markers leave out.
+
+    Those are the excluded stretches; and, where stretches are marked for the level outside eclipse,
+    every row that is neither in one of them nor in a window of an eclipse.
+    """
     photometry, markers = session.photometry, session.markers
     if photometry is None:
         raise UsageError("INPUT", "no photometry", expected="at least one file of photometry")
-    if markers is None or not markers.excluded:
+    if markers is None or not (markers.excluded or markers.level):
         return photometry
     period, epoch = _ephemeris(session)
     if period is None or epoch is None:
         return photometry
     phase = (photometry.time - epoch) / period
-    rows = np.zeros(phase.size, dtype=bool)
-    for low, high in markers.excluded:
-        rows |= np.mod(phase - low, 1.0) <= high - low
-    return photometry.excluded(rows, IN_WINDOW)
+    photometry = photometry.excluded(within(phase, markers.excluded), IN_WINDOW)
+    if not markers.level:
+        return photometry
+    counted = (markers.primary_window, markers.secondary_window, *markers.level)
+    return photometry.excluded(~within(phase, counted), NOT_FOR_LEVEL)
 
 
 def refuse_fatal(findings: tuple[Finding, ...]) -> None:

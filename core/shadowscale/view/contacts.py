@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import replace
 
 import numpy as np
@@ -10,6 +11,7 @@ from numpy.typing import NDArray
 from shadowscale.data.photometry import Floats
 from shadowscale.geometry.contacts import ContactSolution, EclipseTiming
 from shadowscale.session.session import Markers, Session, Span
+from shadowscale.session.spans import within
 from shadowscale.view.light_points import ephemeris, fitting_solution, folded_time
 
 CORE = (
@@ -78,6 +80,54 @@ def with_ephemeris(session: Session, period: float, epoch: float) -> Session:
     return with_contact_solution(replace(changed, markers=markers))
 
 
+def with_measured_contacts(session: Session) -> Session:
+    """The session with its contacts measured anew from the points in the eclipse windows.
+
+    Points of marked stretches outside eclipse help with the level; the windows stay where they are.
+
+    Raises
+    ------
+    NoSolutionError
+        If no eclipse stands out in the windows.
+    """
+    from shadowscale.timing.eclipses import measure_eclipses
+
+    markers, found, photometry = session.markers, ephemeris(session), session.photometry
+    if markers is None or found is None or photometry is None:
+        return session
+    windows = {"primary": markers.primary_window, "secondary": markers.secondary_window}
+    phase = folded_time(photometry, *found)
+    kept = within(phase, (*windows.values(), *markers.level)) & ~within(phase, markers.excluded)
+    measured = measure_eclipses(
+        photometry.excluded(~kept, "outside the eclipse windows"),
+        period=found[0],
+        epoch=found[1],
+        exposure=session.plan.exposure,
+    )
+    shift = (measured.epoch - found[1]) / found[0]
+    contacts: dict[str, tuple[float, float, float, float]] = {}
+    for timing in (measured.primary, measured.secondary):
+        for part, window in windows.items():
+            if timing is None:
+                continue
+            turns = np.floor(timing.middle + shift - window[0])
+            middle = float(timing.middle + shift - turns)
+            if middle <= window[1]:
+                contacts[part] = replace(timing, middle=middle).contacts
+    return with_contact_solution(replace(session, markers=_with_contacts(markers, contacts)))
+
+
+def _with_contacts(
+    markers: Markers, found: Mapping[str, tuple[float, float, float, float]]
+) -> Markers:
+    """The markers with these contacts, and the windows widened to hold them."""
+    for part, contacts in found.items():
+        low, high = getattr(markers, f"{part}_window")
+        window = (min(low, contacts[0]), max(high, contacts[3]))
+        markers = replace(markers, **{part: contacts, f"{part}_window": window})
+    return markers
+
+
 def _timing(session: Session, part: str) -> EclipseTiming | None:
     """One eclipse as its markers lie; the depth from the points between the inner contacts."""
     markers = session.markers
@@ -103,7 +153,7 @@ def _depth(session: Session, span: Span) -> tuple[float, float]:
     assert photometry is not None
     assert found is not None
     phase = folded_time(photometry, *found)
-    inside = photometry.used & (phase >= span[0]) & (phase <= span[1])
+    inside = photometry.used & within(phase, (span,))
     level = _level(session, phase)
     for band in range(len(photometry.bands)):
         rows = inside & (photometry.band == band)
@@ -119,32 +169,32 @@ def _depth(session: Session, span: Span) -> tuple[float, float]:
 
 
 def _level(session: Session, phase: Floats) -> Floats:
-    """The light outside eclipse, row by row: of the solution, else of each band's stretches outside eclipse."""
+    """The light outside eclipse, row by row: the median of each band outside eclipse, on the solution's levels."""
     photometry, solution = session.photometry, fitting_solution(session)
     assert photometry is not None
-    if solution is not None:
-        return solution.light.level
+    level = np.ones_like(photometry.flux) if solution is None else solution.light.level
     outside = photometry.used & _outside(session, phase)
-    level = np.ones_like(photometry.flux)
+    found = level.copy()
     for band in range(len(photometry.bands)):
-        rows = outside & (photometry.band == band)
+        of_band = photometry.band == band
+        rows = outside & of_band
         if rows.any():
-            level[photometry.band == band] = np.median(photometry.flux[rows])
-    return level
+            found[of_band] *= np.median(photometry.flux[rows] / level[rows])
+    return found
 
 
 def _outside(session: Session, phase: Floats) -> NDArray[np.bool_]:
+    """Which points tell the light outside eclipse: those of the marked stretches, else all outside the windows."""
     markers = session.markers
     assert markers is not None
+    taking_part = ~within(phase, markers.excluded)
     if markers.level:
-        spans = [(phase >= low) & (phase <= high) for low, high in markers.level]
-        inside: NDArray[np.bool_] = np.logical_or.reduce(spans)
-        return inside
-    found: NDArray[np.bool_] = np.ones(phase.size, dtype=bool)
-    for contacts in (markers.primary, markers.secondary):
-        if contacts is not None:
-            found &= (phase < contacts[0]) | (phase > contacts[3])
-    return found
+        return taking_part & within(phase, markers.level)
+    found = taking_part & ~within(phase, (markers.primary_window, markers.secondary_window))
+    if found.any():
+        return found
+    contacts = [each for each in (markers.primary, markers.secondary) if each is not None]
+    return taking_part & ~within(phase, [(each[0], each[3]) for each in contacts])
 
 
 def _window(timing: EclipseTiming) -> Span:

@@ -27,7 +27,7 @@ class LightPoints:
     rows : (m,) int64
         Rows of the photometry's table.
     used, outlier : (m,) bool
-        Whether the row takes part; whether the fit set it aside.
+        Whether the row takes part; whether the fit set it aside by itself.
     """
 
     band: int
@@ -146,9 +146,10 @@ def _by_band(
 ) -> tuple[LightPoints, ...]:
     y, error = _values(photometry, solution, model, magnitudes=magnitudes)
     why = photometry.why
+    outlier = np.zeros(why.size, dtype=bool)
     if solution is not None:
         why = np.where(photometry.why == USED, solution.light.why, photometry.why)
-    outlier = (photometry.why == USED) & (why != USED)
+        outlier = (photometry.why == USED) & np.isin(why, _outlier_codes(solution))
     found = []
     for number, label in enumerate(photometry.bands):
         rows = np.flatnonzero((photometry.band == number) & np.isfinite(y))
@@ -159,6 +160,12 @@ def _by_band(
             )
         )  # fmt: skip
     return tuple(found)
+
+
+def _outlier_codes(solution: Solution) -> list[int]:
+    """Codes of the rows that the fit set aside by itself; stretches that a person left out have other ones."""
+    reasons = enumerate(solution.light.reasons)
+    return [code for code, reason in reasons if reason.startswith("outlier")]
 
 
 def fitting_solution(session: Session) -> Solution | None:

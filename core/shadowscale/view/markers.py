@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
 
 from shadowscale.session.session import Markers, Span
@@ -11,6 +11,12 @@ LONGEST = 0.45  # cycles from first to fourth contact
 LEAST = 1e-5  # cycles between neighbouring contacts
 _ORDINALS = ("first", "second", "third", "fourth")
 _SPANS = {"level": "stretch outside eclipse", "excluded": "excluded stretch"}
+EFFECTS = {
+    "contact": "where the discs touch; the contacts alone give both radii and the inclination",
+    "window": "points inside count as this eclipse: contacts are measured in it, the level outside it",
+    "level": "the light outside eclipse is fitted to these stretches alone, the rest is set aside",
+    "excluded": "points inside take part in nothing",
+}
 
 
 @dataclass(frozen=True)
@@ -27,6 +33,11 @@ class Handle:
     group: str
     phase: float
     short: str = ""
+
+    @property
+    def effect(self) -> str:
+        """What it does to the solution, for people."""
+        return EFFECTS[self.group]
 
 
 def handles(markers: Markers) -> tuple[Handle, ...]:
@@ -46,15 +57,15 @@ def moved(markers: Markers, name: str, phase: float, *, symmetric: bool = False)
     """The markers with one handle moved to `phase`; neighbours are never passed.
 
     With `symmetric` the contact on the other side of the same eclipse moves as far the other way.
+    An eclipse's window always holds its contacts: they push its edges, its edges stop at them.
     """
     part, *numbers = name.split(".")
     if part in ("primary", "secondary"):
         return _moved_contact(markers, part, int(numbers[0]), phase=phase, symmetric=symmetric)
     if part.endswith("_window"):
+        contacts = getattr(markers, part.removesuffix("_window"))
         span = _moved_edge(getattr(markers, part), int(numbers[0]), phase)
-        if part == "primary_window":
-            return replace(markers, primary_window=span)
-        return replace(markers, secondary_window=span)
+        return replace(markers, **{part: span if contacts is None else _holding(span, contacts)})
     spans = list(getattr(markers, part))
     which, edge = int(numbers[0]), int(numbers[1])
     spans[which] = _moved_edge(spans[which], edge, phase)
@@ -92,8 +103,6 @@ def _contacts(markers: Markers) -> Iterator[Handle]:
 
 def _windows(markers: Markers) -> Iterator[Handle]:
     for part in ("primary", "secondary"):
-        if part == "secondary" and markers.secondary is None:
-            continue
         for number, side in enumerate(("left", "right")):
             phase = getattr(markers, f"{part}_window")[number]
             yield Handle(
@@ -141,7 +150,13 @@ def _moved_contact(
             old[number + 1] - (0.0 if number == 1 else LEAST) if number < 3 else old[0] + LONGEST
         )
         new[number] = _between(phase, lower, upper)
-    return replace(markers, **{part: tuple(new)})
+    window = _holding(getattr(markers, f"{part}_window"), new)
+    return replace(markers, **{part: tuple(new), f"{part}_window": window})
+
+
+def _holding(window: Span, contacts: Sequence[float]) -> Span:
+    """The window, widened where a contact lies outside it."""
+    return min(window[0], contacts[0]), max(window[1], contacts[3])
 
 
 def _half_limits(contacts: tuple[float, float, float, float], number: int) -> tuple[float, float]:

@@ -97,5 +97,8 @@ def with_wavelength(plan: Plan, band: str, nanometres: float) -> Plan:
 
 
 def _pulled(markers: Markers | None) -> tuple[object, ...]:
-    """What of the markers a fit may depend on."""
-    return () if markers is None else (markers.primary, markers.secondary, markers.excluded)
+    """What of the markers a fit depends on: the windows only where stretches say which points count beside them."""
+    if markers is None:
+        return ()
+    windows = (markers.primary_window, markers.secondary_window) if markers.level else ()
+    return (markers.primary, markers.secondary, markers.excluded, markers.level, windows)

@@ -12,7 +12,7 @@ from shadowscale.errors import NoSolutionError, NotDetachedError, UsageError
 from shadowscale.fit.solution import DERIVED, Estimate
 from shadowscale.jobs.replay import Difference, differences
 from shadowscale.jobs.results import check_targets, result_files, sheet_of, write_results
-from shadowscale.jobs.solve import IN_WINDOW, refuse_fatal, tables_to_solve
+from shadowscale.jobs.solve import IN_WINDOW, NOT_FOR_LEVEL, refuse_fatal, tables_to_solve
 from shadowscale.jobs.words import summary
 from shadowscale.judge.finding import FAIL, Finding
 from shadowscale.session import Markers, Session, Source
@@ -113,6 +113,24 @@ def test_windows_that_the_observer_excluded_take_no_part(session):
     assert tables_to_solve(replace(session, markers=Markers((0, 0, 0, 0)))) is session.photometry
     with pytest.raises(UsageError, match="at least one file of photometry"):
         tables_to_solve(Session())
+
+
+def test_with_stretches_for_the_level_only_they_and_the_windows_take_part(session):
+    markers = replace(
+        session.markers,
+        primary_window=(-0.08, 0.08),
+        secondary_window=(0.42, 0.58),
+        level=((0.15, 0.25), (-0.2, -0.15)),
+        excluded=((0.2, 0.21),),
+    )
+    table = tables_to_solve(replace(session, markers=markers))
+    phase = np.mod((table.time - session.plan.epoch) / session.plan.period, 1.0)
+    counted = (phase <= 0.08) | (phase >= 0.92) | ((phase >= 0.42) & (phase <= 0.58))
+    counted |= ((phase >= 0.15) & (phase <= 0.25)) | ((phase >= 0.8) & (phase <= 0.85))
+    cut = (phase >= 0.2) & (phase <= 0.21)
+    assert np.array_equal(table.used, session.photometry.used & counted & ~cut)
+    beside = table.reasons.index(NOT_FOR_LEVEL)
+    assert np.array_equal(table.why == beside, session.photometry.used & ~counted)
 
 
 def test_only_numbers_that_differ_are_told_the_largest_first(session):

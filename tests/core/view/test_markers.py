@@ -73,8 +73,27 @@ def test_handles_have_words_for_people() -> None:
         handle(made_up_markers(), "primary.7")
 
 
-def test_without_a_secondary_there_is_nothing_of_it_to_pull() -> None:
-    assert not [h for h in handles(PARTIAL) if h.name.startswith("secondary")]
+def test_without_a_secondary_only_its_window_can_be_pulled_to_where_it_should_be() -> None:
+    names = [h.name for h in handles(PARTIAL) if h.name.startswith("secondary")]
+
+    assert names == ["secondary_window.0", "secondary_window.1"]
+    assert moved(PARTIAL, "secondary_window.1", 0.45).secondary_window == (0.4, 0.45)
+
+
+def test_a_window_always_holds_its_contacts() -> None:
+    pushed = moved(made_up_markers(), "primary.0", -0.14)
+    assert pushed.primary_window[0] == pushed.primary[0] == -0.14
+
+    stopped = moved(made_up_markers(), "primary_window.1", 0.0)
+
+    assert stopped.primary_window[1] == made_up_markers().primary[3]
+
+
+def test_every_handle_says_what_it_does() -> None:
+    words = {h.group: h.effect for h in handles(made_up_markers())}
+
+    assert set(words) == {"contact", "window", "level", "excluded"}
+    assert all(len(each) > 30 for each in words.values())
 
 
 def test_stretches_come_in_order_and_go() -> None:
