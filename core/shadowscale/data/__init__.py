@@ -1,5 +1,6 @@
 """Tables of measurements: reading, columns, clocks; every row accounted for."""
 
+from shadowscale.data.clocks import check_zero_points
 from shadowscale.data.light_reading import read_photometry
 from shadowscale.data.limb_tables import LimbTable, read_limb_table
 from shadowscale.data.previews import Preview, preview, sniff_kind
@@ -8,6 +9,7 @@ from shadowscale.data.velocity_reading import read_velocities
 __all__ = [
     "LimbTable",
     "Preview",
+    "check_zero_points",
     "preview",
     "read_limb_table",
     "read_photometry",

@@ -6,6 +6,7 @@ import re
 from math import nan
 
 MISSING = frozenset({"", "-", "--", "---", "nan", "na", "n/a", "null", "none", "...", "indef"})
+_MINUS = str.maketrans("\N{MINUS SIGN}\N{EN DASH}", "--")  # as word processors print it
 _FORTRAN = re.compile(r"[dD](?=[+-]?\d+$)")
 
 
@@ -25,7 +26,7 @@ def number_in(cell: str, decimal_comma: bool = False) -> float | None:
         if "." in text:
             return None
         text = text.replace(",", ".")
-    text = _FORTRAN.sub("e", text.replace("\N{MINUS SIGN}", "-"))
+    text = _FORTRAN.sub("e", text.translate(_MINUS))
     try:
         return float(text)
     except ValueError:

@@ -92,7 +92,9 @@ def words_on_time(
         if re.search(r"(?i)jd|julian|time|date", comment)
     ]
     first = [Words(told, USER), Words(name, NAME), Words(unit, UNIT)]
-    return tuple(words for words in [*first, *keyed, *spoken] if words.text)
+    # The zero point of space missions' times says by its name what kind of date it belongs to.
+    zero = [Words("BJD", "BJDREF of the header")] if {"bjdref", "bjdrefi"} & set(headers) else []
+    return tuple(words for words in [*first, *zero, *keyed, *spoken] if words.text)
 
 
 def kind_said(words: Sequence[Words]) -> tuple[str, str]:

@@ -20,7 +20,8 @@ from shadowscale.data.clock_words import (
     words_on_time,
     zero_points,
 )
-from shadowscale.data.photometry import Floats
+from shadowscale.data.photometry import Floats, Photometry
+from shadowscale.data.velocities import Velocities
 from shadowscale.errors import Problem, TimeScaleError
 
 UNKNOWN = "unknown"
@@ -162,6 +163,17 @@ def common_scale(clocks: Sequence[tuple[str, Clock, float]]) -> tuple[str, tuple
         notes.append(f"{path}: times in {clock.scale} are put together with times in {scale}")
         scale = shared
     return scale, tuple(notes)
+
+
+def check_zero_points(photometry: Photometry, velocities: Velocities) -> None:
+    """TimeScaleError where velocities lie so far from the photometry that one has another zero point.
+
+    An orbit would fit all the same: over a million cycles the period can take up any phase.
+    """
+    light, speed = float(np.median(photometry.time)), float(np.median(velocities.time))
+    if abs(light - speed) > REACH:
+        first, second = (", ".join(f.path for f in t.files) for t in (photometry, velocities))
+        raise TimeScaleError(_far_apart(second, speed, first, light))
 
 
 def _far_apart(path: str, middle: float, other: str, other_middle: float) -> Problem:

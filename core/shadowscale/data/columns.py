@@ -9,7 +9,8 @@ table has no such column. This module holds what photometry (`light_columns`) an
 from __future__ import annotations
 
 import re
-from collections.abc import Mapping
+import shlex
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from difflib import get_close_matches
 from types import MappingProxyType
@@ -148,13 +149,51 @@ class ColumnSearch:
 
     def missing(self, role: str, expected: str) -> Problem:
         """The complaint that no column plays a role."""
-        help = f'{_listed(self.table)}; say which one it is: columns={{"{role}": ...}}'
+        help = f"{_listed(self.table)}; say which one it is: {self.wish(role, 'NAME')}"
         found = "none that looks like it"
         return Problem(self.table.path, f"a column with {expected}", found, help=help)
+
+    def wish(self, role: str, column: str) -> str:
+        """How the command line is told that a column plays a role."""
+        option = "--velocity-columns" if "rv1" in self.roles else "--columns"
+        return f"{option} {shlex.quote(f'{role}={column}')}"
 
     def _free(self) -> list[int]:
         taken = {guess.index for guess in self.given.values()}
         return [index for index in range(len(self.table.columns)) if index not in taken]
+
+
+def search_with_time(
+    table: RawTable,
+    columns: Chosen,
+    roles: tuple[str, ...],
+    *,
+    values: tuple[str, ...],
+    by_place: Callable[[ColumnSearch], None],
+) -> ColumnSearch:
+    """A search that has its time; a table without names has its other columns by their place, too.
+
+    Parameters
+    ----------
+    table : RawTable
+    columns : mapping of role to column
+        What the user says; goes before every guess.
+    roles : tuple of str
+        All roles of this kind of table.
+    values : tuple of str
+        The roles of what was measured: `by_place` is not asked where one of them is given.
+    by_place : function of the search
+
+    Raises
+    ------
+    ColumnError
+        If no column looks like the time.
+    """
+    search = ColumnSearch(table, columns, roles)
+    if not table.named and not search.has(*values):
+        by_place(search)
+    give_time(search)
+    return search
 
 
 def give_time(search: ColumnSearch) -> None:

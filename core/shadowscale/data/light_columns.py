@@ -12,6 +12,7 @@ from shadowscale.data.columns import (
     Guess,
     give_time,
     role_names_speak,
+    search_with_time,
 )
 from shadowscale.data.looks import light_by_look, uncertainty_by_look
 from shadowscale.data.raw_table import RawTable
@@ -64,21 +65,16 @@ _FLUX_UNITS = re.compile(
 def photometry_columns(table: RawTable, columns: Chosen = NOTHING_CHOSEN) -> tuple[Guess, ...]:
     """Time, light (`mag` or `flux`), and whatever else of `ROLES` the table holds.
 
-    Parameters
-    ----------
-    table : RawTable
-    columns : mapping of role to column
-        What the user says; goes before every guess.
+    Parameters are those of `search_with_time`.
 
     Raises
     ------
     ColumnError
         If the time or the light is missing, or several columns could be meant.
     """
-    search = ColumnSearch(table, columns, ROLES)
-    if not table.named and not search.has("mag", "flux"):
-        _give_by_place(search)
-    give_time(search)
+    search = search_with_time(
+        table, columns, ROLES, values=("mag", "flux"), by_place=_give_by_place
+    )
     if not search.has("mag", "flux"):
         _give_light(search)
     _give_error(search)
@@ -151,7 +147,8 @@ def _give_only(search: ColumnSearch, role: str, found: list[int], *, reason: str
         with_error = [index for index in found if _own_error(search, index) is not None]
         if len(with_error) != 1:
             names = [repr(search.table.columns[index].name) for index in found]
-            help = f'say which one is meant: columns={{"{role}": {names[0]}}}'
+            first = search.table.columns[found[0]].name
+            help = f"say which one is meant: {search.wish(role, first)}"
             problem = Problem(
                 search.table.path, f"one column of {role}", ", ".join(names), help=help
             )

@@ -11,19 +11,12 @@ from pathlib import PurePath
 import numpy as np
 
 from shadowscale.data.bands import band_name
-from shadowscale.data.clocks import Clock
 from shadowscale.data.columns import Chosen, Guess
+from shadowscale.data.file_rows import FileRows, file_rows
 from shadowscale.data.light_columns import photometry_columns
-from shadowscale.data.photometry import Floats, Ints, UnreadableRow
+from shadowscale.data.photometry import Floats, Ints
 from shadowscale.data.raw_table import RawTable
-from shadowscale.data.rows import (
-    Bools,
-    Reasons,
-    clock_of,
-    middle,
-    notes_of,
-    split_rows,
-)
+from shadowscale.data.rows import Bools, Reasons, middle
 from shadowscale.errors import ColumnError, Problem, UnitError
 
 MINIMUM_ROWS = 20
@@ -40,13 +33,9 @@ _GOOD_WORDS = frozenset({"", "0", "ok", "good", "g", "a", "o", "true", "t", "non
 
 @dataclass
 class LightPart:
-    """The rows of one file."""
+    """The rows of one file, with their light."""
 
-    table: RawTable
-    guesses: tuple[Guess, ...]
-    clock: Clock
-    line: Ints
-    time: Floats
+    rows: FileRows
     value: Floats
     error: Floats
     linear: Floats  # magnitudes in mag, or flux around its level
@@ -57,60 +46,43 @@ class LightPart:
     exposure: Floats
     airmass: Floats
     magnitudes: bool
-    unreadable: list[UnreadableRow]
-    notes: list[str]
 
 
 def light_part(table: RawTable, columns: Chosen, band: str | None, reasons: Reasons) -> LightPart:
     """The rows of one file, with everything in its place but levels and estimated errors."""
     guesses = photometry_columns(table, columns)
-    roles = {guess.role: guess for guess in guesses}
-    light = roles.get("flux") or roles["mag"]
-    numeric = [roles[role] for role in ("time", light.role, "error") if role in roles]
-    clock = clock_of(table, roles["time"], columns)
-    keep, bad = split_rows(table, numeric, time=roles["time"], clock=clock)
-
-    count = int(np.count_nonzero(keep))
-
-    def numbers(role: str) -> Floats:
-        if role not in roles:
-            return np.full(count, np.nan)
-        return np.asarray(table.columns[roles[role].index].numbers[keep])
-
+    rows = file_rows(table, guesses, columns, numeric=("time", "mag", "flux", "error"))
+    light = "flux" if "flux" in rows.roles else "mag"
+    value, error = rows.numbers(light), rows.numbers("error")
     part = LightPart(
-        table=table,
-        guesses=guesses,
-        clock=clock,
-        line=table.line[keep],
-        time=clock.full(numbers("time")),
-        value=numbers(light.role),
-        error=numbers("error"),
-        linear=numbers(light.role),
-        linear_error=numbers("error"),
-        band=np.zeros(count, dtype=np.int64),
+        rows=rows,
+        value=value,
+        error=error,
+        linear=value,
+        linear_error=error,
+        band=np.zeros(rows.count, dtype=np.int64),
         bands=(NO_BAND,),
-        why=np.zeros(count, dtype=np.int64),
-        exposure=numbers("exposure"),
-        airmass=numbers("airmass"),
-        magnitudes=light.role == "mag",
-        unreadable=[*table.unreadable, *bad],
-        notes=notes_of(table, clock),
+        why=np.zeros(rows.count, dtype=np.int64),
+        exposure=rows.numbers("exposure"),
+        airmass=rows.numbers("airmass"),
+        magnitudes=light == "mag",
     )
-    _set_units(part, light, roles.get("error"), str(columns.get("unit", "")))
-    _set_bands(part, keep, roles=roles, told=band)
+    _set_units(part, rows.roles[light], str(columns.get("unit", "")))
+    _set_bands(part, told=band)
     _set_aside(part, reasons)
-    _set_quality(part, roles.get("quality"), keep, reasons)
+    _set_quality(part, reasons)
     return part
 
 
-def _set_units(part: LightPart, light: Guess, error: Guess | None, told: str) -> None:
+def _set_units(part: LightPart, light: Guess, told: str) -> None:
     word = _plain_unit(told or light.unit)
     if _FOREIGN.match(word):
         found = told or light.unit
         raise UnitError(
-            Problem(part.table.path, "magnitudes or flux", f"the unit {found}", column=light.column)
+            Problem(part.rows.path, "magnitudes or flux", f"the unit {found}", column=light.column)
         )
     if part.magnitudes:
+        error = part.rows.roles.get("error")
         own = _plain_unit(error.unit) if error is not None and not told else ""
         factor = _FACTORS.get(word, 1.0)
         part.linear = part.value * factor
@@ -120,21 +92,20 @@ def _set_units(part: LightPart, light: Guess, error: Guess | None, told: str) ->
     if around_zero is not None and abs(middle(part.value)) * around_zero < 0.5:
         part.linear = 1.0 + part.value * around_zero
         part.linear_error = part.error * around_zero
-        part.notes.append(f"{part.table.path}: flux in {word} around zero is taken as 1 + value")
+        part.rows.note(f"flux in {word} around zero is taken as 1 + value")
 
 
 def _plain_unit(unit: str) -> str:
     return unit.strip().lower()
 
 
-def _set_bands(
-    part: LightPart, keep: Bools, *, roles: Mapping[str, Guess], told: str | None
-) -> None:
-    part.bands, codes, why = _bands(part.table, keep, roles=roles, told=told)
+def _set_bands(part: LightPart, *, told: str | None) -> None:
+    rows = part.rows
+    part.bands, codes, why = _bands(rows.table, rows.keep, roles=rows.roles, told=told)
     if codes is not None:
         part.band = codes
     if why:
-        part.notes.append(f"{part.table.path}: band {part.bands[0]} {why}")
+        rows.note(f"band {part.bands[0]} {why}")
 
 
 def bands_of_head(
@@ -221,17 +192,17 @@ def _mark(part: LightPart, rows: Bools, reason: str, reasons: Reasons) -> None:
         part.why = np.where(rows, reasons.number(reason), part.why)
 
 
-def _set_quality(part: LightPart, guess: Guess | None, keep: Bools, reasons: Reasons) -> None:
-    if guess is None:
+def _set_quality(part: LightPart, reasons: Reasons) -> None:
+    if "quality" not in part.rows.roles:
         return
-    column = part.table.columns[guess.index]
-    labels, codes = column.words(keep)
+    column = part.rows.table.columns[part.rows.roles["quality"].index]
+    labels, codes = column.words(part.rows.keep)
     good = np.isin(codes, [k for k, word in enumerate(labels) if word.lower() in _GOOD_WORDS])
     open_rows = part.why == 0
     left = np.count_nonzero(good & open_rows)
     if left < max(MINIMUM_ROWS, 0.1 * np.count_nonzero(open_rows)):
-        part.notes.append(
-            f"{part.table.path}: column {column.name!r} would set aside all but {left} rows, so it is not used"
+        part.rows.note(
+            f"column {column.name!r} would set aside all but {left} rows, so it is not used"
         )
         return
     for code, _ in Counter(codes[~good].tolist()).most_common(MOST_FLAGS):

@@ -7,22 +7,13 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from shadowscale.data.clocks import common_scale
 from shadowscale.data.columns import NOTHING_CHOSEN, Chosen
+from shadowscale.data.file_rows import Together, joined_names, read_only, together, too_few
 from shadowscale.data.files import FilePath
 from shadowscale.data.levels import night_numbers, scaled, with_errors
 from shadowscale.data.light_file import MINIMUM_ROWS, LightPart, light_part
-from shadowscale.data.photometry import Floats, InputFile, Ints, Photometry
-from shadowscale.data.rows import (
-    Bools,
-    Reasons,
-    input_file,
-    middle,
-    path_list,
-    per_file,
-    read_all,
-)
-from shadowscale.errors import Problem, TableError
+from shadowscale.data.photometry import Floats, Ints, Photometry
+from shadowscale.data.rows import Bools, Reasons, path_list, per_file, read_all
 
 
 def read_photometry(
@@ -75,31 +66,26 @@ def read_photometry(
 
 
 def _joined(parts: list[LightPart], reasons: Reasons) -> Photometry:
-    order = np.argsort(np.concatenate([part.time for part in parts]), kind="stable")
-    file = np.repeat(np.arange(len(parts)), [len(part.time) for part in parts])[order]
-    bands, band = _all_bands(parts)
+    all_files = together([part.rows for part in parts])
+    bands, band = joined_names([(part.bands, part.band) for part in parts])
 
     def ordered(name: str) -> Floats:
-        return np.asarray(np.concatenate([getattr(part, name) for part in parts])[order])
+        return all_files.ordered([getattr(part, name) for part in parts])
 
     rows = _Rows(
-        time=ordered("time"),
+        time=all_files.ordered([part.rows.time for part in parts]),
         linear=ordered("linear"),
         linear_error=ordered("linear_error"),
-        band=band[order],
-        file=file.astype(np.int64),
+        band=band[all_files.order],
+        file=all_files.file,
         why=ordered("why").astype(np.int64),
         bands=bands,
     )
-    _require_rows(parts, rows.why, reasons)
+    _require_rows(all_files, rows.why, reasons)
     level_notes = _set_levels(rows, parts, reasons)
-    _require_rows(parts, rows.why, reasons)
-    scale, scale_notes = common_scale(
-        [(part.table.path, part.clock, middle(part.time)) for part in parts]
-    )
-    notes = [note for part in parts for note in part.notes]
-    notes += [*scale_notes, *level_notes, *_duplicates(rows.time, rows.band, ordered("value"))]
-    return _read_only(
+    _require_rows(all_files, rows.why, reasons)
+    repeats = _duplicates(rows.time, rows.band, ordered("value"))
+    return read_only(
         Photometry(
             time=rows.time,
             flux=rows.flux,
@@ -107,18 +93,18 @@ def _joined(parts: list[LightPart], reasons: Reasons) -> Photometry:
             band=rows.band,
             night=rows.night,
             file=rows.file,
-            line=ordered("line").astype(np.int64),
+            line=all_files.ordered([part.rows.line for part in parts]).astype(np.int64),
             value=ordered("value"),
             value_error=ordered("error"),
             why=rows.why,
             bands=bands,
-            files=_files(parts, rows),
-            time_scale=scale,
+            files=all_files.inputs(rows.why == 0),
+            time_scale=all_files.scale,
             magnitudes=all(part.magnitudes for part in parts),
             errors_from_scatter=rows.estimated,
             reasons=tuple(reasons.known),
-            unreadable=tuple(row for part in parts for row in part.unreadable),
-            notes=tuple(notes),
+            unreadable=all_files.unreadable,
+            notes=(*all_files.notes, *level_notes, *repeats),
             exposure=ordered("exposure"),
             airmass=ordered("airmass"),
         )
@@ -152,7 +138,7 @@ def _set_levels(rows: _Rows, parts: list[LightPart], reasons: Reasons) -> list[s
         used=rows.why == 0,
         bands=rows.bands,
         magnitudes=np.array([part.magnitudes for part in parts]),
-        paths=tuple(part.table.path for part in parts),
+        paths=tuple(part.rows.path for part in parts),
     )
     _set_aside(rows, ~np.isfinite(rows.flux), "the value is not finite", reasons)
     rows.night = night_numbers(rows.time, rows.band)
@@ -176,49 +162,15 @@ def _set_aside(rows: _Rows, which: Bools, reason: str, reasons: Reasons) -> None
         rows.why[which] = reasons.number(reason)
 
 
-def _files(parts: list[LightPart], rows: _Rows) -> tuple[InputFile, ...]:
-    used = [int(np.count_nonzero((rows.why == 0) & (rows.file == k))) for k in range(len(parts))]
-    return tuple(
-        input_file(part.table, part.guesses, part.clock, count) for part, count in zip(parts, used)
-    )
-
-
-def _read_only(photometry: Photometry) -> Photometry:
-    for value in vars(photometry).values():
-        if isinstance(value, np.ndarray):
-            value.setflags(write=False)
-    return photometry
-
-
-def _all_bands(parts: list[LightPart]) -> tuple[tuple[str, ...], Ints]:
-    """Bands of all files, those with rows, and each row's band in them."""
-    names: list[str] = []
-    rows = []
-    for part in parts:
-        present = [name for k, name in enumerate(part.bands) if np.any(part.band == k)]
-        names += [name for name in present if name not in names]
-        places = np.array([names.index(n) if n in names else 0 for n in part.bands], np.int64)
-        rows.append(places[part.band] if len(part.band) else part.band)
-    return tuple(names), np.concatenate(rows)
-
-
-def _require_rows(parts: list[LightPart], why: Ints, reasons: Reasons) -> None:
-    usable = np.count_nonzero(why == 0)
-    if usable >= MINIMUM_ROWS:
-        return
-    total = sum(part.table.rows for part in parts)
-    what = [
-        f"{np.count_nonzero(why == code)}: {reasons.known[code]}"
-        for code in np.unique(why[why > 0])
-    ]
-    unreadable = [row for part in parts for row in part.unreadable]
-    if unreadable:
-        what.append(
-            f"{len(unreadable)} unreadable, first in line {unreadable[0].line}: {unreadable[0].reason}"
-        )
-    found = f"{usable} of {total}" + (f" ({'; '.join(what)})" if what else "")
-    path = ", ".join(part.table.path for part in parts)
-    raise TableError(Problem(path, f"at least {MINIMUM_ROWS} rows that can be used", found))
+def _require_rows(files: Together, why: Ints, reasons: Reasons) -> None:
+    usable = int(np.count_nonzero(why == 0))
+    if usable < MINIMUM_ROWS:
+        set_aside = [
+            f"{np.count_nonzero(why == code)}: {reasons.known[code]}"
+            for code in np.unique(why[why > 0])
+        ]
+        expected = f"at least {MINIMUM_ROWS} rows that can be used"
+        raise too_few(files.files, expected, usable, set_aside=set_aside)
 
 
 def _duplicates(time: Floats, band: Ints, value: Floats) -> list[str]:

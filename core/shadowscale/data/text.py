@@ -17,6 +17,9 @@ from shadowscale.errors import Problem, TableError
 _INLINE = re.compile(r"(?:^|(?<=\s))#")
 _COLUMNS = re.compile(r"(?i)^(columns?|fields?|format)\s*[:=]\s*")
 _KEY = re.compile(r"^([A-Za-z][\w .()/-]{0,40}?)\s*[:=]\s*(\S.*)$")
+_DATE = re.compile(
+    r"(?<!\d)\d{4}[-/.]\d{1,2}[-/.]\d{1,2}(?!\d)|(?<!\d)\d{1,2}[-/.]\d{1,2}[-/.]\d{4}(?!\d)"
+)
 _UNITS = re.compile(r"^\[.*\]$|^\(.*\)$|^(d|days?|s|sec|jd|bjd|hjd|mjd|m?mag|km/?s|m/s|km s-1|e-/s|ppm|-|)$", re.I)  # fmt: skip
 
 
@@ -71,7 +74,9 @@ def _decoded(file: FileBytes) -> tuple[str, list[str]]:
     except UnicodeDecodeError as error:
         if file.partial and error.start > len(content) - 4:
             return content[: error.start].decode("utf-8-sig"), []
-        return content.decode("latin-1"), ["the text is not UTF-8; it is read as Latin-1"]
+        return content.decode("cp1252", errors="replace"), [
+            "the text is not UTF-8; it is read as Windows-1252, of which Latin-1 is a part"
+        ]
 
 
 def _is_binary(content: bytes) -> bool:
@@ -112,13 +117,17 @@ def _late_layout(content: list[str]) -> Layout | None:
 
 
 def _no_rows(path: str, lines: Lines) -> Problem:
+    expected = "rows of numbers (a time and a value)"
     if not lines.content:
         found = f"{len(lines.comments)} lines of comments" if lines.comments else "blank lines"
-    elif len(lines.content) == 1:
-        found = f"a header only ({lines.content[0].strip()[:60]!r})"
-    else:
-        found = f"{len(lines.content)} lines without two numbers (the first: {lines.content[0].strip()[:60]!r})"
-    return Problem(path, "rows of numbers (a time and a value)", found)
+        return Problem(path, expected, found)
+    first = lines.content[0].strip()[:60]
+    if len(lines.content) == 1:
+        return Problem(path, expected, f"a header only ({first!r})", line=lines.numbers[0])
+    found = f"{len(lines.content)} lines without two numbers (the first: {first!r})"
+    dates = any(_DATE.search(line) for line in lines.content[:SAMPLE])
+    help = "turn calendar dates into Julian dates first" if dates else ""
+    return Problem(path, expected, found, line=lines.numbers[0], help=help)
 
 
 def _head(lines: Lines, layout: Layout) -> Head:

@@ -11,6 +11,7 @@ from shadowscale.data.columns import (
     Guess,
     give_time,
     role_names_speak,
+    search_with_time,
 )
 from shadowscale.data.looks import uncertainty_by_look
 from shadowscale.data.raw_table import RawTable
@@ -29,21 +30,14 @@ _VELOCITY_UNITS = re.compile(r"(?i)^k?m\s*(/\s*s|s\s*\^?(\*\*)?\s*-1|\.s-1)$")
 def velocity_columns(table: RawTable, columns: Chosen = NOTHING_CHOSEN) -> tuple[Guess, ...]:
     """Time, the velocities of one or both stars, their errors and source, as far as the table has them.
 
-    Parameters
-    ----------
-    table : RawTable
-    columns : mapping of role to column
-        What the user says; goes before every guess.
+    Parameters are those of `search_with_time`.
 
     Raises
     ------
     ColumnError
         If the time or all velocities are missing.
     """
-    search = ColumnSearch(table, columns, ROLES)
-    if not table.named and not search.has("rv1", "rv2"):
-        _give_by_place(search)
-    give_time(search)
+    search = search_with_time(table, columns, ROLES, values=("rv1", "rv2"), by_place=_give_by_place)
     for star in (1, 2):
         _give_star(search, star)
     if not search.has("rv1", "rv2"):

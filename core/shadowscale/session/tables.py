@@ -21,9 +21,10 @@ def with_tables(session: Session) -> Session:
     Raises
     ------
     InputError
-        If a file cannot be read as what it should be.
+        If a file cannot be read as what it should be, or the times of light and velocities lie
+        centuries apart.
     """
-    from shadowscale.data import read_photometry, read_velocities
+    from shadowscale.data import check_zero_points, read_photometry, read_velocities
 
     photometry, velocities = None, None
     light, speed = session.photometry_sources, session.velocity_sources
@@ -37,6 +38,8 @@ def with_tables(session: Session) -> Session:
         velocities = read_velocities(
             [source.path for source in speed], columns=[source.columns for source in speed]
         )
+    if photometry is not None and velocities is not None:
+        check_zero_points(photometry, velocities)
     read = replace(session, photometry=photometry, velocities=velocities)
     return with_exclusions(_with_checksums(read))
 

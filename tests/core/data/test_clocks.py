@@ -8,7 +8,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from shadowscale.data import read_photometry
+from shadowscale.data import check_zero_points, read_photometry, read_velocities
 from shadowscale.data.clocks import recognised_clock
 from shadowscale.errors import TimeScaleError
 from table_files import light, written
@@ -20,6 +20,7 @@ FULL = np.linspace(2459000.0, 2459010.0, 50)
     ("name", "unit", "headers", "comments", "offset", "scale"),
     [
         ("BJD_TDB", "", {}, (), 0.0, "BJD_TDB"),
+        ("TIME", "d", {"bjdrefi": "2457000", "timesys": "TDB"}, (), 2457000.0, "BJD_TDB"),
         ("HJD", "", {"time system": "HJD_UTC"}, (), 0.0, "HJD_UTC"),
         ("JD_UTC", "", {}, (), 0.0, "JD_UTC"),
         ("BJD(TDB)", "", {}, (), 0.0, "BJD_TDB"),
@@ -159,6 +160,19 @@ def test_zero_points_far_apart_are_refused(tmp_path: Path) -> None:
     second = _file(tmp_path, "b.csv", "time", 2400000.5, seed=2)
     with pytest.raises(TimeScaleError, match=r"times near 58999.*another zero point"):
         read_photometry([first, second])
+
+
+def test_velocities_on_another_zero_point_than_the_light_are_refused(tmp_path: Path) -> None:
+    light_file = _file(tmp_path, "a.csv", "BJD_TDB", 0.0, seed=1)
+    lines = ["time,rv1", *(f"{59000 + k},{10 * (-1) ** k}" for k in range(12))]
+    velocities = read_velocities(written(tmp_path, "v.csv", lines))
+    with pytest.raises(
+        TimeScaleError, match=r"v.csv: expected times near 2.459e\+06, as in .*a.csv.*zero point"
+    ):
+        check_zero_points(read_photometry(light_file), velocities)
+    nearer = ["time,rv1", *(f"{2459000 - 20_000 + k},{10 * (-1) ** k}" for k in range(12))]
+    older = read_velocities(written(tmp_path, "w.csv", nearer))  # spectra of half a century ago
+    check_zero_points(read_photometry(light_file), older)
 
 
 def test_two_zero_points_in_one_file_are_refused(tmp_path: Path) -> None:

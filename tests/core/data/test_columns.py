@@ -174,7 +174,11 @@ def test_an_unknown_role_is_wrong_usage(tmp_path: Path) -> None:
 @pytest.mark.parametrize(
     ("header", "kinds", "words"),
     [
-        ("HJD,B,V", "tmm", "expected one column of mag, found 'B', 'V'; say which one"),
+        (
+            "HJD,B,V",
+            "tmm",
+            "expected one column of mag, found 'B', 'V'; say which one is meant: --columns mag=B",
+        ),
         ("HJD,flux_a,flux_b", "tff", "expected one column of flux, found 'flux_a', 'flux_b'"),
         ("HJD,airmass", "tx", "expected a column with a magnitude or flux, found none"),
     ],

@@ -255,9 +255,13 @@ def test_too_few_rows_say_what_was_found(tmp_path: Path) -> None:
     lines = [HEADER, *rows()[:15], f"{START + 1},nan,0.01", "cloud,11.2,0.01", *rows()[15:18]]
     with pytest.raises(
         TableError,
-        match=r"at least 20 rows that can be used, found 18 of 20 .1: no measurement; 1 unreadable, first in line 18",
-    ):
+        match=r"at least 20 rows that can be used, found 18 in 20 rows .1: no measurement; 1 unreadable, first in line 18",
+    ) as caught:
         read_photometry(written(tmp_path, "a.csv", lines))
+    whole, row = caught.value.problems
+    assert whole.line is None
+    assert row.line == 18
+    assert row.found == "'cloud 11.2 0.01' (column 'BJD_TDB': expected a number, found 'cloud')"
 
 
 def test_repeated_rows_are_noted(tmp_path: Path) -> None:

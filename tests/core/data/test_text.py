@@ -39,6 +39,7 @@ def _variants() -> dict[str, str | bytes]:
         "CR only": "\r".join([head, *lines]) + "\r",
         "byte-order mark": b"\xef\xbb\xbf" + "\n".join([head, *lines]).encode(),
         "UTF-16": "\n".join([head, *lines]).encode("utf-16"),
+        "Windows-1252 comment": "\n".join(["# „Köln“ – 5 €", head, *lines]).encode("cp1252"),
         "Latin-1 comment": "\n".join(["# beobachtet in Köln", head, *lines]).encode("latin-1"),
         "commented header": "\n".join(["# HJD mag err", *blank]),
         "commented header with commas": "\n".join(["#HJD,mag,err", *lines]),
@@ -98,6 +99,21 @@ def test_latin_1_is_reported(tmp_path: Path) -> None:
     assert any(
         "Latin-1" in note for note in read_photometry(written(tmp_path, "a.csv", content)).notes
     )
+
+
+def test_a_dash_of_a_word_processor_is_a_minus(tmp_path: Path) -> None:
+    lines = ["HJD,dmag", *(f"{t:.6f},\N{EN DASH}0.{k:03d}" for k, t in enumerate(light()[0]))]
+    for encoding in ("utf-8", "cp1252"):
+        table = read_photometry(
+            written(tmp_path, f"{encoding}.csv", "\n".join(lines).encode(encoding))
+        )
+        np.testing.assert_allclose(table.value, -np.arange(60) / 1000, atol=1e-12)
+
+
+def test_calendar_dates_are_told_apart_from_other_words(tmp_path: Path) -> None:
+    lines = ["date,mag", *(f"2021-03-{1 + k % 28:02d},11.{k}" for k in range(40))]
+    with pytest.raises(TableError, match=r"line 1: .*turn calendar dates into Julian dates first"):
+        read_photometry(written(tmp_path, "a.csv", lines))
 
 
 def test_comments_with_keys_are_kept(tmp_path: Path) -> None:
