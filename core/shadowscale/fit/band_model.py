@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import cache
-from math import cos, pi, radians, sqrt
+from math import pi, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,6 +17,7 @@ from shadowscale.light import _band, _grid, _smooth
 from shadowscale.light._kernels import mean_intensity_point
 from shadowscale.light.laws import LAWS
 from shadowscale.orbit._kernels import CONSTANTS_SIZE, orbit_constants
+from shadowscale.orbit.elements import cos_squared
 from shadowscale.quantities import Key, key
 
 Floats = NDArray[np.float64]
@@ -45,7 +46,7 @@ def constants_of(values: Mapping[str, float]) -> Floats:
 
 def cos2i_of(values: Mapping[str, float]) -> float:
     """cos^2 i."""
-    return cos(radians(values["inclination"])) ** 2
+    return cos_squared(values["inclination"])
 
 
 def light_time_of(values: Mapping[str, float]) -> float:

@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from functools import cached_property
-from math import acos, cos, degrees, radians, sqrt
+from math import acos, degrees, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,6 +17,7 @@ from numpy.typing import NDArray
 from shadowscale.fit.plan import EFFECTS
 from shadowscale.fit.system import System
 from shadowscale.light.laws import LAWS, Law
+from shadowscale.orbit.elements import cos_squared
 from shadowscale.quantities import QUANTITIES, Key, key, parse_key
 
 Floats = NDArray[np.float64]
@@ -73,7 +74,7 @@ class Vector:
         upper = np.array([QUANTITIES[parse_key(name).name].upper for name in self.names])
         if "inclination" in self.index:
             at = self.index["inclination"]
-            lower[at], upper[at] = 0.0, cos(radians(LEAST_INCLINATION)) ** 2
+            lower[at], upper[at] = 0.0, cos_squared(LEAST_INCLINATION)
         for block in self.limb_blocks:
             for position, (low, high) in zip(block, self.law.sampling_bounds, strict=True):
                 lower[position], upper[position] = low, high
@@ -84,7 +85,7 @@ class Vector:
         x = np.array([values[name] for name in self.names], dtype=np.float64)
         if "inclination" in self.index:
             at = self.index["inclination"]
-            x[at] = cos(radians(x[at])) ** 2
+            x[at] = cos_squared(x[at])
         for block in self.limb_blocks:
             x[list(block)] = self.law.to_sampling(x[list(block)])
         lower, upper = self.bounds

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import cos, isfinite, pi, radians, sin, sqrt
+from math import isfinite, pi, radians, sin, sqrt
 
 import numpy as np
 from numpy.typing import NDArray
@@ -12,6 +12,11 @@ from shadowscale.constants import C_KM_S
 from shadowscale.orbit.longitude import eccentricity_and_omega
 
 Floats = NDArray[np.float64]
+
+
+def cos_squared(inclination: float) -> float:
+    """cos^2 of an inclination [deg], exactly 0 at 90: there it is at its bound, not near it."""
+    return sin(radians(90.0 - inclination)) ** 2
 
 
 @dataclass(frozen=True)
@@ -63,7 +68,7 @@ class Orbit:
     @property
     def cos2i(self) -> float:
         """cos^2 of the inclination, exactly 0 at 90 deg."""
-        return 0.0 if self.inclination == 90 else cos(radians(self.inclination)) ** 2
+        return cos_squared(self.inclination)
 
     def cycles(self, times: object) -> Floats:
         """Cycles from the epoch, not folded."""
