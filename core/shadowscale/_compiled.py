@@ -1,194 +1,50 @@
-"""How the engine compiles: one decorator, and a cache on disk that never serves old code.
+"""How the engine compiles: decorators whose functions become machine code at their first call.
 
-Machine code is kept beside the sources where they may be written to; else in the user's cache folder;
-else in a private temporary one; else nowhere, and every process compiles anew. None of this is ever
-an error.
-
-Code of other modules is built into a kernel when it is compiled, but numba's own cache looks only at
-the file where the kernel stands. Here an entry is valid for one fingerprint: the contents of that file
-and of every module of the engine that it imports, directly or not.
+numba takes as long to import as the rest of the engine: it is loaded when something is computed.
 """
 
 from __future__ import annotations
 
-import hashlib
-import os
-import re
-import stat
-import tempfile
 from collections.abc import Callable
-from contextlib import suppress
-from functools import cache
-from pathlib import Path
-from pickle import PickleError
+from functools import cached_property, update_wrapper
 from typing import Any, TypeVar, cast
-
-from numba import njit
-from numba.core import caching
-
-from shadowscale._version import __version__
 
 F = TypeVar("F", bound=Callable[..., Any])
 
-_ROOT = Path(__file__).parent
-_IMPORT = re.compile(rf"^\s*from ({_ROOT.name}[\w.]*) import (\([^)]*\)|.*)$", re.MULTILINE)
-_UNREADABLE = (
-    OSError,
-    EOFError,
-    PickleError,
-    ImportError,
-    LookupError,
-    AttributeError,
-    TypeError,
-    ValueError,
-)
+
+class Kernel:
+    """A function that becomes machine code at its first call; other kernels may call it."""
+
+    def __init__(self, function: Callable[..., Any], *fastmath: str) -> None:
+        self._function, self._fastmath = function, frozenset(fastmath)
+        update_wrapper(self, function)
+
+    def __call__(self, *arguments: Any) -> Any:
+        return self.dispatcher(*arguments)
+
+    @cached_property
+    def dispatcher(self) -> Any:
+        """numba's own object."""
+        from shadowscale._machine_code import dispatcher_of
+
+        return dispatcher_of(self._function, self._fastmath)
+
+    @property
+    def _numba_type_(self) -> Any:
+        """What numba asks of an object that it finds in a kernel."""
+        return self.dispatcher._numba_type_
 
 
 def compiled(function: F) -> F:
     """Compile at the first call, or take the code from the disk; without the interpreter's lock."""
-    return cast(F, _cached(njit(nogil=True, error_model="numpy")(function)))
+    return cast(F, Kernel(function))
 
 
 def fused(function: F) -> F:
     """As `compiled`; a*b + c may be one instruction. NaN and infinity keep their meaning."""
-    dispatcher = njit(nogil=True, error_model="numpy", fastmath={"contract"})(function)
-    return cast(F, _cached(dispatcher))
+    return cast(F, Kernel(function, "contract"))
 
 
 def summed(function: F) -> F:
     """As `fused`; sums may be taken in another order, so that several numbers are added at once."""
-    dispatcher = njit(nogil=True, error_model="numpy", fastmath={"contract", "reassoc"})(function)
-    return cast(F, _cached(dispatcher))
-
-
-@cache
-def fingerprint(file: str) -> str:
-    """Of the program's version, a module, and all modules of the engine that it imports.
-
-    Parameters
-    ----------
-    file : str
-        Path of the module's source.
-
-    Returns
-    -------
-    str
-        Hexadecimal; the same for the same contents, wherever they lie.
-    """
-    seen: set[Path] = set()
-    waiting = [Path(file)]
-    while waiting:
-        source = waiting.pop()
-        if source not in seen:
-            seen.add(source)
-            waiting += _imported(source)
-    digest = hashlib.sha256(__version__.encode())
-    for text in sorted(_text(source) for source in seen):
-        digest.update(hashlib.sha256(text.encode()).digest())
-    return digest.hexdigest()
-
-
-@cache
-def _text(source: Path) -> str:
-    try:
-        return source.read_text(encoding="utf-8")
-    except OSError:  # a program frozen into one file: its version has to do
-        return ""
-
-
-@cache
-def _imported(source: Path) -> tuple[Path, ...]:
-    """Files of the engine's modules that a source names in its imports."""
-    files = []
-    for module, names in _IMPORT.findall(_text(source)):
-        base = _ROOT.joinpath(*module.split(".")[1:])
-        parts = [base / name for name in re.findall(r"\w+", names)]
-        files += [base / "__init__.py", *(path.with_suffix(".py") for path in (base, *parts))]
-    return tuple(path for path in files if path.is_file())
-
-
-class _Stamped:
-    """A place whose entries are valid for one fingerprint."""
-
-    _py_file: str
-
-    def get_source_stamp(self) -> str:
-        return fingerprint(self._py_file)
-
-    def get_disambiguator(self) -> str:
-        return ""  # names are unique within a module; old code is replaced, not kept beside
-
-
-class _Given(_Stamped, caching.UserProvidedCacheLocator):
-    """Where NUMBA_CACHE_DIR says."""
-
-
-class _Beside(_Stamped, caching.InTreeCacheLocator):
-    """Beside the sources."""
-
-
-class _OfUser(_Stamped, caching.UserWideCacheLocator):
-    """The user's cache folder."""
-
-
-class _Temporary(_Stamped, caching.UserWideCacheLocator):
-    """For users without a home: a temporary folder that nobody else can write to."""
-
-    def __init__(self, py_func: Any, py_file: str) -> None:
-        super().__init__(py_func, py_file)
-        base = os.path.join(tempfile.gettempdir(), f"{_ROOT.name}-{_user()}")
-        self._cache_path = os.path.join(base, self.get_suitable_cache_subpath(py_file))
-        self._base = base
-
-    def ensure_cache_path(self) -> None:
-        """Make the folder; OSError if it is not ours alone, for code is taken from it."""
-        if hasattr(os, "getuid"):
-            os.makedirs(self._base, mode=0o700, exist_ok=True)
-            found = os.lstat(self._base)
-            alone = stat.S_ISDIR(found.st_mode) and not found.st_mode & 0o077
-            if not alone or found.st_uid != os.getuid():
-                raise PermissionError(self._base)
-        super().ensure_cache_path()
-
-
-def _user() -> str:
-    return str(os.getuid()) if hasattr(os, "getuid") else "user"
-
-
-class _Entry(caching.CompileResultCacheImpl):
-    _locator_classes = [_Given, _Beside, _OfUser, _Temporary]  # noqa: RUF012
-
-
-class _Cache(caching.FunctionCache):
-    """numba's cache of a function, with our places and without errors."""
-
-    _impl_class = _Entry
-
-    def load_overload(self, sig: Any, target_context: Any) -> Any:
-        """The stored code; None if there is none or it cannot be read."""
-        try:
-            return super().load_overload(sig, target_context)
-        except _UNREADABLE:
-            self._forget()
-            return None
-
-    def save_overload(self, sig: Any, data: Any) -> None:
-        """Store code; a full or vanished disk only costs the time to compile again."""
-        try:
-            super().save_overload(sig, data)
-        except _UNREADABLE:
-            self.disable()
-
-    def _forget(self) -> None:
-        """Empty a damaged index, so that good code can be stored again."""
-        with suppress(*_UNREADABLE):
-            self.flush()
-
-
-def _cached(dispatcher: Any) -> Any:
-    """The same dispatcher with our cache, where there is any place for one."""
-    try:
-        dispatcher._cache = _Cache(dispatcher.py_func)
-    except (RuntimeError, OSError):  # no folder at all
-        return dispatcher
-    return dispatcher
+    return cast(F, Kernel(function, "contract", "reassoc"))

@@ -12,7 +12,7 @@ from pathlib import Path
 import pytest
 
 import shadowscale
-from shadowscale import _compiled
+from shadowscale import _compiled, _machine_code
 
 PACKAGE = Path(shadowscale.__file__).parent
 CALLEE = """
@@ -34,7 +34,8 @@ def twice(x):
 """
 RUN = """
 from shadowscale.caller import twice
-print(twice(10), sum(twice.stats.cache_hits.values()), getattr(twice._cache, "cache_path", None))
+code = twice.dispatcher
+print(twice(10), sum(code.stats.cache_hits.values()), getattr(code._cache, "cache_path", None))
 """
 
 
@@ -43,7 +44,7 @@ def small_package(tmp_path):
     """A package of two kernels, one of which calls the other, compiled as the engine is."""
     package = tmp_path / "install" / "shadowscale"
     package.mkdir(parents=True)
-    for name in ("__init__.py", "_version.py", "_compiled.py"):
+    for name in ("__init__.py", "_version.py", "_compiled.py", "_machine_code.py"):
         shutil.copy(PACKAGE / name, package / name)
     (package / "callee.py").write_text(CALLEE)
     (package / "caller.py").write_text(CALLER)
@@ -149,7 +150,7 @@ def test_a_damaged_file_is_replaced(small_package):
 
 
 def test_a_disk_that_cannot_be_written_to_costs_nothing_but_time(monkeypatch, tmp_path):
-    monkeypatch.setattr(_compiled._Entry, "_locator_classes", ())
+    monkeypatch.setattr(_machine_code._Entry, "_locator_classes", ())
 
     @_compiled.compiled
     def plus_one(x):
@@ -174,7 +175,7 @@ def closure(name):
         source = waiting.pop()
         if source not in found:
             found.add(source)
-            waiting += _compiled._imported(source)
+            waiting += _machine_code._imported(source)
     return found
 
 
@@ -182,7 +183,7 @@ def test_every_kernel_is_compiled_through_this_door():
     strangers = [
         path.relative_to(PACKAGE).as_posix()
         for path in PACKAGE.rglob("*.py")
-        if path.name != "_compiled.py"
+        if path.name != "_machine_code.py"
         and re.search(r"\bn?jit\b|^from numba|^import numba", path.read_text("utf-8"), re.MULTILINE)
     ]
 

@@ -141,4 +141,6 @@ def _paint_disc(painter: QPainter, disc: Disc, place: QPointF, radius: float, st
 def _polygon(
     orbit: np.ndarray[tuple[int, int], np.dtype[np.float64]], middle: QPointF, scale: float
 ) -> QPolygonF:
-    return arrayToQPolygonF(middle.x() + orbit[:, 0] * scale, middle.y() - orbit[:, 1] * scale)
+    x, y = middle.x() + orbit[:, 0] * scale, middle.y() - orbit[:, 1] * scale
+    polygon: QPolygonF = arrayToQPolygonF(x, y)
+    return polygon
