@@ -21,6 +21,15 @@ if TYPE_CHECKING:
 Std = QKeySequence.StandardKey
 MENUS = ("File", "Edit", "Solve", "View", "Help")
 ELLIPSIS = "\N{HORIZONTAL ELLIPSIS}"
+FIGURE_PANES = (
+    "Folded curve",
+    "Whole series",
+    "Eclipses",
+    "Velocities",
+    "Correlation",
+    "Mass and radius",
+    "To scale",
+)
 
 
 def _always(_: Session) -> bool:
@@ -111,7 +120,7 @@ TABLE: tuple[Entry, ...] = (
     Entry("save", "Save", "File", lambda b: b.files.save(), Std.Save, "Save the session", _has_light, bar="Save", rule_before=True),
     Entry("save_as", f"Save as{ELLIPSIS}", "File", lambda b: b.files.save_as(), Std.SaveAs, "Save the session in another file", _has_light),
     Entry("export", f"Export sheet{ELLIPSIS}", "File", lambda b: b.work.export(b.files.ask_export()), "Ctrl+E", "Write the sheet, curves and session to a folder", _is_solved, bar="Export"),
-    Entry("figure", f"Save figure of the picture in front{ELLIPSIS}", "File", lambda b: b.save_figure(), "Ctrl+Shift+E", "PDF, SVG or PNG", _has_light),
+    Entry("figure", f"Save figure{ELLIPSIS}", "File", lambda b: b.save_figure(), "Ctrl+Shift+E", "Of the picture that was clicked last, as PDF, SVG or PNG", _has_light),
     Entry("close", "Close session", "File", lambda b: b.files.close_session(), Std.Close, "Back to the start page", _has_light, rule_before=True),
     Entry("quit", "Quit", "File", lambda b: b.close(), Std.Quit),
     Entry("undo", "Undo", "Edit", lambda b: b.desk.undo(), Std.Undo, "Take back the last step", bar="Undo"),
@@ -163,6 +172,8 @@ class Actions:
             if entry.name == "open":
                 self.recent = menus["File"].addMenu("Open recent")
                 self.recent.aboutToShow.connect(self._fill_recent)
+            if entry.name == "figure":
+                self._fill_figures(menus["File"].addMenu("Save figure of"))
 
     def fill_bar(self, bar: QToolBar) -> None:
         """Make the tool bar: words, no pictures to be guessed."""
@@ -199,6 +210,7 @@ class Actions:
             action.setText(f"{words}: {label}" if label else words)
             action.setToolTip(action.text())
         self.by_name["stop"].setEnabled(self._bench.work.running)
+        self.figures.setEnabled(_has_light(session))
 
     def _make(self, entry: Entry) -> QAction:
         action = QAction(entry.words, self._bench)
@@ -222,6 +234,12 @@ class Actions:
     def _run(self, call: Callable[[], None]) -> None:
         call()
         self.update(self._bench.desk.session)
+
+    def _fill_figures(self, menu: QMenu) -> None:
+        self.figures = menu
+        for title in FIGURE_PANES:
+            save = partial(self._bench.save_pane, title)
+            menu.addAction(f"{title}{ELLIPSIS}").triggered.connect(lambda _, save=save: save())
 
     def _fill_recent(self) -> None:
         self.recent.clear()

@@ -144,6 +144,11 @@ class Bench(QMainWindow):
         shown = focused if isinstance(focused, Picture) else self._tabs[0].currentWidget()
         ask_and_save(shown)
 
+    def save_pane(self, title: str) -> None:
+        """Save all that a pane draws."""
+        self.bring(title)
+        ask_and_save(self.panes[title])
+
     def about(self) -> None:
         """What this is."""
         QMessageBox.about(

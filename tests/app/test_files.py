@@ -10,10 +10,12 @@ from PySide6.QtWidgets import QMessageBox
 
 from shadowscale.jobs import results as jobs_results
 from shadowscale.session.journal import Journal
+from shadowscale_app.actions import FIGURE_PANES
 from shadowscale_app.bench import Bench
 from shadowscale_app.desk import Change
 from shadowscale_app.dialogs.exporting import agreed_target
 from shadowscale_app.files import journal_folder
+from shadowscale_app.plots import figure
 from shadowscale_app.plots.figure import KINDS, save_figure
 from shadowscale_app.samples import samples
 
@@ -169,6 +171,45 @@ def test_any_picture_can_be_saved(bench: Bench, tmp_path: Path, kind: str) -> No
     content = (tmp_path / f"figure.{kind}").read_bytes()
     assert content.startswith(heads[kind])
     assert len(content) > 3000
+
+
+def test_every_pane_can_be_saved(bench: Bench, tmp_path: Path) -> None:
+    for name in FIGURE_PANES:
+        bench.bring(name)
+        save_figure(bench.panes[name], tmp_path / f"{name}.svg")
+        assert (tmp_path / f"{name}.svg").stat().st_size > 1000, name
+
+
+def test_a_figure_that_fails_leaves_the_old_file(
+    bench: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    there = tmp_path / "figure.pdf"
+    there.write_bytes(b"the old one")
+
+    def broken(*_: object, **__: object) -> None:
+        raise RuntimeError("the painter broke")
+
+    monkeypatch.setattr(figure, "_draw", broken)
+    with pytest.raises(RuntimeError, match="the painter broke"):
+        save_figure(bench.panes["To scale"].sky, there)
+
+    assert there.read_bytes() == b"the old one"
+    assert [each.name for each in tmp_path.glob("*figure*")] == ["figure.pdf"]
+
+
+def test_a_figure_that_cannot_be_written_is_told(
+    bench: Bench, told: list, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    target = tmp_path / "notes" / "figure.pdf"
+    target.parent.write_text("a file, not a folder")
+    monkeypatch.setattr(
+        figure.QFileDialog, "getSaveFileName", staticmethod(lambda *_: (str(target), ""))
+    )
+
+    figure.ask_and_save(bench.panes["To scale"].sky)
+
+    assert [each.doing for each in told] == ["saving figure.pdf"]
+    told.clear()
 
 
 def test_another_ending_is_refused_in_words(bench: Bench, tmp_path: Path) -> None:
