@@ -60,7 +60,7 @@ class Bench(QMainWindow):
         self.lane, self.long_lane = LiveLane(self, immediate=immediate), LongLane(self)
         self.live = Live(self.desk, self.lane, self)
         self.work = WorkDesk(self.desk, self.long_lane, self)
-        self.files = Files(self.desk, self)
+        self.files = Files(self.desk, self, immediate=immediate)
         self.points = PointsDesk(self.desk, self)
         self.warmer = Warmer(self)
         if immediate:
@@ -164,7 +164,10 @@ class Bench(QMainWindow):
 
     def open_sample(self, path: str) -> None:
         """Open a sample and solve it, so that a newcomer sees a whole sheet at once."""
-        self.open_paths([path])
+        with trouble.guard(f"opening {Path(path).name}"):
+            self.files.open_paths([Path(path)], self._solve_new)
+
+    def _solve_new(self) -> None:
         session = self.desk.session
         if session.photometry is not None and session.solution is None:
             self.work.solve()
@@ -209,6 +212,7 @@ class Bench(QMainWindow):
         for teller in (self.live, self.work, self.points, self.warmer):
             teller.told.connect(self.status.tell)
         self.lane.busy.connect(self.status.show_live)
+        self.files.errands.busy.connect(self.status.show_errand)
         self.long_lane.busy.connect(self.status.show_busy)
         self.long_lane.busy.connect(lambda _: self.actions_table.update(self.desk.session))
         self.work.solved.connect(lambda: self.bring("Folded curve"))

@@ -98,9 +98,9 @@ class Desk(QObject):
         """One step forward."""
         self._travel(self._history.redo)
 
-    def mark_saved(self, path: Path) -> None:
-        """The present session is in that file."""
-        self.path, self._saved = path, self.session
+    def mark_saved(self, path: Path, session: Session | None = None) -> None:
+        """A session (the present one) is in that file."""
+        self.path, self._saved = path, session or self.session
         self.changed.emit(self.session, frozenset())
 
     def _travel(self, go: Callable[[], Session]) -> None:

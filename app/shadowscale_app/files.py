@@ -3,38 +3,48 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Callable, Iterator, Sequence
-from contextlib import contextmanager
+import time
+from collections.abc import Callable, Sequence
 from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from PySide6.QtCore import QObject, QSettings, QStandardPaths, Qt, QTimer
-from PySide6.QtWidgets import QApplication, QFileDialog, QMessageBox, QWidget
+from PySide6.QtCore import QObject, QSettings, QStandardPaths, QTimer
+from PySide6.QtWidgets import QFileDialog, QMessageBox, QWidget
 
 from shadowscale.session.session import Session, Source
-from shadowscale_app import trouble
 from shadowscale_app.desk import Change, Desk
 from shadowscale_app.dialogs.reading import Reading, ask_reading
+from shadowscale_app.errands import Errands
 
 if TYPE_CHECKING:
-    from shadowscale.session.journal import Journal
+    from shadowscale.session.journal import Journal, Recoverable
     from shadowscale_app.dialogs.exporting import Target
 
 ORGANISATION, PROGRAM = "Shadowscale", "Shadowscale"
 RECENT, MOST_RECENT = "recent", 10
-JOURNAL_MS = 8000
+JOURNAL_MS, JOURNAL_SHARE = (
+    3000,
+    10,
+)  # between two writings: so long, and so many times what the last one took
+Then = Callable[[], object]
 SESSION_SUFFIX = ".json"
 TABLES = "Tables and sessions (*.csv *.txt *.dat *.tsv *.ecsv *.fits *.fit *.xml *.vot *.json *.gz);;All files (*)"
 
 
 class Files(QObject):
-    """What the bench does with files."""
+    """What the bench does with files. Reading and writing happen beside the window, in `errands`."""
 
     def __init__(
-        self, desk: Desk, window: QWidget, *, ask: Callable[..., Reading | None] = ask_reading
+        self,
+        desk: Desk,
+        window: QWidget,
+        *,
+        ask: Callable[..., Reading | None] = ask_reading,
+        immediate: bool = False,
     ) -> None:
         super().__init__(window)
+        self.errands = Errands(self, immediate=immediate)
         self._desk, self._window, self._ask = desk, window, ask
         self._journal: Journal | None = None
         self._timer = QTimer(self)
@@ -56,34 +66,46 @@ class Files(QObject):
         if path:
             self.add_velocities(Path(path))
 
-    def open_paths(self, paths: Sequence[Path]) -> None:
-        """Open a session, or tables: velocities are told from photometry by their columns."""
-        from shadowscale.data import sniff_kind
+    def open_paths(self, paths: Sequence[Path], then: Then | None = None) -> None:
+        """Open a session, or tables: velocities are told from photometry by their columns; then go on."""
+        if not paths:
+            if then is not None:
+                then()
+            return
+        path, rest = paths[0], paths[1:]
 
-        for path in paths:
-            if path.suffix == SESSION_SUFFIX:
-                self.open_session(path)
-            elif sniff_kind(path) == "velocities":
-                self.add_velocities(path)
-            else:
-                self.open_photometry([path])
+        def go_on() -> None:
             self._remember(path)
+            self.open_paths(rest, then)
 
-    def open_session(self, path: Path) -> None:
+        def open_table(kind: str) -> None:
+            opening = self.add_velocities if kind == "velocities" else self.open_photometry
+            opening(path, go_on)
+
+        if path.suffix == SESSION_SUFFIX:
+            self.open_session(path, go_on)
+        else:
+            self.errands.run(f"opening {path.name}", lambda: _kind(path), open_table)
+
+    def open_session(self, path: Path, then: Then | None = None) -> None:
         """Open a session file."""
         from shadowscale.session.store import open_session
 
-        if self.may_leave():
-            with waiting():
-                session = open_session(path)
+        if not self.may_leave():
+            return
+        agreed = self._desk.session
+
+        def take(session: Session) -> None:
+            if self._desk.session is agreed or self.may_leave():
                 self._desk.begin(session, path)
-            self._remember(path)
+                self._remember(path)
+                if then is not None:
+                    then()
 
-    def open_photometry(self, paths: Sequence[Path]) -> None:
+        self.errands.run(f"opening {path.name}", lambda: open_session(path), take)
+
+    def open_photometry(self, path: Path, then: Then | None = None) -> None:
         """Look into a table, ask how to read it, begin a session with it or add it to the present one."""
-        from shadowscale.data import read_photometry
-
-        path = paths[0]
         reading = self._ask(
             self._window, path, "photometry", may_add=self._desk.session.photometry is not None
         )
@@ -95,69 +117,91 @@ class Files(QObject):
             return
         base = session if adds else Session(name=path.stem)
         added = Source(str(path.absolute()), reading.columns, band=reading.band or "")
-        sources = (*base.photometry_sources, added)
-        with waiting():
-            photometry = read_photometry(
-                [source.path for source in sources],
-                columns=[source.columns for source in sources],
-                band=[source.band or None for source in sources],
-            )
-        sources = _with_checksums(sources, photometry.files)
-        fresh = replace(
+        wanted = replace(
             base,
-            photometry_sources=sources,
-            photometry=photometry,
+            photometry_sources=(*base.photometry_sources, added),
+            velocity_sources=(),
+            velocities=None,
+            exclusions=(),
+        )
+
+        def take(found: Session) -> None:
+            self._take_light(found, path, adds=adds, agreed=session)
+            if then is not None:
+                then()
+
+        self.errands.run(f"opening {path.name}", lambda: _read(wanted), take)
+
+    def _take_light(self, found: Session, path: Path, *, adds: bool, agreed: Session) -> None:
+        from shadowscale.session.tables import with_exclusions
+
+        if not adds and self._desk.session is not agreed and not self.may_leave():
+            return
+        fresh = replace(
+            self._desk.session if adds else Session(name=path.stem),
+            photometry_sources=found.photometry_sources,
+            photometry=found.photometry,
             system=None,
             solution=None,
             audit=(),
         )
         if adds:
-            self._desk.apply(Change(f"Add {path.name}", fresh))
+            self._desk.apply(Change(f"Add {path.name}", with_exclusions(fresh)))
         else:
             self._desk.begin(fresh, saved=False)
 
-    def add_velocities(self, path: Path) -> None:
+    def add_velocities(self, path: Path, then: Then | None = None) -> None:
         """Look into a table of velocities, ask, and add it."""
-        from shadowscale.data import read_velocities
-
         reading = self._ask(self._window, path, "velocities")
         if reading is None:
             return
-        session = self._desk.session
-        sources = (*session.velocity_sources, Source(str(path.absolute()), reading.columns))
-        velocities = read_velocities(
-            [source.path for source in sources], columns=[source.columns for source in sources]
-        )
-        sources = _with_checksums(sources, velocities.files)
-        self._desk.apply(
-            Change(
-                f"Add {path.name}",
-                replace(session, velocity_sources=sources, velocities=velocities),
+        added = Source(str(path.absolute()), reading.columns)
+        wanted = Session(velocity_sources=(*self._desk.session.velocity_sources, added))
+
+        def take(found: Session) -> None:
+            from shadowscale.session.tables import with_exclusions
+
+            fresh = replace(
+                self._desk.session,
+                velocity_sources=found.velocity_sources,
+                velocities=found.velocities,
             )
-        )
+            self._desk.apply(Change(f"Add {path.name}", with_exclusions(fresh)))
+            if then is not None:
+                then()
 
-    def save(self) -> bool:
-        """Save where it was saved before, else ask; whether it was."""
-        return self.save_as() if self._desk.path is None else self.save_to(self._desk.path)
+        self.errands.run(f"opening {path.name}", lambda: _read(wanted), take)
 
-    def save_as(self) -> bool:
+    def save(self) -> None:
+        """Save where it was saved before, else ask."""
+        if self._desk.path is None:
+            self.save_as()
+        else:
+            self.save_to(self._desk.path)
+
+    def save_as(self) -> None:
         """Ask where, and save."""
         start = str(Path(self._folder()) / f"{self._desk.session.name}{SESSION_SUFFIX}")
         path, _ = QFileDialog.getSaveFileName(
             self._window, "Save session", start, "Session (*.json)"
         )
-        return bool(path) and self.save_to(Path(path))
+        if path:
+            self.save_to(Path(path))
 
-    def save_to(self, path: Path) -> bool:
+    def save_to(self, path: Path) -> None:
         """Save the session in a file."""
-        from shadowscale.session.store import save_session
+        session = self._desk.session
 
-        with trouble.guard(f"saving {path.name}"):
-            save_session(self._desk.session, path)
-            self._desk.mark_saved(path)
+        def write() -> None:
+            from shadowscale.session.store import save_session
+
+            save_session(session, path)
+
+        def take(_: object) -> None:
+            self._desk.mark_saved(path, session)
             self._remember(path)
-            return True
-        return False
+
+        self.errands.run(f"saving {path.name}", write, take)
 
     def ask_export(self) -> Target | None:
         """Ask where the sheet and all the rest are to be written."""
@@ -182,7 +226,10 @@ class Files(QObject):
             buttons.Save | buttons.Discard | buttons.Cancel,
             buttons.Save,
         )
-        return self.save() if answer == buttons.Save else answer == buttons.Discard
+        if answer == buttons.Save:
+            self.save()
+            return self.errands.wait_until_idle() and not self._desk.unsaved
+        return answer == buttons.Discard
 
     def recent(self) -> list[Path]:
         """Files that were opened or saved last and are still there, newest first."""
@@ -192,25 +239,35 @@ class Files(QObject):
 
     def write_journal(self) -> None:
         """Write the session beside, so that a crash costs little."""
-        if not self._desk.unsaved:
+        if not self._desk.unsaved or self.errands.running:
             return
         from shadowscale.session.journal import Journal
 
         if self._journal is None:
             self._journal = Journal(journal_folder())
-        with trouble.guard("writing the journal"):
-            journal_folder().mkdir(parents=True, exist_ok=True)
-            self._journal.write(self._desk.session, path=str(self._desk.path or ""))
+        journal, session, path = self._journal, self._desk.session, str(self._desk.path or "")
+
+        def write() -> float:
+            began = time.monotonic()
+            journal.write(session, path=path)
+            return time.monotonic() - began
+
+        self.errands.run("writing the journal", write, self._pace, quiet=True)
+
+    def _pace(self, seconds: float) -> None:
+        """Large sessions are written less often."""
+        self._timer.setInterval(max(JOURNAL_MS, round(1000 * JOURNAL_SHARE * seconds)))
 
     def end(self) -> None:
         """Stop the journal: the work was saved or given up on purpose."""
         self._timer.stop()
+        self.errands.close()
         if self._journal is not None:
             self._journal.close()
 
     def offer_recovery(self) -> None:
         """Offer what a crash left behind."""
-        from shadowscale.session.journal import discard, recover, recoverable
+        from shadowscale.session.journal import discard, recoverable
 
         for item in recoverable(journal_folder()):
             answer = QMessageBox.question(
@@ -218,14 +275,21 @@ class Files(QObject):
                 f"The program ended unexpectedly while {item.name!r} had unsaved changes. Open them?",
             )  # fmt: skip
             if answer == QMessageBox.StandardButton.Yes:
-                with trouble.guard(f"recovering {item.name}"):
-                    self._desk.begin(
-                        recover(item), Path(item.path) if item.path else None, saved=False
-                    )
-                    discard(item)
-                    return
-            else:
-                discard(item)
+                self._recover(item)
+                return
+            discard(item)
+
+    def _recover(self, item: Recoverable) -> None:
+        from shadowscale.session.journal import discard, recover
+
+        def take(session: Session) -> None:
+            self._desk.begin(session, Path(item.path) if item.path else None, saved=False)
+            self.write_journal()
+            self.errands.run(
+                "tidying up", lambda: discard(item), quiet=True
+            )  # once it is written anew
+
+        self.errands.run(f"recovering {item.name}", lambda: recover(item), take)
 
     def _remember(self, path: Path) -> None:
         texts = [
@@ -239,14 +303,16 @@ class Files(QObject):
         return str(recent[0].parent) if recent else os.getcwd()
 
 
-@contextmanager
-def waiting() -> Iterator[None]:
-    """The cursor says that it takes a moment."""
-    QApplication.setOverrideCursor(Qt.CursorShape.WaitCursor)
-    try:
-        yield
-    finally:
-        QApplication.restoreOverrideCursor()
+def _kind(path: Path) -> str:
+    from shadowscale.data import sniff_kind
+
+    return sniff_kind(path)
+
+
+def _read(session: Session) -> Session:
+    from shadowscale.session.tables import with_tables
+
+    return with_tables(session)
 
 
 def settings() -> QSettings:
@@ -265,10 +331,3 @@ def sample_sessions() -> list[tuple[str, str, Path]]:
     from shadowscale_app.samples import samples
 
     return samples()
-
-
-def _with_checksums(sources: tuple[Source, ...], files: Sequence[object]) -> tuple[Source, ...]:
-    sums = {getattr(file, "path", ""): getattr(file, "sha256", "") for file in files}
-    return tuple(
-        replace(source, sha256=source.sha256 or sums.get(source.path, "")) for source in sources
-    )

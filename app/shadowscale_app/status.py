@@ -26,6 +26,7 @@ class Status(QStatusBar):
         self.words = QLabel("")
         self.words.setTextFormat(Qt.TextFormat.PlainText)
         self.words.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
+        self.errand = QLabel("")
         self.live = QLabel("")
         self.live.setObjectName("quiet")
         self.fit = QLabel("")
@@ -41,7 +42,7 @@ class Status(QStatusBar):
         self.stop.setAccessibleName("Stop")
         self.stop.clicked.connect(self.stop_wanted)
         self.addWidget(self.words, 1)
-        for widget in (self.live, self.doing, self.bar, self.stop, self.fit):
+        for widget in (self.errand, self.live, self.doing, self.bar, self.stop, self.fit):
             self.addPermanentWidget(widget)
         self.show_busy(False)
 
@@ -61,6 +62,10 @@ class Status(QStatusBar):
     def show_live(self, busy: bool) -> None:
         """The live fit begins or ends."""
         self.live.setText("fitting\N{HORIZONTAL ELLIPSIS}" if busy else "")
+
+    def show_errand(self, words: str) -> None:
+        """A file is being read or written; empty: it is done."""
+        self.errand.setText(f"{words}\N{HORIZONTAL ELLIPSIS}" if words else "")
 
     def show_progress(self, fraction: float, words: str, left: float) -> None:
         """How far a long job is."""

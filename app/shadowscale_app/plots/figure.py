@@ -57,7 +57,7 @@ def _draw_png(widget: QWidget, buffer: QBuffer) -> None:
         return
     image.fill(Qt.GlobalColor.transparent)
     _draw(widget, image, scale=SCALE)
-    image.save(buffer, "PNG")
+    image.save(buffer, b"PNG")
 
 
 def _draw_svg(widget: QWidget, buffer: QBuffer) -> None:

@@ -65,7 +65,10 @@ def moved(markers: Markers, name: str, phase: float, *, symmetric: bool = False)
     if part.endswith("_window"):
         contacts = getattr(markers, part.removesuffix("_window"))
         span = _moved_edge(getattr(markers, part), int(numbers[0]), phase)
-        return replace(markers, **{part: span if contacts is None else _holding(span, contacts)})
+        span = span if contacts is None else _holding(span, contacts)
+        if part == "primary_window":
+            return replace(markers, primary_window=span)
+        return replace(markers, secondary_window=span)
     spans = list(getattr(markers, part))
     which, edge = int(numbers[0]), int(numbers[1])
     spans[which] = _moved_edge(spans[which], edge, phase)
