@@ -4,8 +4,18 @@ from __future__ import annotations
 
 from pathlib import Path
 
-from PySide6.QtCore import QBuffer, QIODevice, QMarginsF, QPoint, QRectF, QSize, QSizeF, Qt
-from PySide6.QtGui import QImage, QPageSize, QPaintDevice, QPainter, QPdfWriter
+from PySide6.QtCore import (
+    QBuffer,
+    QByteArray,
+    QIODevice,
+    QMarginsF,
+    QPoint,
+    QRectF,
+    QSize,
+    QSizeF,
+    Qt,
+)
+from PySide6.QtGui import QImage, QImageWriter, QPageSize, QPaintDevice, QPainter, QPdfWriter
 from PySide6.QtWidgets import QFileDialog, QWidget
 
 from shadowscale.session.atomic import write_bytes
@@ -57,7 +67,7 @@ def _draw_png(widget: QWidget, buffer: QBuffer) -> None:
         return
     image.fill(Qt.GlobalColor.transparent)
     _draw(widget, image, scale=SCALE)
-    image.save(buffer, b"PNG")
+    QImageWriter(buffer, QByteArray(b"png")).write(image)
 
 
 def _draw_svg(widget: QWidget, buffer: QBuffer) -> None:
