@@ -21,6 +21,7 @@ def add_arguments(parser: Parser) -> None:
 
 def run(arguments: Namespace) -> None:
     """Replay, write the results, tell what differs."""
+    from shadowscale.jobs.painters import painters
     from shadowscale.jobs.replay import replay_session
     from shadowscale.jobs.results import check_targets, result_files, write_results
     from shadowscale.session.store import open_session
@@ -32,8 +33,11 @@ def run(arguments: Namespace) -> None:
     report = wants_report(arguments)
     names = result_files(session, report=report)
     check_targets(session, folder, names, overwrite=arguments.overwrite)
-    with bar(quiet=arguments.quiet or arguments.json_errors) as progress:
+    quiet = arguments.quiet or arguments.json_errors
+    with painters(wanted=report) as drawing, bar(quiet=quiet) as progress:
         replayed = replay_session(session, progress=progress, path=Path(arguments.session))
-    write_results(replayed.session, folder, overwrite=arguments.overwrite, report=report)
+        write_results(
+            replayed.session, folder, overwrite=arguments.overwrite, report=report, painters=drawing
+        )
     if not arguments.quiet:
         print(replayed.words())

@@ -50,6 +50,7 @@ def add_arguments(parser: Parser) -> None:
 
 def run(arguments: Namespace) -> None:
     """Solve and write the results."""
+    from shadowscale.jobs.painters import painters
     from shadowscale.jobs.results import check_targets, result_files, write_results
     from shadowscale.jobs.solve import solve_session
     from shadowscale.jobs.words import summary
@@ -59,9 +60,12 @@ def run(arguments: Namespace) -> None:
     report = wants_report(arguments)
     names = result_files(session, report=report)
     check_targets(session, folder, names, overwrite=arguments.overwrite)
-    with bar(quiet=arguments.quiet or arguments.json_errors) as progress:
+    quiet = arguments.quiet or arguments.json_errors
+    with painters(wanted=report) as drawing, bar(quiet=quiet) as progress:
         solved = solve_session(session, progress=progress)
-    write_results(solved, folder, overwrite=arguments.overwrite, report=report)
+        write_results(
+            solved, folder, overwrite=arguments.overwrite, report=report, painters=drawing
+        )
     if not arguments.quiet:
         for note in session.notes:
             print(f"shadowscale: note: {note}", file=sys.stderr)

@@ -2,34 +2,32 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from shadowscale.session.session import Session
-from shadowscale.sheet.figure_data import Shown
-from shadowscale.sheet.figures import FIGURES, FORMATS, all_figures
+from shadowscale.sheet.report import Report, make_document
+from shadowscale.sheet.report_html import as_html
+from shadowscale.sheet.report_pdf import as_pdf
 from shadowscale.sheet.sheet import Sheet
-
-HTML_FILE, PDF_FILE, FOLDER = "report.html", "report.pdf", "figures"
-
-
-def report_files(session: Session) -> tuple[str, ...]:
-    """The names of all files that a report may have; which figures there are the solution decides."""
-    figures = [name for name in FIGURES if name != "velocities" or session.velocity_sources]
-    drawn = (f"{FOLDER}/{name}.{kind}" for name in figures for kind in FORMATS)
-    return (HTML_FILE, PDF_FILE, *drawn)
+from shadowscale.sheet.showing import shown_of
 
 
-def report_contents(session: Session, sheet: Sheet, shown: Shown) -> dict[str, bytes]:
-    """Report and figures of a solved session by name of file."""
-    from shadowscale.sheet.report import Report, make_document
-    from shadowscale.sheet.report_html import as_html
-    from shadowscale.sheet.report_pdf import as_pdf
+def report_of(session: Session, sheet: Sheet) -> Report:
+    """The report of a solved session."""
+    solution, photometry = session.solution, session.photometry
+    assert solution is not None
+    assert photometry is not None
+    shown = shown_of(solution, photometry, session.velocities)
+    return Report(
+        session.name, sheet, shown, solution, photometry, session.velocities, session.plan
+    )
 
-    document = make_document(Report(session.name, sheet, shown, session.plan))
-    figures = all_figures(shown)
-    inline = {name: files["svg"].decode("utf-8") for name, files in figures.items()}
-    found = {
-        HTML_FILE: as_html(document, inline).encode("utf-8"),
-        PDF_FILE: as_pdf(document, shown),
-    }
-    for name, files in figures.items():
-        found |= {f"{FOLDER}/{name}.{kind}": content for kind, content in files.items()}
-    return found
+
+def report_documents(
+    report: Report, figures: Mapping[str, Mapping[str, bytes]]
+) -> tuple[bytes, bytes]:
+    """The report as HTML and as PDF, from its figures in every format."""
+    document = make_document(report)
+    pictures = {name: files["svg"].decode() for name, files in figures.items()}
+    pages = {name: files["pdf"] for name, files in figures.items()}
+    return as_html(document, pictures).encode("utf-8"), as_pdf(document, pages)

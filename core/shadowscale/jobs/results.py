@@ -2,22 +2,23 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 from dataclasses import replace
 from pathlib import Path
 
-from shadowscale.errors import UsageError
-from shadowscale.jobs.reporting import report_contents, report_files
+from shadowscale.errors import ShadowscaleError, UsageError
+from shadowscale.jobs.painters import Painters
 from shadowscale.session.atomic import write_bytes
 from shadowscale.session.session import Session
 from shadowscale.session.store import save_session
 from shadowscale.sheet import RENDERINGS, Sheet, light_curve, make_sheet, velocity_curve
-from shadowscale.sheet.figure_data import Shown
+from shadowscale.sheet.figures import FIGURES, FORMATS, all_figures
 from shadowscale.sheet.model_curve import model_curve
 
 SESSION_FILE = "session.json"
 LIGHT_FILE, VELOCITY_FILE = "light_curve.csv", "velocity_curve.csv"
 MODEL_FILE = "model_curve.csv"
+HTML_FILE, PDF_FILE, FIGURE_FOLDER = "report.html", "report.pdf", "figures"
 
 
 def sheet_of(session: Session) -> Sheet:
@@ -44,11 +45,20 @@ def result_files(session: Session, *, report: bool = True) -> tuple[str, ...]:
     """The names of all files that `write_results` may write; figures that say nothing are left out."""
     curves = (LIGHT_FILE, VELOCITY_FILE) if session.velocity_sources else (LIGHT_FILE,)
     names = (*RENDERINGS, *curves, MODEL_FILE, SESSION_FILE)
-    return (*names, *report_files(session)) if report else names
+    if not report:
+        return names
+    figures = [name for name in FIGURES if name != "velocities" or session.velocity_sources]
+    drawn = (f"{FIGURE_FOLDER}/{name}.{kind}" for name in figures for kind in FORMATS)
+    return (*names, HTML_FILE, PDF_FILE, *drawn)
 
 
 def write_results(
-    session: Session, folder: Path, *, overwrite: bool = False, report: bool = True
+    session: Session,
+    folder: Path,
+    *,
+    overwrite: bool = False,
+    report: bool = True,
+    painters: Painters | None = None,
 ) -> tuple[Path, ...]:
     """Write everything a solved session gives; each file whole or not at all.
 
@@ -59,7 +69,9 @@ def write_results(
     overwrite : bool
         Replace files that are there.
     report : bool
-        Write the report and the figures, too, which takes longer than the rest.
+        Write the report and the figures, too. They come last, so that trouble with them costs nothing else.
+    painters : Painters or None
+        Who draws the figures; without them they are drawn here.
 
     Returns
     -------
@@ -71,16 +83,49 @@ def write_results(
     UsageError
         A file is there already and `overwrite` is False, or is an input, or the folder cannot be
         written.
+    ShadowscaleError
+        The report could not be made; all other files are there.
     """
     check_targets(session, folder, result_files(session, report=report), overwrite=overwrite)
-    contents = _contents(session, report=report)
+    sheet = sheet_of(session)
+    contents = _contents(session, sheet)
+    _write(folder, contents)
     try:
-        for name, content in contents.items():
-            write_bytes(folder / name, content)
         save_session(replace(session, notes=()), folder / SESSION_FILE)
     except OSError as error:
         raise not_writable(folder, error) from error
-    return tuple(folder / name for name in (*contents, SESSION_FILE))
+    drawn = _report(session, sheet, folder, painters) if report else {}
+    _write(folder, drawn)
+    return tuple(folder / name for name in (*contents, SESSION_FILE, *drawn))
+
+
+def _write(folder: Path, contents: Mapping[str, bytes]) -> None:
+    try:
+        for name, content in contents.items():
+            write_bytes(folder / name, content)
+    except OSError as error:
+        raise not_writable(folder, error) from error
+
+
+def _report(
+    session: Session, sheet: Sheet, folder: Path, painters: Painters | None
+) -> dict[str, bytes]:
+    """Report and figures; whatever goes wrong in them is told with where the rest is."""
+    from shadowscale.jobs.reporting import report_documents, report_of
+
+    try:
+        report = report_of(session, sheet)
+        figures = (painters.figures if painters else all_figures)(report.shown)
+        page, pages = report_documents(report, figures)
+    except Exception as error:
+        what = f"{type(error).__name__}: {error}"
+        raise ShadowscaleError(
+            f"the report could not be made ({what}); all other results are in {folder}"
+        ) from error
+    found = {HTML_FILE: page, PDF_FILE: pages}
+    for name, files in figures.items():
+        found |= {f"{FIGURE_FOLDER}/{name}.{kind}": content for kind, content in files.items()}
+    return found
 
 
 def check_targets(session: Session, folder: Path, names: Iterable[str], *, overwrite: bool) -> None:
@@ -114,16 +159,14 @@ def not_writable(folder: Path, error: OSError) -> UsageError:
     return UsageError("--out", f"{folder} ({reason})", expected="a folder that can be written")
 
 
-def _contents(session: Session, *, report: bool) -> dict[str, bytes]:
-    """The content of each file but the session."""
-    sheet, solution, photometry = sheet_of(session), session.solution, session.photometry
+def _contents(session: Session, sheet: Sheet) -> dict[str, bytes]:
+    """The content of each file but the session and the report."""
+    solution, photometry = session.solution, session.photometry
     assert solution is not None
     assert photometry is not None
-    shown = Shown(solution, photometry, session.velocities)
     texts = {name: rendered(sheet) for name, rendered in RENDERINGS.items()}
     texts[LIGHT_FILE] = light_curve(solution, photometry)
     if session.velocities is not None:
         texts[VELOCITY_FILE] = velocity_curve(solution, session.velocities)
-    texts[MODEL_FILE] = model_curve(shown)
-    contents = {name: text.encode("utf-8") for name, text in texts.items()}
-    return contents | report_contents(session, sheet, shown) if report else contents
+    texts[MODEL_FILE] = model_curve(solution)
+    return {name: text.encode("utf-8") for name, text in texts.items()}

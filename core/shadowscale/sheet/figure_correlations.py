@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from shadowscale.light.laws import LAWS
 from shadowscale.quantities import parse_key
-from shadowscale.sheet.figure_data import Shown
+from shadowscale.sheet.figure_data import Floats, Shown
 from shadowscale.sheet.figure_frame import BLUE, FAINT, VERMILLION, WIDTH, Place
 
 if TYPE_CHECKING:
@@ -17,11 +17,12 @@ if TYPE_CHECKING:
 CORRELATION_CELL = 0.155  # [inches]
 NAMES_ROOM = 0.95
 MOST_NAMES = 48
+LEAST = 0.03  # weaker ones are not drawn
 
 
 def correlations_size(shown: Shown) -> tuple[float, float]:
     """Width and height [inches]."""
-    count = min(len(shown.solution.correlation_names), MOST_NAMES)
+    count = min(len(shown.correlation_names), MOST_NAMES)
     return WIDTH, count * _cell(count) + NAMES_ROOM + 0.1
 
 
@@ -31,28 +32,16 @@ def _cell(count: int) -> float:
 
 def draw_correlations(place: Place, shown: Shown) -> None:
     """Half the matrix: squares for positive, circles for negative, their size the strength."""
-    names = shown.solution.correlation_names[:MOST_NAMES]
+    names = shown.correlation_names[:MOST_NAMES]
     count = len(names)
     side = count * _cell(count)
     axes = place.axes(NAMES_ROOM, NAMES_ROOM, side, side)
-    matrix = np.nan_to_num(np.asarray(shown.solution.correlations)[:count, :count])
+    matrix = np.nan_to_num(shown.correlations[:count, :count])
     row, column = np.tril_indices(count, -1)
-    value = matrix[row, column]
-    largest = (72 * _cell(count) * 0.9) ** 2
-    for sign, shape, colour in ((1, "s", BLUE), (-1, "o", VERMILLION)):
-        those = sign * value > 0.03
-        axes.scatter(
-            column[those],
-            row[those],
-            s=largest * np.abs(value[those]),
-            marker=shape,
-            facecolor=colour if sign > 0 else "none",
-            edgecolor=colour,
-            linewidth=0.0 if sign > 0 else 0.8,
-        )
+    _draw_marks(axes, column, row, matrix[row, column], cell=1.0)
     axes.set_xlim(-0.5, count - 0.5)
     axes.set_ylim(count - 0.5, -0.5)
-    law = LAWS[shown.solution.system.law]
+    law = LAWS[shown.law]
     labels = [short_name(name, law.coefficients) for name in names]
     axes.set_xticks(range(count), labels, rotation=90, fontsize=6.5)
     axes.set_yticks(range(count), labels, fontsize=6.5)
@@ -61,6 +50,26 @@ def draw_correlations(place: Place, shown: Shown) -> None:
     for spine in ("top", "right"):
         axes.spines[spine].set_visible(False)
     _key(place, side)
+
+
+def _draw_marks(axes: Axes, x: Any, y: Any, value: Floats, *, cell: float) -> None:
+    """Squares and circles whose area goes with the value; each kind in one piece, as 500 would be slow."""
+    from matplotlib.patches import PathPatch
+    from matplotlib.path import Path
+
+    half = 0.45 * cell * np.sqrt(np.abs(value))
+    square: Any = Path([(-1, -1), (1, -1), (1, 1), (-1, 1), (-1, -1)], closed=True)
+    circle: Any = Path.unit_circle()
+    ways: tuple[tuple[Any, Any, dict[str, Any]], ...] = (
+        (square, value > LEAST, {"facecolor": BLUE, "linewidth": 0.0}),
+        (circle, value < -LEAST, {"facecolor": "none", "edgecolor": VERMILLION, "linewidth": 0.8}),
+    )
+    for shape, those, style in ways:
+        if those.any():
+            middles = np.column_stack([x[those], y[those]])[:, None, :]
+            corners = middles + half[those][:, None, None] * shape.vertices
+            codes = np.tile(shape.codes, int(those.sum()))
+            axes.add_patch(PathPatch(Path(corners.reshape(-1, 2), codes), **style))
 
 
 def _grid(axes: Axes, count: int) -> None:
@@ -79,19 +88,11 @@ def _key(place: Place, side: float) -> None:
     axes.set_axis_off()
     axes.set_xlim(0, 1.6)
     axes.set_ylim(0, 0.85)
-    for row, (sign, shape, colour) in enumerate(((1, "s", BLUE), (-1, "o", VERMILLION))):
-        y = 0.72 - 0.24 * row
-        for step, value in enumerate((0.3, 0.6, 1.0)):
-            axes.scatter(
-                0.1 + 0.17 * step,
-                y,
-                s=(72 * CORRELATION_CELL * 0.9) ** 2 * value,
-                marker=shape,
-                facecolor=colour if sign > 0 else "none",
-                edgecolor=colour,
-                linewidth=0.0 if sign > 0 else 0.8,
-            )
-        axes.text(0.62, y, "positive" if sign > 0 else "negative", fontsize=7, va="center")
+    steps = np.array([0.3, 0.6, 1.0])
+    for y, sign, words in ((0.72, 1, "positive"), (0.48, -1, "negative")):
+        x = 0.1 + 0.17 * np.arange(3)
+        _draw_marks(axes, x, np.full(3, y), sign * steps, cell=CORRELATION_CELL)
+        axes.text(0.62, y, words, fontsize=7, va="center")
     axes.text(0.02, 0.24, "0.3, 0.6, 1.0", fontsize=7, va="center")
 
 

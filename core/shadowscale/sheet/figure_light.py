@@ -6,11 +6,11 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from shadowscale.data.photometry import Floats
 from shadowscale.geometry.contacts import EclipseContacts
 from shadowscale.sheet.figure_data import (
     WHOLE,
     BandPoints,
+    Floats,
     Shown,
     around,
     eclipse_window,

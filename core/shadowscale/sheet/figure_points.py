@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import NDArray
 
-from shadowscale.data.photometry import Floats
+from shadowscale.sheet.figure_data import Floats
 from shadowscale.sheet.figure_frame import FAINT, INK, SOFT
 
 if TYPE_CHECKING:

@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from math import cos, pi, radians
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from shadowscale.data.photometry import Floats
-from shadowscale.sheet.figure_data import Shown
+from shadowscale.sheet.figure_data import Floats, Shown
 from shadowscale.sheet.figure_frame import (
     DARK,
     INK,
@@ -33,8 +33,7 @@ def system_size(shown: Shown) -> tuple[float, float]:
 
 def draw_system(place: Place, shown: Shown) -> None:
     """From above with both orbits, and both eclipses as they are seen, all to scale."""
-    estimates = shown.solution.estimates
-    values = {name: item.value for name, item in estimates.items()}
+    values = shown.values
     above = 3.62
     _above(place, above, values)
     number = len(shown.eclipses)
@@ -49,7 +48,7 @@ def draw_system(place: Place, shown: Shown) -> None:
         axes.set_title(f"{name} eclipse, as seen", fontsize=7.5, pad=3)
 
 
-def _above(place: Place, width: float, values: dict[str, float]) -> None:
+def _above(place: Place, width: float, values: Mapping[str, float]) -> None:
     height = place.height - TITLE - 0.05
     axes = _bare(place.axes(0.0, 0.0, width, height))
     axes.set_title("from above, to scale", fontsize=7.5, pad=3)
@@ -109,7 +108,7 @@ def _orbit(longitude: Floats, ecosw: float, esinw: float) -> tuple[Floats, Float
 
 
 def _sun(
-    axes: Axes, values: dict[str, float], *, corner: tuple[float, float], reach: float
+    axes: Axes, values: Mapping[str, float], *, corner: tuple[float, float], reach: float
 ) -> None:
     """The Sun at the same scale, and a length."""
     x, y = corner[0] + 0.06 * reach, corner[1] + 0.04 * reach
@@ -138,7 +137,9 @@ def _round_length(length: float) -> float:
     return float(next(step * power for step in (5.0, 2.0, 1.0) if step * power <= length * 1.0001))
 
 
-def _seen(axes: Axes, eclipse: int, values: dict[str, float], *, room: tuple[float, float]) -> None:
+def _seen(
+    axes: Axes, eclipse: int, values: Mapping[str, float], *, room: tuple[float, float]
+) -> None:
     """Both discs on the sky at mid eclipse, and the path of the one in front."""
     from matplotlib.patches import Circle
 

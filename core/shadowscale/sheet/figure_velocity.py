@@ -6,8 +6,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from shadowscale.data.photometry import Floats
-from shadowscale.sheet.figure_data import WHOLE, Shown, StarPoints
+from shadowscale.sheet.figure_data import WHOLE, Floats, Shown, StarPoints
 from shadowscale.sheet.figure_frame import (
     FAINT,
     INK,
@@ -43,10 +42,9 @@ def draw_velocities(place: Place, shown: Shown) -> None:
     """Both stars over phase with the model, and the residuals of each."""
     width = place.width - LEFT - RIGHT
     count = len(shown.stars)
-    assert shown.velocities is not None
     upper = place.axes(LEFT, FOOT + RESIDUAL * count + 0.03, width, MAIN - 0.03)
     for points in shown.stars:
-        _curve(upper, points, shown)
+        _curve(upper, points)
     _legend(upper, shown)
     upper.set_xlim(*WHOLE)
     upper.set_ylabel("Radial velocity [km/s]")
@@ -60,10 +58,10 @@ def draw_velocities(place: Place, shown: Shown) -> None:
             lower.set_xlabel("Phase")
 
 
-def _curve(axes: Axes, points: StarPoints, shown: Shown) -> None:
+def _curve(axes: Axes, points: StarPoints) -> None:
     axes.axhline(points.gamma, color=FAINT, linewidth=0.7, zorder=1)
     axes.plot(
-        shown.curves.phases,
+        points.curve_phase,
         points.curve,
         color=STAR[points.star],
         linewidth=1.0,
@@ -97,8 +95,7 @@ def _measured(axes: Axes, points: StarPoints, y: Floats) -> None:
 def _legend(axes: Axes, shown: Shown) -> None:
     from matplotlib.lines import Line2D
 
-    assert shown.velocities is not None
-    sources = shown.velocities.sources if len(shown.velocities.sources) > 1 else ("",)
+    sources = shown.sources if len(shown.sources) > 1 else ("",)
     handles = [
         Line2D(
             [],
@@ -149,9 +146,7 @@ def draw_minima(place: Place, shown: Shown) -> None:
     """Observed minus computed times of minimum against the cycle, in minutes."""
     axes = place.axes(LEFT, FOOT, place.width - LEFT - RIGHT, TIMES)
     zero_line(axes)
-    epoch, period = (shown.solution.system.value(name) for name in ("epoch", "period"))
-    second = shown.contacts.secondary.middle
-    second = second if np.isfinite(second) else 0.5
+    epoch, period, second = shown.values["epoch"], shown.values["period"], shown.secondary_phase
     for eclipse, name in ((1, "primary"), (2, "secondary")):
         items = [item for item in shown.minima if item.eclipse == eclipse]
         if items:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass
 from io import BytesIO
 from types import MappingProxyType
@@ -34,26 +34,33 @@ DOTS_AN_INCH = 200
 
 @dataclass(frozen=True)
 class Drawing:
-    """A figure: what draws it, its size [inches], whether a solution has it."""
+    """A figure: what draws it, its size [inches], whether a solution has it; `effort` puts slow ones first."""
 
     draw: Callable[[Place, Shown], None]
     size: Callable[[Shown], tuple[float, float]]
     possible: Callable[[Shown], bool]
+    effort: int = 1
 
 
 FIGURES: Mapping[str, Drawing] = MappingProxyType(
     {
         "system": Drawing(draw_system, system_size, lambda shown: bool(shown.eclipses)),
-        "light_curve": Drawing(draw_light_curve, light_curve_size, lambda shown: bool(shown.bands)),
+        "light_curve": Drawing(
+            draw_light_curve, light_curve_size, lambda shown: bool(shown.bands), effort=3
+        ),
         "eclipses": Drawing(
-            draw_eclipses, eclipses_size, lambda shown: bool(shown.bands and shown.eclipses)
+            draw_eclipses,
+            eclipses_size,
+            lambda shown: bool(shown.bands and shown.eclipses),
+            effort=2,
         ),
         "velocities": Drawing(draw_velocities, velocities_size, lambda shown: bool(shown.stars)),
         "minima": Drawing(draw_minima, minima_size, lambda shown: len(shown.minima) > 1),
         "correlations": Drawing(
             draw_correlations,
             correlations_size,
-            lambda shown: len(shown.solution.correlation_names) > 1,
+            lambda shown: len(shown.correlation_names) > 1,
+            effort=2,
         ),
     }
 )
@@ -91,11 +98,25 @@ def saved(figure: Figure, kind: str) -> bytes:
     return content
 
 
-def all_figures(shown: Shown) -> dict[str, dict[str, bytes]]:
-    """Every figure of a solution in every format: name, format, bytes."""
-    found: dict[str, dict[str, bytes]] = {}
+def files_of(name: str, shown: Shown) -> dict[str, bytes]:
+    """A figure as files of all `FORMATS`."""
     with drawing_style():
-        for name in possible_figures(shown):
-            figure = make_figure(name, shown)
-            found[name] = {kind: saved(figure, kind) for kind in FORMATS}
-    return found
+        figure = make_figure(name, shown)
+        return {kind: saved(figure, kind) for kind in FORMATS}
+
+
+def all_figures(shown: Shown, names: Iterable[str] | None = None) -> dict[str, dict[str, bytes]]:
+    """Figures of a solution in every format (all where no names are given): name, format, bytes."""
+    chosen = possible_figures(shown) if names is None else names
+    return {name: files_of(name, shown) for name in chosen}
+
+
+def warm_up() -> None:
+    """Load what draws and its letters, so that the first figure does not wait for them."""
+    from matplotlib.figure import Figure
+
+    with drawing_style():
+        figure = Figure(figsize=(1, 1))
+        figure.add_axes((0.2, 0.2, 0.7, 0.7)).set_xlabel(r"$T_{\rm eff,1}$")
+        for kind in FORMATS:
+            saved(figure, kind)

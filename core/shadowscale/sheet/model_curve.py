@@ -5,15 +5,16 @@ from __future__ import annotations
 import csv
 from io import StringIO
 
-from shadowscale.sheet.figure_data import Shown
+from shadowscale.fit.solution import Solution
+from shadowscale.sheet.showing import cycle_curves
 
 
-def model_curve(shown: Shown) -> str:
+def model_curve(solution: Solution) -> str:
     """Phase [cycles], light of each band (1 at the level), velocities of the measured stars [km/s].
 
     Rows are closer inside the eclipses.
     """
-    curves = shown.curves
+    curves = cycle_curves(solution)
     columns = {"phase": curves.phases}
     columns |= {f"light[{band}]": light for band, light in curves.light.items()}
     stars = {"rv1": curves.rv1, "rv2": curves.rv2}

@@ -7,7 +7,10 @@ from dataclasses import dataclass
 from functools import cached_property
 from math import isfinite
 
+from shadowscale.data.photometry import Photometry
+from shadowscale.data.velocities import Velocities
 from shadowscale.fit.plan import Plan
+from shadowscale.fit.solution import Solution
 from shadowscale.judge.finding import FAIL, PASS, WARN, Finding
 from shadowscale.sheet.document import (
     Block,
@@ -77,12 +80,15 @@ class Report:
     name : str
         Of the system, for the title.
     shown : Shown
-        Solution and tables.
+        What its figures show.
     """
 
     name: str
     sheet: Sheet
     shown: Shown
+    solution: Solution
+    photometry: Photometry
+    velocities: Velocities | None
     plan: Plan
 
     @cached_property
@@ -93,12 +99,11 @@ class Report:
     @cached_property
     def methods(self) -> Methods:
         """The methods paragraph and its works."""
-        shown = self.shown
         return methods_of(
             self.sheet,
-            shown.solution,
-            shown.photometry,
-            velocities=shown.velocities,
+            self.solution,
+            self.photometry,
+            velocities=self.velocities,
             plan=self.plan,
         )
 
@@ -186,7 +191,7 @@ def _ephemeris(report: Report) -> Iterator[Section]:
     )
     shown = report.shown
     if 2 in shown.eclipses:
-        words += f" Secondary eclipse is at phase {shown.eclipses[2].middle:.6f}."
+        words += f" Secondary eclipse is at phase {shown.secondary_phase:.6f}."
     names, matrix = sheet.correlation_names, sheet.correlations
     if {"period", "epoch"} <= set(names):
         value = matrix[names.index("period")][names.index("epoch")]

@@ -5,10 +5,8 @@ Lengths are in points (1/72 inch), heights from the top of the page.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-from dataclasses import dataclass, field, replace
-from io import BytesIO
-from typing import TYPE_CHECKING, Any
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
 
 from shadowscale.sheet.document import (
     RIGHT,
@@ -23,55 +21,49 @@ from shadowscale.sheet.document import (
     Verdict,
     Verdicts,
 )
-from shadowscale.sheet.figure_data import Shown
-from shadowscale.sheet.figure_frame import FAINT, INK, Place, drawing_style
-from shadowscale.sheet.figures import FIGURES
-from shadowscale.sheet.report_text import Face, Line, Piece, add_pieces, lines_of, text_width
+from shadowscale.sheet.figure_frame import FAINT, INK
+from shadowscale.sheet.pdf_file import Figure, PdfFile, add_figure
+from shadowscale.sheet.report_pages import (
+    PAPER,
+    QUIET,
+    SIDE,
+    SMALL,
+    WIDTH,
+    Bookmark,
+    Page,
+    mark_colour,
+    write_pages,
+)
+from shadowscale.sheet.report_text import Face, Line, Piece, lines_of, text_width
 from shadowscale.sheet.symbols import flat
 
-if TYPE_CHECKING:
-    from matplotlib.figure import Figure
-
-PAPER = (595.28, 841.89)
-SIDE, TOP, FOOT = 56.7, 56.0, 58.0
-WIDTH = PAPER[0] - 2 * SIDE
+TOP, FOOT = 56.0, 58.0
 LEADING = 1.28
-QUIET = "#5a626b"
-BODY, SMALL = Face(9.5), Face(8.0, colour=QUIET)
+BODY = Face(9.5)
 CELL, CELL_SMALL, HEADING = Face(8.5), Face(7.5, colour=QUIET), Face(8.5, bold=True)
 TITLE, SECTION, GROUP = Face(20, bold=True), Face(13, bold=True), Face(8.5, italic=True)
 CODE = Face(6.5, fixed=True)
 CELL_GAP = 7.0
-MARKS = {"pass": ("o", "#00714f"), "warn": ("^", "#b36b00"), "fail": ("X", "#b03c00")}
 
 
 @dataclass(eq=False)
-class _Page:
-    """What stands on a page before it is drawn: letters, rules, marks and figures."""
-
-    pieces: list[Piece] = field(default_factory=list)
-    rules: list[tuple[float, float, float, float, str]] = field(default_factory=list)
-    marks: list[tuple[float, float, str]] = field(default_factory=list)
-    pictures: list[tuple[str, float, float, float]] = field(default_factory=list)
-
-
-@dataclass(eq=False)
-class _Setter:
+class Setter:
     """The hand that sets blocks on pages; `y` is how far down the present page is full."""
 
-    shown: Shown
-    pages: list[_Page] = field(default_factory=lambda: [_Page()])
+    figures: Mapping[str, Figure]
+    pages: list[Page] = field(default_factory=lambda: [Page()])
+    bookmarks: list[Bookmark] = field(default_factory=list)
     y: float = TOP
 
     @property
-    def page(self) -> _Page:
+    def page(self) -> Page:
         return self.pages[-1]
 
     def room(self, height: float) -> bool:
         """Whether so much fits on what is left; begins a page where not."""
         if self.y + height <= PAPER[1] - FOOT:
             return True
-        self.pages.append(_Page())
+        self.pages.append(Page())
         self.y = TOP
         return False
 
@@ -99,52 +91,54 @@ class _Setter:
         self.y += after
 
 
-def as_pdf(document: Document, shown: Shown) -> bytes:
-    """The report as a PDF file; the same solution gives the same bytes."""
-    from matplotlib.backends.backend_pdf import PdfPages
+def as_pdf(document: Document, figures: Mapping[str, bytes]) -> bytes:
+    """The report as a PDF file; the same solution gives the same bytes.
 
-    with drawing_style():
-        setter = _Setter(shown)
-        _head(setter, document)
-        for section in document.sections:
-            _section(setter, section)
-        stream = BytesIO()
-        metadata = {
-            "Title": flat(document.title),
-            "Creator": "shadowscale",
-            "Producer": None,
-            "CreationDate": None,
-        }
-        with PdfPages(stream, metadata=metadata) as pdf:
-            for number, page in enumerate(setter.pages, 1):
-                pdf.savefig(_drawn(setter, page, number, document.title))
-    return stream.getvalue()
+    Parameters
+    ----------
+    document : Document
+    figures : mapping of name to PDF
+        Of every picture in the document.
+    """
+    pdf = PdfFile()
+    setter = set_document(document, {name: add_figure(pdf, each) for name, each in figures.items()})
+    return write_pages(pdf, setter.pages, document, setter.bookmarks)
 
 
-def _head(setter: _Setter, document: Document) -> None:
+def set_document(document: Document, figures: Mapping[str, Figure]) -> Setter:
+    """The document set on pages."""
+    setter = Setter(figures)
+    _head(setter, document)
+    for section in document.sections:
+        _section(setter, section)
+    return setter
+
+
+def _head(setter: Setter, document: Document) -> None:
     setter.text(document.title, TITLE, after=2)
     setter.text(document.subtitle, SMALL, after=4)
 
 
-def _section(setter: _Setter, section: Section) -> None:
+def _section(setter: Setter, section: Section) -> None:
     first = _least_height(setter, section.blocks[0]) if section.blocks else 0.0
     if setter.room(34 + first):
         setter.y += 12
     setter.rule(0.5, colour=FAINT)
     setter.y += 8
+    setter.bookmarks.append(Bookmark(section.title, len(setter.pages) - 1, PAPER[1] - setter.y + 8))
     setter.text(section.title, SECTION, after=5)
     for block in section.blocks:
         _block(setter, block)
 
 
-def _least_height(setter: _Setter, block: Block) -> float:
+def _least_height(setter: Setter, block: Block) -> float:
     """What must stand on the same page as the title above."""
     if isinstance(block, Picture):
-        return _picture_size(setter, block.name)[1]
+        return setter.figures[block.name].height
     return 60.0
 
 
-def _block(setter: _Setter, block: Block) -> None:
+def _block(setter: Setter, block: Block) -> None:
     if isinstance(block, Paragraph):
         setter.text(block.words, SMALL if block.quiet else BODY)
     elif isinstance(block, Code):
@@ -160,7 +154,7 @@ def _block(setter: _Setter, block: Block) -> None:
         _results(setter, block)
 
 
-def _code(setter: _Setter, block: Code) -> None:
+def _code(setter: Setter, block: Code) -> None:
     step = CODE.size * LEADING
     for part in block.text.strip("\n").split("\n\n"):  # an entry stays on one page
         rows = [row for text in part.splitlines() for row in _code_rows(text)]
@@ -182,7 +176,7 @@ def _code_rows(text: str) -> list[tuple[float, Line]]:
     return [(x + (indent if number else 0.0), line) for number, line in enumerate(lines)]
 
 
-def _results(setter: _Setter, block: Results) -> None:
+def _results(setter: Setter, block: Results) -> None:
     """Main results: a row a star, symbol above value."""
     label = 46.0
     setter.rule(0.8)
@@ -215,23 +209,19 @@ def _wide(value: str, error: str, unit: str, width: float) -> bool:
     return words + text_width(f"{error} {flat(unit)}", SMALL) > width - 6
 
 
-def _picture_size(setter: _Setter, name: str) -> tuple[float, float]:
-    width, height = FIGURES[name].size(setter.shown)
-    return 72 * width, 72 * height
-
-
-def _picture(setter: _Setter, block: Picture) -> None:
-    _, height = _picture_size(setter, block.name)
+def _picture(setter: Setter, block: Picture) -> None:
+    figure = setter.figures[block.name]
+    height = figure.height
     caption = len(lines_of(block.caption, SMALL, WIDTH)) * SMALL.size * LEADING
     setter.room(min(height + caption + 6, PAPER[1] - FOOT - TOP))
-    setter.page.pictures.append((block.name, SIDE, PAPER[1] - setter.y - height, height))
+    setter.page.pictures.append((figure, SIDE, PAPER[1] - setter.y - height))
     setter.y += height + 4
     setter.text(block.caption, SMALL, after=8)
 
 
-def _verdict(setter: _Setter, item: Verdict) -> None:
+def _verdict(setter: Setter, item: Verdict) -> None:
     x = 15.0
-    _, colour = MARKS.get(item.kind, MARKS["fail"])
+    colour = mark_colour(item.kind)
     said = lines_of(item.words, CELL, WIDTH - x)
     source = lines_of(item.source, CELL_SMALL, WIDTH - x) if item.source else []
     height = 11 + len(said) * CELL.size * LEADING + len(source) * CELL_SMALL.size * LEADING
@@ -251,7 +241,7 @@ def _verdict(setter: _Setter, item: Verdict) -> None:
     setter.y += 4
 
 
-def _table(setter: _Setter, table: Table) -> None:
+def _table(setter: Setter, table: Table) -> None:
     widths = _widths(table)
     setter.room(44)
     _table_head(setter, table, widths)
@@ -291,7 +281,7 @@ def _widths(table: Table) -> list[float]:
     return [left * needs[n] / wanted if n in soft else needs[n] for n in range(count)]
 
 
-def _table_head(setter: _Setter, table: Table, widths: Sequence[float]) -> None:
+def _table_head(setter: Setter, table: Table, widths: Sequence[float]) -> None:
     setter.rule(0.8)
     setter.y += 3
     cells = [
@@ -303,7 +293,7 @@ def _table_head(setter: _Setter, table: Table, widths: Sequence[float]) -> None:
     setter.y += 2
 
 
-def _row(setter: _Setter, table: Table, widths: Sequence[float], row: Sequence[str]) -> None:
+def _row(setter: Setter, table: Table, widths: Sequence[float], row: Sequence[str]) -> None:
     cells = [
         lines_of(text, CELL_SMALL if column.small else CELL, width)
         for text, column, width in zip(row, table.columns, widths)
@@ -316,7 +306,7 @@ def _row(setter: _Setter, table: Table, widths: Sequence[float], row: Sequence[s
 
 
 def _cells(
-    setter: _Setter,
+    setter: Setter,
     table: Table,
     widths: Sequence[float],
     cells: Sequence[Sequence[Line]],
@@ -330,46 +320,3 @@ def _cells(
             setter.put(line, x + away, setter.y + size + number * step)
         x += width + CELL_GAP
     setter.y += max(map(len, cells)) * step
-
-
-def _drawn(setter: _Setter, page: _Page, number: int, title: str) -> Figure:
-    """A page as a figure."""
-    from matplotlib.figure import Figure
-
-    figure = Figure(figsize=(PAPER[0] / 72, PAPER[1] / 72), dpi=72)
-    for name, left, bottom, height in page.pictures:
-        width = FIGURES[name].size(setter.shown)[0]
-        place = Place(figure, left / 72, bottom / 72, width, height / 72)
-        FIGURES[name].draw(place, setter.shown)
-    _rules_and_marks(figure, page)
-    last = f"{number} / {len(setter.pages)}"
-    foot = PAPER[1] - 34
-    grey = replace(SMALL, size=7.5)
-    pieces = list(page.pieces)
-    for words, x in ((title, SIDE), (last, PAPER[0] - SIDE - text_width(last, grey))):
-        line = lines_of(words, grey, WIDTH - 60)[0]
-        pieces += [replace(each, x=x + each.x, y=PAPER[1] - foot + each.y) for each in line.pieces]
-    add_pieces(figure, pieces)
-    return figure
-
-
-def _rules_and_marks(figure: Figure, page: _Page) -> None:
-    from matplotlib.lines import Line2D
-
-    def place(x: Any, y: Any) -> tuple[Any, Any]:
-        return [each / PAPER[0] for each in x], [each / PAPER[1] for each in y]
-
-    for left, right, at, width, colour in page.rules:
-        across, up = place((left, right), (at, at))
-        figure.add_artist(
-            Line2D(across, up, transform=figure.transFigure, color=colour, linewidth=width)
-        )
-    for x, y, kind in page.marks:
-        shape, colour = MARKS.get(kind, MARKS["fail"])
-        across, up = place((x,), (y,))
-        figure.add_artist(
-            Line2D(
-                across, up, transform=figure.transFigure, marker=shape, color=colour,
-                markersize=5.5, markeredgewidth=0, linestyle="none",
-            )
-        )  # fmt: skip

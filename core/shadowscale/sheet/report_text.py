@@ -1,24 +1,26 @@
-"""Setting words on the pages of a PDF: widths, lines, and drawing them at once.
+"""Setting words on the pages of a PDF: letters, widths, lines.
 
 Lengths are in points (1/72 inch). The letters are STIX, which come with matplotlib.
 """
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from functools import lru_cache
-from typing import TYPE_CHECKING, Any
 
 from shadowscale.sheet.figure_frame import INK
 from shadowscale.sheet.symbols import Run, runs
+from shadowscale.sheet.truetype import letters
 
-if TYPE_CHECKING:
-    from matplotlib.figure import Figure
-
-FAMILY, FIXED_WIDTH = "STIXGeneral", "DejaVu Sans Mono"
+FILES = {  # by bold and italic
+    (False, False): "STIXGeneral.ttf",
+    (True, False): "STIXGeneralBol.ttf",
+    (False, True): "STIXGeneralItalic.ttf",
+    (True, True): "STIXGeneralBolIta.ttf",
+}
+FIXED_WIDTH, OTHERS = "DejaVuSansMono.ttf", "DejaVuSans.ttf"
 SMALLER, LOWER, HIGHER = 0.72, 0.18, 0.34  # size and shift of indices, in sizes of the letters
-MEASURED_AT = 100
 
 
 @dataclass(frozen=True)
@@ -61,7 +63,7 @@ class _Word:
 
 def text_width(text: str, face: Face) -> float:
     """Length of a text on one line."""
-    return _width(text, face.bold, face.italic, face.fixed) * face.size / MEASURED_AT
+    return face.size * sum(each.width for each in spelled(text, face))
 
 
 def lines_of(words: str, face: Face, width: float) -> list[Line]:
@@ -132,50 +134,38 @@ def _piece(run: Run, text: str, face: Face, x: float) -> Piece:
     return Piece(text, Face(size, face.bold, italic, face.colour, face.fixed), x, shift)
 
 
+@dataclass(frozen=True)
+class Spelled:
+    """Letters of one file in a row: their numbers, the characters they stand for, how wide they are [em]."""
+
+    file: str
+    numbers: tuple[int, ...]
+    characters: str
+    width: float
+
+
+def spelled(text: str, face: Face) -> tuple[Spelled, ...]:
+    """A text in the letters of a face; a character that it lacks is taken from another file."""
+    return _spelled(text, face.bold, face.italic, face.fixed)
+
+
 @lru_cache(maxsize=8192)
-def _width(text: str, bold: bool, italic: bool, fixed: bool) -> float:
-    from matplotlib.ft2font import LoadFlags
-
-    font = _font(bold, italic, fixed)
-    font.set_size(MEASURED_AT, 72)
-    font.set_text(text.replace(" ", "\N{NO-BREAK SPACE}"), 0.0, flags=LoadFlags.NO_HINTING)
-    return float(font.get_width_height()[0]) / 64
-
-
-@lru_cache(maxsize=16)
-def _font(bold: bool, italic: bool, fixed: bool) -> Any:
-    from matplotlib.font_manager import findfont, get_font
-
-    return get_font([findfont(properties(Face(1.0, bold, italic, INK, fixed)))])
-
-
-@lru_cache(maxsize=256)
-def properties(face: Face) -> Any:
-    """The letters as matplotlib knows them."""
-    from matplotlib.font_manager import FontProperties
-
-    return FontProperties(
-        family=[FIXED_WIDTH if face.fixed else FAMILY, "DejaVu Sans"],
-        size=face.size,
-        weight="bold" if face.bold else "normal",
-        style="italic" if face.italic and not face.fixed else "normal",
+def _spelled(text: str, bold: bool, italic: bool, fixed: bool) -> tuple[Spelled, ...]:
+    main = FIXED_WIDTH if fixed else FILES[bold, italic]
+    found: list[tuple[str, list[int], list[str]]] = []
+    for character in text:
+        code = ord(character)
+        file = next((each for each in (main, OTHERS) if code in letters(each).glyphs), main)
+        if not found or found[-1][0] != file:
+            found.append((file, [], []))
+        found[-1][1].append(letters(file).glyphs.get(code, 0))
+        found[-1][2].append(character)
+    return tuple(
+        Spelled(
+            file,
+            tuple(numbers),
+            "".join(characters),
+            sum(letters(file).advances[number] for number in numbers) / letters(file).per_em,
+        )
+        for file, numbers, characters in found
     )
-
-
-def add_pieces(figure: Figure, pieces: Sequence[Piece]) -> None:
-    """Draw pieces on a page, places in points from its lower left corner; all in one go."""
-    from matplotlib.artist import Artist
-
-    class Letters(Artist):
-        """All words of a page: an artist for each would take longer than the page."""
-
-        def draw(self, renderer: Any) -> None:
-            graphics = renderer.new_gc()
-            for piece in pieces:
-                graphics.set_foreground(piece.face.colour)
-                renderer.draw_text(
-                    graphics, piece.x, piece.y, piece.text, properties(piece.face), 0.0
-                )
-            graphics.restore()
-
-    figure.add_artist(Letters())

@@ -2,6 +2,7 @@
 
 import re
 from dataclasses import replace
+from io import BytesIO
 
 import numpy as np
 import pytest
@@ -10,24 +11,26 @@ from made_up import made_up_photometry, made_up_session
 from pages import Page, pdf_pages, pdf_size
 from shadowscale.fit.plan import Plan, Prior
 from shadowscale.fit.solution import Alternative, Decision
+from shadowscale.jobs.reporting import report_of as make_report
 from shadowscale.jobs.results import sheet_of
 from shadowscale.quantities import QUANTITIES
 from shadowscale.sheet.document import Table, Verdicts
-from shadowscale.sheet.figure_data import Shown
 from shadowscale.sheet.figures import FIGURES, all_figures
 from shadowscale.sheet.methods import methods_of
+from shadowscale.sheet.pdf_file import PdfFile, add_figure
 from shadowscale.sheet.references import REFERENCES, bibliography
-from shadowscale.sheet.report import Report, make_document
+from shadowscale.sheet.report import make_document
 from shadowscale.sheet.report_html import as_html
-from shadowscale.sheet.report_pdf import as_pdf
+from shadowscale.sheet.report_pages import PAPER, SIDE
+from shadowscale.sheet.report_pdf import FOOT, TOP, as_pdf, set_document
 from shadowscale.sheet.report_tables import GROUPS
+from shadowscale.sheet.report_text import text_width
 from shadowscale.sheet.report_words import number, value_and_error
 from shadowscale.sheet.symbols import flat, marked, runs, symbol_runs
 
 
 def report_of(session):
-    shown = Shown(session.solution, session.photometry, session.velocities)
-    return Report(session.name, sheet_of(session), shown, session.plan)
+    return make_report(session, sheet_of(session))
 
 
 @pytest.fixture(scope="module")
@@ -56,8 +59,13 @@ def page(html):
 
 
 @pytest.fixture(scope="module")
-def pages(document, report):
-    return pdf_pages(as_pdf(document, report.shown))
+def drawings(figures):
+    return {name: files["pdf"] for name, files in figures.items()}
+
+
+@pytest.fixture(scope="module")
+def pages(document, drawings):
+    return pdf_pages(as_pdf(document, drawings))
 
 
 def test_the_page_is_well_formed_and_its_links_lead_somewhere(page):
@@ -135,8 +143,8 @@ def test_names_of_people_cannot_break_the_page(figures):
     assert "solve '<i>'" in page.text
 
 
-def test_the_pdf_says_the_same_on_pages_of_a4(pages, document, report):
-    width, height = pdf_size(as_pdf(document, report.shown))
+def test_the_pdf_says_the_same_on_pages_of_a4(pages, document, report, drawings):
+    width, height = pdf_size(as_pdf(document, drawings))
     assert (width, height) == pytest.approx((595.28, 841.89), abs=0.01)  # ISO 216
     text = " ".join(" ".join(pages).split())
     for section in document.sections:
@@ -150,26 +158,34 @@ def test_the_pdf_says_the_same_on_pages_of_a4(pages, document, report):
     assert all(f"{number} / {len(pages)}" in text for number, text in enumerate(pages, 1))
 
 
-def test_the_same_solution_gives_the_same_bytes(document, report, figures):
-    assert as_pdf(document, report.shown) == as_pdf(document, report.shown)
+def test_the_same_solution_gives_the_same_bytes(document, drawings, figures):
+    assert as_pdf(document, drawings) == as_pdf(document, drawings)
     again = all_figures(report_of(made_up_session(("V", "I"))).shown)
     assert again == figures
 
 
-def test_a_pdf_keeps_its_words_inside_the_margins(document, report):
-    from shadowscale.sheet.report_pdf import FOOT, PAPER, SIDE, TOP, _head, _section, _Setter
-
-    setter = _Setter(report.shown)
-    _head(setter, document)
-    for section in document.sections:
-        _section(setter, section)
-    from shadowscale.sheet.report_text import text_width
-
-    for page in setter.pages:
+def test_a_pdf_keeps_its_words_inside_the_margins(document, drawings):
+    pdf = PdfFile()
+    figures = {name: add_figure(pdf, content) for name, content in drawings.items()}
+    for page in set_document(document, figures).pages:
         for piece in page.pieces:
             assert piece.x >= SIDE - 1
             assert piece.x + text_width(piece.text, piece.face) <= PAPER[0] - SIDE + 2, piece.text
             assert FOOT - 12 <= piece.y <= PAPER[1] - TOP
+
+
+def test_an_outside_reader_finds_titles_letters_and_figures(document, drawings):
+    """ISO 32000-1 as pypdf reads it."""
+    from pypdf import PdfReader
+
+    reader = PdfReader(BytesIO(as_pdf(document, drawings)), strict=True)
+    assert reader.metadata.title == document.title
+    assert [item.title for item in reader.outline] == [each.title for each in document.sections]
+    resources = reader.pages[0]["/Resources"]
+    assert len(resources["/XObject"]) == len(drawings)
+    for font in resources["/Font"].values():
+        described = font.get_object()["/DescendantFonts"][0].get_object()
+        assert described["/FontDescriptor"]["/FontFile2"].get_data()[:4] == b"\0\1\0\0"
 
 
 def test_without_velocities_there_is_no_scale_and_no_masses():
@@ -183,7 +199,8 @@ def test_without_velocities_there_is_no_scale_and_no_masses():
         " ".join(block.words for block in document.sections[0].blocks if hasattr(block, "words"))
     )
     assert "the scale of the system is open" in words
-    text = " ".join(pdf_pages(as_pdf(document, report.shown)))
+    drawings = {name: files["pdf"] for name, files in all_figures(report.shown).items()}
+    text = " ".join(pdf_pages(as_pdf(document, drawings)))
     assert "No radial velocities were used" in text
 
 
