@@ -13,8 +13,7 @@ from numpy.typing import NDArray
 from shadowscale.constants import C_KM_S, DAY
 from shadowscale.fit.plan import EFFECTS
 from shadowscale.fit.system import System
-from shadowscale.light import _band, _grid, _smooth
-from shadowscale.light._kernels import mean_intensity_point
+from shadowscale.light import _band, _smooth
 from shadowscale.light.laws import LAWS
 from shadowscale.orbit._kernels import CONSTANTS_SIZE, orbit_constants
 from shadowscale.orbit.elements import cos_squared
@@ -23,7 +22,7 @@ from shadowscale.quantities import Key, key
 Floats = NDArray[np.float64]
 INCREDIBLE_ECCENTRICITY = 0.95
 LEAST_BRIGHTNESS = 1e-12
-INSTANT = 1e-4  # exposures shorter than this part of an ingress change the light by less than 1e-7
+NOTHING: Floats = np.empty(0)
 
 
 def possible(values: Mapping[str, float]) -> bool:
@@ -99,38 +98,26 @@ class BandModel:
         cls, system: System, values: Mapping[str, float], band: str, *, derivatives: bool = False
     ) -> BandModel:
         """Prepare a band of `system` with `values` in place of its own."""
-        law = LAWS[system.law]
-        count = len(law.coefficients)
-        keys = keys_of(band, count)
-        limb1, mean1 = _limb(law.code, values, keys.limb1)
-        limb2, mean2 = _limb(law.code, values, keys.limb2)
-        total, ratio = values["radius_sum"], values["radius_ratio"]
-        brightness = max(values[keys.brightness], LEAST_BRIGHTNESS)
-        share1 = float(1.0 / (1.0 + brightness * ratio**2 * mean2[0] / mean1[0]))
-        light_time = light_time_of(values) if system.light_time else 0.0
+        keys = keys_of(band, len(LAWS[system.law].coefficients))
+        amplitudes = np.array([values.get(name, 0.0) for name in keys.effects], dtype=np.float64)
+        if not amplitudes.any() and "fitted" not in system.effects.values():
+            amplitudes = NOTHING
         # In cycles of the period that the fit starts with: the derivative to the period is that of the phases.
         half_exposure = system.exposure / DAY / system.values["period"] / 2
-        constants = constants_of(values)
-        curve = np.empty(_band.curve_size(count))
-        curve[: _band.MEANS] = (
-            values["period"], values["epoch"], half_exposure, values[keys.third], ratio, brightness,
+        given = (
+            values["period"], values["epoch"], half_exposure, values[keys.third],
+            values["radius_sum"], values["radius_ratio"],
+            max(values[keys.brightness], LEAST_BRIGHTNESS), values["ecosw"], values["esinw"],
+            cos2i_of(values), light_time_of(values) if system.light_time else 0.0,
         )  # fmt: skip
-        curve[_band.MEANS : _band.MEANS + count] = mean1[1:] / mean1[0]
-        curve[_band.MEANS + count :] = mean2[1:] / mean2[0]
-        pieces = np.empty((_grid.PIECES_SIZE, 5))
-        number = _grid.lay_pieces(
-            constants, light_time, total, ratio, values["ecosw"], values["esinw"],
-            half_exposure > 0.0, pieces,
+        return cls(
+            *_band.prepare_band(
+                np.array(given, dtype=np.float64), LAWS[system.law].code,
+                np.array([values[name] for name in keys.limb1], dtype=np.float64),
+                np.array([values[name] for name in keys.limb2], dtype=np.float64),
+                amplitudes, derivatives,
+            )
         )  # fmt: skip
-        if half_exposure < INSTANT * _grid.shortest_piece(pieces):
-            curve[_band.HALF_EXPOSURE] = half_exposure = 0.0
-        cells = np.empty((number, _grid.ORDER, _grid.grid_columns(count, derivatives=derivatives)))
-        _grid.fill_cells(
-            pieces, constants, light_time, total, ratio, share1, brightness, law.code, limb1, limb2,
-            mean1, mean2, half_exposure > 0.0, cells,
-        )  # fmt: skip
-        effects = _effects(system, values, keys, constants, light_time, half_exposure, share1)
-        return cls(curve, pieces, cells, effects)
 
     def light(self, time: Floats) -> Floats:
         """(n,) light at `time` in any order, one outside eclipse where there are no small effects."""
@@ -162,33 +149,3 @@ class BandModel:
         order = order[np.isfinite(time[order])]
         flux[order] = self.light(time[order])
         return flux
-
-
-def _limb(code: int, values: Mapping[str, float], keys: tuple[str, ...]) -> tuple[Floats, Floats]:
-    """Coefficients of one star, and its disc mean with gradient."""
-    coefficients = np.array([values[name] for name in keys], dtype=np.float64)
-    mean = np.empty(1 + coefficients.size)
-    mean_intensity_point(code, coefficients, mean)
-    return coefficients, mean
-
-
-def _effects(
-    system: System,
-    values: Mapping[str, float],
-    keys: BandKeys,
-    constants: Floats,
-    light_time: float,
-    half_exposure: float,
-    share1: float,
-) -> Floats:
-    """The small effects over phase; no cells where they are off."""
-    amplitudes = np.array([values.get(name, 0.0) for name in keys.effects])
-    if not amplitudes.any() and "fitted" not in system.effects.values():
-        return np.empty((0, _grid.ORDER, _smooth.EFFECT_COLUMNS))
-    count = _smooth.effect_cells(sqrt(values["ecosw"] ** 2 + values["esinw"] ** 2))
-    cells = np.empty((count, _grid.ORDER, _smooth.EFFECT_COLUMNS))
-    _smooth.fill_effects(
-        constants, light_time, half_exposure, share1, amplitudes, 1.0 - cos2i_of(values),
-        values["ecosw"], cells,
-    )  # fmt: skip
-    return cells

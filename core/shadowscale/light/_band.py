@@ -16,7 +16,7 @@ released.
 
 Arrays
 ------
-curve : (CURVE_SIZE,)
+curve : (MEANS + 2m,)
     period, epoch, half an exposure [cycles], third light, and what the derivatives need; names below.
 pieces, cells : of `_grid`; effects : of `_smooth`, no rows where they are off.
 active (n,), cycles (n,), places (PLACES, n)
@@ -35,20 +35,34 @@ from numpy.typing import NDArray
 from shadowscale._compiled import fused, summed
 from shadowscale.light._grid import (
     FIXED,
+    ORDER,
+    PIECES_SIZE,
     SPANS,
     eclipse_shape,
+    fill_cells,
     integral_spot,
+    lay_pieces,
     next_window,
     read_rows,
     read_values,
     settle_places,
+    shortest_piece,
     spans_of,
     spot,
 )
-from shadowscale.light._smooth import EFFECT_COLUMNS, EFFECTS, effect_place
+from shadowscale.light._kernels import mean_intensity_point
+from shadowscale.light._smooth import (
+    EFFECT_COLUMNS,
+    EFFECTS,
+    effect_cells,
+    effect_place,
+    fill_effects,
+)
+from shadowscale.orbit._kernels import CONSTANTS_SIZE, ECC, orbit_constants
 
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
+Model = tuple[Floats, Floats, Floats, Floats]
 
 SHARED = 10  # columns before limb darkening
 BLOCK = 16
@@ -56,13 +70,62 @@ BATCH = 64
 EARLY_ROW, TURNS_ROW, EFFECT_ROW, PLACES = 3, 6, 7, 8  # rows of places
 W, V, VV, T, TT, VT = range(6)  # sums of weight times: 1, v, v^2, t, t^2, v t
 SUMS = 6
+INSTANT = 1e-4  # exposures shorter than this part of an ingress change the light by less than 1e-7
 
 PERIOD, EPOCH, HALF_EXPOSURE, THIRD, RATIO, BRIGHTNESS, MEANS = range(7)  # places in `curve`
 
 
-def curve_size(count: int) -> int:
-    """Places of `curve`: behind MEANS stand d ln Lambda1/dc (m,) and d ln Lambda2/dc (m,)."""
-    return MEANS + 2 * count
+@fused
+def prepare_band(
+    given: Floats,
+    law: int,
+    limb1: Floats,
+    limb2: Floats,
+    amplitudes: Floats,
+    derivatives: bool,
+) -> Model:
+    """Everything that points are read from: curve, pieces, cells and effects.
+
+    given : (11,) period, epoch, half an exposure [cycles], third light, r1+r2, k, J, e cos w, e sin w,
+        cos^2 i, light time [cycles per a]
+    limb1, limb2 : (m,) coefficients of the law
+    amplitudes : of the small effects in the order of the derivatives, or none where they are off
+    Behind MEANS of the curve stand d ln Lambda1/dc (m,) and d ln Lambda2/dc (m,).
+    """
+    period, epoch, half_exposure, third = given[0], given[1], given[2], given[3]
+    radius_sum, ratio, brightness = given[4], given[5], given[6]
+    ecosw, esinw, cos2i, light_time = given[7], given[8], given[9], given[10]
+    count = limb1.size
+    mean1, mean2 = np.empty(1 + count), np.empty(1 + count)
+    mean_intensity_point(law, limb1, mean1)
+    mean_intensity_point(law, limb2, mean2)
+    share1 = 1.0 / (1.0 + brightness * ratio * ratio * mean2[0] / mean1[0])
+    constants = np.empty(CONSTANTS_SIZE)
+    orbit_constants(ecosw, esinw, cos2i, constants)
+    pieces = np.empty((PIECES_SIZE, 5))
+    number = lay_pieces(
+        constants, light_time, radius_sum, ratio, ecosw, esinw, half_exposure > 0.0, pieces
+    )
+    if half_exposure < INSTANT * shortest_piece(pieces):
+        half_exposure = 0.0
+    columns = (FIXED + 2 * count + 3) // 4 * 4 if derivatives else 1
+    cells = np.empty((number, ORDER, columns))
+    fill_cells(
+        pieces, constants, light_time, radius_sum, ratio, share1, brightness, law, limb1, limb2,
+        mean1, mean2, half_exposure > 0.0, cells,
+    )  # fmt: skip
+    curve = np.empty(MEANS + 2 * count)
+    curve[PERIOD], curve[EPOCH], curve[HALF_EXPOSURE] = period, epoch, half_exposure
+    curve[THIRD], curve[RATIO], curve[BRIGHTNESS] = third, ratio, brightness
+    curve[MEANS : MEANS + count] = mean1[1:] / mean1[0]
+    curve[MEANS + count :] = mean2[1:] / mean2[0]
+    wide = effect_cells(constants[ECC]) if amplitudes.size > 0 else 0
+    effects = np.empty((wide, ORDER, EFFECT_COLUMNS))
+    if wide > 0:
+        fill_effects(
+            constants, light_time, half_exposure, share1, amplitudes, 1.0 - cos2i, ecosw, effects
+        )
+    return curve, pieces, cells, effects
 
 
 @fused

@@ -21,7 +21,8 @@ Arrays
 pieces : (PIECES_SIZE, 5)
     A row a piece: middle [cycles], half [cycles], number of cells, first cell, eclipse (0 primary, 1);
     row COUNTS: number of pieces, number of cells with the constant ones; row SPANS + eclipse: first
-    and last phase, last before first where there is no eclipse, and the constant cell behind.
+    and last phase, last before first where there is no eclipse, the constant cell behind, the phase
+    of the closest approach and its separation.
 cells : (number, ORDER, columns)
     Coefficients of t^0, t^1, ..., t^6 (zero but for integrals). Columns: 0 loss and, where
     derivatives are wanted, 1 to cycles, 2 r1+r2, 3 k, 4 cos^2 i, 5 e cos w, 6 e sin w, 7 light time,
@@ -66,11 +67,6 @@ _NODES = 0.125 * (1.0 + np.cos(np.pi * (np.arange(13) + 0.5) / 13))  # in 0...1/
 _ARCSINE = np.linalg.solve(
     np.vander(_NODES, increasing=True), np.arcsin(np.sqrt(_NODES)) / np.sqrt(_NODES)
 )  # asin(x)/x as a polynomial of x^2
-
-
-def grid_columns(count: int, *, derivatives: bool) -> int:
-    """Columns of the cells for a law of `count` coefficients."""
-    return -(-(FIXED + 2 * count) // 4) * 4 if derivatives else 1
 
 
 @fused
@@ -226,6 +222,8 @@ def lay_pieces(
         pieces[SPANS + eclipse, 0] = first
         pieces[SPANS + eclipse, 1] = last
         pieces[SPANS + eclipse, 2] = pieces[COUNTS, 1]
+        pieces[SPANS + eclipse, 3] = middle
+        pieces[SPANS + eclipse, 4] = closest
         pieces[COUNTS, 1] += 1
     return int(pieces[COUNTS, 1])
 

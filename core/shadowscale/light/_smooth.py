@@ -28,6 +28,7 @@ _WEIGHTS = np.array([5.0, 8.0, 5.0]) / 18.0
 _LAGRANGE = np.linalg.inv(np.vander(np.arange(6.0) - 2.0, increasing=True))
 
 
+@fused
 def effect_cells(eccentricity: float) -> int:
     """How many cells hold the effects to 1e-10 of an amplitude of 0.1."""
     return int(np.ceil(160.0 / (1.0 - eccentricity) ** 1.5))
