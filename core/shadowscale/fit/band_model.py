@@ -5,7 +5,8 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import cache
-from math import pi, sqrt
+from math import nan, pi, sqrt
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -13,7 +14,7 @@ from numpy.typing import NDArray
 from shadowscale.constants import C_KM_S, DAY
 from shadowscale.fit.plan import EFFECTS
 from shadowscale.fit.system import System
-from shadowscale.light import _band, _smooth
+from shadowscale.light import _band, _grid, _smooth
 from shadowscale.light.laws import LAWS
 from shadowscale.orbit._kernels import CONSTANTS_SIZE, orbit_constants
 from shadowscale.orbit.elements import cos_squared
@@ -22,7 +23,6 @@ from shadowscale.quantities import Key, key
 Floats = NDArray[np.float64]
 INCREDIBLE_ECCENTRICITY = 0.95
 LEAST_BRIGHTNESS = 1e-12
-NOTHING: Floats = np.empty(0)
 
 
 def possible(values: Mapping[str, float]) -> bool:
@@ -81,6 +81,44 @@ def keys_of(band: str, coefficients: int) -> BandKeys:
     )  # fmt: skip
 
 
+class Shape(NamedTuple):
+    """What makes one band's light over phase; places as `shadowscale.light._band.prepare_band` has them."""
+
+    given: tuple[float, ...]  # without period and epoch
+    law: int
+    limb1: tuple[float, ...]
+    limb2: tuple[float, ...]
+    amplitudes: tuple[float, ...]
+
+    @classmethod
+    def at(cls, system: System, values: Mapping[str, float], band: str) -> Shape:
+        """Of a band of `system` with `values` in place of its own."""
+        law = LAWS[system.law]
+        keys = keys_of(band, len(law.coefficients))
+        amplitudes = tuple([values.get(name, 0.0) for name in keys.effects])
+        if not any(amplitudes) and "fitted" not in system.effects.values():
+            amplitudes = ()
+        # In cycles of the period that the fit starts with: the derivative to the period is that of the phases.
+        half_exposure = system.exposure / DAY / system.values["period"] / 2
+        given = (
+            half_exposure, values[keys.third], values["radius_sum"], values["radius_ratio"],
+            max(values[keys.brightness], LEAST_BRIGHTNESS), values["ecosw"], values["esinw"],
+            cos2i_of(values), light_time_of(values) if system.light_time else 0.0,
+        )  # fmt: skip
+        limb1, limb2 = (
+            tuple([values[name] for name in names]) for names in (keys.limb1, keys.limb2)
+        )
+        return cls(given, law.code, limb1, limb2, amplitudes)
+
+
+class Eclipse(NamedTuple):
+    """First to fourth and second to third contact [cycles]; light lost at the middle. NaN: there is none."""
+
+    duration: float = nan
+    inner_duration: float = nan
+    depth: float = nan
+
+
 @dataclass(frozen=True, eq=False)
 class BandModel:
     """One band's model at given values: its loss of light and small effects over phase.
@@ -98,26 +136,20 @@ class BandModel:
         cls, system: System, values: Mapping[str, float], band: str, *, derivatives: bool = False
     ) -> BandModel:
         """Prepare a band of `system` with `values` in place of its own."""
-        keys = keys_of(band, len(LAWS[system.law].coefficients))
-        amplitudes = np.array([values.get(name, 0.0) for name in keys.effects], dtype=np.float64)
-        if not amplitudes.any() and "fitted" not in system.effects.values():
-            amplitudes = NOTHING
-        # In cycles of the period that the fit starts with: the derivative to the period is that of the phases.
-        half_exposure = system.exposure / DAY / system.values["period"] / 2
-        given = (
-            values["period"], values["epoch"], half_exposure, values[keys.third],
-            values["radius_sum"], values["radius_ratio"],
-            max(values[keys.brightness], LEAST_BRIGHTNESS), values["ecosw"], values["esinw"],
-            cos2i_of(values), light_time_of(values) if system.light_time else 0.0,
+        shape = Shape.at(system, values, band)
+        return cls.of(shape, values["period"], values["epoch"], derivatives=derivatives)
+
+    @classmethod
+    def of(
+        cls, shape: Shape, period: float, epoch: float, *, derivatives: bool = False
+    ) -> BandModel:
+        """Prepare a band of that shape."""
+        arrays = _band.prepare_band(
+            np.array((period, epoch, *shape.given), dtype=np.float64), shape.law,
+            np.array(shape.limb1, dtype=np.float64), np.array(shape.limb2, dtype=np.float64),
+            np.array(shape.amplitudes, dtype=np.float64), derivatives,
         )  # fmt: skip
-        return cls(
-            *_band.prepare_band(
-                np.array(given, dtype=np.float64), LAWS[system.law].code,
-                np.array([values[name] for name in keys.limb1], dtype=np.float64),
-                np.array([values[name] for name in keys.limb2], dtype=np.float64),
-                amplitudes, derivatives,
-            )
-        )  # fmt: skip
+        return cls(*arrays)
 
     def light(self, time: Floats) -> Floats:
         """(n,) light at `time` in any order, one outside eclipse where there are no small effects."""
@@ -136,6 +168,22 @@ class BandModel:
         rows = np.empty((time.size, self.columns))
         _band.band_rows(time, self.curve, self.pieces, self.cells, self.effects, rows)
         return rows
+
+    def eclipse(self, number: int) -> Eclipse:
+        """The primary (0) or secondary (1) eclipse."""
+        span, pieces = (
+            self.pieces[_grid.SPANS + number],
+            self.pieces[: int(self.pieces[_grid.COUNTS, 0])],
+        )
+        if span[1] < span[0]:
+            return Eclipse()
+        own = pieces[pieces[:, 4] == number]
+        middle = self.curve[_band.EPOCH] + self.curve[_band.PERIOD] * span[3]
+        return Eclipse(
+            float(span[1] - span[0]),
+            float(2.0 * own[1, 1]) if len(own) == 3 else nan,
+            1.0 - float(self.light(np.array([middle]))[0]),
+        )
 
     @property
     def columns(self) -> int:

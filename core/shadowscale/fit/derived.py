@@ -13,11 +13,10 @@ from math import atan2, cos, degrees, hypot, nan, radians
 
 import numpy as np
 
-from shadowscale.fit.band_model import BandModel, light_time_of
+from shadowscale.fit.band_model import BandModel, Eclipse, Shape
 from shadowscale.fit.plan import Plan
 from shadowscale.fit.system import System
 from shadowscale.geometry import absolute
-from shadowscale.geometry.contacts import ContactPhases, contact_phases
 from shadowscale.light.laws import LAWS
 from shadowscale.quantities import BAND, QUANTITIES, key, parse_key
 
@@ -99,34 +98,16 @@ class Stars:
         )
 
     @cached_property
-    def contacts(self) -> ContactPhases:
-        """Exact contacts of both eclipses."""
-        light_time = light_time_of(self.system.values) if self.system.light_time else 0.0
-        names = ("radius_sum", "radius_ratio", "inclination", "ecosw", "esinw")
-        return _contacts(*(self.get(name) for name in names), light_time)
-
-    @cached_property
-    def depths(self) -> tuple[float, float]:
-        """Light lost at the middles of both eclipses in the first band."""
-        model = BandModel.at(self.system, self.system.values, self.system.bands[0])
-        period, epoch = self.get("period"), self.get("epoch")
-        middles = np.array([self.contacts.primary.middle, self.contacts.secondary.middle])
-        light = model.light(epoch + np.where(np.isfinite(middles), middles, 0.25) * period)
-        lost = np.where(np.isfinite(middles), 1.0 - light, nan)
-        return float(lost[0]), float(lost[1])
+    def eclipses(self) -> tuple[Eclipse, Eclipse]:
+        """Both eclipses in the first band."""
+        return _eclipses(Shape.at(self.system, self.system.values, self.system.bands[0]))
 
 
 @lru_cache(maxsize=256)
-def _contacts(
-    radius_sum: float,
-    ratio: float,
-    inclination: float,
-    ecosw: float,
-    esinw: float,
-    light_time: float,
-) -> ContactPhases:
-    """Contacts, kept: most quantities of a system do not move them."""
-    return contact_phases(radius_sum, ratio, inclination, ecosw, esinw, light_time=light_time)
+def _eclipses(shape: Shape) -> tuple[Eclipse, Eclipse]:
+    """Eclipses, kept: many quantities of a system do not touch them."""
+    model = BandModel.of(shape, 1.0, 0.0)
+    return model.eclipse(0), model.eclipse(1)
 
 
 def _impact(stars: Stars, sign: float) -> float:
@@ -233,12 +214,12 @@ FUNCTIONS: Mapping[str, Callable[[Stars], float]] = {
     "Mbol1": _mbol(1),
     "Mbol2": _mbol(2),
     "distance": _distance,
-    "T14_1": lambda stars: stars.contacts.primary.duration * stars.get("period"),
-    "T23_1": lambda stars: stars.contacts.primary.inner_duration * stars.get("period"),
-    "T14_2": lambda stars: stars.contacts.secondary.duration * stars.get("period"),
-    "T23_2": lambda stars: stars.contacts.secondary.inner_duration * stars.get("period"),
-    "depth1": lambda stars: stars.depths[0],
-    "depth2": lambda stars: stars.depths[1],
+    "T14_1": lambda stars: stars.eclipses[0].duration * stars.get("period"),
+    "T23_1": lambda stars: stars.eclipses[0].inner_duration * stars.get("period"),
+    "T14_2": lambda stars: stars.eclipses[1].duration * stars.get("period"),
+    "T23_2": lambda stars: stars.eclipses[1].inner_duration * stars.get("period"),
+    "depth1": lambda stars: stars.eclipses[0].depth,
+    "depth2": lambda stars: stars.eclipses[1].depth,
 }
 BAND_FUNCTIONS: Mapping[str, Callable[[Stars, str], float]] = {
     "light_ratio": _light_ratio,
