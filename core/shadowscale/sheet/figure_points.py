@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -11,6 +11,7 @@ from shadowscale.sheet.figure_data import Floats
 from shadowscale.sheet.figure_frame import FAINT, INK, SOFT
 
 if TYPE_CHECKING:
+    from matplotlib.artist import Artist
     from matplotlib.axes import Axes
 
 DOTS_AN_INCH = 200
@@ -31,16 +32,31 @@ def draw_points(axes: Axes, x: Floats, y: Floats, *, colour: str) -> None:
     across = (np.asarray(x) - left) / (right - left)
     down = (np.asarray(y) - top) / (bottom - top)
     picture = points_picture(across, down, width=width, height=height, colour=colour)
-    axes.imshow(
-        picture,
-        extent=(left, right, bottom, top),
-        aspect="auto",
-        origin="upper",
-        interpolation="none",
-        zorder=2,
-    )
-    axes.set_xlim(left, right)
-    axes.set_ylim(bottom, top)
+    axes.add_artist(_picture_artist(picture, axes))
+
+
+def _picture_artist(picture: NDArray[np.uint8], axes: Axes) -> Artist:
+    """A picture that fills the axes, dot for dot where dots are drawn; `imshow` would blur and be slow."""
+    from matplotlib.artist import Artist
+    from matplotlib.transforms import Affine2D
+
+    upward = picture[::-1]
+
+    class Picture(Artist):
+        """Drawn at `DOTS_AN_INCH`, or to scale where nothing but lines is drawn."""
+
+        def draw(self, renderer: Any) -> None:
+            graphics, box = renderer.new_gc(), axes.bbox
+            if renderer.option_scale_image():
+                size = Affine2D().scale(box.width, box.height)
+                renderer.draw_image(graphics, box.x0, box.y0, upward, size)
+            else:
+                renderer.draw_image(graphics, round(box.x0), round(box.y0), upward)
+            graphics.restore()
+
+    artist = Picture()
+    artist.set_zorder(2)
+    return artist
 
 
 def draw_set_aside(axes: Axes, x: Floats, y: Floats) -> None:

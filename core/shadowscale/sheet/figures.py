@@ -90,7 +90,7 @@ def saved(figure: Figure, kind: str) -> bytes:
         "svg": {"Date": None, "Creator": "shadowscale"},
         "png": {"Software": "shadowscale"},
     }
-    extra: Any = {"pil_kwargs": {"compress_level": 5}} if kind == "png" else {}
+    extra: Any = {"pil_kwargs": {"compress_level": 3}} if kind == "png" else {}
     figure.savefig(stream, format=kind, metadata=metadata[kind], **extra)
     content = stream.getvalue()
     if kind == "svg":  # pictures of points are to be shrunk smoothly, not by dropping pixels
