@@ -79,12 +79,23 @@ def grey_intensity(
 ) -> Floats:
     """I(mu)/I(1) of a grey atmosphere, mu in [0, 1]; arguments as of `grey_coefficients`."""
     _check(teff, wavelength_nm, temperature_law)
-    cosines = np.append(np.asarray(mu, dtype=np.float64).ravel(), 1.0)
-    t, weight = _pieces(_DEPTHS, _PIECE_NODES)
-    tau = np.multiply.outer(cosines, t)
+    heat = _heat(np.asarray(mu, dtype=np.float64).ravel(), temperature_law)
+    return _emergent(heat, teff, wavelength_nm).reshape(np.shape(mu))
+
+
+def _heat(mu: Floats, temperature_law: str) -> Floats:
+    """(n+1, depths) of T^4/Teff^4 along the lines of sight at mu (n,) and at the centre."""
+    t, _ = _pieces(_DEPTHS, _PIECE_NODES)
+    tau = np.multiply.outer(np.append(mu, 1.0), t)
     q = hopf_function(tau) if temperature_law == "hopf" else np.full(tau.shape, 2.0 / 3.0)
-    emergent = _source(0.75 * (tau + q), teff, wavelength_nm) @ (weight * np.exp(-t))
-    return np.asarray((emergent[:-1] / emergent[-1]).reshape(np.shape(mu)))
+    return np.asarray(0.75 * (tau + q))
+
+
+def _emergent(heat: Floats, teff: float, wavelength_nm: float | None) -> Floats:
+    """(n,) intensity over that of the centre, from what `_heat` gives."""
+    t, weight = _pieces(_DEPTHS, _PIECE_NODES)
+    emergent = _source(heat, teff, wavelength_nm) @ (weight * np.exp(-t))
+    return np.asarray(emergent[:-1] / emergent[-1])
 
 
 def hopf_function(tau: ArrayLike) -> Floats:
@@ -150,14 +161,20 @@ def _hopf_nodes() -> tuple[Floats, Floats]:
     return x, weight / (h_function(x) * z)
 
 
+@lru_cache(maxsize=2)
+def _disc(temperature_law: str) -> tuple[Floats, Floats, Floats]:
+    """Nodes over the disc with their weights 2 mu dmu, and the heat below them: the same for every star."""
+    mu, weight = _pieces((0.0, 0.05, 1.0), _DISC_NODES // 2)
+    return mu, 2.0 * mu * weight, _heat(mu, temperature_law)
+
+
 @lru_cache(maxsize=256)
 def _fitted(
     teff: float, wavelength_nm: float | None, name: str, temperature_law: str
 ) -> tuple[float, ...]:
     law = law_named(name)
-    mu, weight = _pieces((0.0, 0.05, 1.0), _DISC_NODES // 2)
-    weight = 2.0 * mu * weight
-    intensity = grey_intensity(mu, teff, wavelength_nm, temperature_law=temperature_law)
+    mu, weight, heat = _disc(temperature_law)
+    intensity = _emergent(heat, teff, wavelength_nm)
     mean = float(weight @ intensity / weight.sum())
     if law.code == POWER_2:
         return _fitted_power_2(law, mu, weight, intensity=intensity, mean=mean)
@@ -177,17 +194,19 @@ def _fitted_power_2(
 ) -> tuple[float, ...]:
     """The exponent of least squares; the other coefficient follows from the flux."""
 
-    def coefficients(alpha: float) -> tuple[float, float]:
-        return (1.0 - mean) * (alpha + 2.0) / alpha, alpha
+    def coefficients(alpha: Floats) -> Floats:
+        return np.stack([(1.0 - mean) * (alpha + 2.0) / alpha, alpha])
 
-    def misfit(log_alpha: float) -> float:
-        return float(weight @ (law.intensity(mu, coefficients(np.exp(log_alpha))) - intensity) ** 2)
+    def misfits(log_alpha: Floats) -> Floats:
+        rows = coefficients(np.exp(log_alpha)[:, None])
+        return np.asarray((law.intensity(mu, rows) - intensity) ** 2 @ weight)
 
     # One smooth minimum in one variable: narrowing the grid around its best point is enough, and
     # spares the import of an optimiser at every start.
     low, high = np.log(0.02), np.log(8.0)
     for _ in range(8):
         grid = np.linspace(low, high, 25)
-        best = int(np.argmin([misfit(value) for value in grid]))
+        best = int(np.argmin(misfits(grid)))
         low, high = grid[max(best - 1, 0)], grid[min(best + 1, 24)]
-    return coefficients(float(np.exp(0.5 * (low + high))))
+    c, alpha = coefficients(np.exp(0.5 * (low + high)))
+    return float(c), float(alpha)
