@@ -21,6 +21,8 @@ class StarsPane(Pane):
 
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
+        self._labels: dict[tuple[int, int], QLabel] = {}
+        self._shape: tuple[tuple[str, ...], bool] | None = None  # lines and scheme of the labels
         self.grid = QGridLayout(self)
         self.grid.setContentsMargins(10, 6, 10, 6)
         self.grid.setVerticalSpacing(1)
@@ -32,12 +34,11 @@ class StarsPane(Pane):
         """Write the lines anew."""
         if "solution" not in names and "view" not in names:
             return
-        while (item := self.grid.takeAt(0)) is not None:
-            widget = item.widget()
-            if widget is not None:
-                widget.hide()
-                widget.deleteLater()
         lines = card_lines(self.session.solution)
+        shape = (tuple(line.what for line in lines), theme.colours().dark)
+        if shape != self._shape:
+            self._clear()
+            self._shape = shape
         if not lines:
             self._put(
                 "Masses and radii appear here once there is a solution.", 0, 0, quiet=True, span=4
@@ -53,6 +54,13 @@ class StarsPane(Pane):
                 self._put(rich if value else "\N{EM DASH}", row, column)
             self._put(line.unit, row, 3, quiet=True)
 
+    def _clear(self) -> None:
+        for label in self._labels.values():
+            self.grid.removeWidget(label)
+            label.hide()
+            label.deleteLater()
+        self._labels.clear()
+
     def _put(
         self,
         text: str,
@@ -63,7 +71,11 @@ class StarsPane(Pane):
         span: int = 1,
         tint: str = "",
     ) -> None:
-        label = QLabel(text)
+        """Write into a cell; its label is made once, for a drag writes often."""
+        if (row, column) in self._labels:
+            self._labels[row, column].setText(text)
+            return
+        label = self._labels[row, column] = QLabel(text)
         label.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
         if quiet:
             label.setObjectName("quiet")

@@ -40,7 +40,9 @@ class VelocitiesPane(Pane):
         self.curve = Picture("Velocity curves", left="km/s")
         self.rest = Picture("Residuals of the velocities", left="O\N{MINUS SIGN}C", bottom="phase")
         self.points, self.rest_points = Points(), Points()
-        self._lines: list[pg.InfiniteLine | pg.PlotCurveItem] = []
+        self._models = {star: pg.PlotCurveItem() for star in SHAPES}
+        self._level = pg.InfiniteLine(0.0, angle=0)
+        self._zero = pg.InfiniteLine(0.0, angle=0)
         self._cursor = pg.InfiniteLine(0.0, angle=90)
         self._cursor.setVisible(False)
         self.nothing = QLabel(NOTHING)
@@ -96,6 +98,9 @@ class VelocitiesPane(Pane):
             self.split.addWidget(picture)
             self.split.setStretchFactor(self.split.count() - 1, stretch)
         self.split.setSizes([300, 100])
+        for line in (*self._models.values(), self._level):
+            self.curve.addItem(line)
+        self.rest.addItem(self._zero)
         self.curve.addItem(self._cursor, ignoreBounds=True)
         self.curve.getAxis("bottom").setStyle(showValues=False)
         self.curve.getAxis("bottom").setHeight(6)
@@ -112,26 +117,22 @@ class VelocitiesPane(Pane):
             self.asked.emit("brushed", rows)
 
     def _show_models(self, wanted: bool) -> None:
-        for line in self._lines:
-            line.getViewBox().removeItem(line)
-        self._lines = []
         now, system = theme.colours(), self.session.system
         self._cursor.setPen(pg.mkPen(now.quiet, style=Qt.PenStyle.DotLine))
-        if not READY or not wanted or system is None or not system.has("K1"):
-            return
-        for curve in velocity_curves(system):
-            star = int(curve.label[-1])
-            pen = pg.mkPen(_tint(star), width=2.0, style=DASHES[star])
-            self._add(self.curve, pg.PlotCurveItem(curve.x, curve.y, pen=pen))
-        level = pg.InfiniteLine(
-            system.value("gamma1"), angle=0, pen=pg.mkPen(now.line, style=Qt.PenStyle.DashLine)
-        )
-        self._add(self.curve, level)
-        self._add(self.rest, pg.InfiniteLine(0.0, angle=0, pen=pg.mkPen(now.quiet)))
-
-    def _add(self, picture: Picture, item: pg.InfiniteLine | pg.PlotCurveItem) -> None:
-        picture.addItem(item)
-        self._lines.append(item)
+        shown = READY and wanted and system is not None and system.has("K1")
+        curves = velocity_curves(system) if shown and system is not None else ()
+        found = {int(curve.label[-1]): curve for curve in curves}
+        for star, line in self._models.items():
+            line.setVisible(star in found)
+            if star in found:
+                pen = pg.mkPen(_tint(star), width=2.0, style=DASHES[star])
+                line.setData(found[star].x, found[star].y, pen=pen)
+        self._level.setVisible(bool(found))
+        self._zero.setVisible(bool(found))
+        if shown and system is not None:
+            self._level.setPos(system.value("gamma1"))
+            self._level.setPen(pg.mkPen(now.line, style=Qt.PenStyle.DashLine))
+            self._zero.setPen(pg.mkPen(now.quiet))
 
 
 def _layers(found: tuple[VelocityPoints, ...], *, residual: bool) -> tuple[Layer, ...]:
