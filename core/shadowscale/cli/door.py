@@ -16,7 +16,7 @@ from dataclasses import dataclass
 from types import MappingProxyType
 
 from shadowscale._version import __version__
-from shadowscale.cli import compare, minima, period, replay, simulate, solve
+from shadowscale.cli import compare, minima, pack, period, replay, simulate, solve
 from shadowscale.cli.parser import Parser, add_common
 from shadowscale.errors import ShadowscaleError, UsageError
 
@@ -36,7 +36,7 @@ class Command:
 COMMANDS: Mapping[str, Command] = MappingProxyType(
     {
         module.__name__.rsplit(".", 1)[-1]: Command(module.WORDS, module.add_arguments, module.run)
-        for module in (solve, simulate, replay, compare, period, minima)
+        for module in (solve, simulate, replay, compare, pack, period, minima)
     }
 )
 

@@ -18,17 +18,20 @@ from shadowscale.cli.parser import (
     wants_report,
 )
 from shadowscale.cli.plan_options import add_plan_options, given_options, plan_from
+from shadowscale.cli.saved import is_session, session_path
 from shadowscale.errors import UsageError
 from shadowscale.session.session import Session, Source
 
 WORDS = "solve photometry (and velocities) for masses and radii"
-SESSION_SUFFIX = ".json"
 
 
 def add_arguments(parser: Parser) -> None:
     """The arguments of the command."""
     parser.add_argument(
-        "inputs", metavar="INPUT", nargs="*", help="photometry files, or one session file"
+        "inputs",
+        metavar="INPUT",
+        nargs="*",
+        help="photometry files, or one session (.json, or packed .zip)",
     )
     add_output(parser)
     add_report(parser)
@@ -55,8 +58,8 @@ def run(arguments: Namespace) -> None:
     from shadowscale.jobs.solve import solve_session
     from shadowscale.jobs.words import summary
 
-    session = _session(arguments)
     folder = Path(output_folder(arguments))
+    session = _session(arguments, folder)
     report = wants_report(arguments)
     names = result_files(session, report=report)
     check_targets(session, folder, names, overwrite=arguments.overwrite)
@@ -72,13 +75,13 @@ def run(arguments: Namespace) -> None:
         print(summary(solved, folder), end="")
 
 
-def _session(arguments: Namespace) -> Session:
+def _session(arguments: Namespace, folder: Path) -> Session:
     """The session that the arguments describe or name, not solved yet."""
     if not arguments.inputs:
         raise UsageError("INPUT", "nothing", expected="photometry files or one session file")
-    sessions = [name for name in arguments.inputs if name.lower().endswith(SESSION_SUFFIX)]
+    sessions = [name for name in arguments.inputs if is_session(name)]
     if sessions:
-        return _saved(arguments, sessions[0])
+        return _saved(arguments, sessions[0], folder)
     photometry = pairs("--columns", arguments.columns, form="ROLE=NAME")
     velocities = pairs("--velocity-columns", arguments.velocity_columns, form="ROLE=NAME")
     return Session(
@@ -92,7 +95,7 @@ def _session(arguments: Namespace) -> Session:
     )
 
 
-def _saved(arguments: Namespace, name: str) -> Session:
+def _saved(arguments: Namespace, name: str, folder: Path) -> Session:
     """The session in a file; it holds its own data and wishes, so nothing may be said beside it."""
     from shadowscale.session.store import open_session
 
@@ -105,4 +108,5 @@ def _saved(arguments: Namespace, name: str) -> Session:
     if given:
         raise UsageError(given[0], name, expected="photometry files, not a session, beside it")
     command = shlex.join(["shadowscale", *arguments.words])
-    return replace(open_session(Path(name)), command=command)
+    path = session_path(name, folder, overwrite=arguments.overwrite)
+    return replace(open_session(path), command=command)

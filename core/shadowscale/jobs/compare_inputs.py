@@ -8,12 +8,14 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
 from math import isfinite
 from pathlib import Path
+from tempfile import TemporaryDirectory
 from typing import Any
 
 from shadowscale.data.photometry import Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.errors import Problem, SessionError, TableError
 from shadowscale.fit.solution import Solution
+from shadowscale.jobs.packing import is_packed, unpack_session
 from shadowscale.quantities import QUANTITIES, parse_key, quantity_of
 from shadowscale.session.session import Session
 
@@ -67,6 +69,9 @@ def read_compared(path: Path) -> tuple[Compared, ...]:
     InputError
         If it is none of the three, or a session without a solution.
     """
+    if is_packed(path):
+        with TemporaryDirectory() as folder:
+            return _session(unpack_session(path, Path(folder) / path.stem))
     if path.suffix.lower() != ".json":
         return (_typed(path),)
     document = _json(path)
@@ -97,10 +102,11 @@ def _session(path: Path) -> tuple[Compared, ...]:
     if not held:
         why = "; ".join(session.notes) or "one without a solution"
         raise SessionError(Problem(str(path), "a solved session", why))
-    return tuple(_solved(name, solution, session) for name, solution in held)
+    return tuple(solved(name, solution, session) for name, solution in held)
 
 
-def _solved(name: str, solution: Solution, session: Session) -> Compared:
+def solved(name: str, solution: Solution, session: Session) -> Compared:
+    """A solution of a session as a column."""
     fit = solution.fit
     sources = session.photometry_sources + session.velocity_sources
     return Compared(

@@ -137,20 +137,23 @@ def check_targets(session: Session, folder: Path, names: Iterable[str], *, overw
     check_paths([folder / name for name in names], inputs=inputs, overwrite=overwrite)
 
 
-def check_paths(paths: Iterable[Path], *, inputs: Iterable[Path], overwrite: bool) -> None:
+def check_paths(
+    paths: Iterable[Path], *, inputs: Iterable[Path], overwrite: bool, option: str = "--out"
+) -> None:
     """UsageError where one of `paths` is there already, unless `overwrite`; an input never may be."""
+    paths = list(paths)
     kept = {path.resolve() for path in inputs}
     for path in paths:
         if path.resolve() in kept:
-            raise UsageError("--out", str(path), expected="a folder without the input files")
+            raise UsageError(option, str(path), expected="a folder without the input files")
         if path.is_dir() or (path.exists() and not overwrite):
             raise UsageError(
-                "--out", f"{path}, which exists", expected="a free place, or --overwrite"
+                option, f"{path}, which exists", expected="a free place, or --overwrite"
             )
     for folder in {path.parent for path in paths}:
         blocker = next((each for each in (folder, *folder.parents) if each.exists()), folder)
         if not blocker.is_dir():
-            raise UsageError("--out", str(folder), expected=f"a folder; {blocker} is a file")
+            raise UsageError(option, str(folder), expected=f"a folder; {blocker} is a file")
 
 
 def not_writable(folder: Path, error: OSError) -> UsageError:

@@ -4,7 +4,10 @@ from __future__ import annotations
 
 import os
 import tempfile
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
+from typing import IO
 
 
 def write_text(path: Path, text: str) -> None:
@@ -13,7 +16,14 @@ def write_text(path: Path, text: str) -> None:
 
 
 def write_bytes(path: Path, content: bytes) -> None:
-    """Write beside the place, make sure it is on disk, then rename; an old file stays until then.
+    """Write bytes, see `writing`."""
+    with writing(path) as stream:
+        stream.write(content)
+
+
+@contextmanager
+def writing(path: Path) -> Iterator[IO[bytes]]:
+    """A stream beside the place, made sure to be on disk, then renamed; an old file stays until then.
 
     Raises
     ------
@@ -24,7 +34,7 @@ def write_bytes(path: Path, content: bytes) -> None:
     handle, temporary = tempfile.mkstemp(dir=path.parent, prefix=f".{path.name}.", suffix=".part")
     try:
         with os.fdopen(handle, "wb") as stream:
-            stream.write(content)
+            yield stream
             stream.flush()
             os.fsync(stream.fileno())
         os.chmod(temporary, _mode(path))

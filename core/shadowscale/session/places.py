@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
 
@@ -13,17 +14,37 @@ from shadowscale.session.session import Session, Source
 
 def stored_paths(session: Session, folder: Path | None) -> Session:
     """The session with paths relative to `folder`; absolute without one."""
+    return with_paths(session, lambda file: _place(file, folder))
+
+
+def with_paths(
+    session: Session, data: Callable[[str], str], excluded: Callable[[str], str] | None = None
+) -> Session:
+    """The session with other paths of its files, and of those in which it sets rows aside (else the same)."""
+    rows = excluded or data
+
+    def sources(of: tuple[Source, ...]) -> tuple[Source, ...]:
+        return tuple(replace(source, path=data(source.path)) for source in of)
+
+    def plan(of: Plan) -> Plan:
+        return of if of.limb_table is None else replace(of, limb_table=data(of.limb_table))
+
     return replace(
         session,
-        photometry_sources=_placed(session.photometry_sources, folder),
-        velocity_sources=_placed(session.velocity_sources, folder),
-        exclusions=tuple(
-            replace(exclusion, file=_place(exclusion.file, folder))
-            for exclusion in session.exclusions
-        ),
-        plan=_placed_plan(session.plan, folder),
-        kept=tuple(replace(kept, plan=_placed_plan(kept.plan, folder)) for kept in session.kept),
+        photometry_sources=sources(session.photometry_sources),
+        velocity_sources=sources(session.velocity_sources),
+        exclusions=tuple(replace(item, file=rows(item.file)) for item in session.exclusions),
+        plan=plan(session.plan),
+        kept=tuple(replace(kept, plan=plan(kept.plan)) for kept in session.kept),
     )
+
+
+def files_of(session: Session) -> tuple[str, ...]:
+    """The paths of all files that a session needs, each once."""
+    sources = session.photometry_sources + session.velocity_sources
+    plans = (session.plan, *(kept.plan for kept in session.kept))
+    tables = (plan.limb_table for plan in plans if plan.limb_table is not None)
+    return tuple(dict.fromkeys([*(source.path for source in sources), *tables]))
 
 
 def found_paths(session: Session, path: Path) -> Session:
@@ -45,25 +66,9 @@ def found_paths(session: Session, path: Path) -> Session:
         missing.append(Problem(str(path), f"the file {stored!r}", f"none at {looked}"))
         return stored
 
-    def sources(of: tuple[Source, ...]) -> tuple[Source, ...]:
-        return tuple(replace(source, path=found(source.path)) for source in of)
-
-    def plan(of: Plan) -> Plan:
-        return of if of.limb_table is None else replace(of, limb_table=found(of.limb_table))
-
-    located = replace(
-        session,
-        photometry_sources=sources(session.photometry_sources),
-        velocity_sources=sources(session.velocity_sources),
-        exclusions=tuple(
-            replace(item, file=os.path.normpath(path.parent / item.file))
-            for item in session.exclusions
-        ),
-        plan=plan(session.plan),
-        kept=tuple(replace(kept, plan=plan(kept.plan)) for kept in session.kept),
-    )
+    located = with_paths(session, found, lambda file: os.path.normpath(path.parent / file))
     if missing:
-        raise SessionError(*missing)
+        raise SessionError(*dict.fromkeys(missing))
     return located
 
 
@@ -88,15 +93,3 @@ def _real(file: str) -> str:
     """The file in its real folder; a link that is the file itself stays a link."""
     path = Path(file)
     return os.path.join(os.path.realpath(path.parent), path.name)
-
-
-def _placed(sources: tuple[Source, ...], folder: Path | None) -> tuple[Source, ...]:
-    return tuple(replace(source, path=_place(source.path, folder)) for source in sources)
-
-
-def _placed_plan(plan: Plan, folder: Path | None) -> Plan:
-    return (
-        plan
-        if plan.limb_table is None
-        else replace(plan, limb_table=_place(plan.limb_table, folder))
-    )

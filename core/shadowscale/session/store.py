@@ -39,8 +39,7 @@ def save_session(session: Session, path: Path) -> None:
     OSError
         If the file cannot be written.
     """
-    document = session_document(session, path.parent)
-    write_text(path, json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n")
+    write_text(path, written_document(session_document(session, path.parent)))
 
 
 def open_session(path: Path, *, same_files: bool = False) -> Session:
@@ -83,9 +82,18 @@ def schema() -> dict[str, Any]:
 
 def session_document(session: Session, folder: Path | None) -> dict[str, Any]:
     """A session as plain dictionaries and lists; paths relative to `folder`, absolute without one."""
-    stored = stored_paths(session, folder)
-    plain: dict[str, Any] = to_plain(replace(stored, photometry=None, velocities=None, notes=()))
+    return plain_document(stored_paths(session, folder))
+
+
+def plain_document(session: Session) -> dict[str, Any]:
+    """A session as plain dictionaries and lists, with its paths as they are."""
+    plain: dict[str, Any] = to_plain(replace(session, photometry=None, velocities=None, notes=()))
     return {"schema": SCHEMA, "program": PROGRAM, **plain}
+
+
+def written_document(document: Mapping[str, Any]) -> str:
+    """The text of a session file."""
+    return json.dumps(document, indent=1, ensure_ascii=False, allow_nan=False) + "\n"
 
 
 def from_document(document: Mapping[str, Any], path: Path) -> Session:
