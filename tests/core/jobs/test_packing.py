@@ -192,7 +192,7 @@ def test_damage_is_told(session, folder):
     assert not list((folder / "b").rglob("nights.csv"))
     content = bytearray(packed.read_bytes())
     with zipfile.ZipFile(packed) as archive:
-        content[archive.getinfo("data/nights.csv").header_offset + 60] ^= 0xFF
+        content[archive.getinfo("data/nights.csv").header_offset + 90] ^= 0xFF
     (folder / "c.zip").write_bytes(content)
     with pytest.raises(SessionError, match=r"a damaged one|as it was packed"):
         unpack_session(folder / "c.zip")
