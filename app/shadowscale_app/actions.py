@@ -131,6 +131,7 @@ TABLE: tuple[Entry, ...] = (
     Entry("excluded", "Add excluded stretch here", "Edit", _span("excluded"), "Ctrl+X", "At the phase under the cursor", _has_markers),
     Entry("drop_span", "Remove stretch with the keyboard's marker", "Edit", lambda b: b.points.drop_span(b.pictures()), "Del", "", _has_markers),
     Entry("keep", f"Keep this solution{ELLIPSIS}", "Edit", lambda b: b.panes["Kept"].ask_name(), "Ctrl+K", "Remember it under a name", _is_solved, rule_before=True),  # type: ignore[attr-defined]
+    Entry("compare", f"Compare with file{ELLIPSIS}", "Edit", lambda b: b.files.ask_compare(b.show_beside), "", "Put another session, a sheet or a typed table beside the solution", _is_solved),
     Entry("solve", "Solve", "Solve", lambda b: b.work.solve(), "F5", "Find masses and radii from the data", _has_light, bar="Solve"),
     Entry("follow", "Fit follows changes", "Solve", lambda b: b.toggle_follow(), "F6", "Fit again by itself after each change", _always, lambda b: b.live.following, bar="Follow"),
     Entry("period", "Search period", "Solve", lambda b: b.work.search_period(), "F7", "Period and epoch from the photometry", _has_light, rule_before=True),

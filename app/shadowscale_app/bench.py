@@ -26,6 +26,7 @@ from shadowscale_app.files import Files, sample_sessions, settings
 from shadowscale_app.jobs import LiveLane, LongLane
 from shadowscale_app.live import Live
 from shadowscale_app.panes import all_panes
+from shadowscale_app.panes.kept import KeptPane
 from shadowscale_app.panes.pairs import PairsPane
 from shadowscale_app.panes.pane import Pane
 from shadowscale_app.panes.periods import PeriodsPane
@@ -237,6 +238,7 @@ class Bench(QMainWindow):
             "brushed": lambda: self.points.brushed(argument),
             "pair": lambda: self._show_pair(argument),
             "prior": lambda: self.points.prior(argument),
+            "compare": lambda: self.files.ask_compare(self.show_beside),
         }
         with trouble.guard(what):
             calls[what]()
@@ -276,6 +278,13 @@ class Bench(QMainWindow):
         assert isinstance(pane, PairsPane)
         self.bring("Correlation")
         pane.choose(*names)
+
+    def show_beside(self, columns: tuple[Any, ...]) -> None:
+        """Put solutions of another file beside the session's own."""
+        pane = self.panes["Kept"]
+        assert isinstance(pane, KeptPane)
+        self.bring("Kept")
+        pane.show_beside(columns)
 
     def _searched(self, found: object) -> None:
         pane = self.panes["Period"]

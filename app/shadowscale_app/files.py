@@ -7,7 +7,7 @@ import time
 from collections.abc import Callable, Sequence
 from dataclasses import replace
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 from PySide6.QtCore import QObject, QSettings, QStandardPaths, QTimer
 from PySide6.QtWidgets import QFileDialog, QMessageBox, QWidget
@@ -209,6 +209,14 @@ class Files(QObject):
 
         return ask_target(self._window, self._desk.session, self._folder())
 
+    def ask_compare(self, then: Callable[[Any], object]) -> None:
+        """Ask for a session, a sheet or a typed table, and hand over the solutions in it."""
+        path, _ = QFileDialog.getOpenFileName(
+            self._window, "Compare with", self._folder(), "Sessions, sheets, tables (*.json *.csv *.txt);;All files (*)"
+        )  # fmt: skip
+        if path:
+            self.errands.run(f"reading {Path(path).name}", lambda: _compared(Path(path)), then)
+
     def close_session(self) -> None:
         """Back to the start page."""
         if self.may_leave():
@@ -307,6 +315,12 @@ def _kind(path: Path) -> str:
     from shadowscale.data import sniff_kind
 
     return sniff_kind(path)
+
+
+def _compared(path: Path) -> object:
+    from shadowscale.jobs.compare_inputs import read_compared
+
+    return read_compared(path)
 
 
 def _read(session: Session) -> Session:

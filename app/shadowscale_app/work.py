@@ -5,11 +5,14 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import replace
 from typing import TYPE_CHECKING
+from weakref import WeakKeyDictionary
 
 from PySide6.QtCore import QObject, Signal
 
+from shadowscale.fit.solution import Solution
 from shadowscale.progress import Progress
 from shadowscale.session.session import Session
+from shadowscale.view.follow import is_final
 from shadowscale.view.summary import summary
 from shadowscale_app import trouble
 from shadowscale_app.desk import Change, Desk
@@ -32,8 +35,15 @@ class WorkDesk(QObject):
         self._desk, self._lane = desk, lane
         self._take: Callable[[object], None] = lambda _: None
         self._doing = ""
+        # what each solution was found with: only such a session is written as it stands
+        self._found: WeakKeyDictionary[Solution, Session] = WeakKeyDictionary()
+        desk.changed.connect(self._changed)
         lane.answered.connect(self._answered)
         lane.stopped.connect(lambda: self.told.emit("Stopped. The session is as it was."))
+
+    def _changed(self, session: Session, _names: frozenset[str]) -> None:
+        if session.solution is not None:
+            self._found.setdefault(session.solution, session)
 
     @property
     def running(self) -> bool:
@@ -117,6 +127,8 @@ class WorkDesk(QObject):
         from shadowscale.view.contacts import with_start_markers
 
         assert isinstance(found, Session)
+        assert found.solution is not None
+        self._found[found.solution] = found
         session = with_start_markers(with_results(self._desk.session, found))
         self._desk.apply(Change("Solve", session))
         self._tell_solved(session)
@@ -125,10 +137,11 @@ class WorkDesk(QObject):
         assert isinstance(found, Session)
         session = with_results(self._desk.session, found, plan=found.plan)
         self._desk.apply(Change("Search from many starts", session))
-        self._tell_solved(session)
+        self._tell_solved(session, searched=True)
 
-    def _tell_solved(self, session: Session) -> None:
-        self.told.emit(f"Solved: {summary(session)}.")
+    def _tell_solved(self, session: Session, *, searched: bool = False) -> None:
+        note = f" \N{EM DASH} {session.solution.notes[-1]}" if searched and session.solution else ""
+        self.told.emit(f"Solved: {summary(session)}{note}.")
         self.solved.emit()
 
     def export(self, target: Target | None) -> None:
@@ -136,23 +149,51 @@ class WorkDesk(QObject):
         if target is None:
             return
         session = self._desk.session
+        solution = session.solution
+        final = solution is not None and is_final(session, self._found.get(solution, session))
 
         def work(progress: Progress) -> object:
             from shadowscale.jobs.results import write_results
+            from shadowscale.jobs.solve import Share, solve_session
 
-            progress.report(0.05, "writing")
-            return write_results(session, target.folder, overwrite=target.replace)
+            # what was only followed is solved first: the sheet is what the command gives for the session
+            ready = session if final else solve_session(session, progress=Share(progress, 0, 0.8))
+            progress.report(0.8, "writing the sheet, curves and figures")
+            return ready, write_results(ready, target.folder, overwrite=target.replace)
 
         self._start(f"exporting to {target.folder}", work, self._take_written)
 
     def fold(self, period: float, epoch: float) -> None:
         """Take a period and epoch to start from."""
-        from shadowscale.view.contacts import with_ephemeris
+        session = self._desk.session
 
-        self._desk.apply(Change("Fold anew", with_ephemeris(self._desk.session, period, epoch)))
+        def work(progress: Progress) -> object:
+            from shadowscale.view.contacts import with_ephemeris
 
-    def _take_written(self, found: object) -> None:
-        assert isinstance(found, tuple)
+            progress.report(0.1, "measuring the eclipses")
+            return with_ephemeris(session, period, epoch)
+
+        self._start("folding", work, self._take_fold)
+
+    def _take_fold(self, found: object) -> None:
+        assert isinstance(found, Session)
+        plan = replace(self._desk.session.plan, period=found.plan.period, epoch=found.plan.epoch)
+        folded = replace(
+            self._desk.session,
+            plan=plan,
+            markers=found.markers,
+            contact=found.contact,
+            system=None,
+            solution=None,
+            audit=(),
+        )
+        self._desk.apply(Change("Fold anew", folded))
+
+    def _take_written(self, answer: object) -> None:
+        assert isinstance(answer, tuple)
+        ready, found = answer
+        if ready.solution is not self._desk.session.solution:
+            self._take_solution(ready)
         folders = {str(path.parent) for path in found}
         self.told.emit(f"{len(found)} files written to {min(folders, key=len)}.")
 

@@ -17,6 +17,7 @@ from shadowscale.view.pairs import pair
 from shadowscale_app import theme
 from shadowscale_app.actions import MENUS, TABLE, keys
 from shadowscale_app.bench import Bench
+from shadowscale_app.panes.kept import SIGMAS
 
 
 def test_the_stars_card_shows_masses_and_radii(bench: Bench) -> None:
@@ -125,15 +126,16 @@ def test_third_light_is_freed_by_band(bench: Bench) -> None:
 
 def test_kept_solutions_stand_side_by_side(bench: Bench) -> None:
     pane = bench.panes["Kept"]
+    bench.bring("Kept")
     pane.keep_as("before spots")
 
     headers = [pane.table.horizontalHeaderItem(n).text() for n in range(pane.table.columnCount())]
-    assert headers == ["present", "first try", "before spots"]
+    assert headers == ["present", "first try", SIGMAS, "before spots", SIGMAS]
     bench.panes["Quantities"].set_value("inclination", 85.0)
     pane.table.setCurrentCell(0, 1)
     pane.back.click()
     assert bench.desk.session.system.value("inclination") == 89.1
-    pane.table.setCurrentCell(0, 2)
+    pane.table.setCurrentCell(0, 3)
     pane.drop.click()
     assert [kept.name for kept in bench.desk.session.kept] == ["first try"]
 

@@ -65,6 +65,7 @@ def test_one_can_fold_with_another_period_and_go_back(loaded: Bench, search: Per
     pane.period.setText(f"{PERIOD}")
     pane.epoch.setText(f"{EPOCH}")
     pane.take.click()
+    assert loaded.long_lane.wait_until_idle()
     assert loaded.desk.session.plan.period == PERIOD
     assert loaded.desk.history.undo_label == "Fold anew"
 

@@ -1,74 +1,103 @@
-"""Kept solutions beside the present one."""
+"""Kept solutions, and those of other files, beside the present one: differences in sigmas, which fits better."""
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Sequence
 from dataclasses import dataclass
-from math import sqrt
 
-from shadowscale.fit.solution import Estimate, Solution
+from shadowscale.fit.solution import DERIVED, Estimate
+from shadowscale.jobs.compare import Comparison, Difference, compare
+from shadowscale.jobs.compare_inputs import Compared, Number, solved
 from shadowscale.session.session import Session
 from shadowscale.view.written import symbol, value_and_error
 
-NAMES = (
-    "M1", "M2", "R1", "R2", "logg1", "logg2", "r1", "r2", "inclination", "radius_ratio", "ecosw", "esinw",
-    "K1", "K2", "period", "epoch",
-)  # fmt: skip
+FAR = 3.0  # sigmas from which a difference carries the sign
 SIGN = "\N{NOT EQUAL TO} "
+PRESENT, NOTHING_BESIDE = "present", "Keep this solution; what comes later stands beside it."
+_NONE = "\N{EM DASH}"
 
 
 @dataclass(frozen=True)
-class Compared:
-    """A line of the comparison: the quantity and a text a solution."""
+class SideRow:
+    """A line: the quantity, a text a solution, and of all but the first the difference in sigmas."""
 
     what: str
-    cells: tuple[str, ...]
+    values: tuple[str, ...]
+    sigmas: tuple[str, ...]
 
 
 @dataclass(frozen=True)
-class Comparison:
-    """Names of the solutions, and the lines."""
+class SideBySide:
+    """Names of the solutions, the lines, and what has to be said."""
 
     names: tuple[str, ...]
-    rows: tuple[Compared, ...]
+    rows: tuple[SideRow, ...]
+    words: tuple[str, ...]
 
 
-def comparison(session: Session) -> Comparison:
-    """The present solution first, then those kept; a sign where a value differs by more than the errors."""
-    columns = [] if session.solution is None else [("present", session.solution)]
-    columns += [(kept.name, kept.solution) for kept in session.kept]
-    rows = (
-        [_fit_row("reduced chi\N{SUPERSCRIPT TWO}", columns, lambda s: f"{s.fit.reduced_chi2:.3f}")]
-        if columns
-        else []
-    )
-    rows += (
-        [_fit_row("points, free", columns, lambda s: f"{s.fit.points}, {s.fit.free}")]
-        if columns
-        else []
-    )
-    for name in NAMES:
-        estimates = [solution.estimates.get(name) for _, solution in columns]
-        if any(estimate is not None for estimate in estimates):
-            cells = tuple(_cell(name, estimate, estimates[0]) for estimate in estimates)
-            rows.append(Compared(symbol(name), cells))
-    return Comparison(tuple(name for name, _ in columns), tuple(rows))
+def side_by_side(session: Session, beside: Sequence[Compared] = ()) -> SideBySide:
+    """The present solution first, then those kept, then those of other files."""
+    held = [] if session.solution is None else [(PRESENT, session.solution)]
+    held += [(kept.name, kept.solution) for kept in session.kept]
+    columns = [*(solved(name, solution, session) for name, solution in held), *beside]
+    names = tuple(column.name for column in columns)
+    if len(columns) < 2:
+        words = (NOTHING_BESIDE,) if columns else ()
+        return SideBySide(names, tuple(_alone(columns)), words)
+    found = compare(columns)
+    rows = [
+        SideRow(
+            symbol(line.key),
+            tuple(_value(line.key, number) for number in line.numbers),
+            tuple(_sigmas(difference) for difference in line.differences),
+        )
+        for line in found.lines
+    ]
+    return SideBySide(names, (*_fit_rows(found), *rows), found.words)
 
 
-def _fit_row(
-    what: str, columns: list[tuple[str, Solution]], text: Callable[[Solution], str]
-) -> Compared:
-    return Compared(what, tuple(text(solution) for _, solution in columns))
+def _alone(columns: Sequence[Compared]) -> list[SideRow]:
+    return [
+        SideRow(symbol(key), (_value(key, number),), ())
+        for column in columns
+        for key, number in column.numbers.items()
+    ]
 
 
-def _cell(name: str, estimate: Estimate | None, first: Estimate | None) -> str:
-    if estimate is None:
-        return "\N{EM DASH}"
-    value, error = value_and_error(name, estimate)
-    differs = first is not None and first is not estimate and _apart(first, estimate)
-    return f"{SIGN if differs else ''}{value} {error}".strip()
+def _fit_rows(found: Comparison) -> list[SideRow]:
+    """Points and free quantities; on the same rows chi-squared and both criteria less the least of them."""
+    blank = ("",) * (len(found.columns) - 1)
+    counts = tuple(_counts(column) for column in found.columns)
+    rows = [SideRow("points, free", counts, blank)]
+    for what, values in (
+        ("\N{GREEK SMALL LETTER CHI}\N{SUPERSCRIPT TWO}", [fit.chi2 for fit in found.fits]),
+        ("AIC", [fit.aic for fit in found.fits]),
+        ("BIC", [fit.bic for fit in found.fits]),
+    ):
+        if values:
+            least = min(values)
+            texts = tuple(
+                f"least + {each - least:.1f}" if each > least else "least" for each in values
+            )
+            shown = texts if what in ("AIC", "BIC") else tuple(f"{each:.1f}" for each in values)
+            rows.append(SideRow(what, shown, blank))
+    return rows
 
 
-def _apart(first: Estimate, second: Estimate) -> bool:
-    errors = sqrt(sum((each.plus or 0.0) ** 2 for each in (first, second)))
-    return errors > 0 and abs(first.value - second.value) > errors
+def _counts(column: Compared) -> str:
+    numbers = [column.fit.get(name) for name in ("points", "free")]
+    return ", ".join(f"{number:.0f}" for number in numbers if number is not None) or _NONE
+
+
+def _value(key: str, number: Number | None) -> str:
+    if number is None:
+        return _NONE
+    estimate = Estimate(number.value, number.minus, number.plus, DERIVED)
+    return " ".join(part for part in value_and_error(key, estimate) if part)
+
+
+def _sigmas(difference: Difference | None) -> str:
+    if difference is None or difference.sigmas is None:
+        return ""
+    sign = SIGN if abs(difference.sigmas) > FAR else ""
+    return f"{sign}{difference.sigmas:+.1f}".replace("-", "\N{MINUS SIGN}")

@@ -13,7 +13,7 @@ from shadowscale.fit.system import System
 from shadowscale.quantities import parse_key
 from shadowscale.session.session import Markers, Session
 from shadowscale.view.light_points import fitting_solution
-from shadowscale.view.wishes import for_refit
+from shadowscale.view.wishes import asks_for_solution, for_refit
 
 FOLLOWED = (
     "followed from an earlier solution with linear errors; solve again to look for other minima"
@@ -41,6 +41,14 @@ def can_follow(session: Session, origin: Origin) -> bool:
         return False
     before, after = origin.plan, session.plan
     return _modelled(before) == _modelled(after) and _obeyed(before, after, system)
+
+
+def is_final(session: Session, found: Session) -> bool:
+    """Whether solving the session again would give the solution it has, which was found as `found` stood."""
+    solution = session.solution
+    if solution is None or FOLLOWED in solution.notes or session.system is not found.system:
+        return False
+    return session.plan == found.plan and not asks_for_solution(found, session)
 
 
 def follow(session: Session, origin: Origin) -> Session:

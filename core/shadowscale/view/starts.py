@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from dataclasses import dataclass, replace
 from math import sqrt
 
 import numpy as np
 
-from shadowscale.errors import NoSolutionError
+from shadowscale.errors import NoSolutionError, Stopped
 from shadowscale.fit.plan import Plan
 from shadowscale.fit.solution import Alternative, Solution
 from shadowscale.progress import SILENT, Progress
@@ -28,43 +28,61 @@ COMPARED = ("radius_sum", "radius_ratio", "inclination", "ecosw", "esinw")
 def solve_from_many_starts(session: Session, *, progress: Progress = SILENT) -> Session:
     """The session with the best solution of many starts and the plan that leads there.
 
-    The others are among its alternatives.
+    The others are among its alternatives. A stop keeps what was found until then.
 
     Parameters
     ----------
     session : Session
         Solved; its plan's seed makes the starts repeat.
     progress : Progress
-        Told of each start; may raise `Stopped`.
+        Told of each start; may raise `Stopped`, which ends the search.
 
     Raises
     ------
     NoSolutionError
-        If no start leads to a solution.
+        If there is no solution to start from.
+    Stopped
+        Where nothing was found before it.
     """
     from shadowscale.fit.solve import solve
-    from shadowscale.jobs.solve import tables_to_solve
+    from shadowscale.jobs.solve import Share, tables_to_solve
 
     if session.photometry is None or session.solution is None:
         raise NoSolutionError("there is no solution to start from", help="solve first")
     found: list[Solution] = [session.solution]
     plans = [session.plan]
     starts = _starts(session, np.random.default_rng(session.plan.seed))
-    for number, plan in enumerate(starts):
-        progress.report(number / len(starts), f"start {number + 1} of {len(starts)}")
+    tried = 0
+    for tried, plan in enumerate(starts):
+        part = Share(progress, tried / len(starts), (tried + 1) / len(starts))
+        words = f"start {tried + 1} of {len(starts)}"
         try:
-            found.append(solve(tables_to_solve(session), session.velocities, plan))
+            progress.report(part.start, words)
+            found.append(
+                solve(
+                    tables_to_solve(session),
+                    session.velocities,
+                    plan,
+                    progress=Worded(part, words),
+                )
+            )
         except NoSolutionError:
             continue
+        except Stopped:
+            if not tried:
+                raise
+            break
         plans.append(plan)
-    progress.report(1.0, "done")
+    else:
+        tried = len(starts)
+    note = f"the best of {tried} further starts of {len(starts)} that were to be tried"
     number = min(range(len(found)), key=lambda index: found[index].fit.chi2)
     best = found[number]
     others = [
         each for each in _distinct(found, best) if each.fit.chi2 - best.fit.chi2 < NOT_EXCLUDED
     ]
     alternatives = (*best.alternatives, *(_alternative(each, best) for each in others))
-    solution = replace(best, alternatives=alternatives)
+    solution = replace(best, alternatives=alternatives, notes=(*best.notes, note))
     return replace(
         session,
         plan=plans[number],
@@ -72,6 +90,18 @@ def solve_from_many_starts(session: Session, *, progress: Progress = SILENT) -> 
         system=solution.system,
         contact=solution.contact,
     )
+
+
+@dataclass(frozen=True)
+class Worded:
+    """A progress that always says the same."""
+
+    whole: Progress
+    words: str
+
+    def report(self, fraction: float, words: str) -> None:
+        """Pass the fraction on."""
+        self.whole.report(fraction, self.words)
 
 
 def _starts(session: Session, random: np.random.Generator) -> list[Plan]:

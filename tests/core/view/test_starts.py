@@ -11,6 +11,7 @@ from made_up import made_up_session
 from shadowscale.errors import NoSolutionError, NotConvergedError, Stopped
 from shadowscale.fit import solve as fit_solve
 from shadowscale.fit.solution import Solution
+from shadowscale.progress import Progress
 from shadowscale.view.starts import STARTS, solve_from_many_starts
 
 
@@ -20,7 +21,10 @@ class Answers:
     def __init__(self) -> None:
         self.plans: list[Any] = []
 
-    def __call__(self, photometry: object, velocities: object, plan: Any) -> Solution:
+    def __call__(
+        self, photometry: object, velocities: object, plan: Any, *, progress: Progress
+    ) -> Solution:
+        progress.report(0.5, "fitting")
         self.plans.append(plan)
         if len(self.plans) == 3:
             raise NotConvergedError("the fit did not settle")
@@ -66,15 +70,34 @@ def test_starts_differ_and_repeat_with_their_seed(answers: Answers) -> None:
     assert all(60 <= plan.start["inclination"] <= 90 for plan in first)
 
 
-def test_it_stops_when_asked(answers: Answers) -> None:
-    class Impatient:
-        def report(self, fraction: float, words: str) -> None:
-            if fraction > 0.2:
-                raise Stopped
+class Impatient:
+    """Stops when so much is done."""
 
+    def __init__(self, fraction: float) -> None:
+        self.fraction = fraction
+        self.words: list[str] = []
+
+    def report(self, fraction: float, words: str) -> None:
+        self.words.append(words)
+        if fraction > self.fraction:
+            raise Stopped
+
+
+def test_a_stop_keeps_what_was_found(answers: Answers) -> None:
+    impatient = Impatient(0.2)
+
+    found = solve_from_many_starts(made_up_session(), progress=impatient)
+
+    assert 0 < len(answers.plans) < STARTS
+    assert any(each.words == "found from another start" for each in found.solution.alternatives)
+    assert f"the best of 2 further starts of {STARTS}" in found.solution.notes[-1]
+    assert set(impatient.words) == {f"start {number} of {STARTS}" for number in (1, 2, 3)}
+
+
+def test_a_stop_before_anything_was_found_leaves_all_as_it_was(answers: Answers) -> None:
     with pytest.raises(Stopped, match=r"^$"):
-        solve_from_many_starts(made_up_session(), progress=Impatient())
-    assert len(answers.plans) < STARTS
+        solve_from_many_starts(made_up_session(), progress=Impatient(0.01))
+    assert len(answers.plans) == 0
 
 
 def test_there_must_be_a_solution_to_start_from() -> None:
@@ -85,8 +108,10 @@ def test_there_must_be_a_solution_to_start_from() -> None:
 def test_the_plan_that_led_to_the_best_is_kept(
     answers: Answers, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    def better(photometry: object, velocities: object, plan: Any) -> Solution:
-        solution = answers(photometry, velocities, plan)
+    def better(
+        photometry: object, velocities: object, plan: Any, *, progress: Progress
+    ) -> Solution:
+        solution = answers(photometry, velocities, plan, progress=progress)
         chi2 = solution.fit.chi2 - 50.0 * (len(answers.plans) == 5)
         return replace(solution, fit=replace(solution.fit, chi2=chi2))
 

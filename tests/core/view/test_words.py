@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from math import log
 
 import pytest
 from hypothesis import given
@@ -11,8 +12,10 @@ from hypothesis import strategies as st
 from made_up import made_up_session
 from shadowscale.fit.plan import Plan
 from shadowscale.fit.solution import FITTED, Estimate
+from shadowscale.jobs.compare_inputs import Compared, Number
 from shadowscale.quantities import QUANTITIES
-from shadowscale.view.compared import SIGN, comparison
+from shadowscale.session.session import Session
+from shadowscale.view.compared import NOTHING_BESIDE, SIGN, side_by_side
 from shadowscale.view.doubts import counts, doubts
 from shadowscale.view.looks import Look, look_of
 from shadowscale.view.rows import HELD, quantity_rows, with_prior, with_state, with_value
@@ -187,18 +190,51 @@ def test_doubts_gather_everything() -> None:
     assert doubts(replace(made_up_session(solved=False), photometry=None)) == ()
 
 
-def test_kept_solutions_that_differ_are_marked() -> None:
+def test_kept_solutions_stand_beside_with_their_differences_in_sigmas() -> None:
+    """0.2266 solar masses more, errors 0.009 on either side: 0.2266/(0.009 sqrt 2) sigmas."""
     session = made_up_session()
     kept = session.kept[0]
-    far = {**kept.solution.estimates, "M1": replace(kept.solution.estimates["M1"], value=1.5)}
+    first = kept.solution.estimates["M1"]
+    far = {**kept.solution.estimates, "M1": replace(first, value=first.value + 0.2266)}
     other = replace(kept, solution=replace(kept.solution, estimates=far))
 
-    found = comparison(replace(session, kept=(other,)))
+    found = side_by_side(replace(session, kept=(other,)))
 
-    cells = {row.what: row.cells for row in found.rows}
+    rows = {row.what: row for row in found.rows}
     assert found.names == ("present", "first try")
-    assert cells["M1"][1].startswith(SIGN)
-    assert not cells["R1"][1].startswith(SIGN)
+    assert rows["M1"].sigmas == (f"{SIGN}+{0.2266 / (0.009 * 2**0.5):.1f}",)
+    assert rows["R1"].sigmas == ("+0.0",)
+    assert rows["AIC"].values == rows["BIC"].values == ("least", "least")
+    assert "not independent" in found.words[0]
+
+
+def test_criteria_count_the_free_quantities() -> None:
+    """The same residuals with three quantities more: AIC grows by 6, BIC by 3 ln n (their definitions)."""
+    session = made_up_session()
+    kept = session.kept[0]
+    fit = replace(kept.solution.fit, free=kept.solution.fit.free + 3)
+    other = replace(kept, solution=replace(kept.solution, fit=fit))
+
+    rows = {row.what: row for row in side_by_side(replace(session, kept=(other,))).rows}
+
+    light = int((session.solution.light.why == 0).sum())
+    speed = session.velocities
+    count = light + int(speed.used1.sum() + speed.used2.sum())
+    assert rows["AIC"].values == ("least", "least + 6.0")
+    assert rows["BIC"].values == ("least", f"least + {3 * log(count):.1f}")
+
+
+def test_a_solution_alone_and_one_of_another_file() -> None:
+    session = replace(made_up_session(), kept=())
+
+    alone = side_by_side(session)
+    typed = side_by_side(session, (Compared("paper", {"M1": Number(1.28, 0.02, 0.02)}),))
+
+    assert (alone.names, alone.words) == (("present",), (NOTHING_BESIDE,))
+    assert {len(row.values) for row in alone.rows} == {1}
+    assert [row.what for row in typed.rows] == ["points, free", "M1"]
+    assert typed.rows[0].values[1] == "\N{EM DASH}"
+    assert side_by_side(Session()).rows == ()
 
 
 def test_the_card_shows_fractions_only_without_sizes() -> None:
