@@ -13,6 +13,7 @@ import json
 import os
 import re
 import stat
+import zlib
 from collections.abc import Iterator, Mapping
 from pathlib import Path
 from zipfile import ZIP_DEFLATED, BadZipFile, ZipFile, ZipInfo, is_zipfile
@@ -125,7 +126,7 @@ def unpack_session(packed: Path, folder: Path | None = None, *, overwrite: bool 
             check_paths(new.values(), inputs=[packed], overwrite=overwrite, option="FOLDER")
             for name, path in new.items():
                 _extract(archive, name, path, sums[name], packed=packed)
-    except (BadZipFile, EOFError, NotImplementedError, RuntimeError) as error:
+    except (BadZipFile, zlib.error, EOFError, NotImplementedError, RuntimeError) as error:
         raise SessionError(Problem(str(packed), EXPECTED, f"a damaged one ({error})")) from error
     except OSError as error:
         raise not_writable(target, error) from error
