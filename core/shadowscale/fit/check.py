@@ -12,6 +12,7 @@ from shadowscale.data.velocities import Velocities
 from shadowscale.errors import NotConstrainedError, UsageError
 from shadowscale.fit.build import is_basic, means
 from shadowscale.fit.derived import ASSUMABLE, assumed_inputs, derived_value
+from shadowscale.fit.least_squares import covariance
 from shadowscale.fit.plan import (
     EFFECT_STATES,
     EFFECTS,
@@ -27,12 +28,15 @@ from shadowscale.fit.system import System
 from shadowscale.light.laws import LAWS
 from shadowscale.quantities import BAND, QUANTITIES, SOURCE, parse_key
 
+OTHER_CLOCK = 100_000.0  # [d] no data are so far from their epoch, but JD and MJD are
+LEAST_MOTION = 2.0  # sigmas of a K below which a star is not seen to move
 UNEXPLAINED = 0.7  # share of a star's velocity scatter that an orbit may leave
 
 
 def check_plan(plan: Plan, photometry: Photometry, velocities: Velocities | None) -> None:
     """UsageError where the plan names a quantity, band, source or choice that is not there."""
     _check_choices(plan)
+    _check_clock(plan, photometry)
     sources = () if velocities is None else velocities.sources
     for option, name, basic_only in _names(plan):
         _check_name(option, name, basic_only=basic_only, bands=photometry.bands, sources=sources)
@@ -70,6 +74,15 @@ def _check_choices(plan: Plan) -> None:
     for option, found, allowed in choices:
         if found not in allowed:
             raise UsageError(option, found, allowed)
+
+
+def _check_clock(plan: Plan, photometry: Photometry) -> None:
+    if plan.epoch is None or photometry.time.size == 0:
+        return
+    middle = float(np.median(photometry.time))
+    if abs(plan.epoch - middle) > OTHER_CLOCK:
+        wanted = f"a time on the clock of the photometry, which lies around {middle:.1f}"
+        raise UsageError("--epoch", f"{plan.epoch:.10g}", expected=wanted)
 
 
 def _check_name(
@@ -133,7 +146,7 @@ def _can_be_had(name: str, plan: Plan, system: System) -> bool:
 
 
 def check_velocities_follow(fitted: Fitted) -> None:
-    """NotConstrainedError where the orbit explains next to nothing of a star's velocities."""
+    """NotConstrainedError where a star does not move, or not with the eclipses."""
     for data in fitted.objective.stars:
         spread = float(np.std(data.velocity))
         left = float(np.std(fitted.objective.velocity_residuals(fitted.minimum.x, data)))
@@ -152,3 +165,19 @@ def check_velocities_follow(fitted: Fitted) -> None:
                 },
                 "check period, epoch, time system and which column is which star",
             )
+        _check_motion(fitted, data.star)
+
+
+def _check_motion(fitted: Fitted, star: int) -> None:
+    name = f"K{star}"
+    if name not in fitted.system.free:
+        return
+    at = fitted.objective.vector.index[name]
+    sigma = float(np.sqrt(max(covariance(fitted.minimum.normal)[0][at, at], 0.0)))
+    found = fitted.system.values[name]
+    if found < LEAST_MOTION * sigma:
+        raise NotConstrainedError(
+            f"no motion of star {star} is seen in its velocities",
+            {f"{name} [km/s]": found, "its error [km/s]": sigma},
+            "more precise velocities, or none: then the light is solved alone",
+        )

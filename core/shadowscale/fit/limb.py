@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from math import exp, log, log1p
+from math import exp, hypot, log, log1p
 
 import numpy as np
 
@@ -26,8 +26,15 @@ COOLEST, HOTTEST = 2500.0, 50000.0  # [K] where the grey atmosphere is asked
 # up to 0.1 in I(mu = 1/2), much the same way in every band and star. So the prior is wider than that,
 # and most of it is one error common to all.
 GREY_COMMON, GREY_OWN = 0.13, 0.08
+# Between 4500 and 12000 K the grey coefficients move by this much to either side of UNKNOWN_TEFF.
+GREY_BLIND = 0.10
 # Spread between published tables (common practice), common in the same way.
 TABLE_COMMON, TABLE_OWN = 0.04, 0.03
+
+
+def grey_errors(*, blind: bool) -> tuple[float, float]:
+    """Common and own sigma of a grey atmosphere's coefficients; `blind`: at a guessed temperature."""
+    return hypot(GREY_COMMON, GREY_BLIND if blind else 0.0), GREY_OWN
 
 
 @dataclass(frozen=True)
@@ -57,8 +64,11 @@ def limb_choice(
     teff: float,
     logg: float,
     table: LimbTable | None,
+    blind: bool = False,
 ) -> LimbChoice:
     """What to do with one star in one band; the user's word first, then a table, then grey.
+
+    `blind`: the temperature is a guess, for which the grey prior is wider.
 
     UsageError where the number of coefficients is not the law's.
     """
@@ -79,42 +89,16 @@ def limb_choice(
     if table is not None:
         start = table.coefficients(teff, logg, band, law=plan.law)
         words = f"published table at {teff:.0f} K, log g {logg:.2f}"
-        rules = (
-            ()
-            if told_free
-            else _sampling_prior(
-                plan.law, star, band, start=start, common=TABLE_COMMON, own=TABLE_OWN
-            )
-        )
-        return LimbChoice(
-            start,
-            True,
-            rules,
-            words
-            + (
-                ", free"
-                if told_free
-                else f", prior of sigma {TABLE_COMMON} common and {TABLE_OWN} each"
-            ),
-        )
-    start = grey_coefficients(min(max(teff, COOLEST), HOTTEST), wavelength, plan.law)
-    words = f"grey atmosphere at {teff:.0f} K and {wavelength:.0f} nm"
-    rules = (
-        ()
-        if told_free
-        else _sampling_prior(plan.law, star, band, start=start, common=GREY_COMMON, own=GREY_OWN)
-    )
-    return LimbChoice(
-        start,
-        True,
-        rules,
-        words
-        + (
-            ", start only"
-            if told_free
-            else f", prior of sigma {GREY_COMMON} common and {GREY_OWN} each"
-        ),
-    )
+        common, own = TABLE_COMMON, TABLE_OWN
+    else:
+        start = grey_coefficients(min(max(teff, COOLEST), HOTTEST), wavelength, plan.law)
+        words = f"grey atmosphere at {teff:.0f} K and {wavelength:.0f} nm"
+        common, own = grey_errors(blind=blind)
+    if told_free:
+        return LimbChoice(start, True, (), f"{words}, start only")
+    rules = _sampling_prior(plan.law, star, band, start=start, common=common, own=own)
+    words = f"{words}, prior of sigma {common:.2f} common and {own:.2f} each"
+    return LimbChoice(start, True, rules, words)
 
 
 def _checked(name: str, values: tuple[float, ...], wanted: tuple[str, ...]) -> tuple[float, ...]:
@@ -185,10 +169,11 @@ def limb_choices(
     at = wavelengths(plan, bands)
     brightness = {band: values[key("surface_brightness_ratio", band)] for band in bands}
     teff1, teff2, words = teffs(plan, brightness, at)
+    blind = plan.teff1 is None and plan.teff2 is None
     choices = {
         (star, band): limb_choice(
             plan, star, band, wavelength=at[band], teff=(teff1, teff2)[star - 1],
-            logg=logg[star - 1], table=table,
+            logg=logg[star - 1], table=table, blind=blind,
         )
         for star in (1, 2) for band in bands
     }  # fmt: skip

@@ -21,6 +21,7 @@ from shadowscale.geometry.contacts import (
 from shadowscale.orbit._rows import velocity_rows
 from shadowscale.progress import Progress
 from shadowscale.quantities import key
+from shadowscale.timing.detached import check_folded
 from shadowscale.timing.eclipses import measure_eclipses
 from shadowscale.timing.period import search_period
 from shadowscale.timing.results import MeasuredEclipses, PeriodSearch
@@ -61,6 +62,8 @@ def find_ground(
         epoch = found if epoch is None else epoch
     progress.report(0.2, "measuring the eclipses")
     measured = measure_eclipses(photometry, period=period, epoch=epoch, exposure=plan.exposure)
+    if search is None:
+        check_folded(photometry, period)
     contact, starts = _contacts(measured, photometry, velocities, plan)
     if measured.secondary is not None and _backwards(starts[0], velocities):
         measured = exchanged(measured)

@@ -4,10 +4,11 @@ from __future__ import annotations
 
 import numpy as np
 
-from shadowscale.data.photometry import Floats
+from shadowscale.data.photometry import Floats, Photometry
 from shadowscale.errors import NotDetachedError
 from shadowscale.timing.fold import phases
-from shadowscale.timing.search_data import SearchData
+from shadowscale.timing.light_points import light_points
+from shadowscale.timing.search_data import SearchData, search_data
 
 CELLS = 40
 MOST_RADII = 0.75  # r1 + r2 where the lobes of equal stars touch (Eggleton 1983, ApJ 268, 368)
@@ -48,6 +49,11 @@ def check_detached(data: SearchData, period: float) -> None:
         },
         help="spheres cannot describe it",
     )
+
+
+def check_folded(photometry: Photometry, period: float) -> None:
+    """`check_detached` of a light curve on a given period [d]."""
+    check_detached(search_data(light_points(photometry)), period)
 
 
 def check_radii(period: float, durations: tuple[float, ...]) -> None:

@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 
 from fit_examples import Solved, ephemeris, invented, observed, ordinary, sigma_of, solved
-from shadowscale.fit.limb import GREY_COMMON, GREY_OWN
+from shadowscale.fit.limb import grey_errors
 from shadowscale.fit.plan import Prior
 from shadowscale.fit.solution import Solution
 from shadowscale.light.grey import grey_coefficients
@@ -32,7 +32,8 @@ def _limb_chi2(solution: Solution) -> float:
         centre = grey_coefficients(float(teffs[str(star)]), 545.0, "power-2")
         own = np.array(solution.system.limb_darkening(star, "V"))
         away.append(law.to_sampling(own) - law.to_sampling(np.array(centre)))
-    spread = GREY_OWN**2 * np.eye(2) + GREY_COMMON**2
+    common, own = grey_errors(blind=True)
+    spread = own**2 * np.eye(2) + common**2
     return float(np.sum(np.array(away) * np.linalg.solve(spread, np.array(away))))
 
 

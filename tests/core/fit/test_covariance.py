@@ -26,7 +26,7 @@ from fit_examples import (
     velocities_of,
 )
 from shadowscale.fit.least_squares import covariance
-from shadowscale.fit.limb import GREY_COMMON, GREY_OWN
+from shadowscale.fit.limb import grey_errors
 from shadowscale.fit.model import model_light, model_velocities
 from shadowscale.fit.problem import Problem
 from shadowscale.fit.system import System
@@ -95,7 +95,8 @@ def _limb_prior(system: System, free: tuple[str, ...]) -> Floats:
             shift[column] = 1e-6
             up, down = law.to_sampling(centre + shift), law.to_sampling(centre - shift)
             slopes[:, number, at[column]] = (up - down) / 2e-6
-    spread = GREY_OWN**2 * np.eye(len(pairs)) + GREY_COMMON**2
+    common, own = grey_errors(blind=True)
+    spread = own**2 * np.eye(len(pairs)) + common**2
     return np.asarray(sum(rows.T @ np.linalg.solve(spread, rows) for rows in slopes))
 
 

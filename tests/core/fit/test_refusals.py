@@ -21,7 +21,7 @@ from fit_examples import (
     times_of,
 )
 from shadowscale.data.photometry import Photometry
-from shadowscale.errors import NoSolutionError, NotConstrainedError, NotDetachedError
+from shadowscale.errors import NoSolutionError, NotConstrainedError, NotDetachedError, UsageError
 from shadowscale.fit.plan import Plan
 from shadowscale.fit.solve import solve
 from shadowscale.judge.audit import audit
@@ -47,10 +47,25 @@ def test_noise_has_no_solution(plan: Plan) -> None:
         solve(photometry_of(time, 1 + _noise(600), 1e-3), None, plan)
 
 
-def test_a_sine_curve_is_not_detached() -> None:
+@pytest.mark.parametrize("plan", [ephemeris(), Plan()], ids=["period given", "period searched"])
+def test_a_sine_curve_is_not_detached(plan: Plan) -> None:
     time, flux = _pulsation()
     with pytest.raises(NotDetachedError, match=r"no flat part between eclipses"):
-        solve(photometry_of(time, flux, 1e-3), None, Plan())
+        solve(photometry_of(time, flux, 1e-3), None, plan)
+
+
+def test_a_star_that_does_not_move() -> None:
+    known = ordinary()
+    rv = observed_velocities(known.truth)
+    still = replace(rv, rv2=12.0 + 0.01 * np.sin(np.arange(rv.rv2.size)))
+    with pytest.raises(NotConstrainedError, match=r"no motion of star 2.*K2 .*its error"):
+        solve(known.photometry, still, ephemeris())
+
+
+def test_an_epoch_on_another_clock() -> None:
+    plan = replace(ephemeris(), epoch=EPOCH - 2400000.5)
+    with pytest.raises(UsageError, match=r"--epoch: expected a time on the clock of the phot"):
+        solve(ordinary().photometry, None, plan)
 
 
 def _refusal(photometry: Photometry, plan: Plan) -> str:

@@ -117,3 +117,10 @@ def test_local_quantities_of_a_band() -> None:
     assert keys[8:10] == ["surface_brightness_ratio[I]", "third_light[I]"]
     assert keys[10:14] == [f"limb_darkening{star}[I].{n}" for star in (1, 2) for n in (1, 2)]
     assert keys[14:] == [f"{effect}{star}[I]" for effect in EFFECTS for star in (1, 2)]
+
+
+def test_an_orbit_seen_edge_on_is_at_its_bound() -> None:
+    """cos^2 of 90 degrees in floating point is 4e-33, a place from which no step could leave."""
+    vector = Vector(replace(invented(inclination=90.0), free=("inclination",)))
+
+    assert vector.pack(vector.system.values)[0] == vector.bounds[0][0] == 0.0
