@@ -150,6 +150,7 @@ def with_results(session: Session, found: Session, *, plan: Plan | None = None) 
         system=found.system,
         solution=found.solution,
         audit=found.audit,
+        versions=found.versions,
         markers=session.markers or found.markers,
         contact=session.contact if session.markers is not None else found.contact,
     )

@@ -13,8 +13,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from shadowscale.data.photometry import USED, Floats
-from shadowscale.jobs.compare_inputs import Compared, Number, read_compared
+from shadowscale.jobs.compare_inputs import Compared, read_compared
 from shadowscale.jobs.table import Column, Table
+from shadowscale.jobs.typed_table import Number
 from shadowscale.quantities import QUANTITIES, parse_key, quantity_of, written
 
 LIMB = "limb_darkening"

@@ -2,35 +2,21 @@
 
 from __future__ import annotations
 
-import csv
 import json
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
-from math import isfinite
 from pathlib import Path
 from tempfile import TemporaryDirectory
 from typing import Any
 
 from shadowscale.data.photometry import Photometry
 from shadowscale.data.velocities import Velocities
-from shadowscale.errors import Problem, SessionError, TableError
+from shadowscale.errors import Problem, SessionError
 from shadowscale.fit.solution import Solution
 from shadowscale.jobs.packing import is_packed, unpack_session
-from shadowscale.quantities import QUANTITIES, parse_key, quantity_of
+from shadowscale.jobs.typed_table import Number, read_typed
+from shadowscale.quantities import QUANTITIES
 from shadowscale.session.session import Session
-
-HEADER = "quantity, value, error [, unit]"
-NAME_COLUMNS, VALUE_COLUMN, UNIT_COLUMN = ("quantity", "name"), "value", "unit"
-ERROR_COLUMNS = (("error",), ("sigma",), ("minus", "plus"))
-
-
-@dataclass(frozen=True)
-class Number:
-    """A value with its limits, both positive; None where it has none."""
-
-    value: float
-    minus: float | None = None
-    plus: float | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -73,7 +59,7 @@ def read_compared(path: Path) -> tuple[Compared, ...]:
         with TemporaryDirectory() as folder:
             return _session(unpack_session(path, Path(folder) / path.stem))
     if path.suffix.lower() != ".json":
-        return (_typed(path),)
+        return (Compared(path_name(path), read_typed(path)),)
     document = _json(path)
     if "quantities" in document:
         return (_sheet(path, document),)
@@ -159,93 +145,6 @@ def _with_values(items: Mapping[str, Any], label: str) -> Iterator[tuple[str, Ma
 
 def _number(item: Mapping[str, Any]) -> Number:
     return Number(item["value"], item["minus"], item["plus"])
-
-
-def _typed(path: Path) -> Compared:
-    """A table that somebody typed, or a `sheet.csv`."""
-    try:
-        lines = path.read_text(encoding="utf-8-sig").splitlines()
-    except OSError as error:
-        raise TableError(Problem(str(path), HEADER, error.strerror or "trouble")) from error
-    except UnicodeDecodeError as error:
-        raise TableError(Problem(str(path), f"text: {HEADER}", "no text in UTF-8")) from error
-    numbered = [
-        (number, [cell.strip() for cell in row])
-        for number, row in enumerate(csv.reader(lines), 1)
-        if row and row[0].strip() and not row[0].startswith("#")
-    ]
-    columns = _columns(numbered[0][1]) if numbered else None
-    rows = numbered if columns is None else numbered[1:]
-    columns = columns or {"name": 0, "value": 1, "minus": 2, "plus": 2, "unit": 3}
-    found: dict[str, Number] = {}
-    for line, cells in rows:
-        if "section" in columns and cells[columns["section"]] != "quantity":
-            continue
-        key, number = _typed_row(path, line, cells, columns)
-        found[key] = number
-    if not found:
-        raise TableError(Problem(str(path), f"rows of {HEADER}", "none"))
-    return Compared(path_name(path), found)
-
-
-def _columns(cells: list[str]) -> dict[str, int] | None:
-    """Places of the columns by a header line; None if the line is no header."""
-    names = [cell.lower() for cell in cells]
-    name = next((names.index(word) for word in NAME_COLUMNS if word in names), None)
-    if name is None or VALUE_COLUMN not in names:
-        return None
-    found = {"name": name, "value": names.index(VALUE_COLUMN)}
-    for words in ERROR_COLUMNS:
-        if set(words) <= set(names):
-            found |= {"minus": names.index(words[0]), "plus": names.index(words[-1])}
-    found |= {word: names.index(word) for word in (UNIT_COLUMN, "section") if word in names}
-    return found
-
-
-def _typed_row(
-    path: Path, line: int, cells: list[str], columns: Mapping[str, int]
-) -> tuple[str, Number]:
-    def cell(column: str) -> str:
-        at = columns.get(column, len(cells))
-        return cells[at] if at < len(cells) else ""
-
-    def number(column: str) -> float | None:
-        text = cell(column)
-        try:
-            value = float(text) if text else None
-        except ValueError:
-            value = float("nan")
-        if value is not None and not (isfinite(value) and (column == "value" or value >= 0)):
-            problem = Problem(str(path), "a number", repr(text), line=line, column=column)
-            raise TableError(problem)
-        return value
-
-    key = cell("name")
-    try:
-        unit = quantity_of(key).unit
-    except ValueError:
-        known = "the name of a quantity, such as M1 or third_light[V]"
-        raise TableError(Problem(str(path), known, repr(key), line=line)) from None
-    value = number("value")
-    if value is None:
-        raise TableError(Problem(str(path), "a number", "nothing", line=line, column="value"))
-    factor = _factor(path, line, cell("unit"), unit)
-    errors = [None if each is None else each * factor for each in map(number, ("minus", "plus"))]
-    return str(parse_key(key)), Number(value * factor, *errors)
-
-
-def _factor(path: Path, line: int, given: str, unit: str) -> float:
-    """What turns the unit given into the register's."""
-    if not given or given == unit:
-        return 1.0
-    from astropy import units
-
-    try:
-        return float(units.Unit(given).to(units.Unit(unit or "")))
-    except (ValueError, TypeError, units.UnitConversionError) as error:
-        expected = f"a unit like {unit or 'none'}"
-        problem = Problem(str(path), expected, repr(given), line=line, column="unit")
-        raise TableError(problem) from error
 
 
 def path_name(path: Path) -> str:

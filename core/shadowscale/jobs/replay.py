@@ -2,16 +2,20 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, replace
 from math import inf, isfinite
 from pathlib import Path
 
+import numpy as np
+
+from shadowscale.data.photometry import USED
 from shadowscale.errors import Problem, SessionError
 from shadowscale.fit.solution import Estimate, Solution
 from shadowscale.jobs.solve import solve_session
 from shadowscale.progress import SILENT, Progress
 from shadowscale.session.session import Session
+from shadowscale.versions import library_versions
 
 TOLERANCE = 1e-9  # relative; the same machine and versions repeat to the last bit
 SHOWN = 20
@@ -43,10 +47,14 @@ class Difference:
 
 @dataclass(frozen=True, eq=False)
 class Replay:
-    """The session solved again, and every number that differs by more than `TOLERANCE`."""
+    """The session solved again, and every number that differs by more than `TOLERANCE`.
+
+    `changed` names what is not the version that it was solved with: then, now.
+    """
 
     session: Session
     differences: tuple[Difference, ...]
+    changed: Mapping[str, tuple[str, str]]
 
     @property
     def same(self) -> bool:
@@ -55,13 +63,23 @@ class Replay:
 
     def words(self) -> str:
         """What to tell a person."""
-        if self.same:
-            return "the same numbers"
-        lines = [f"{len(self.differences)} numbers differ from the saved ones:"]
-        lines += [f"  {difference}" for difference in self.differences[:SHOWN]]
-        if len(self.differences) > SHOWN:
-            lines.append(f"  ... and {len(self.differences) - SHOWN} more")
-        return "\n".join(lines)
+        lines = ["the same numbers"]
+        if not self.same:
+            lines = [f"{len(self.differences)} numbers differ from the saved ones:"]
+            lines += [f"  {difference}" for difference in self.differences[:SHOWN]]
+            if len(self.differences) > SHOWN:
+                lines.append(f"  ... and {len(self.differences) - SHOWN} more")
+        return "\n".join([*lines, *self._reasons()])
+
+    def _reasons(self) -> Iterator[str]:
+        """Which versions changed, or that it must be something else."""
+        listed = ", ".join(
+            f"{name} {then}, now {now}" for name, (then, now) in self.changed.items()
+        )
+        if listed:
+            yield f"other versions than then: {listed}"
+        elif not self.same:
+            yield "data and versions are those of then: another machine, or the session was edited"
 
 
 def replay_session(
@@ -85,7 +103,15 @@ def replay_session(
     bare = replace(session, solution=None, contact=None, audit=())
     again = solve_session(bare, progress=progress)
     assert again.solution is not None
-    return Replay(again, differences(saved, again.solution))
+    return Replay(again, differences(saved, again.solution), changed_versions(session.versions))
+
+
+def changed_versions(then: Mapping[str, str]) -> dict[str, tuple[str, str]]:
+    """Versions that are not the present ones: then, now; nothing where then's are not known."""
+    now = library_versions()
+    names = dict.fromkeys([*then, *now]) if then else {}
+    pairs = {name: (then.get(name, "none"), now.get(name, "none")) for name in names}
+    return {name: pair for name, pair in pairs.items() if pair[0] != pair[1]}
 
 
 def differences(saved: Solution, now: Solution) -> tuple[Difference, ...]:
@@ -118,6 +144,10 @@ def _numbers(solution: Solution) -> dict[str, float | None]:
         ("jitter", fit.jitter),
     ):
         found |= _labelled(label, group)
+    found["used"] = float(np.count_nonzero(solution.light.why == USED))
+    for number, other in enumerate(solution.alternatives, 1):
+        found |= _labelled(f"alternative {number}", other.values)
+        found[f"alternative {number} chi2"] = other.delta_chi2
     return found
 
 

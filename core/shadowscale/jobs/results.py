@@ -38,6 +38,7 @@ def sheet_of(session: Session) -> Sheet:
         audit=session.audit,
         command=session.command,
         seed=session.plan.seed,
+        versions=session.versions,
     )
 
 

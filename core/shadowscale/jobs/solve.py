@@ -63,6 +63,7 @@ def solve_session(session: Session, *, progress: Progress = SILENT) -> Session:
         contact=solution.contact,
         solution=solution,
         audit=findings,
+        versions={},
     )
 
 

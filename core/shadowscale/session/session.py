@@ -84,4 +84,7 @@ class Session:
     kept: tuple[Kept, ...] = ()
     view: Mapping[str, object] = field(default_factory=dict)
     command: str = ""
+    versions: Mapping[str, str] = field(
+        default_factory=dict
+    )  # that solved it; empty: the present ones
     notes: tuple[str, ...] = ()  # what opening the session had to say; not saved

@@ -23,6 +23,7 @@ from shadowscale.session.plain import PlainError, from_plain, to_plain
 from shadowscale.session.sense import check_sense
 from shadowscale.session.session import Session, Source
 from shadowscale.session.tables import checksum, with_tables
+from shadowscale.versions import library_versions
 
 SCHEMA = 1
 PROGRAM = f"shadowscale {__version__}"
@@ -87,7 +88,9 @@ def session_document(session: Session, folder: Path | None) -> dict[str, Any]:
 
 def plain_document(session: Session) -> dict[str, Any]:
     """A session as plain dictionaries and lists, with its paths as they are."""
-    plain: dict[str, Any] = to_plain(replace(session, photometry=None, velocities=None, notes=()))
+    versions = {} if session.solution is None else session.versions or library_versions()
+    bare = replace(session, photometry=None, velocities=None, notes=(), versions=versions)
+    plain: dict[str, Any] = to_plain(bare)
     return {"schema": SCHEMA, "program": PROGRAM, **plain}
 
 

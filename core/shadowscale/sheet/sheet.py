@@ -2,11 +2,9 @@
 
 from __future__ import annotations
 
-import platform
 from collections import Counter
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field, replace
-from importlib.metadata import PackageNotFoundError, version
 
 from shadowscale._version import __version__
 from shadowscale.data.photometry import USED, InputFile, Photometry
@@ -22,8 +20,8 @@ from shadowscale.geometry.contacts import ContactSolution
 from shadowscale.judge.finding import PASS, Finding
 from shadowscale.light.laws import LAWS
 from shadowscale.quantities import BAND, QUANTITIES, SOURCE, SYSTEM, Quantity, key, quantity_of
+from shadowscale.versions import library_versions
 
-LIBRARIES = ("numpy", "scipy", "numba", "astropy")
 ABSENT = "absent: "
 
 
@@ -62,7 +60,7 @@ class Provenance:
     time_scale: str = "unknown"
     inputs: tuple[InputFile, ...] = ()
     program: str = f"shadowscale {__version__}"
-    versions: Mapping[str, str] = field(default_factory=lambda: library_versions())
+    versions: Mapping[str, str] = field(default_factory=library_versions)
 
 
 @dataclass(frozen=True, eq=False)
@@ -115,6 +113,7 @@ def make_sheet(
     audit: tuple[Finding, ...] = (),
     command: str = "",
     seed: int = 0,
+    versions: Mapping[str, str] | None = None,
 ) -> Sheet:
     """The sheet of a solution.
 
@@ -129,6 +128,8 @@ def make_sheet(
         What would do this again.
     seed : int
         Of every random step.
+    versions : mapping of library to version, or None
+        That the solution was made with; None: the present ones.
     """
     inputs = _inputs(solution, photometry, velocities)
     return Sheet(
@@ -144,19 +145,10 @@ def make_sheet(
         decisions=solution.decisions,
         notes=_notes(solution, photometry, velocities),
         outliers=_outliers(solution, photometry, velocities),
-        provenance=Provenance(command, seed, photometry.time_scale, inputs),
+        provenance=Provenance(
+            command, seed, photometry.time_scale, inputs, versions=versions or library_versions()
+        ),
     )
-
-
-def library_versions() -> dict[str, str]:
-    """Versions of Python and of the libraries that numbers depend on."""
-    found = {"shadowscale": __version__, "python": platform.python_version()}
-    for name in LIBRARIES:
-        try:
-            found[name] = version(name)
-        except PackageNotFoundError:
-            continue
-    return found
 
 
 def _entry(solution: Solution, text: str, name: str = "") -> Entry | None:

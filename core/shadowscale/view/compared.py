@@ -7,7 +7,8 @@ from dataclasses import dataclass
 
 from shadowscale.fit.solution import DERIVED, Estimate
 from shadowscale.jobs.compare import Comparison, Difference, compare
-from shadowscale.jobs.compare_inputs import Compared, Number, solved
+from shadowscale.jobs.compare_inputs import Compared, solved
+from shadowscale.jobs.typed_table import Number
 from shadowscale.session.session import Session
 from shadowscale.view.written import symbol, value_and_error
 

@@ -75,7 +75,7 @@ def follow(session: Session, origin: Origin) -> Session:
     solution = _noted(solution)
     findings = audit(solution, photometry, session.velocities)
     refuse_fatal(findings)
-    return replace(session, system=solution.system, solution=solution, audit=findings)
+    return replace(session, system=solution.system, solution=solution, audit=findings, versions={})
 
 
 def markers_moved(session: Session, origin: Origin) -> bool:

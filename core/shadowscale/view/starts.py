@@ -89,6 +89,7 @@ def solve_from_many_starts(session: Session, *, progress: Progress = SILENT) -> 
         solution=solution,
         system=solution.system,
         contact=solution.contact,
+        versions={},
     )
 
 

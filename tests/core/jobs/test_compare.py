@@ -13,8 +13,9 @@ from made_up import made_up_session
 from shadowscale.errors import SessionError, TableError
 from shadowscale.fit.solution import FITTED, Estimate
 from shadowscale.jobs.compare import compare, compare_files, comparison_document, comparison_table
-from shadowscale.jobs.compare_inputs import Compared, Number, read_compared
+from shadowscale.jobs.compare_inputs import Compared, read_compared
 from shadowscale.jobs.results import sheet_of
+from shadowscale.jobs.typed_table import Number
 from shadowscale.sheet import as_csv, as_json
 
 
@@ -158,6 +159,24 @@ def test_a_typed_table_is_read_with_its_units(tmp_path):
     assert read.numbers["third_light[V]"].value == 0.1
     (bare,) = read_compared(typed(tmp_path / "bare.csv", "M1,1.28,0.01\nM2,1.1,\n"))
     assert bare.numbers["M2"] == Number(1.1)
+
+
+@pytest.mark.parametrize(
+    "text",
+    [
+        "M1,1.28,0.01\noffset1[long camera],-0.5,0.2,0.3\n",
+        "M1 1.28 0.01\noffset1[long camera]  -0.5  0.2 0.3\n",
+        "M1 = 1.28 \N{PLUS-MINUS SIGN} 0.01\n\noffset1[long camera] = -0.5 0.2 0.3 km/s\n",
+        "M1 1.28 +/- 0.01 solMass\noffset1[long camera]\t-500\t200\t300\tm/s\n",
+        "M1;1.28;0.01\noffset1[long camera];-0.5;0.2;0.3\n",
+        "name,value,minus,plus\nM1,1.28,0.01,0.01\noffset1[long camera],-0.5,0.2,0.3\n",
+    ],
+)
+def test_a_table_may_be_typed_as_people_do(tmp_path, text):
+    (read,) = read_compared(typed(tmp_path / "paper.txt", text))
+    assert read.numbers["M1"] == Number(1.28, 0.01, 0.01)
+    offset = read.numbers["offset1[long camera]"]
+    assert (offset.value, offset.minus, offset.plus) == pytest.approx((-0.5, 0.2, 0.3))
 
 
 @pytest.mark.parametrize(

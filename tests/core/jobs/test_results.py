@@ -8,14 +8,20 @@ import numpy as np
 import pytest
 
 from made_up import made_up_session
-from shadowscale.errors import NoSolutionError, NotDetachedError, UsageError
+from shadowscale.errors import (
+    NoSolutionError,
+    NotDetachedError,
+    ShadowscaleError,
+    UsageError,
+)
 from shadowscale.fit.solution import DERIVED, Estimate
-from shadowscale.jobs.replay import Difference, differences
+from shadowscale.jobs.replay import Difference, Replay, changed_versions, differences
 from shadowscale.jobs.results import check_targets, result_files, sheet_of, write_results
 from shadowscale.jobs.solve import IN_WINDOW, NOT_FOR_LEVEL, refuse_fatal, tables_to_solve
 from shadowscale.jobs.words import summary
 from shadowscale.judge.finding import FAIL, Finding
 from shadowscale.session import Markers, Session, Source
+from shadowscale.versions import library_versions
 
 
 @pytest.fixture(scope="module")
@@ -145,6 +151,47 @@ def test_only_numbers_that_differ_are_told_the_largest_first(session):
     assert [item.name for item in found] == ["R2", "R2 minus", "R2 plus", "R1", "M1"]
     assert str(found[0]).startswith("R2: was ")
     assert str(found[0]).endswith("is none")
+
+
+def test_a_replay_says_which_versions_changed(session):
+    now = library_versions()
+    then = {**now, "numpy": "1.26.4"}
+    saved = session.solution
+    found = Replay(session, (), changed_versions(then))
+    assert found.same
+    assert (
+        found.words()
+        == f"the same numbers\nother versions than then: numpy 1.26.4, now {now['numpy']}"
+    )
+    other = replace(saved, estimates={**saved.estimates, "M1": Estimate(9.0, None, None, DERIVED)})
+    differs = Replay(session, differences(saved, other), changed_versions(now))
+    assert differs.words().startswith("3 numbers differ from the saved ones:\n  M1 minus")
+    assert differs.words().endswith("another machine, or the session was edited")
+    assert changed_versions({}) == {}
+
+
+def test_a_session_keeps_the_versions_that_solved_it(session, tmp_path):
+    old = replace(session, versions={"numpy": "1.26.4"})
+    write_results(old, tmp_path, report=False)
+    for name, place in (("session.json", ()), ("sheet.json", ("provenance",))):
+        document = json.loads((tmp_path / name).read_text())
+        for each in place:
+            document = document[each]
+        assert document["versions"] == {"numpy": "1.26.4"}
+    write_results(session, tmp_path, report=False, overwrite=True)
+    document = json.loads((tmp_path / "session.json").read_text())
+    assert document["versions"] == library_versions()
+
+
+def test_trouble_with_the_report_costs_nothing_else(session, tmp_path, monkeypatch):
+    def broken(*_):
+        raise RuntimeError("no fonts")
+
+    monkeypatch.setattr("shadowscale.sheet.figures.make_figure", broken)
+    with pytest.raises(ShadowscaleError, match=r"no fonts\); all other results are in"):
+        write_results(session, tmp_path)
+    written = {path.name for path in tmp_path.iterdir()}
+    assert written == set(result_files(session, report=False))
 
 
 def test_a_difference_is_relative_to_the_larger():
