@@ -83,6 +83,7 @@ PAIRS: Mapping[str, Pair] = {
     "restless": Pair(
         noise=Noise(0.001, red=0.004, red_time=0.5), cadence=300.0, nights=24, error_factor=0.3
     ),
+    "cloudy": Pair(noise=Noise(0.003, night_offset=0.2)),
     "blended": Pair(
         system={"r1": 0.16, "r2": 0.08, "inclination": 86.0},
         band={"third_light": 0.1},

@@ -62,6 +62,17 @@ def alike_neighbours() -> Case:
     return with_residuals(GOOD, noise)
 
 
+def wandering_nights(case: Case = GOOD, *, by: float = 0.15) -> Case:
+    """Nights whose level scatters nearly as much as an eclipse is deep; the fit took the levels up."""
+    night = case.photometry.night
+    level = 1 + by * np.random.default_rng(6).standard_normal(int(night.max()) + 1)[night]
+    light = case.solution.light
+    residual = case.photometry.flux - light.model
+    light = replace(light, level=light.level * level, model=light.model * level)
+    photometry = replace(case.photometry, flux=light.model + residual * level)
+    return with_solution(replace(case, photometry=photometry), light=light)
+
+
 def slow_waves() -> Case:
     """White noise and a wave of two hours of the same size."""
     random = np.random.default_rng(5)
@@ -191,6 +202,7 @@ SPOILT: dict[str, tuple[Callable[[], Case], str, str]] = {
     ),
     "neighbouring residuals": (alike_neighbours, WARN, "alike"),
     "slow noise": (slow_waves, WARN, "slow noise"),
+    "levels of the nights": (wandering_nights, WARN, "one by one"),
     "outliers": (
         lambda: dropped_by_fit(GOOD, np.arange(GOOD.photometry.time.size) % 20 == 0),
         WARN,
@@ -230,3 +242,12 @@ def test_speaks_plainly(name: str) -> None:
         assert finding.source
         assert "nan" not in finding.words, finding.words
     assert CHECKS[name].meaning.endswith("?")
+
+
+def test_dips_of_light_that_wanders_are_refused() -> None:
+    """Levels and neighbours together: a warning for either alone, no sheet for both."""
+    finding = wandering_nights(alike_neighbours()).finding("levels of the nights")
+
+    assert (finding.verdict, finding.fatal) == (FAIL, True)
+    assert "no eclipse is seen for certain" in finding.words
+    assert wandering_nights(alike_neighbours(), by=0.02).finding(finding.check).verdict == PASS

@@ -27,6 +27,7 @@ FAULTS: dict[str, tuple[str, tuple[str, ...]]] = {
     "size of the errors": ("restless", (FAIL,)),
     "neighbouring residuals": ("restless", (WARN,)),
     "slow noise": ("restless", (WARN,)),
+    "levels of the nights": ("cloudy", (WARN,)),
     "third light and inclination": ("blended", (WARN,)),
     "third light": ("too deep", (FAIL,)),
     "edge of range": ("edge on", (WARN,)),
