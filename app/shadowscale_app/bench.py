@@ -312,9 +312,11 @@ def run(paths: Sequence[str]) -> int:
     application.setApplicationName("Shadowscale")
     application.setOrganizationName("Shadowscale")
     application.setProperty(theme.CHOICE, settings().value(theme.CHOICE, theme.FOLLOW))
-    theme.dress(application)
     trouble.catch_everything()
     bench = Bench()
+    theme.dress(
+        application
+    )  # afterwards: widgets put into others that are dressed are dressed each time
     bench.show()
     QTimer.singleShot(0, bench, bench.warmer.start)
     QTimer.singleShot(0, bench, bench.files.offer_recovery)

@@ -16,6 +16,7 @@ ORANGE, SKY, GREEN, YELLOW = "#E69F00", "#56B4E9", "#009E73", "#F0E442"
 BLUE, VERMILION, PURPLE, BLACK = "#0072B2", "#D55E00", "#CC79A7", "#000000"
 
 BAND_SHAPES = ("o", "t1", "s", "d", "t", "p", "h")
+STYLED = "shadowscale-styled"  # property of the application: its style is set
 CHOICE = "shadowscale-scheme"  # property of the application: `light`, `dark` or empty
 FOLLOW, ALWAYS_LIGHT, ALWAYS_DARK = "", "light", "dark"
 
@@ -111,11 +112,15 @@ def colours() -> Colours:
 
 def dress(application: QApplication) -> None:
     """Give the application its look; call again when the scheme changes."""
-    if application.style().objectName().lower() != "fusion":
+    if not application.property(STYLED):
         application.setStyle("Fusion")
+        application.setProperty(STYLED, True)
     now = colours()
-    application.setPalette(_palette(now))
-    application.setStyleSheet(_sheet(now))
+    palette, sheet = _palette(now), _sheet(now)
+    if application.palette() != palette:
+        application.setPalette(palette)
+    if application.styleSheet() != sheet:
+        application.setStyleSheet(sheet)  # every widget is gone through: slow
 
 
 def small_font(step: float = -1.0) -> QFont:

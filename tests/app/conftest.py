@@ -86,9 +86,11 @@ def session() -> Session:
 @pytest.fixture
 def bench(qapp: QApplication, session: Session, told: list[trouble.Trouble]) -> Iterator[Bench]:
     """The window with that session; the fit does not follow, so that no solver is needed."""
-    if not qapp.styleSheet():
-        theme.dress(qapp)
+    qapp.setStyleSheet(
+        ""
+    )  # as at start-up: the window is dressed when it is built, which is quicker
     window = Bench(immediate=True)
+    theme.dress(qapp)
     window.live.following = False
     window.resize(1280, 720)
     window.desk.begin(session)
