@@ -11,10 +11,11 @@ import re
 from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import cache
-from math import floor, inf, isfinite, log10
+from math import inf, isfinite
 from types import MappingProxyType
 
 SYSTEM, BAND, SOURCE = "system", "band", "source"
+MOST_DECIMALS = 12
 
 
 @dataclass(frozen=True)
@@ -647,6 +648,7 @@ QUANTITIES: Mapping[str, Quantity] = _register(
         1.0,
         1e-4,
         "light lost at mid primary eclipse, fraction of the light outside eclipse (first band)",
+        source="the model at the middle of the eclipse",
     ),
     Quantity(
         "depth2",
@@ -657,6 +659,7 @@ QUANTITIES: Mapping[str, Quantity] = _register(
         1.0,
         1e-4,
         "light lost at mid secondary eclipse, fraction of the light outside eclipse (first band)",
+        source="the model at the middle of the eclipse",
     ),
     Quantity(
         "light_ratio",
@@ -729,20 +732,35 @@ def quantity_of(text: str) -> Quantity:
 
 
 def decimals_for(error: float, digits: int = 2) -> int:
-    """Decimal places that show an error with `digits` significant digits (0 or more)."""
+    """Decimal places that show an error with `digits` significant digits; below 0: tens, hundreds ..."""
     if not isfinite(error) or error <= 0:
         return 6
-    return max(0, digits - 1 - floor(log10(error) + 1e-12))
+    exponent = int(f"{error:.{digits - 1}e}".split("e")[1])
+    return digits - 1 - exponent
 
 
-def written(value: float, minus: float | None = None, plus: float | None = None) -> str:
-    """A value with its error as people read it: two significant digits of error, matching decimals."""
+def rounded(
+    value: float, minus: float | None = None, plus: float | None = None
+) -> tuple[str, str, str] | None:
+    """Value, lower and upper error as text: two significant digits of the smaller error, the value to match.
+
+    None where there is no error. This is the rule of everything that people read.
+    """
     errors = [
         error for error in (minus, plus) if error is not None and isfinite(error) and error > 0
     ]
     if not errors:
+        return None
+    places = min(decimals_for(min(errors)), MOST_DECIMALS)
+    shown = (round(each or 0.0, places) for each in (value, minus, plus))
+    first, low, high = (f"{each:.{max(places, 0)}f}" for each in shown)
+    return first, low, high
+
+
+def written(value: float, minus: float | None = None, plus: float | None = None) -> str:
+    """A value with its error in plain text, by the rule of `rounded`."""
+    found = rounded(value, minus, plus)
+    if found is None:
         return f"{value:.6g}"
-    places = decimals_for(min(errors))
-    low, high = (f"{error or 0.0:.{places}f}" for error in (minus, plus))
-    body = f"{value:.{places}f}"
+    body, low, high = found
     return f"{body} \N{PLUS-MINUS SIGN} {low}" if low == high else f"{body} +{high} -{low}"

@@ -3,44 +3,65 @@
 from __future__ import annotations
 
 import csv
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from io import StringIO
 from math import isfinite
 
 from shadowscale.sheet.sheet import Entry, Sheet
 
-HEADER = ("section", "name", "value", "minus", "plus", "unit", "how", "meaning")
-Row = tuple[str, str, object, object, object, str, str, str]
+NUMBERS = ("value", "minus", "plus")
+HEADER = (
+    "section", "name", *NUMBERS, "unit", "how", "prior", "prior_sigma", "meaning", "source"
+)  # fmt: skip
+Row = Mapping[str, object]
 
 
 def as_csv(sheet: Sheet) -> str:
     """The sheet as comma-separated text, numbers in full precision, empty cells for nothing."""
     text = StringIO()
-    writer = csv.writer(text, lineterminator="\n")
-    writer.writerow(HEADER)
+    writer = csv.DictWriter(text, HEADER, restval="", lineterminator="\n")
+    writer.writeheader()
     for row in rows(sheet):
-        writer.writerow([_cell(value) for value in row])
+        writer.writerow({name: _cell(value) for name, value in row.items()})
     return text.getvalue()
 
 
 def rows(sheet: Sheet) -> Iterator[Row]:
     """The rows of the table, in the sheet's order."""
     for entry in sheet.entries():
-        yield _entry_row(entry)
+        yield {"section": "quantity", **_entry_row(entry)}
     for name, value in _fit_numbers(sheet):
-        yield ("fit", name, value, None, None, "", "", "")
+        yield {"section": "fit", "name": name, "value": value}
     for finding in sheet.audit:
-        value, words = finding.value, finding.words
-        yield ("audit", finding.check, value, None, None, "", finding.verdict, words)
+        yield {
+            "section": "audit",
+            "name": finding.check,
+            "value": finding.value,
+            "how": finding.verdict,
+            "meaning": finding.words,
+            "source": finding.source,
+        }
     for decision in sheet.decisions:
-        yield ("decision", decision.what, decision.chosen, None, None, "", "", decision.words)
+        words = {"value": decision.chosen, "meaning": decision.words}
+        yield {"section": "decision", "name": decision.what, **words}
     yield from _provenance_rows(sheet)
 
 
 def _entry_row(entry: Entry) -> Row:
     estimate, quantity = entry.estimate, entry.quantity
-    numbers = (estimate.value, estimate.minus, estimate.plus)
-    return ("quantity", entry.key, *numbers, quantity.unit, estimate.how, entry.meaning)
+    prior, sigma = estimate.prior or (None, None)
+    return {
+        "name": entry.key,
+        "value": estimate.value,
+        "minus": estimate.minus,
+        "plus": estimate.plus,
+        "unit": quantity.unit,
+        "how": estimate.how,
+        "prior": prior,
+        "prior_sigma": sigma,
+        "meaning": entry.meaning,
+        "source": entry.source,
+    }
 
 
 def _fit_numbers(sheet: Sheet) -> Iterator[tuple[str, object]]:
@@ -60,10 +81,10 @@ def _provenance_rows(sheet: Sheet) -> Iterator[Row]:
         "time_scale": made.time_scale,
     }
     for name, value in {**plain, **made.versions}.items():
-        yield ("provenance", name, value, None, None, "", "", "")
+        yield {"section": "provenance", "name": name, "value": value}
     for file in made.inputs:
         words = f"{file.used} of {file.rows} rows used"
-        yield ("input", file.path, file.sha256, None, None, "", "", words)
+        yield {"section": "input", "name": file.path, "value": file.sha256, "meaning": words}
 
 
 def _cell(value: object) -> object:

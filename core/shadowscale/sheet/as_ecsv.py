@@ -14,7 +14,10 @@ COLUMNS = (
     ("plus", "float64", "upper 68.3 % limit, as a distance"),
     ("unit", "string", "unit in astropy's spelling"),
     ("how", "string", "fitted, fixed, derived or assumed"),
+    ("prior", "float64", "middle of the prior, where there is one"),
+    ("prior_sigma", "float64", "its standard deviation"),
     ("meaning", "string", "in words"),
+    ("source", "string", "of the formula, where it is derived"),
 )
 
 
@@ -37,9 +40,11 @@ def _row(entry: Entry) -> str:
     estimate = entry.estimate
     numbers = (estimate.value, estimate.minus, estimate.plus)
     # an empty cell would be read as a missing one; astropy knows 1 as the unit of a pure number
-    words = (entry.quantity.unit or "1", estimate.how, entry.meaning)
+    words = (entry.quantity.unit or "1", estimate.how)
+    prior = estimate.prior or (None, None)
+    ends = (entry.meaning, entry.source or "-")
     cells = [_quoted(entry.key), *map(_number, numbers), *map(_quoted, words)]
-    return ",".join(cells)
+    return ",".join([*cells, *map(_number, prior), *map(_quoted, ends)])
 
 
 def _number(value: float | None) -> str:

@@ -65,8 +65,8 @@ def _entry(entry: Entry) -> dict[str, Any]:
         "how": estimate.how,
         "meaning": entry.meaning,
     }
-    if quantity.source:
-        found["source"] = quantity.source
+    if entry.source:
+        found["source"] = entry.source
     if estimate.prior is not None:
         found["prior"] = {"value": estimate.prior[0], "sigma": estimate.prior[1]}
     return found

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 
-from shadowscale.quantities import decimals_for
+from shadowscale.quantities import rounded
 from shadowscale.sheet.sheet import Entry, Sheet
 
 UNITS = {
@@ -27,7 +27,8 @@ _SPECIAL = re.compile(r"([&%$#_{}])")
 def as_tex(sheet: Sheet) -> str:
     """The numbers as a `tabular` and one more for each band and source; needs `booktabs`.
 
-    Held values are in italics.
+    Held values are in italics. What each number means, its prior and the source of its formula stand
+    behind it as a comment.
     """
     made = sheet.provenance
     lines = [
@@ -59,7 +60,17 @@ def _row(entry: Entry) -> str:
     symbol = quantity.tex + (rf"\,({_coefficient(entry.name)})" if entry.name else "")
     unit = UNITS.get(quantity.unit, rf"\mathrm{{{_escaped(quantity.unit)}}}")
     cells = (f"${symbol}$", f"${_number(entry)}$", f"${unit}$" if unit else "", estimate.how)
-    return " & ".join(cells) + r" \\"
+    return " & ".join(cells) + r" \\ % " + _remark(entry)
+
+
+def _remark(entry: Entry) -> str:
+    """What the table has no room for, as a comment: meaning, prior, source of the formula."""
+    words = [entry.meaning]
+    if entry.estimate.prior is not None:
+        words.append("prior {:g} +- {:g}".format(*entry.estimate.prior))
+    if entry.source:
+        words.append(f"derived by {entry.source}")
+    return "; ".join(" ".join(each.split()) for each in words)
 
 
 def _coefficient(name: str) -> str:
@@ -68,12 +79,10 @@ def _coefficient(name: str) -> str:
 
 def _number(entry: Entry) -> str:
     estimate = entry.estimate
-    errors = [error for error in (estimate.minus, estimate.plus) if error]
-    if not errors:
+    found = rounded(estimate.value, estimate.minus, estimate.plus)
+    if found is None:
         return rf"\mathit{{{estimate.value:.6g}}}"
-    places = decimals_for(min(errors))
-    low, high = (f"{error or 0.0:.{places}f}" for error in (estimate.minus, estimate.plus))
-    value = f"{estimate.value:.{places}f}"
+    value, low, high = found
     return rf"{value} \pm {low}" if low == high else f"{value}^{{+{high}}}_{{-{low}}}"
 
 

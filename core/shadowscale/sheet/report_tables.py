@@ -72,8 +72,7 @@ def _sheet_row(entry: Entry) -> tuple[str, ...]:
         centre, sigma = estimate.prior
         how += f"; prior {number(centre)} \N{PLUS-MINUS SIGN} {number(sigma)}"
     symbol = marked(quantity.tex) + (f" {entry.name}" if entry.name else "")
-    source = quantity.source if estimate.how == "derived" else ""
-    return symbol, entry.meaning, value, error, unit_words(quantity.unit), how, source
+    return symbol, entry.meaning, value, error, unit_words(quantity.unit), how, entry.source
 
 
 def _absent_symbol(finding: Finding) -> str:

@@ -3,11 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from math import isfinite
 
 from shadowscale.fit.solution import Estimate
 from shadowscale.judge.finding import FAIL, WARN
-from shadowscale.quantities import decimals_for
+from shadowscale.quantities import rounded
 from shadowscale.sheet.sheet import ABSENT, Sheet
 from shadowscale.sheet.symbols import unit_words
 
@@ -21,17 +20,12 @@ def number(value: float, digits: int = 6) -> str:
 
 def value_and_error(estimate: Estimate) -> tuple[str, str]:
     """Value and error, the error to two digits; no error where the value is held."""
-    errors = [
-        error
-        for error in (estimate.minus, estimate.plus)
-        if error is not None and isfinite(error) and error > 0
-    ]
-    if not errors:
+    found = rounded(estimate.value, estimate.minus, estimate.plus)
+    if found is None:
         return number(estimate.value), ""
-    places = min(decimals_for(min(errors)), 9)
-    low, high = (f"{error or 0.0:.{places}f}" for error in (estimate.minus, estimate.plus))
+    value, low, high = found
     shown = f"{PLUS_MINUS} {low}" if low == high else f"+{high} {MINUS}{low}"
-    return f"{estimate.value:.{places}f}".replace("-", MINUS), shown
+    return value.replace("-", MINUS), shown
 
 
 def glance(sheet: Sheet) -> str:

@@ -10,6 +10,7 @@ from shadowscale._version import __version__
 from shadowscale.data.photometry import USED, InputFile, Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.solution import (
+    DERIVED,
     Alternative,
     Decision,
     Estimate,
@@ -39,6 +40,11 @@ class Entry:
         """The register's words, with the coefficient's name where there are several."""
         words = self.quantity.meaning
         return f"{words}, coefficient {self.name}" if self.name else words
+
+    @property
+    def source(self) -> str:
+        """Where the formula of a derived number is from; empty for all others."""
+        return self.quantity.source if self.estimate.how == DERIVED else ""
 
 
 @dataclass(frozen=True)

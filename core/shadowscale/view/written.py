@@ -7,7 +7,7 @@ from math import floor, isfinite, log10
 from types import MappingProxyType
 
 from shadowscale.fit.solution import Estimate
-from shadowscale.quantities import Quantity, decimals_for, parse_key
+from shadowscale.quantities import Quantity, parse_key, rounded
 
 UNIT_SIGNS: Mapping[str, str] = MappingProxyType(
     {
@@ -20,7 +20,6 @@ UNIT_SIGNS: Mapping[str, str] = MappingProxyType(
         "dex(cm/s2)": "cgs",
     }
 )
-_LONGEST = 9
 
 
 def unit_sign(unit: str) -> str:
@@ -49,13 +48,12 @@ def plain_value(quantity: Quantity, value: float) -> str:
 def value_and_error(text: str, estimate: Estimate) -> tuple[str, str]:
     """The two columns of a table: the value, and its error (empty where it is held)."""
     quantity = parse_key(text).quantity
-    errors = [e for e in (estimate.minus, estimate.plus) if e is not None and isfinite(e) and e > 0]
-    if not errors:
+    found = rounded(estimate.value, estimate.minus, estimate.plus)
+    if found is None:
         return plain_value(quantity, estimate.value), ""
-    places = min(decimals_for(min(errors)), _LONGEST)
-    low, high = (f"{error or 0.0:.{places}f}" for error in (estimate.minus, estimate.plus))
+    value, low, high = found
     shown = f"\N{PLUS-MINUS SIGN}{low}" if low == high else f"+{high} \N{MINUS SIGN}{low}"
-    return f"{estimate.value:.{places}f}".replace("-", "\N{MINUS SIGN}"), shown
+    return value.replace("-", "\N{MINUS SIGN}"), shown
 
 
 def one_line(text: str, estimate: Estimate) -> str:
