@@ -27,13 +27,21 @@ import math
 import numpy as np
 from numpy.typing import NDArray
 
-from shadowscale._compiled import compiled
+from shadowscale._compiled import compiled, fused, summed
 from shadowscale.light.laws import LINEAR, LOGARITHMIC, POWER_2, QUADRATIC, SQUARE_ROOT
 
 Floats = NDArray[np.float64]
 
+Arc = tuple[int, int, float, float, float, float, float, float]
+
 _STEPS = 11  # rungs of the ladder; each serves singularities four times nearer than the one before
-_NODES_FIRST, _NODES_MORE = 20, 5
+# Nodes that integrate every power from 0.02 to 4 and both derivatives to 1e-10; multiples of four.
+_NODES = (16, 24, 28, 32, 36, 40, 44, 48, 52, 56, 60)
+# For `_power`: a number whose lowest bit is one, and the bits of it, of 1 and of the root of a half.
+SHIFT, SHIFT_BITS = 6755399441055744.0, np.int64(0x4338000000000000)
+ROOT_HALF, ROOT_HALF_BITS = 0.7071067811865475, np.int64(0x3FE6A09E667F3BCC)
+ONE_BITS = np.int64(0x3FF0000000000000)
+LN_2 = 0.6931471805599453
 _NO_GAP = 1e-24  # kc^2 at inner contact, where the elliptic integrals alone are infinite
 
 
@@ -48,7 +56,7 @@ def _ladder() -> tuple[NDArray[np.int64], Floats, Floats]:
     starts, squares, weights = [0], [], []
     for step in range(_STEPS):
         sigma = 0.5 * 4.0**-step
-        x, weight = np.polynomial.legendre.leggauss(_NODES_FIRST + _NODES_MORE * step)
+        x, weight = np.polynomial.legendre.leggauss(_NODES[step])
         x = (x + 1) / 2
         top = np.arcsinh(1 / sigma)
         v = top * x * x
@@ -140,6 +148,22 @@ def _elliptic(kc: float, p: float, a: float, b: float) -> tuple[float, float, fl
 
 
 @compiled
+def covered(
+    d: float, p: float, outer: float, inner: float, cover: float
+) -> tuple[float, float, float]:
+    """Hidden area; half of its arc on the dark disc's edge seen from that disc's centre, and the sine."""
+    if inner <= 0.0:
+        return math.pi * p * p, math.pi, 0.0
+    # Half-angle forms, so that p = 100 does not cancel; kappa1 is seen from the centre of the star.
+    total, four = 1.0 + d + p, 4.0 * d * p
+    k = math.sqrt(outer * cover / four)
+    kc = math.sqrt(max(inner * total / four, _NO_GAP))
+    kappa0 = 2.0 * math.atan2(k, kc)
+    kappa1 = 2.0 * math.atan2(math.sqrt(inner * outer), math.sqrt(cover * total))
+    return _segment(kappa1) + p * p * _segment(kappa0), kappa0, 2.0 * k * kc
+
+
+@compiled
 def closed_forms(
     d: float, p: float, outer: float, inner: float, cover: float
 ) -> tuple[float, float, float, float, float, float, float, float, float]:
@@ -149,16 +173,11 @@ def closed_forms(
     top2 = outer * cover  # the largest mu^2 on the edge, 1-(d-p)^2
     top = math.sqrt(top2)
     step = 1.0 if p > d else (0.5 if p == d else 0.0)
+    area, kappa0, sine0 = covered(d, p, outer, inner, cover)
     if inner > 0.0:
-        # Partial: kappa0 and kappa1 are half of the arcs seen from the centre of the dark disc
-        # and of the star; half-angle forms, so that p = 100 does not cancel.
         k = math.sqrt(top2 / four)
         kc2 = max(inner * total / four, _NO_GAP)
         kc = math.sqrt(kc2)
-        kappa0 = 2.0 * math.atan2(k, kc)
-        kappa1 = 2.0 * math.atan2(math.sqrt(inner * outer), math.sqrt(cover * total))
-        sine0 = 2.0 * k * kc
-        area = _segment(kappa1) + p * p * _segment(kappa0)
         third = (d - p) * (d - p) * kc2
         weight = 3.0 * kc2 * (d - p) * (d + p)
         pi3, b, d3 = _elliptic(kc, max(third, 1e-200), 0.0, weight)
@@ -172,8 +191,6 @@ def closed_forms(
         edge1_cos = 2.0 * k * top * (b + 2.0 * kc2 * d3) / 3.0
         first, second = _arc_moments(kappa0)
     else:
-        kappa0, sine0 = math.pi, 0.0
-        area = math.pi * p * p
         kc2 = max(-inner * total / top2, _NO_GAP)
         kc = math.sqrt(kc2)
         thin2 = kc2 * top2  # the smallest mu^2 on the edge, 1-(d+p)^2
@@ -225,56 +242,81 @@ def _rung(partial: bool, top2: float, kc2: float) -> int:
 
 
 @compiled
+def _arc(d: float, p: float, outer: float, inner: float, cover: float) -> Arc:
+    """The arc of the dark disc's edge for the loops over its nodes: first and last node, and how to get
+
+    mu^2 = low + rise sin^2 s,  sin^2(phi/2) = reach cos^2 s,
+    dphi = pace weight sqrt(sin^2 s/(flat + steep sin^2 s)).
+    """
+    four = 4.0 * d * p
+    top2 = outer * cover
+    if inner > 0.0:
+        k2, kc2 = top2 / four, inner * (1.0 + d + p) / four
+        rung = _rung(True, top2, kc2)
+        low, rise, reach, pace, flat, steep = 0.0, top2, k2, 2.0 * math.sqrt(k2), kc2, k2
+    else:
+        thin2 = -inner * (1.0 + d + p)
+        rung = _rung(False, top2, thin2)
+        low, rise, reach, pace, flat, steep = thin2, four, 1.0, 2.0, 0.0, 1.0
+    return _START[rung], _START[rung + 1], low, rise, reach, pace, flat, steep
+
+
+@fused
+def _power(mu2: float, r2: float, half: float) -> tuple[float, float]:
+    """ln(mu^2) and (mu^2)^half - 1 without a branch, so that several are had at once; r2 = 1 - mu^2.
+
+    Both keep their figures where r2 is small. mu^2 = 2^e m with m near 1, ln m = 2 artanh t; the
+    power as 2^n (1 + r + r^2/2 ...). Series to 1e-14. Adding SHIFT to a small number leaves it rounded
+    in the lowest bits.
+    """
+    bits = np.float64(mu2).view(np.int64)
+    e = np.int64(bits - ROOT_HALF_BITS) >> np.int64(52)
+    m = np.int64(bits - (e << np.int64(52))).view(np.float64)
+    whole = np.int64(e + SHIFT_BITS).view(np.float64) - SHIFT
+    top = -r2 if mu2 > ROOT_HALF else m - 1.0
+    t = top / (2.0 + top)
+    z = t * t
+    series = 1.0 / 13.0 + z * (1.0 / 15.0 + z * (1.0 / 17.0))
+    series = 1.0 / 7.0 + z * (1.0 / 9.0 + z * (1.0 / 11.0 + z * series))
+    series = z * (1.0 / 3.0 + z * (1.0 / 5.0 + z * series))
+    log2 = 2.0 * t + 2.0 * t * series + whole * LN_2
+    y = max(half * log2, -700.0)
+    shifted = y * (1.0 / LN_2) + SHIFT
+    r = y - (shifted - SHIFT) * LN_2
+    series = 1.0 / 362880.0 + r * (1.0 / 3628800.0 + r * (1.0 / 39916800.0))
+    series = 1.0 / 720.0 + r * (1.0 / 5040.0 + r * (1.0 / 40320.0 + r * series))
+    series = 0.5 + r * (1.0 / 6.0 + r * (1.0 / 24.0 + r * (1.0 / 120.0 + r * series)))
+    n = np.float64(shifted).view(np.int64)
+    scale = np.int64((n << np.int64(52)) + ONE_BITS).view(np.float64)
+    return log2, scale * (r + r * r * series) + (scale - 1.0)
+
+
+@summed
 def arc_power(
     d: float, p: float, outer: float, inner: float, cover: float, power: float, area: float
 ) -> tuple[float, float, float, float, float, float]:
     """(H, Hd, Hp) of mu^power and of mu^power ln(mu); area is pi times H of mu^0."""
-    four = 4.0 * d * p
-    top2 = outer * cover
-    gap2 = (d - p) * (d - p)
-    lever = p * (p - d)
-    partial = inner > 0.0
-    total = 1.0 + d + p
-    k2 = top2 / four
-    kc2 = inner * total / four if partial else -inner * total
-    k = math.sqrt(k2)
-    rung = _rung(partial, top2, kc2)
+    first, last, low, rise, reach, pace, flat, steep = _arc(d, p, outer, inner, cover)
+    four, gap2, lever = 4.0 * d * p, (d - p) * (d - p), p * (p - d)
     half = 0.5 * power
-    h = 0.0
-    h_log = 0.0
-    edge = 0.0
-    edge_cos = 0.0
-    edge_log = 0.0
-    edge_cos_log = 0.0
-    for i in range(_START[rung], _START[rung + 1]):
+    h = h_log = edge = edge_cos = edge_log = edge_cos_log = 0.0
+    for i in range(first, last):
         sin2 = _SIN2[i]
-        if partial:
-            mu2 = top2 * sin2
-            s = k2 * (1.0 - sin2)
-            dphi = 2.0 * k * _WEIGHT[i] * math.sqrt(sin2 / (kc2 + k2 * sin2))
-        else:
-            s = 1.0 - sin2
-            mu2 = kc2 + four * sin2
-            dphi = 2.0 * _WEIGHT[i]
-        r2 = gap2 + four * s
-        if r2 > 1e-3:
-            log2 = math.log(max(mu2, 1e-300))
-            g = math.sqrt(mu2) if power == 1.0 else math.exp(half * log2)
-            rest = (1.0 - g) / r2
-        else:
-            log2 = math.log1p(-r2)
-            less = math.expm1(half * log2)
-            g = 1.0 + less
-            rest = -less / r2 if r2 > 0.0 else half
-        g_log = 0.5 * log2 * g
-        across = (lever + 0.5 * four * s) * mu2 * dphi
-        h += across * rest
-        h_log -= across * g_log / r2 if r2 > 0.0 else -0.5 * across
-        cosine = 1.0 - 2.0 * s
+        s = reach * (1.0 - sin2)
+        mu2 = max(low + rise * sin2, 1e-300)
+        r2 = max(gap2 + four * s, 1e-300)
+        dphi = pace * _WEIGHT[i] * math.sqrt(sin2 / (flat + steep * sin2))
+        log2, less = _power(mu2, r2, half)
+        g = 1.0 + less
+        g_log = log2 * g
+        across = (lever + 0.5 * four * s) * mu2 * dphi / r2
+        cosine = dphi - 2.0 * s * dphi
+        h -= across * less
+        h_log -= across * g_log
         edge += g * dphi
-        edge_cos += g * cosine * dphi
+        edge_cos += g * cosine
         edge_log += g_log * dphi
-        edge_cos_log += g_log * cosine * dphi
+        edge_cos_log += g_log * cosine
     rate = 2.0 * p / math.pi
     mean = 2.0 / (power + 2.0)
     value = mean * (area + h) / math.pi
@@ -282,54 +324,37 @@ def arc_power(
         value,
         -rate * edge_cos,
         rate * edge,
-        mean * h_log / math.pi - value / (power + 2.0),
-        -rate * edge_cos_log,
-        rate * edge_log,
+        0.5 * mean * h_log / math.pi - value / (power + 2.0),
+        -0.5 * rate * edge_cos_log,
+        0.5 * rate * edge_log,
     )
 
 
-@compiled
+@summed
 def arc_roots(
     d: float, p: float, outer: float, inner: float, cover: float, area: float
 ) -> tuple[float, float, float, float, float, float]:
     """(H, Hd, Hp) of mu^(1/2) and of mu^(3/2); area is pi times H of mu^0."""
-    four = 4.0 * d * p
-    top2 = outer * cover
-    lever = p * (p - d)
-    partial = inner > 0.0
-    total = 1.0 + d + p
-    k2 = top2 / four
-    kc2 = inner * total / four if partial else -inner * total
-    k = math.sqrt(k2)
-    rung = _rung(partial, top2, kc2)
-    h1 = 0.0
-    h3 = 0.0
-    edge1 = 0.0
-    edge1_cos = 0.0
-    edge3 = 0.0
-    edge3_cos = 0.0
-    for i in range(_START[rung], _START[rung + 1]):
+    first, last, low, rise, reach, pace, flat, steep = _arc(d, p, outer, inner, cover)
+    four, lever = 4.0 * d * p, p * (p - d)
+    h1 = h3 = edge1 = edge1_cos = edge3 = edge3_cos = 0.0
+    for i in range(first, last):
         sin2 = _SIN2[i]
-        if partial:
-            mu2 = top2 * sin2
-            s = k2 * (1.0 - sin2)
-            dphi = 2.0 * k * _WEIGHT[i] * math.sqrt(sin2 / (kc2 + k2 * sin2))
-        else:
-            s = 1.0 - sin2
-            mu2 = kc2 + four * sin2
-            dphi = 2.0 * _WEIGHT[i]
+        s = reach * (1.0 - sin2)
+        mu2 = low + rise * sin2
+        dphi = pace * _WEIGHT[i] * math.sqrt(sin2 / (flat + steep * sin2))
         mu = math.sqrt(mu2)
         g1 = math.sqrt(mu)
         g3 = mu * g1
         # (1 - sqrt(mu))/r^2 = 1/((1+mu)(1+sqrt(mu))), and (1 - mu^(3/2))/r^2 likewise
         across = (lever + 0.5 * four * s) * mu2 * dphi / ((1.0 + mu) * (1.0 + g1))
+        cosine = dphi - 2.0 * s * dphi
         h1 += across
         h3 += across * (1.0 + g1 + mu)
-        cosine = 1.0 - 2.0 * s
         edge1 += g1 * dphi
-        edge1_cos += g1 * cosine * dphi
+        edge1_cos += g1 * cosine
         edge3 += g3 * dphi
-        edge3_cos += g3 * cosine * dphi
+        edge3_cos += g3 * cosine
     rate = 2.0 * p / math.pi
     return (
         0.8 * (area + h1) / math.pi,
@@ -388,6 +413,19 @@ def eclipse_point(d: float, p: float, law: int, c: Floats, out: Floats) -> None:
     if p >= 1.0 and (cover <= 0.0 or d <= p - 1.0):
         out[0] = 1.0
         return
+    if law == POWER_2:
+        area, kappa0, sine0 = covered(d, p, outer, inner, cover)
+        q, qd, qp, g, _, _ = arc_power(d, p, outer, inner, cover, c[1], area)
+        h0, rate = area / math.pi, 2.0 * p / math.pi
+        share = c[1] / (c[1] + 2.0)
+        mean = 1.0 - c[0] * share
+        beta = (h0 - c[0] * (h0 - q)) / mean
+        out[0] = min(1.0, max(0.0, beta))
+        out[1] = ((c[0] - 1.0) * rate * sine0 + c[0] * qd) / mean
+        out[2] = ((1.0 - c[0]) * rate * kappa0 + c[0] * qp) / mean
+        out[3] = (beta * share - (h0 - q)) / mean
+        out[4] = c[0] * (g + 2.0 * beta / (c[1] + 2.0) ** 2) / mean
+        return
     h0, hd0, hp0, h1, hd1, hp1, h2, hd2, hp2 = closed_forms(d, p, outer, inner, cover)
     if law == LINEAR:
         u = c[0]
@@ -412,15 +450,6 @@ def eclipse_point(d: float, p: float, law: int, c: Floats, out: Floats) -> None:
         out[2] = (hp0 - c[0] * (hp0 - hp1) - c[1] * gp) / mean
         out[3] = (beta / 3.0 - (h0 - h1)) / mean
         out[4] = (-2.0 * beta / 9.0 - g) / mean
-    elif law == POWER_2:
-        q, qd, qp, g, _, _ = arc_power(d, p, outer, inner, cover, c[1], math.pi * h0)
-        share = c[1] / (c[1] + 2.0)
-        mean = 1.0 - c[0] * share
-        beta = (h0 - c[0] * (h0 - q)) / mean
-        out[1] = (hd0 - c[0] * (hd0 - qd)) / mean
-        out[2] = (hp0 - c[0] * (hp0 - qp)) / mean
-        out[3] = (beta * share - (h0 - q)) / mean
-        out[4] = c[0] * (g + 2.0 * beta / (c[1] + 2.0) ** 2) / mean
     else:
         r1, rd1, rp1, r3, rd3, rp3 = arc_roots(d, p, outer, inner, cover, math.pi * h0)
         if law == SQUARE_ROOT:
