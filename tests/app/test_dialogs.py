@@ -5,15 +5,19 @@ from __future__ import annotations
 from collections.abc import Iterator
 from pathlib import Path
 
+import numpy as np
 import pytest
+from PySide6.QtCore import Qt
 from PySide6.QtGui import QGuiApplication
+from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QApplication, QDialogButtonBox
 
+from shadowscale.data import read_photometry
 from shadowscale.errors import NotDetachedError, Problem, TableError
 from shadowscale_app import trouble
 from shadowscale_app.bench import Bench
 from shadowscale_app.dialogs.prior import PriorDialog
-from shadowscale_app.dialogs.reading import NOT_THERE, Reading, ReadingDialog
+from shadowscale_app.dialogs.reading import AS_FOUND, NOT_THERE, Reading, ReadingDialog
 from shadowscale_app.dialogs.trouble import TroubleDialog
 
 TABLE = """# BJD_TDB of an invented pair
@@ -49,6 +53,24 @@ def test_every_guess_is_shown_with_its_reason(dialog: ReadingDialog) -> None:
         assert dialog.reasons[role].text(), role
     assert dialog.system.currentText() == "BJD_TDB"
     assert dialog.rows.rowCount() >= 5
+
+
+def test_unit_and_time_system_can_be_changed(
+    dialog: ReadingDialog, qapp: QApplication, table: Path
+) -> None:
+    dialog.unit.setCurrentText("mmag")
+    dialog.unit.textActivated.emit("mmag")
+    dialog.system.setEditText("HJD_UTC - 2400000")
+    QTest.keyClick(dialog.system.lineEdit(), Qt.Key.Key_Return)
+
+    columns = dialog.reading().columns
+    assert (columns["unit"], columns["time_system"]) == ("mmag", "HJD_UTC - 2400000")
+    assert dialog.system.currentText() == "HJD_UTC"
+    read = read_photometry([table], columns=[columns])
+    assert read.time_scale == "HJD_UTC"
+    assert np.ptp(np.log10(read.flux[read.used])) == pytest.approx(0.3e-3 / 2.5, rel=1e-6)
+    dialog.unit.textActivated.emit(AS_FOUND)
+    assert "unit" not in dialog.reading().columns
 
 
 def test_a_guess_can_be_changed(dialog: ReadingDialog) -> None:

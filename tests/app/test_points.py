@@ -2,11 +2,17 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
+from PySide6.QtCore import Qt
+from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QApplication
 
 from hands import draw
+from shadowscale.view.selecting import ONE_LINED
 from shadowscale_app.bench import Bench
+from shadowscale_app.desk import Change
 from shadowscale_app.dialogs.brushing import BACK, BrushDialog
 
 
@@ -103,3 +109,36 @@ def test_velocities_are_set_aside_by_the_brush_too(bench: Bench) -> None:
     assert np.array_equal(before.why1, again.why1)
     assert np.array_equal(before.why2, again.why2)
     assert tuple(each for each in bench.desk.session.exclusions if each.table != "light") == ()
+
+
+def test_the_one_lined_switch_leaves_star_2_out_and_takes_it_back(bench: Bench) -> None:
+    bench.bring("Velocities")
+    QApplication.processEvents()
+    pane = bench.panes["Velocities"]
+    used = bench.desk.session.velocities.used2.sum()
+    assert not pane.mass.isVisible()
+
+    QTest.mouseClick(pane.one_line, Qt.MouseButton.LeftButton)
+
+    assert not bench.desk.session.velocities.used2.any()
+    assert bench.desk.session.velocities.used1.all()
+    assert {each.reason for each in bench.desk.session.exclusions if each.table == "rv2"} == {
+        ONE_LINED
+    }
+    assert bench.desk.history.undo_label == "Leave out velocities of star 2"
+    assert pane.mass.isVisible()
+    QTest.mouseClick(pane.one_line, Qt.MouseButton.LeftButton)
+    assert used == bench.desk.session.velocities.used2.sum()
+    assert not [each for each in bench.desk.session.exclusions if each.table == "rv2"]
+
+
+def test_without_velocities_of_star_2_there_is_nothing_to_switch(bench: Bench) -> None:
+    session = bench.desk.session
+    table = session.velocities
+    alone = replace(table, rv2=np.full(table.time.size, np.nan), why2=np.ones_like(table.why2))
+
+    bench.desk.apply(Change("Change", replace(session, velocities=alone)))
+
+    pane = bench.panes["Velocities"]
+    assert pane.one_line.isChecked()
+    assert not pane.one_line.isEnabled()

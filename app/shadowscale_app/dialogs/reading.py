@@ -36,6 +36,11 @@ ROLE_WORDS = {
     "rv2_err": "its error", "source": "Source",
 }  # fmt: skip
 TIME_SYSTEMS = ("BJD_TDB", "BJD_UTC", "HJD_UTC", "HJD_TT", "JD_UTC", "MJD", "unknown")
+AS_FOUND = "as the file has it"
+UNITS = {
+    "photometry": (AS_FOUND, "mag", "mmag", "ppt", "ppm", "percent"),
+    "velocities": (AS_FOUND, "km/s", "m/s"),
+}
 SHOWN_ROWS = 8
 
 
@@ -67,9 +72,10 @@ class ReadingDialog(QDialog):
         self.setWindowTitle(f"Read {kind} from {path.name}")
         self.resize(820, 560)
         self._changed: dict[str, str] = {}
+        self._shown_system = ""
         self.boxes: dict[str, QComboBox] = {}
         self.reasons: dict[str, QLabel] = {}
-        self.system = QComboBox()
+        self.system, self.unit = QComboBox(), QComboBox()
         self.band = QLineEdit()
         self.adds = QCheckBox("Add to the present session")
         self.adds.setVisible(may_add)
@@ -100,6 +106,9 @@ class ReadingDialog(QDialog):
         for number, role in enumerate(ROLES[self.kind]):
             box, reason = QComboBox(), QLabel("")
             box.setAccessibleName(ROLE_WORDS[role])
+            box.setToolTip(
+                "Which column of the file this is; the reason of the guess stands beside it."
+            )
             reason.setObjectName("quiet")
             reason.setWordWrap(True)
             box.activated.connect(
@@ -113,15 +122,37 @@ class ReadingDialog(QDialog):
         self.clock.setObjectName("quiet")
         self.clock.setWordWrap(True)
         self.system.addItems(TIME_SYSTEMS)
+        self.system.setToolTip(
+            "Kind and scale of the times; an offset that was taken off is written behind, as BJD_TDB - 2457000."
+        )
         self.system.setAccessibleName("Time system")
-        self.system.activated.connect(self._choose_system)
-        for column, widget in enumerate((QLabel("Time system"), self.system, self.clock)):
-            grid.addWidget(widget, line, column)
+        self.system.setInsertPolicy(QComboBox.InsertPolicy.NoInsert)
+        self.system.textActivated.connect(self._choose_system)
+        typed = QLineEdit()
+        self.system.setLineEdit(typed)
+        typed.setAccessibleName("Time system, typed")
+        typed.editingFinished.connect(lambda: self._choose_system(typed.text()))
+        self.unit.addItems(UNITS[self.kind])
+        self.unit.setToolTip(
+            "Of the light: ppt, ppm and percent around zero are taken as changes of the light."
+            if self.kind == "photometry"
+            else "Of both velocities and their errors."
+        )
+        self.unit.setAccessibleName("Unit")
+        self.unit.textActivated.connect(self._choose_unit)
+        rows: list[tuple[QWidget, ...]] = [
+            (QLabel("Time system"), self.system, self.clock),
+            (QLabel("Unit"), self.unit),
+        ]
         if self.kind == "photometry":
             self.band.setPlaceholderText("such as V")
+            self.band.setToolTip("The band of all rows, where the file does not say it row by row.")
             self.band.setAccessibleName("Band of the whole file")
-            for column, widget in enumerate((QLabel("Band of the file"), self.band)):
-                grid.addWidget(widget, line + 1, column)
+            self.band.editingFinished.connect(self._look)
+            rows.append((QLabel("Band of the file"), self.band))
+        for number, widgets in enumerate(rows, start=line):
+            for column, widget in enumerate(widgets):
+                grid.addWidget(widget, number, column)
         self.form.setObjectName("quiet")
         self.foot.setWordWrap(True)
         self.rows.setEditTriggers(QAbstractItemView.EditTrigger.NoEditTriggers)
@@ -141,8 +172,19 @@ class ReadingDialog(QDialog):
         layout.addWidget(self.adds)
         layout.addWidget(self.buttons)
 
-    def _choose_system(self, _: int) -> None:
-        self._changed["time_system"] = self.system.currentText()
+    def _choose_system(self, text: str) -> None:
+        if text.strip() != self._shown_system:
+            self._set("time_system", text.strip())
+
+    def _choose_unit(self, text: str) -> None:
+        self._changed.pop("unit", None)
+        if text == AS_FOUND:
+            self._look()
+        else:
+            self._set("unit", text)
+
+    def _set(self, name: str, text: str) -> None:
+        self._changed[name] = text
         self._look()
 
     def _look(self) -> None:
@@ -172,6 +214,7 @@ class ReadingDialog(QDialog):
         if found.clock is not None:
             if self.system.findText(found.clock.scale) < 0:
                 self.system.addItem(found.clock.scale)
+            self._shown_system = found.clock.scale
             self.system.setCurrentText(found.clock.scale)
             offset = f"; {found.clock.offset:.10g} d is added" if found.clock.offset else ""
             self.clock.setText(found.clock.reason + offset)

@@ -4,13 +4,28 @@ from __future__ import annotations
 
 import pyqtgraph as pg
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QLabel, QSizePolicy, QSplitter, QVBoxLayout, QWidget
+from PySide6.QtWidgets import (
+    QCheckBox,
+    QHBoxLayout,
+    QLabel,
+    QPushButton,
+    QSizePolicy,
+    QSplitter,
+    QVBoxLayout,
+    QWidget,
+)
 
 from shadowscale.view.curves import velocity_curves
 from shadowscale.view.geometry_words import velocity_cells
-from shadowscale.view.selecting import outlined_velocities
+from shadowscale.view.selecting import (
+    can_be_two_lined,
+    is_one_lined,
+    outlined_velocities,
+    with_one_line,
+)
 from shadowscale.view.velocity_points import VelocityPoints, velocities_over_phase
 from shadowscale_app import theme
+from shadowscale_app.desk import Change
 from shadowscale_app.panes.pane import Pane
 from shadowscale_app.plots.picture import Picture
 from shadowscale_app.plots.points import Layer, Points
@@ -23,6 +38,12 @@ NOTHING = "No velocities. Open a table of them to weigh the stars: masses need K
 UNFOLDED = (
     "Velocities appear here over the phase of the orbit once the period is known. Solving finds it."
 )
+
+ONE_LINE_TIP = (
+    "Treat the pair as one-lined: velocities of star 2 are left out. Then only the gravity of star 2 is "
+    "known without an assumption; masses and radii need an assumed mass of star 1."
+)
+MASS_TIP = "A mass of star 1 with its sigma, from its spectrum or colour; all that rests on it is marked as assumed."
 
 
 class VelocitiesPane(Pane):
@@ -55,6 +76,14 @@ class VelocitiesPane(Pane):
         self.numbers.setContentsMargins(10, 0, 10, 2)
         self.numbers.setAccessibleName("Amplitudes and systemic velocities")
         self.numbers.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Minimum)
+        self.one_line = QCheckBox("Only star 1")
+        self.one_line.setAccessibleName("Only star 1 is measured")
+        self.one_line.setToolTip(ONE_LINE_TIP)
+        self.one_line.clicked.connect(self._ask_one_line)
+        self.mass = QPushButton("Assume its mass\N{HORIZONTAL ELLIPSIS}")
+        self.mass.setAccessibleName("Assume the mass of star 1")
+        self.mass.setToolTip(MASS_TIP)
+        self.mass.clicked.connect(lambda: self.asked.emit("prior", "M1"))
         self.curve.outlined.connect(lambda corners: self._outlined(corners, residuals=False))
         self.rest.outlined.connect(lambda corners: self._outlined(corners, residuals=True))
         self._place()
@@ -70,6 +99,7 @@ class VelocitiesPane(Pane):
         self.points.show_layers(_layers(found, residual=False))
         self.rest_points.show_layers(_layers(found, residual=True))
         self._show_models(bool(found))
+        self._show_lines()
         quiet = theme.colours().quiet
         self.numbers.setText(
             "&nbsp;&nbsp;&nbsp;".join(
@@ -108,8 +138,27 @@ class VelocitiesPane(Pane):
         layout = QVBoxLayout(self)
         layout.setContentsMargins(0, 0, 0, 0)
         layout.addWidget(self.split)
-        layout.addWidget(self.numbers)
+        foot = QHBoxLayout()
+        foot.setContentsMargins(0, 0, 10, 2)
+        foot.addWidget(self.numbers, 1)
+        foot.addWidget(self.one_line)
+        foot.addWidget(self.mass)
+        layout.addLayout(foot)
         layout.addWidget(self.nothing)
+
+    def _show_lines(self) -> None:
+        there = self.session.velocities is not None
+        one = is_one_lined(self.session)
+        self.one_line.setVisible(there)
+        self.one_line.setChecked(one)
+        self.one_line.setEnabled(can_be_two_lined(self.session))
+        self.mass.setVisible(there and one)
+        self.mass.setEnabled(self.session.system is not None)
+
+    def _ask_one_line(self, only_first: bool) -> None:
+        label = "Leave out velocities of star 2" if only_first else "Use velocities of star 2"
+        self.wanted.emit(Change(label, with_one_line(self.session, only_first)))
+        self._show_lines()
 
     def _outlined(self, corners: tuple[tuple[float, float], ...], *, residuals: bool) -> None:
         rows = outlined_velocities(self.session, corners, residuals=residuals)

@@ -20,6 +20,7 @@ from shadowscale.view.looks import Look
 from shadowscale.view.velocity_points import velocities_over_phase
 
 Corners = tuple[tuple[float, float], ...]
+ONE_LINED = "left out by the observer: the pair is treated as one-lined"
 
 
 def inside(x: Floats, y: Floats, corners: Corners) -> NDArray[np.bool_]:
@@ -144,6 +145,29 @@ def velocities_taken_back(session: Session, rows: Mapping[int, Ints]) -> Session
         table = table.restored(star, chosen)
     kept = tuple(each for each in exclusions if each.lines)
     return replace(session, velocities=table, exclusions=kept)
+
+
+def is_one_lined(session: Session) -> bool:
+    """Whether no velocity of star 2 takes part."""
+    return session.velocities is not None and not session.velocities.used2.any()
+
+
+def can_be_two_lined(session: Session) -> bool:
+    """Whether there are velocities of star 2, taking part or not."""
+    return session.velocities is not None and bool(np.isfinite(session.velocities.rv2).any())
+
+
+def with_one_line(session: Session, only_first: bool) -> Session:
+    """The session without the velocities of star 2, or with those that were left out like this again."""
+    table = session.velocities
+    if table is None:
+        return session
+    if only_first:
+        return velocities_set_aside(session, {2: np.flatnonzero(table.used2)}, ONE_LINED)
+    if ONE_LINED not in table.reasons:
+        return session
+    rows = np.flatnonzero(table.why2 == table.reasons.index(ONE_LINED))
+    return velocities_taken_back(session, {2: rows})
 
 
 def everything_taken_back(session: Session) -> Session:
