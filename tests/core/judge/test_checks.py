@@ -26,7 +26,7 @@ from made_up_judge import (
     with_system,
     with_values,
 )
-from shadowscale.fit.solution import Alternative
+from shadowscale.fit.solution import Alternative, Decision
 from shadowscale.judge.audit import CHECKS
 from shadowscale.judge.finding import FAIL, PASS, WARN
 
@@ -111,6 +111,17 @@ def limb_moves_radii() -> Case:
     return with_correlation(case, {("radius_ratio", limb): 0.97})
 
 
+def third_light_unknown(case: Case = GOOD, *, free: float = 0.032) -> Case:
+    """No third light, since the curve does not ask for it; but it would leave k nearly open."""
+    numbers = {
+        "sigma_radius_ratio_held": 0.004,
+        "sigma_radius_ratio_free": free,
+        "sigma_third_light[V]": 0.2,
+    }
+    decision = Decision("third light", "none", "third light wins only 0.1", numbers)
+    return with_solution(case, decisions=(decision,))
+
+
 def third_goes_with_inclination() -> Case:
     """Third light free, hardly told from the inclination."""
     case = with_free(GOOD, {"third_light[V]": (0.03, 0.02)})
@@ -186,6 +197,7 @@ SPOILT: dict[str, tuple[Callable[[], Case], str, str]] = {
         FAIL,
         "negative by 5",
     ),
+    "third light taken as none": (third_light_unknown, WARN, "give what you find as a prior"),
     "third light and inclination": (third_goes_with_inclination, WARN, "correlation of 0.98"),
     "limb darkening": (
         lambda: with_system(
@@ -251,3 +263,11 @@ def test_dips_of_light_that_wanders_are_refused() -> None:
     assert (finding.verdict, finding.fatal) == (FAIL, True)
     assert "no eclipse is seen for certain" in finding.words
     assert wandering_nights(alike_neighbours(), by=0.02).finding(finding.check).verdict == PASS
+
+
+def test_third_light_that_would_do_little_is_no_trouble() -> None:
+    finding = third_light_unknown(free=0.009).finding("third light taken as none")
+
+    assert finding.verdict == PASS
+    assert "knows third light to 20 % in V" in finding.words
+    assert finding.value == pytest.approx(2.25)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from math import isfinite, sqrt
+from math import isfinite, nan, sqrt
 
 import numpy as np
 
@@ -54,6 +54,31 @@ def _third_words(value: float, error: float) -> str:
     if not error > 0:
         return f"{percent(value)} (held)"
     return f"{written(100 * value, 100 * error, 100 * error)} %"
+
+
+def third_light_taken_as_none(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
+    """How much larger the error of the ratio of radii would be if third light were free."""
+    numbers = next((d.numbers for d in evidence.solution.decisions if d.what == "third light"), {})
+    held = numbers.get("sigma_radius_ratio_held", nan)
+    free = numbers.get("sigma_radius_ratio_free", nan)
+    ratio = evidence.value("radius_ratio")
+    if not (held > 0 and free > 0 and ratio > 0):
+        return check.silent("third light is in the model, or it was settled by the user.")
+    growth = free / held
+    shown = [
+        f"{percent(error)} in {band}"
+        for band in evidence.bands
+        if isfinite(error := numbers.get(key("sigma_third_light", band), nan))
+    ]
+    known = f" The curve itself knows third light to {listed(shown)}." if shown else ""
+    words = f"Third light is taken as none.{known} Were it free, the ratio of radii would be known to {percent(free / ratio)}"
+    if growth <= (check.limit or 1.0) or free / ratio <= SMALL_SHIFT:
+        return check.passed(f"{words}, which is hardly worse.", growth)
+    return check.warned(
+        f"{words}, not to {percent(held / ratio)}: the errors of the radii hold only if no other star's light is in "
+        "the aperture. Look at images or a star catalogue, and give what you find as a prior on third_light.",
+        growth,
+    )
 
 
 def third_light_and_inclination(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
@@ -250,6 +275,13 @@ CHECKS = (
         third_light,
         SURE,
         "light is not negative; three sigma (common practice)",
+    ),
+    Check(
+        "third light taken as none",
+        "Would a third light that the curve does not show change the errors?",
+        third_light_taken_as_none,
+        SURE,
+        "three times the error with third light free: then the error quoted rests on there being none (our choice)",
     ),
     Check(
         "third light and inclination",
