@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from shadowscale.fit.chances import chi2_limit
 from shadowscale.fit.solution import Decision
 
 SIGNIFICANCE = 0.01
@@ -9,9 +10,7 @@ SIGNIFICANCE = 0.01
 
 def needed(gain: float, extra: int) -> tuple[bool, float]:
     """Whether `extra` quantities are worth a gain in chi-squared, and the gain that would be needed."""
-    from scipy.special import chdtri  # scipy.stats takes half a second to import
-
-    limit = float(chdtri(max(extra, 1), SIGNIFICANCE))
+    limit = chi2_limit(max(extra, 1), SIGNIFICANCE)
     return gain > limit, limit
 
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
+from shadowscale.fit.chances import chi2_limit, gaussian_limit
 from shadowscale.fit.observed import BandData, StarVelocities
 
 Floats = NDArray[np.float64]
@@ -17,9 +18,7 @@ JITTER_SIGNIFICANCE = 0.01
 
 def outlier_limit(count: int) -> float:
     """Sigmas beyond which, among `count` Gaussian values, 0.05 are expected; 3.5 at the least."""
-    from scipy.special import ndtri
-
-    return max(3.5, -float(ndtri(EXPECTED_FALSE / (2 * max(count, 1)))))
+    return max(3.5, gaussian_limit(EXPECTED_FALSE / max(count, 1)))
 
 
 def light_outliers(data: BandData, expected: Floats) -> NDArray[np.bool_]:
@@ -69,12 +68,10 @@ def needed_jitter(residual: Floats, error: Floats, taken: float) -> float:
 
     Significant: chi-squared above its 99 % point for the degrees of freedom.
     """
-    from scipy.special import chdtri
-
     freedom = residual.size - taken
     if freedom < 1:
         return 0.0
-    if float(np.sum((residual / error) ** 2)) <= float(chdtri(freedom, JITTER_SIGNIFICANCE)):
+    if float(np.sum((residual / error) ** 2)) <= chi2_limit(freedom, JITTER_SIGNIFICANCE):
         return 0.0
     low, high = 0.0, float(np.sqrt(np.mean(residual**2)) * 10)
     for _ in range(60):
