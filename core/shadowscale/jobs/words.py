@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from pathlib import Path
 
-from shadowscale.fit.solution import Solution
+from shadowscale.fit.solution import DERIVED, Solution
 from shadowscale.judge.finding import PASS
 from shadowscale.quantities import QUANTITIES, written
 from shadowscale.session.session import Session
@@ -39,7 +39,8 @@ def _quantities(solution: Solution) -> Iterator[str]:
         if name in given and needed:
             quantity, estimate = QUANTITIES[name], given[name]
             text = written(estimate.value, estimate.minus, estimate.plus)
-            held = "" if estimate.plus is not None else f"  ({estimate.how})"
+            how = "held" if estimate.how == DERIVED else estimate.how
+            held = "" if estimate.plus is not None else f"  ({how})"
             yield f"{quantity.name:<13}{text} {quantity.unit}".rstrip() + held
 
 

@@ -69,7 +69,7 @@ def _remark(entry: Entry) -> str:
     if entry.estimate.prior is not None:
         words.append("prior {:g} +- {:g}".format(*entry.estimate.prior))
     if entry.source:
-        words.append(f"derived by {entry.source}")
+        words.append(f"formula: {entry.source}")
     return "; ".join(" ".join(each.split()) for each in words)
 
 

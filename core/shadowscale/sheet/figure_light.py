@@ -129,9 +129,7 @@ def _light_panel(
     near = (points.curve_phase >= window[0]) & (points.curve_phase <= window[1])
     used = seen & points.used
     axes.set_xlim(*window)
-    axes.set_ylim(
-        *_limits(points.y[used], points.curve[near], margin=0.08, downward=shown.magnitudes)
-    )
+    axes.set_ylim(*_limits(points.y[used], points.curve[near], downward=shown.magnitudes))
     draw_points(axes, phase[used], points.y[used], colour=POINTS)
     aside = seen & ~points.used
     draw_set_aside(axes, phase[aside], points.y[aside])
@@ -164,15 +162,15 @@ def _residual_panel(
     few_ticks(axes, y=4)
 
 
-def _limits(y: Floats, curve: Floats, *, margin: float, downward: bool) -> tuple[float, float]:
-    """Limits that hold the curve and nearly all points; magnitudes grow downward."""
+def _limits(y: Floats, curve: Floats, *, downward: bool) -> tuple[float, float]:
+    """Limits that hold the curve, nearly all points, and words below; magnitudes grow downward."""
     ends = [curve.min(), curve.max()]
     if y.size:
         low, high = np.percentile(y[np.isfinite(y)], [0.2, 99.8])
         ends += [low, high]
     low, high = min(ends), max(ends)
-    room = margin * (high - low) or 1e-3
-    return (high + room, low - room) if downward else (low - room, high + room)
+    room, foot = ((high - low) * share or 1e-3 for share in (0.08, 0.2))
+    return (high + foot, low - room) if downward else (low - foot, high + room)
 
 
 def _reach(residual: Floats) -> float:

@@ -13,13 +13,13 @@ import numpy as np
 from shadowscale.data.photometry import Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.plan import Plan
-from shadowscale.fit.solution import FITTED, Solution
+from shadowscale.fit.solution import FITTED, Decision, Solution
 from shadowscale.fit.weights import EXPECTED_FALSE
 from shadowscale.light.laws import LAWS
 from shadowscale.quantities import QUANTITIES, parse_key
 from shadowscale.sheet.references import LIBRARIES, REFERENCES
 from shadowscale.sheet.sheet import Sheet
-from shadowscale.sheet.symbols import marked, plain, unit_words
+from shadowscale.sheet.symbols import coefficient_sign, marked, plain, unit_words
 
 LAW_PAPERS = {
     "linear": "schwarzschild1906",
@@ -44,6 +44,12 @@ LEVEL_WORDS = {
     "one": "one brightness level a band was",
     "night": "a brightness level for every night of each band was",
     "trend": "a brightness level and a linear trend for every night of each band were",
+}
+
+# What a test asked, by the words of the fit.
+TESTED = {
+    "a level a night": "a brightness level for every night instead of one",
+    "a level and a slope a night": "a linear trend for every night",
 }
 
 
@@ -78,7 +84,7 @@ def methods_of(
     methods.add(_model(solution, methods))
     methods.add(_fit(solution, plan, methods))
     methods.add(_weights(solution, photometry, velocities))
-    methods.add(_dimensions(solution, sheet, methods))
+    methods.add([*_dimensions(solution, sheet, methods), _distance(solution, plan)])
     methods.add(_software(sheet, methods))
     return methods
 
@@ -95,7 +101,7 @@ def symbol_of(text: str, law: str) -> str:
     key = parse_key(text)
     words = marked(QUANTITIES[key.name].tex)
     if key.number is not None:
-        words += f" {LAWS[law].coefficients[key.number - 1]}"
+        words += f" {coefficient_sign(LAWS[law].coefficients[key.number - 1])}"
     return words + (f" [{plain(key.label)}]" if key.label is not None else "")
 
 
@@ -125,7 +131,7 @@ def _data(
         ]
         many = len(velocities.sources) > 1
         source = f" from {listed([plain(name) for name in velocities.sources])}" if many else ""
-        sentences.append(f"Radial velocities: {listed(per_star)}{source}.")
+        sentences.append(f"The radial velocities are {listed(per_star)}{source}.")
     else:
         sentences.append("No radial velocities were used, so that no masses are given.")
     sentences.append(f"Times are in {photometry.time_scale}.")
@@ -176,7 +182,7 @@ def _limb(solution: Solution, methods: Methods) -> str:
     names = listed([_sampling(name) for name in law.sampling_names])
     words += f". Fitted were its {names}" + (f" {methods.cite(paper)}" if paper else "")
     detail = plain(told.removeprefix(f"{law.name} law; "))
-    return f"{words}: {detail}." if detail else f"{words}."
+    return f"{words}, with these starting values and priors: {detail}." if detail else f"{words}."
 
 
 def _sampling(name: str) -> str:
@@ -222,9 +228,10 @@ def _effects(solution: Solution, methods: Methods) -> list[str]:
 def _fit(solution: Solution, plan: Plan, methods: Methods) -> list[str]:
     system, fit = solution.system, solution.fit
     free = [symbol_of(name, system.law) for name in system.free]
+    what = "light curves" if solution.velocity is None else "light curves and velocities"
     sentences = [
-        f"All light curves and velocities were fitted together ({plain(fit.method)}); free were "
-        f"{listed(free)}.",
+        f"All {what} were fitted together: {plain(fit.method)}.",
+        f"The free parameters were {listed(free)}.",
         f"In the fit, {LEVEL_WORDS.get(system.levels, system.levels)} solved linearly "
         f"{methods.cite('golub1973')}.",
     ]
@@ -236,13 +243,26 @@ def _fit(solution: Solution, plan: Plan, methods: Methods) -> list[str]:
             "What the data should decide was settled by likelihood-ratio tests "
             f"{methods.cite('wilks1938')}."
         )
-    sentences += [_sentence(plain(each.words)) for each in decided]
+    sentences += [_decided(each) for each in decided]
     sentences.append(_priors(solution, plan))
     return sentences
 
 
-def _sentence(words: str) -> str:
-    """Words as a sentence of their own."""
+def _decided(decision: Decision) -> str:
+    """A decision as a sentence; a test with what it found and what it asked."""
+    numbers, words = decision.numbers, plain(decision.words)
+    if {"gain", "extra", "needed"} <= set(numbers):
+        what = TESTED.get(words.split(" wins", 1)[0], words.split(" wins", 1)[0])
+        gain, extra, needed = (numbers[name] for name in ("gain", "extra", "needed"))
+        found = (
+            f"more than the {needed:.1f} needed at the level of one per cent: adopted"
+            if gain > needed
+            else f"where {needed:.1f} is needed at the level of one per cent: not adopted"
+        )
+        many = "parameter" if extra == 1 else "parameters"
+        words = f"{what} lowers chi-squared by {gain:.1f} for {extra:.0f} more {many}, {found}"
+    elif decision.what == "period":
+        words = f"half and twice the period were weighed: {words}"
     return words[:1].upper() + words[1:].rstrip(".") + "."
 
 
@@ -355,6 +375,23 @@ def _dimensions(solution: Solution, sheet: Sheet, methods: Methods) -> list[str]
         methods.cite("pont2006")
         sentences.append("Slow noise was judged as Pont, Zucker & Queloz (2006) do.")
     return sentences
+
+
+def _distance(solution: Solution, plan: Plan) -> str:
+    """What the distance rests on."""
+    if "distance" not in solution.estimates:
+        return ""
+    texts = [
+        f"{words} {pair[0]:g} \N{PLUS-MINUS SIGN} {pair[1]:g} mag"
+        for words, pair in (
+            ("an apparent magnitude of both stars together of", plan.apparent_magnitude),
+            ("bolometric corrections of", plan.bolometric_correction1),
+            ("", plan.bolometric_correction2),
+            ("an extinction of", plan.extinction),
+        )
+        if pair is not None
+    ]
+    return f"The distance follows from the luminosities with {listed(texts)}.".replace("  ", " ")
 
 
 def _software(sheet: Sheet, methods: Methods) -> list[str]:

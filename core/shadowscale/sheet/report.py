@@ -223,7 +223,7 @@ def _audit(report: Report) -> Iterator[Section]:
 
 
 def _limits(finding: Finding) -> str:
-    if finding.value is None or finding.limit is None:
+    if finding.value is None or finding.limit is None or finding.value == finding.limit:
         return ""
     return f"{number(finding.value, 4)} against {number(finding.limit, 4)}"
 

@@ -14,7 +14,7 @@ from shadowscale.sheet.document import RIGHT, Block, Column, Paragraph, Table
 from shadowscale.sheet.methods import listed
 from shadowscale.sheet.report_words import number, value_and_error
 from shadowscale.sheet.sheet import ABSENT, Entry, Sheet
-from shadowscale.sheet.symbols import marked, plain, unit_words
+from shadowscale.sheet.symbols import coefficient_sign, formula, marked, plain, unit_words
 
 GROUPS: tuple[tuple[str, tuple[str, ...]], ...] = (
     ("Stars", ("M1", "M2", "R1", "R2", "logg1", "logg2", "density1", "density2", "teff1", "teff2",
@@ -71,8 +71,16 @@ def _sheet_row(entry: Entry) -> tuple[str, ...]:
     if estimate.prior is not None:
         centre, sigma = estimate.prior
         how += f"; prior {number(centre)} \N{PLUS-MINUS SIGN} {number(sigma)}"
-    symbol = marked(quantity.tex) + (f" {entry.name}" if entry.name else "")
-    return symbol, entry.meaning, value, error, unit_words(quantity.unit), how, entry.source
+    symbol = marked(quantity.tex) + (f" {coefficient_sign(entry.name)}" if entry.name else "")
+    return (
+        symbol,
+        entry.meaning,
+        value,
+        error,
+        unit_words(quantity.unit),
+        how,
+        formula(entry.source),
+    )
 
 
 def _absent_symbol(finding: Finding) -> str:
@@ -92,7 +100,7 @@ def band_blocks(sheet: Sheet) -> tuple[Block, ...]:
     )
     blocks: list[Block] = [Table(columns, (("", rows),))]
     for name in dict.fromkeys(band.law for band in sheet.bands.values()):
-        words = f"Limb darkening: {name} law, I(mu)/I(1) = {LAWS[name].formula}."
+        words = f"Limb darkening: {name} law, {formula(f'I(mu)/I(1) = {LAWS[name].formula}')}."
         blocks.append(Paragraph(words, quiet=True))
     return (*blocks, *_sources(sheet))
 

@@ -21,6 +21,9 @@ SIGNS: Mapping[str, str] = MappingProxyType(
         r"\alpha": "\N{GREEK SMALL LETTER ALPHA}",
         r"\beta": "\N{GREEK SMALL LETTER BETA}",
         r"\gamma": "\N{GREEK SMALL LETTER GAMMA}",
+        r"\Lambda": "\N{GREEK CAPITAL LETTER LAMDA}",
+        r"\mu": "\N{GREEK SMALL LETTER MU}",
+        r"\pi": "\N{GREEK SMALL LETTER PI}",
         r"\rho": "\N{GREEK SMALL LETTER RHO}",
         r"\sigma": "\N{GREEK SMALL LETTER SIGMA}",
         r"\chi": "\N{GREEK SMALL LETTER CHI}",
@@ -43,6 +46,19 @@ SIGNS: Mapping[str, str] = MappingProxyType(
 _UPRIGHT = frozenset(
     (r"\odot", r"\langle", r"\rangle", r"\pm", r"\times", r"\circ", r"\log", r"\cos", r"\sin")
 )
+
+GREEK: Mapping[str, str] = MappingProxyType(
+    {
+        "pi": SIGNS[r"\pi"],
+        "sigma": SIGNS[r"\sigma"],
+        "mu": SIGNS[r"\mu"],
+        "alpha": SIGNS[r"\alpha"],
+        "w": SIGNS[r"\omega"],
+        "Lambda1": SIGNS[r"\Lambda"] + "1",
+        "Lambda2": SIGNS[r"\Lambda"] + "2",
+    }
+)
+HIGH = str.maketrans("0123456789", "⁰¹²³⁴⁵⁶⁷⁸⁹")
 
 UNITS: Mapping[str, str] = MappingProxyType(
     {
@@ -74,6 +90,18 @@ class Run:
 def marked(tex: str) -> str:
     """A symbol as it stands in the words of a report."""
     return f"{BEGIN}{tex}{END}" if tex else ""
+
+
+def coefficient_sign(name: str) -> str:
+    """A coefficient of limb darkening for the words of a report."""
+    return marked(r"\alpha" if name == "alpha" else name) if name in ("alpha", "c") else name
+
+
+def formula(text: str) -> str:
+    """A formula of the register as people write it: Greek letters, powers as small figures."""
+    for word, sign in GREEK.items():
+        text = re.sub(rf"\b{word}\b", sign, text)
+    return re.sub(r"\^(\d+)", lambda found: found[1].translate(HIGH), text)
 
 
 def plain(text: str) -> str:
