@@ -121,15 +121,15 @@ TABLE: tuple[Entry, ...] = (
     Entry("save_as", f"Save as{ELLIPSIS}", "File", lambda b: b.files.save_as(), Std.SaveAs, "Save the session in another file", _has_light),
     Entry("export", f"Export sheet{ELLIPSIS}", "File", lambda b: b.work.export(b.files.ask_export()), "Ctrl+E", "Write the sheet, curves and session to a folder", _is_solved, bar="Export"),
     Entry("figure", f"Save figure{ELLIPSIS}", "File", lambda b: b.save_figure(), "Ctrl+Shift+E", "Of the picture that was clicked last, as PDF, SVG or PNG", _has_light),
-    Entry("close", "Close session", "File", lambda b: b.files.close_session(), Std.Close, "Back to the start page", _has_light, rule_before=True),
-    Entry("quit", "Quit", "File", lambda b: b.close(), Std.Quit),
+    Entry("close", "Close session", "File", lambda b: b.files.close_session(), Std.Close, "Back to the start page", rule_before=True),
+    Entry("quit", "Quit", "File", lambda b: b.close(), Std.Quit, "Close the window; asks about unsaved work"),
     Entry("undo", "Undo", "Edit", lambda b: b.desk.undo(), Std.Undo, "Take back the last step", bar="Undo"),
     Entry("redo", "Redo", "Edit", lambda b: b.desk.redo(), "Ctrl+Shift+Z", "Do again what was taken back", bar="Redo"),
     Entry("brush", "Brush", "Edit", lambda b: b.toggle_brush(), "B", "Draw round points to set them aside or take them back", _has_light, lambda b: b.brushing, bar="Brush", rule_before=True),
-    Entry("restore", "Take back all points set aside by hand", "Edit", lambda b: b.points.take_all_back(), "", "", lambda s: bool(s.exclusions)),
-    Entry("level", "Add stretch outside eclipse here", "Edit", _span("level"), "Ctrl+L", "At the phase under the cursor", _has_markers, rule_before=True),
-    Entry("excluded", "Add excluded stretch here", "Edit", _span("excluded"), "Ctrl+X", "At the phase under the cursor", _has_markers),
-    Entry("drop_span", "Remove stretch with the keyboard's marker", "Edit", lambda b: b.points.drop_span(b.pictures()), "Del", "", _has_markers),
+    Entry("restore", "Take back all points set aside by hand", "Edit", lambda b: b.points.take_all_back(), "", "They take part again; those that the fit or the file set aside do not", lambda s: bool(s.exclusions)),
+    Entry("level", "Add stretch outside eclipse here", "Edit", _span("level"), "Ctrl+L", "At the phase under the cursor: only such stretches tell the light outside eclipse then", _has_markers, rule_before=True),
+    Entry("excluded", "Add excluded stretch here", "Edit", _span("excluded"), "Ctrl+X", "At the phase under the cursor: its points take part in nothing", _has_markers),
+    Entry("drop_span", "Remove stretch with the keyboard's marker", "Edit", lambda b: b.points.drop_span(b.pictures()), "Del", "The stretch whose edge was clicked, or reached with Tab", _has_markers),
     Entry("keep", f"Keep this solution{ELLIPSIS}", "Edit", lambda b: b.panes["Kept"].ask_name(), "Ctrl+K", "Remember it under a name", _is_solved, rule_before=True),  # type: ignore[attr-defined]
     Entry("compare", f"Compare with file{ELLIPSIS}", "Edit", lambda b: b.files.ask_compare(b.show_beside), "", "Put another session, a sheet or a typed table beside the solution", _is_solved),
     Entry("solve", "Solve", "Solve", lambda b: b.work.solve(), "F5", "Find masses and radii from the data", _has_light, bar="Solve"),
@@ -137,21 +137,23 @@ TABLE: tuple[Entry, ...] = (
     Entry("period", "Search period", "Solve", lambda b: b.work.search_period(), "F7", "Period and epoch from the photometry", _has_light, rule_before=True),
     Entry("starts", "Search from many starts", "Solve", lambda b: b.work.search_starts(), "F8", "Look for other solutions that the data do not exclude", _is_solved),
     Entry("measure", "Measure contacts in the eclipse windows", "Solve", lambda b: b.work.measure_contacts(), "F9", "Put the contact markers where the points in the windows have them", _has_markers),
-    Entry("stop", "Stop", "Solve", lambda b: b.work.stop(), "Ctrl+.", "Stop what is running"),
+    Entry("stop", "Stop", "Solve", lambda b: b.work.stop(), "Ctrl+.", "Stop the work; what it found so far is kept where there is something"),
     Entry("magnitudes", "Magnitudes", "View", _look("magnitudes"), "M", "Magnitudes instead of light", _always, _looks("magnitudes"), bar="Mag"),
     Entry("hours", "Hours instead of phase", "View", _look("hours"), "H", "Hours from mid primary eclipse", _always, _looks("hours"), bar="Hours"),
     Entry("binned", "Binned points", "View", _look("binned"), "N", "Means of neighbouring points", _always, _looks("binned"), bar="Bins"),
-    Entry("show_contact", "Contact markers", "View", _group("contact"), "Ctrl+1", "", _always, _has_group("contact"), rule_before=True),
-    Entry("show_window", "Eclipse windows", "View", _group("window"), "Ctrl+2", "", _always, _has_group("window")),
-    Entry("show_level", "Stretches outside eclipse", "View", _group("level"), "Ctrl+3", "", _always, _has_group("level")),
-    Entry("show_excluded", "Excluded stretches", "View", _group("excluded"), "Ctrl+4", "", _always, _has_group("excluded")),
+    Entry("show_contact", "Contact markers", "View", _group("contact"), "Ctrl+1", "Where the discs touch: first to fourth contact of each eclipse", _always, _has_group("contact"), rule_before=True),
+    Entry("show_window", "Eclipse windows", "View", _group("window"), "Ctrl+2", "Which points count as which eclipse", _always, _has_group("window")),
+    Entry("show_level", "Stretches outside eclipse", "View", _group("level"), "Ctrl+3", "Which points tell the light outside eclipse; without any, all of them", _always, _has_group("level")),
+    Entry("show_excluded", "Excluded stretches", "View", _group("excluded"), "Ctrl+4", "Which points take part in nothing", _always, _has_group("excluded")),
     Entry("reset", "Reset all views", "View", lambda b: b.reset_views(), "Ctrl+0", "Show everything again"),
-    Entry("follow_system", "Colours follow the system", "View", _scheme(theme.FOLLOW), "", "", _always, _is_scheme(theme.FOLLOW), rule_before=True),
-    Entry("light", "Light", "View", _scheme(theme.ALWAYS_LIGHT), "", "", _always, _is_scheme(theme.ALWAYS_LIGHT)),
-    Entry("dark", "Dark", "View", _scheme(theme.ALWAYS_DARK), "", "", _always, _is_scheme(theme.ALWAYS_DARK)),
+    Entry("follow_system", "Colours follow the system", "View", _scheme(theme.FOLLOW), "", "Light or dark as the system has it", _always, _is_scheme(theme.FOLLOW), rule_before=True),
+    Entry("light", "Light", "View", _scheme(theme.ALWAYS_LIGHT), "", "Dark ink on light paper", _always, _is_scheme(theme.ALWAYS_LIGHT)),
+    Entry("dark", "Dark", "View", _scheme(theme.ALWAYS_DARK), "", "For the dome at night", _always, _is_scheme(theme.ALWAYS_DARK)),
     Entry("help", "What the pictures show, and keys", "Help", lambda b: b.bring("Help"), Std.HelpContents, "Explains each picture"),
-    Entry("about", "About Shadowscale", "Help", lambda b: b.about()),
+    Entry("about", "About Shadowscale", "Help", lambda b: b.about(), "", "Version and purpose"),
 )  # fmt: skip
+
+TIPS = {entry.name: entry.tip for entry in TABLE}
 
 
 class Actions:
@@ -166,6 +168,8 @@ class Actions:
     def fill_menus(self) -> None:
         """Make the menu bar."""
         menus: dict[str, QMenu] = {name: self._bench.menuBar().addMenu(name) for name in MENUS}
+        for menu in menus.values():
+            menu.setToolTipsVisible(True)
         for entry in TABLE:
             if entry.rule_before:
                 menus[entry.menu].addSeparator()
@@ -209,7 +213,8 @@ class Actions:
             action.setEnabled(label is not None)
             words = name.capitalize()
             action.setText(f"{words}: {label}" if label else words)
-            action.setToolTip(action.text())
+            keys = action.shortcut().toString(QKeySequence.SequenceFormat.NativeText)
+            action.setToolTip(f"{label or TIPS[name]} ({keys})")
         self.by_name["stop"].setEnabled(self._bench.work.running)
         self.figures.setEnabled(_has_light(session))
 

@@ -18,7 +18,9 @@ from shadowscale.errors import Stopped
 from shadowscale.progress import Progress
 
 Work = Callable[[Progress], object]
-TURN = 1e-3  # [s] after which the window and a fit beside it change places; Python's own 5 ms are seen
+TURN = (
+    1e-3  # [s] after which the window and a fit beside it change places; Python's own 5 ms are seen
+)
 
 
 @dataclass(frozen=True, eq=False)

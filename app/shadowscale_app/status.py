@@ -9,6 +9,7 @@ from shadowscale.session.session import Session
 from shadowscale.view.doubts import counts
 from shadowscale.view.summary import summary
 from shadowscale.view.written import duration_text
+from shadowscale_app.naming import named
 
 WORDS_MS = 12_000
 
@@ -35,11 +36,15 @@ class Status(QStatusBar):
         self.bar.setRange(0, 1000)
         self.bar.setFixedWidth(130)
         self.bar.setTextVisible(False)
-        self.bar.setAccessibleName("Progress")
+        named(self.bar, "Progress", "How much of the work is done")
         self.doing = QLabel("")
         self.stop = QToolButton()
         self.stop.setText("Stop")
-        self.stop.setAccessibleName("Stop")
+        named(
+            self.stop,
+            "Stop",
+            "Stop the work; what it found so far is kept where there is something",
+        )
         self.stop.clicked.connect(self.stop_wanted)
         self.addWidget(self.words, 1)
         for widget in (self.errand, self.live, self.doing, self.bar, self.stop, self.fit):

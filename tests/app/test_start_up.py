@@ -126,34 +126,6 @@ def test_the_window_fits_a_small_screen(bench: Bench) -> None:
     assert least.height() <= 720
 
 
-def test_every_control_has_a_name_for_those_who_cannot_see(bench: Bench) -> None:
-    from PySide6.QtWidgets import (
-        QAbstractSlider,
-        QAbstractSpinBox,
-        QComboBox,
-        QLineEdit,
-        QTableView,
-    )
-
-    kinds = (QComboBox, QLineEdit, QAbstractSpinBox, QTableView)
-    nameless = [
-        type(widget).__name__ + " in " + pane.title
-        for pane in bench.panes.values()
-        for kind in kinds
-        for widget in pane.findChildren(kind)
-        if not widget.accessibleName() and not isinstance(widget.parent(), kinds)
-    ]
-    sliders = [
-        s
-        for p in bench.panes.values()
-        for s in p.findChildren(QAbstractSlider)
-        if not s.accessibleName()
-    ]
-
-    assert nameless == []
-    assert [s for s in sliders if s.objectName() == "" and type(s).__name__ == "QSlider"] == []
-
-
 def test_all_panes_show_a_solved_session(bench: Bench) -> None:
     bench.desk.begin(made_up_session(("V", "I")))
 

@@ -11,6 +11,8 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
+from shadowscale_app.naming import named
+
 REASONS = ("clouds", "flare", "bad focus", "wrong star", "close to twilight", "outlier by eye")
 BACK = "take back"
 
@@ -25,7 +27,11 @@ class BrushDialog(QDialog):
         self.reason = QComboBox()
         self.reason.setEditable(True)
         self.reason.addItems(REASONS)
-        self.reason.setAccessibleName("Reason")
+        named(
+            self.reason,
+            "Reason",
+            "Stands beside each of these points in the session and in the written tables",
+        )
         buttons = QDialogButtonBox()
         aside = buttons.addButton("Set aside", QDialogButtonBox.ButtonRole.AcceptRole)
         back = buttons.addButton("Take back", QDialogButtonBox.ButtonRole.ActionRole)

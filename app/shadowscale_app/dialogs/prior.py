@@ -7,6 +7,7 @@ from PySide6.QtWidgets import QDialog, QDialogButtonBox, QFormLayout, QLabel, QL
 from shadowscale.quantities import quantity_of
 from shadowscale.session.session import Session
 from shadowscale.view.written import read_number, symbol, unit_sign
+from shadowscale_app.naming import named
 
 
 class PriorDialog(QDialog):
@@ -18,8 +19,12 @@ class PriorDialog(QDialog):
         self.setWindowTitle(f"Prior on {symbol(key)}")
         value = session.system.values.get(key, 0.0) if session.system is not None else 0.0
         self.value, self.sigma = QLineEdit(f"{value:.8g}"), QLineEdit(f"{quantity.step:g}")
-        self.value.setAccessibleName("Value")
-        self.sigma.setAccessibleName("Sigma")
+        named(self.value, "Value", "What is known of the quantity from elsewhere")
+        named(
+            self.sigma,
+            "Sigma",
+            "Its one-sigma error; the smaller it is, the harder the prior pulls",
+        )
         self.words = QLabel(f"{quantity.meaning} {unit_sign(quantity.unit)}".strip())
         buttons = QDialogButtonBox(
             QDialogButtonBox.StandardButton.Ok | QDialogButtonBox.StandardButton.Cancel

@@ -24,6 +24,7 @@ from PySide6.QtWidgets import (
 
 from shadowscale.data import Preview, preview
 from shadowscale_app import trouble
+from shadowscale_app.naming import named
 
 NOT_THERE = "(not in this file)"
 ROLES = {
@@ -36,6 +37,13 @@ ROLE_WORDS = {
     "rv2_err": "its error", "source": "Source",
 }  # fmt: skip
 TIME_SYSTEMS = ("BJD_TDB", "BJD_UTC", "HJD_UTC", "HJD_TT", "JD_UTC", "MJD", "unknown")
+SYSTEM_TIP = "Kind and scale of the times; an offset that was taken off is written behind: BJD_TDB - 2457000."
+UNIT_TIPS = {
+    "photometry": "Of the light: ppt, ppm and percent around zero are taken as changes of the light.",
+    "velocities": "Of both velocities and their errors.",
+}
+BAND_TIP = "The band of all rows, where the file does not say it row by row."
+ROLE_TIP = "Which column of the file this is; the reason of the guess stands beside it."
 AS_FOUND = "as the file has it"
 UNITS = {
     "photometry": (AS_FOUND, "mag", "mmag", "ppt", "ppm", "percent"),
@@ -78,6 +86,11 @@ class ReadingDialog(QDialog):
         self.system, self.unit = QComboBox(), QComboBox()
         self.band = QLineEdit()
         self.adds = QCheckBox("Add to the present session")
+        named(
+            self.adds,
+            "Add to the present session",
+            "Beside the tables it has, instead of a new one",
+        )
         self.adds.setVisible(may_add)
         self.form = QLabel("")
         self.foot = QLabel("")
@@ -105,10 +118,7 @@ class ReadingDialog(QDialog):
         grid.setColumnStretch(2, 1)
         for number, role in enumerate(ROLES[self.kind]):
             box, reason = QComboBox(), QLabel("")
-            box.setAccessibleName(ROLE_WORDS[role])
-            box.setToolTip(
-                "Which column of the file this is; the reason of the guess stands beside it."
-            )
+            named(box, ROLE_WORDS[role], ROLE_TIP)
             reason.setObjectName("quiet")
             reason.setWordWrap(True)
             box.activated.connect(
@@ -122,23 +132,15 @@ class ReadingDialog(QDialog):
         self.clock.setObjectName("quiet")
         self.clock.setWordWrap(True)
         self.system.addItems(TIME_SYSTEMS)
-        self.system.setToolTip(
-            "Kind and scale of the times; an offset that was taken off is written behind, as BJD_TDB - 2457000."
-        )
-        self.system.setAccessibleName("Time system")
+        named(self.system, "Time system", SYSTEM_TIP)
         self.system.setInsertPolicy(QComboBox.InsertPolicy.NoInsert)
         self.system.textActivated.connect(self._choose_system)
         typed = QLineEdit()
         self.system.setLineEdit(typed)
-        typed.setAccessibleName("Time system, typed")
+        named(typed, "Time system, typed", SYSTEM_TIP)
         typed.editingFinished.connect(lambda: self._choose_system(typed.text()))
         self.unit.addItems(UNITS[self.kind])
-        self.unit.setToolTip(
-            "Of the light: ppt, ppm and percent around zero are taken as changes of the light."
-            if self.kind == "photometry"
-            else "Of both velocities and their errors."
-        )
-        self.unit.setAccessibleName("Unit")
+        named(self.unit, "Unit", UNIT_TIPS[self.kind])
         self.unit.textActivated.connect(self._choose_unit)
         rows: list[tuple[QWidget, ...]] = [
             (QLabel("Time system"), self.system, self.clock),
@@ -146,8 +148,7 @@ class ReadingDialog(QDialog):
         ]
         if self.kind == "photometry":
             self.band.setPlaceholderText("such as V")
-            self.band.setToolTip("The band of all rows, where the file does not say it row by row.")
-            self.band.setAccessibleName("Band of the whole file")
+            named(self.band, "Band of the whole file", BAND_TIP)
             self.band.editingFinished.connect(self._look)
             rows.append((QLabel("Band of the file"), self.band))
         for number, widgets in enumerate(rows, start=line):
@@ -156,7 +157,7 @@ class ReadingDialog(QDialog):
         self.form.setObjectName("quiet")
         self.foot.setWordWrap(True)
         self.rows.setEditTriggers(QAbstractItemView.EditTrigger.NoEditTriggers)
-        self.rows.setAccessibleName("First rows of the file")
+        named(self.rows, "First rows of the file", "As the program reads them")
         self.rows.setMaximumHeight(220)
         self.rows.verticalHeader().setDefaultSectionSize(22)
         self.rows.verticalHeader().hide()

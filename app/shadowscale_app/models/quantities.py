@@ -12,6 +12,15 @@ from shadowscale.view.written import read_number
 from shadowscale_app import theme
 
 HEADERS = ("name", "value", "error", "unit", "state", "held by the data", "limits")
+HEADER_TIPS = (
+    "Short name; rest on a line for its meaning and what it does to the curve",
+    "Double-click to type another one: the curve follows at once",
+    "68.3 % limits; empty where it is held",
+    "Nominal solar units (IAU 2015), days, degrees, km/s",
+    "Free: fitted; held: stays; prior: fitted, with a wish. Double-click to change it",
+    "Bar: error over value. Number: the strongest correlation; double-click to see it as a picture",
+    "What the value can be at all",
+)
 SYMBOL, VALUE, ERROR, UNIT, STATE, GRADE, LIMITS = range(7)
 Index = QModelIndex | QPersistentModelIndex
 ROW = Qt.ItemDataRole.UserRole
@@ -62,6 +71,8 @@ class QuantityModel(QAbstractTableModel):
         """Names of the columns."""
         if orientation == Qt.Orientation.Horizontal and role == Qt.ItemDataRole.DisplayRole:
             return HEADERS[section]
+        if orientation == Qt.Orientation.Horizontal and role == Qt.ItemDataRole.ToolTipRole:
+            return HEADER_TIPS[section]
         return None
 
     def flags(self, index: Index) -> Qt.ItemFlag:

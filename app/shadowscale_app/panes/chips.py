@@ -8,6 +8,7 @@ from PySide6.QtWidgets import QHBoxLayout, QToolButton, QWidget
 from shadowscale.session.session import Session
 from shadowscale.view.looks import look_of
 from shadowscale_app import theme
+from shadowscale_app.naming import named
 
 SIGNS = {
     "o": "\N{BLACK CIRCLE}",
@@ -59,8 +60,7 @@ class BandChips(QWidget):
         button.setChecked(band not in hidden)
         tint = theme.colours().band(number, len(bands))
         button.setStyleSheet(f"QToolButton {{ color: {tint}; padding: 0 6px; }}")
-        button.setToolTip(f"Show or hide band {band}")
-        button.setAccessibleName(f"Band {band}")
+        named(button, f"Band {band}", f"Show or hide band {band}")
         button.clicked.connect(lambda: self._toggle(band, hidden))
         return button
 

@@ -5,6 +5,8 @@ from __future__ import annotations
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QLabel, QPushButton, QStackedWidget, QVBoxLayout, QWidget
 
+from shadowscale_app.naming import named
+
 
 class Invitation(QWidget):
     """Signal `accepted()`."""
@@ -19,7 +21,11 @@ class Invitation(QWidget):
         self.words.setWordWrap(True)
         self.button = QPushButton(button)
         self.button.setObjectName("lead")
-        self.button.setAccessibleName(button)
+        named(
+            self.button,
+            button,
+            "Finds period, radii and, with velocities, masses from the data alone",
+        )
         self.button.clicked.connect(self.accepted)
         layout = QVBoxLayout(self)
         layout.setSpacing(10)

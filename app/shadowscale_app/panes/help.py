@@ -8,6 +8,7 @@ from html import escape
 from PySide6.QtWidgets import QComboBox, QTextBrowser, QVBoxLayout, QWidget
 
 from shadowscale.guide import page, pages
+from shadowscale_app.naming import named
 from shadowscale_app.panes.pane import Pane
 
 MARKER_KEYS = (
@@ -36,7 +37,7 @@ class HelpPane(Pane):
         super().__init__(parent)
         self._own = ""
         self.choice = QComboBox()
-        self.choice.setAccessibleName("Page of the help")
+        named(self.choice, "Page of the help", "The pictures and keys, or a page of the guide")
         self.choice.addItem(PICTURES, "")
         self.choice.currentIndexChanged.connect(self._show)
         self.text = QTextBrowser()

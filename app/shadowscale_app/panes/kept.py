@@ -23,6 +23,7 @@ from PySide6.QtWidgets import (
 from shadowscale.session.session import Kept
 from shadowscale.view.compared import side_by_side
 from shadowscale_app.desk import Change
+from shadowscale_app.naming import named
 from shadowscale_app.panes.pane import Pane
 
 if TYPE_CHECKING:
@@ -47,7 +48,11 @@ class KeptPane(Pane):
         super().__init__(parent)
         self.beside: tuple[Compared, ...] = ()
         self.table = QTableWidget()
-        self.table.setAccessibleName("Kept solutions")
+        named(
+            self.table,
+            "Kept solutions",
+            "A column a solution; choose one to go back to it or to forget it",
+        )
         self.table.setEditTriggers(QAbstractItemView.EditTrigger.NoEditTriggers)
         self.table.setAlternatingRowColors(True)
         self.table.setShowGrid(False)
@@ -164,8 +169,5 @@ class KeptPane(Pane):
 
 def _button(words: str, tip: str, call: Callable[[], object]) -> QPushButton:
     button = QPushButton(words)
-    button.setToolTip(tip)
-    button.setAccessibleName(words)
-    button.setAccessibleDescription(tip)
     button.clicked.connect(lambda: call())
-    return button
+    return named(button, words, tip)

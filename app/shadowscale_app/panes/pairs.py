@@ -9,6 +9,7 @@ from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QSizePolicy, QVBox
 from shadowscale.view.pairs import Pair, choices, most_correlated, pair
 from shadowscale.view.written import symbol
 from shadowscale_app import theme
+from shadowscale_app.naming import named
 from shadowscale_app.panes.empty import Inviting
 from shadowscale_app.panes.pane import Pane
 from shadowscale_app.plots.picture import Picture
@@ -39,7 +40,9 @@ class PairsPane(Pane):
         row.setContentsMargins(8, 4, 8, 2)
         for box, name in zip(self.boxes, ("Across", "Upwards"), strict=True):
             row.addWidget(QLabel(name))
-            box.setAccessibleName(f"Quantity {name.lower()}")
+            named(
+                box, f"Quantity {name.lower()}", "Any quantity that has an error, fitted or derived"
+            )
             box.currentIndexChanged.connect(self._draw)
             row.addWidget(box)
         row.addWidget(self.words, 1)

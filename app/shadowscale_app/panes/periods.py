@@ -19,6 +19,7 @@ from PySide6.QtWidgets import (
 from shadowscale.view.light_points import ephemeris
 from shadowscale.view.periods import PeriodLine, period_lines
 from shadowscale.view.written import read_number
+from shadowscale_app.naming import named
 from shadowscale_app.panes.pane import Pane
 
 HEADERS = ("period [d]", "epoch", "score", "")
@@ -42,7 +43,11 @@ class PeriodsPane(Pane):
         self.words.setObjectName("quiet")
         self.table = QTableWidget(0, len(HEADERS))
         self.table.setHorizontalHeaderLabels(list(HEADERS))
-        self.table.setAccessibleName("Periods that were weighed")
+        named(
+            self.table,
+            "Periods that were weighed",
+            "The likeliest first; a double click folds with one",
+        )
         self.table.setEditTriggers(QAbstractItemView.EditTrigger.NoEditTriggers)
         self.table.setSelectionBehavior(QAbstractItemView.SelectionBehavior.SelectRows)
         self.table.verticalHeader().hide()
@@ -52,14 +57,26 @@ class PeriodsPane(Pane):
         self.table.horizontalHeader().setSectionResizeMode(QHeaderView.ResizeMode.ResizeToContents)
         self.table.horizontalHeader().setStretchLastSection(True)
         self.table.itemDoubleClicked.connect(lambda _: self.fold_with_chosen())
-        self.search = QPushButton("Search")
+        self.search = named(
+            QPushButton("Search"), "Search", "Look for the period in the photometry"
+        )
         self.search.clicked.connect(lambda: self.asked.emit("search period", None))
-        self.fold = QPushButton("Fold with chosen")
+        self.fold = named(
+            QPushButton("Fold with chosen"),
+            "Fold with chosen",
+            "Take the period of the chosen line and measure the eclipses on it",
+        )
         self.fold.clicked.connect(self.fold_with_chosen)
         self.period, self.epoch = QLineEdit(), QLineEdit()
-        self.period.setAccessibleName("Period in days")
-        self.epoch.setAccessibleName("Epoch")
-        self.take = QPushButton("Fold with these")
+        named(
+            self.period,
+            "Period in days",
+            "The period in use, in days; type another and press Enter",
+        )
+        named(self.epoch, "Epoch", "A time of primary minimum, in the time system of the data")
+        self.take = named(
+            QPushButton("Fold with these"), "Fold with these", "Take the period and epoch as typed"
+        )
         self.take.clicked.connect(self.fold_with_typed)
         self.period.returnPressed.connect(self.fold_with_typed)
         self.epoch.returnPressed.connect(self.fold_with_typed)

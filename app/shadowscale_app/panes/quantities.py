@@ -32,6 +32,7 @@ from shadowscale_app.models.quantities import (
     QuantityModel,
     as_text,
 )
+from shadowscale_app.naming import named
 from shadowscale_app.panes.grade_bar import GradeBar
 from shadowscale_app.panes.pane import Pane
 
@@ -108,6 +109,7 @@ class QuantitiesPane(Pane):
         table = self.table
         table.setModel(self.model)
         table.setAccessibleName("Table of quantities")
+        table.setAccessibleDescription(self.about)
         table.setItemDelegateForColumn(GRADE, GradeBar(table))
         table.setSelectionBehavior(QAbstractItemView.SelectionBehavior.SelectRows)
         table.setSelectionMode(QAbstractItemView.SelectionMode.ExtendedSelection)
@@ -139,7 +141,11 @@ class QuantitiesPane(Pane):
 
     def _make_slider(self) -> None:
         self.slider.setRange(-REACH, REACH)
-        self.slider.setAccessibleName("Move the chosen quantity")
+        named(
+            self.slider,
+            "Move the chosen quantity",
+            "Moves the value of the chosen line and shows what that does to the curve; the arrow keys, too",
+        )
         self.slider.setEnabled(False)
         self.slider.sliderPressed.connect(self._take_up)
         self.slider.valueChanged.connect(self._slid)

@@ -37,6 +37,7 @@ from shadowscale.view.wishes import (
     written_pair,
 )
 from shadowscale_app.desk import Change
+from shadowscale_app.naming import named
 from shadowscale_app.panes.pane import Pane
 
 THIRD = ("held", "free")
@@ -150,9 +151,10 @@ class SettingsPane(Pane):
         self.exposure.setDecimals(1)
         self.exposure.setSuffix(" s")
         self.exposure.setKeyboardTracking(False)
-        self.exposure.setAccessibleName("Exposure time")
-        self.exposure.setToolTip(
-            "The model is averaged over each exposure; long ones smear ingress and egress."
+        named(
+            self.exposure,
+            "Exposure time",
+            "The model is averaged over each exposure; long ones smear ingress and egress.",
         )
         self.exposure.valueChanged.connect(
             lambda value: self._ask("Set exposure", replace(self.session.plan, exposure=value))
@@ -181,14 +183,14 @@ class SettingsPane(Pane):
         tip = "Effective temperature with its sigma in K, for luminosities and limb darkening; empty: unknown."
         for name, field in zip(("teff1", "teff2"), self.teffs, strict=True):
             field.setPlaceholderText("such as 6350 \N{PLUS-MINUS SIGN} 110")
-            field.setToolTip(tip)
-            field.setAccessibleName(f"Temperature of star {name[-1]}")
+            named(field, f"Temperature of star {name[-1]}", tip)
             field.editingFinished.connect(partial(self._take_teff, name, field))
             form.addRow(f"Temperature {name[-1]} [K]", field)
-        self.table.setToolTip(
-            "A file of published limb-darkening coefficients; without one a grey atmosphere is taken."
+        named(
+            self.table,
+            "Limb-darkening table",
+            "A file of published limb-darkening coefficients; without one a grey atmosphere is taken.",
         )
-        self.table.setAccessibleName("Limb-darkening table")
         self.table.clicked.connect(self._choose_table)
         form.addRow("Limb table", self.table)
         self._column.addWidget(group)
@@ -240,8 +242,11 @@ class SettingsPane(Pane):
             wave.setSuffix(" nm")
             wave.setSpecialValueText("by its name")
             wave.setKeyboardTracking(False)
-            wave.setAccessibleName(f"Wavelength of {band}")
-            wave.setToolTip("Where the band lies; sets where limb darkening starts.")
+            named(
+                wave,
+                f"Wavelength of {band}",
+                "Where the band lies; sets where limb darkening starts.",
+            )
             wave.valueChanged.connect(partial(self._take_wavelength, band))
             self.waves[band] = wave
             self._band_form.addRow(f"Wavelength of {band}", wave)
@@ -260,9 +265,7 @@ class SettingsPane(Pane):
         box = QComboBox()
         for value in values:
             box.addItem((words or {}).get(value, value), value)
-        box.setToolTip(tip)
-        box.setAccessibleName(name.replace("_", " ").capitalize())
-        box.setAccessibleDescription(tip)
+        named(box, name.replace("_", " ").capitalize(), tip)
         label = f"Set {name.replace('_', ' ')}"
         box.activated.connect(
             lambda _: self._ask(

@@ -7,6 +7,7 @@ from pathlib import Path
 from PySide6.QtCore import Qt, Signal
 from PySide6.QtWidgets import QGridLayout, QLabel, QPushButton, QVBoxLayout, QWidget
 
+from shadowscale_app.naming import named
 from shadowscale_app.plots.emblem import Emblem
 
 MOST_RECENT = 6
@@ -37,7 +38,7 @@ class StartPane(QWidget):
         words.setObjectName("quiet")
         opening = QPushButton("Open a light curve or session\N{HORIZONTAL ELLIPSIS}")
         opening.setObjectName("lead")
-        opening.setAccessibleName("Open")
+        named(opening, "Open", "Photometry or a saved session; a preview shows how it is read")
         opening.clicked.connect(self.open_wanted)
         hint = QLabel("or drop files anywhere on this window")
         hint.setObjectName("quiet")
@@ -67,8 +68,7 @@ class StartPane(QWidget):
         for number, (title, words, path) in enumerate(samples):
             button = QPushButton(f"{title}\n{words}")
             button.setObjectName("card")
-            button.setAccessibleName(title)
-            button.setToolTip(words)
+            named(button, title, words)
             button.setMinimumWidth(720)
             button.clicked.connect(lambda _=False, path=path: self.sample_wanted.emit(str(path)))
             self._samples.addWidget(button, 1 + number, 0)
@@ -78,7 +78,7 @@ class StartPane(QWidget):
             button = QPushButton(f"{path.name}  \N{EM DASH}  {path.parent}")
             button.setFlat(True)
             button.setStyleSheet("text-align: left; padding: 3px 6px;")
-            button.setAccessibleName(f"Open {path.name}")
+            named(button, f"Open {path.name}", str(path))
             button.clicked.connect(lambda _=False, path=path: self.path_wanted.emit(str(path)))
             self._recent.addWidget(button, 0, Qt.AlignmentFlag.AlignLeft)
 

@@ -8,6 +8,7 @@ from PySide6.QtWidgets import QHBoxLayout, QLabel, QSlider, QToolButton, QVBoxLa
 from shadowscale.view.curves import contact_system
 from shadowscale.view.scene import scene
 from shadowscale.view.written import phase_text
+from shadowscale_app.naming import named
 from shadowscale_app.panes.pane import Pane
 from shadowscale_app.plots.sky import Sky
 from shadowscale_app.warm import READY
@@ -32,12 +33,15 @@ class ToScalePane(Pane):
         self.sky = Sky()
         self.slider = QSlider(Qt.Orientation.Horizontal)
         self.slider.setRange(-STEPS // 4, 3 * STEPS // 4)
-        self.slider.setAccessibleName("Phase of the drawing")
+        named(
+            self.slider,
+            "Phase of the drawing",
+            "Where in the orbit the stars are drawn; 0 is mid primary eclipse",
+        )
         self.play = QToolButton()
         self.play.setText("\N{BLACK RIGHT-POINTING TRIANGLE}")
         self.play.setCheckable(True)
-        self.play.setAccessibleName("Play")
-        self.play.setToolTip("Let the stars go round")
+        named(self.play, "Play", "Let the stars go round")
         self.words = QLabel("")
         self.words.setObjectName("quiet")
         self._timer = QTimer(self)

@@ -26,6 +26,7 @@ from shadowscale.view.selecting import (
 from shadowscale.view.velocity_points import VelocityPoints, velocities_over_phase
 from shadowscale_app import theme
 from shadowscale_app.desk import Change
+from shadowscale_app.naming import named
 from shadowscale_app.panes.pane import Pane
 from shadowscale_app.plots.picture import Picture
 from shadowscale_app.plots.points import Layer, Points
@@ -77,12 +78,10 @@ class VelocitiesPane(Pane):
         self.numbers.setAccessibleName("Amplitudes and systemic velocities")
         self.numbers.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Minimum)
         self.one_line = QCheckBox("Only star 1")
-        self.one_line.setAccessibleName("Only star 1 is measured")
-        self.one_line.setToolTip(ONE_LINE_TIP)
+        named(self.one_line, "Only star 1 is measured", ONE_LINE_TIP)
         self.one_line.clicked.connect(self._ask_one_line)
         self.mass = QPushButton("Assume its mass\N{HORIZONTAL ELLIPSIS}")
-        self.mass.setAccessibleName("Assume the mass of star 1")
-        self.mass.setToolTip(MASS_TIP)
+        named(self.mass, "Assume the mass of star 1", MASS_TIP)
         self.mass.clicked.connect(lambda: self.asked.emit("prior", "M1"))
         self.curve.outlined.connect(lambda corners: self._outlined(corners, residuals=False))
         self.rest.outlined.connect(lambda corners: self._outlined(corners, residuals=True))
