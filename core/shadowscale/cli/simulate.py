@@ -7,12 +7,14 @@ from pathlib import Path
 
 from shadowscale.cli.parser import Parser, add_output, output_folder
 from shadowscale.errors import UsageError
+from shadowscale.guide import page
 
 WORDS = "make photometry and velocities of an invented system, with the truth beside them"
 
 
 def add_arguments(parser: Parser) -> None:
-    """The arguments of the command."""
+    """The arguments of the command; the help shows the page of the guide with every key."""
+    parser.epilog = page("simulate").text
     parser.add_argument("spec", metavar="SPEC", nargs="?", help="description, TOML or JSON")
     add_output(parser)
 

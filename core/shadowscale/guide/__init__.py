@@ -15,7 +15,7 @@ from shadowscale.quantities import BAND, QUANTITIES, SOURCE, SYSTEM, Quantity
 __all__ = ["PAGES", "Page", "page", "pages", "quantities_page"]
 
 # In reading order.
-PAGES = ("first_sheet", "data", "wishes", "reading", "files", "compare", "quantities")
+PAGES = ("first_sheet", "data", "wishes", "reading", "files", "compare", "simulate", "quantities")
 _SCOPES = (
     (SYSTEM, "Of the system"),
     (BAND, "Of a band"),
