@@ -10,8 +10,9 @@ import argparse
 import json
 import os
 import platform
+from contextlib import suppress
 from datetime import UTC, datetime
-from importlib.metadata import version
+from importlib.metadata import PackageNotFoundError, version
 from importlib.util import find_spec
 from pathlib import Path
 
@@ -19,7 +20,10 @@ from processes import timed_processes
 from timing import CLOCKS, table, timed
 from works import all_works
 
-PACKAGES = ("shadowscale", "numpy", "scipy", "numba", "llvmlite", "batman-package")
+PACKAGES = (
+    "shadowscale", "numpy", "scipy", "numba", "llvmlite", "batman-package", "PySide6-Essentials",
+    "pyqtgraph",
+)  # fmt: skip
 REPEATS = 9
 
 
@@ -37,21 +41,41 @@ def main() -> None:
         results += desktop_results(quick=options.quick)
     if not options.works_only:
         results += timed_processes(1 if options.quick else 3, quick=options.quick)
-    print(f"{platform.processor() or platform.machine()}, {os.cpu_count()} cores, "
+    print(f"{_machine()}, {os.cpu_count()} cores, {platform.system()}; "
           f"{datetime.now(UTC):%Y-%m-%d}; {options.clock} clock, load {_load()}")  # fmt: skip
+    print(f"Python {platform.python_version()}, "
+          + ", ".join(f"{name} {found}" for name, found in _versions().items()))  # fmt: skip
     print(table(results))
     if options.json is not None:
         about = {
             "date": datetime.now(UTC).isoformat(timespec="seconds"),
             "python": platform.python_version(),
             "platform": platform.platform(),
+            "machine": _machine(),
             "cores": os.cpu_count(),
             "clock": options.clock,
             "load": _load(),
-            "versions": {name: version(name) for name in PACKAGES},
+            "versions": _versions(),
             "works": [each.as_dict() for each in results],
         }
         options.json.write_text(json.dumps(about, indent=1) + "\n", encoding="utf-8")
+
+
+def _machine() -> str:
+    """The processor's name."""
+    told = Path("/proc/cpuinfo")
+    lines = told.read_text("utf-8").splitlines() if told.exists() else []
+    names = [line.partition(":")[2].strip() for line in lines if line.startswith("model name")]
+    return names[0] if names else platform.processor() or platform.machine()
+
+
+def _versions() -> dict[str, str]:
+    """Of what takes part, where it is installed."""
+    found = {}
+    for name in PACKAGES:
+        with suppress(PackageNotFoundError):
+            found[name] = version(name)
+    return found
 
 
 def _load() -> str:
