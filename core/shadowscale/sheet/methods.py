@@ -341,7 +341,8 @@ def _dimensions(solution: Solution, sheet: Sheet, methods: Methods) -> list[str]
     if "M1" in given or "R1" in given:
         sentences.append(
             "Masses, radii and luminosities are in the nominal solar units of IAU 2015 Resolution B3 "
-            f"{methods.cite('prsa2016')}; other constants are of CODATA 2018."
+            f"{methods.cite('prsa2016')}; other constants are of CODATA 2018 "
+            f"{methods.cite('tiesinga2021')}."
         )
     if given.get("M1") and given["M1"].how not in ("derived", FITTED):
         sentences.append(
@@ -381,17 +382,20 @@ def _distance(solution: Solution, plan: Plan) -> str:
     """What the distance rests on."""
     if "distance" not in solution.estimates:
         return ""
-    texts = [
-        f"{words} {pair[0]:g} \N{PLUS-MINUS SIGN} {pair[1]:g} mag"
-        for words, pair in (
-            ("an apparent magnitude of both stars together of", plan.apparent_magnitude),
-            ("bolometric corrections of", plan.bolometric_correction1),
-            ("", plan.bolometric_correction2),
-            ("an extinction of", plan.extinction),
-        )
-        if pair is not None
-    ]
-    return f"The distance follows from the luminosities with {listed(texts)}.".replace("  ", " ")
+    inputs = (
+        plan.apparent_magnitude,
+        plan.bolometric_correction1,
+        plan.bolometric_correction2,
+        plan.extinction,
+    )
+    light, first, second, dust = (
+        f"{value:g} \N{PLUS-MINUS SIGN} {sigma:g}".replace("-", "\N{MINUS SIGN}") + " mag"
+        for value, sigma in (pair or (0.0, 0.0) for pair in inputs)
+    )
+    return (
+        f"The distance follows from the luminosities, an apparent magnitude of both stars of {light}, "
+        f"bolometric corrections of {first} (star 1) and {second} (star 2), and an extinction of {dust}."
+    )
 
 
 def _software(sheet: Sheet, methods: Methods) -> list[str]:

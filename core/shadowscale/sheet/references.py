@@ -1,6 +1,11 @@
 """The papers that a solution rests on, and their BibTeX entries.
 
 Only published works; identifiers are given where they are certain.
+
+From memory, not looked up: all titles, last pages and identifiers. Also author, year, journal, volume and
+first page of all works but these, which were checked against a list of sources: kaplan2010, mandel2002,
+agol2020, kipping2013, maxted2018, morris1993, southworth2007, eggleton1983, pont2006, prsa2016,
+claret2000, loeb2003.
 """
 
 from __future__ import annotations
@@ -58,6 +63,12 @@ REFERENCES: Mapping[str, Reference] = _register(
         r"Pr{\v s}a, A. and Harmanec, P. and Torres, G. and others",
         "Nominal Values for Selected Solar and Planetary Quantities: IAU 2015 Resolution B3",
         where=(AJ, "152", "41"), doi="10.3847/0004-6256/152/2/41",
+    ),
+    _paper(
+        "tiesinga2021", "Tiesinga et al. 2021",
+        "Tiesinga, E. and Mohr, P. J. and Newell, D. B. and Taylor, B. N.",
+        "CODATA recommended values of the fundamental physical constants: 2018",
+        where=("Reviews of Modern Physics", "93", "025010"), doi="10.1103/RevModPhys.93.025010",
     ),
     Reference(
         "mamajek2015", "Mamajek et al. 2015", "misc",
@@ -190,11 +201,6 @@ REFERENCES: Mapping[str, Reference] = _register(
         "schwarzenberg1989", "Schwarzenberg-Czerny 1989", "Schwarzenberg-Czerny, A.",
         "On the advantage of using analysis of variance for period search",
         where=(MNRAS, "241", "153--165"), doi="10.1093/mnras/241.2.153",
-    ),
-    _paper(
-        "kwee1956", "Kwee & van Woerden 1956", "Kwee, K. K. and van Woerden, H.",
-        "A method for computing accurately the epoch of minimum of an eclipsing variable",
-        where=("Bulletin of the Astronomical Institutes of the Netherlands", "12", "327--330"),
     ),
     _paper(
         "harris2020", "Harris et al. 2020", "Harris, C. R. and Millman, K. J. and others",

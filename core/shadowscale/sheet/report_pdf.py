@@ -134,7 +134,7 @@ def _section(setter: Setter, section: Section) -> None:
 def _least_height(setter: Setter, block: Block) -> float:
     """What must stand on the same page as the title above."""
     if isinstance(block, Picture):
-        return setter.figures[block.name].height
+        return _picture_height(setter, block)
     return 60.0
 
 
@@ -209,11 +209,16 @@ def _wide(value: str, error: str, unit: str, width: float) -> bool:
     return words + text_width(f"{error} {flat(unit)}", SMALL) > width - 6
 
 
+def _picture_height(setter: Setter, block: Picture) -> float:
+    """A figure with its caption."""
+    caption = len(lines_of(block.caption, SMALL, WIDTH)) * SMALL.size * LEADING
+    return setter.figures[block.name].height + caption + 6
+
+
 def _picture(setter: Setter, block: Picture) -> None:
     figure = setter.figures[block.name]
     height = figure.height
-    caption = len(lines_of(block.caption, SMALL, WIDTH)) * SMALL.size * LEADING
-    setter.room(min(height + caption + 6, PAPER[1] - FOOT - TOP))
+    setter.room(min(_picture_height(setter, block), PAPER[1] - FOOT - TOP))
     setter.page.pictures.append((figure, SIDE, PAPER[1] - setter.y - height))
     setter.y += height + 4
     setter.text(block.caption, SMALL, after=8)
