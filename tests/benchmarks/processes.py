@@ -99,6 +99,7 @@ def _timed(process: Process, repeats: int) -> Timed:
 def _run(process: Process) -> tuple[float, float, float]:
     """Seconds, those of computing, and peak memory [MB] of one run; a failure ends the measurement with its words."""
     environment = {**os.environ, "PYTHONPATH": str(Path(__file__).parent)}
+    environment.pop("PYTHONDONTWRITEBYTECODE", None)  # bytecode is kept, as where people work
     launcher = [sys.executable, "-I", "-S", str(Path(__file__).with_name("launcher.py"))]
     done = subprocess.run(
         [*launcher, *process.words], env=environment, capture_output=True, text=True, check=False
