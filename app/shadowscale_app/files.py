@@ -9,7 +9,7 @@ from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from PySide6.QtCore import QObject, QSettings, QStandardPaths, QTimer
+from PySide6.QtCore import QDateTime, QLocale, QObject, QSettings, QStandardPaths, QTimer
 from PySide6.QtWidgets import QFileDialog, QMessageBox, QWidget
 
 from shadowscale.session.session import Session, Source
@@ -277,15 +277,23 @@ class Files(QObject):
         """Offer what a crash left behind."""
         from shadowscale.session.journal import discard, recoverable
 
+        buttons = QMessageBox.StandardButton
         for item in recoverable(journal_folder()):
+            moment = QDateTime.fromSecsSinceEpoch(int(item.saved_at))
+            when = QLocale().toString(moment, QLocale.FormatType.ShortFormat)
             answer = QMessageBox.question(
-                self._window, "Recover work?",
-                f"The program ended unexpectedly while {item.name!r} had unsaved changes. Open them?",
-            )  # fmt: skip
-            if answer == QMessageBox.StandardButton.Yes:
+                self._window,
+                "Recover work?",
+                f"The program ended unexpectedly while {item.name} had unsaved changes.\n"
+                f"Open the work as it was at {when}, discard it, or decide later?",
+                buttons.Open | buttons.Discard | buttons.Cancel,
+                buttons.Open,
+            )
+            if answer == buttons.Open:
                 self._recover(item)
                 return
-            discard(item)
+            if answer == buttons.Discard:
+                discard(item)
 
     def _recover(self, item: Recoverable) -> None:
         from shadowscale.session.journal import discard, recover

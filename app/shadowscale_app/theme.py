@@ -195,6 +195,8 @@ def _sheet(now: Colours) -> str:
     QSplitter::handle {{ background: {now.window}; }}
     QHeaderView::section {{ background: {now.raised}; color: {now.quiet}; border: 0;
                             border-bottom: 1px solid {now.line}; padding: 3px 5px; }}
+    QTableCornerButton::section {{ background: {now.raised}; border: 0;
+                            border-bottom: 1px solid {now.line}; }}
     QTableView, QTreeView, QListView {{ border: 0; background: {now.paper};
                             alternate-background-color: {now.raised}; gridline-color: {now.grid}; }}
     QToolTip {{ background: {now.raised}; color: {now.ink}; border: 1px solid {now.line}; padding: 4px; }}

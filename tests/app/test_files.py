@@ -106,20 +106,24 @@ def test_a_place_that_cannot_be_written_is_told_and_nothing_is_lost(
     told.clear()
 
 
-def test_work_of_a_window_that_is_gone_is_offered_and_opens(
-    bench: Bench, monkeypatch: pytest.MonkeyPatch
-) -> None:
+@pytest.fixture
+def left_behind(bench: Bench) -> Path:
+    """The journal of a window that is gone, with work under another name."""
     opened(bench)
     rename(bench)
     journal_folder().mkdir(parents=True, exist_ok=True)
     journal = Journal(journal_folder())
     journal.write(bench.desk.session)
-    text = journal.file.read_text(encoding="utf-8").replace(
-        '"pid": ', '"pid": 99'
-    )  # no such process
-    journal.file.write_text(text, encoding="utf-8")
+    text = journal.file.read_text(encoding="utf-8")
+    journal.file.write_text(text.replace('"pid": ', '"pid": 99'), encoding="utf-8")
     bench.desk.begin(bench.desk.session)
-    asked = answer(monkeypatch, ANSWER.Yes)
+    return journal.file
+
+
+def test_work_of_a_window_that_is_gone_is_offered_and_opens(
+    bench: Bench, left_behind: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    asked = answer(monkeypatch, ANSWER.Open)
 
     bench.files.offer_recovery()
 
@@ -127,7 +131,23 @@ def test_work_of_a_window_that_is_gone_is_offered_and_opens(
     assert "other" in asked[0]
     assert bench.desk.session.name == "other"
     assert bench.desk.unsaved
-    assert not journal.file.exists()
+    assert not left_behind.exists()
+    assert len(list(journal_folder().glob("*"))) == 1  # it has a journal of its own already
+
+
+@pytest.mark.parametrize(("button", "stays"), [(ANSWER.Discard, False), (ANSWER.Cancel, True)])
+def test_work_left_behind_is_discarded_only_when_asked(
+    bench: Bench,
+    left_behind: Path,
+    monkeypatch: pytest.MonkeyPatch,
+    button: QMessageBox.StandardButton,
+    stays: bool,
+) -> None:
+    answer(monkeypatch, button)
+
+    bench.files.offer_recovery()
+
+    assert left_behind.exists() is stays
 
 
 def test_the_journal_is_written_only_where_there_is_something_to_lose(bench: Bench) -> None:

@@ -10,7 +10,7 @@ from shadowscale.view.rows import BADLY, FAIRLY, STRONG, WELL, Row
 from shadowscale_app import theme
 from shadowscale_app.models.quantities import ROW
 
-BAR = 34.0
+BAR = 26.0
 SIGNS = {WELL: "", FAIRLY: "!", BADLY: "!!"}
 
 

@@ -57,6 +57,7 @@ class KeptPane(Pane):
         self.table.setAlternatingRowColors(True)
         self.table.setShowGrid(False)
         self.table.verticalHeader().setDefaultSectionSize(22)
+        self.table.verticalHeader().setMinimumWidth(60)
         self.words = QLabel("")
         self.words.setObjectName("quiet")
         self.words.setWordWrap(True)
@@ -72,6 +73,7 @@ class KeptPane(Pane):
         self.table.itemSelectionChanged.connect(self._enable)
         row = QHBoxLayout()
         row.setContentsMargins(8, 5, 8, 5)
+        row.setSpacing(6)
         for button in (self.keep, self.back, self.drop, self.file):
             row.addWidget(button)
         row.addStretch(1)

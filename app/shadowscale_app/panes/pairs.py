@@ -38,6 +38,7 @@ class PairsPane(Pane):
         self.words.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
         row = QHBoxLayout()
         row.setContentsMargins(8, 4, 8, 2)
+        row.setSpacing(8)
         for box, name in zip(self.boxes, ("Across", "Upwards"), strict=True):
             row.addWidget(QLabel(name))
             named(

@@ -22,6 +22,9 @@ from shadowscale.view.written import read_number
 from shadowscale_app.naming import named
 from shadowscale_app.panes.pane import Pane
 
+NOT_SEARCHED = (
+    "Nothing was searched yet: Search weighs all periods; or type period and epoch and fold."
+)
 HEADERS = ("period [d]", "epoch", "score", "")
 
 
@@ -81,6 +84,7 @@ class PeriodsPane(Pane):
         self.period.returnPressed.connect(self.fold_with_typed)
         self.epoch.returnPressed.connect(self.fold_with_typed)
         self._place()
+        self.show_search(None)
 
     def refresh(self, names: frozenset[str]) -> None:
         """Show the ephemeris in use."""
@@ -95,7 +99,7 @@ class PeriodsPane(Pane):
     def show_search(self, search: object) -> None:
         """List what a search weighed; None: nothing was searched."""
         self._lines, words = period_lines(search)
-        self.words.setText(words)
+        self.words.setText(words or NOT_SEARCHED)
         self.table.setRowCount(len(self._lines))
         for number, line in enumerate(self._lines):
             for column, text in enumerate(line.cells):
@@ -127,6 +131,7 @@ class PeriodsPane(Pane):
     def _place(self) -> None:
         row = QHBoxLayout()
         row.setContentsMargins(8, 5, 8, 3)
+        row.setSpacing(6)
         for widget in (self.search, self.fold):
             row.addWidget(widget)
         row.addSpacing(12)

@@ -126,7 +126,8 @@ class VelocitiesPane(Pane):
             picture.setXRange(-0.26, 0.76, padding=0)
             self.split.addWidget(picture)
             self.split.setStretchFactor(self.split.count() - 1, stretch)
-        self.split.setSizes([300, 100])
+        self.rest.setMinimumHeight(84)
+        self.split.setSizes([260, 100])
         for line in (*self._models.values(), self._level):
             self.curve.addItem(line)
         self.rest.addItem(self._zero)
