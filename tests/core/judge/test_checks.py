@@ -29,6 +29,7 @@ from made_up_judge import (
 from shadowscale.fit.solution import Alternative, Decision
 from shadowscale.judge.audit import CHECKS
 from shadowscale.judge.finding import FAIL, PASS, WARN
+from shadowscale.quantities import quantity_of
 
 GOOD = good_case()
 LIGHT_ONLY = good_case(velocities=False)
@@ -111,20 +112,25 @@ def limb_moves_radii() -> Case:
     return with_correlation(case, {("radius_ratio", limb): 0.97})
 
 
-def third_light_unknown(case: Case = GOOD, *, free: float = 0.032) -> Case:
-    """No third light, since the curve does not ask for it; but it would leave k nearly open."""
-    numbers = {
-        "sigma_radius_ratio_held": 0.004,
-        "sigma_radius_ratio_free": free,
-        "sigma_third_light[V]": 0.2,
-    }
-    decision = Decision("third light", "none", "third light wins only 0.1", numbers)
-    return with_solution(case, decisions=(decision,))
+def third_light_negative() -> Case:
+    """Third light at its bound, where the curve wants it far below."""
+    numbers = {"unbounded_third_light[V]": -0.05, "sigma_third_light[V]": 0.01}
+    decision = Decision("third light", "not seen", "third light is free", numbers)
+    return with_solution(GOOD, decisions=(decision,))
 
 
 def third_goes_with_inclination() -> Case:
-    """Third light free, hardly told from the inclination."""
+    """Third light free, hardly told from the inclination, and nearly all of k's error."""
     case = with_free(GOOD, {"third_light[V]": (0.03, 0.02)})
+    ratio = GOOD.solution.system.values["radius_ratio"]
+    numbers = {
+        "unbounded_third_light[V]": 0.03,
+        "sigma_third_light[V]": 0.02,
+        "sigma_radius_ratio_held": 0.004 * ratio,
+        "sigma_radius_ratio_free": 0.032 * ratio,
+    }
+    decision = Decision("third light", "not seen", "third light is free", numbers)
+    case = with_solution(case, decisions=(decision,))
     case = with_solution(case, correlation_names=(), correlations=np.empty((0, 0)))
     return with_correlation(case, {("third_light[V]", "inclination"): -0.98})
 
@@ -144,9 +150,9 @@ def alternatives(*others: Alternative) -> Case:
 SPOILT: dict[str, tuple[Callable[[], Case], str, str]] = {
     "convergence": (lambda: with_fit(GOOD, converged=False), FAIL, "not settled"),
     "edge of range": (
-        lambda: with_free(GOOD, {"third_light[V]": (-0.5, 0.01)}),
+        lambda: with_free(GOOD, {"third_light[V]": (quantity_of("third_light").upper, 0.01)}),
         FAIL,
-        "third_light[V] = -0.5",
+        "third_light[V] = ",
     ),
     "finite errors": (lambda: with_sigmas(GOOD, radius_ratio=np.nan), FAIL, "radius_ratio"),
     "absent": (
@@ -193,12 +199,15 @@ SPOILT: dict[str, tuple[Callable[[], Case], str, str]] = {
         "the other way round",
     ),
     "third light": (
-        lambda: with_free(GOOD, {"third_light[V]": (-0.05, 0.01)}),
+        third_light_negative,
         FAIL,
         "negative by 5",
     ),
-    "third light taken as none": (third_light_unknown, WARN, "give what you find as a prior"),
-    "third light and inclination": (third_goes_with_inclination, WARN, "correlation of 0.98"),
+    "third light and inclination": (
+        third_goes_with_inclination,
+        WARN,
+        "known to 3.2 % where it could be 0.4 %",
+    ),
     "limb darkening": (
         lambda: with_system(
             GOOD, values={**GOOD.solution.system.values, "limb_darkening2[V].1": 1.3}
@@ -265,9 +274,22 @@ def test_dips_of_light_that_wanders_are_refused() -> None:
     assert wandering_nights(alike_neighbours(), by=0.02).finding(finding.check).verdict == PASS
 
 
-def test_third_light_that_would_do_little_is_no_trouble() -> None:
-    finding = third_light_unknown(free=0.009).finding("third light taken as none")
+def dropped_in_a_row(count: int, *, fainter: float) -> Case:
+    """So many points of one night outside eclipse, set aside by the fit."""
+    phase, night = np.abs(phase_of(GOOD)), GOOD.photometry.night
+    outside = (phase > 0.1) & (phase < 0.4)
+    whole = next(n for n in np.unique(night) if np.all(outside[night == n]))
+    rows = np.flatnonzero(night == whole)[3 : 3 + count]
+    residual = GOOD.photometry.flux - GOOD.solution.light.model
+    residual[rows] = -fainter
+    chosen = np.zeros(night.size, bool)
+    chosen[rows] = True
+    return dropped_by_fit(with_residuals(GOOD, residual), chosen)
 
-    assert finding.verdict == PASS
-    assert "knows third light to 20 % in V" in finding.words
-    assert finding.value == pytest.approx(2.25)
+
+def test_an_eclipse_that_the_model_does_not_know_is_no_set_of_outliers() -> None:
+    finding = dropped_in_a_row(8, fainter=0.2).finding("outliers")
+    assert finding.verdict == FAIL
+    assert "8 of them follow each other in one night" in finding.words
+    assert dropped_in_a_row(4, fainter=0.2).finding("outliers").verdict == PASS
+    assert dropped_in_a_row(8, fainter=-0.2).finding("outliers").verdict == PASS

@@ -41,10 +41,7 @@ FAULTS: dict[str, tuple[str, tuple[str, ...]]] = {
     "limb darkening": ("black limb", (FAIL,)),
 }
 # A solver that works gives no case of these; the made-up ones stand for them.
-NOT_FROM_A_FIT = {
-    "convergence", "finite errors", "absent", "other solutions", "time scale",
-    "third light taken as none",
-}  # fmt: skip
+NOT_FROM_A_FIT = {"convergence", "finite errors", "absent", "other solutions", "time scale"}
 
 
 def test_every_check_has_its_fault() -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from math import isfinite, nan, sqrt
 
 import numpy as np
@@ -24,7 +25,7 @@ REMEDY = "Hold the coefficients at published values, or give them priors."
 
 
 def third_light(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
-    """Most negative third light, in sigmas (or its value where held fixed)."""
+    """How negative the most negative third light would be without its bound, in sigmas."""
     found = {
         band: (evidence.value("third_light", band), evidence.sigma("third_light", band))
         for band in evidence.bands
@@ -32,53 +33,35 @@ def third_light(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     found = {band: pair for band, pair in found.items() if isfinite(pair[0])}
     if not found:
         return check.silent("the model has no third light.")
-    depths = {band: value / error if error > 0 else value for band, (value, error) in found.items()}
-    worst = min(depths, key=lambda band: depths[band])
-    value, error = found[worst]
-    if value < 0 and not error > 0 and not evidence.is_free("third_light", worst):
-        return check.warned(
-            f"Third light in band {worst} was held at {number(value)}, and no light is negative.",
-            value,
-        )
-    if error > 0 and value / error < -(check.limit or SURE):
+    numbers = _told(evidence)
+    without = {
+        band: (numbers[key("unbounded_third_light", band)], error)
+        for band in found
+        if (error := numbers.get(key("sigma_third_light", band), nan)) > 0
+    }
+    shown = listed([f"{_third_words(*pair)} in {band}" for band, pair in found.items()])
+    if not without:
+        return check.passed(f"Third light: {shown}.", min(value for value, _ in found.values()))
+    worst = min(without, key=lambda band: without[band][0] / without[band][1])
+    value, error = without[worst]
+    if value / error < -(check.limit or SURE):
         return check.failed(
-            f"Third light in band {worst} is {_third_words(value, error)}: negative by {number(-value / error)} sigma. "
+            f"Third light in band {worst} would be {_third_words(value, error)}: negative by {number(-value / error)} sigma. "
             "The eclipses are deeper than two stars allow: too much sky or neighbour's light was taken off, or the model is wrong.",
             value / error,
         )
-    shown = listed([f"{_third_words(*pair)} in {band}" for band, pair in found.items()])
-    return check.passed(f"Third light: {shown}.", depths[worst])
+    return check.passed(f"Third light: {shown}.", value / error)
+
+
+def _told(evidence: Evidence) -> Mapping[str, float]:
+    """The numbers that the fit told of third light."""
+    return next((d.numbers for d in evidence.solution.decisions if d.what == "third light"), {})
 
 
 def _third_words(value: float, error: float) -> str:
     if not error > 0:
         return f"{percent(value)} (held)"
     return f"{written(100 * value, 100 * error, 100 * error)} %"
-
-
-def third_light_taken_as_none(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
-    """How much larger the error of the ratio of radii would be if third light were free."""
-    numbers = next((d.numbers for d in evidence.solution.decisions if d.what == "third light"), {})
-    held = numbers.get("sigma_radius_ratio_held", nan)
-    free = numbers.get("sigma_radius_ratio_free", nan)
-    ratio = evidence.value("radius_ratio")
-    if not (held > 0 and free > 0 and ratio > 0):
-        return check.silent("third light is in the model, or it was settled by the user.")
-    growth = free / held
-    shown = [
-        f"{percent(error)} in {band}"
-        for band in evidence.bands
-        if isfinite(error := numbers.get(key("sigma_third_light", band), nan))
-    ]
-    known = f" The curve itself knows third light to {listed(shown)}." if shown else ""
-    words = f"Third light is taken as none.{known} Were it free, the ratio of radii would be known to {percent(free / ratio)}"
-    if growth <= (check.limit or 1.0) or free / ratio <= SMALL_SHIFT:
-        return check.passed(f"{words}, which is hardly worse.", growth)
-    return check.warned(
-        f"{words}, not to {percent(held / ratio)}: the errors of the radii hold only if no other star's light is in "
-        "the aperture. Look at images or a star catalogue, and give what you find as a prior on third_light.",
-        growth,
-    )
 
 
 def third_light_and_inclination(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
@@ -97,10 +80,21 @@ def third_light_and_inclination(evidence: Evidence, check: Check) -> tuple[Findi
     words = f"Third light in band {band} and the {_plain(partner)} go together with a correlation of {size:.2f}"
     if size > (check.limit or 1.0):
         return check.warned(
-            f"{words}: the curve hardly tells them apart. Hold third light at a value from images or spectra, or give it a prior.",
+            f"{words}: the curve hardly tells them apart{_price(evidence)}. Look at images or a star catalogue: hold third_light "
+            "at zero if no other star is in the aperture, or give what you find as a prior.",
             size,
         )
     return check.passed(f"{words}, which is harmless.", size)
+
+
+def _price(evidence: Evidence) -> str:
+    """What it costs not to know third light, where the fit told."""
+    numbers, ratio = _told(evidence), evidence.value("radius_ratio")
+    held = numbers.get("sigma_radius_ratio_held", nan) / ratio
+    free = numbers.get("sigma_radius_ratio_free", nan) / ratio
+    if not (held > 0 and free > 0):
+        return ""
+    return f", and the ratio of radii is known to {percent(free)} where it could be {percent(held)}"
 
 
 def _plain(name: str) -> str:
@@ -275,13 +269,6 @@ CHECKS = (
         third_light,
         SURE,
         "light is not negative; three sigma (common practice)",
-    ),
-    Check(
-        "third light taken as none",
-        "Would a third light that the curve does not show change the errors?",
-        third_light_taken_as_none,
-        SURE,
-        "three times the error with third light free: then the error quoted rests on there being none (our choice)",
     ),
     Check(
         "third light and inclination",

@@ -18,6 +18,7 @@ FAR_OFF = 25.0  # reduced chi-squared of a misfit of five times the errors
 FEWEST_PAIRS = 10
 FEWEST_BINS = 10
 FEWEST_NIGHTS = 4
+FAINT_RUN = 5
 SAME_LEVEL = 1e-9
 WANDERING = 1.2  # Durbin-Watson of neighbours with a correlation of 0.4
 SHORTEST_BIN, LONGEST_BIN = 5.0 / 1440, 0.25  # [d]
@@ -272,6 +273,13 @@ def outliers(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
             "model that misses the shape or the place of the eclipses (an eccentric orbit, spots, a wrong period)."
         )
         return check.found(FAIL if share > limit else WARN, f"{words}; {crowd}", value=share)
+    run = longest_faint_run(evidence)
+    if run >= FAINT_RUN and name == "photometry":
+        return check.failed(
+            f"{words}; {run} of them follow each other in one night, all fainter than the model: a cloud, or an eclipse "
+            "that this model does not know, as where the period is twice the true one.",
+            share,
+        )
     if share > 5 * limit:
         return check.failed(
             f"{words}: that is no longer a few bad points, the model does not fit.", share
@@ -288,6 +296,16 @@ def _in_eclipse(evidence: Evidence, rows: Bools) -> int:
     for window in evidence.windows:
         within |= np.abs(window.offset(phase)) < window.outer
     return int(within.sum())
+
+
+def longest_faint_run(evidence: Evidence) -> int:
+    """How many points that the fit set aside follow each other in one night, all of them faint."""
+    light = evidence.offered
+    faint = (evidence.solution.light.why[light.row] != 0) & (light.residual < 0)
+    broken = np.flatnonzero(~faint | (np.diff(light.block, prepend=-1) != 0))
+    ends = np.append(broken, light.size)
+    lengths = np.diff(ends) - ~faint[broken]
+    return int(max(lengths, default=0))
 
 
 def _crowded(evidence: Evidence, within: int, whole: int) -> bool:
