@@ -39,7 +39,7 @@ from shadowscale_app.panes.pane import Pane
 NOTHING = "Choose a quantity to move it"
 REACH = 100  # slider steps to either side of where it was taken up
 WATCHED = frozenset({"system", "solution", "plan"})
-WIDTHS = {SYMBOL: 58, VALUE: 110, ERROR: 100, UNIT: 34, STATE: 60, GRADE: 104}
+WIDTHS = {SYMBOL: 58, VALUE: 108, ERROR: 108, UNIT: 40, STATE: 66, GRADE: 100}
 
 
 class QuantitiesPane(Pane):

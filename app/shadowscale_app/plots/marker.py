@@ -11,6 +11,7 @@ from shadowscale.view.markers import Handle
 from shadowscale.view.written import phase_text
 from shadowscale_app import theme
 
+ABOVE, HOT_ABOVE = 20, 22  # the value under the hand covers the other labels
 EDGE = 0.25  # of the picture
 HANDLING = "Drag it, or click and use the arrow keys (Shift coarse, Alt fine); a double click types its phase."
 DASHES = {
@@ -48,7 +49,6 @@ class MarkerLine(pg.InfiniteLine):
         self._held = False
         self._offset = 0.0
         self.label = pg.InfLineLabel(self, text="", position=high, movable=False)
-        self.setZValue(20)
         self.setCursor(Qt.CursorShape.SplitHCursor)
         self.setToolTip(f"{_capital(handle.words)}: {handle.effect}.\n{HANDLING}")
         self.dress()
@@ -69,9 +69,9 @@ class MarkerLine(pg.InfiniteLine):
         self.label.border = pg.mkPen(tint if hot else now.line) if text else pg.mkPen(None)
         self.label.setColor(tint)
         self.label.setFont(theme.small_font(-1.0 if not hot else -0.5))
+        self.setZValue(HOT_ABOVE if hot else ABOVE)
         self._turn_label(hot)
         self.label.setFormat(text)
-        self.label.setZValue(30 if hot else 21)
 
     def _turn_label(self, hot: bool) -> None:
         """Outward of the eclipse; with its value inward where it would leave the picture."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from shadowscale.session.session import Session
+from shadowscale.view.follow import FOLLOWED
 
 
 def summary(session: Session) -> str:
@@ -10,9 +11,10 @@ def summary(session: Session) -> str:
     solution, photometry = session.solution, session.photometry
     if solution is not None:
         worst = max(solution.fit.rms_light.values(), default=0.0)
+        followed = ", errors linear until solved" if FOLLOWED in solution.notes else ""
         return (
             f"{solution.fit.points} points, {solution.fit.free} free, "
-            f"\N{GREEK SMALL LETTER CHI}\N{SUPERSCRIPT TWO}/dof {solution.fit.reduced_chi2:.2f}, rms {1000 * worst:.2f} \N{PER MILLE SIGN}"
+            f"\N{GREEK SMALL LETTER CHI}\N{SUPERSCRIPT TWO}/dof {solution.fit.reduced_chi2:.2f}, rms {1000 * worst:.2f} \N{PER MILLE SIGN}{followed}"
         )
     if photometry is None:
         return ""

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping
 from math import floor, isfinite, log10
 from types import MappingProxyType
@@ -20,6 +21,13 @@ UNIT_SIGNS: Mapping[str, str] = MappingProxyType(
         "dex(cm/s2)": "cgs",
     }
 )
+GREEK: Mapping[str, str] = MappingProxyType(  # the register spells them for typewriters
+    {
+        "w": "\N{GREEK SMALL LETTER OMEGA}",
+        "gamma": "\N{GREEK SMALL LETTER GAMMA}",
+        "rho": "\N{GREEK SMALL LETTER RHO}",
+    }
+)
 
 
 def unit_sign(unit: str) -> str:
@@ -30,12 +38,18 @@ def unit_sign(unit: str) -> str:
 def symbol(text: str) -> str:
     """Short name of a key: `third_light[V]` becomes `l3 V`."""
     key = parse_key(text)
-    parts = [key.quantity.symbol]
+    parts = [_with_greek(key.quantity.symbol)]
     if key.number is not None:
         parts[0] += "." + str(key.number)
     if key.label is not None:
         parts.append(key.label)
     return " ".join(parts)
+
+
+def _with_greek(text: str) -> str:
+    for letters, sign in GREEK.items():
+        text = re.sub(rf"\b{letters}(?=\d?$)", sign, text)
+    return text
 
 
 def plain_value(quantity: Quantity, value: float) -> str:
