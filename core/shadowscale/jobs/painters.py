@@ -1,7 +1,7 @@
-"""Figures drawn by processes of their own, which load what they need while the fit still runs.
+"""Figures drawn by a process of its own, which loads what it needs while the fit still runs.
 
-matplotlib takes half a second to load and draws on one processor; started beside the fit, two such
-processes have the figures ready a second after the solution.
+matplotlib takes half a second to load and draws on one processor. Started beside the fit, this process
+is ready when the solution is; then it divides itself, so that two processors draw.
 """
 
 from __future__ import annotations
@@ -11,78 +11,61 @@ import pickle
 import subprocess
 import sys
 from collections.abc import Iterator
-from concurrent.futures import ThreadPoolExecutor
+from concurrent.futures import ProcessPoolExecutor
 from contextlib import contextmanager, suppress
-from queue import Empty, SimpleQueue
-from typing import IO, Any
+from multiprocessing import get_context
+from typing import IO
 
 from shadowscale.sheet.figure_data import Shown
 from shadowscale.sheet.figures import FIGURES, all_figures, files_of, possible_figures, warm_up
 
 COUNT = 2
-NICENESS = 5  # the fit goes first
+ALONE = {"OPENBLAS_NUM_THREADS": "1"}  # a process with threads does not divide itself safely
 Files = dict[str, dict[str, bytes]]
 
 
 class Painters:
-    """Running processes; `figures` gives the same as `all_figures`."""
+    """The running process; `figures` gives the same as `all_figures`."""
 
-    def __init__(self, count: int) -> None:
-        command = [sys.executable, "-P", "-m", __name__]
-        pipes: dict[str, Any] = {"stdin": subprocess.PIPE, "stdout": subprocess.PIPE}
-        self._processes = [
-            subprocess.Popen(command, stderr=subprocess.DEVNULL, **pipes) for _ in range(count)
-        ]
+    def __init__(self) -> None:
+        self._process = subprocess.Popen(
+            [sys.executable, "-P", "-m", __name__],
+            stdin=subprocess.PIPE,
+            stdout=subprocess.PIPE,
+            stderr=subprocess.DEVNULL,
+            env={**os.environ, **ALONE},
+        )
 
     def figures(self, shown: Shown) -> Files:
-        """Every figure in every format; drawn here where a process is in trouble."""
-        order = sorted(possible_figures(shown), key=lambda name: -FIGURES[name].effort)
-        names: SimpleQueue[str] = SimpleQueue()
-        for name in order:
-            names.put(name)
-        with ThreadPoolExecutor(len(self._processes)) as pool:
-            parts = pool.map(lambda process: _drawn_by(process, shown, names), self._processes)
-            found = {name: files for part in parts for name, files in part.items()}
-        found |= all_figures(shown, [name for name in order if name not in found])
-        return {name: found[name] for name in possible_figures(shown)}
+        """Every figure in every format; drawn here where the process is in trouble."""
+        into, out = self._process.stdin, self._process.stdout
+        assert into is not None
+        assert out is not None
+        try:
+            _send(into, shown)
+            found: Files = pickle.load(out)
+        except (OSError, EOFError, pickle.UnpicklingError):
+            return all_figures(shown)
+        return found
 
     def close(self) -> None:
-        """End the processes."""
-        for process in self._processes:
-            process.kill()
-            with suppress(OSError):  # what was not sent is not wanted
-                process.communicate()
+        """End the process."""
+        self._process.kill()
+        with suppress(OSError):  # what was not sent is not wanted
+            self._process.communicate()
 
 
 @contextmanager
 def painters(*, wanted: bool = True) -> Iterator[Painters | None]:
-    """Processes while it lasts; none where not wanted or where there is one processor only."""
+    """A process while it lasts; none where not wanted or where there is one processor only."""
     if not wanted or (os.cpu_count() or 1) < COUNT or not sys.executable:
         yield None
         return
-    found = Painters(COUNT)
+    found = Painters()
     try:
         yield found
     finally:
         found.close()
-
-
-def _drawn_by(process: subprocess.Popen[bytes], shown: Shown, names: SimpleQueue[str]) -> Files:
-    """The figures that one process draws, as long as there are names and it answers."""
-    into, out = process.stdin, process.stdout
-    assert into is not None
-    assert out is not None
-    found: Files = {}
-    try:
-        _send(into, shown)
-        while True:
-            name = names.get_nowait()
-            _send(into, name)
-            found[name] = pickle.load(out)
-    except Empty:
-        return found
-    except (OSError, EOFError, pickle.UnpicklingError):
-        return found  # the caller draws what is missing
 
 
 def _send(stream: IO[bytes], item: object) -> None:
@@ -91,16 +74,30 @@ def _send(stream: IO[bytes], item: object) -> None:
 
 
 def main() -> None:
-    """What a process does: get ready, read what is shown, then draw figure after figure."""
+    """What the process does: get ready, read what is shown, draw."""
     into, out = sys.stdin.buffer, os.fdopen(os.dup(1), "wb")
     os.dup2(2, 1)  # whatever a library prints must not come among the figures
-    if hasattr(os, "nice"):
-        os.nice(NICENESS)
-    warm_up()
     with suppress(EOFError, BrokenPipeError, KeyboardInterrupt):
+        warm_up()
         shown = pickle.load(into)
-        while True:
-            _send(out, files_of(pickle.load(into), shown))
+        _send(out, _divided(shown) if sys.platform == "linux" else all_figures(shown))
+
+
+_inherited: list[Shown] = []  # what the parts of the process have from before they parted
+
+
+def _divided(shown: Shown) -> Files:
+    """The figures drawn by copies of this process, the slow ones first."""
+    _inherited.append(shown)
+    names = possible_figures(shown)
+    order = sorted(names, key=lambda name: -FIGURES[name].effort)
+    with ProcessPoolExecutor(COUNT, mp_context=get_context("fork")) as pool:
+        found = dict(zip(order, pool.map(_part, order)))
+    return {name: found[name] for name in names}
+
+
+def _part(name: str) -> dict[str, bytes]:
+    return files_of(name, _inherited[0])
 
 
 if __name__ == "__main__":

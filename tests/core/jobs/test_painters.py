@@ -1,4 +1,4 @@
-"""Figures drawn by other processes are those drawn here, whatever happens to the processes."""
+"""Figures drawn by another process are those drawn here, whatever happens to the process."""
 
 import pytest
 
@@ -24,23 +24,22 @@ def two_processors(monkeypatch):
     monkeypatch.setattr("shadowscale.jobs.painters.os.cpu_count", lambda: 2)
 
 
-def test_other_processes_draw_the_same_bytes(shown, drawn_here):
+def test_another_process_draws_the_same_bytes(shown, drawn_here):
     with painters() as found:
         assert found.figures(shown) == drawn_here
 
 
 def test_a_process_that_dies_is_replaced_by_drawing_here(shown, drawn_here):
     with painters() as found:
-        for process in found._processes:
-            process.kill()
+        found._process.kill()
         assert found.figures(shown) == drawn_here
 
 
 def test_no_process_stays_behind():
     with painters() as found:
-        processes = list(found._processes)
-        assert all(process.poll() is None for process in processes)
-    assert all(process.poll() is not None for process in processes)
+        process = found._process
+        assert process.poll() is None
+    assert process.poll() is not None
 
 
 def test_none_are_started_in_vain(monkeypatch):
