@@ -9,6 +9,7 @@ import threading
 
 from PySide6.QtCore import QObject, Signal
 
+from shadowscale.errors import Stopped
 from shadowscale_app import trouble
 
 
@@ -30,7 +31,10 @@ READY = Readiness()
 
 
 class Warmer(QObject):
-    """Loads and compiles in a thread. Signals `told(words)`, `ready()`."""
+    """Loads and compiles in a thread: what pictures need, then what a solution needs.
+
+    Signals `told(words)`, `ready()` once pictures can be drawn.
+    """
 
     told = Signal(str)
     ready = Signal()
@@ -38,6 +42,7 @@ class Warmer(QObject):
     def __init__(self, parent: QObject | None = None) -> None:
         super().__init__(parent)
         self._thread: threading.Thread | None = None
+        self._closing = threading.Event()
 
     def start(self) -> None:
         """Begin."""
@@ -46,18 +51,30 @@ class Warmer(QObject):
         self._thread.start()
 
     def close(self) -> None:
-        """Wait until it is done: a compiler cannot be interrupted."""
+        """Wait until what is being compiled is done: a compiler cannot be interrupted."""
+        self._closing.set()
         if self._thread is not None:
             self._thread.join()
             self._thread = None
 
+    def report(self, fraction: float, words: str) -> None:
+        """Between two steps: whether to go on."""
+        if self._closing.is_set():
+            raise Stopped
+
     def _run(self) -> None:
-        from shadowscale.view.warming import warm
+        from shadowscale.view.warming import warm, warm_solver
 
         try:
-            warm()
+            warm(self)
+            READY.reach()
+            self.ready.emit()
+            self.told.emit("Ready to draw; making ready to solve\N{HORIZONTAL ELLIPSIS}")
+            warm_solver(self)
+        except Stopped:
+            return
         except Exception as error:
             trouble.tell("making ready to compute", error)
-        READY.reach()
+            READY.reach()
+            self.ready.emit()
         self.told.emit("Ready.")
-        self.ready.emit()
