@@ -58,6 +58,8 @@ def run(arguments: Namespace) -> None:
     from shadowscale.jobs.solve import solve_session
     from shadowscale.jobs.words import summary
 
+    if not arguments.inputs:
+        raise UsageError("INPUT", "nothing", expected="photometry files or one session file")
     folder = Path(output_folder(arguments))
     session = _session(arguments, folder)
     report = wants_report(arguments)
@@ -77,8 +79,6 @@ def run(arguments: Namespace) -> None:
 
 def _session(arguments: Namespace, folder: Path) -> Session:
     """The session that the arguments describe or name, not solved yet."""
-    if not arguments.inputs:
-        raise UsageError("INPUT", "nothing", expected="photometry files or one session file")
     sessions = [name for name in arguments.inputs if is_session(name)]
     if sessions:
         return _saved(arguments, sessions[0], folder)
