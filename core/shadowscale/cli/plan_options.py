@@ -14,6 +14,7 @@ from shadowscale.fit.plan import (
     INTERVALS,
     LEVELS,
     LIGHT_TIME,
+    MEASURED,
     ORBITS,
     Plan,
     Prior,
@@ -22,14 +23,6 @@ from shadowscale.quantities import QUANTITIES, parse_key
 
 BASIC = tuple(name for name, quantity in QUANTITIES.items() if quantity.basic)
 LIMB = ("limb_darkening1", "limb_darkening2")
-MEASURED = (
-    "teff1",
-    "teff2",
-    "apparent_magnitude",
-    "bolometric_correction1",
-    "bolometric_correction2",
-    "extinction",
-)
 
 
 def add_plan_options(parser: Parser) -> None:

@@ -14,21 +14,13 @@ from math import atan2, cos, degrees, hypot, nan, radians
 import numpy as np
 
 from shadowscale.fit.band_model import BandModel, Eclipse, Shape
-from shadowscale.fit.plan import Plan
+from shadowscale.fit.plan import MEASURED, Plan
 from shadowscale.fit.system import System
 from shadowscale.geometry import absolute
 from shadowscale.light.laws import LAWS
 from shadowscale.quantities import BAND, QUANTITIES, key, parse_key
 
 ASSUMABLE = ("M1", "mass_ratio")
-EXTERNAL = (
-    "teff1",
-    "teff2",
-    "apparent_magnitude",
-    "bolometric_correction1",
-    "bolometric_correction2",
-    "extinction",
-)
 
 
 @dataclass(frozen=True, eq=False)
@@ -246,7 +238,7 @@ def derived_value(system: System, name: str, assumed: Mapping[str, float] | None
 
 def assumed_inputs(plan: Plan, system: System) -> dict[str, tuple[float, float]]:
     """Inputs from outside the data (value, sigma): temperatures, magnitudes, an assumed M1 or mass ratio."""
-    found = {name: getattr(plan, name) for name in EXTERNAL if getattr(plan, name) is not None}
+    found = {name: getattr(plan, name) for name in MEASURED if getattr(plan, name) is not None}
     if "K1" in system.values and "K2" in system.values:
         return found
     for prior in plan.priors:

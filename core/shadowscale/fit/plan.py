@@ -11,6 +11,15 @@ LEVELS = ("auto", "one", "night", "trend")
 EFFECTS = ("ellipsoidal", "reflection", "beaming")
 EFFECT_STATES = ("off", "predicted", "fitted")
 LIGHT_TIME = ("auto", "off")
+# Measured elsewhere, each with a value and a sigma.
+MEASURED = (
+    "teff1",
+    "teff2",
+    "apparent_magnitude",
+    "bolometric_correction1",
+    "bolometric_correction2",
+    "extinction",
+)
 
 
 @dataclass(frozen=True)

@@ -76,12 +76,20 @@ class Noise:
     flagged: float = 0.0
 
 
+@dataclass(frozen=True, kw_only=True)
+class Clock:
+    """How times are printed: their scale, and what is taken off them [d]."""
+
+    time_scale: str = "BJD_TDB"
+    time_offset: float = 0.0
+
+
 @dataclass(frozen=True)
-class PhotometrySpec:
+class PhotometrySpec(Clock):
     """When light was measured and how it is printed.
 
     kind : `magnitude` or `flux`; errors : whether they are printed, times `error_factor`;
-    time_scale, time_offset : of the printed times; files : `one`, or one for each `band`.
+    files : `one`, or one for each `band`.
     """
 
     runs: tuple[Run, ...]
@@ -89,8 +97,6 @@ class PhotometrySpec:
     kind: str = "magnitude"
     errors: bool = True
     error_factor: float = 1.0
-    time_scale: str = "BJD_TDB"
-    time_offset: float = 0.0
     files: str = "one"
 
 
@@ -108,14 +114,12 @@ class VelocitySource:
 
 
 @dataclass(frozen=True)
-class VelocitySpec:
+class VelocitySpec(Clock):
     """When velocities were measured: spread over phases, between two dates [d]."""
 
     start: float
     end: float
     sources: tuple[VelocitySource, ...]
-    time_scale: str = "BJD_TDB"
-    time_offset: float = 0.0
 
 
 @dataclass(frozen=True)

@@ -11,6 +11,7 @@ from shadowscale.fit.plan import (
     INTERVALS,
     LEVELS,
     LIGHT_TIME,
+    MEASURED,
     ORBITS,
     Plan,
 )
@@ -21,14 +22,6 @@ from shadowscale.session.plain import PlainError
 from shadowscale.session.session import Session
 
 TABLES = ("light", "rv1", "rv2")
-MEASURED = (
-    "teff1",
-    "teff2",
-    "apparent_magnitude",
-    "bolometric_correction1",
-    "bolometric_correction2",
-    "extinction",
-)
 
 
 def check_sense(session: Session) -> None:

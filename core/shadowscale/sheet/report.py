@@ -12,6 +12,7 @@ from shadowscale.data.velocities import Velocities
 from shadowscale.fit.plan import Plan
 from shadowscale.fit.solution import Solution
 from shadowscale.judge.finding import FAIL, PASS, WARN, Finding
+from shadowscale.sheet.citing import Methods, listed
 from shadowscale.sheet.document import (
     Block,
     Code,
@@ -28,7 +29,7 @@ from shadowscale.sheet.document import (
 )
 from shadowscale.sheet.figure_data import Shown
 from shadowscale.sheet.figures import possible_figures
-from shadowscale.sheet.methods import Methods, listed, methods_of
+from shadowscale.sheet.methods import methods_of
 from shadowscale.sheet.references import bibliography
 from shadowscale.sheet.report_tables import (
     band_blocks,
