@@ -65,7 +65,7 @@ PAIRS: Mapping[str, Pair] = {
         band=TIDES,
         nights=30,
         velocities=18,
-        plan=ephemeris(effects={"ellipsoidal": "predicted"}),
+        plan=ephemeris(effects={"ellipsoidal": "predicted"}, fixed={"third_light": (0.0,)}),
     ),
     "contact": Pair(system={"r1": 0.42, "r2": 0.34, "inclination": 80.0}, velocities=18),
     "grazing": Pair(system={"inclination": 80.5}, noise=Noise(0.006), nights=30, velocities=12),
@@ -88,11 +88,12 @@ PAIRS: Mapping[str, Pair] = {
         system={"r1": 0.16, "r2": 0.08, "inclination": 86.0},
         band={"third_light": 0.1},
         noise=Noise(0.001),
-        plan=ephemeris(
-            free=("third_light",), fixed={"limb_darkening1": LIMB1, "limb_darkening2": LIMB2}
-        ),
+        plan=ephemeris(fixed={"limb_darkening1": LIMB1, "limb_darkening2": LIMB2}),
     ),
-    "too deep": Pair(band={"third_light": -0.2}, plan=ephemeris(free=("third_light",))),
+    "too deep": Pair(
+        band={"third_light": -0.2},
+        plan=ephemeris(fixed={"limb_darkening1": LIMB1, "limb_darkening2": LIMB2}),
+    ),
     "edge on": Pair(system={"inclination": 90.0}),
     "tiny and heavy": Pair(
         system={"r1": 0.02, "r2": 0.015, "inclination": 89.9, "K1": 984.0, "K2": 1129.0},

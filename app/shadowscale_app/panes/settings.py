@@ -40,7 +40,7 @@ from shadowscale_app.desk import Change
 from shadowscale_app.naming import named
 from shadowscale_app.panes.pane import Pane
 
-THIRD = ("held", "free")
+THIRD = ("free", "none", "held")
 
 
 class SettingsPane(Pane):
@@ -233,7 +233,7 @@ class SettingsPane(Pane):
                 f"third {band}",
                 THIRD,
                 tip,
-                partial(_with_third_light, band),
+                partial(self._with_third_light, band),
             )
             self._band_form.addRow(words, box)
             wave = QDoubleSpinBox()
@@ -279,6 +279,13 @@ class SettingsPane(Pane):
         box = self.boxes[name]
         box.setCurrentIndex(max(0, box.findData(value)))
 
+    def _with_third_light(self, band: str, plan: Plan, state: str) -> Plan:
+        """Free, none, or held at the value it has now."""
+        system = self.session.system
+        now = 0.0 if system is None else system.value("third_light", band)
+        held = {"free": None, "none": 0.0}.get(state, now)
+        return with_third_light(plan, band, held=held)
+
     def _ask(self, label: str, plan: Plan) -> None:
         if not self._filling and plan != self.session.plan:
             self.wanted.emit(Change(label, replace(self.session, plan=plan)))
@@ -286,7 +293,3 @@ class SettingsPane(Pane):
 
 def _with_effect(effect: str, plan: Plan, state: str) -> Plan:
     return replace(plan, effects={**plan.effects, effect: state})
-
-
-def _with_third_light(band: str, plan: Plan, state: str) -> Plan:
-    return with_third_light(plan, band, free=state == "free")

@@ -33,6 +33,11 @@ def is_basic(name: str) -> bool:
     return parse_key(name).quantity.basic
 
 
+def is_third_light(text: str) -> bool:
+    """Whether a key is the third light of some band."""
+    return parse_key(text).name == "third_light"
+
+
 def named(names: Iterable[str], text: str) -> str | None:
     """The user's name that means the key, the most precise first."""
     fitting = [name for name in names if means(name, text)]
@@ -47,7 +52,6 @@ def build_system(
     start: Mapping[str, float],
     limb: Mapping[tuple[int, str], LimbChoice],
     eccentric: bool,
-    third_free: bool,
     levels: str,
     wavelengths: Mapping[str, float],
 ) -> System:
@@ -58,7 +62,7 @@ def build_system(
         free += SHAPE
     _add_velocities(values, free, velocities, start)
     for band in photometry.bands:
-        _add_band(values, free, plan, band, start=start, limb=limb, third_free=third_free)
+        _add_band(values, free, plan, band, start=start, limb=limb)
     asked = [*plan.free, *(prior.name for prior in plan.priors if is_basic(prior.name))]
     for name in values:
         if (wish := named(plan.fixed, name)) is not None and not name.startswith("limb_darkening"):
@@ -119,14 +123,11 @@ def _add_band(
     *,
     start: Mapping[str, float],
     limb: Mapping[tuple[int, str], LimbChoice],
-    third_free: bool,
 ) -> None:
     brightness, third = key("surface_brightness_ratio", band), key("third_light", band)
     values[brightness] = float(start[brightness])
     values[third] = float(start.get(third, 0.0))
-    free.append(brightness)
-    if third_free:
-        free.append(third)
+    free += [brightness, third]
     for star in (1, 2):
         choice = limb[star, band]
         for number in range(len(LAWS[plan.law].coefficients)):

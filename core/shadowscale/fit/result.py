@@ -35,6 +35,7 @@ from shadowscale.fit.solution import (
 )
 from shadowscale.fit.start import Ground, wished_epoch
 from shadowscale.fit.system import System
+from shadowscale.fit.third_light import at_zero, held_covariance
 from shadowscale.quantities import QUANTITIES, key, parse_key
 
 Floats = NDArray[np.float64]
@@ -138,9 +139,9 @@ def _spread(
 
 def _across(best: Fitted, ends: tuple[Floats, Floats] | None) -> Floats:
     """Covariance of the coordinates; with a curved valley, what is left when k is held."""
-    matrix, _ = inverse_of(best.minimum.normal)
     if ends is None:
-        return matrix
+        return inverse_of(best.minimum.normal)[0]
+    matrix = held_covariance(best.minimum.normal, at_zero(best))
     at = best.objective.vector.index["radius_ratio"]
     column = matrix[:, at]
     left: Floats = matrix - np.outer(column, column) / column[at]

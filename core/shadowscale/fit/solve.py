@@ -28,6 +28,7 @@ from shadowscale.fit.reweigh import reasons_with_outlier, reweighed, without_wil
 from shadowscale.fit.solution import Decision, Solution
 from shadowscale.fit.start import Ground, find_ground
 from shadowscale.fit.system import System
+from shadowscale.fit.third_light import third_light_told
 from shadowscale.light.laws import LAWS
 from shadowscale.progress import SILENT, Progress
 from shadowscale.quantities import key
@@ -38,7 +39,6 @@ LIMB_ROUNDS = 4
 THINNED_ROWS = 5000
 EXPLORING_STEPS = 40
 VALLEY_ROUNDS = 3
-MOST_DIM_STARTS = 4
 HOPELESS = 60.0  # in chi-squared of the thinned data: no full fit mends that
 
 
@@ -121,7 +121,6 @@ def solve(
     best = _with_effects(work, best)
     best = _weighed(work, best)
     best = _with_levels(work, best)
-    best = _with_third_light(work, best)
     best = _with_orbit(work, best)
     best = _weighed(work, best)
     best, branches = _against_others(work, best, met)
@@ -140,6 +139,7 @@ def solve(
     if (wide := widened(best, ends, branches)) is not ends:
         words = "other solutions are as good within two sigma: the limits take them in"
         work.decisions.append(Decision("errors", "alternatives", words))
+    work.decisions += third_light_told(best, wide)
     return assemble(
         best, problem=problem, plan=plan, weighting=work.weighting, ground=ground,
         branches=branches, decisions=work.decisions, notes=[*ground.measured.notes, *work.notes],
@@ -163,8 +163,9 @@ def _period_told(ground: Ground) -> list[Decision]:
 def _explored(work: _Work) -> tuple[Fitted, list[Fitted]]:
     """The best of several starts, and the other minima met on the way."""
     fitted: list[Fitted] = []
+    bands = work.problem.photometry.bands
     starts = work.ground.starts
-    if _told_of_third_light(work.plan, work.problem.photometry.bands, free_only=True):
+    if not all(named(work.plan.fixed, key("third_light", band)) for band in bands):
         starts = (*starts, *work.ground.dim_starts)
     for number, start in enumerate(starts):
         work.progress.report(
@@ -199,7 +200,6 @@ def _system(work: _Work, start: Mapping[str, float]) -> System:
         start=start,
         limb=work.limb,
         eccentric=plan.orbit != "circular",
-        third_free=False,
         levels="one" if plan.levels == "auto" else plan.levels,
         wavelengths=wavelengths(plan, work.problem.photometry.bands),
     )
@@ -294,36 +294,6 @@ def _with_levels(work: _Work, best: Fitted) -> Fitted:
 def _level_count(work: _Work, mode: str) -> int:
     segments = sum(data.segments for data in work.problem.bands(mode, work.weighting.why))
     return 2 * segments if mode == "trend" else segments
-
-
-def _with_third_light(work: _Work, best: Fitted) -> Fitted:
-    """Third light free where the data demand it and the user said nothing."""
-    names = [key("third_light", band) for band in best.system.bands]
-    if _told_of_third_light(work.plan, best.system.bands):
-        return best
-    freed = replace(best.system, free=(*best.system.free, *names))
-    dim = [_moved(freed, start) for start in work.ground.dim_starts[:MOST_DIM_STARTS]]
-    rough = min(
-        (work.explore(system, most=FIRST_STEPS) for system in (freed, *dim)), key=preference
-    )
-    other = min((work.fit(freed), work.fit(rough.system)), key=preference)
-    gain = best.chi2 - other.chi2
-    enough, limit = needed(gain, len(names))
-    positive = all(other.system.values[name] > -0.02 for name in names)
-    take = enough and positive
-    work.decisions.append(
-        decision("third light", chosen="free" if take else "none", gain=gain, extra=len(names),
-                 limit=limit, subject="third light")
-    )  # fmt: skip
-    return _weighed(work, other) if take else best
-
-
-def _told_of_third_light(plan: Plan, bands: Sequence[str], *, free_only: bool = False) -> bool:
-    """Whether the user said what to do with third light; `free_only`: that it is to be free."""
-    told = {*plan.free, *(prior.name for prior in plan.priors)}
-    told |= set() if free_only else set(plan.fixed)
-    told = {name for name in told if name.startswith("third_light")}
-    return any(named(told, key("third_light", band)) for band in bands)
 
 
 def _with_orbit(work: _Work, best: Fitted) -> Fitted:

@@ -4,7 +4,9 @@ from __future__ import annotations
 
 from dataclasses import replace
 
+from shadowscale.fit.build import means, named
 from shadowscale.fit.plan import Plan
+from shadowscale.quantities import key
 from shadowscale.session.session import Markers, Session
 from shadowscale.view.curves import contact_system
 from shadowscale.view.written import read_number
@@ -26,17 +28,19 @@ EFFECT_WORDS = {
 
 
 def third_light_wish(plan: Plan, band: str) -> str:
-    """`free` or `held`, as the plan has third light in that band."""
-    names = (f"third_light[{band}]", "third_light")
-    return "free" if any(name in plan.free for name in names) else "held"
+    """`free`, `none` or `held` at another value, as the plan has third light in that band."""
+    wish = named(plan.fixed, key("third_light", band))
+    if wish is None:
+        return "free"
+    return "none" if plan.fixed[wish] == (0.0,) else "held"
 
 
-def with_third_light(plan: Plan, band: str, *, free: bool) -> Plan:
-    """The plan with third light of one band free, or held at its present value."""
-    name = f"third_light[{band}]"
-    others = tuple(each for each in plan.free if each not in (name, "third_light"))
-    fixed = {each: values for each, values in plan.fixed.items() if each != name}
-    return replace(plan, free=(*others, name) if free else others, fixed=fixed)
+def with_third_light(plan: Plan, band: str, *, held: float | None) -> Plan:
+    """The plan with third light of one band held at a value, or free where `held` is None."""
+    name = key("third_light", band)
+    fixed = {each: values for each, values in plan.fixed.items() if not means(each, name)}
+    free = tuple(each for each in plan.free if not means(each, name))
+    return replace(plan, free=free, fixed=fixed if held is None else {**fixed, name: (held,)})
 
 
 def asks_for_solution(before: Session, after: Session) -> bool:

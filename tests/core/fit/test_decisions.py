@@ -132,18 +132,25 @@ def test_third_light_is_found() -> None:
     truth = invented(third=0.1)
     found = solved(truth)
 
-    assert _decision(found.solution, "third light").chosen == "free"
+    assert _decision(found.solution, "third light").chosen == "seen"
     for name in ("third_light[V]", "radius_sum", "radius_ratio", "inclination"):
         assert abs(found.pull(name)) < 3.5
 
 
-def test_no_third_light_is_invented() -> None:
-    said = _decision(ordinary().solution, "third light")
+def test_third_light_that_is_not_there() -> None:
+    """It is free all the same, and what that costs is told: the same as when it is held at zero."""
+    known = ordinary()
+    said = _decision(known.solution, "third light")
+    plan = ephemeris(fixed={"third_light": (0.0,)})
+    held = solved(known.truth, plan, photometry=known.photometry).solution
 
-    assert said.chosen == "none"
-    assert ordinary().solution.estimates["third_light[V]"].how == "fixed"
-    assert said.numbers["gain"] < said.numbers["needed"]
-    assert "wins only" in said.words
+    assert said.chosen == "not seen"
+    assert known.solution.estimates["third_light[V]"].value >= 0.0
+    assert said.numbers["sigma_radius_ratio_free"] > 1.5 * said.numbers["sigma_radius_ratio_held"]
+    assert said.numbers["sigma_radius_ratio_held"] == pytest.approx(
+        sigma_of(held.estimates["radius_ratio"]), rel=0.2
+    )
+    assert "hold it at zero" in said.words
 
 
 def test_third_light_of_each_band() -> None:

@@ -139,7 +139,7 @@ def test_another_cycle_of_the_epoch(cycles: int) -> None:
     ours, theirs = known.solution, found.solution
     moved = theirs.estimates["epoch"].value - ours.estimates["epoch"].value
 
-    _assert_equal(ours, theirs, sigmas=1e-4, leave="epoch")
+    _assert_equal(ours, theirs, sigmas=5e-4, leave="epoch")
     assert moved == pytest.approx(cycles * ours.estimates["period"].value, abs=1e-7)
     at = ours.system.free.index("epoch"), ours.system.free.index("period")
     error = ours.covariance[at[0], at[0]]

@@ -206,7 +206,7 @@ SPOILT: dict[str, tuple[Callable[[], Case], str, str]] = {
     "third light and inclination": (
         third_goes_with_inclination,
         WARN,
-        "known to 3.2 % where it could be 0.4 %",
+        "known to 3.20 % where it could be 0.4",
     ),
     "limb darkening": (
         lambda: with_system(

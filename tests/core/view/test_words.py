@@ -165,11 +165,14 @@ def test_a_refit_starts_where_the_work_stands() -> None:
 
 
 def test_third_light_and_wavelengths_by_band() -> None:
-    plan = with_third_light(Plan(fixed={"third_light[V]": (0.0,)}), "V", free=True)
+    plan = with_third_light(Plan(fixed={"third_light[V]": (0.0,)}), "V", held=None)
     assert third_light_wish(plan, "V") == "free"
-    assert third_light_wish(plan, "I") == "held"
     assert plan.fixed == {}
-    assert third_light_wish(with_third_light(plan, "V", free=False), "V") == "held"
+    assert third_light_wish(with_third_light(plan, "V", held=0.0), "V") == "none"
+    known = with_third_light(plan, "V", held=0.12)
+    assert third_light_wish(known, "V") == "held"
+    assert known.fixed == {"third_light[V]": (0.12,)}
+    assert third_light_wish(known, "I") == "free"
     assert with_wavelength(Plan(), "V", 551.0).wavelengths == {"V": 551.0}
     assert with_wavelength(Plan(wavelengths={"V": 551.0}), "V", 0.0).wavelengths == {}
 
