@@ -239,7 +239,7 @@ QUANTITIES: Mapping[str, Quantity] = _register(
         "l3",
         r"\ell_3",
         "",
-        -0.5,
+        0.0,
         0.99,
         1e-3,
         "third light as a fraction of the total outside eclipse",
