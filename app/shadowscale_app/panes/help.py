@@ -68,6 +68,6 @@ class HelpPane(Pane):
     def _show(self, _index: int = 0) -> None:
         name = self.choice.currentData()
         if name:
-            self.text.setMarkdown(page(name).text)
+            self.text.setMarkdown(page(name).words)
         else:
             self.text.setHtml(self._own)

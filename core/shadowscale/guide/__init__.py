@@ -5,6 +5,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable
 from dataclasses import dataclass
 from importlib.resources import files
@@ -16,6 +17,7 @@ __all__ = ["PAGES", "Page", "page", "pages", "quantities_page"]
 
 # In reading order.
 PAGES = ("first_sheet", "data", "wishes", "reading", "files", "compare", "simulate", "quantities")
+_PICTURE = re.compile(r"^!\[[^\]]*\]\([^)]*\)\n\n?", re.MULTILINE)
 _SCOPES = (
     (SYSTEM, "Of the system"),
     (BAND, "Of a band"),
@@ -30,6 +32,11 @@ class Page:
     name: str
     title: str
     text: str
+
+    @property
+    def words(self) -> str:
+        """The Markdown without its pictures, for a narrow pane."""
+        return _PICTURE.sub("", self.text)
 
 
 def pages() -> tuple[Page, ...]:

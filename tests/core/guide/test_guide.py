@@ -80,3 +80,13 @@ def test_samples_that_the_guide_uses_are_there(root):
     paths = set(re.findall(r"sample_sessions/[\w/.]+\w", text))
     assert paths
     assert all((root / path).exists() for path in paths)
+
+
+def test_pictures_are_there_and_a_narrow_pane_does_without_them(root):
+    folder = root / "core" / "shadowscale" / "guide"
+    shown = {name: re.findall(r"!\[[^\]]+\]\(([^)]+)\)", page(name).text) for name in PAGES}
+    assert shown["first_sheet"]
+    for name, pictures in shown.items():
+        assert all((folder / picture).is_file() for picture in pictures)
+        assert "![" not in page(name).words
+        assert page(name).words.startswith(f"# {page(name).title}\n")
