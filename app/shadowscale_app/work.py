@@ -13,7 +13,6 @@ from shadowscale.fit.solution import Solution
 from shadowscale.progress import Progress
 from shadowscale.session.session import Session
 from shadowscale.view.follow import is_final
-from shadowscale.view.summary import summary
 from shadowscale_app import trouble
 from shadowscale_app.desk import Change, Desk
 from shadowscale_app.jobs import Answer, LongLane
@@ -140,8 +139,8 @@ class WorkDesk(QObject):
         self._tell_solved(session, searched=True)
 
     def _tell_solved(self, session: Session, *, searched: bool = False) -> None:
-        note = f" \N{EM DASH} {session.solution.notes[-1]}" if searched and session.solution else ""
-        self.told.emit(f"Solved: {summary(session)}{note}.")
+        note = f": {session.solution.notes[-1]}" if searched and session.solution else ""
+        self.told.emit(f"Solved{note}.")
         self.solved.emit()
 
     def export(self, target: Target | None) -> None:

@@ -114,14 +114,15 @@ def test_every_setting_explains_itself(bench: Bench) -> None:
         assert len(box.toolTip()) > 30, name
 
 
-def test_third_light_is_freed_by_band(bench: Bench) -> None:
+def test_third_light_is_held_and_freed_by_band(bench: Bench) -> None:
     pane = bench.panes["Settings"]
     box = pane.boxes["third V"]
+    assert box.currentData() == "free"
 
-    box.setCurrentIndex(box.findData("free"))
-    box.activated.emit(box.currentIndex())
-
-    assert bench.desk.session.plan.free == ("third_light[V]",)
+    for state, fixed in (("none", {"third_light[V]": (0.0,)}), ("free", {})):
+        box.setCurrentIndex(box.findData(state))
+        box.activated.emit(box.currentIndex())
+        assert fixed == bench.desk.session.plan.fixed
 
 
 def test_kept_solutions_stand_side_by_side(bench: Bench) -> None:
@@ -141,6 +142,7 @@ def test_kept_solutions_stand_side_by_side(bench: Bench) -> None:
 
 
 def test_doubts_are_listed_gravest_first(bench: Bench) -> None:
+    bench.bring("Doubts")
     text = bench.panes["Doubts"].text.toPlainText()
 
     assert text.index("mirror solution") < text.index("fill-out")

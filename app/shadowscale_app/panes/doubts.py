@@ -17,6 +17,7 @@ SIGNS = {PASS: "\N{CHECK MARK}", WARN: "!", FAIL: "\N{MULTIPLICATION X}", "": "\
 class DoubtsPane(Pane):
     """A readable list, gravest first."""
 
+    patient = True
     title = "Doubts"
     about = (
         "Is the model allowed to speak? Each check has its number, its limit and the source of the limit. A cross "

@@ -155,7 +155,7 @@ class LightPair(QWidget):
                 Layer(points.x[good], points.y[good] + shift, bars, tint, shape, size, faint)
             )
             few = int(aside.sum()) <= MOST_CROSSES
-            cross = (6.0, 0.8) if few else (3.5, 0.35)
+            cross = (6.0, 0.8) if few else (3.0, 0.16)
             found.append(
                 Layer(points.x[aside], points.y[aside] + shift, None, now.aside, "x", *cross)
             )

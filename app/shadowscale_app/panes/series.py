@@ -28,6 +28,7 @@ MOST_NIGHT_LINES = 400
 class SeriesPane(Pane):
     """Light against time."""
 
+    patient = True
     title = "Whole series"
     about = (
         "All measurements in the order they were taken. Faint lines mark where a night or segment begins; each "

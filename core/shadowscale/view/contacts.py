@@ -2,17 +2,19 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 
 import numpy as np
-from numpy.typing import NDArray
 
-from shadowscale.data.photometry import Floats
+from shadowscale.data.photometry import Floats, Ints, Photometry
+from shadowscale.fit.solution import Solution
 from shadowscale.geometry.contacts import ContactSolution, EclipseTiming
 from shadowscale.session.session import Markers, Session, Span
 from shadowscale.session.spans import within
+from shadowscale.view.last import Last
 from shadowscale.view.light_points import ephemeris, fitting_solution, folded_time
+from shadowscale.view.stretches import Ordered, Places, ordered
 
 CORE = (
     0.12  # part of the duration about the middle that gives the depth where there is no flat bottom
@@ -149,54 +151,85 @@ def _timing(session: Session, part: str) -> EclipseTiming | None:
 
 def _depth(session: Session, span: Span) -> tuple[float, float]:
     """Light lost in a span of phases, of the first band that has points there, and its error."""
-    photometry, found = session.photometry, ephemeris(session)
+    photometry, markers, found = session.photometry, session.markers, ephemeris(session)
     assert photometry is not None
+    assert markers is not None
     assert found is not None
-    phase = folded_time(photometry, *found)
-    inside = photometry.used & within(phase, (span,))
-    level = _level(session, phase)
+    order = ordered(photometry, *found)
+    inside = order.both(order.places((span,)), order.beside(order.places(markers.excluded)))
+    rows = order.rows_at(inside)
+    solution = fitting_solution(session)
+    level = _LEVEL.of(
+        photometry,
+        solution,
+        *found,
+        markers.primary_window,
+        markers.secondary_window,
+        markers.level,
+        markers.excluded,
+    )
+    if level is None:
+        level = _medians(photometry, solution, order.rows_at(_beside_contacts(order, markers)))
     for band in range(len(photometry.bands)):
-        rows = inside & (photometry.band == band)
-        if rows.any():
-            values = photometry.flux[rows] / level[rows]
+        of_band = rows[photometry.band[rows] == band]
+        if of_band.size:
+            values = photometry.flux[of_band] / _level_at(solution, of_band) / level[band]
             scatter = (
                 float(np.std(values))
                 if values.size > 2
-                else float(photometry.flux_error[rows].mean())
+                else float(photometry.flux_error[of_band].mean())
             )
             return 1.0 - float(np.median(values)), max(1.25 * scatter / values.size**0.5, 1e-6)
     return float("nan"), float("nan")
 
 
-def _level(session: Session, phase: Floats) -> Floats:
-    """The light outside eclipse, row by row: the median of each band outside eclipse, on the solution's levels."""
-    photometry, solution = session.photometry, fitting_solution(session)
-    assert photometry is not None
-    level = np.ones_like(photometry.flux) if solution is None else solution.light.level
-    outside = photometry.used & _outside(session, phase)
-    found = level.copy()
-    for band in range(len(photometry.bands)):
-        of_band = photometry.band == band
-        rows = outside & of_band
-        if rows.any():
-            found[of_band] *= np.median(photometry.flux[rows] / level[rows])
+def _band_levels(
+    photometry: Photometry,
+    solution: Solution | None,
+    period: float,
+    epoch: float,
+    primary_window: Span,
+    secondary_window: Span,
+    level: Sequence[Span],
+    excluded: Sequence[Span],
+) -> Floats | None:
+    """(bands,) the light outside eclipse: where stretches are marked for it, else beside the windows; None: nowhere."""
+    order = ordered(photometry, period, epoch)
+    part = order.beside(order.places(excluded))
+    if level:
+        outside = order.both(part, order.places(level))
+    else:
+        windows = order.places((primary_window, secondary_window))
+        outside = order.both(part, order.beside(windows))
+    return _medians(photometry, solution, order.rows_at(outside)) if outside else None
+
+
+def _beside_contacts(order: Ordered, markers: Markers) -> Places:
+    """Everything outside the outer contacts that is not excluded."""
+    contacts = [each for each in (markers.primary, markers.secondary) if each is not None]
+    eclipses = order.places([(each[0], each[3]) for each in contacts])
+    return order.both(order.beside(eclipses), order.beside(order.places(markers.excluded)))
+
+
+def _medians(photometry: Photometry, solution: Solution | None, rows: Ints) -> Floats:
+    """(bands,) the median light of some rows, on the solution's levels; 1 where a band has none."""
+    values, band = photometry.flux[rows] / _level_at(solution, rows), photometry.band[rows]
+    found = np.ones(len(photometry.bands))
+    for number in range(found.size):
+        of_band = values[band == number]
+        if of_band.size:
+            found[number] = np.median(of_band)
     return found
 
 
-def _outside(session: Session, phase: Floats) -> NDArray[np.bool_]:
-    """Which points tell the light outside eclipse: those of the marked stretches, else all outside the windows."""
-    markers = session.markers
-    assert markers is not None
-    taking_part = ~within(phase, markers.excluded)
-    if markers.level:
-        return taking_part & within(phase, markers.level)
-    found = taking_part & ~within(phase, (markers.primary_window, markers.secondary_window))
-    if found.any():
-        return found
-    contacts = [each for each in (markers.primary, markers.secondary) if each is not None]
-    return taking_part & ~within(phase, [(each[0], each[3]) for each in contacts])
+def _level_at(solution: Solution | None, rows: Ints) -> Floats:
+    """The solution's levels; 1 without one."""
+    return np.ones(rows.size) if solution is None else solution.light.level[rows]
 
 
 def _window(timing: EclipseTiming) -> Span:
     margin = timing.duration * (0.5 + WINDOW_MARGIN)
     return timing.middle - margin, timing.middle + margin
+
+
+_LEVEL: Last[Floats | None] = Last(_band_levels)

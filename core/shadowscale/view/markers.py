@@ -158,7 +158,9 @@ def _moved_contact(
 
 
 def _holding(window: Span, contacts: Sequence[float]) -> Span:
-    """The window, widened where a contact lies outside it."""
+    """The window, widened where a contact lies outside it; the very same one where none does."""
+    if window[0] <= contacts[0] and contacts[3] <= window[1]:
+        return window
     return min(window[0], contacts[0]), max(window[1], contacts[3])
 
 

@@ -6,13 +6,16 @@ from dataclasses import replace
 
 import numpy as np
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
 
 from made_up import EPOCH, PERIOD, made_up_session
 from shadowscale.errors import NoSolutionError
 from shadowscale.session.session import Markers, Session
 from shadowscale.session.spans import within
 from shadowscale.view.contacts import contact_solution_of_markers, with_measured_contacts
-from shadowscale.view.light_points import light_over_phase
+from shadowscale.view.light_points import folded_time, light_over_phase
+from shadowscale.view.stretches import ordered
 from shadowscale.view.wishes import asks_for_solution
 
 FAINT = 0.04  # light lost in the stretch that is spoiled
@@ -121,3 +124,33 @@ def test_rows_that_a_person_left_out_are_no_outliers_in_the_picture() -> None:
 
     assert np.flatnonzero(points.outlier).tolist() == [11]
     assert not points.used[100:110].any()
+
+
+@given(
+    spans=st.lists(st.tuples(st.floats(-0.4, 0.9), st.floats(0.0, 0.4)), max_size=4),
+    others=st.lists(st.tuples(st.floats(-0.4, 0.9), st.floats(0.0, 0.4)), max_size=3),
+)
+def test_places_in_the_order_of_phase_are_the_rows_within(
+    spans: list[tuple[float, float]], others: list[tuple[float, float]]
+) -> None:
+    photometry = made_up_session().photometry
+    order = ordered(photometry, PERIOD, EPOCH)
+    phase = folded_time(photometry, PERIOD, EPOCH)
+    first, second = ([(low, low + width) for low, width in each] for each in (spans, others))
+    inside = within(phase, first)
+
+    places = order.places(first)
+    assert set(order.rows_at(places)) == set(np.flatnonzero(inside & photometry.used))
+    assert set(order.rows_at(order.beside(places))) == set(
+        np.flatnonzero(~inside & photometry.used)
+    )
+    both = order.both(places, order.places(second))
+    assert set(order.rows_at(both)) == set(
+        np.flatnonzero(inside & within(phase, second) & photometry.used)
+    )
+
+
+def test_where_the_windows_leave_nothing_the_light_beside_the_contacts_counts() -> None:
+    session = marked(primary_window=(-0.25, 0.25), secondary_window=(0.25, 0.75))
+
+    assert depth(session) == pytest.approx(depth(marked()), abs=1e-3)
