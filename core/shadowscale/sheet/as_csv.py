@@ -7,6 +7,7 @@ from collections.abc import Iterator, Mapping
 from io import StringIO
 from math import isfinite
 
+from shadowscale.sheet.file_names import file_names
 from shadowscale.sheet.sheet import Entry, Sheet
 
 NUMBERS = ("value", "minus", "plus")
@@ -82,9 +83,10 @@ def _provenance_rows(sheet: Sheet) -> Iterator[Row]:
     }
     for name, value in {**plain, **made.versions}.items():
         yield {"section": "provenance", "name": name, "value": value}
+    names = file_names(file.path for file in made.inputs)
     for file in made.inputs:
         words = f"{file.used} of {file.rows} rows used"
-        yield {"section": "input", "name": file.path, "value": file.sha256, "meaning": words}
+        yield {"section": "input", "name": names[file.path], "value": file.sha256, "meaning": words}
 
 
 def _cell(value: object) -> object:

@@ -11,6 +11,7 @@ from typing import Any
 import numpy as np
 
 from shadowscale.geometry.contacts import ContactSolution, EclipseTiming
+from shadowscale.sheet.file_names import file_names
 from shadowscale.sheet.sheet import BandSheet, Entry, Provenance, Sheet
 
 SCHEMA = 1
@@ -100,12 +101,13 @@ def _timing(timing: EclipseTiming) -> dict[str, Any]:
 
 
 def _provenance(provenance: Provenance) -> dict[str, Any]:
+    names = file_names(file.path for file in provenance.inputs)
     return {
         "program": provenance.program,
         "versions": dict(provenance.versions),
         "inputs": [
             {
-                "name": file.path.replace("\\", "/").rsplit("/", 1)[-1],
+                "name": names[file.path],
                 "sha256": file.sha256,
                 "rows": file.rows,
                 "used": file.used,

@@ -7,7 +7,7 @@ a row that takes no part has `used` 0 and the reason, a line that could not be r
 from __future__ import annotations
 
 import csv
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from io import StringIO
 from typing import Any
 
@@ -16,6 +16,7 @@ import numpy as np
 from shadowscale.data.photometry import Floats, Photometry, UnreadableRow
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.solution import Solution
+from shadowscale.sheet.file_names import file_names
 
 LIGHT_HEADER = (
     "file",
@@ -53,9 +54,10 @@ def light_curve(solution: Solution, photometry: Photometry) -> str:
     """
     result = solution.light
     used, why = _fate(result.why.tolist(), result.reasons)
-    paths = [file.path for file in photometry.files]
+    names = file_names(file.path for file in photometry.files)
+    files = [names[file.path] for file in photometry.files]
     columns = (
-        [paths[number] for number in photometry.file.tolist()],
+        [files[number] for number in photometry.file.tolist()],
         photometry.line.tolist(),
         photometry.time.tolist(),
         [photometry.bands[number] for number in photometry.band.tolist()],
@@ -70,7 +72,7 @@ def light_curve(solution: Solution, photometry: Photometry) -> str:
         used,
         why,
     )
-    return _written(LIGHT_HEADER, columns, photometry.unreadable, paths)
+    return _written(LIGHT_HEADER, columns, photometry.unreadable, names)
 
 
 def velocity_curve(solution: Solution, velocities: Velocities) -> str:
@@ -78,7 +80,8 @@ def velocity_curve(solution: Solution, velocities: Velocities) -> str:
     result = solution.velocity
     if result is None:
         raise ValueError("the solution has no velocities")
-    paths = [file.path for file in velocities.files]
+    names = file_names(file.path for file in velocities.files)
+    files = [names[file.path] for file in velocities.files]
     stars: list[Sequence[Any]] = []
     for observed, error, model, codes in (
         (velocities.rv1, velocities.rv1_error, result.model1, result.why1),
@@ -88,14 +91,14 @@ def velocity_curve(solution: Solution, velocities: Velocities) -> str:
         stars += [_cells(item) for item in (observed, error, model, observed - model)]
         stars += [used, why]
     columns = (
-        [paths[number] for number in velocities.file.tolist()],
+        [files[number] for number in velocities.file.tolist()],
         velocities.line.tolist(),
         velocities.time.tolist(),
         [velocities.sources[number] for number in velocities.source.tolist()],
         _cells(result.phase),
         *stars,
     )
-    return _written(VELOCITY_HEADER, columns, velocities.unreadable, paths)
+    return _written(VELOCITY_HEADER, columns, velocities.unreadable, names)
 
 
 def _fate(codes: list[int], reasons: tuple[str, ...]) -> tuple[list[int], list[str]]:
@@ -116,12 +119,12 @@ def _written(
     header: tuple[str, ...],
     columns: Sequence[Sequence[Any]],
     unreadable: Iterable[UnreadableRow],
-    paths: list[str],
+    names: Mapping[str, str],
 ) -> str:
     """The table as text, lines that could not be read put where they stood."""
     rows: list[tuple[Any, ...]] = list(zip(*columns))
-    rows += [_unreadable(row, header) for row in unreadable]
-    order = {path: number for number, path in enumerate(paths)}
+    rows += [_unreadable(row, names.get(row.file, row.file), header) for row in unreadable]
+    order = {name: number for number, name in enumerate(names.values())}
     rows.sort(key=lambda row: (order.get(row[0], len(order)), row[1]))
     text = StringIO()
     writer = csv.writer(text, lineterminator="\n")
@@ -130,8 +133,8 @@ def _written(
     return text.getvalue()
 
 
-def _unreadable(row: UnreadableRow, header: tuple[str, ...]) -> tuple[Any, ...]:
-    known: dict[str, Any] = {"file": row.file, "line": row.line}
+def _unreadable(row: UnreadableRow, file: str, header: tuple[str, ...]) -> tuple[Any, ...]:
+    known: dict[str, Any] = {"file": file, "line": row.line}
     for name in header:
         if name.startswith("used"):
             known[name] = 0

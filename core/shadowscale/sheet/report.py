@@ -29,6 +29,7 @@ from shadowscale.sheet.document import (
 )
 from shadowscale.sheet.figure_data import Shown
 from shadowscale.sheet.figures import possible_figures
+from shadowscale.sheet.file_names import file_names
 from shadowscale.sheet.methods import methods_of
 from shadowscale.sheet.references import bibliography
 from shadowscale.sheet.report_tables import (
@@ -251,6 +252,7 @@ def _references(report: Report) -> Iterator[Section]:
 
 def _provenance(report: Report) -> Iterator[Section]:
     made = report.sheet.provenance
+    names = file_names(file.path for file in made.inputs)
     columns = (
         Column("Input", 0.22),
         Column("Rows", 0.09),
@@ -258,12 +260,12 @@ def _provenance(report: Report) -> Iterator[Section]:
         Column("SHA-256", 0.6, small=True),
     )
     rows = tuple(
-        (plain(file.path.replace("\\", "/").rsplit("/", 1)[-1]), str(file.rows), str(file.used),
+        (plain(names[file.path]), str(file.rows), str(file.used),
          file.sha256)
         for file in made.inputs
     )  # fmt: skip
     read = tuple(
-        (plain(file.path.replace("\\", "/").rsplit("/", 1)[-1]), role, plain(words))
+        (plain(names[file.path]), role, plain(words))
         for file in made.inputs
         for role, words in file.columns
     )

@@ -9,6 +9,7 @@ import pytest
 
 from made_up import made_up_session
 from shadowscale.sheet import light_curve, velocity_curve
+from shadowscale.sheet.file_names import file_names
 
 
 @pytest.fixture(scope="module")
@@ -85,3 +86,18 @@ def test_rows_of_several_files_keep_the_files_order(session):
     rows = rows_of(light_curve(session.solution, two))
     names = [row["file"] for row in rows]
     assert names == sorted(names, key=["z.csv", "a.csv"].index)
+
+
+@pytest.mark.parametrize(
+    ("paths", "names"),
+    [
+        (["/home/me/pair/nights.csv"], ["nights.csv"]),
+        (["/a/one/n.csv", "/a/two/n.csv", "/a/v.csv"], ["one/n.csv", "two/n.csv", "v.csv"]),
+        (["x/one/n.csv", "y/one/n.csv"], ["x/one/n.csv", "y/one/n.csv"]),
+        (["n.csv", "b/n.csv"], ["n.csv", "b/n.csv"]),
+        (["C:\\data\\n.csv"], ["n.csv"]),
+        ([], []),
+    ],
+)
+def test_files_are_named_without_the_folders_of_their_owner(paths, names):
+    assert list(file_names(paths).values()) == names
