@@ -29,7 +29,8 @@ from shadowscale.timing.results import MeasuredEclipses, PeriodSearch
 Floats = NDArray[np.float64]
 Start = dict[str, float]
 TRIED_THIRD_LIGHT = 0.3
-LEAST_SCORE = 0.2  # of period candidates that velocities may prefer
+LIKELY = 0.2  # score of a period candidate from which on velocities may lightly prefer it
+MOST_LEFT = {True: 0.5, False: 0.05}  # of chi-squared of the velocities, for a likely one or not
 
 
 @dataclass(frozen=True, eq=False)
@@ -80,18 +81,17 @@ def period_of_velocities(
     """Period and epoch of a search, chosen by the velocities where they tell the candidates apart.
 
     Eclipses alone may leave P, 2P and P/2; velocities swing once a period. A candidate takes the
-    place of the first one when a sine curve of its period leaves less than half the chi-squared.
+    place of the first one when a sine curve of its period leaves less than half the chi-squared,
+    or, where its eclipses fit much worse, next to nothing of it.
     """
     first = search.period, search.epoch
     if velocities is None:
         return first
-    likely = [each for each in search.candidates if each.score > LEAST_SCORE]
-    if not likely:
-        return first
-    chi2 = {each.period: _sine_chi2(each.period, velocities) for each in likely}
-    best = min(likely, key=lambda each: chi2[each.period])
-    if chi2[best.period] < 0.5 * chi2.get(search.period, np.inf):
-        return best.period, best.epoch
+    least = _sine_chi2(search.period, velocities)
+    for each in search.candidates:
+        chi2 = _sine_chi2(each.period, velocities)
+        if chi2 < least * MOST_LEFT[each.score > LIKELY]:
+            least, first = chi2, (each.period, each.epoch)
     return first
 
 
