@@ -119,6 +119,7 @@ TABLE: tuple[Entry, ...] = (
     Entry("velocities", f"Add velocities{ELLIPSIS}", "File", lambda b: b.files.ask_velocities(), "Ctrl+Shift+O", "Add a table of radial velocities", _has_light, bar="Velocities"),
     Entry("save", "Save", "File", lambda b: b.files.save(), Std.Save, "Save the session", _has_light, bar="Save", rule_before=True),
     Entry("save_as", f"Save as{ELLIPSIS}", "File", lambda b: b.files.save_as(), Std.SaveAs, "Save the session in another file", _has_light),
+    Entry("pack", f"Pack with its data{ELLIPSIS}", "File", lambda b: b.files.ask_pack(), "", "One zip file with the session and all its tables, to be sent to a colleague", _has_light),
     Entry("export", f"Export sheet{ELLIPSIS}", "File", lambda b: b.work.export(b.files.ask_export()), "Ctrl+E", "Write the sheet, curves and session to a folder", _is_solved, bar="Export"),
     Entry("figure", f"Save figure{ELLIPSIS}", "File", lambda b: b.save_figure(), "Ctrl+Shift+E", "Of the picture that was clicked last, as PDF, SVG or PNG", _has_light),
     Entry("close", "Close session", "File", lambda b: b.files.close_session(), Std.Close, "Back to the start page", rule_before=True),

@@ -210,7 +210,7 @@ class Bench(QMainWindow):
             pane.told.connect(self.status.tell)
             pane.pointed.connect(self._pointed)
             pane.asked.connect(self._asked)
-        for teller in (self.live, self.work, self.points, self.warmer):
+        for teller in (self.live, self.work, self.points, self.warmer, self.files):
             teller.told.connect(self.status.tell)
         self.lane.busy.connect(self.status.show_live)
         self.files.errands.busy.connect(self.status.show_errand)

@@ -9,7 +9,7 @@ from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from PySide6.QtCore import QDateTime, QLocale, QObject, QSettings, QStandardPaths, QTimer
+from PySide6.QtCore import QDateTime, QLocale, QObject, QSettings, QStandardPaths, QTimer, Signal
 from PySide6.QtWidgets import QFileDialog, QMessageBox, QWidget
 
 from shadowscale.session.session import Session, Source
@@ -28,12 +28,17 @@ JOURNAL_MS, JOURNAL_SHARE = (
     10,
 )  # between two writings: so long, and so many times what the last one took
 Then = Callable[[], object]
-SESSION_SUFFIX = ".json"
-TABLES = "Tables and sessions (*.csv *.txt *.dat *.tsv *.ecsv *.fits *.fit *.xml *.vot *.json *.gz);;All files (*)"
+SESSION_SUFFIX, PACKED_SUFFIX = ".json", ".zip"
+TABLES = "Tables and sessions (*.csv *.txt *.dat *.tsv *.ecsv *.fits *.fit *.xml *.vot *.json *.zip *.gz);;All files (*)"
 
 
 class Files(QObject):
-    """What the bench does with files. Reading and writing happen beside the window, in `errands`."""
+    """What the bench does with files. Reading and writing happen beside the window, in `errands`.
+
+    Signal `told(words)`.
+    """
+
+    told = Signal(str)
 
     def __init__(
         self,
@@ -82,27 +87,28 @@ class Files(QObject):
             opening = self.add_velocities if kind == "velocities" else self.open_photometry
             opening(path, go_on)
 
-        if path.suffix == SESSION_SUFFIX:
+        if path.suffix.lower() in (SESSION_SUFFIX, PACKED_SUFFIX):
             self.open_session(path, go_on)
         else:
             self.errands.run(f"opening {path.name}", lambda: _kind(path), open_table)
 
     def open_session(self, path: Path, then: Then | None = None) -> None:
-        """Open a session file."""
-        from shadowscale.session.store import open_session
-
+        """Open a session file; a packed one is unpacked beside itself first."""
         if not self.may_leave():
             return
         agreed = self._desk.session
 
-        def take(session: Session) -> None:
+        def take(found: tuple[Session, Path]) -> None:
+            session, place = found
             if self._desk.session is agreed or self.may_leave():
-                self._desk.begin(session, path)
-                self._remember(path)
+                self._desk.begin(session, place)
+                self._remember(place)
+                if place != path:
+                    self.told.emit(f"Unpacked into {place.parent}.")
                 if then is not None:
                     then()
 
-        self.errands.run(f"opening {path.name}", lambda: open_session(path), take)
+        self.errands.run(f"opening {path.name}", lambda: _opened(path), take)
 
     def open_photometry(self, path: Path, then: Then | None = None) -> None:
         """Look into a table, ask how to read it, begin a session with it or add it to the present one."""
@@ -202,6 +208,25 @@ class Files(QObject):
             self._remember(path)
 
         self.errands.run(f"saving {path.name}", write, take)
+
+    def ask_pack(self) -> None:
+        """Ask where, and write the session with its data into one file."""
+        start = str(Path(self._folder()) / f"{self._desk.session.name}{PACKED_SUFFIX}")
+        path, _ = QFileDialog.getSaveFileName(
+            self._window, "Pack session", start, "Packed session (*.zip)"
+        )
+        if path:
+            self.pack_to(Path(path))
+
+    def pack_to(self, path: Path) -> None:
+        """Write the session with its data into one file."""
+        path = path if path.suffix.lower() == PACKED_SUFFIX else path.with_suffix(PACKED_SUFFIX)
+        session = self._desk.session
+        self.errands.run(
+            f"packing {path.name}",
+            lambda: _packed(session, path),
+            lambda _: self.told.emit(f"Packed with its data into {path}."),
+        )
 
     def ask_export(self) -> Target | None:
         """Ask where the sheet and all the rest are to be written."""
@@ -323,6 +348,20 @@ def _kind(path: Path) -> str:
     from shadowscale.data import sniff_kind
 
     return sniff_kind(path)
+
+
+def _opened(path: Path) -> tuple[Session, Path]:
+    from shadowscale.jobs.packing import is_packed, unpack_session
+    from shadowscale.session.store import open_session
+
+    place = unpack_session(path) if is_packed(path) else path
+    return open_session(place), place
+
+
+def _packed(session: Session, path: Path) -> Path:
+    from shadowscale.jobs.packing import pack_session
+
+    return pack_session(session, path, overwrite=True)  # the file dialog has asked
 
 
 def _compared(path: Path) -> object:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import sys
 import threading
 from collections.abc import Iterator
 from pathlib import Path
@@ -57,9 +58,12 @@ def nothing_left_running() -> Iterator[None]:
 
 
 @pytest.fixture(autouse=True)
-def own_settings(tmp_path: Path) -> Iterator[None]:
+def own_settings(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[None]:
     """Settings, journals and logs of a test go to its own folder."""
-    QStandardPaths.setTestModeEnabled(True)
+    if sys.platform == "linux":
+        monkeypatch.setenv("XDG_DATA_HOME", str(tmp_path / "share"))
+    else:  # a folder for tests, though one for all of them
+        QStandardPaths.setTestModeEnabled(True)
     QSettings.setDefaultFormat(QSettings.Format.IniFormat)
     for scope in (QSettings.Scope.UserScope, QSettings.Scope.SystemScope):
         QSettings.setPath(QSettings.Format.NativeFormat, scope, str(tmp_path))

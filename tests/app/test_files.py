@@ -237,3 +237,35 @@ def test_another_ending_is_refused_in_words(bench: Bench, tmp_path: Path) -> Non
         ValueError, match=r"expected a file ending in \.png, \.svg or \.pdf, found 'figure\.bmp'"
     ):
         save_figure(bench.panes["To scale"].sky, tmp_path / "figure.bmp")
+
+
+def test_a_packed_session_is_unpacked_beside_itself(
+    bench: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    opened(bench)
+    rename(bench)
+    target = str(tmp_path / "to send")
+    dialog = staticmethod(lambda *_: (target, ""))
+    monkeypatch.setattr(figure.QFileDialog, "getSaveFileName", dialog)
+
+    bench.actions_table.by_name["pack"].trigger()
+    assert "to send.zip" in bench.status.words.text()
+    bench.desk.begin(bench.desk.session)
+    bench.open_paths([str(tmp_path / "to send.zip")])
+
+    assert tmp_path / "to send" / "session.json" == bench.desk.path
+    assert bench.desk.session.name == "other"
+    sources = bench.desk.session.photometry_sources
+    assert [Path(each.path).parent for each in sources] == [tmp_path / "to send" / "data"]
+    assert "Unpacked" in bench.status.words.text()
+
+
+def test_another_zip_file_is_refused_in_words(bench: Bench, told: list, tmp_path: Path) -> None:
+    before = bench.desk.session
+    (tmp_path / "holiday.zip").write_bytes(b"PK no")
+
+    bench.open_paths([str(tmp_path / "holiday.zip")])
+
+    assert "a session packed by shadowscale" in told[0].sentence
+    assert bench.desk.session is before
+    told.clear()
