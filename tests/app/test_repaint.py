@@ -57,6 +57,24 @@ def test_points_are_painted_once_while_only_a_marker_moves(
     assert made == []
 
 
+@pytest.mark.parametrize(("pixels", "repaints"), [(0.1, 0), (3.0, 1)])
+def test_points_are_painted_anew_once_they_are_seen_to_move(
+    bench: Bench, monkeypatch: pytest.MonkeyPatch, pixels: float, repaints: int
+) -> None:
+    pair = bench.panes["Eclipses"].pairs["primary"]
+    pair.curve.viewport().repaint()
+    made: list[int] = []
+    plain = pair.points._pixmap
+    monkeypatch.setattr(pair.points, "_pixmap", lambda *args: made.append(1) or plain(*args))
+    _, high = pair.points.pixelVectors()
+    up = pixels * abs(high.y())
+
+    pair.points.show_layers(tuple(replace(each, y=each.y + up) for each in pair.points.layers))
+    pair.curve.viewport().repaint()
+
+    assert len(made) == repaints
+
+
 def test_very_many_points_become_a_density_and_single_points_again(bench: Bench) -> None:
     photometry = made_up_photometry(nights=40, points=800)
     assert photometry.time.size > MOST_POINTS

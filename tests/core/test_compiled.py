@@ -159,6 +159,34 @@ def test_a_disk_that_cannot_be_written_to_costs_nothing_but_time(monkeypatch, tm
     assert plus_one(1) == 2
 
 
+def test_the_engine_loads_without_its_compiler():
+    told = "import shadowscale.fit.solve, sys; print([n for n in ('numba', 'scipy') if n in sys.modules])"
+    done = subprocess.run(
+        [sys.executable, "-c", told], capture_output=True, text=True, check=False
+    )  # fmt: skip
+
+    assert (done.stdout.strip(), done.stderr) == ("[]", "")
+
+
+def test_linear_algebra_is_spared_but_not_taken_away(small_package):
+    (small_package / "caller.py").write_text(
+        CALLER + "\n@compiled\ndef dot(x):\n    return x @ x\n"
+    )
+    told = """
+import sys
+import numpy as np
+from shadowscale.caller import dot, twice
+twice(10)
+print("scipy.linalg" in sys.modules, dot(np.arange(3.0)), "scipy.linalg" in sys.modules)
+"""
+    done = subprocess.run(
+        [sys.executable, "-W", "error", "-c", told], capture_output=True, text=True, check=False,
+        env={**os.environ, "PYTHONPATH": str(small_package.parent)},
+    )  # fmt: skip
+
+    assert done.stdout.split() == ["False", "5.0", "True"], done.stderr
+
+
 def test_the_fingerprint_follows_imports_of_imports():
     names = {path.relative_to(PACKAGE).as_posix() for path in closure("light/_band.py")}
 

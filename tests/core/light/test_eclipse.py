@@ -12,6 +12,7 @@ from scipy.special import ellipe, ellipk
 
 from derivatives import check_derivatives
 from limb_examples import ALL_CASES, EDGES, PUBLISHED, exact_intensity
+from shadowscale.light import _kernels
 from shadowscale.light.eclipse import hidden_fraction, hidden_fraction_derivatives
 from shadowscale.light.laws import LAWS
 from slow_eclipse import slow_hidden_fraction
@@ -142,6 +143,20 @@ def test_tables_of_the_other_laws(name, c, values):
     np.testing.assert_allclose(
         found, [float(value) for value in values.split()], rtol=0, atol=6e-11
     )
+
+
+@pytest.mark.parametrize("power", [0.02, 0.3, 1.0, 2.5, 8.0])
+def test_powers_of_mu_keep_their_figures_at_the_centre_and_at_the_limb(power):
+    r2 = np.concatenate([10.0 ** np.linspace(-300, -1, 40), np.linspace(0.1, 0.9999, 40)])
+    mu2 = np.concatenate([1.0 - r2, 10.0 ** np.linspace(-299, -1, 40)])
+    r2 = np.concatenate([r2, 1.0 - mu2[r2.size :]])
+
+    found = np.array([_kernels._power(*pair, power / 2) for pair in zip(mu2, r2, strict=True)])
+
+    # computed with numpy's logarithm and exponential
+    log2 = np.where(mu2 > 0.5, np.log1p(-np.where(mu2 > 0.5, r2, 0.0)), np.log(mu2))
+    less = np.expm1(np.maximum(power / 2 * log2, -700.0))
+    np.testing.assert_allclose(found, np.column_stack([log2, less]), rtol=2e-13)
 
 
 @pytest.mark.parametrize("k", [0.1, 0.3, 0.5, 0.7, 0.9])

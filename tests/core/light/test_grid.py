@@ -43,6 +43,25 @@ def test_light_is_that_of_every_single_point(name, law):
 
 
 @pytest.mark.parametrize("name", PAIRS)
+def test_eclipses_are_those_of_the_exact_contacts(name):
+    system = pair(name)
+    values = [system.value(key) for key in ("radius_sum", "radius_ratio", "inclination")]
+    contacts = contact_phases(*values, system.value("ecosw"), system.value("esinw"))
+    model = BandModel.at(system, system.values, BAND)
+
+    for number, expected in enumerate((contacts.primary, contacts.secondary)):
+        found = model.eclipse(number)
+        widths = [expected.duration, expected.inner_duration]
+        np.testing.assert_allclose([*found[:2]], widths, rtol=0, atol=1e-14)
+        time = system.value("epoch") + system.value("period") * expected.middle
+        if np.isfinite(time):
+            light = direct_light(system, np.array([time]))[0]
+            assert found.depth == pytest.approx(1.0 - light, abs=1e-8)
+        else:
+            assert np.isnan(found.depth)
+
+
+@pytest.mark.parametrize("name", PAIRS)
 def test_light_close_to_the_contacts(name):
     system = pair(name, "power-2", epoch=0.0)
     times = crowded_times(system)
