@@ -61,7 +61,7 @@ class Picture(pg.PlotWidget):
 
     def dress(self) -> None:
         """Take the theme's colours."""
-        now = theme.colours()
+        now = self._worn = theme.colours()
         self.setBackground(now.raised)
         self.box.setBackgroundColor(now.paper)
         self.box.setBorder(pg.mkPen(now.line))
@@ -75,7 +75,8 @@ class Picture(pg.PlotWidget):
     def changeEvent(self, event: QEvent) -> None:
         """Follow the theme."""
         super().changeEvent(event)
-        if event.type() == QEvent.Type.PaletteChange and hasattr(self, "name"):
+        changed = event.type() == QEvent.Type.PaletteChange and hasattr(self, "name")
+        if changed and theme.colours() is not self._worn:
             self.dress()
 
     def contextMenuEvent(self, event: QContextMenuEvent) -> None:
