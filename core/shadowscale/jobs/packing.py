@@ -20,7 +20,7 @@ from zipfile import ZIP_DEFLATED, BadZipFile, ZipFile, ZipInfo, is_zipfile
 
 from shadowscale._version import __version__
 from shadowscale.errors import Problem, SessionError
-from shadowscale.jobs.results import check_paths, not_writable
+from shadowscale.jobs.results import ODD, check_paths, not_writable
 from shadowscale.session.atomic import writing
 from shadowscale.session.places import files_of, with_paths
 from shadowscale.session.session import Session
@@ -41,6 +41,7 @@ Open it as it is:           shadowscale THIS.zip
 Do the solution again:      shadowscale replay THIS.zip --out results
 Or unpack it, and open session.json. The measurements are in data/.
 """
+_NOT_EVERYWHERE = re.compile(r"[\\/:*?\"<>|\x00-\x1f\ud800-\udfff]")
 _NAME = re.compile(rf"(?:{DATA}/)?[^/\\:\x00-\x1f]+")
 
 
@@ -78,7 +79,7 @@ def pack_session(session: Session, target: Path, *, overwrite: bool = False) -> 
     names = _names(files)
     sums = _checked(session, names)
     packed = with_paths(session, lambda file: names[file], lambda file: _excluded(file, names))
-    text = written_document(plain_document(packed)).encode("utf-8")
+    text = written_document(plain_document(packed)).encode("utf-8", ODD)
     sums[SESSION_FILE] = hashlib.sha256(text).hexdigest()
     listing = "".join(f"{digest}  {name}\n" for name, digest in sums.items())
     try:
@@ -134,13 +135,14 @@ def unpack_session(packed: Path, folder: Path | None = None, *, overwrite: bool 
 
 
 def _names(files: tuple[str, ...]) -> dict[str, str]:
-    """Each file's place in the zip; a number before names that come twice."""
+    """Each file's place in the zip, fit for every system; a number before names that come twice."""
     found: dict[str, str] = {}
     for file in files:
-        name, number = f"{DATA}/{Path(file).name}", 1
+        plain = _NOT_EVERYWHERE.sub("_", Path(file).name)
+        name, number = f"{DATA}/{plain}", 1
         while name.lower() in (other.lower() for other in found.values()):
             number += 1
-            name = f"{DATA}/{number}_{Path(file).name}"
+            name = f"{DATA}/{number}_{plain}"
         found[file] = name
     return found
 

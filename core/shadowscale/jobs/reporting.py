@@ -30,4 +30,4 @@ def report_documents(
     document = make_document(report)
     pictures = {name: files["svg"].decode() for name, files in figures.items()}
     pages = {name: files["pdf"] for name, files in figures.items()}
-    return as_html(document, pictures).encode("utf-8"), as_pdf(document, pages)
+    return as_html(document, pictures).encode("utf-8", "replace"), as_pdf(document, pages)

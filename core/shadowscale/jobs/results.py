@@ -18,6 +18,7 @@ from shadowscale.sheet.model_curve import model_curve
 SESSION_FILE = "session.json"
 LIGHT_FILE, VELOCITY_FILE = "light_curve.csv", "velocity_curve.csv"
 MODEL_FILE = "model_curve.csv"
+ODD = "backslashreplace"  # names of files may hold bytes that are no text
 HTML_FILE, PDF_FILE, FIGURE_FOLDER = "report.html", "report.pdf", "figures"
 
 
@@ -173,4 +174,4 @@ def _contents(session: Session, sheet: Sheet) -> dict[str, bytes]:
     if session.velocities is not None:
         texts[VELOCITY_FILE] = velocity_curve(solution, session.velocities)
     texts[MODEL_FILE] = model_curve(solution)
-    return {name: text.encode("utf-8") for name, text in texts.items()}
+    return {name: text.encode("utf-8", ODD) for name, text in texts.items()}

@@ -11,8 +11,8 @@ from typing import IO
 
 
 def write_text(path: Path, text: str) -> None:
-    """Write text as UTF-8, see `write_bytes`."""
-    write_bytes(path, text.encode("utf-8"))
+    """Write text as UTF-8 (bytes of a file name that are no text as JSON escapes), see `write_bytes`."""
+    write_bytes(path, text.encode("utf-8", "backslashreplace"))
 
 
 def write_bytes(path: Path, content: bytes) -> None:

@@ -64,7 +64,7 @@ class PdfFile:
 
 def text_string(text: str) -> str:
     """Words of a title or a bookmark."""
-    return f"<feff{text.encode('utf-16-be').hex()}>"
+    return f"<feff{text.encode('utf-16-be', 'replace').hex()}>"
 
 
 def embed_letters(pdf: PdfFile, name: str, letters: TrueType, used: dict[int, str]) -> int:
@@ -103,7 +103,7 @@ def embed_letters(pdf: PdfFile, name: str, letters: TrueType, used: dict[int, st
 
 def _meaning(used: dict[int, str]) -> str:
     """Which character each letter stands for, so that words can be searched and copied."""
-    pairs = [f"<{n:04x}> <{used[n].encode('utf-16-be').hex()}>" for n in sorted(used)]
+    pairs = [f"<{n:04x}> <{used[n].encode('utf-16-be', 'replace').hex()}>" for n in sorted(used)]
     blocks = (pairs[at : at + 100] for at in range(0, len(pairs), 100))
     listing = "\n".join(
         f"{len(block)} beginbfchar\n" + "\n".join(block) + "\nendbfchar" for block in blocks

@@ -2,6 +2,7 @@
 
 import hashlib
 import json
+import os
 import zipfile
 from dataclasses import replace
 from pathlib import Path
@@ -69,6 +70,17 @@ def test_an_outside_reader_finds_every_file_with_its_checksum(session, folder):
         "data/2_nights.csv",
     ]
     assert str(folder) not in json.dumps(document)
+
+
+def test_names_that_other_systems_refuse_are_made_plain(folder):
+    """Windows forbids these characters in names (Microsoft, Naming Files, Paths, and Namespaces)."""
+    odd = os.fsdecode(b"night: V?\xe9.csv")
+    (folder / odd).write_text(NIGHTS)
+    exclusion = Exclusion("light", str(folder / odd), (5,), "clouds")
+    session = Session(photometry_sources=(Source(str(folder / odd)),), exclusions=(exclusion,))
+    opened = open_session(unpack_session(pack_session(session, folder / "a.zip")))
+    assert Path(opened.photometry_sources[0].path).name == "night_ V__.csv"
+    assert opened.photometry.line[~opened.photometry.used].tolist() == [5]
 
 
 def test_a_table_of_limb_darkening_goes_with_the_session(folder):

@@ -1,6 +1,7 @@
 """Writing results, refusing to overwrite, and comparing a replay; from an invented solution."""
 
 import json
+import os
 from dataclasses import replace
 from pathlib import Path
 
@@ -192,6 +193,15 @@ def test_trouble_with_the_report_costs_nothing_else(session, tmp_path, monkeypat
         write_results(session, tmp_path)
     written = {path.name for path in tmp_path.iterdir()}
     assert written == set(result_files(session, report=False))
+
+
+def test_a_file_name_that_is_no_text_spoils_nothing(session, tmp_path):
+    name = os.fsdecode(b"/n\xe9.csv")
+    odd = replace(session, name=name, command=f"shadowscale solve {name}")
+    write_results(odd, tmp_path)
+    assert json.loads((tmp_path / "session.json").read_text())["command"] == odd.command
+    assert json.loads((tmp_path / "sheet.json").read_text())["provenance"]["command"] == odd.command
+    assert (tmp_path / "report.pdf").stat().st_size > 10_000
 
 
 def test_a_difference_is_relative_to_the_larger():
