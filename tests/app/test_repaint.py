@@ -16,7 +16,7 @@ from shadowscale_app.bench import Bench
 from shadowscale_app.desk import Change
 from shadowscale_app.plots.points import MOST_POINTS
 
-ROUNDS = 150
+ROUNDS = 100
 
 
 def test_repaints_take_no_references_to_none(bench: Bench) -> None:

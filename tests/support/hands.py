@@ -11,7 +11,7 @@ from PySide6.QtWidgets import QApplication
 
 from shadowscale_app.plots.picture import Picture
 
-STEPS = 8
+STEPS = 4
 
 
 def drag(
