@@ -405,6 +405,28 @@ def test_unequal_odd_eclipses_reveal_twice_the_period() -> None:
     assert "probably twice as long" in case.finding("period").words
 
 
+def test_an_eclipse_that_comes_back_half_a_period_later_halves_the_period() -> None:
+    """A model with one eclipse a period; the light has another like it, half a period later."""
+    once = with_free(LIGHT_ONLY, {"ecosw": (0.3, 0.001), "esinw": (0.0, 0.001)})
+    phase = np.mod(phase_of(once), 1.0)
+    middle = once.evidence.windows[1].middle
+    model = made_up_light(np.where(np.abs(phase - middle) < 0.1, phase - middle + 0.5, phase))
+    model[(np.abs(phase - 0.5) < 0.1) & (np.abs(phase - middle) > 0.1)] = 1.0
+    noise = once.photometry.flux - once.solution.light.model
+    light = replace(once.solution.light, model=model)
+    alone = with_solution(once, light=light)
+    alone = replace(alone, photometry=replace(alone.photometry, flux=model + noise))
+    assert "half of this one" not in alone.finding("period").words
+    twice = np.minimum(model, made_up_light(np.mod(phase - 0.5, 1.0)))
+    twice[np.abs(np.mod(phase - 0.5 + 0.5, 1.0) - 0.5) > 0.06] = model[
+        np.abs(np.mod(phase - 0.5 + 0.5, 1.0) - 0.5) > 0.06
+    ]
+    doubled = replace(alone, photometry=replace(alone.photometry, flux=twice + noise))
+    finding = doubled.finding("period")
+    assert finding.verdict == FAIL
+    assert "half a period after primary eclipse are as faint as in it" in finding.words
+
+
 def test_two_velocity_curves_settle_the_period() -> None:
     phase = phase_of(GOOD)
     case = with_light(GOOD, made_up_light(np.mod(phase + 0.25, 0.5) - 0.25))

@@ -11,11 +11,14 @@ from shadowscale.judge.check import Check
 from shadowscale.judge.evidence import Bools, Evidence
 from shadowscale.judge.finding import Finding
 from shadowscale.judge.windows import EclipseWindow
-from shadowscale.judge.words import number
+from shadowscale.judge.words import counted, number
 
 CORE = 0.5  # part of an eclipse, about its middle, from which a depth is measured
 SURE = 3.0  # sigmas
 FEWEST_VELOCITIES = 6
+COPIED = 0.3  # share of an eclipse's depth, in that share of the points, where there should be none
+FEWEST_COPIED = 5
+FAINTER = 4.0  # sigmas of a point, levels of nights among them
 
 
 @dataclass(frozen=True)
@@ -51,6 +54,13 @@ def true_period(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
             "The velocities swing once a period, which confirms it against its half and its double."
         )
     primary, secondary = evidence.windows
+    copy = _copy(evidence)
+    if copy is not None:
+        window, count = copy
+        return check.failed(
+            f"{counted(count, 'point')} half a period after {window.name} eclipse {'is' if count == 1 else 'are'} as faint as in it, "
+            "where this solution has no eclipse: the true period is half of this one."
+        )
     if not (primary.happens and secondary.happens):
         return check.warned(
             f"In this solution only one eclipse happens a period. {_odd_and_even(evidence)}"
@@ -84,6 +94,32 @@ def true_period(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     return check.passed(
         f"Primary and secondary eclipse are two different ones: {reason}.", max(away, lopsided)
     )
+
+
+def _copy(evidence: Evidence) -> tuple[EclipseWindow, int] | None:
+    """The eclipse that comes back half a period later, and how many points show it there.
+
+    Seen in the light itself, since levels of nights may have taken such an eclipse up.
+    """
+    light, windows = evidence.light, evidence.windows
+    flux = evidence.photometry.flux[light.row]
+    free = ~np.any([np.abs(w.offset(light.phase)) < 1.1 * w.outer for w in windows], axis=0)
+    for window in windows:
+        for place in range(len(evidence.bands)):
+            band = light.band == place
+            within = np.abs(window.offset(light.phase)) < window.outer
+            if not (window.happens and (band & free).any() and (band & within).any()):
+                continue
+            usual = float(np.median(flux[band & free]))
+            scatter = 1.48 * float(np.median(np.abs(flux[band & free] - usual))) / usual
+            depth = 1 - float(np.min(light.model[band & within]))
+            if COPIED * depth < FAINTER * scatter:
+                continue
+            later = band & free & (np.abs(window.offset(light.phase - 0.5)) < window.outer)
+            count = int((later & (1 - flux / usual > COPIED * depth)).sum())
+            if count >= FEWEST_COPIED and count > COPIED * later.sum():
+                return window, count
+    return None
 
 
 def _velocity_curve(evidence: Evidence) -> bool:
