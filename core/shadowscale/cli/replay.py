@@ -43,5 +43,5 @@ def run(arguments: Namespace) -> None:
         write_results(
             replayed.session, folder, overwrite=arguments.overwrite, report=report, painters=drawing
         )
-    if not arguments.quiet:
+    if not (arguments.quiet and replayed.same):
         print(replayed.words())

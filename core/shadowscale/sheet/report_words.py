@@ -67,7 +67,7 @@ def _kinds(sheet: Sheet, value: dict[str, float]) -> str:
         if f"T23_{eclipse}" in value:
             kind = "annular" if larger_behind else "total"
         depth = value.get(f"depth{eclipse}")
-        deep = f", {100 * depth:.3g} % deep" if depth is not None else ""
+        deep = f", {100 * depth:.3g}\N{NO-BREAK SPACE}% deep" if depth is not None else ""
         words.append(f"{name} eclipse is {kind} and takes {hours:.3g} hours{deep}")
     return f"The {' ; the '.join(words)}.".replace(" ;", ";") if words else ""
 
