@@ -35,7 +35,7 @@ def place(bench: Bench) -> tuple[QStackedWidget, tuple[QTabWidget, ...]]:
     ]
     right = _split(Qt.Orientation.Vertical, [*pictures, tabs[2]], [190, 110, 330])
     right.setStretchFactor(2, 1)
-    whole = _split(Qt.Orientation.Horizontal, [left, right], [780, 500])
+    whole = _split(Qt.Orientation.Horizontal, [left, right], [724, 556])
     whole.setStretchFactor(0, 1)
     holder = QWidget()
     layout = QVBoxLayout(holder)

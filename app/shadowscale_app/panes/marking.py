@@ -11,6 +11,8 @@ from shadowscale_app.desk import Change
 from shadowscale_app.panes.light_pair import LightPair
 from shadowscale_app.panes.pane import Pane
 
+NO_POINTS = "No points inside: draw round some."
+
 
 class Marking:
     """Turns the gestures on some pictures of a pane into the pane's wishes."""
@@ -43,6 +45,8 @@ class Marking:
         )
         if rows.size:
             self._pane.asked.emit("brushed", rows)
+        else:
+            self._pane.told.emit(NO_POINTS)
 
 
 def _circular(pane: Pane) -> bool:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from shadowscale.fit.solution import DERIVED, Estimate
 from shadowscale.quantities import parse_key
@@ -60,7 +60,13 @@ def _cells(
         estimate = known.get(name)
         if estimate is None:
             continue
-        value, error = value_and_error(name, estimate)
+        value, error = value_and_error(name, _even(estimate))
         sign = unit_sign("deg") if name == "inclination" else ""
         found.append((symbol(name), value + sign, error))
     return tuple(found)
+
+
+def _even(estimate: Estimate) -> Estimate:
+    """The larger limit on both sides: a line at a glance has no room for two."""
+    limits = [each for each in (estimate.minus, estimate.plus) if each is not None]
+    return replace(estimate, minus=max(limits), plus=max(limits)) if limits else estimate

@@ -230,10 +230,17 @@ def _with_correlation(row: Row, strongest: Mapping[str, tuple[float, str]]) -> R
     if found is None:
         return row
     value, other = found
-    text = f"{value:+.2f} {symbol(other)}".replace("-", "\N{MINUS SIGN}")
+    text = f"{value:+.2f} {_beside(row.key, other)}".replace("-", "\N{MINUS SIGN}")
     return replace(
         row, strongest=text if abs(value) >= 0.1 else "", correlation=value, partner=other
     )
+
+
+def _beside(key: str, other: str) -> str:
+    """The other's symbol; its band or source goes without saying where it is the same."""
+    label = parse_key(key).label
+    text = symbol(other)
+    return text.removesuffix(f" {label}") if parse_key(other).label == label else text
 
 
 def _group(quantity: Quantity) -> str:

@@ -114,7 +114,7 @@ def test_rows_cover_the_system_and_what_follows() -> None:
         row.effect for row in rows.values() if row.basic and not row.key.startswith("offset")
     )
     assert rows["M1"].bounds_text == ""
-    assert rows["inclination"].bounds_text == "0 \N{HORIZONTAL ELLIPSIS} 90"
+    assert rows["inclination"].bounds_text == "5 \N{HORIZONTAL ELLIPSIS} 90"
 
 
 def test_a_value_set_by_hand_has_no_error_any_more() -> None:
@@ -125,7 +125,7 @@ def test_a_value_set_by_hand_has_no_error_any_more() -> None:
 
 
 def test_values_outside_their_bounds_are_refused() -> None:
-    with pytest.raises(ValueError, match=r"inclination of the orbit must lie in 0 .* 90, found 91"):
+    with pytest.raises(ValueError, match=r"inclination of the orbit must lie in 5 .* 90, found 91"):
         with_value(made_up_session(), "inclination", 91.0)
     with pytest.raises(ValueError, match="there is no model yet"):
         with_value(made_up_session(solved=False), "inclination", 89.0)
