@@ -44,14 +44,6 @@ _UNREADABLE = (
 )
 
 
-def dispatcher_of(function: Callable[..., Any], fastmath: frozenset[str]) -> Any:
-    """numba's dispatcher of a function: compiles at the first call, or takes the code from the disk."""
-    _spare_linear_algebra()
-    options: dict[str, Any] = {"fastmath": set(fastmath)} if fastmath else {}
-    return _cached(njit(nogil=True, error_model="numpy", **options)(function))
-
-
-@cache
 def _spare_linear_algebra() -> None:
     """Let numba's array functions load without scipy's BLAS, which it looks for and no kernel needs.
 
@@ -63,6 +55,15 @@ def _spare_linear_algebra() -> None:
         import_module("numba.np.arraymath")
     finally:
         linalg.ensure_blas = look
+
+
+_spare_linear_algebra()  # once: modules are imported under a lock
+
+
+def dispatcher_of(function: Callable[..., Any], fastmath: frozenset[str]) -> Any:
+    """numba's dispatcher of a function: compiles at the first call, or takes the code from the disk."""
+    options: dict[str, Any] = {"fastmath": set(fastmath)} if fastmath else {}
+    return _cached(njit(nogil=True, error_model="numpy", **options)(function))
 
 
 @cache
