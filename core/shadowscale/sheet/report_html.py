@@ -82,4 +82,5 @@ def _inline(name: str, svg: str) -> str:
     text = text.replace("fill: #ffffff", "fill: var(--paper)")
     opening, rest = text.split(">", 1)
     opening = re.sub(r'\s(width|height)="[^"]*"', "", opening)
-    return Markup(f'{opening} role="img">{rest}')
+    label = name.replace("_", " ")
+    return Markup(f'{opening} role="img" aria-label="{label}">{rest}')
