@@ -195,20 +195,20 @@ class _Newest:
 
 
 class _Reporting:
-    """Passes progress on, at most ten times a second, with the time left."""
+    """Passes progress on with the time left: at most ten times a second, but always where it says something new."""
 
     def __init__(self, lane: LongLane, wanted: threading.Event) -> None:
         self._lane, self._wanted = lane, wanted
         self._began = time.monotonic()
-        self._told = 0.0
+        self._told, self._words = 0.0, ""
 
     def report(self, fraction: float, words: str) -> None:
         if self._wanted.is_set():
             raise Stopped
         now = time.monotonic()
-        if now - self._told < 0.1 and fraction < 1.0:
+        if now - self._told < 0.1 and fraction < 1.0 and words == self._words:
             return
-        self._told = now
+        self._told, self._words = now, words
         spent = now - self._began
         left = spent * (1 - fraction) / fraction if fraction > 0.02 and spent > 0.5 else -1.0
         self._lane.progressed.emit(fraction, words, left)

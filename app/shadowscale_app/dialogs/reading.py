@@ -156,6 +156,7 @@ class ReadingDialog(QDialog):
                 grid.addWidget(widget, number, column)
         self.form.setObjectName("quiet")
         self.foot.setWordWrap(True)
+        self.foot.setTextInteractionFlags(Qt.TextInteractionFlag.TextSelectableByMouse)
         self.rows.setEditTriggers(QAbstractItemView.EditTrigger.NoEditTriggers)
         named(self.rows, "First rows of the file", "As the program reads them")
         self.rows.setMaximumHeight(220)

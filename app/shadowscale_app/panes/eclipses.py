@@ -98,11 +98,11 @@ def _geometry_text(session: Session) -> str:
     tints = {"contacts": now.contact, "fit": now.model}
     parts = []
     for line in geometry_lines(session):
-        cells = "&nbsp;&nbsp;".join(
+        cells = "&ensp;".join(
             f"{sign} <b>{value}</b><span style='color:{now.quiet}'>{error}</span>"
             for sign, value, error in line.cells
         )
-        parts.append(f"<span style='color:{tints[line.source]}'>{line.source}</span>&nbsp; {cells}")
+        parts.append(f"<span style='color:{tints[line.source]}'>{line.source}</span>&ensp;{cells}")
     return "<br>".join(parts)
 
 

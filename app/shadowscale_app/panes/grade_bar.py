@@ -10,7 +10,7 @@ from shadowscale.view.rows import BADLY, FAIRLY, STRONG, WELL, Row
 from shadowscale_app import theme
 from shadowscale_app.models.quantities import ROW
 
-BAR = 26.0
+BAR = 20.0
 SIGNS = {WELL: "", FAIRLY: "!", BADLY: "!!"}
 
 
@@ -34,7 +34,7 @@ class GradeBar(QStyledItemDelegate):
             strong = abs(row.correlation) >= STRONG
             painter.setPen(QColor(now.badly if strong else now.quiet))
             painter.setFont(theme.small_font(-1.0))
-            words = area.adjusted(BAR + 15, 0, 0, 0)
+            words = area.adjusted(BAR + 12, 0, 0, 0)
             text = painter.fontMetrics().elidedText(
                 row.strongest, Qt.TextElideMode.ElideRight, int(words.width())
             )
@@ -55,7 +55,7 @@ class GradeBar(QStyledItemDelegate):
         painter.drawRoundedRect(QRectF(ground.left(), ground.top(), BAR * row.bar, 5), 2, 2)
         painter.setPen(tint)
         painter.drawText(
-            QRectF(ground.right() + 2, area.top(), 14, area.height()),
+            QRectF(ground.right() + 2, area.top(), 12, area.height()),
             Qt.AlignmentFlag.AlignVCenter,
             SIGNS.get(row.grade, ""),
         )
