@@ -130,7 +130,7 @@ TABLE: tuple[Entry, ...] = (
     Entry("restore", "Take back all points set aside by hand", "Edit", lambda b: b.points.take_all_back(), "", "They take part again; those that the fit or the file set aside do not", lambda s: bool(s.exclusions)),
     Entry("level", "Add stretch outside eclipse here", "Edit", _span("level"), "Ctrl+L", "At the phase under the cursor: only such stretches tell the light outside eclipse then", _has_markers, rule_before=True),
     Entry("excluded", "Add excluded stretch here", "Edit", _span("excluded"), "Ctrl+X", "At the phase under the cursor: its points take part in nothing", _has_markers),
-    Entry("drop_span", "Remove stretch with the keyboard's marker", "Edit", lambda b: b.points.drop_span(b.pictures()), "Del", "The stretch whose edge was clicked, or reached with Tab", _has_markers),
+    Entry("drop_span", "Remove the stretch that was clicked", "Edit", lambda b: b.points.drop_span(b.pictures()), "Del", "Outside eclipse or excluded; its edge was clicked, or reached with Tab", _has_markers),
     Entry("keep", f"Keep this solution{ELLIPSIS}", "Edit", lambda b: b.panes["Kept"].ask_name(), "Ctrl+K", "Remember it under a name", _is_solved, rule_before=True),  # type: ignore[attr-defined]
     Entry("compare", f"Compare with file{ELLIPSIS}", "Edit", lambda b: b.files.ask_compare(b.show_beside), "", "Put another session, a sheet or a typed table beside the solution", _is_solved),
     Entry("solve", "Solve", "Solve", lambda b: b.work.solve(), "F5", "Find masses and radii from the data", _has_light, bar="Solve"),

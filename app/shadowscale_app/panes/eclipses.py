@@ -52,7 +52,7 @@ class EclipsesPane(Pane):
         self.inviting = Inviting(split, NOTHING, "Solve")
         self.inviting.accepted.connect(lambda: self.asked.emit("solve", None))
         self.geometry_words = QLabel("")
-        self.geometry_words.setContentsMargins(10, 0, 10, 2)
+        self.geometry_words.setContentsMargins(5, 0, 0, 2)
         self.geometry_words.setFont(theme.small_font())
         self.geometry_words.setAccessibleName("Geometry")
         # its text changes while a marker is dragged: the layout must not follow
@@ -98,11 +98,13 @@ def _geometry_text(session: Session) -> str:
     tints = {"contacts": now.contact, "fit": now.model}
     parts = []
     for line in geometry_lines(session):
-        cells = "&ensp;".join(
+        cells = "&nbsp;&nbsp;".join(
             f"{sign} <b>{value}</b><span style='color:{now.quiet}'>{error}</span>"
             for sign, value, error in line.cells
         )
-        parts.append(f"<span style='color:{tints[line.source]}'>{line.source}</span>&ensp;{cells}")
+        parts.append(
+            f"<span style='color:{tints[line.source]}'>{line.source}</span>&nbsp;&nbsp;{cells}"
+        )
     return "<br>".join(parts)
 
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from PySide6.QtCore import QModelIndex, QPersistentModelIndex, QRectF, Qt
 from PySide6.QtGui import QColor, QPainter
-from PySide6.QtWidgets import QStyledItemDelegate, QStyleOptionViewItem
+from PySide6.QtWidgets import QStyle, QStyledItemDelegate, QStyleOptionViewItem
 
 from shadowscale.view.rows import BADLY, FAIRLY, STRONG, WELL, Row
 from shadowscale_app import theme
@@ -32,7 +32,9 @@ class GradeBar(QStyledItemDelegate):
             self._bar(painter, area, row, now)
         if row.strongest:
             strong = abs(row.correlation) >= STRONG
-            painter.setPen(QColor(now.badly if strong else now.quiet))
+            selected = bool(option.state & QStyle.StateFlag.State_Selected)
+            tint = now.accent_ink if selected else now.badly if strong else now.quiet
+            painter.setPen(QColor(tint))
             painter.setFont(theme.small_font(-1.0))
             words = area.adjusted(BAR + 12, 0, 0, 0)
             text = painter.fontMetrics().elidedText(

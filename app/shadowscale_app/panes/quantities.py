@@ -189,9 +189,7 @@ class QuantitiesPane(Pane):
         row = self.chosen()
         usable = row is not None and row.basic
         self.slider.setEnabled(usable)
-        self.name.setText(
-            row.symbol if row is not None and usable else "Choose a quantity to move it"
-        )
+        self.name.setText(_named_with_bounds(row) if row is not None and usable else NOTHING)
         if not self.slider.isSliderDown():
             self._centre()
 
@@ -216,3 +214,7 @@ class QuantitiesPane(Pane):
     def _let_go(self) -> None:
         self._centre()
         self.let_go.emit()
+
+
+def _named_with_bounds(row: Row) -> str:
+    return f"{row.symbol}  ({row.bounds_text})" if row.bounds_text else row.symbol
