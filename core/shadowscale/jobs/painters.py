@@ -6,6 +6,7 @@ is ready when the solution is; then it divides itself, so that two processors dr
 
 from __future__ import annotations
 
+import gc
 import os
 import pickle
 import subprocess
@@ -79,6 +80,7 @@ def main() -> None:
     os.dup2(2, 1)  # whatever a library prints must not come among the figures
     with suppress(EOFError, BrokenPipeError, KeyboardInterrupt):
         warm_up()
+        gc.disable()  # a short life: looking for cycles among so many small objects would be in vain
         shown = pickle.load(into)
         _send(out, _divided(shown) if sys.platform == "linux" else all_figures(shown))
 
