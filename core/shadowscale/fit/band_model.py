@@ -154,6 +154,8 @@ class BandModel:
     def light(self, time: Floats) -> Floats:
         """(n,) light at `time` in any order, one outside eclipse where there are no small effects."""
         time = np.ascontiguousarray(time, dtype=np.float64)
+        if not time.flags.writeable:  # kernels take one kind of array
+            time = time.copy()
         if not _band.in_order(time):
             return self._unsorted(time)
         flux = np.empty(time.size)

@@ -43,7 +43,7 @@ def model_velocities(system: System, star: int, times: Floats) -> Floats:
     """
     if star not in (1, 2):
         raise ValueError(f"star: expected 1 or 2, found {star!r}")
-    times = np.ascontiguousarray(times, dtype=np.float64)
+    times = np.array(times, dtype=np.float64)  # kernels take one kind of array: writable ones
     rows = np.empty((times.size, 5))
     values = system.values
     velocity_rows(times, values["period"], values["epoch"], constants_of(values), rows)
