@@ -8,9 +8,13 @@ import pytest
 
 from commands import shadowscale
 
+NO_REPORT = ("--report", "no")  # saves seconds where no test looks at it
+
 
 def test_replay_gives_the_same_numbers(small, tmp_path):
-    ran = shadowscale("replay", small.results / "session.json", "--out", tmp_path / "again")
+    ran = shadowscale(
+        "replay", small.results / "session.json", "--out", tmp_path / "again", *NO_REPORT
+    )
     assert (ran.status, ran.out, ran.err) == (0, "the same numbers\n", "")
     one, again = (
         json.loads((folder / "sheet.json").read_text())
@@ -27,7 +31,7 @@ def test_replay_says_what_differs(small, tmp_path):
     document["solution"]["estimates"]["M1"]["value"] *= 1 + 1e-6
     document["solution"]["estimates"]["M2"]["value"] *= 1 + 1e-11
     path.write_text(json.dumps(document))
-    ran = shadowscale("replay", path, "--out", tmp_path / "again")
+    ran = shadowscale("replay", path, "--out", tmp_path / "again", *NO_REPORT)
     assert ran.status == 0
     assert "1 numbers differ" in ran.out
     assert "M1: was " in ran.out
@@ -44,7 +48,7 @@ def test_replay_refuses_files_that_changed(small, tmp_path):
     assert ran.status == 3
     assert "the file that the session was saved with" in ran.err
     solved = shadowscale(
-        "solve", tmp_path / "copy" / "results" / "session.json", "--out", tmp_path / "s"
+        "solve", tmp_path / "copy" / "results" / "session.json", "--out", tmp_path / "s", *NO_REPORT
     )
     assert solved.status == 0
     assert "photometry.csv changed since the session was saved" in solved.err
@@ -127,7 +131,7 @@ def test_damaged_files_give_a_sentence_and_never_a_traceback(small, tmp_path, se
     else:
         words = ["minima" if name == "photometry.csv" else "solve", "data/photometry.csv"]
         words += ["--velocities", "data/velocities.csv"] if name == "velocities.csv" else []
-    out = [] if words[0] == "minima" else ["--out", "o"]
+    out = [] if words[0] == "minima" else ["--out", "o", *NO_REPORT]
     ran = shadowscale(*words, *out, folder=tmp_path / "copy")
     print(f"seed {seed}: {name}, status {ran.status}: {ran.err[:200]}")
     assert ran.status in (0, 2, 3, 4)

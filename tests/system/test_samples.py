@@ -64,7 +64,7 @@ def test_the_description_makes_these_files(root, name):
 def test_a_sample_solves_to_its_truth(root, name, tmp_path):
     """Each main quantity within four of its own sigmas of what was simulated."""
     folder = root / "sample_sessions" / name
-    ran = shadowscale("solve", folder / "session.json", "--out", tmp_path / "out")
+    ran = shadowscale("solve", folder / "session.json", "--out", tmp_path / "out", "--report", "no")
     assert ran.status == 0, ran.err
     sheet = json.loads((tmp_path / "out" / "sheet.json").read_text())
     truth = json.loads((folder / "truth.json").read_text())["values"]

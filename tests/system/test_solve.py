@@ -37,9 +37,12 @@ def test_all_promised_files_are_there_and_follow_their_schemas(small, sheet):
 
 
 def test_masses_and_radii_are_those_that_were_simulated(small, sheet):
-    """Truth lies within four sigma and the sigmas are small: 0.1 % velocities, 0.4 % photometry."""
+    """Truth lies within four sigma, and the sigmas are small: 0.1 % velocities, 0.4 % photometry.
+
+    The radii's would be half as large if third light were known.
+    """
     truth = json.loads((small.folder / "data" / "truth.json").read_text())["values"]
-    for name, relative in (("M1", 0.02), ("M2", 0.02), ("R1", 0.03), ("R2", 0.03)):
+    for name, relative in (("M1", 0.02), ("M2", 0.02), ("R1", 0.05), ("R2", 0.06)):
         found = sheet["quantities"][name]
         assert found["how"] == "derived"
         assert abs(found["value"] - truth[name]) < 4 * max(found["minus"], found["plus"]), name
@@ -80,7 +83,8 @@ def test_a_person_is_told_the_masses_and_where_the_files_are(small):
 
 
 def test_the_session_of_the_results_solves_to_the_same_numbers(small, sheet, tmp_path):
-    ran = shadowscale("solve", small.results / "session.json", "--out", tmp_path / "out", "--quiet")
+    words = ("--out", tmp_path / "out", "--quiet", "--report", "no")
+    ran = shadowscale("solve", small.results / "session.json", *words)
     assert (ran.status, ran.out, ran.err) == (0, "", "")
     again = json.loads((tmp_path / "out" / "sheet.json").read_text())
     for part in ("quantities", "bands", "correlations", "fit", "alternatives", "decisions"):
