@@ -12,6 +12,22 @@ from typing import Any, TypeVar, cast
 F = TypeVar("F", bound=Callable[..., Any])
 
 
+_waiting: list[Callable[[], None]] = []
+
+
+def when_compiling(tell: Callable[[], None] | None) -> None:
+    """Have `tell` called, once, before a kernel is compiled that no cache holds: that takes long.
+
+    None takes the wish back.
+    """
+    _waiting[:] = [] if tell is None else [tell]
+
+
+def _compiling() -> None:
+    while _waiting:
+        _waiting.pop()()
+
+
 class Kernel:
     """A function that becomes machine code at its first call; other kernels may call it."""
 
@@ -27,7 +43,7 @@ class Kernel:
         """numba's own object."""
         from shadowscale._machine_code import dispatcher_of
 
-        return dispatcher_of(self._function, self._fastmath)
+        return dispatcher_of(self._function, self._fastmath, _compiling)
 
     @property
     def _numba_type_(self) -> Any:

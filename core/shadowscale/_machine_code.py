@@ -60,10 +60,15 @@ def _spare_linear_algebra() -> None:
 _spare_linear_algebra()  # once: modules are imported under a lock
 
 
-def dispatcher_of(function: Callable[..., Any], fastmath: frozenset[str]) -> Any:
-    """numba's dispatcher of a function: compiles at the first call, or takes the code from the disk."""
+def dispatcher_of(
+    function: Callable[..., Any], fastmath: frozenset[str], missed: Callable[[], None]
+) -> Any:
+    """numba's dispatcher of a function: compiles at the first call, or takes the code from the disk.
+
+    `missed` is called where the disk has none.
+    """
     options: dict[str, Any] = {"fastmath": set(fastmath)} if fastmath else {}
-    return _cached(njit(nogil=True, error_model="numpy", **options)(function))
+    return _cached(njit(nogil=True, error_model="numpy", **options)(function), missed)
 
 
 @cache
@@ -169,13 +174,20 @@ class _Cache(caching.FunctionCache):
 
     _impl_class = _Entry
 
+    def __init__(self, py_func: Any, missed: Callable[[], None]) -> None:
+        super().__init__(py_func)
+        self._missed = missed
+
     def load_overload(self, sig: Any, target_context: Any) -> Any:
         """The stored code; None if there is none or it cannot be read."""
+        found = None
         try:
-            return super().load_overload(sig, target_context)
+            found = super().load_overload(sig, target_context)
         except _UNREADABLE:
             self._forget()
-            return None
+        if found is None:
+            self._missed()
+        return found
 
     def save_overload(self, sig: Any, data: Any) -> None:
         """Store code; a full or vanished disk only costs the time to compile again."""
@@ -190,10 +202,10 @@ class _Cache(caching.FunctionCache):
             self.flush()
 
 
-def _cached(dispatcher: Any) -> Any:
+def _cached(dispatcher: Any, missed: Callable[[], None]) -> Any:
     """The same dispatcher with our cache, where there is any place for one."""
     try:
-        dispatcher._cache = _Cache(dispatcher.py_func)
+        dispatcher._cache = _Cache(dispatcher.py_func, missed)
     except (RuntimeError, OSError):  # no folder at all
         return dispatcher
     return dispatcher

@@ -159,6 +159,24 @@ def test_a_disk_that_cannot_be_written_to_costs_nothing_but_time(monkeypatch, tm
     assert plus_one(1) == 2
 
 
+def test_whoever_waits_for_a_compiler_is_told_once(small_package):
+    told = """
+from shadowscale._compiled import when_compiling
+from shadowscale.caller import twice
+when_compiling(lambda: print("wait"))
+print(twice(10), twice(10.0))
+"""
+    place = {**os.environ, "PYTHONPATH": str(small_package.parent)}
+    said = [
+        subprocess.run(
+            [sys.executable, "-c", told], env=place, capture_output=True, text=True, check=True
+        ).stdout.split()
+        for _ in range(2)
+    ]
+
+    assert said == [["wait", "12", "12.0"], ["12", "12.0"]]
+
+
 def test_the_engine_loads_without_its_compiler():
     told = "import shadowscale.fit.solve, sys; print([n for n in ('numba', 'scipy') if n in sys.modules])"
     done = subprocess.run(

@@ -3,12 +3,15 @@
 from __future__ import annotations
 
 import sys
+from functools import partial
 from types import TracebackType
 from typing import TextIO
 
+from shadowscale._compiled import when_compiling
 from shadowscale.progress import SILENT, Progress
 
 WIDTH = 30
+COMPILING = "making machine code for this computer: about a minute, the first time only"
 
 
 class Bar:
@@ -28,6 +31,12 @@ class Bar:
             self._stream.flush()
             self._shown = line
 
+    def note(self, words: str) -> None:
+        """Put a line above the bar."""
+        self.clear()
+        self._stream.write(words + "\n")
+        self._stream.flush()
+
     def clear(self) -> None:
         """Take the bar away."""
         if self._shown:
@@ -45,7 +54,10 @@ class bar:
 
     def __enter__(self) -> Progress:
         """The progress to report to."""
-        return SILENT if self._bar is None else self._bar
+        if self._bar is None:
+            return SILENT
+        when_compiling(partial(self._bar.note, COMPILING))
+        return self._bar
 
     def __exit__(
         self,
@@ -55,4 +67,5 @@ class bar:
     ) -> None:
         """Clear the line, also before an error is told."""
         if self._bar is not None:
+            when_compiling(None)
             self._bar.clear()
