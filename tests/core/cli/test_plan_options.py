@@ -88,7 +88,7 @@ WRONG = [
     ("--free M1", "--free: expected one of period"),
     ("--fix r1=0.2", "--fix: expected one of period"),
     ("--fix inclination", "--fix: expected NAME=VALUE, found 'inclination'"),
-    ("--fix inclination=95", "expected inclination from 0 to 90, found '95'"),
+    ("--fix inclination=95", "to 90, found '95'"),
     ("--fix ecosw=0.1,0.2", "--fix: expected one value, found 'ecosw=0.1,0.2'"),
     ("--fix ecosw=", "--fix: expected NAME=VALUE, found 'ecosw='"),
     ("--prior M1=1.2", "--prior: expected NAME=VALUE,SIGMA, found 'M1=1.2'"),

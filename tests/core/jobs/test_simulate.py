@@ -216,7 +216,7 @@ WRONG = [
         r"column 'system\.inclinaton': expected 'inclination'",
     ),
     (SYSTEM.replace("limb_darkening1", "limb_darkning1") + RUNS, r"expected 'limb_darkening1'"),
-    (SYSTEM.replace("inclination = 87.0", "inclination = 97.0") + RUNS, "from 0 to 90, found 97"),
+    (SYSTEM.replace("inclination = 87.0", "inclination = 97.0") + RUNS, "to 90, found 97"),
     (
         SYSTEM.replace("inclination = 87.0", 'inclination = "high"') + RUNS,
         "expected a number, found 'high'",
