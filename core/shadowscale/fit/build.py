@@ -3,14 +3,17 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
+from typing import TYPE_CHECKING
 
 from shadowscale.data.photometry import Photometry
 from shadowscale.data.velocities import Velocities
-from shadowscale.fit.limb import LimbChoice
 from shadowscale.fit.plan import EFFECTS, Plan
 from shadowscale.fit.system import System
 from shadowscale.light.laws import LAWS
 from shadowscale.quantities import Key, key, parse_key
+
+if TYPE_CHECKING:
+    from shadowscale.fit.limb import LimbChoice
 
 GEOMETRY = ("period", "epoch", "radius_sum", "radius_ratio", "inclination")
 SHAPE = ("ecosw", "esinw")

@@ -4,13 +4,16 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 from shadowscale.fit.solution import DERIVED, Estimate
-from shadowscale.jobs.compare import Comparison, Difference, compare
-from shadowscale.jobs.compare_inputs import Compared, solved
 from shadowscale.jobs.typed_table import Number
 from shadowscale.session.session import Session
 from shadowscale.view.written import symbol, value_and_error
+
+if TYPE_CHECKING:
+    from shadowscale.jobs.compare import Comparison, Difference
+    from shadowscale.jobs.compare_inputs import Compared
 
 FAR = 3.0  # sigmas from which a difference carries the sign
 SIGN = "\N{NOT EQUAL TO} "
@@ -38,6 +41,9 @@ class SideBySide:
 
 def side_by_side(session: Session, beside: Sequence[Compared] = ()) -> SideBySide:
     """The present solution first, then those kept, then those of other files."""
+    from shadowscale.jobs.compare import compare
+    from shadowscale.jobs.compare_inputs import solved
+
     held = [] if session.solution is None else [(PRESENT, session.solution)]
     held += [(kept.name, kept.solution) for kept in session.kept]
     columns = [*(solved(name, solution, session) for name, solution in held), *beside]
