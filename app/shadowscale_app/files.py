@@ -55,7 +55,8 @@ class Files(QObject):
         self._timer = QTimer(self)
         self._timer.setInterval(JOURNAL_MS)
         self._timer.timeout.connect(self.write_journal)
-        self._timer.start()
+        if not immediate:
+            self._timer.start()
 
     def ask_open(self) -> None:
         """Ask which files, and open them."""

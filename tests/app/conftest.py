@@ -16,12 +16,13 @@ from PySide6.QtCore import (
     QtMsgType,
     qInstallMessageHandler,
 )
-from PySide6.QtWidgets import QApplication
+from PySide6.QtWidgets import QApplication, QDialog
 
 from made_up import made_up_session
 from shadowscale.session.session import Session
 from shadowscale_app import theme, trouble
 from shadowscale_app.bench import Bench
+from shadowscale_app.dialogs.brushing import ask_brush
 
 # said by the offscreen platform about itself, not by the program
 ALLOWED = ("This plugin does not support", "propagateSizeHints")
@@ -64,12 +65,17 @@ def own_settings(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[No
         monkeypatch.setenv("XDG_DATA_HOME", str(tmp_path / "share"))
     else:  # a folder for tests, though one for all of them
         QStandardPaths.setTestModeEnabled(True)
-    QSettings.setDefaultFormat(QSettings.Format.IniFormat)
-    for scope in (QSettings.Scope.UserScope, QSettings.Scope.SystemScope):
-        QSettings.setPath(QSettings.Format.NativeFormat, scope, str(tmp_path))
-        QSettings.setPath(QSettings.Format.IniFormat, scope, str(tmp_path))
+    settle_in(tmp_path)
     yield
     QStandardPaths.setTestModeEnabled(False)
+
+
+def settle_in(folder: Path) -> None:
+    """Settings are kept in this folder from now on."""
+    QSettings.setDefaultFormat(QSettings.Format.IniFormat)
+    for scope in (QSettings.Scope.UserScope, QSettings.Scope.SystemScope):
+        QSettings.setPath(QSettings.Format.NativeFormat, scope, str(folder))
+        QSettings.setPath(QSettings.Format.IniFormat, scope, str(folder))
 
 
 @pytest.fixture
@@ -89,21 +95,76 @@ def session() -> Session:
 
 @pytest.fixture
 def bench(qapp: QApplication, session: Session, told: list[trouble.Trouble]) -> Iterator[Bench]:
-    """The window with that session; the fit does not follow, so that no solver is needed."""
-    qapp.setStyleSheet(
-        ""
-    )  # as at start-up: the window is dressed when it is built, which is quicker
+    """A new window with that session; the fit does not follow, so that no solver is needed."""
+    window = built(qapp)
+    put(window, session)
+    yield window
+    window.end()
+    destroyed(window)
+    assert [each.whole for each in told] == []
+
+
+@pytest.fixture(scope="session")
+def window(qapp: QApplication, tmp_path_factory: pytest.TempPathFactory) -> Iterator[Bench]:
+    """One window for all tests that only look, type and drag: building it takes longer than they do."""
+    settle_in(tmp_path_factory.mktemp("window"))
+    found = built(qapp)
+    yield found
+    found.end()
+    destroyed(found)
+
+
+@pytest.fixture
+def shared(window: Bench, session: Session, told: list[trouble.Trouble]) -> Iterator[Bench]:
+    """The one window as if it were new, with that session."""
+    put(window, session)
+    yield window
+    tidied(window)
+    assert [each.whole for each in told] == []
+
+
+def built(application: QApplication) -> Bench:
+    """A window, dressed when it is built as at start-up: that is quicker."""
+    application.setStyleSheet("")
     window = Bench(immediate=True)
-    theme.dress(qapp)
+    theme.dress(application)
+    return window
+
+
+def put(window: Bench, session: Session) -> None:
+    """Show a session in the window."""
     window.live.following = False
     window.resize(1280, 720)
     window.desk.begin(session)
     window.show()
-    qapp.processEvents()
-    yield window
-    window.end()
+    QApplication.processEvents()
+
+
+def tidied(window: Bench) -> None:
+    """Nothing of a test stays in the window."""
+    window.live.forget()
+    if window.brushing:
+        window.toggle_brush()
+    if window.scheme:
+        window.choose_scheme(theme.FOLLOW)
+    for dialog in window.findChildren(QDialog):
+        dialog.deleteLater()
+    QApplication.sendPostedEvents(None, QEvent.Type.DeferredDelete.value)
+    for title in ("Folded curve", "Eclipses", "Quantities"):
+        window.bring(title)
+    window.panes["To scale"].play.setChecked(False)
+    window.panes["To scale"].point(0.0)
+    window.panes["Help"].choice.setCurrentIndex(0)
+    window.points.ask = ask_brush
+    window.reset_views()
+    window.desk.begin(Session())
+    window.setFocus()
+    QApplication.processEvents()
+
+
+def destroyed(window: Bench) -> None:
+    """The window and all that belongs to it goes."""
     window.hide()
     window.deleteLater()
-    qapp.processEvents()
-    qapp.sendPostedEvents(None, QEvent.Type.DeferredDelete.value)
-    assert [each.whole for each in told] == []
+    QApplication.processEvents()
+    QApplication.sendPostedEvents(None, QEvent.Type.DeferredDelete.value)

@@ -11,6 +11,12 @@ from shadowscale_app.bench import Bench
 from shadowscale_app.plots.marked import FINE, STEP, MarkedPicture
 
 
+@pytest.fixture
+def bench(shared: Bench) -> Bench:
+    """These tests leave the window as it was."""
+    return shared
+
+
 def primary(bench: Bench) -> MarkedPicture:
     """The picture of primary eclipse."""
     return bench.panes["Eclipses"].pairs["primary"].curve

@@ -31,6 +31,13 @@ from shadowscale_app.dialogs.prior import PriorDialog
 from shadowscale_app.dialogs.reading import ReadingDialog
 from shadowscale_app.samples import samples
 
+
+@pytest.fixture
+def bench(shared: Bench) -> Bench:
+    """These tests leave the window as it was."""
+    return shared
+
+
 CONTROLS = (
     QAbstractButton, QComboBox, QLineEdit, QAbstractSpinBox, QAbstractSlider, QAbstractItemView, QProgressBar,
 )  # fmt: skip

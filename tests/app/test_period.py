@@ -14,6 +14,12 @@ from shadowscale_app.bench import NO_PERIOD, Bench
 
 
 @pytest.fixture
+def bench(shared: Bench) -> Bench:
+    """These tests leave the window as it was."""
+    return shared
+
+
+@pytest.fixture
 def search(monkeypatch: pytest.MonkeyPatch) -> PeriodSearch:
     """Stands in for the search, which has tests of its own."""
     found = PeriodSearch(

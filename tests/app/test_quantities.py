@@ -13,6 +13,12 @@ from shadowscale_app.bench import Bench
 from shadowscale_app.models.quantities import ERROR, STATE, SYMBOL, VALUE
 
 
+@pytest.fixture
+def bench(shared: Bench) -> Bench:
+    """These tests leave the window as it was."""
+    return shared
+
+
 def cell(bench: Bench, key: str, column: int) -> str:
     """What the table shows."""
     pane = bench.panes["Quantities"]

@@ -12,6 +12,13 @@ from shadowscale.view.markers import handles
 from shadowscale.view.rows import FREE, HELD, WITH_PRIOR
 from shadowscale_app.bench import Bench
 
+
+@pytest.fixture
+def bench(shared: Bench) -> Bench:
+    """These tests leave the window as it was."""
+    return shared
+
+
 SAFE = (
     "undo", "redo", "magnitudes", "hours", "binned", "show_contact", "show_window", "show_level", "show_excluded",
     "level", "excluded", "reset", "restore", "brush", "follow", "light", "dark",

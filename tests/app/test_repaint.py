@@ -16,6 +16,13 @@ from shadowscale_app.bench import Bench
 from shadowscale_app.desk import Change
 from shadowscale_app.plots.points import MOST_POINTS
 
+
+@pytest.fixture
+def bench(shared: Bench) -> Bench:
+    """These tests leave the window as it was."""
+    return shared
+
+
 ROUNDS = 100
 
 

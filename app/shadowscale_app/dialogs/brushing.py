@@ -55,6 +55,8 @@ class BrushDialog(QDialog):
 def ask_brush(parent: QWidget | None, count: int) -> str | None:
     """The reason, `take back`, or None if the person gave up."""
     dialog = BrushDialog(count, parent)
-    if dialog.exec() != QDialog.DialogCode.Accepted:
+    accepted = dialog.exec() == QDialog.DialogCode.Accepted
+    dialog.deleteLater()
+    if not accepted:
         return None
     return BACK if dialog.back else dialog.reason.currentText().strip() or "set aside by hand"

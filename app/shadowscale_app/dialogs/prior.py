@@ -56,4 +56,6 @@ class PriorDialog(QDialog):
 def ask_prior(parent: QWidget | None, session: Session, key: str) -> tuple[float, float] | None:
     """Value and sigma, or None if the person gave up."""
     dialog = PriorDialog(session, key, parent)
-    return dialog.numbers() if dialog.exec() == QDialog.DialogCode.Accepted else None
+    accepted = dialog.exec() == QDialog.DialogCode.Accepted
+    dialog.deleteLater()
+    return dialog.numbers() if accepted else None

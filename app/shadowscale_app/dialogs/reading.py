@@ -66,7 +66,9 @@ def ask_reading(
 ) -> Reading | None:
     """Show the dialog; None if the person gave up."""
     dialog = ReadingDialog(path, kind, parent, may_add=may_add)
-    return dialog.reading() if dialog.exec() == QDialog.DialogCode.Accepted else None
+    accepted = dialog.exec() == QDialog.DialogCode.Accepted
+    dialog.deleteLater()
+    return dialog.reading() if accepted else None
 
 
 class ReadingDialog(QDialog):

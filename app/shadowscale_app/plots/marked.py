@@ -13,9 +13,11 @@ from shadowscale.session.session import Markers
 from shadowscale.view.markers import Handle, handles
 from shadowscale.view.written import phase_text, read_number
 from shadowscale_app import theme
+from shadowscale_app.naming import named
 from shadowscale_app.plots.marker import MarkerLine
 from shadowscale_app.plots.picture import Picture
 
+EDITING = "A phase in cycles; Enter puts the marker there, Escape leaves it where it is"
 LABEL_HEIGHT = 0.08  # of the picture, from its upper edge to a marker's label
 STEP, COARSE, FINE = 5e-4, 10.0, 0.1  # cycles a key press; factors of Shift and Alt
 BANDS = {"window": (0.945, 1.0), "level": (0.885, 0.94), "excluded": (0.0, 1.0)}
@@ -256,7 +258,7 @@ class MarkedPicture(Picture):
 
     def _ask_value(self, line: MarkerLine) -> None:
         editor = QLineEdit(f"{line.handle.phase:.6f}", self)
-        editor.setAccessibleName(f"Phase of {line.handle.words}")
+        named(editor, f"Phase of {line.handle.words}", EDITING)
         editor.setFixedWidth(110)
         place = self.place_of(line.handle.phase, self.visible().center().y()).toPoint()
         editor.move(place + QPoint(6, 0))
