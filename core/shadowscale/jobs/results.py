@@ -5,10 +5,13 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping
 from dataclasses import replace
 from pathlib import Path
+from typing import Any
 
 from shadowscale.errors import ShadowscaleError, UsageError
+from shadowscale.fit.plan import Plan
 from shadowscale.jobs.painters import Painters
 from shadowscale.session.atomic import write_bytes
+from shadowscale.session.plain import to_plain
 from shadowscale.session.session import Session
 from shadowscale.session.store import save_session
 from shadowscale.sheet import RENDERINGS, Sheet, light_curve, make_sheet, velocity_curve
@@ -40,7 +43,15 @@ def sheet_of(session: Session) -> Sheet:
         command=session.command,
         seed=session.plan.seed,
         versions=session.versions,
+        plan=_wishes(session.plan),
     )
+
+
+def _wishes(plan: Plan) -> dict[str, Any]:
+    """What was wished, as plain values; a table of coefficients by its name."""
+    table = None if plan.limb_table is None else Path(plan.limb_table).name
+    found: dict[str, Any] = to_plain(replace(plan, limb_table=table))
+    return found
 
 
 def result_files(session: Session, *, report: bool = True) -> tuple[str, ...]:

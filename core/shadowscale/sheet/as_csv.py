@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import csv
+import json
 from collections.abc import Iterator, Mapping
 from io import StringIO
 from math import isfinite
@@ -81,7 +82,8 @@ def _provenance_rows(sheet: Sheet) -> Iterator[Row]:
         "seed": made.seed,
         "time_scale": made.time_scale,
     }
-    for name, value in {**plain, **made.versions}.items():
+    wishes = {f"plan.{name}": json.dumps(value) for name, value in made.plan.items()}
+    for name, value in {**plain, **made.versions, **wishes}.items():
         yield {"section": "provenance", "name": name, "value": value}
     names = file_names(file.path for file in made.inputs)
     for file in made.inputs:

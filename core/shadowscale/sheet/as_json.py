@@ -118,6 +118,7 @@ def _provenance(provenance: Provenance) -> dict[str, Any]:
         "command": provenance.command,
         "seed": provenance.seed,
         "time_scale": provenance.time_scale,
+        "plan": dict(provenance.plan),
     }
 
 

@@ -67,6 +67,9 @@ class Provenance:
     inputs: tuple[InputFile, ...] = ()
     program: str = f"shadowscale {__version__}"
     versions: Mapping[str, str] = field(default_factory=library_versions)
+    plan: Mapping[str, object] = field(
+        default_factory=dict
+    )  # what was wished, where not the default
 
 
 @dataclass(frozen=True, eq=False)
@@ -120,6 +123,7 @@ def make_sheet(
     command: str = "",
     seed: int = 0,
     versions: Mapping[str, str] | None = None,
+    plan: Mapping[str, object] | None = None,
 ) -> Sheet:
     """The sheet of a solution.
 
@@ -136,6 +140,8 @@ def make_sheet(
         Of every random step.
     versions : mapping of library to version, or None
         That the solution was made with; None: the present ones.
+    plan : mapping, or None
+        What was wished of the solution, in plain numbers and words.
     """
     inputs = _inputs(solution, photometry, velocities)
     return Sheet(
@@ -152,7 +158,12 @@ def make_sheet(
         notes=_notes(solution, photometry, velocities),
         outliers=_outliers(solution, photometry, velocities),
         provenance=Provenance(
-            command, seed, photometry.time_scale, inputs, versions=versions or library_versions()
+            command,
+            seed,
+            photometry.time_scale,
+            inputs,
+            versions=versions or library_versions(),
+            plan=plan or {},
         ),
     )
 

@@ -1,10 +1,13 @@
 """Writing results, refusing to overwrite, and comparing a replay; from an invented solution."""
 
+import csv
 import json
 import os
 from dataclasses import replace
+from io import StringIO
 from pathlib import Path
 
+import jsonschema
 import numpy as np
 import pytest
 
@@ -22,6 +25,8 @@ from shadowscale.jobs.solve import IN_WINDOW, NOT_FOR_LEVEL, refuse_fatal, table
 from shadowscale.jobs.words import summary
 from shadowscale.judge.finding import FAIL, Finding
 from shadowscale.session import Markers, Session, Source
+from shadowscale.sheet import as_csv, as_json
+from shadowscale.sheet.as_json import schema
 from shadowscale.versions import library_versions
 
 
@@ -182,6 +187,20 @@ def test_a_session_keeps_the_versions_that_solved_it(session, tmp_path):
     write_results(session, tmp_path, report=False, overwrite=True)
     document = json.loads((tmp_path / "session.json").read_text())
     assert document["versions"] == library_versions()
+
+
+def test_the_sheet_says_what_was_wished_of_it(session, tmp_path):
+    table = tmp_path / "private" / "table.txt"
+    plan = replace(session.plan, extinction=(0.1, 0.02), limb_table=str(table))
+    document = json.loads(as_json(sheet_of(replace(session, plan=plan))))
+    jsonschema.validate(document, schema())
+    wishes = document["provenance"]["plan"]
+    assert wishes["extinction"] == [0.1, 0.02]
+    assert wishes["limb_table"] == "table.txt"
+    assert wishes["priors"][0]["name"] == plan.priors[0].name
+    spread = csv.DictReader(StringIO(as_csv(sheet_of(replace(session, plan=plan)))))
+    told = {row["name"]: row["value"] for row in spread if row["section"] == "provenance"}
+    assert json.loads(told["plan.extinction"]) == [0.1, 0.02]
 
 
 def test_trouble_with_the_report_costs_nothing_else(session, tmp_path, monkeypatch):
