@@ -7,9 +7,6 @@ import sys
 from collections.abc import Sequence
 from pathlib import Path
 
-from shadowscale.cli import COMMANDS
-from shadowscale.cli import main as run_command
-
 # Libraries that Qt needs of the system, and the Debian packages that hold them.
 PACKAGES = {
     "libEGL": "libegl1",
@@ -38,8 +35,12 @@ _LIBRARY = re.compile(r"(lib[A-Za-z0-9_+-]+?(?:-\d+)?)(?:\.\d+)*\.so")
 def main(argv: Sequence[str] | None = None) -> int:
     """Run a command or open the window; the exit status."""
     words = list(sys.argv[1:] if argv is None else argv)
-    if words and (words[0] in COMMANDS or not _can_open(words)):
-        return run_command(words)
+    if words:  # an empty window waits for no command
+        from shadowscale.cli import COMMANDS
+        from shadowscale.cli import main as run_command
+
+        if words[0] in COMMANDS or not _can_open(words):
+            return run_command(words)
     return _open_window(words)
 
 
