@@ -134,7 +134,7 @@ def add_figure(pdf: PdfFile, content: bytes) -> Figure:
     ValueError
         If it is not such a file.
     """
-    bodies = dict(_bodies(content))
+    bodies = dict(_bodies(content)) if b"startxref" in content else {}
     page = next((body for body in bodies.values() if re.search(rb"/Type\s*/Page\b", body)), None)
     if page is None:
         raise ValueError("a PDF file of one page was expected")

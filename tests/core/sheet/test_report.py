@@ -188,6 +188,12 @@ def test_an_outside_reader_finds_titles_letters_and_figures(document, drawings):
         assert described["/FontDescriptor"]["/FontFile2"].get_data()[:4] == b"\0\1\0\0"
 
 
+def test_what_is_no_figure_is_refused(drawings, document):
+    for content in (b"", b"%PDF-1.5", drawings["system"].replace(b"/MediaBox", b"/OtherBox")):
+        with pytest.raises(ValueError, match="was expected"):
+            add_figure(PdfFile(), content)
+
+
 def test_without_velocities_there_is_no_scale_and_no_masses():
     session = made_up_session(velocities=False)
     report = report_of(session)
