@@ -34,6 +34,7 @@ _NO_KIND = (
     "the file does not say whether its Julian dates are barycentric, heliocentric or geocentric"
 )
 _NO_SCALE = "in which time scale (TDB or UTC: about 69 s apart)"
+_SAY_IT = "say it in a comment at its top, such as '# time: BJD_TDB - 2457000'"
 _ALIKE = frozenset({"TDB", "TT"})  # less than 2 ms apart
 
 
@@ -155,7 +156,7 @@ def common_scale(clocks: Sequence[tuple[str, Clock, float]]) -> tuple[str, tuple
             continue
         shared = _shared(scale, clock.scale)
         if shared is None:
-            help = "convert one of them, or say the time system of each file (time_system)"
+            help = f"convert one of them; if the file is wrong about it, {_SAY_IT}"
             found = f"{clock.scale} ({clock.reason})"
             raise TimeScaleError(
                 Problem(path, f"times in {scale}, as in {first_path}", found, help=help)
@@ -178,7 +179,7 @@ def check_zero_points(photometry: Photometry, velocities: Velocities) -> None:
 
 def _far_apart(path: str, middle: float, other: str, other_middle: float) -> Problem:
     expected = f"times near {other_middle:.6g}, as in {other}"
-    help = "one of the files may count from another zero point (MJD or JD); give its time_system"
+    help = f"one of the files may count from another zero point (MJD or JD); {_SAY_IT}"
     return Problem(path, expected, f"times near {middle:.6g}", help=help)
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping
 from pathlib import Path
 
@@ -173,6 +174,18 @@ def test_velocities_on_another_zero_point_than_the_light_are_refused(tmp_path: P
     nearer = ["time,rv1", *(f"{2459000 - 20_000 + k},{10 * (-1) ** k}" for k in range(12))]
     older = read_velocities(written(tmp_path, "w.csv", nearer))  # spectra of half a century ago
     check_zero_points(read_photometry(light_file), older)
+
+
+def test_what_the_complaint_advises_helps(tmp_path: Path) -> None:
+    first = _file(tmp_path, "a.csv", "BJD_TDB", 0.0, seed=1)
+    second = _file(tmp_path, "b.csv", "time", 2457000.0, seed=2)
+    with pytest.raises(TimeScaleError, match="another zero point") as caught:
+        read_photometry([first, second])
+    (advice,) = re.findall("'(# .*)'", caught.value.problems[0].help)
+    second.write_text(advice + "\n" + second.read_text())
+    table = read_photometry([first, second])
+    assert table.time_scale == "BJD_TDB"
+    assert np.ptp(table.time) < 1
 
 
 def test_two_zero_points_in_one_file_are_refused(tmp_path: Path) -> None:
