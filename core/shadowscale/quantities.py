@@ -116,7 +116,7 @@ QUANTITIES: Mapping[str, Quantity] = _register(
         "i",
         "i",
         "deg",
-        0.0,
+        5.0,  # below it separate stars make no eclipse
         90.0,
         0.01,
         "inclination of the orbit",
@@ -239,7 +239,7 @@ QUANTITIES: Mapping[str, Quantity] = _register(
         "l3",
         r"\ell_3",
         "",
-        0.0,
+        -0.5,
         0.99,
         1e-3,
         "third light as a fraction of the total outside eclipse",

@@ -13,6 +13,8 @@ import json
 import sys
 import time
 from concurrent.futures import ProcessPoolExecutor
+from dataclasses import replace
+from functools import partial
 from pathlib import Path
 
 import numpy as np
@@ -28,20 +30,29 @@ PULLED = (
 SOLVED_WITHIN = 6.0  # sigmas, of every pulled quantity: beyond it, another minimum was taken
 
 
-def run_case(number: int) -> dict[str, object]:
-    """Solve one case; what came of it, ready for JSON."""
+def run_case(number: int, *, told: bool, limb_known: bool) -> dict[str, object]:
+    """Solve one case, `told` the ephemeris or nothing; what came of it, ready for JSON."""
     from shadowscale.errors import ShadowscaleError
     from shadowscale.fit.plan import Plan
     from shadowscale.fit.solve import solve
+    from shadowscale.quantities import key
 
     case = draw_case(number)
-    third = case.truth.value("third_light", case.truth.bands[0])
-    plan = Plan(
-        period=case.truth.value("period") * (1 + 1e-6),
-        epoch=case.truth.value("epoch"),
-        exposure=case.truth.exposure,
-        free=("third_light",) if third > 0 else (),
-    )
+    plan = Plan(exposure=case.truth.exposure)
+    if told:
+        plan = replace(
+            plan,
+            period=case.truth.value("period") * (1 + 1e-6),
+            epoch=case.truth.value("epoch"),
+        )
+    if limb_known:
+        plan = replace(
+            plan,
+            fixed={
+                key(f"limb_darkening{star}", band): case.truth.limb_darkening(star, band)
+                for star in (1, 2) for band in case.truth.bands
+            },
+        )  # fmt: skip
     began = time.perf_counter()
     try:
         solution = solve(case.photometry, case.velocities, plan)
@@ -74,16 +85,14 @@ def _pulls(truth, solution) -> dict[str, float]:
         if name == "epoch":
             difference -= round(difference / true["period"]) * true["period"]
         side = estimate.plus if difference < 0 else estimate.minus
-        found[name] = difference / side if side else np.copysign(99.0, difference)
+        found[name] = difference / side
     return found
 
 
 def _bound_ratios(case, solution) -> dict[str, float]:
-    """Reported sigma over the Cramer-Rao bound at the truth, for what was fitted."""
-    from dataclasses import replace
-
+    """Sigmas of the sheet over the Cramer-Rao bound at the truth, for what was fitted."""
     from shadowscale.fit.least_squares import covariance
-    from shadowscale.fit.limb import GREY_COMMON, GREY_OWN
+    from shadowscale.fit.limb import grey_errors
     from shadowscale.fit.objective import Constraint
     from shadowscale.fit.problem import Problem
 
@@ -94,31 +103,33 @@ def _bound_ratios(case, solution) -> dict[str, float]:
     true["epoch"] = case.truth.value("epoch") + cycles * case.truth.value("period")
     at_truth = replace(system, values=true)
     problem = Problem(case.photometry, case.velocities)
+    common, own = grey_errors(blind=True)
     rules = [
-        Constraint(name, 0.0, GREY_OWN, coordinate=True, common=name[-1], common_sigma=GREY_COMMON)
+        Constraint(name, 0.0, own, coordinate=True, common=name[-1], common_sigma=common)
         for name in system.free
         if name.startswith("limb_darkening")
     ]
     objective = problem.objective(at_truth, problem.weighting(), rules)
     x = objective.vector.pack(true)
     matrix, _ = covariance(objective(x))
-    sigma = np.sqrt(np.diag(matrix))
-    reported, _ = covariance(_at_solution(problem, solution, rules))
-    ratio = np.sqrt(np.diag(reported)) / sigma
+    bound = np.sqrt(np.diag(matrix))
     return {
-        n: float(r) for n, r in zip(system.free, ratio, strict=True) if n.split("[")[0] in PULLED
+        name: _half_width(solution.estimates[name], name) / sigma
+        for name, sigma in zip(system.free, bound.tolist(), strict=True)
+        if name.split("[")[0] in PULLED
     }
 
 
-def _at_solution(problem, solution, rules):
-    """Normal equations at the solution with the fit's own weights."""
-    from dataclasses import replace
+def _half_width(estimate, name: str) -> float:
+    """Half the distance of the limits on the sheet; for the inclination in cos^2, as the bound is."""
+    from shadowscale.orbit.elements import cos_squared
 
-    weighting = replace(
-        problem.weighting(), why=solution.light.why, light_scale=solution.fit.error_scale
-    )
-    objective = problem.objective(solution.system, weighting, rules)
-    return objective(objective.vector.pack(solution.system.values))
+    low, high = estimate.value - estimate.minus, estimate.value + estimate.plus
+    if name != "inclination":
+        return (high - low) / 2
+    if high < 90.0:
+        return (cos_squared(low) - cos_squared(high)) / 2
+    return cos_squared(low) - cos_squared(estimate.value)
 
 
 def main() -> None:
@@ -126,15 +137,18 @@ def main() -> None:
     parser = argparse.ArgumentParser(description=__doc__.splitlines()[0])
     parser.add_argument("--count", type=int, default=200)
     parser.add_argument("--first", type=int, default=1)
+    parser.add_argument("--given", choices=("nothing", "ephemeris"), default="nothing")
+    parser.add_argument("--limb", choices=("grey", "known"), default="grey")
     parser.add_argument("--workers", type=int, default=2)
     parser.add_argument("--json", type=Path, help="write every case here")
     options = parser.parse_args()
+    run = partial(run_case, told=options.given == "ephemeris", limb_known=options.limb == "known")
     numbers = range(options.first, options.first + options.count)
     if options.workers > 1:
         with ProcessPoolExecutor(options.workers) as pool:
-            results = list(pool.map(run_case, numbers, chunksize=4))
+            results = list(pool.map(run, numbers, chunksize=4))
     else:
-        results = [run_case(number) for number in numbers]
+        results = [run(number) for number in numbers]
     if options.json:
         options.json.write_text(json.dumps(results, indent=1))
     report(results)
@@ -159,7 +173,7 @@ def report(results: list[dict]) -> None:
             print(f"  off {each['case']}: {worst} by {each['pulls'][worst]:.1f} sigma, "
                   f"{len(each['sides'])} alternatives [{each['words']}]")  # fmt: skip
     print(
-        f"{'quantity':26} {'n':>5} {'mean pull':>10} {'std':>6} {'mad std':>8} {'sigma/bound':>12} {'5%..95%':>14}"
+        f"{'quantity':26} {'n':>5} {'mean pull':>10} {'std':>6} {'mad std':>8} {'sigma/bound':>12} {'5%..95%':>14} {'in 20 %':>8}"
     )
     for name in PULLED:
         pulls = np.array(
@@ -174,7 +188,8 @@ def report(results: list[dict]) -> None:
         line = f"{name:26} {pulls.size:5d} {pulls.mean():10.2f} {pulls.std():6.2f} {robust:8.2f}"
         if ratio.size:
             low, high = np.quantile(ratio, [0.05, 0.95])
-            line += f" {np.median(ratio):12.3f} {low:6.3f}..{high:6.3f}"
+            within = np.mean((ratio > 0.8) & (ratio < 1.25))
+            line += f" {np.median(ratio):12.3f} {low:6.3f}..{high:6.3f} {100 * within:6.0f} %"
         print(line)
     everything = np.array([p for e in good for p in e["pulls"].values()])
     print(f"{'all':26} {everything.size:5d} {everything.mean():10.2f} {everything.std():6.2f}")

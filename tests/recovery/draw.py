@@ -6,12 +6,16 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from shadowscale.data.bands import wavelength_of
 from shadowscale.data.photometry import InputFile, Photometry
 from shadowscale.data.velocities import Velocities
+from shadowscale.fit.limb import GREY_COMMON, GREY_OWN
 from shadowscale.fit.model import model_light, model_velocities
 from shadowscale.fit.system import System
 from shadowscale.geometry.absolute import velocity_amplitudes
 from shadowscale.geometry.roche import lobe_radius
+from shadowscale.light.grey import grey_coefficients
+from shadowscale.light.laws import LAWS, Law
 from shadowscale.quantities import key
 
 BANDS = ("B", "V", "R", "I")
@@ -65,14 +69,44 @@ def _system(rng: np.random.Generator) -> System:
             "esinw": float(ecc * np.sin(angle)), "K1": float(k1), "K2": float(k2),
             "gamma1": 12.0, "gamma2": 12.0,
         }  # fmt: skip
-        brightness = float(rng.uniform(0.08, 0.98))
-        for number, band in enumerate(bands):
-            values[key("surface_brightness_ratio", band)] = brightness ** (1.3 - 0.2 * number)
-            values[key("third_light", band)] = third * (1 - 0.1 * number)
-            for star in (1, 2):
-                values[key(f"limb_darkening{star}", band, 1)] = float(rng.uniform(0.55, 0.8))
-                values[key(f"limb_darkening{star}", band, 2)] = float(rng.uniform(0.5, 0.9))
+        values |= _atmospheres(rng, bands, third)
         return System(values, (), "power-2", bands, ("spectrograph",), light_time=True)
+
+
+def _atmospheres(
+    rng: np.random.Generator, bands: tuple[str, ...], third: float
+) -> dict[str, float]:
+    """Brightness, third light and limb darkening of two stars of random temperature, band by band.
+
+    Limb darkening is that of grey atmospheres, wrong by as much as the solver's prior says that
+    they are: mostly the same error in every band and both stars.
+    """
+    law = LAWS["power-2"]
+    teff1 = float(np.exp(rng.uniform(np.log(4500.0), np.log(12000.0))))
+    teffs = teff1, teff1 * float(rng.uniform(0.55, 0.995))
+    common = GREY_COMMON * rng.standard_normal(2)
+    values = {}
+    for number, band in enumerate(bands):
+        wavelength = wavelength_of(band)
+        bright = [1.0 / np.expm1(14387769.0 / (wavelength * teff)) for teff in teffs]
+        values[key("surface_brightness_ratio", band)] = float(bright[1] / bright[0])
+        values[key("third_light", band)] = third * (1 - 0.1 * number)
+        for star, teff in enumerate(teffs, 1):
+            start = law.to_sampling(np.array(grey_coefficients(teff, wavelength, law.name)))
+            pair = _physical(rng, law, start + common)
+            for place, value in enumerate(pair, 1):
+                values[key(f"limb_darkening{star}", band, place)] = float(value)
+    return values
+
+
+def _physical(rng: np.random.Generator, law: Law, centre: np.ndarray) -> np.ndarray:
+    """Coefficients with an error of their own, bright at the limb and darker outward."""
+    spread = GREY_OWN
+    while True:
+        pair = law.from_sampling(centre + spread * rng.standard_normal(2))
+        if np.all(np.isfinite(pair)) and 0.0 < pair[0] < 1.0 and 0.1 < pair[1] < 2.0:
+            return pair
+        spread *= 1.05
 
 
 def _observed(seed: int, truth: System, rng: np.random.Generator) -> Case | None:
@@ -117,6 +151,8 @@ def _times(rng: np.random.Generator, count: int, period: float, epoch: float) ->
 def _worth(truth: System, times: np.ndarray, flux: np.ndarray, noise: float) -> bool:
     """Both eclipses seen at more than noise, ingress and egress sampled."""
     cycles = (times - truth.value("epoch")) / truth.value("period")
+    if not _repeats(truth, cycles, flux):
+        return False
     near = np.abs(cycles - np.round(cycles)) < 0.15
     first, second = flux[near], flux[~near]
     for part, least in ((first, 12.0), (second, 8.0)):
@@ -125,6 +161,18 @@ def _worth(truth: System, times: np.ndarray, flux: np.ndarray, noise: float) -> 
         if inside.sum() < 25 or np.sqrt(np.sum(lost[inside] ** 2)) < least * noise * 2:
             return False
     return first.min() < second.min() - 2 * noise / np.sqrt(25)
+
+
+def _repeats(truth: System, cycles: np.ndarray, flux: np.ndarray) -> bool:
+    """Both eclipses seen in two cycles at least: without that nobody can tell the period."""
+    near = np.abs(cycles - np.round(cycles)) < 0.15
+    for rows in (near, ~near):
+        lost = 1.0 - flux[rows]
+        number = np.round(cycles[rows]) if rows is near else np.floor(cycles[rows])
+        inside = lost > 0.3 * lost.max(initial=0.0)
+        if np.count_nonzero(np.unique_counts(number[inside]).counts >= 5) < 2:
+            return False
+    return True
 
 
 def _photometry(

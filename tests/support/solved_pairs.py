@@ -70,7 +70,9 @@ PAIRS: Mapping[str, Pair] = {
     "contact": Pair(system={"r1": 0.42, "r2": 0.34, "inclination": 80.0}, velocities=18),
     "grazing": Pair(system={"inclination": 80.5}, noise=Noise(0.006), nights=30, velocities=12),
     "larger companion": Pair(
-        system={"r1": 0.13, "r2": 0.15, "inclination": 84.0}, velocities=18
+        system={"r1": 0.13, "r2": 0.15, "inclination": 84.0},
+        velocities=18,
+        plan=ephemeris(fixed={"third_light": (0.0,)}),
     ),
     "held circular": Pair(
         system={"ecosw": 0.004, "esinw": 0.01}, nights=30, plan=ephemeris(orbit="circular")

@@ -11,7 +11,7 @@ from shadowscale.data.photometry import Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.errors import NotConstrainedError, UsageError
 from shadowscale.fit.build import is_basic, means
-from shadowscale.fit.derived import ASSUMABLE, assumed_inputs, derived_value
+from shadowscale.fit.derived import assumed_inputs, derived_value
 from shadowscale.fit.least_squares import covariance
 from shadowscale.fit.plan import (
     EFFECT_STATES,
@@ -35,7 +35,7 @@ UNEXPLAINED = 0.7  # share of a star's velocity scatter that an orbit may leave
 
 def check_plan(plan: Plan, photometry: Photometry, velocities: Velocities | None) -> None:
     """UsageError where the plan names a quantity, band, source or choice that is not there."""
-    _check_choices(plan)
+    _check_choices(plan, photometry.bands)
     _check_clock(plan, photometry)
     sources = () if velocities is None else velocities.sources
     for option, name, basic_only in _names(plan):
@@ -61,7 +61,7 @@ def _names(plan: Plan) -> list[tuple[str, str, bool]]:
     ]
 
 
-def _check_choices(plan: Plan) -> None:
+def _check_choices(plan: Plan, bands: tuple[str, ...]) -> None:
     choices: list[tuple[str, str, tuple[str, ...]]] = [
         ("--law", plan.law, tuple(LAWS)),
         ("--orbit", plan.orbit, ORBITS),
@@ -69,6 +69,7 @@ def _check_choices(plan: Plan) -> None:
         ("--light-time", plan.light_time, LIGHT_TIME),
         ("--intervals", plan.intervals, INTERVALS),
         *(("--effect", name, EFFECTS) for name in plan.effects),
+        *(("--wavelength", band, bands) for band in plan.wavelengths),
         *(("--effect", state, EFFECT_STATES) for state in plan.effects.values()),
     ]
     for option, found, allowed in choices:
@@ -132,7 +133,7 @@ def check_wishes(plan: Plan, system: System) -> None:
         if is_basic(name):
             found = any(means(name, key) for key in system.values)
         else:
-            found = name in ASSUMABLE or _can_be_had(name, plan, system)
+            found = _can_be_had(name, plan, system)
         if not found:
             wanted = "" if "K1" in system.values else " (velocities are missing)"
             raise UsageError(option, name, expected=f"a quantity that these data can give{wanted}")

@@ -113,20 +113,21 @@ def _omega(stars: Stars) -> float:
     return degrees(atan2(stars.get("esinw"), stars.get("ecosw"))) % 360.0
 
 
-def _logg2(stars: Stars) -> float:
-    """Needs no mass: only K1 and the light curve."""
-    amplitude = stars.get("K1")
-    return float(
-        absolute.logg_companion(stars.get("period"), amplitude, radius=stars.radii[1], **stars.tilt)
-    )
-
-
 def _radius(star: int) -> Callable[[Stars], float]:
     return lambda stars: stars.radii[star - 1] * stars.axis
 
 
-def _logg1(stars: Stars) -> float:
-    return float(absolute.logg(stars.masses[0], _radius(1)(stars)))
+def _logg(star: int) -> Callable[[Stars], float]:
+    """Needs no mass: only the light curve and how the other star moves."""
+
+    def logg(stars: Stars) -> float:
+        amplitude, period = stars.get(f"K{3 - star}"), stars.get("period")
+        if not np.isfinite(amplitude):
+            return float(absolute.logg(stars.masses[star - 1], _radius(star)(stars)))
+        radius = stars.radii[star - 1]
+        return float(absolute.logg_companion(period, amplitude, radius=radius, **stars.tilt))
+
+    return logg
 
 
 def _density(star: int) -> Callable[[Stars], float]:
@@ -193,8 +194,8 @@ FUNCTIONS: Mapping[str, Callable[[Stars], float]] = {
     "M2": lambda stars: stars.masses[1],
     "R1": _radius(1),
     "R2": _radius(2),
-    "logg1": _logg1,
-    "logg2": _logg2,
+    "logg1": _logg(1),
+    "logg2": _logg(2),
     "density1": _density(1),
     "density2": _density(2),
     "vsync1": _vsync(1),
@@ -220,8 +221,11 @@ BAND_FUNCTIONS: Mapping[str, Callable[[Stars, str], float]] = {
 
 
 def derived_values(system: System, assumed: Mapping[str, float] | None = None) -> dict[str, float]:
-    """Every derived quantity by key; NaN where the system cannot give it."""
+    """Every derived quantity by key; NaN where the system cannot give it, or is no orbit at all."""
     stars = Stars(system, assumed or {})
+    if stars.eccentricity >= 1.0:  # a step of an error beyond what an orbit can be
+        bands = (key(name, band) for name in BAND_FUNCTIONS for band in system.bands)
+        return dict.fromkeys((*FUNCTIONS, *bands), nan)
     found = {name: function(stars) for name, function in FUNCTIONS.items()}
     for name, by_band in BAND_FUNCTIONS.items():
         found |= {key(name, band): by_band(stars, band) for band in system.bands}
@@ -275,8 +279,8 @@ def _why_absent(name: str, system: System) -> str:
         return "needs both luminosities, an apparent magnitude, bolometric corrections and the extinction"
     if name in ("density1", "density2"):
         return "needs a mass ratio: none was measured or assumed"
-    if name == "logg2" and "K1" not in system.values:
-        return "needs the velocity amplitude of star 1"
+    if name in ("logg1", "logg2"):
+        return f"needs the velocity amplitude of star {3 - int(name[-1])}, or a mass"
     if not both and "K1" in system.values:
         return "only star 1 was measured: needs an assumed M1 or mass ratio"
     if "K2" in system.values:

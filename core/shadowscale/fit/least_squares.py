@@ -89,9 +89,10 @@ def minimise(
         promised = _promise(here, moving)
         if promised < tolerance:
             return Minimum(x, here, iteration, True)
+        room = lower - x, upper - x
         for _ in range(REJECTIONS):
-            step = np.clip(x + _step(here, moving, damping), lower, upper) - x
-            there = objective(x + step)
+            step = _step(here, moving, damping, room=room)
+            there = objective(np.clip(x + step, lower, upper))
             if there.chi2 < here.chi2:
                 break
             damping, growth = max(damping, 1e-8) * growth, growth * 2.0
@@ -104,7 +105,7 @@ def minimise(
         damping *= max(0.1, 1.0 - (2.0 * quality - 1.0) ** 3)
         growth = 2.0
         gains.append(gained)
-        x, here = x + step, there
+        x, here = np.clip(x + step, lower, upper), there
         if len(gains) >= PATIENCE and sum(gains[-PATIENCE:]) < stalled:
             return Minimum(x, here, iteration, True)
     return Minimum(x, here, most, False)
@@ -134,12 +135,24 @@ def _solve(matrix: Floats, right: Floats) -> Floats:
     return np.asarray(solved, dtype=np.float64)
 
 
-def _step(normal: Normal, moving: NDArray[np.bool_], damping: float) -> Floats:
-    """The damped step, zero for coordinates held by a bound."""
+def _step(
+    normal: Normal, moving: NDArray[np.bool_], damping: float, *, room: tuple[Floats, Floats]
+) -> Floats:
+    """The damped step within `room` (down, up); what would leave it stops there, and the rest follows.
+
+    Cutting a step off at the bounds alone would leave the floor of the valley.
+    """
     step = np.zeros(moving.size)
-    if moving.any():
-        matrix, right, scale = _scaled(normal, moving)
-        step[moving] = _solve(matrix + damping * np.eye(right.size), right) / scale
+    free = moving.copy()
+    while free.any():
+        right = normal.downhill - normal.matrix[:, ~free] @ step[~free]
+        scaled, downhill, scale = _scaled(Normal(normal.chi2, right, normal.matrix), free)
+        step[free] = _solve(scaled + damping * np.eye(scale.size), downhill) / scale
+        out = free & ((step < room[0]) | (step > room[1]))
+        if not out.any():
+            break
+        step = np.clip(step, *room)
+        free &= ~out
     return step
 
 

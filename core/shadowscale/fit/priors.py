@@ -1,13 +1,24 @@
-"""The user's priors as constraints of the fit; limb darkening has its own (`fit.limb`)."""
+"""The user's priors as constraints of the fit, and that of third light; limb darkening has its own (`fit.limb`).
+
+Eclipses thinned by a third star look like those of other radii, limb darkening and inclination, so
+light alone can hardly tell that there is none: taking it as zero because the data do not demand it
+would make the errors of the radii far too small. So it is free unless held, under a wide prior.
+"""
 
 from __future__ import annotations
 
-from shadowscale.fit.build import means
+from math import hypot
+
+from shadowscale.fit.build import is_third_light, means, named
 from shadowscale.fit.derived import ASSUMABLE, derived_value
 from shadowscale.fit.objective import Constraint
 from shadowscale.fit.plan import Plan, Prior
 from shadowscale.fit.system import System
 from shadowscale.quantities import QUANTITIES, parse_key
+
+# A third star that gives more than half of the light would show in the spectra (our choice); most of
+# the error is common to all bands, the rest is the colour of that star.
+THIRD_COMMON, THIRD_OWN = 0.3, 0.15
 
 
 def prior_constraints(plan: Plan, system: System) -> tuple[Constraint, ...]:
@@ -20,7 +31,30 @@ def prior_constraints(plan: Plan, system: System) -> tuple[Constraint, ...]:
             found += _on_keys(prior, system)
         else:
             found += _on_derived(prior, system)
+    found += [
+        Constraint(
+            name, 0.0, THIRD_OWN,
+            coordinate=True, common="third light", common_sigma=THIRD_COMMON,
+        )
+        for name in system.free if _is_untold_third_light(plan, name)
+    ]  # fmt: skip
     return tuple(found)
+
+
+def prior_of(plan: Plan, name: str) -> tuple[float, float] | None:
+    """Value and sigma of the prior on a key, for the sheet; None without one."""
+    parsed = parse_key(name)
+    for prior in plan.priors:
+        if means(prior.name, name):
+            at = min((parsed.number or 1) - 1, len(prior.values) - 1)
+            return prior.values[at], prior.sigmas[at]
+    return (0.0, hypot(THIRD_COMMON, THIRD_OWN)) if _is_untold_third_light(plan, name) else None
+
+
+def _is_untold_third_light(plan: Plan, name: str) -> bool:
+    """Whether a key is a third light of which the user said nothing; free by name it has no prior."""
+    told = (*plan.free, *plan.fixed, *(prior.name for prior in plan.priors))
+    return is_third_light(name) and named(told, name) is None
 
 
 def is_assumed(prior: Prior, system: System) -> bool:

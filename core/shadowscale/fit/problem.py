@@ -17,6 +17,7 @@ from shadowscale.fit.system import System
 from shadowscale.fit.vector import Vector
 
 Floats = NDArray[np.float64]
+MOST_STEPS = 200  # along a narrow valley they are short
 FINAL = 1e-6  # gain in chi-squared that is left when a fit has settled: a thousandth of a sigma
 ROUGH, ROUGH_STALLED = 1e-2, 0.3  # the same while valleys are compared
 
@@ -127,7 +128,7 @@ def fit_system(
     *,
     weighting: Weighting,
     constraints: Sequence[Constraint] = (),
-    most: int = 60,
+    most: int = MOST_STEPS,
     rough: bool = False,
 ) -> Fitted:
     """Fit the free quantities of `system` from where they are; `rough` is enough to compare valleys."""

@@ -18,7 +18,6 @@ from shadowscale.fit.alternatives import Branch
 from shadowscale.fit.least_squares import covariance
 from shadowscale.fit.problem import Fitted
 from shadowscale.fit.system import System
-from shadowscale.fit.third_light import at_zero
 
 Floats = NDArray[np.float64]
 NAME = "radius_ratio"
@@ -58,7 +57,7 @@ def valley(best: Fitted, fit: Callable[[System], Fitted]) -> Valley | None:
     above, high = _limit(best, fit, direction=direction, at=at)
     lowest = min((best, low, high), key=lambda each: each.chi2)
     straight = all(abs(place.step - 1.0) < STRAIGHT for place in (below, above))
-    if straight and lowest is best and not at_zero(best).any():
+    if straight and lowest is best:
         return None
     return Valley(below.x, above.x, lowest)
 

@@ -12,12 +12,12 @@ from shadowscale.data.photometry import Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.alternatives import Branch, alternatives
 from shadowscale.fit.band_model import BandModel
-from shadowscale.fit.build import means
 from shadowscale.fit.derived import absent_words, assumed_inputs, derived_values
 from shadowscale.fit.least_squares import covariance as inverse_of
 from shadowscale.fit.model import model_velocities
 from shadowscale.fit.observed import BandData
 from shadowscale.fit.plan import Plan
+from shadowscale.fit.priors import prior_of
 from shadowscale.fit.problem import Fitted, Problem, Weighting
 from shadowscale.fit.propagate import Spread, propagated
 from shadowscale.fit.reweigh import reasons_with_outlier
@@ -35,7 +35,6 @@ from shadowscale.fit.solution import (
 )
 from shadowscale.fit.start import Ground, wished_epoch
 from shadowscale.fit.system import System
-from shadowscale.fit.third_light import at_zero, held_covariance
 from shadowscale.quantities import QUANTITIES, key, parse_key
 
 Floats = NDArray[np.float64]
@@ -139,9 +138,9 @@ def _spread(
 
 def _across(best: Fitted, ends: tuple[Floats, Floats] | None) -> Floats:
     """Covariance of the coordinates; with a curved valley, what is left when k is held."""
+    matrix, _ = inverse_of(best.minimum.normal)
     if ends is None:
-        return inverse_of(best.minimum.normal)[0]
-    matrix = held_covariance(best.minimum.normal, at_zero(best))
+        return matrix
     at = best.objective.vector.index["radius_ratio"]
     column = matrix[:, at]
     left: Floats = matrix - np.outer(column, column) / column[at]
@@ -163,7 +162,7 @@ def _estimates(
             minus, plus = sigma[name]
             if name == "inclination":
                 minus, plus = _inclination_limits(best, spread, ends)
-            found[name] = Estimate(centre[name], minus, plus, FITTED, _prior_of(plan, name))
+            found[name] = Estimate(centre[name], minus, plus, FITTED, prior_of(plan, name))
         else:
             found[name] = Estimate(value, None, None, FIXED)
     for name, value in centre.items():
@@ -172,7 +171,7 @@ def _estimates(
             minus, plus = sigma[name]
             sure = minus == plus == 0.0
             low, high = (None, None) if sure else (minus, plus)
-            found[name] = Estimate(value, low, high, how, _prior_of(plan, name))
+            found[name] = Estimate(value, low, high, how, prior_of(plan, name))
     order = {name: number for number, name in enumerate(QUANTITIES)}
     return dict(sorted(found.items(), key=lambda item: order[parse_key(item[0]).name]))
 
@@ -193,15 +192,6 @@ def _inclination_limits(
     # At 90 degrees the upper side is closed: the limit there is as wide as the room left,
     # and never narrower than a tenth of the other side.
     return minus, max(hypot(high - centre, max(0.0, *shifts)), 0.1 * minus)
-
-
-def _prior_of(plan: Plan, name: str) -> tuple[float, float] | None:
-    parsed = parse_key(name)
-    for prior in plan.priors:
-        if means(prior.name, name):
-            at = min((parsed.number or 1) - 1, len(prior.values) - 1)
-            return prior.values[at], prior.sigmas[at]
-    return None
 
 
 def _correlations(spread: Spread, free: Sequence[str]) -> tuple[tuple[str, ...], Floats]:

@@ -21,7 +21,6 @@ from shadowscale.orbit.elements import cos_squared
 from shadowscale.quantities import QUANTITIES, Key, key, parse_key
 
 Floats = NDArray[np.float64]
-LEAST_INCLINATION = 5.0  # [deg] below it separate stars make no eclipse
 
 
 def limb_keys(star: int, band: str, law: Law) -> tuple[str, ...]:
@@ -74,7 +73,7 @@ class Vector:
         upper = np.array([QUANTITIES[parse_key(name).name].upper for name in self.names])
         if "inclination" in self.index:
             at = self.index["inclination"]
-            lower[at], upper[at] = 0.0, cos_squared(LEAST_INCLINATION)
+            lower[at], upper[at] = 0.0, cos_squared(float(lower[at]))
         for block in self.limb_blocks:
             for position, (low, high) in zip(block, self.law.sampling_bounds, strict=True):
                 lower[position], upper[position] = low, high

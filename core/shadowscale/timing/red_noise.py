@@ -15,7 +15,7 @@ LEAST_SIGNAL = 4.0
 FEWEST_CELLS = 6
 RUN_GAP = 0.3  # [d] a longer one begins another night
 POINTS_OF_RUN = 8
-LEAST_WITHIN = 0.5
+LEAST_WITHIN = 0.35
 LEAST_GAIN = 40.0
 
 

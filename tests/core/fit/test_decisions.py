@@ -145,7 +145,7 @@ def test_third_light_that_is_not_there() -> None:
     held = solved(known.truth, plan, photometry=known.photometry).solution
 
     assert said.chosen == "not seen"
-    assert known.solution.estimates["third_light[V]"].value >= 0.0
+    assert abs(known.pull("third_light[V]")) < 3.5
     assert said.numbers["sigma_radius_ratio_free"] > 1.5 * said.numbers["sigma_radius_ratio_held"]
     assert said.numbers["sigma_radius_ratio_held"] == pytest.approx(
         sigma_of(held.estimates["radius_ratio"]), rel=0.2

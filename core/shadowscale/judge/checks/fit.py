@@ -46,12 +46,7 @@ def bounds(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     """Free quantities that stand at the edge of what the model accepts."""
     values = evidence.solution.system.values
     free = [name for name in evidence.solution.system.free if _known(name)]
-    # No third light is the usual case; whether it would be negative is a check of its own.
-    stuck = [
-        name for name in free
-        if _at_bound(name, values.get(name, 0.5))
-        and not (parse_key(name).name == "third_light" and values[name] == 0.0)
-    ]  # fmt: skip
+    stuck = [name for name in free if _at_bound(name, values.get(name, 0.5))]
     if not stuck:
         return check.passed("No fitted quantity stands at the edge of its range.", 0.0)
     shown = listed([f"{name} = {number(evidence.solution.system.values[name])}" for name in stuck])

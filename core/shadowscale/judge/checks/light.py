@@ -25,7 +25,7 @@ REMEDY = "Hold the coefficients at published values, or give them priors."
 
 
 def third_light(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
-    """How negative the most negative third light would be without its bound, in sigmas."""
+    """Most negative third light, in sigmas (or its value where held fixed)."""
     found = {
         band: (evidence.value("third_light", band), evidence.sigma("third_light", band))
         for band in evidence.bands
@@ -33,24 +33,22 @@ def third_light(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     found = {band: pair for band, pair in found.items() if isfinite(pair[0])}
     if not found:
         return check.silent("the model has no third light.")
-    numbers = _told(evidence)
-    without = {
-        band: (numbers[key("unbounded_third_light", band)], error)
-        for band in found
-        if (error := numbers.get(key("sigma_third_light", band), nan)) > 0
-    }
-    shown = listed([f"{_third_words(*pair)} in {band}" for band, pair in found.items()])
-    if not without:
-        return check.passed(f"Third light: {shown}.", min(value for value, _ in found.values()))
-    worst = min(without, key=lambda band: without[band][0] / without[band][1])
-    value, error = without[worst]
-    if value / error < -(check.limit or SURE):
+    depths = {band: value / error if error > 0 else value for band, (value, error) in found.items()}
+    worst = min(depths, key=lambda band: depths[band])
+    value, error = found[worst]
+    if value < 0 and not error > 0 and not evidence.is_free("third_light", worst):
+        return check.warned(
+            f"Third light in band {worst} was held at {number(value)}, and no light is negative.",
+            value,
+        )
+    if error > 0 and value / error < -(check.limit or SURE):
         return check.failed(
-            f"Third light in band {worst} would be {_third_words(value, error)}: negative by {number(-value / error)} sigma. "
+            f"Third light in band {worst} is {_third_words(value, error)}: negative by {number(-value / error)} sigma. "
             "The eclipses are deeper than two stars allow: too much sky or neighbour's light was taken off, or the model is wrong.",
             value / error,
         )
-    return check.passed(f"Third light: {shown}.", value / error)
+    shown = listed([f"{_third_words(*pair)} in {band}" for band, pair in found.items()])
+    return check.passed(f"Third light: {shown}.", depths[worst])
 
 
 def _told(evidence: Evidence) -> Mapping[str, float]:
