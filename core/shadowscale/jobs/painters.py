@@ -12,9 +12,7 @@ import pickle
 import subprocess
 import sys
 from collections.abc import Iterator
-from concurrent.futures import ProcessPoolExecutor
 from contextlib import contextmanager, suppress
-from multiprocessing import get_context
 from typing import IO
 
 from shadowscale.sheet.figure_data import Shown
@@ -90,6 +88,9 @@ _inherited: list[Shown] = []  # what the parts of the process have from before t
 
 def _divided(shown: Shown) -> Files:
     """The figures drawn by copies of this process, the slow ones first."""
+    from concurrent.futures import ProcessPoolExecutor
+    from multiprocessing import get_context
+
     _inherited.append(shown)
     names = possible_figures(shown)
     order = sorted(names, key=lambda name: -FIGURES[name].effort)
