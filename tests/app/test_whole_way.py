@@ -17,8 +17,10 @@ from PySide6.QtWidgets import QLabel, QPushButton
 from hands import drag
 from shadowscale.jobs import results
 from shadowscale.jobs.replay import replay_session
+from shadowscale.jobs.solve import solve_session
 from shadowscale.session.session import Session
 from shadowscale.session.store import open_session
+from shadowscale.view.contacts import with_start_markers
 from shadowscale.view.follow import FOLLOWED
 from shadowscale_app.bench import Bench
 from shadowscale_app.dialogs.exporting import Target
@@ -33,14 +35,10 @@ def without_report(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(results, "write_results", partial(results.write_results, report=False))
 
 
-def open_sample(bench: Bench, number: int = 0) -> Path:
-    """Click the sample on the start page; its session file."""
-    title, _, path = samples()[number]
-    bench.desk.begin(Session())
-    sample = next(b for b in bench.start.findChildren(QPushButton) if b.accessibleName() == title)
-    QTest.mouseClick(sample, Qt.MouseButton.LeftButton)
-    assert bench.long_lane.wait_until_idle()
-    return path
+@pytest.fixture(scope="module")
+def solved() -> Session:
+    """The first sample as one click leaves it."""
+    return with_start_markers(solve_session(open_session(samples()[0][2])))
 
 
 def pull_first_contact(bench: Bench, by: float = -0.004) -> None:
@@ -50,8 +48,12 @@ def pull_first_contact(bench: Bench, by: float = -0.004) -> None:
     drag(picture, start, start + by)
 
 
-def test_one_click_from_a_sample_to_both_stars(bench: Bench) -> None:
-    path = open_sample(bench)
+def test_one_click_from_a_sample_to_both_stars(bench: Bench, solved: Session) -> None:
+    title, _, path = samples()[0]
+    bench.desk.begin(Session())
+    sample = next(b for b in bench.start.findChildren(QPushButton) if b.accessibleName() == title)
+    QTest.mouseClick(sample, Qt.MouseButton.LeftButton)
+    assert bench.long_lane.wait_until_idle()
     truth = json.loads((path.parent / "truth.json").read_text(encoding="utf-8"))
 
     estimates = bench.desk.session.solution.estimates
@@ -61,12 +63,15 @@ def test_one_click_from_a_sample_to_both_stars(bench: Bench) -> None:
     assert bench.panes["Eclipses"].pairs["primary"].curve.lines
     assert bench.panes["To scale"].sky.scene is not None
     labels = bench.panes["The two stars"].findChildren(QLabel)
+    assert bench.desk.session.markers == solved.markers
     assert any(f"<b>{estimates['M1'].value:.4f}" in label.text() for label in labels)
 
 
-def test_drag_solve_export_gives_what_the_command_gives(bench: Bench, tmp_path: Path) -> None:
+def test_drag_solve_export_gives_what_the_command_gives(
+    bench: Bench, solved: Session, tmp_path: Path
+) -> None:
     """The radii of the contacts follow the marker, the sheet is that of `shadowscale solve` on the session."""
-    open_sample(bench)
+    bench.desk.begin(solved)
     bench.live.following = True
     before = bench.desk.session.contact.values
     words = bench.panes["Eclipses"].geometry_words.text()
@@ -89,9 +94,9 @@ def test_drag_solve_export_gives_what_the_command_gives(bench: Bench, tmp_path: 
 
 
 def test_what_was_only_followed_is_solved_before_it_is_written(
-    bench: Bench, tmp_path: Path
+    bench: Bench, solved: Session, tmp_path: Path
 ) -> None:
-    open_sample(bench)
+    bench.desk.begin(solved)
     bench.live.following = True
     pull_first_contact(bench)
     bench.panes["Quantities"].set_state("surface_brightness_ratio[V]", "held")
