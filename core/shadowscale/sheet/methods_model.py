@@ -85,7 +85,14 @@ def _third_light(solution: Solution) -> str:
     ]
     words = []
     if free:
-        words.append(f"Third light was fitted in {listed([plain(band) for band in free])}.")
+        priors = {solution.estimates[f"third_light[{band}]"].prior for band in free}
+        given = priors.pop() if len(priors) == 1 else None
+        prior = (
+            ""
+            if given is None
+            else f", under a prior of {given[0]:g} \N{PLUS-MINUS SIGN} {given[1]:.2g}"
+        )
+        words.append(f"Third light was fitted in {listed([plain(band) for band in free])}{prior}.")
     if held and all(text.startswith("0 ") for text in held):
         words.append(
             "Third light was held at zero." if not free else "It was held at zero elsewhere."
