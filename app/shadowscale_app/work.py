@@ -113,6 +113,7 @@ class WorkDesk(QObject):
             self.told.emit(f"Wait: {self._doing} is still going on, or stop it.")
             return
         self._doing, self._take = doing, take
+        self.told.emit("")
         self._lane.start(work)
 
     def _answered(self, answer: Answer) -> None:
@@ -152,13 +153,20 @@ class WorkDesk(QObject):
         final = solution is not None and is_final(session, self._found.get(solution, session))
 
         def work(progress: Progress) -> object:
+            from shadowscale.jobs.painters import painters
             from shadowscale.jobs.results import write_results
             from shadowscale.jobs.solve import Share, solve_session
 
-            # what was only followed is solved first: the sheet is what the command gives for the session
-            ready = session if final else solve_session(session, progress=Share(progress, 0, 0.8))
-            progress.report(0.8, "writing the sheet, curves and figures")
-            return ready, write_results(ready, target.folder, overwrite=target.replace)
+            with painters() as drawing:  # another process draws: the window stays smooth
+                # what was only followed is solved first: the sheet is what the command gives for the session
+                ready = (
+                    session if final else solve_session(session, progress=Share(progress, 0, 0.8))
+                )
+                progress.report(0.8, "writing the sheet, curves and figures")
+                written = write_results(
+                    ready, target.folder, overwrite=target.replace, painters=drawing
+                )
+            return ready, written
 
         self._start(f"exporting to {target.folder}", work, self._take_written)
 
