@@ -9,6 +9,7 @@ from made_up import made_up_session
 from shadowscale.jobs.results import sheet_of
 from shadowscale.quantities import QUANTITIES
 from shadowscale.sheet import as_ecsv, as_tex
+from shadowscale.sheet.references import REFERENCES, bibliography
 
 ARTICLE = r"\documentclass{article}\usepackage{booktabs}\begin{document}\input{sheet}\end{document}"
 
@@ -34,6 +35,23 @@ def test_tex_sets_the_table_in_a_plain_article(sheet, tmp_path):
     assert done.returncode == 0, done.stdout[-2000:]
     assert "Overfull" not in done.stdout
     assert (tmp_path / "paper.pdf").stat().st_size > 10_000
+
+
+def test_bibtex_takes_every_reference_without_a_warning(tmp_path):
+    engine = shutil.which("bibtex")
+    if engine is None:
+        pytest.skip("no bibtex here; apt-get install texlive-binaries")
+    (tmp_path / "works.bib").write_text(bibliography(REFERENCES))
+    (tmp_path / "paper.aux").write_text(
+        "\\relax\n\\citation{*}\n\\bibstyle{plain}\n\\bibdata{works}\n"
+    )
+    done = subprocess.run(
+        [engine, "paper"], cwd=tmp_path, capture_output=True, text=True, check=False
+    )
+    assert done.returncode == 0, done.stdout
+    assert "Warning" not in done.stdout
+    made = (tmp_path / "paper.bbl").read_text()
+    assert made.count("\\bibitem") == len(REFERENCES)
 
 
 def test_astropy_gives_every_number_its_unit(sheet):
