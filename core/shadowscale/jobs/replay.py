@@ -79,7 +79,10 @@ class Replay:
         if listed:
             yield f"other versions than then: {listed}"
         elif not self.same:
-            yield "data and versions are those of then: another machine, or the session was edited"
+            yield (
+                "data and versions are those of then: another machine, another build of the program, "
+                "or the session was edited"
+            )
 
 
 def replay_session(
