@@ -26,6 +26,7 @@ MOST_FLAGS = 50  # different quality flags that get a reason of their own
 NO_MEASUREMENT = 90.0  # [mag] numbers such as 99.999 stand for nothing (common practice)
 _FACTORS = {"mmag": 1e-3, "millimag": 1e-3}
 _AROUND_ZERO = {"ppm": 1e-6, "ppt": 1e-3, "%": 1e-2, "percent": 1e-2}
+_IN_SECONDS = {"d": 86400.0, "day": 86400.0, "h": 3600.0, "hour": 3600.0, "min": 60.0, "m": 1e-3}
 _FOREIGN = re.compile(r"^(k?m\s*/\s*s|km s-1|deg|rad|arcsec|d|days?|s|pix(els?)?|k|nm|m|h|min)$")
 _NO_BAND_WORDS = frozenset({"", "none", "open", "c", "e", "m", "l", "white"})
 _GOOD_WORDS = frozenset({"", "0", "ok", "good", "g", "a", "o", "true", "t", "none", "nan"})
@@ -63,7 +64,7 @@ def light_part(table: RawTable, columns: Chosen, band: str | None, reasons: Reas
         band=np.zeros(rows.count, dtype=np.int64),
         bands=(NO_BAND,),
         why=np.zeros(rows.count, dtype=np.int64),
-        exposure=rows.numbers("exposure"),
+        exposure=rows.numbers("exposure") * _seconds(rows.roles.get("exposure")),
         airmass=rows.numbers("airmass"),
         magnitudes=light == "mag",
     )
@@ -72,6 +73,12 @@ def light_part(table: RawTable, columns: Chosen, band: str | None, reasons: Reas
     _set_aside(part, reasons)
     _set_quality(part, reasons)
     return part
+
+
+def _seconds(exposure: Guess | None) -> float:
+    """One unit of the column of exposures [s]."""
+    word = "" if exposure is None else _plain_unit(exposure.unit).rstrip("s.")
+    return _IN_SECONDS.get(word, 1.0)
 
 
 def _set_units(part: LightPart, light: Guess, told: str) -> None:

@@ -54,7 +54,8 @@ class Photometry:
         0 for a row that takes part, else an index into `reasons`.
     errors_from_scatter : (number of bands,) bool
         True where the file had no errors and they were estimated.
-    exposure, airmass : (n,) float64 or None
+    exposure : (n,) float64 [s] or None
+    airmass : (n,) float64 or None
         As printed in the file; NaN where it has none.
     """
 

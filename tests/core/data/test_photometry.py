@@ -320,3 +320,16 @@ def test_every_guess_is_recorded(tmp_path: Path) -> None:
     assert recorded["time"] == "BJD_TDB: the name says time"
     assert recorded["mag"] == "mag: the name says magnitude"
     assert recorded["time_system"].startswith("BJD_TDB: BJD by the column's name")
+
+
+@pytest.mark.parametrize(
+    ("name", "printed", "seconds"),
+    [("exptime", "120", 120.0), ("exptime [min]", "2", 120.0), ("exposure [d]", "0.02", 1728.0)],
+)
+def test_exposures_are_read_in_seconds(
+    name: str, printed: str, seconds: float, tmp_path: Path
+) -> None:
+    lines = [f"{HEADER},{name}", *(f"{row},{printed}" for row in rows())]
+    table = read_photometry(written(tmp_path, "a.csv", lines))
+    assert table.exposure is not None
+    np.testing.assert_allclose(table.exposure, seconds)

@@ -93,6 +93,12 @@ def velocities_at_eclipse() -> Case:
     return with_solution(replace(GOOD, velocities=table), velocity=result)
 
 
+def long_exposures(case: Case = GOOD, *, seconds: float = 1800.0) -> Case:
+    """Files that print how long the exposures were; the model takes them for instants."""
+    exposure = np.full(case.photometry.time.size, seconds)
+    return replace(case, photometry=replace(case.photometry, exposure=exposure))
+
+
 def no_ingress() -> Case:
     """Points only at mid eclipse and outside."""
     distance = np.abs(np.mod(phase_of(GOOD) + 0.25, 0.5) - 0.25)
@@ -222,6 +228,7 @@ SPOILT: dict[str, tuple[Callable[[], Case], str, str]] = {
         "(5.04 %)",
     ),
     "points per quantity": (lambda: with_fit(GOOD, points=60), WARN, "60 points"),
+    "exposure time": (long_exposures, WARN, "Solve again with --exposure 1800"),
     "points in ingress": (no_ingress, FAIL, "0 points in ingress"),
     "coverage of eclipses": (half_primary, WARN, "primary eclipse in band V to 50 %"),
     "coverage of velocities": (velocities_at_eclipse, FAIL, "near quadrature"),
@@ -285,3 +292,22 @@ def test_an_eclipse_that_the_model_does_not_know_is_no_set_of_outliers() -> None
     assert "8 of them follow each other in one night" in finding.words
     assert dropped_in_a_row(4, fainter=0.2).finding("outliers").verdict == PASS
     assert dropped_in_a_row(8, fainter=-0.2).finding("outliers").verdict == PASS
+
+
+def test_exposures_that_were_told_are_no_trouble() -> None:
+    told = with_system(long_exposures(), exposure=1764.0)
+    assert told.finding("exposure time").verdict == PASS
+    assert long_exposures(seconds=60.0).finding("exposure time").verdict == PASS
+
+
+def test_even_points_far_apart_ask_for_the_exposure() -> None:
+    """As far apart as points from space, and an ingress of two hours."""
+    case = good_case()
+    time = case.photometry.time[0] + np.arange(case.photometry.time.size) / 32
+    even = replace(
+        case, photometry=replace(case.photometry, time=time, night=np.zeros(time.size, int))
+    )
+    finding = even.finding("exposure time")
+    assert finding.verdict == WARN
+    assert "every 45 minutes" in finding.words
+    assert with_system(even, exposure=1764.0).finding("exposure time").verdict == PASS

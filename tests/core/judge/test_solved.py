@@ -34,6 +34,7 @@ FAULTS: dict[str, tuple[str, tuple[str, ...]]] = {
     "masses": ("tiny and heavy", (FAIL,)),
     "radii": ("tiny and heavy", (WARN,)),
     "gravities and densities": ("tiny and heavy", (FAIL,)),
+    "exposure time": ("sparse", (WARN,)),
     "points in ingress": ("sparse", (WARN,)),
     "points per quantity": ("sparse", (WARN,)),
     "coverage of eclipses": ("half seen", (WARN,)),

@@ -14,6 +14,9 @@ from shadowscale.judge.finding import Finding
 from shadowscale.judge.windows import EclipseWindow
 from shadowscale.judge.words import capital, counted, listed, number, percent
 
+DAY = 86400.0  # [s]
+SAME_SPACING, MOSTLY = 0.05, 0.7
+LONG_SPACING = 0.25  # of the ingress
 INGRESS_ERROR = 0.05  # relative error of the ingress time that is asked for
 FEWEST_A_SIDE = 4
 CELLS = 10  # parts of an eclipse, each of which should hold a point
@@ -51,6 +54,61 @@ class Sides:
         """Relative error of the ingress time that these points allow."""
         count = (self.before + self.after) / 2
         return sqrt(6 / count) / self.quality if count and self.quality > 0 else float("inf")
+
+
+def exposure_time(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
+    """Exposure of the files, or the spacing of points, that the model leaves out, over the ingress."""
+    ingress = min(
+        ((w.outer - w.inner) * evidence.value("period") for w in evidence.windows if w.happens),
+        default=nan,
+    )
+    if not ingress > 0:
+        return check.silent("the length of the ingress is not known.")
+    taken = evidence.solution.system.exposure / DAY
+    printed = _printed_exposure(evidence)
+    if printed > 0:
+        share = abs(printed - taken) / ingress
+        words = f"The files print exposures of {number(DAY * printed)} s and the model takes {number(DAY * taken)} s"
+        if share <= (check.limit or 1.0):
+            return check.passed(f"{words}, which is near enough.", share)
+        return check.warned(
+            f"{words}: ingress and egress, {number(24 * 60 * ingress)} minutes long, are blurred otherwise than it thinks. "
+            f"Solve again with --exposure {number(DAY * printed)}.",
+            share,
+        )
+    spacing = _even_spacing(evidence)
+    share = spacing / ingress
+    if taken > 0 or not share > LONG_SPACING:
+        return check.passed(
+            f"Exposures of {number(DAY * taken)} s and an ingress of {number(24 * 60 * ingress)} minutes go together."
+        )
+    return check.warned(
+        f"Points follow each other every {number(24 * 60 * spacing)} minutes, {percent(share)} of the ingress, and the exposure "
+        "was taken as none. If each of them is an exposure that long, the radii are wrong: give its length as --exposure.",
+        share,
+        limit=LONG_SPACING,
+    )
+
+
+def _printed_exposure(evidence: Evidence) -> float:
+    """Median of the exposures that the files print [d], NaN where they print none."""
+    exposure = evidence.photometry.exposure
+    if exposure is None:
+        return nan
+    found = exposure[evidence.photometry.used]
+    found = found[np.isfinite(found)]
+    return float(np.median(found)) / DAY if found.size else nan
+
+
+def _even_spacing(evidence: Evidence) -> float:
+    """Usual time between points of a band [d] where it is the same all through; else NaN."""
+    light = evidence.light
+    spacing = np.diff(light.time)[np.diff(light.block) == 0]
+    if spacing.size < FEWEST_OUTSIDE:
+        return nan
+    usual = float(np.median(spacing))
+    even = np.abs(spacing - usual) < SAME_SPACING * usual
+    return usual if even.mean() > MOSTLY else nan
 
 
 def ingress_points(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
@@ -223,6 +281,14 @@ def _source_levels(evidence: Evidence, star: int) -> Floats:
 
 
 CHECKS = (
+    Check(
+        "exposure time",
+        "Does the model blur the eclipses as the exposures did?",
+        exposure_time,
+        0.1,
+        "a tenth of the ingress: averaged over it, the corner of a ramp moves by one eightieth of its height (by definition); "
+        "a quarter where only the spacing of the points is known (our choice)",
+    ),
     Check(
         "points in ingress",
         "Are there enough points between the outer and inner contacts?",

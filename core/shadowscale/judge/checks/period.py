@@ -111,6 +111,8 @@ def _copy(evidence: Evidence) -> tuple[EclipseWindow, int] | None:
             if not (window.happens and (band & free).any() and (band & within).any()):
                 continue
             usual = float(np.median(flux[band & free]))
+            if not usual > 0:
+                continue
             scatter = 1.48 * float(np.median(np.abs(flux[band & free] - usual))) / usual
             depth = 1 - float(np.min(light.model[band & within]))
             if COPIED * depth < FAINTER * scatter:
