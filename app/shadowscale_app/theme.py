@@ -210,6 +210,10 @@ def _sheet(now: Colours) -> str:
                         border-radius: 6px; padding: 8px 12px; }}
     QPushButton#card:hover, QPushButton#card:focus {{ border-color: {now.accent}; }}
     QDialogButtonBox, QMessageBox {{ dialogbuttonbox-buttons-have-icons: 0; }}
+    QCheckBox::indicator {{ width: 12px; height: 12px; border: 1px solid {now.quiet}; border-radius: 3px;
+                            background: {now.paper}; }}
+    QCheckBox::indicator:checked {{ background: {now.accent}; border-color: {now.ink}; }}
+    QCheckBox::indicator:disabled {{ border-color: {now.line}; }}
     QSpinBox, QDoubleSpinBox {{ min-height: 22px; }}
     QLabel#quiet {{ color: {now.quiet}; }}
     QLabel#title {{ font-weight: 600; }}

@@ -68,6 +68,7 @@ def take(application: QApplication, scene: Scene, folder: Path) -> bool:
     bench.resize(WIDTH, HEIGHT)
     bench.show()
     bench.open_sample(str(ROOT / "sample_sessions" / scene.sample / "session.json"))
+    bench.files.errands.wait_until_idle()
     bench.long_lane.wait_until_idle()
     for pane in scene.panes:
         bench.bring(pane)

@@ -36,7 +36,7 @@ class GradeBar(QStyledItemDelegate):
             tint = now.accent_ink if selected else now.badly if strong else now.quiet
             painter.setPen(QColor(tint))
             painter.setFont(theme.small_font(-1.0))
-            words = area.adjusted(BAR + 12, 0, 0, 0)
+            words = area.adjusted(BAR + 16, 0, 0, 0)
             text = painter.fontMetrics().elidedText(
                 row.strongest, Qt.TextElideMode.ElideRight, int(words.width())
             )

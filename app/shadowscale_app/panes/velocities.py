@@ -137,14 +137,14 @@ class VelocitiesPane(Pane):
         self.rest.link_x(self.curve)
         layout = QVBoxLayout(self)
         layout.setContentsMargins(0, 0, 0, 0)
-        layout.addWidget(self.split)
+        layout.addWidget(self.split, 1)
         foot = QHBoxLayout()
         foot.setContentsMargins(0, 0, 10, 2)
         foot.addWidget(self.numbers, 1)
         foot.addWidget(self.one_line)
         foot.addWidget(self.mass)
+        layout.addWidget(self.nothing, 1)
         layout.addLayout(foot)
-        layout.addWidget(self.nothing)
 
     def _show_lines(self) -> None:
         there = self.session.velocities is not None

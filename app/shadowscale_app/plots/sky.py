@@ -12,6 +12,7 @@ from shadowscale.view.scene import Disc, Scene
 from shadowscale_app import theme
 
 STOPS = 12
+SUN_WORDS = 16.0  # pixels beside the Sun's circle
 
 
 class Sky(QWidget):
@@ -60,8 +61,14 @@ class Sky(QWidget):
             max(float(np.abs(scene.sky1[:, 1]).max()), float(np.abs(scene.sky2[:, 1]).max()))
             + biggest
         )
-        scale = min(area.width() / (2.1 * (reach + biggest)), (area.height() - 30) / (2.1 * tall))
-        middle = area.center() + QPointF(0, -4)
+        # the Sun has a column of its own on the left, so that no star ever passes over it
+        sun = 2.2 * (scene.sun_radius or 0.0)
+        words = 0.0 if scene.sun_radius is None else SUN_WORDS
+        scale = min(
+            (area.width() - words) / (2.1 * (reach + biggest) + sun),
+            (area.height() - 30) / (2.1 * tall),
+        )
+        middle = area.center() + QPointF((sun * scale + words) / 2, -4)
         painter.setPen(QPen(QColor(255, 255, 255, 60), 1))
         for orbit in (scene.sky1, scene.sky2):
             painter.drawPolyline(_polygon(orbit, middle, scale))
@@ -82,12 +89,13 @@ class Sky(QWidget):
         if scene.sun_radius is None:
             return
         radius = scene.sun_radius * scale
-        place = QPointF(area.left() + 10 + radius, area.bottom() - 8 - max(radius, 5))
+        place = QPointF(area.left() + 8 + max(radius, 10), area.bottom() - 22 - radius)
         painter.setPen(QPen(QColor(theme.YELLOW), 1.2, Qt.PenStyle.DotLine))
         painter.setBrush(Qt.BrushStyle.NoBrush)
         painter.drawEllipse(place, radius, radius)
         painter.setPen(QColor(theme.YELLOW))
-        painter.drawText(place + QPointF(radius + 5, 4), "Sun")
+        words = QRectF(place.x() - 20, area.bottom() - 20, 40, 14)
+        painter.drawText(words, Qt.AlignmentFlag.AlignCenter, "Sun")
 
     def _paint_above(self, painter: QPainter, area: QRectF) -> None:
         scene = self.scene
