@@ -131,3 +131,21 @@ def test_stop_ends_a_long_job_without_an_answer(long: LongLane) -> None:
 
     assert long.wait_until_idle()
     assert (answers, stopped) == ([], [True])
+
+
+def test_new_words_are_told_at_once_and_repeated_ones_seldom(long: LongLane) -> None:
+    told: list[str] = []
+    long.progressed.connect(lambda _fraction, words, _left: told.append(words))
+
+    def work(progress: Progress) -> str:
+        for number in range(200):
+            progress.report(number / 1000, "solving")
+        progress.report(0.8, "writing")
+        return "done"
+
+    long.start(work)
+
+    assert long.wait_until_idle()
+    assert told[0] == "solving"
+    assert told[-1] == "writing"
+    assert len(told) < 20

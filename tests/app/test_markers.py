@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
+import numpy as np
 import pytest
 from PySide6.QtCore import Qt
 from PySide6.QtTest import QTest
+from PySide6.QtWidgets import QApplication
 
 from hands import drag
 from shadowscale_app.bench import Bench
@@ -193,3 +195,66 @@ def test_a_stretch_is_added_dragged_and_removed(bench: Bench) -> None:
     folded.focus_marker(f"excluded.{number}.0")
     bench.actions_table.by_name["drop_span"].trigger()
     assert count == len(bench.desk.session.markers.excluded)
+
+
+def test_an_eclipse_window_is_dragged_at_its_edge_and_holds_its_contacts(bench: Bench) -> None:
+    folded = bench.panes["Folded curve"].pair.curve
+    before = bench.desk.session.markers
+
+    drag(folded, before.primary_window[1], 0.14, height=0.97)
+
+    after = bench.desk.session.markers
+    assert after.primary_window[1] == pytest.approx(0.14, abs=pixel(folded))
+    assert (after.primary, after.secondary) == (before.primary, before.secondary)
+    assert bench.desk.history.undo_label == "Move right edge of the window of primary eclipse"
+    drag(folded, after.primary_window[1], -0.1, height=0.97)
+    assert bench.desk.session.markers.primary_window[1] == before.primary[3]
+
+
+def test_contacts_can_be_measured_again(bench: Bench) -> None:
+    picture = primary(bench)
+    truth = bench.desk.session.markers.primary
+    drag(picture, truth[0], truth[0] - 0.011)
+    moved = bench.desk.session.markers.primary
+    assert moved[0] < truth[0] - 0.009
+
+    bench.actions_table.by_name["measure"].trigger()
+    assert bench.long_lane.wait_until_idle()
+
+    assert np.abs(np.subtract(bench.desk.session.markers.primary, truth)).max() < 4e-3
+    assert bench.desk.history.undo_label == "Measure contacts"
+    bench.desk.undo()
+    assert moved == bench.desk.session.markers.primary
+
+
+def test_a_click_gives_a_marker_the_keys_and_a_double_click_its_field(bench: Bench) -> None:
+    picture = primary(bench)
+    view = picture.visible()
+    start = bench.desk.session.markers.primary[3]
+    place = picture.place_of(start, view.center().y()).toPoint()
+    port = picture.viewport()
+    QTest.mouseMove(port, place)
+    QApplication.processEvents()
+
+    QTest.mouseClick(port, Qt.MouseButton.LeftButton, pos=place)
+    assert picture.focused == "primary.3"
+    QTest.mouseDClick(port, Qt.MouseButton.LeftButton, pos=place)
+    QTest.mouseRelease(port, Qt.MouseButton.LeftButton, pos=place)
+    assert picture.editor is not None
+    assert view == picture.visible()  # a double click elsewhere would show everything
+    picture.editor.setText(f"{start + 0.002:.6f}")
+    QTest.keyClick(picture.editor, Qt.Key.Key_Return)
+
+    assert bench.desk.session.markers.primary[3] == pytest.approx(start + 0.002, abs=1e-6)
+
+
+def test_resting_on_a_marker_says_what_it_does(bench: Bench) -> None:
+    picture = primary(bench)
+    place = picture.place_of(bench.desk.session.markers.primary[0], picture.visible().center().y())
+
+    QTest.mouseMove(picture.viewport(), place.toPoint())
+    QApplication.processEvents()
+
+    assert "first contact of primary eclipse" in bench.status.words.text()
+    assert "give both radii" in bench.status.words.text()
+    assert "give both radii" in picture.lines["primary.0"].toolTip()
