@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import sys
 from collections.abc import Callable, Sequence
 from pathlib import Path
@@ -322,4 +323,7 @@ def run(paths: Sequence[str]) -> int:
     QTimer.singleShot(0, bench, bench.files.offer_recovery)
     if paths:
         QTimer.singleShot(0, bench, lambda: bench.open_paths(paths))
-    return application.exec()
+    status = application.exec()
+    if bench.warmer.busy:  # a compiler cannot be interrupted, and all that matters is saved
+        os._exit(status)
+    return status

@@ -12,6 +12,8 @@ from PySide6.QtCore import QObject, Signal
 from shadowscale.errors import Stopped
 from shadowscale_app import trouble
 
+PATIENCE = 0.5  # [s] for a step that only loads
+
 
 class Readiness:
     """Whether models can be computed without a wait."""
@@ -50,12 +52,16 @@ class Warmer(QObject):
         self._thread = threading.Thread(target=self._run, name="warmer", daemon=True)
         self._thread.start()
 
+    @property
+    def busy(self) -> bool:
+        """Whether the thread still works."""
+        return self._thread is not None and self._thread.is_alive()
+
     def close(self) -> None:
-        """Wait until what is being compiled is done: a compiler cannot be interrupted."""
+        """Ask it to end at the next step; what is compiled just now is not waited for."""
         self._closing.set()
         if self._thread is not None:
-            self._thread.join()
-            self._thread = None
+            self._thread.join(PATIENCE)
 
     def report(self, fraction: float, words: str) -> None:
         """Between two steps: whether to go on."""

@@ -38,6 +38,35 @@ print(json.dumps(painted[0]))
 """
 
 
+CLOSE_EARLY = """
+import time
+from PySide6.QtCore import QTimer
+from PySide6.QtWidgets import QApplication, QMainWindow
+from shadowscale.view import warming
+from shadowscale_app.__main__ import main
+warming.warm = lambda progress: time.sleep(3600)  # a compiler
+application = QApplication([])
+
+def close():
+    for widget in application.topLevelWidgets():
+        if isinstance(widget, QMainWindow):
+            widget.close()
+
+QTimer.singleShot(1000, close)
+raise SystemExit(main([]))
+"""
+
+
+def test_closing_does_not_wait_for_a_compiler(tmp_path: Path) -> None:
+    environment = os.environ | {"XDG_CONFIG_HOME": str(tmp_path), "XDG_DATA_HOME": str(tmp_path)}
+
+    done = subprocess.run(
+        [sys.executable, "-c", CLOSE_EARLY], env=environment, timeout=120, check=False
+    )
+
+    assert done.returncode == 0
+
+
 def test_the_first_paint_has_loaded_nothing_heavy(tmp_path: Path) -> None:
     environment = os.environ | {"XDG_CONFIG_HOME": str(tmp_path), "XDG_DATA_HOME": str(tmp_path)}
 
