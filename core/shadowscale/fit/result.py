@@ -274,6 +274,8 @@ def _levels_of_rows(
     """Level of each row of a band: its segment's, or that of the nearest in time."""
     if data.time.size == 0:
         return np.ones(rows.size)
+    if data.segments == 1 and levels[0, 1] == 0.0:
+        return np.full(rows.size, levels[0, 0])
     owner = np.repeat(np.arange(data.segments), np.diff(data.starts))
     order = np.argsort(data.time, kind="stable")
     times = data.time[order]
