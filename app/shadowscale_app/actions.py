@@ -14,6 +14,7 @@ from shadowscale.session.session import Session
 from shadowscale.view.looks import look_of
 from shadowscale_app import theme, trouble
 from shadowscale_app.desk import Change
+from shadowscale_app.dialogs.about import tell_about
 
 if TYPE_CHECKING:
     from shadowscale_app.bench import Bench
@@ -151,7 +152,7 @@ TABLE: tuple[Entry, ...] = (
     Entry("light", "Light", "View", _scheme(theme.ALWAYS_LIGHT), "", "Dark ink on light paper", _always, _is_scheme(theme.ALWAYS_LIGHT)),
     Entry("dark", "Dark", "View", _scheme(theme.ALWAYS_DARK), "", "For the dome at night", _always, _is_scheme(theme.ALWAYS_DARK)),
     Entry("help", "What the pictures show, and keys", "Help", lambda b: b.bring("Help"), Std.HelpContents, "Explains each picture"),
-    Entry("about", "About Shadowscale", "Help", lambda b: b.about(), "", "Version and purpose"),
+    Entry("about", "About Shadowscale", "Help", lambda b: tell_about(b), "", "Version and purpose"),
 )  # fmt: skip
 
 TIPS = {entry.name: entry.tip for entry in TABLE}

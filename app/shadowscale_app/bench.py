@@ -13,18 +13,17 @@ from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
 from PySide6.QtWidgets import (
     QApplication,
     QMainWindow,
-    QMessageBox,
 )
 
-from shadowscale._version import __version__
 from shadowscale.session.session import Session
 from shadowscale.view.light_points import ephemeris
 from shadowscale_app import theme, trouble
 from shadowscale_app.actions import Actions, keys
 from shadowscale_app.desk import ALL, Change, Desk
-from shadowscale_app.dialogs.trouble import TroubleDialog
-from shadowscale_app.files import Files, sample_sessions, settings
+from shadowscale_app.dialogs.trouble import open_trouble
+from shadowscale_app.files import ORGANISATION, PROGRAM, Files, sample_sessions, settings
 from shadowscale_app.jobs import LiveLane, LongLane
+from shadowscale_app.journals import Journals
 from shadowscale_app.live import Live
 from shadowscale_app.panes import all_panes
 from shadowscale_app.panes.kept import KeptPane
@@ -41,14 +40,13 @@ from shadowscale_app.warm import READY, Warmer
 from shadowscale_app.work import WorkDesk
 
 GEOMETRY = "geometry"
-MOST_TROUBLES = 3
 NO_PERIOD = "No period yet: Solve finds it (F5), or search the period (F7)."
 
 
 class Bench(QMainWindow):
     """The window."""
 
-    desk: Desk
+    desk: Desk  # named here for those who import this module only to check types
     files: Files
     live: Live
     work: WorkDesk
@@ -63,6 +61,7 @@ class Bench(QMainWindow):
         self.live = Live(self.desk, self.lane, self)
         self.work = WorkDesk(self.desk, self.long_lane, self)
         self.files = Files(self.desk, self, immediate=immediate)
+        self.journals = Journals(self.desk, self.files.errands, self, immediate=immediate)
         self.points = PointsDesk(self.desk, self)
         self.warmer = Warmer(self)
         if immediate:
@@ -151,14 +150,6 @@ class Bench(QMainWindow):
         self.bring(title)
         ask_and_save(self.panes[title])
 
-    def about(self) -> None:
-        """What this is."""
-        QMessageBox.about(
-            self, "Shadowscale",
-            f"<b>Shadowscale {__version__}</b><p>Masses and radii of the stars of detached eclipsing binaries, "
-            "from light curves and radial velocities.</p>",
-        )  # fmt: skip
-
     def open_paths(self, paths: Sequence[str]) -> None:
         """Open what the command line or a drop names."""
         with trouble.guard("opening " + ", ".join(Path(path).name for path in paths)):
@@ -196,7 +187,8 @@ class Bench(QMainWindow):
 
     def end(self) -> None:
         """End timers and threads."""
-        self.files.end()
+        self.files.errands.close()
+        self.journals.end()
         self.live.forget()
         self.lane.close()
         self.long_lane.close()
@@ -298,29 +290,22 @@ class Bench(QMainWindow):
         self._show(self.desk.session, ALL)
 
     def _trouble(self, found: trouble.Trouble) -> None:
-        shown = [each.trouble.sentence for each in self.findChildren(TroubleDialog)]
-        if found.sentence in shown or len(shown) >= MOST_TROUBLES:
-            return  # one window is enough for a trouble that comes again and again; the log has them all
-        dialog = TroubleDialog(found, self)
-        dialog.setAttribute(Qt.WidgetAttribute.WA_DeleteOnClose)
-        dialog.open()
+        open_trouble(found, self)
 
 
 def run(paths: Sequence[str]) -> int:
     """Open the window; the process's exit status."""
     application = QApplication.instance() or QApplication(sys.argv[:1])
     assert isinstance(application, QApplication)
-    application.setApplicationName("Shadowscale")
-    application.setOrganizationName("Shadowscale")
+    application.setApplicationName(PROGRAM)
+    application.setOrganizationName(ORGANISATION)
     application.setProperty(theme.CHOICE, settings().value(theme.CHOICE, theme.FOLLOW))
     trouble.catch_everything()
     bench = Bench()
-    theme.dress(
-        application
-    )  # afterwards: widgets put into others that are dressed are dressed each time
+    theme.dress(application)  # now: widgets put into others that are dressed are dressed each time
     bench.show()
     QTimer.singleShot(0, bench, bench.warmer.start)
-    QTimer.singleShot(0, bench, bench.files.offer_recovery)
+    QTimer.singleShot(0, bench, bench.journals.offer_recovery)
     if paths:
         QTimer.singleShot(0, bench, lambda: bench.open_paths(paths))
     status = application.exec()

@@ -1,15 +1,14 @@
-"""Opening, saving, exporting; recent files; the journal and its recovery."""
+"""Opening, saving, packing; recent files."""
 
 from __future__ import annotations
 
 import os
-import time
 from collections.abc import Callable, Sequence
 from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from PySide6.QtCore import QDateTime, QLocale, QObject, QSettings, QStandardPaths, QTimer, Signal
+from PySide6.QtCore import QObject, QSettings, Signal
 from PySide6.QtWidgets import QFileDialog, QMessageBox, QWidget
 
 from shadowscale.session.session import Session, Source
@@ -18,7 +17,6 @@ from shadowscale_app.dialogs.reading import Reading, ask_reading
 from shadowscale_app.errands import Errands
 
 if TYPE_CHECKING:
-    from shadowscale.session.journal import Journal, Recoverable
     from shadowscale_app.dialogs.exporting import Target
 
 ORGANISATION, PROGRAM = "Shadowscale", "Shadowscale"
@@ -51,12 +49,6 @@ class Files(QObject):
         super().__init__(window)
         self.errands = Errands(self, immediate=immediate)
         self._desk, self._window, self._ask = desk, window, ask
-        self._journal: Journal | None = None
-        self._timer = QTimer(self)
-        self._timer.setInterval(JOURNAL_MS)
-        self._timer.timeout.connect(self.write_journal)
-        if not immediate:
-            self._timer.start()
 
     def ask_open(self) -> None:
         """Ask which files, and open them."""
@@ -271,68 +263,6 @@ class Files(QObject):
         texts = stored if isinstance(stored, list) else [stored] if stored else []
         return [Path(str(text)) for text in texts if Path(str(text)).exists()]
 
-    def write_journal(self) -> None:
-        """Write the session beside, so that a crash costs little."""
-        if not self._desk.unsaved or self.errands.running:
-            return
-        from shadowscale.session.journal import Journal
-
-        if self._journal is None:
-            self._journal = Journal(journal_folder())
-        journal, session, path = self._journal, self._desk.session, str(self._desk.path or "")
-
-        def write() -> float:
-            began = time.monotonic()
-            journal.write(session, path=path)
-            return time.monotonic() - began
-
-        self.errands.run("writing the journal", write, self._pace, quiet=True)
-
-    def _pace(self, seconds: float) -> None:
-        """Large sessions are written less often."""
-        self._timer.setInterval(max(JOURNAL_MS, round(1000 * JOURNAL_SHARE * seconds)))
-
-    def end(self) -> None:
-        """Stop the journal: the work was saved or given up on purpose."""
-        self._timer.stop()
-        self.errands.close()
-        if self._journal is not None:
-            self._journal.close()
-
-    def offer_recovery(self) -> None:
-        """Offer what a crash left behind."""
-        from shadowscale.session.journal import discard, recoverable
-
-        buttons = QMessageBox.StandardButton
-        for item in recoverable(journal_folder()):
-            moment = QDateTime.fromSecsSinceEpoch(int(item.saved_at))
-            when = QLocale().toString(moment, QLocale.FormatType.ShortFormat)
-            answer = QMessageBox.question(
-                self._window,
-                "Recover work?",
-                f"The program ended unexpectedly while {item.name} had unsaved changes.\n"
-                f"Open the work as it was at {when}, discard it, or decide later?",
-                buttons.Open | buttons.Discard | buttons.Cancel,
-                buttons.Open,
-            )
-            if answer == buttons.Open:
-                self._recover(item)
-                return
-            if answer == buttons.Discard:
-                discard(item)
-
-    def _recover(self, item: Recoverable) -> None:
-        from shadowscale.session.journal import discard, recover
-
-        def take(session: Session) -> None:
-            self._desk.begin(session, Path(item.path) if item.path else None, saved=False)
-            self.write_journal()
-            self.errands.run(
-                "tidying up", lambda: discard(item), quiet=True
-            )  # once it is written anew
-
-        self.errands.run(f"recovering {item.name}", lambda: recover(item), take)
-
     def _remember(self, path: Path) -> None:
         texts = [
             str(path.absolute()),
@@ -380,12 +310,6 @@ def _read(session: Session) -> Session:
 def settings() -> QSettings:
     """The program's settings on this machine."""
     return QSettings(ORGANISATION, PROGRAM)
-
-
-def journal_folder() -> Path:
-    """Where journals are written."""
-    place = QStandardPaths.StandardLocation.AppLocalDataLocation
-    return Path(QStandardPaths.writableLocation(place)) / "journal"
 
 
 def sample_sessions() -> list[tuple[str, str, Path]]:

@@ -15,7 +15,7 @@ from shadowscale_app.actions import FIGURE_PANES
 from shadowscale_app.bench import Bench
 from shadowscale_app.desk import Change
 from shadowscale_app.dialogs.exporting import agreed_target
-from shadowscale_app.files import journal_folder
+from shadowscale_app.journals import journal_folder
 from shadowscale_app.plots import figure
 from shadowscale_app.plots.figure import KINDS, save_figure
 from shadowscale_app.samples import samples
@@ -125,7 +125,7 @@ def test_work_of_a_window_that_is_gone_is_offered_and_opens(
 ) -> None:
     asked = answer(monkeypatch, ANSWER.Open)
 
-    bench.files.offer_recovery()
+    bench.journals.offer_recovery()
 
     assert len(asked) == 1
     assert "other" in asked[0]
@@ -145,21 +145,21 @@ def test_work_left_behind_is_discarded_only_when_asked(
 ) -> None:
     answer(monkeypatch, button)
 
-    bench.files.offer_recovery()
+    bench.journals.offer_recovery()
 
     assert left_behind.exists() is stays
 
 
 def test_the_journal_is_written_only_where_there_is_something_to_lose(bench: Bench) -> None:
     opened(bench)
-    bench.files.write_journal()
+    bench.journals.write()
     before = set(journal_folder().glob("*"))
     rename(bench)
 
-    bench.files.write_journal()
+    bench.journals.write()
 
     assert len(set(journal_folder().glob("*")) - before) == 1
-    bench.files.end()
+    bench.journals.end()
     assert before == set(journal_folder().glob("*"))
 
 

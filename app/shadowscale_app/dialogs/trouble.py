@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from PySide6.QtCore import Qt
 from PySide6.QtGui import QGuiApplication
 from PySide6.QtWidgets import QMessageBox, QWidget
 
 from shadowscale_app.trouble import Trouble
 
+MOST_TROUBLES = 3
 AS_BEFORE = "The session is as it was."
 
 
@@ -31,3 +33,13 @@ class TroubleDialog(QMessageBox):
     def copy(self) -> None:
         """Put all of it on the clipboard."""
         QGuiApplication.clipboard().setText(self.trouble.whole)
+
+
+def open_trouble(trouble: Trouble, parent: QWidget) -> None:
+    """Show a trouble, unless it is shown already or there are many: the log has them all."""
+    shown = [each.trouble.sentence for each in parent.findChildren(TroubleDialog)]
+    if trouble.sentence in shown or len(shown) >= MOST_TROUBLES:
+        return
+    dialog = TroubleDialog(trouble, parent)
+    dialog.setAttribute(Qt.WidgetAttribute.WA_DeleteOnClose)
+    dialog.open()
