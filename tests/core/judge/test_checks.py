@@ -311,3 +311,23 @@ def test_even_points_far_apart_ask_for_the_exposure() -> None:
     assert finding.verdict == WARN
     assert "every 45 minutes" in finding.words
     assert with_system(even, exposure=1764.0).finding("exposure time").verdict == PASS
+
+
+@pytest.mark.parametrize(
+    ("case", "check", "says"),
+    [
+        (lambda: with_sigmas(GOOD, period=0.4), "finite errors", "do not measure it"),
+        (lambda: with_sigmas(GOOD, radius_sum=0.2), "finite errors", "sum of the fractional radii"),
+        (
+            lambda: with_free(GOOD, {"radius_ratio": (quantity_of("radius_ratio").upper, 0.1)}),
+            "edge of range",
+            "radius_ratio = 200",
+        ),
+    ],
+)
+def test_what_is_not_measured_is_not_reported(
+    case: Callable[[], Case], check: str, says: str
+) -> None:
+    finding = case().finding(check)
+    assert (finding.verdict, finding.fatal) == (FAIL, True)
+    assert says in finding.words

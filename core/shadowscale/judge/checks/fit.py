@@ -8,11 +8,12 @@ from shadowscale.judge.check import Check
 from shadowscale.judge.evidence import Evidence
 from shadowscale.judge.finding import PASS, WARN, Finding
 from shadowscale.judge.words import counted, listed, number, sentence
-from shadowscale.quantities import QUANTITIES, parse_key, quantity_of
+from shadowscale.quantities import QUANTITIES, parse_key, quantity_of, written
 
 AT_BOUND = 1e-6  # of the bound, or of 1 where it is smaller
 HARMLESS_BOUNDS = ("inclination",)
 MAIN = ("radius_sum", "radius_ratio", "inclination")
+USELESS = {"period": 0.05, "radius_sum": 0.5}  # relative errors that leave nothing measured
 FROM_BOTH_CURVES = (
     "mass_ratio", "a", "M1", "M2", "R1", "R2", "logg1", "logg2", "vsync1", "vsync2",
 )  # fmt: skip
@@ -60,6 +61,7 @@ def bounds(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
         f"{shown}: at the edge of the range, where the fit pushed it. The data do not fix it, or something else is "
         "wrong; hold it fixed at a known value.",
         len(stuck),
+        fatal=any(parse_key(name).name in MAIN[:2] for name in stuck),
     )
 
 
@@ -91,13 +93,28 @@ def usable_errors(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
         or not isfinite(evidence.solution.system.values.get(name, float("nan")))
     ]
     if not bad:
-        return check.passed("Every fitted quantity has a finite error.", 0.0)
+        return _of_use(evidence, check)
     shown = listed(bad[:6]) + (f" and {len(bad) - 6} more" if len(bad) > 6 else "")
     return check.failed(
         f"No finite error for {shown}: the data do not fix it, or two quantities do the same. Hold it fixed or give a prior.",
         len(bad),
         fatal=any(name in MAIN for name in bad),
     )
+
+
+def _of_use(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
+    """Whether the errors leave anything of the period and of the sum of the radii."""
+    for name, most in USELESS.items():
+        value, sigma = evidence.value(name), evidence.sigma(name)
+        if evidence.is_free(name) and sigma > most * abs(value):
+            return check.failed(
+                f"The {QUANTITIES[name].meaning} is {written(value, sigma, sigma)} {QUANTITIES[name].unit}".rstrip()
+                + ": these data do not measure it. Hold it fixed at a known value, or observe more eclipses.",
+                sigma / abs(value) if value else None,
+                limit=most,
+                fatal=True,
+            )
+    return check.passed("Every fitted quantity has a finite error.", 0.0)
 
 
 def absent_quantities(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
