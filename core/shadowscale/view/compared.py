@@ -107,4 +107,5 @@ def _sigmas(difference: Difference | None) -> str:
     if difference is None or difference.sigmas is None:
         return ""
     sign = SIGN if abs(difference.sigmas) > FAR else ""
-    return f"{sign}{difference.sigmas:+.1f}".replace("-", "\N{MINUS SIGN}")
+    shown = f"{difference.sigmas:+.1f}"
+    return "0.0" if shown in ("+0.0", "-0.0") else (sign + shown).replace("-", "\N{MINUS SIGN}")

@@ -206,7 +206,7 @@ def test_kept_solutions_stand_beside_with_their_differences_in_sigmas() -> None:
     rows = {row.what: row for row in found.rows}
     assert found.names == ("present", "first try")
     assert rows["M1"].sigmas == (f"{SIGN}+{0.2266 / (0.009 * 2**0.5):.1f}",)
-    assert rows["R1"].sigmas == ("+0.0",)
+    assert rows["R1"].sigmas == ("0.0",)
     assert rows["AIC"].values == rows["BIC"].values == ("least", "least")
     assert "not independent" in found.words[0]
 
