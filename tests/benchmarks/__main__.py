@@ -12,13 +12,12 @@ import os
 import platform
 from contextlib import suppress
 from datetime import UTC, datetime
+from importlib import import_module
 from importlib.metadata import PackageNotFoundError, version
 from importlib.util import find_spec
 from pathlib import Path
 
-from processes import timed_processes
 from timing import CLOCKS, table, timed
-from works import all_works
 
 PACKAGES = (
     "shadowscale", "numpy", "scipy", "numba", "llvmlite", "batman-package", "PySide6-Essentials",
@@ -29,6 +28,10 @@ REPEATS = 9
 
 def main() -> None:
     """Measure, print, write."""
+    import_module("shadowscale_app")  # before numpy, so that its threads are those of the program
+    from processes import timed_processes
+    from works import all_works
+
     options = _options()
     repeats = 2 if options.quick else options.repeats
     results = []
