@@ -6,7 +6,8 @@ import math
 from dataclasses import replace
 
 import pytest
-from PySide6.QtCore import Qt
+from PySide6.QtCore import QPoint, QPointF, Qt
+from PySide6.QtGui import QWheelEvent
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QApplication
 
@@ -112,6 +113,23 @@ def test_settings_ask_for_the_plan_they_show(bench: Bench) -> None:
     bench.desk.undo()
     assert pane.boxes["orbit"].currentData() == "auto"
     assert pane.exposure.value() == 0.0
+
+
+def test_the_wheel_scrolls_past_the_settings_without_changing_them(bench: Bench) -> None:
+    bench.bring("Settings")
+    QApplication.processEvents()
+    pane = bench.panes["Settings"]
+    before = bench.desk.session
+    for control in (*pane.boxes.values(), pane.exposure, *pane.waves.values()):
+        middle = QPointF(control.rect().center())
+        event = QWheelEvent(
+            middle, control.mapToGlobal(middle), QPoint(), QPoint(0, -120), Qt.MouseButton.NoButton,
+            Qt.KeyboardModifier.NoModifier, Qt.ScrollPhase.NoScrollPhase, False,
+        )  # fmt: skip
+        QApplication.sendEvent(control, event)
+        assert not event.isAccepted()  # it goes on to what scrolls
+
+    assert bench.desk.session is before
 
 
 def test_every_setting_explains_itself(bench: Bench) -> None:

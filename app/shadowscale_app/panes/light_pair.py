@@ -19,6 +19,7 @@ from shadowscale.view.light_points import (
 )
 from shadowscale.view.looks import Look, look_of
 from shadowscale_app import theme
+from shadowscale_app.plots.few_axis import FewAxis
 from shadowscale_app.plots.marked import MarkedPicture
 from shadowscale_app.plots.picture import Picture
 from shadowscale_app.plots.points import Layer, Points
@@ -26,6 +27,7 @@ from shadowscale_app.warm import READY
 
 LIGHT = frozenset({"photometry", "system", "solution", "view", "plan", "exclusions"})
 STILL = 0.02  # of a picture's height: less does not move its axis
+REST_HEIGHT = 78  # pixels of the residuals with their axis, at least
 MOST_CROSSES = 200  # more of them are drawn small and faint
 MOST_BARS, PLAIN_SIZE, CROWDED_SIZE = 1200, 5.0, 3.2  # of one band; pixels
 POINTS = frozenset({"photometry", "solution", "view", "plan", "exclusions"})
@@ -42,7 +44,9 @@ class LightPair(QWidget):
         super().__init__()
         self.only, self.bin_width = only, bin_width
         self.curve = MarkedPicture(name, groups=groups, only=only)
-        self.rest = Picture(f"Residuals, {name.lower()}", bottom="phase")
+        self.rest = Picture(
+            f"Residuals, {name.lower()}", bottom="phase", axes={"left": FewAxis("left")}
+        )
         self.points, self.rest_points = Points(), Points()
         self._models: list[pg.PlotCurveItem] = []
         self._fits = (False, False)
@@ -104,6 +108,7 @@ class LightPair(QWidget):
         self.curve.getAxis("bottom").setStyle(showValues=False)
         self.curve.getAxis("bottom").setHeight(6)
         self.rest.link_x(self.curve)
+        self.rest.setMinimumHeight(REST_HEIGHT)
         self.curve.addItem(self.points)
         self.rest.addItem(self.rest_points)
         self.rest.addItem(self._zero, ignoreBounds=True)

@@ -36,6 +36,7 @@ from shadowscale.view.wishes import (
     with_wavelength,
     written_pair,
 )
+from shadowscale_app.calm import Calm
 from shadowscale_app.desk import Change
 from shadowscale_app.naming import named
 from shadowscale_app.panes.pane import Pane
@@ -55,7 +56,9 @@ class SettingsPane(Pane):
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self.boxes: dict[str, QComboBox] = {}
+        self._calm = Calm(self)
         self.exposure = QDoubleSpinBox()
+        self._calm.keep(self.exposure)
         self.teffs = (QLineEdit(), QLineEdit())
         self.table = QPushButton()
         self.waves: dict[str, QDoubleSpinBox] = {}
@@ -237,6 +240,7 @@ class SettingsPane(Pane):
             )
             self._band_form.addRow(words, box)
             wave = QDoubleSpinBox()
+            self._calm.keep(wave)
             wave.setRange(0.0, 30000.0)
             wave.setDecimals(0)
             wave.setSuffix(" nm")
@@ -263,6 +267,7 @@ class SettingsPane(Pane):
         words: dict[str, str] | None = None,
     ) -> QComboBox:
         box = QComboBox()
+        self._calm.keep(box)
         for value in values:
             box.addItem((words or {}).get(value, value), value)
         named(box, name.replace("_", " ").capitalize(), tip)

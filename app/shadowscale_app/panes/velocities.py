@@ -28,6 +28,7 @@ from shadowscale_app import theme
 from shadowscale_app.desk import Change
 from shadowscale_app.naming import named
 from shadowscale_app.panes.pane import Pane
+from shadowscale_app.plots.few_axis import FewAxis
 from shadowscale_app.plots.picture import Picture
 from shadowscale_app.plots.points import Layer, Points
 from shadowscale_app.warm import READY
@@ -60,7 +61,12 @@ class VelocitiesPane(Pane):
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self.curve = Picture("Velocity curves", left="km/s")
-        self.rest = Picture("Residuals of the velocities", left="O\N{MINUS SIGN}C", bottom="phase")
+        self.rest = Picture(
+            "Residuals of the velocities",
+            left="O\N{MINUS SIGN}C",
+            bottom="phase",
+            axes={"left": FewAxis("left")},
+        )
         self.points, self.rest_points = Points(), Points()
         self._models = {star: pg.PlotCurveItem() for star in SHAPES}
         self._level = pg.InfiniteLine(0.0, angle=0)
