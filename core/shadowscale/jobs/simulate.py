@@ -91,6 +91,14 @@ def _check(spec: Spec, system: System, path: Path) -> None:
         wrong("photometry.kind", "magnitude or flux", repr(light.kind))
     if light.files not in ("one", "band"):
         wrong("photometry.files", "one or band", repr(light.files))
+    if spec.seed < 0:
+        wrong("seed", "a whole number, 0 or more", spec.seed)
+    for band, item in spec.bands.items():
+        if not item.third_light < 1:
+            wrong(f"bands.{band}.third_light", "less than all of the light, 1", item.third_light)
+        if not item.surface_brightness_ratio >= 0:
+            found = item.surface_brightness_ratio
+            wrong(f"bands.{band}.surface_brightness_ratio", "0 or more", found)
     if spec.exposure < 0:
         wrong("exposure", "seconds, 0 or more", spec.exposure)
     for number, run in enumerate(light.runs):

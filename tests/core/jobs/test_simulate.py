@@ -237,6 +237,12 @@ WRONG = [
     (SYSTEM + RUNS.replace("cadence = 60", "cadence = 0"), "cadence and repeat above 0"),
     (SYSTEM + RUNS.replace("hours = 60", "hours = 6e9"), "at most 5000000 points"),
     (SYSTEM + '[photometry]\nkind = "counts"\n' + RUNS, "magnitude or flux, found 'counts'"),
+    ("seed = -5\n" + SYSTEM + RUNS, "column 'seed': expected a whole number, 0 or more, found -5"),
+    (SYSTEM + "third_light = 1.0\n" + RUNS, "less than all of the light, 1, found 1"),
+    (
+        SYSTEM.replace("ratio = 0.6", "ratio = -0.6") + RUNS,
+        r"column 'bands\.V\.surface_brightness_ratio': expected 0 or more",
+    ),
     (SYSTEM, r"column 'photometry'|a value for 'photometry'"),
     ("a = [1,\n", r"line 2: expected TOML, found Invalid value"),
     ("a = 1\nb = =\n", r"line 2, column '5': expected TOML"),
