@@ -64,7 +64,7 @@ def run_case(number: int, *, told: bool, limb_known: bool) -> dict[str, object]:
         "words": case.words,
         "seconds": spent,
         "pulls": _pulls(case.truth, solution),
-        "bound": _bound_ratios(case, solution),
+        "bound": _bound_ratios(case, solution, plan),
         "sides": [alternative.values["radius_ratio"] > 1 for alternative in solution.alternatives],
         "side": case.truth.value("radius_ratio") > 1,
         "decisions": [each.words for each in solution.decisions if each.what != "limb darkening"],
@@ -89,11 +89,12 @@ def _pulls(truth, solution) -> dict[str, float]:
     return found
 
 
-def _bound_ratios(case, solution) -> dict[str, float]:
+def _bound_ratios(case, solution, plan) -> dict[str, float]:
     """Sigmas of the sheet over the Cramer-Rao bound at the truth, for what was fitted."""
     from shadowscale.fit.least_squares import covariance
     from shadowscale.fit.limb import grey_errors
     from shadowscale.fit.objective import Constraint
+    from shadowscale.fit.priors import prior_constraints
     from shadowscale.fit.problem import Problem
 
     system = solution.system
@@ -109,6 +110,7 @@ def _bound_ratios(case, solution) -> dict[str, float]:
         for name in system.free
         if name.startswith("limb_darkening")
     ]
+    rules += prior_constraints(plan, at_truth)
     objective = problem.objective(at_truth, problem.weighting(), rules)
     x = objective.vector.pack(true)
     matrix, _ = covariance(objective(x))
