@@ -279,8 +279,6 @@ def _why_absent(name: str, system: System) -> str:
         return "needs both luminosities, an apparent magnitude, bolometric corrections and the extinction"
     if name in ("density1", "density2"):
         return "needs a mass ratio: none was measured or assumed"
-    if name in ("logg1", "logg2"):
-        return f"needs the velocity amplitude of star {3 - int(name[-1])}, or a mass"
     if not both and "K1" in system.values:
         return "only star 1 was measured: needs an assumed M1 or mass ratio"
     if "K2" in system.values:

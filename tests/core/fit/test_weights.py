@@ -352,3 +352,17 @@ def test_velocities_alone_with_the_star_2_missing_in_some_rows() -> None:
 
     assert abs(found.pull("K2")) < 3.5
     assert found.solution.fit.points == 700 + 25 + 22
+
+
+def test_only_star_2_measured() -> None:
+    """log g of star 1 needs no model either: the same formula with the other star's motion."""
+    truth = ordinary().truth
+    both = observed_velocities(truth)
+    found = _again(velocities=replace(both, why1=np.ones_like(both.why1))).solution
+    k2, r1 = truth.value("K2"), 0.27 / 1.78
+    sine = np.sin(np.radians(truth.value("inclination")))
+    expected = 0.86166612587922 + np.log10(k2 / (truth.value("period") * r1**2 * sine))
+
+    assert found.estimates["logg1"].value == pytest.approx(expected, abs=0.004)
+    for name in ("M1", "M2", "R1", "R2", "a", "logg2", "mass_ratio"):
+        assert "only star 2 was measured" in found.absent[name]
