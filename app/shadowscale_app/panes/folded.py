@@ -23,7 +23,8 @@ class FoldedPane(Pane):
     about = (
         "Every measurement at its phase in the orbit. Phase 0 is the middle of primary eclipse. The solid line "
         "is the fitted model, the dashed line the model that your contact markers alone give. Bars along the top "
-        "are the eclipse windows and the stretches outside eclipse; crosses are points set aside, rings those that the fit took for outliers."
+        "are the eclipse windows, whose points count as that eclipse, and stretches outside eclipse: where there are "
+        "any, they alone tell the light outside. Points of an excluded stretch take part in nothing. Crosses are points set aside, rings those that the fit took for outliers."
     )
 
     def __init__(self, parent: QWidget | None = None) -> None:

@@ -17,6 +17,8 @@ MARKER_KEYS = (
         "\N{LEFTWARDS ARROW} \N{RIGHTWARDS ARROW}",
         "move the marker; with Shift coarse, with Alt fine, with Ctrl one side alone",
     ),
+    ("click, double click", "give a marker the keys; type its phase"),
+    ("Ctrl and drag", "move one side of an eclipse alone, where both would move"),
     ("Enter", "type the marker's phase"),
     ("Escape", "put the marker back"),
     (
