@@ -108,6 +108,31 @@ class Together:
             for rows, count in zip(self.files, counts)
         )
 
+    def set_aside(
+        self, why: Ints, reasons: Sequence[str], *, of: tuple[str, str] = ("row", "rows")
+    ) -> tuple[str, ...]:
+        """What takes no part, a note a file and reason, with the first line numbers.
+
+        Parameters
+        ----------
+        why : (n,) int64
+            In time order: 0 for a row that takes part, else an index into `reasons`.
+        reasons : sequence of str
+        of : (str, str)
+            What is set aside, one and several, for the words.
+        """
+        line = self.ordered([rows.line for rows in self.files])
+        found = []
+        for number, rows in enumerate(self.files):
+            found += _listed_rows(rows)
+            here = self.file == number
+            for code in np.unique(why[here & (why > 0)]):
+                lines = np.sort(line[here & (why == code)])
+                found.append(
+                    f"{rows.path}: {len(lines)} {of[len(lines) > 1]} set aside ({reasons[code]}; {_lines(lines)})"
+                )
+        return tuple(found)
+
     @property
     def unreadable(self) -> tuple[UnreadableRow, ...]:
         """Of all files."""
@@ -128,6 +153,22 @@ def together(files: Sequence[FileRows]) -> Together:
     scale, notes = common_scale(clocks) if clocks else ("unknown", ())
     every_note = (*(note for rows in files for note in rows.notes), *notes)
     return Together(tuple(files), order, file.astype(np.int64), scale, every_note)
+
+
+def _listed_rows(rows: FileRows) -> list[str]:
+    """A note on the lines that could not be read, the first ones with their reasons."""
+    if not rows.unreadable:
+        return []
+    first = [f"line {row.line}: {row.reason}" for row in rows.unreadable[:SHOWN_ROWS]]
+    more = "; ..." if len(rows.unreadable) > SHOWN_ROWS else ""
+    return [f"{rows.path}: {len(rows.unreadable)} unreadable ({'; '.join(first)}{more})"]
+
+
+def _lines(numbers: Ints) -> str:
+    """The first line numbers as text."""
+    shown = ", ".join(str(number) for number in numbers[: 2 * SHOWN_ROWS])
+    more = ", ..." if len(numbers) > 2 * SHOWN_ROWS else ""
+    return f"line{'s' if len(numbers) > 1 else ''} {shown}{more}"
 
 
 def joined_names(parts: Sequence[tuple[tuple[str, ...], Ints]]) -> tuple[tuple[str, ...], Ints]:

@@ -104,7 +104,12 @@ def _joined(parts: list[LightPart], reasons: Reasons) -> Photometry:
             errors_from_scatter=rows.estimated,
             reasons=tuple(reasons.known),
             unreadable=all_files.unreadable,
-            notes=(*all_files.notes, *level_notes, *repeats),
+            notes=(
+                *all_files.notes,
+                *all_files.set_aside(rows.why, reasons.known),
+                *level_notes,
+                *repeats,
+            ),
             exposure=ordered("exposure"),
             airmass=ordered("airmass"),
         )

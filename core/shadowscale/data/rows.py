@@ -169,8 +169,6 @@ def input_file(table: RawTable, guesses: Sequence[Guess], clock: Clock, used: in
 def notes_of(table: RawTable, clock: Clock) -> list[str]:
     """What is to be said of one file."""
     notes = [*table.notes, *([clock.note] if clock.note else [])]
-    if table.unreadable:
-        notes.append(f"{len(table.unreadable)} lines are no rows of the table")
     return [f"{table.path}: {note}" for note in notes]
 
 

@@ -12,6 +12,7 @@ import numpy as np
 from shadowscale.data.columns import NOTHING_CHOSEN, Chosen, Guess
 from shadowscale.data.file_rows import (
     FileRows,
+    Together,
     file_rows,
     joined_names,
     read_only,
@@ -200,6 +201,19 @@ def _joined(parts: list[_Part], reasons: Reasons) -> Velocities:
             errors_from_scatter=any(part.from_scatter for part in parts),
             reasons=tuple(reasons.known),
             unreadable=all_files.unreadable,
-            notes=all_files.notes,
+            notes=(*all_files.notes, *_set_aside_notes(all_files, (why1, why2), reasons)),
         )
     )
+
+
+def _set_aside_notes(files: Together, why: tuple[Ints, Ints], reasons: Reasons) -> tuple[str, ...]:
+    """What takes no part; a star that was not measured is no trouble."""
+    missing = reasons.number(NO_MEASUREMENT)
+    notes: list[str] = []
+    for star, codes in enumerate(why, start=1):
+        told = np.where(codes == missing, 0, codes)
+        found = files.set_aside(
+            told, reasons.known, of=(f"velocity of star {star}", f"velocities of star {star}")
+        )
+        notes += [note for note in found if note not in notes]
+    return tuple(notes)

@@ -333,3 +333,15 @@ def test_exposures_are_read_in_seconds(
     table = read_photometry(written(tmp_path, "a.csv", lines))
     assert table.exposure is not None
     np.testing.assert_allclose(table.exposure, seconds)
+
+
+def test_what_takes_no_part_is_listed_with_its_lines(tmp_path: Path) -> None:
+    lines = [HEADER, *rows()]
+    for number in (4, 9):
+        lines[number] = f"{START + number * 1e-3},nan,0.01"
+    lines[20] = "cloud,11.2,0.01"
+    path = written(tmp_path, "a.csv", lines)
+    notes = read_photometry(path).notes
+    assert f"{path}: 2 rows set aside (no measurement; lines 5, 10)" in notes
+    unreadable = "line 21: column 'BJD_TDB': expected a number, found 'cloud'"
+    assert f"{path}: 1 unreadable ({unreadable})" in notes

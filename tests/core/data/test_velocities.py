@@ -176,3 +176,14 @@ def test_stars_are_1_and_2(tmp_path: Path) -> None:
     assert table.excluded(2, first, "blend").used1[0]
     with pytest.raises(ValueError, match="star: expected 1 or 2, found 3"):
         table.excluded(3, first, "blend")
+
+
+def test_what_takes_no_part_is_listed_but_not_an_empty_cell(tmp_path: Path) -> None:
+    lines = ["BJD,rv1,rv1_err,rv2,rv2_err"]
+    lines += [f"{2459000 + k},{10.0 * (-1) ** k},0.5,{-12.0 * (-1) ** k},0.5" for k in range(8)]
+    lines[3] = "2459002,10.0,0.5,,"
+    lines[5] = "2459004,10.0,0,-12.0,0.5"
+    path = written(tmp_path, "v.csv", lines)
+    (note,) = [note for note in read_velocities(path).notes if "set aside" in note]
+    reason = "the error is missing, zero or negative"
+    assert note == f"{path}: 1 velocity of star 1 set aside ({reason}; line 6)"
