@@ -16,6 +16,7 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
+from shadowscale_app.naming import wrapped
 from shadowscale_app.panes.pane import Pane
 
 if TYPE_CHECKING:
@@ -73,7 +74,7 @@ def _tabbed(bench: Bench, titles: Sequence[str]) -> QTabWidget:
     tabs.setAccessibleName(", ".join(titles))
     for title in titles:
         number = tabs.addTab(bench.panes[title], title)
-        tabs.setTabToolTip(number, bench.panes[title].about)
+        tabs.setTabToolTip(number, wrapped(bench.panes[title].about))
     return tabs
 
 

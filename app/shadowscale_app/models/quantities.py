@@ -10,6 +10,7 @@ from PySide6.QtGui import QColor
 from shadowscale.view.rows import FREE, HELD, WITH_PRIOR, Row
 from shadowscale.view.written import read_number
 from shadowscale_app import theme
+from shadowscale_app.naming import wrapped
 
 HEADERS = ("name", "value", "error", "unit", "state", "held by the data", "limits")
 HEADER_TIPS = (
@@ -72,7 +73,7 @@ class QuantityModel(QAbstractTableModel):
         if orientation == Qt.Orientation.Horizontal and role == Qt.ItemDataRole.DisplayRole:
             return HEADERS[section]
         if orientation == Qt.Orientation.Horizontal and role == Qt.ItemDataRole.ToolTipRole:
-            return HEADER_TIPS[section]
+            return wrapped(HEADER_TIPS[section])
         return None
 
     def flags(self, index: Index) -> Qt.ItemFlag:
@@ -92,7 +93,7 @@ class QuantityModel(QAbstractTableModel):
         if role == Qt.ItemDataRole.EditRole:
             return row.value_text.replace("\N{MINUS SIGN}", "-")
         if role == Qt.ItemDataRole.ToolTipRole:
-            return _tip(row)
+            return wrapped(_tip(row))
         if role == Qt.ItemDataRole.TextAlignmentRole and index.column() == VALUE:
             return int(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
         if role == Qt.ItemDataRole.ForegroundRole and index.column() in (ERROR, UNIT, LIMITS):

@@ -10,6 +10,7 @@ from PySide6.QtCore import Qt, Signal
 from shadowscale.view.markers import Handle
 from shadowscale.view.written import phase_text
 from shadowscale_app import theme
+from shadowscale_app.naming import wrapped
 
 ABOVE, HOT_ABOVE = 20, 22  # the value under the hand covers the other labels
 EDGE = 0.25  # of the picture
@@ -50,7 +51,7 @@ class MarkerLine(pg.InfiniteLine):
         self._offset = 0.0
         self.label = pg.InfLineLabel(self, text="", position=high, movable=False)
         self.setCursor(Qt.CursorShape.SplitHCursor)
-        self.setToolTip(f"{_capital(handle.words)}: {handle.effect}.\n{HANDLING}")
+        self.setToolTip(wrapped(f"{_capital(handle.words)}: {handle.effect}.\n{HANDLING}"))
         self.dress()
 
     def dress(self) -> None:
