@@ -33,7 +33,7 @@ from shadowscale.fit.solution import (
     Solution,
     VelocityResult,
 )
-from shadowscale.fit.start import Ground, wished_epoch
+from shadowscale.fit.start import Ground, wished
 from shadowscale.fit.system import System
 from shadowscale.quantities import QUANTITIES, key, parse_key
 
@@ -96,10 +96,10 @@ def assemble(
 def _at_wished_epoch(best: Fitted, plan: Plan) -> tuple[System, int]:
     """The system with its epoch moved by whole cycles to the one the user named, and the cycles."""
     values = best.system.values
-    wished = wished_epoch(plan)
-    if wished is None:
+    near = wished(plan, "epoch")
+    if near is None:
         return best.system, 0
-    cycles = round((wished - values["epoch"]) / values["period"])
+    cycles = round((near - values["epoch"]) / values["period"])
     return best.system.with_values({"epoch": values["epoch"] + cycles * values["period"]}), cycles
 
 

@@ -26,7 +26,7 @@ from shadowscale.fit.profile import valley, widened
 from shadowscale.fit.result import assemble
 from shadowscale.fit.reweigh import reasons_with_outlier, reweighed, without_wild_rows
 from shadowscale.fit.solution import Decision, Solution
-from shadowscale.fit.start import Ground, find_ground
+from shadowscale.fit.start import Ground, find_ground, seen_once
 from shadowscale.fit.system import System
 from shadowscale.fit.third_light import third_light_told
 from shadowscale.light.laws import LAWS
@@ -115,8 +115,9 @@ def solve(
     reasons = reasons_with_outlier(photometry.reasons)
     tame = replace(photometry, why=weighting.why, reasons=reasons)
     ground = find_ground(tame, velocities, plan, progress)
+    plan, held = _period_held(plan, ground, tame, velocities)
     work = _Work(problem, plan, ground, table, progress, weighting)
-    work.decisions += _period_told(ground)
+    work.decisions += [*_period_told(ground), *held]
     best, met = _explored(work)
     best = _with_effects(work, best)
     best = _weighed(work, best)
@@ -145,6 +146,19 @@ def solve(
         branches=branches, decisions=work.decisions, notes=[*ground.measured.notes, *work.notes],
         ends=wide,
     )  # fmt: skip
+
+
+def _period_held(
+    plan: Plan, ground: Ground, photometry: Photometry, velocities: Velocities | None
+) -> tuple[Plan, list[Decision]]:
+    """The plan with the period held as given where nothing that was measured could tell it."""
+    told = any(prior.name == "period" for prior in plan.priors) or "period" in plan.free
+    if told or velocities is not None or not seen_once(ground.measured, photometry):
+        return plan, []
+    period = ground.measured.period
+    words = f"{period:.7g} d held as given: no eclipse was seen in two cycles"
+    fixed = {**plan.fixed, "period": (period,)}
+    return replace(plan, fixed=fixed), [Decision("period", f"{period:.7g} d", words)]
 
 
 def _period_told(ground: Ground) -> list[Decision]:

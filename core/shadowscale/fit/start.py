@@ -55,7 +55,7 @@ def find_ground(
         Where there are no eclipses, or the stars are too close.
     """
     search = None
-    period, epoch = plan.period, wished_epoch(plan)
+    period, epoch = wished(plan, "period"), wished(plan, "epoch")
     if period is None:
         progress.report(0.02, "searching the period")
         search = search_period(photometry, progress=progress)
@@ -113,10 +113,26 @@ def _sine_chi2(period: float, velocities: Velocities) -> float:
     return total
 
 
-def wished_epoch(plan: Plan) -> float | None:
-    """The epoch near which the user wants the fitted one: as given, or as in a prior."""
-    prior = next((each.values[0] for each in plan.priors if each.name == "epoch"), None)
-    return plan.epoch if plan.epoch is not None else prior
+def wished(plan: Plan, name: str) -> float | None:
+    """The `period` or `epoch` near which the user wants it: as given, as held, or as in a prior."""
+    given: float | None = getattr(plan, name)
+    if given is not None:
+        return given
+    if name in plan.fixed:
+        return plan.fixed[name][0]
+    return next((prior.values[0] for prior in plan.priors if prior.name == name), None)
+
+
+def seen_once(measured: MeasuredEclipses, photometry: Photometry) -> bool:
+    """Whether no eclipse was seen in two cycles, so that the light cannot tell the period."""
+    cycles = (photometry.time[photometry.used] - measured.epoch) / measured.period
+    for timing in (measured.primary, measured.secondary):
+        if timing is not None:
+            away = cycles - timing.middle
+            inside = np.abs(away - np.round(away)) < timing.duration / 2
+            if np.unique(np.round(away[inside])).size > 1:
+                return False
+    return True
 
 
 def _contacts(

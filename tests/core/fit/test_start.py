@@ -1,11 +1,16 @@
-"""Which of several periods velocities choose: they swing once a period, whatever the eclipses say."""
+"""Where the fit starts: which period velocities choose, how a period may be told, what cannot tell it."""
 
 from __future__ import annotations
 
+from dataclasses import replace
+
+import numpy as np
 import pytest
 
 from fit_examples import EPOCH, PERIOD, ordinary
-from shadowscale.fit.start import period_of_velocities
+from shadowscale.fit.plan import Plan, Prior
+from shadowscale.fit.start import period_of_velocities, seen_once, wished
+from shadowscale.timing.eclipses import measure_eclipses
 from shadowscale.timing.results import PeriodCandidate, PeriodSearch
 
 
@@ -34,3 +39,29 @@ def test_velocities_leave_the_right_period() -> None:
 
 def test_without_velocities_the_eclipses_decide() -> None:
     assert period_of_velocities(_search((0.5, 1.0), (1.0, 0.9)), None) == (0.5 * PERIOD, EPOCH)
+
+
+@pytest.mark.parametrize(
+    "plan",
+    [
+        Plan(period=PERIOD),
+        Plan(fixed={"period": (PERIOD,)}),
+        Plan(priors=(Prior("period", (PERIOD,), (1e-5,)),)),
+    ],
+    ids=["given", "held", "prior"],
+)
+def test_a_period_may_be_told_in_three_ways(plan: Plan) -> None:
+    assert wished(plan, "period") == PERIOD
+    assert wished(plan, "epoch") is None
+
+
+def test_one_cycle_tells_no_period() -> None:
+    known = ordinary()
+    measured = measure_eclipses(known.photometry, period=PERIOD, epoch=EPOCH)
+    cycles = (known.photometry.time - EPOCH) / PERIOD
+    first = cycles - cycles.min() < 0.9
+    reasons = (*known.photometry.reasons, "later")
+    later = np.where(first, known.photometry.why, len(reasons))
+
+    assert not seen_once(measured, known.photometry)
+    assert seen_once(measured, replace(known.photometry, why=later, reasons=reasons))

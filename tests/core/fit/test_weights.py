@@ -354,7 +354,7 @@ def test_velocities_alone_with_the_star_2_missing_in_some_rows() -> None:
     assert found.solution.fit.points == 700 + 25 + 22
 
 
-def test_only_star_2_measured() -> None:
+def test_gravity_of_star_1_from_the_motion_of_star_2() -> None:
     """log g of star 1 needs no model either: the same formula with the other star's motion."""
     truth = ordinary().truth
     both = observed_velocities(truth)
