@@ -4,8 +4,8 @@ from __future__ import annotations
 
 from math import ceil, floor, log10
 
-STEPS = (8.0, 6.0, 5.0, 4.0, 3.0, 2.0, 1.5, 1.0)
-ROOM = 0.85  # part of the longer side of zero that the outermost tick may take
+STEPS = (8.0, 6.0, 5.0, 4.0, 3.0, 2.5, 2.0, 1.5, 1.2, 1.0)
+ROOM = 0.7  # part of the longer side of zero that the outermost tick may take
 
 
 def few_ticks(low: float, high: float) -> tuple[float, tuple[float, ...]]:
