@@ -225,6 +225,7 @@ class SettingsPane(Pane):
             self._band_form.removeRow(0)
         for band in self._bands:
             self.boxes.pop(f"third {band}", None)
+            self.waves.pop(band, None)
         self._bands = bands
         for band in bands:
             words = QLabel(f"Third light in {band}")
