@@ -319,6 +319,11 @@ def test_even_points_far_apart_ask_for_the_exposure() -> None:
         (lambda: with_sigmas(GOOD, period=0.4), "finite errors", "do not measure it"),
         (lambda: with_sigmas(GOOD, radius_sum=0.2), "finite errors", "sum of the fractional radii"),
         (
+            lambda: with_estimates(GOOD, {"depth1": (0.004, 0.0035), "depth2": (0.007, 0.0023)}),
+            "finite errors",
+            "takes 0.70 ± 0.23 % of the light",
+        ),
+        (
             lambda: with_free(GOOD, {"radius_ratio": (quantity_of("radius_ratio").upper, 0.1)}),
             "edge of range",
             "radius_ratio = 200",

@@ -13,6 +13,7 @@ from shadowscale.quantities import QUANTITIES, parse_key, quantity_of, written
 AT_BOUND = 1e-6  # of the bound, or of 1 where it is smaller
 HARMLESS_BOUNDS = ("inclination",)
 MAIN = ("radius_sum", "radius_ratio", "inclination")
+LEAST_SEEN = 4.0  # sigmas of the depth
 USELESS = {"period": 0.05, "radius_sum": 0.5}  # relative errors that leave nothing measured
 FROM_BOTH_CURVES = (
     "mass_ratio", "a", "M1", "M2", "R1", "R2", "logg1", "logg2", "vsync1", "vsync2",
@@ -114,6 +115,17 @@ def _of_use(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
                 limit=most,
                 fatal=True,
             )
+    depths = [(evidence.value(name), evidence.sigma(name)) for name in ("depth1", "depth2")]
+    seen = [(value / sigma, value, sigma) for value, sigma in depths if sigma > 0]
+    if seen and max(seen)[0] < LEAST_SEEN:
+        away, value, sigma = max(seen)
+        return check.failed(
+            f"The eclipse that is seen best takes {written(100 * value, 100 * sigma, 100 * sigma)} % of the light: "
+            "there may be none.",
+            away,
+            limit=LEAST_SEEN,
+            fatal=True,
+        )
     return check.passed("Every fitted quantity has a finite error.", 0.0)
 
 
