@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import re
 import sys
 from collections.abc import Sequence
@@ -56,12 +57,24 @@ def _can_open(words: list[str]) -> bool:
 
 
 def _open_window(paths: list[str]) -> int:
+    if not _has_display():
+        words = "the window needs a display, and neither DISPLAY nor WAYLAND_DISPLAY names one"
+        print(
+            f"shadowscale: {words}; the commands work without: shadowscale --help", file=sys.stderr
+        )
+        return 1
     try:
         from shadowscale_app.bench import run
     except ImportError as error:
         print(f"shadowscale: {_trouble(str(error))}", file=sys.stderr)
         return 1
     return run(paths)
+
+
+def _has_display() -> bool:
+    """Whether Qt would find where to draw; without that it aborts."""
+    named = any(os.environ.get(n) for n in ("DISPLAY", "WAYLAND_DISPLAY", "QT_QPA_PLATFORM"))
+    return named or not sys.platform.startswith("linux")
 
 
 def _trouble(message: str) -> str:

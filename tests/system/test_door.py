@@ -1,5 +1,7 @@
 """The one door: files open a window, commands do not, and a missing library is told plainly."""
 
+import sys
+
 import pytest
 
 from commands import python
@@ -30,7 +32,7 @@ sys.exit(main(sys.argv[1:]))
 
 
 def test_a_missing_system_library_is_told_with_the_package_that_has_it():
-    ran = python("-c", BLOCKED, LOADER)
+    ran = python("-c", BLOCKED, LOADER, QT_QPA_PLATFORM="offscreen")
     assert ran.status == 1
     assert "the window needs the system package libegl1" in ran.err
     assert "sudo apt-get install libegl1" in ran.err
@@ -38,13 +40,13 @@ def test_a_missing_system_library_is_told_with_the_package_that_has_it():
 
 
 def test_an_unknown_reason_is_told_as_it_is():
-    ran = python("-c", BLOCKED, "No module named 'PySide6'")
+    ran = python("-c", BLOCKED, "No module named 'PySide6'", QT_QPA_PLATFORM="offscreen")
     assert ran.status == 1
     assert "the window cannot open (No module named 'PySide6')" in ran.err
 
 
 def test_commands_work_without_the_window():
-    ran = python("-c", BLOCKED, LOADER, "--version")
+    ran = python("-c", BLOCKED, LOADER, "--version", QT_QPA_PLATFORM="offscreen")
     assert (ran.status, ran.err) == (0, "")
     assert ran.out.startswith("shadowscale ")
 
@@ -53,13 +55,22 @@ def test_commands_work_without_the_window():
 def test_files_or_nothing_open_the_window(tmp_path, names):
     for name in names:
         (tmp_path / name).write_text("")
-    ran = python("-c", ASKED, *names, folder=tmp_path)
+    ran = python("-c", ASKED, *names, folder=tmp_path, QT_QPA_PLATFORM="offscreen")
     assert (ran.status, ran.err) == (0, "")
     assert ran.out == f"window: {list(names)}\n"
 
 
 def test_a_file_named_like_a_command_does_not_hide_the_command(tmp_path):
     (tmp_path / "solve").write_text("")
-    ran = python("-c", ASKED, "solve", folder=tmp_path)
+    ran = python("-c", ASKED, "solve", folder=tmp_path, QT_QPA_PLATFORM="offscreen")
     assert ran.status == 2
     assert "window" not in ran.out
+
+
+@pytest.mark.skipif(not sys.platform.startswith("linux"), reason="other systems have one display")
+def test_no_display_is_told():
+    """Qt itself would abort."""
+    ran = python("-c", ASKED, DISPLAY="", WAYLAND_DISPLAY="", QT_QPA_PLATFORM="")
+    assert ran.status == 1
+    assert "the window needs a display" in ran.err
+    assert "window:" not in ran.out
