@@ -53,7 +53,11 @@ def add_plan_options(parser: Parser) -> None:
     for option, form, words in (
         ("--free", "NAME", "fit this one, too"),
         ("--fix", "NAME=VALUE", "hold this one; limb_darkening1[V]=0.40,0.25"),
-        ("--prior", "NAME=VALUE,SIGMA", "what is known of it from elsewhere"),
+        (
+            "--prior",
+            "NAME=VALUE,SIGMA",
+            "what is known of it from elsewhere; limb_darkening1[V]=0.40,0.02,0.25,0.03",
+        ),
     ):
         wishes.add_argument(option, metavar=form, action="append", default=[], help=words)
     results = parser.add_argument_group("results")
