@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
 
 from shadowscale.sheet.document import (
     RIGHT,
@@ -22,7 +23,6 @@ from shadowscale.sheet.document import (
     Verdicts,
 )
 from shadowscale.sheet.figure_frame import FAINT, INK
-from shadowscale.sheet.pdf_file import Figure, PdfFile, add_figure
 from shadowscale.sheet.report_pages import (
     PAPER,
     QUIET,
@@ -32,10 +32,14 @@ from shadowscale.sheet.report_pages import (
     Bookmark,
     Page,
     mark_colour,
+    read_figures,
     write_pages,
 )
 from shadowscale.sheet.report_text import Face, Line, Piece, lines_of, text_width
 from shadowscale.sheet.symbols import flat
+
+if TYPE_CHECKING:
+    from pypdf import PageObject
 
 TOP, FOOT = 56.0, 58.0
 LEADING = 1.28
@@ -50,7 +54,7 @@ CELL_GAP = 7.0
 class Setter:
     """The hand that sets blocks on pages; `y` is how far down the present page is full."""
 
-    figures: Mapping[str, Figure]
+    figures: Mapping[str, PageObject]
     pages: list[Page] = field(default_factory=lambda: [Page()])
     bookmarks: list[Bookmark] = field(default_factory=list)
     y: float = TOP
@@ -70,14 +74,12 @@ class Setter:
     def put(self, line: Line, x: float, foot: float) -> None:
         """A line with its foot at a height from the top."""
         self.page.pieces += [
-            Piece(each.text, each.face, x + each.x, PAPER[1] - foot + each.y)
-            for each in line.pieces
+            Piece(each.text, each.face, x + each.x, foot - each.y) for each in line.pieces
         ]
 
     def rule(self, width: float, *, colour: str = INK) -> None:
         """A line across the page where it is full to."""
-        at = PAPER[1] - self.y
-        self.page.rules.append((SIDE, SIDE + WIDTH, at, width, colour))
+        self.page.rules.append((SIDE, SIDE + WIDTH, self.y, width, colour))
 
     def text(
         self, words: str, face: Face, *, x: float = 0.0, width: float = WIDTH, after: float = 5.0
@@ -100,12 +102,11 @@ def as_pdf(document: Document, figures: Mapping[str, bytes]) -> bytes:
     figures : mapping of name to PDF
         Of every picture in the document.
     """
-    pdf = PdfFile()
-    setter = set_document(document, {name: add_figure(pdf, each) for name, each in figures.items()})
-    return write_pages(pdf, setter.pages, document, setter.bookmarks)
+    setter = set_document(document, read_figures(figures))
+    return write_pages(setter.pages, document, setter.bookmarks)
 
 
-def set_document(document: Document, figures: Mapping[str, Figure]) -> Setter:
+def set_document(document: Document, figures: Mapping[str, PageObject]) -> Setter:
     """The document set on pages."""
     setter = Setter(figures)
     _head(setter, document)
@@ -125,7 +126,7 @@ def _section(setter: Setter, section: Section) -> None:
         setter.y += 12
     setter.rule(0.5, colour=FAINT)
     setter.y += 8
-    setter.bookmarks.append(Bookmark(section.title, len(setter.pages) - 1, PAPER[1] - setter.y + 8))
+    setter.bookmarks.append(Bookmark(section.title, len(setter.pages) - 1, setter.y - 8))
     setter.text(section.title, SECTION, after=5)
     for block in section.blocks:
         _block(setter, block)
@@ -212,14 +213,14 @@ def _wide(value: str, error: str, unit: str, width: float) -> bool:
 def _picture_height(setter: Setter, block: Picture) -> float:
     """A figure with its caption."""
     caption = len(lines_of(block.caption, SMALL, WIDTH)) * SMALL.size * LEADING
-    return setter.figures[block.name].height + caption + 6
+    return float(setter.figures[block.name].mediabox.height) + caption + 6
 
 
 def _picture(setter: Setter, block: Picture) -> None:
     figure = setter.figures[block.name]
-    height = figure.height
+    height = float(figure.mediabox.height)
     setter.room(min(_picture_height(setter, block), PAPER[1] - FOOT - TOP))
-    setter.page.pictures.append((figure, SIDE, PAPER[1] - setter.y - height))
+    setter.page.pictures.append((figure, SIDE, setter.y))
     setter.y += height + 4
     setter.text(block.caption, SMALL, after=8)
 
@@ -232,7 +233,7 @@ def _verdict(setter: Setter, item: Verdict) -> None:
     height = 11 + len(said) * CELL.size * LEADING + len(source) * CELL_SMALL.size * LEADING
     setter.room(height + 4)
     foot = setter.y + 8.5
-    setter.page.marks.append((SIDE + 4.5, PAPER[1] - foot + 3, item.kind))
+    setter.page.marks.append((SIDE + 4.5, foot - 3, item.kind))
     kind = Face(8.5, bold=True, colour=colour)
     setter.put(lines_of(item.kind, kind, 60)[0], SIDE + x, foot)
     setter.put(lines_of(item.title, HEADING, WIDTH)[0], SIDE + x + 25, foot)

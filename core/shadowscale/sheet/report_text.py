@@ -8,10 +8,12 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from functools import lru_cache
+from itertools import groupby
+from operator import itemgetter
+from pathlib import Path
 
 from shadowscale.sheet.figure_frame import INK
 from shadowscale.sheet.symbols import Run, runs
-from shadowscale.sheet.truetype import letters
 
 FILES = {  # by bold and italic
     (False, False): "STIXGeneral.ttf",
@@ -136,36 +138,48 @@ def _piece(run: Run, text: str, face: Face, x: float) -> Piece:
 
 @dataclass(frozen=True)
 class Spelled:
-    """Letters of one file in a row: their numbers, the characters they stand for, how wide they are [em]."""
+    """Text in the letters of one file, and how wide it is [em]."""
 
     file: str
-    numbers: tuple[int, ...]
-    characters: str
+    text: str
     width: float
 
 
 def spelled(text: str, face: Face) -> tuple[Spelled, ...]:
-    """A text in the letters of a face; a character that it lacks is taken from another file."""
-    return _spelled(text, face.bold, face.italic, face.fixed)
+    """A text in the letters of a face; a character that it lacks is taken from another file.
+
+    One that no file has becomes the sign for such characters, U+FFFD.
+    """
+    return _spelled(text, FIXED_WIDTH if face.fixed else FILES[face.bold, face.italic])
 
 
 @lru_cache(maxsize=8192)
-def _spelled(text: str, bold: bool, italic: bool, fixed: bool) -> tuple[Spelled, ...]:
-    main = FIXED_WIDTH if fixed else FILES[bold, italic]
-    found: list[tuple[str, list[int], list[str]]] = []
+def _spelled(text: str, main: str) -> tuple[Spelled, ...]:
+    found = []
     for character in text:
-        code = ord(character)
-        file = next((each for each in (main, OTHERS) if code in letters(each).glyphs), main)
-        if not found or found[-1][0] != file:
-            found.append((file, [], []))
-        found[-1][1].append(letters(file).glyphs.get(code, 0))
-        found[-1][2].append(character)
-    return tuple(
-        Spelled(
-            file,
-            tuple(numbers),
-            "".join(characters),
-            sum(letters(file).advances[number] for number in numbers) / letters(file).per_em,
-        )
-        for file, numbers, characters in found
-    )
+        file = next((each for each in (main, OTHERS) if character in letter_widths(each)), None)
+        found.append((OTHERS, "\N{REPLACEMENT CHARACTER}") if file is None else (file, character))
+    parts = []
+    for file, pairs in groupby(found, key=itemgetter(0)):
+        row = "".join(character for _, character in pairs)
+        widths = letter_widths(file)
+        parts.append(Spelled(file, row, sum(widths[character] for character in row)))
+    return tuple(parts)
+
+
+@lru_cache(maxsize=8)
+def letter_widths(file: str) -> dict[str, float]:
+    """How wide each character of a file of letters is [em]."""
+    from fontTools.ttLib import TTFont
+
+    with TTFont(font_path(file), lazy=True) as font:
+        per_em, advances = font["head"].unitsPerEm, font["hmtx"].metrics
+        names = font.getBestCmap()
+    return {chr(code): advances[name][0] / per_em for code, name in names.items()}
+
+
+def font_path(file: str) -> Path:
+    """Where a file of letters is; all of them come with matplotlib."""
+    from matplotlib import get_data_path
+
+    return Path(get_data_path()) / "fonts" / "ttf" / file
