@@ -1,4 +1,4 @@
-"""The sheet's table through TeX and astropy, as a reader of papers would use them."""
+"""The sheet's table through TeX and astropy, the report through poppler, as readers would use them."""
 
 import shutil
 import subprocess
@@ -6,10 +6,14 @@ import subprocess
 import pytest
 
 from made_up import made_up_session
+from shadowscale.jobs.reporting import report_of
 from shadowscale.jobs.results import sheet_of
 from shadowscale.quantities import QUANTITIES
 from shadowscale.sheet import as_ecsv, as_tex
+from shadowscale.sheet.figures import all_figures
 from shadowscale.sheet.references import REFERENCES, bibliography
+from shadowscale.sheet.report import make_document
+from shadowscale.sheet.report_pdf import as_pdf
 
 ARTICLE = r"\documentclass{article}\usepackage{booktabs}\begin{document}\input{sheet}\end{document}"
 
@@ -67,3 +71,26 @@ def test_astropy_gives_every_number_its_unit(sheet):
     for name, quantity in given.items():
         if name in QUANTITIES and QUANTITIES[name].unit:
             assert quantity.unit == units.Unit(QUANTITIES[name].unit)
+
+
+def test_poppler_reads_the_pages_with_every_letter_from_the_file(tmp_path):
+    """A reader that has no part in the writing: no complaint, no font of the machine, Greek as Greek."""
+    if shutil.which("pdffonts") is None or shutil.which("pdftotext") is None:
+        pytest.skip("no poppler here; apt-get install poppler-utils")
+    session = made_up_session(("V",))
+    report = report_of(session, sheet_of(session))
+    drawings = {name: files["pdf"] for name, files in all_figures(report.shown).items()}
+    (tmp_path / "report.pdf").write_bytes(as_pdf(make_document(report), drawings))
+
+    def said(*command):
+        done = subprocess.run(command, cwd=tmp_path, capture_output=True, text=True, check=True)
+        assert done.stderr == ""
+        return done.stdout
+
+    fonts = said("pdffonts", "report.pdf").splitlines()
+    column = fonts[0].index("emb")
+    assert len(fonts) > 5
+    assert {line[column : column + 3] for line in fonts[2:]} == {"yes"}
+    text = said("pdftotext", "-enc", "UTF-8", "report.pdf", "-")
+    for sign in "αρ☉±−Δ":
+        assert sign in text, sign
