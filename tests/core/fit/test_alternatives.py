@@ -38,11 +38,13 @@ def _limb_chi2(solution: Solution) -> float:
 
 
 def _chi2(found: Solved, ratio: float) -> float:
-    """Chi-squared with k held, in the errors of the free solution, prior included."""
+    """Chi-squared with k held, in the errors of the free solution, priors included."""
     plan = ephemeris(fixed={"radius_ratio": (ratio,)}, orbit="circular", levels="one")
     held = solved(found.truth, plan, photometry=found.photometry).solution
     scale = held.fit.error_scale["V"] / found.solution.fit.error_scale["V"]
-    return held.fit.chi2 * scale**2 + _limb_chi2(held)
+    third = held.estimates["third_light[V]"]
+    assert third.prior is not None
+    return held.fit.chi2 * scale**2 + _limb_chi2(held) + (third.value / third.prior[1]) ** 2
 
 
 def test_a_total_eclipse_has_no_mirror() -> None:
@@ -98,7 +100,9 @@ def test_the_mirror_is_listed_with_its_numbers() -> None:
     ratio = found.solution.estimates["radius_ratio"].value
     (other,) = found.solution.alternatives
 
-    assert other.values["radius_ratio"] == pytest.approx(1 / ratio, rel=0.15)
+    assert other.values["radius_ratio"] == pytest.approx(
+        1 / ratio, rel=0.3
+    )  # third light moves, too
     assert other.values["r1"] + other.values["r2"] == pytest.approx(other.values["radius_sum"])
     assert other.values["r2"] / other.values["r1"] == pytest.approx(other.values["radius_ratio"])
     risen = _chi2(found, other.values["radius_ratio"]) - _chi2(found, ratio)
