@@ -51,7 +51,7 @@ def spectrum(data: SearchData, frequency: Floats, progress: Progress, words: str
     """The spectrum of dips, on all processors; `Progress` is told and may stop it."""
     table = np.empty((frequency.size, 8))
     bins = phase_bins(frequency, data.time.size)
-    block = int(np.clip(1e8 / max(data.time.size, 2000), 100, _BLOCK * 5))
+    block = int(np.clip(3e7 / max(data.time.size, 2000), 100, _BLOCK * 5))
 
     def fill(low: int) -> int:
         rows = slice(low, low + block)
