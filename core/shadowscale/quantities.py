@@ -463,7 +463,7 @@ QUANTITIES: Mapping[str, Quantity] = _register(
         inf,
         0.001,
         "surface gravity of star 1",
-        source="g = G M/R^2",
+        source="Southworth, Wheatley & Sams 2007, MNRAS 379, L11, or g = G M/R^2",
     ),
     Quantity(
         "logg2",
@@ -474,7 +474,7 @@ QUANTITIES: Mapping[str, Quantity] = _register(
         inf,
         0.001,
         "surface gravity of star 2",
-        source="Southworth, Wheatley & Sams 2007, MNRAS 379, L11",
+        source="Southworth, Wheatley & Sams 2007, MNRAS 379, L11, or g = G M/R^2",
     ),
     Quantity(
         "density1",
