@@ -58,6 +58,7 @@ def add_plan_options(parser: Parser) -> None:
             "NAME=VALUE,SIGMA",
             "what is known of it from elsewhere; limb_darkening1[V]=0.40,0.02,0.25,0.03",
         ),
+        ("--tie", "NAME=NAME", "the first has the value of the second; gamma2=gamma1"),
     ):
         wishes.add_argument(option, metavar=form, action="append", default=[], help=words)
     results = parser.add_argument_group("results")
@@ -104,12 +105,13 @@ def plan_from(arguments: Namespace) -> Plan:
         free=tuple(_basic("--free", text) for text in arguments.free),
         fixed=_fixed(arguments.fix),
         priors=tuple(_prior(text) for text in arguments.prior),
+        ties=_ties(arguments.tie),
     )
 
 
 def given_options(arguments: Namespace) -> list[str]:
     """The plan options that were given, as typed."""
-    names = {"fix", "prior", "effect", "wavelength"} | {item.name for item in fields(Plan)}
+    names = {"fix", "prior", "tie", "effect", "wavelength"} | {item.name for item in fields(Plan)}
     return sorted(_option(name) for name in names if getattr(arguments, name, None))
 
 
@@ -186,6 +188,11 @@ def _fixed(items: list[str]) -> dict[str, tuple[float, ...]]:
         _in_bounds("--fix", wanted, values)
         found[wanted] = values
     return found
+
+
+def _ties(items: list[str]) -> dict[str, str]:
+    found = pairs("--tie", items, form="NAME=NAME")
+    return {_basic("--tie", name): _basic("--tie", leader) for name, leader in found.items()}
 
 
 def _prior(text: str) -> Prior:

@@ -47,6 +47,19 @@ def named(names: Iterable[str], text: str) -> str | None:
     return max(fitting, key=len) if fitting else None
 
 
+def tied_keys(plan: Plan, values: Iterable[str]) -> dict[str, str]:
+    """Which of the keys follow which: the wishes spelled out for bands, sources and coefficients."""
+    keys, found = tuple(values), {}
+    for text in keys:
+        if (wish := named(plan.ties, text)) is None:
+            continue
+        own, leader = parse_key(text), parse_key(plan.ties[wish])
+        followed = str(Key(leader.name, leader.label or own.label, own.number))
+        if followed in keys:
+            found[text] = followed
+    return found
+
+
 def build_system(
     plan: Plan,
     photometry: Photometry,
@@ -78,9 +91,10 @@ def build_system(
         ):
             free.append(name)
     stars = [star for star in (1, 2) if f"K{star}" in values]
-    return System(
+    ties = tied_keys(plan, values)
+    system = System(
         values=values,
-        free=tuple(free),
+        free=tuple(name for name in free if name not in ties),
         law=plan.law,
         bands=photometry.bands,
         sources=() if velocities is None else velocities.sources,
@@ -90,7 +104,9 @@ def build_system(
         effects={name: plan.effects.get(name, "off") for name in EFFECTS},
         light_time=plan.light_time == "auto" and len(stars) == 2,
         wavelengths=dict(wavelengths),
+        ties=ties,
     )
+    return system.with_values({})
 
 
 def _add_velocities(

@@ -26,7 +26,7 @@ from shadowscale.fit.plan import (
 from shadowscale.fit.problem import Fitted
 from shadowscale.fit.system import System
 from shadowscale.light.laws import LAWS
-from shadowscale.quantities import BAND, QUANTITIES, SOURCE, parse_key
+from shadowscale.quantities import BAND, QUANTITIES, SOURCE, Key, parse_key
 
 OTHER_CLOCK = 100_000.0  # [d] no data are so far from their epoch, but JD and MJD are
 LEAST_MOTION = 2.0  # sigmas of a K below which a star is not seen to move
@@ -44,6 +44,8 @@ def check_plan(plan: Plan, photometry: Photometry, velocities: Velocities | None
         _check_fixed(name, values)
     for prior in plan.priors:
         _check_prior(prior)
+    for name, leader in plan.ties.items():
+        _check_tie(plan, name, leader)
     both = [p.name for p in plan.priors for name in plan.fixed if _same(p.name, name)]
     if both:
         raise UsageError("--prior", both[0], expected="a quantity that is not held by --fix")
@@ -58,6 +60,7 @@ def _names(plan: Plan) -> list[tuple[str, str, bool]]:
         *(("--free", name, True) for name in plan.free),
         *(("--fix", name, True) for name in plan.fixed),
         *(("--prior", prior.name, False) for prior in plan.priors),
+        *(("--tie", name, True) for pair in plan.ties.items() for name in pair),
     ]
 
 
@@ -117,6 +120,26 @@ def _check_fixed(name: str, values: tuple[float, ...]) -> None:
             raise UsageError("--fix", f"{name}={shown}", expected=limits)
 
 
+def _check_tie(plan: Plan, name: str, leader: str) -> None:
+    shown = f"{name}={leader}"
+    one, two = parse_key(name), parse_key(leader)
+    if _kind(one) != _kind(two):
+        raise UsageError("--tie", shown, expected="two quantities of the same kind")
+    if _same(name, leader):
+        raise UsageError("--tie", shown, expected="another quantity to follow")
+    if any(_same(leader, other) for other in plan.ties):
+        raise UsageError("--tie", shown, expected="to follow a quantity that is not tied itself")
+    told = (*plan.free, *plan.fixed, *(prior.name for prior in plan.priors))
+    if any(_same(name, other) for other in told):
+        wanted = "a quantity that --free, --fix and --prior do not name"
+        raise UsageError("--tie", shown, expected=wanted)
+
+
+def _kind(key: Key) -> tuple[str, str]:
+    """What two quantities must share to be tied: the name but for the star, and the unit."""
+    return key.name.rstrip("12"), key.quantity.unit
+
+
 def _check_prior(prior: Prior) -> None:
     shown = f"{prior.name}={','.join(f'{v:g}' for v in (*prior.values, *prior.sigmas))}"
     if len(prior.values) != len(prior.sigmas) or not prior.values:
@@ -137,6 +160,10 @@ def check_wishes(plan: Plan, system: System) -> None:
         if not found:
             wanted = "" if "K1" in system.values else " (velocities are missing)"
             raise UsageError(option, name, expected=f"a quantity that these data can give{wanted}")
+    for name, leader in plan.ties.items():
+        if any(means(name, key) and key not in system.ties for key in system.values):
+            wanted = "a quantity to follow that these data can give"
+            raise UsageError("--tie", f"{name}={leader}", expected=wanted)
 
 
 def _can_be_had(name: str, plan: Plan, system: System) -> bool:

@@ -66,8 +66,8 @@ class _Band:
             # Light time follows the velocity amplitudes.
             light_time = np.zeros(len(vector.names))
             for name, sign in (("K1", -1.0), ("K2", 1.0)):
-                if name in vector.index:
-                    light_time[vector.index[name]] = sign
+                if name in vector.columns:
+                    light_time[vector.columns[name]] += sign
             local = replace(
                 local, wanted=np.append(local.wanted, LIGHT_TIME),
                 fixed=np.vstack([local.fixed, np.zeros_like(light_time)]),
@@ -217,7 +217,7 @@ class Objective:
         """One star's velocities."""
         rows = np.empty((data.time.size, 5))
         residual = self._star_residuals(values, data, rows)
-        index, star = self.vector.index, data.star
+        index, star = self.vector.columns, data.star
         sign = 1.0 if star == 1 else -1.0
         jacobian = np.zeros((len(self.vector.names), residual.size))
         for number, name in enumerate(("period", "epoch", "ecosw", "esinw"), start=1):
@@ -229,7 +229,7 @@ class Objective:
             jacobian[index[f"gamma{star}"]] = 1.0
         for number, name in enumerate(self._offset_keys(star)):
             if name in index:
-                jacobian[index[name]] = data.source == number
+                jacobian[index[name]] += data.source == number
         weighted = jacobian * self._velocity_weights(data)
         chi2 = float(residual @ (residual * self._velocity_weights(data)))
         return Normal(chi2, weighted @ residual, weighted @ jacobian.T)

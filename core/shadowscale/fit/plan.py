@@ -49,6 +49,8 @@ class Plan:
     free, fixed, priors
         Per quantity, names as in `shadowscale.quantities` (a name without a band means every band);
         `fixed` maps the name to its value(s).
+    ties : mapping of name to name
+        A quantity that has the value of another of its kind, and that other, which leads.
     teff1, teff2 : (value, sigma) or None [K]
     levels : str
         `one` level a band, one a `night`, or a level and a slope a night (`trend`); `auto`: the data decide.
@@ -69,6 +71,7 @@ class Plan:
     free: tuple[str, ...] = ()
     fixed: Mapping[str, tuple[float, ...]] = field(default_factory=dict)
     priors: tuple[Prior, ...] = ()
+    ties: Mapping[str, str] = field(default_factory=dict)
     intervals: str = "covariance"
     seed: int = 0
     teff1: tuple[float, float] | None = None

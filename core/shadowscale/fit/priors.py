@@ -53,7 +53,7 @@ def prior_of(plan: Plan, name: str) -> tuple[float, float] | None:
 
 def _is_untold_third_light(plan: Plan, name: str) -> bool:
     """Whether a key is a third light of which the user said nothing; free by name it has no prior."""
-    told = (*plan.free, *plan.fixed, *(prior.name for prior in plan.priors))
+    told = (*plan.free, *plan.fixed, *plan.ties, *(prior.name for prior in plan.priors))
     return is_third_light(name) and named(told, name) is None
 
 

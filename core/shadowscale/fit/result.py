@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from math import acos, degrees, hypot, sqrt
 
 import numpy as np
@@ -158,6 +159,8 @@ def _estimates(
     assumed = assumed_inputs(plan, system)
     found: dict[str, Estimate] = {}
     for name, value in system.values.items():
+        if name in system.ties:
+            continue
         if name in system.free:
             minus, plus = sigma[name]
             if name == "inclination":
@@ -172,6 +175,8 @@ def _estimates(
             sure = minus == plus == 0.0
             low, high = (None, None) if sure else (minus, plus)
             found[name] = Estimate(value, low, high, how, prior_of(plan, name))
+    for name, leader in system.ties.items():
+        found[name] = replace(found[leader], how=DERIVED)
     order = {name: number for number, name in enumerate(QUANTITIES)}
     return dict(sorted(found.items(), key=lambda item: order[parse_key(item[0]).name]))
 

@@ -19,6 +19,8 @@ class System:
         Every basic quantity (`shadowscale.quantities`), in the register's units.
     free : tuple of keys
         What a fit may move, in the order of the covariance.
+    ties : mapping of key to key
+        What has the value of another quantity, and that other.
     priors : tuple of Prior
     law : str
         Limb-darkening law, the same for both stars and all bands.
@@ -43,6 +45,7 @@ class System:
     effects: Mapping[str, str] = field(default_factory=dict)
     light_time: bool = False
     wavelengths: Mapping[str, float] = field(default_factory=dict)
+    ties: Mapping[str, str] = field(default_factory=dict)
 
     def value(self, name: str, label: str | None = None) -> float:
         """The value of a basic quantity; KeyError if the system has none."""
@@ -61,5 +64,11 @@ class System:
         return tuple(found)
 
     def with_values(self, changes: Mapping[str, float]) -> System:
-        """The same system with some values changed."""
-        return replace(self, values={**self.values, **changes})
+        """The same system with some values changed; what is tied follows."""
+        return replace(self, values=self.following({**self.values, **changes}))
+
+    def following(self, values: dict[str, float]) -> dict[str, float]:
+        """`values` after each tied one was given the value it follows."""
+        for name, leader in self.ties.items():
+            values[name] = values[leader]
+        return values

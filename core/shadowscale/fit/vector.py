@@ -56,6 +56,16 @@ class Vector:
         return {name: number for number, name in enumerate(self.names)}
 
     @cached_property
+    def columns(self) -> Mapping[str, int]:
+        """Position of what moves each key: its own, or that of the key it follows."""
+        followed = {
+            name: self.index[leader]
+            for name, leader in self.system.ties.items()
+            if leader in self.index
+        }
+        return {**self.index, **followed}
+
+    @cached_property
     def limb_blocks(self) -> tuple[tuple[int, ...], ...]:
         """Positions of the coefficients of each star and band whose limb darkening is free."""
         blocks = []
@@ -100,7 +110,7 @@ class Vector:
             free[list(block)] = self.law.from_sampling(x[list(block)])
         values = dict(self.system.values)
         values.update(zip(self.names, free.tolist(), strict=True))
-        return values
+        return self.system.following(values)
 
     def limb_jacobian(self, x: Floats) -> Floats:
         """(m, m) derivative of coefficients to coordinates; the identity elsewhere."""
@@ -112,16 +122,21 @@ class Vector:
 
     def local(self, names: Sequence[str | None]) -> LocalMap:
         """Which of some local quantities x moves, and how; None is a quantity that is no key."""
-        moved = [number for number, name in enumerate(names) if name in self.index]
-        at = [self.index[str(names[number])] for number in moved]
+        moved = [number for number, name in enumerate(names) if name in self.columns]
+        at = [self.columns[str(names[number])] for number in moved]
         fixed = np.zeros((len(moved), len(self.names)))
         fixed[np.arange(len(moved)), at] = 1.0
+        # Two stars that are tied are moved by one block.
         blocks = [
-            (np.ix_([at.index(place) for place in block], block), list(block))
+            (np.ix_(rows, block), list(block))
             for block in self.limb_blocks
-            if all(place in at for place in block)
+            for rows in zip(*(_places(at, place) for place in block), strict=True)
         ]
         return LocalMap(np.array(moved, dtype=np.int64), fixed, tuple(blocks), self.law)
+
+
+def _places(found: Sequence[int], wanted: int) -> list[int]:
+    return [number for number, each in enumerate(found) if each == wanted]
 
 
 @dataclass(frozen=True, eq=False)

@@ -53,7 +53,7 @@ def _check_plan(plan: Plan, where: str) -> None:
         _word(state, EFFECT_STATES, f"{where}.effects.{name}")
     for place, number, lowest in _numbers(plan):
         _number(number, lowest, f"{where}.{place}")
-    _quantities((*plan.free, *plan.fixed, *plan.start), where)
+    _quantities((*plan.free, *plan.fixed, *plan.start, *plan.ties, *plan.ties.values()), where)
     _quantities((prior.name for prior in plan.priors), f"{where}.priors")
 
 
@@ -87,6 +87,9 @@ def _check_system(system: System, where: str) -> None:
         _number(value, None, f"{where}.values.{name}")
     for name in system.free:
         _word(name, tuple(system.values), f"{where}.free")
+    for name, leader in system.ties.items():
+        _word(name, tuple(system.values), f"{where}.ties")
+        _word(leader, tuple(system.values), f"{where}.ties.{name}")
     for name in ("period", "epoch", "radius_sum", "radius_ratio", "inclination", "ecosw", "esinw"):
         if name not in system.values:
             raise PlainError(f"{where}.values", f"a value for {name!r}", "none")

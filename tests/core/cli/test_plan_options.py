@@ -30,7 +30,7 @@ def test_every_option_reaches_the_plan():
     --wavelength TESS=790 --limb-table t.csv --orbit eccentric --levels night --light-time off
     --effect ellipsoidal=predicted --free third_light[V] --fix ecosw=-0.01
     --fix limb_darkening1[V]=0.40,0.25 --prior K1=90,0.5 --prior limb_darkening2[V]=0.4,0.1,0.2,0.05
-    --intervals covariance --seed 7 --teff1 6200,100 --teff2 5900,120 --apparent-magnitude 9.1,0.02
+    --tie gamma2=gamma1 --tie third_light[I]=third_light[V] --intervals covariance --seed 7 --teff1 6200,100 --teff2 5900,120 --apparent-magnitude 9.1,0.02
     --bolometric-correction1 -0.05,0.02 --bolometric-correction2 -0.1,0.02 --extinction 0.1,0.03"""
     assert plan(*words.split()) == Plan(
         period=2.5,
@@ -49,6 +49,7 @@ def test_every_option_reaches_the_plan():
             Prior("K1", (90.0,), (0.5,)),
             Prior("limb_darkening2[V]", (0.4, 0.2), (0.1, 0.05)),
         ),
+        ties={"gamma2": "gamma1", "third_light[I]": "third_light[V]"},
         seed=7,
         teff1=(6200.0, 100.0),
         teff2=(5900.0, 120.0),
@@ -85,6 +86,8 @@ WRONG = [
     ("--wavelength V=-5", "--wavelength: expected a number above 0, found '-5'"),
     ("--wavelength V=1 --wavelength V=2", "'V' only once"),
     ("--free third_ligth", "did you mean 'third_light'?"),
+    ("--tie gamma2", "--tie: expected NAME=NAME"),
+    ("--tie M2=M1", "--tie: expected one of period"),
     ("--free M1", "--free: expected one of period"),
     ("--fix r1=0.2", "--fix: expected one of period"),
     ("--fix inclination", "--fix: expected NAME=VALUE, found 'inclination'"),

@@ -68,6 +68,36 @@ def test_slope_is_that_of_chi_squared(form, levels):
     )  # fmt: skip
 
 
+TIES = {
+    "K2": "K1",
+    "gamma2": "gamma1",
+    "offset2[south]": "offset1[south]",
+    "third_light[R]": "third_light[V]",
+    "limb_darkening2[V].1": "limb_darkening1[V].1",
+    "limb_darkening2[V].2": "limb_darkening1[V].2",
+    "ellipsoidal2[V]": "ellipsoidal1[V]",
+    "reflection2[R]": "reflection1[R]",
+}
+
+
+@pytest.mark.parametrize("exposure", [0.0, 1200.0])
+def test_slope_with_ties_is_that_of_chi_squared(exposure):
+    both = {**EFFECTS, "ellipsoidal2": 0.01, "reflection1": 0.005}
+    system = everything_free(effects=both, exposure=exposure)
+    free = tuple(name for name in system.free if name not in TIES)
+    objective = objective_of(replace(system, free=free, ties=TIES).with_values({}))
+    x, sigma = near(objective)
+
+    slope = -2 * objective(x).downhill * sigma
+
+    check_derivatives(
+        lambda steps: objective.chi2(x + sigma * steps), slope, np.zeros(x.size),
+        step=0.02, tolerance=2e-3,
+    )  # fmt: skip
+    values = objective.vector.unpack(x)
+    assert all(values[name] == values[leader] for name, leader in TIES.items())
+
+
 def test_slope_of_priors():
     rules = (
         Constraint("radius_sum", 0.268, 0.001),

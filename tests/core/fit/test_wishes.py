@@ -92,6 +92,55 @@ def test_all_geometry_held_leaves_the_light_ratio() -> None:
     assert found.solution.estimates["r1"].minus is None
 
 
+# ---------------------------------------------------------------- tied
+
+
+def test_one_systemic_velocity() -> None:
+    apart = ordinary().solution.estimates
+    found = _again(velocities=True, ties={"gamma2": "gamma1"})
+    estimates = found.solution.estimates
+    one, two = estimates["gamma1"], estimates["gamma2"]
+
+    assert (two.value, two.minus, two.plus) == (one.value, one.minus, one.plus)
+    assert (one.how, two.how) == ("fitted", "derived")
+    assert sigma_of(one) < 0.9 * min(sigma_of(apart[name]) for name in ("gamma1", "gamma2"))
+    assert abs(found.pull("gamma1")) < 3
+    assert "gamma2" not in found.solution.system.free
+
+
+def test_tied_limb_darkening_and_third_light() -> None:
+    truth = invented(bands={"V": 0.62, "I": 0.74}, third=0.1)
+    plan = ephemeris(
+        ties={"limb_darkening2": "limb_darkening1", "third_light[I]": "third_light[V]"}
+    )
+    found = solved(truth, plan, photometry=observed(truth, count=400)).solution
+    system = found.system
+
+    for band in "VI":
+        assert system.limb_darkening(2, band) == system.limb_darkening(1, band)
+    assert system.value("third_light", "I") == system.value("third_light", "V")
+    assert found.estimates["limb_darkening2[V].1"].how == "derived"
+    assert not [name for name in system.free if name.startswith("limb_darkening2")]
+
+
+@pytest.mark.parametrize(
+    ("wishes", "words"),
+    [
+        ({"ties": {"gamma2": "K1"}}, "same kind"),
+        ({"ties": {"gamma1": "gamma1"}}, "another quantity"),
+        ({"ties": {"third_light": "third_light[V]"}}, "another quantity"),
+        ({"ties": {"gamma1": "gamma2", "gamma2": "gamma1"}}, "not tied itself"),
+        ({"ties": {"gamma2": "gamma1"}, "fixed": {"gamma2": (3.0,)}}, "do not name"),
+        ({"ties": {"gamma2": "gamma1"}, "priors": (_prior("gamma2", 3, 1),)}, "do not name"),
+        ({"ties": {"third_light[V]": "third_light[I]"}}, "third_light"),
+        ({"ties": {"ellipsoidal2": "ellipsoidal1"}}, "these data can give"),
+    ],
+)
+def test_ties_that_cannot_be(wishes: dict[str, object], words: str) -> None:
+    with pytest.raises(UsageError, match=words):
+        _again(velocities=True, **wishes)
+
+
 # ---------------------------------------------------------------- free
 
 

@@ -63,6 +63,12 @@ def test_what_is_left_out_gets_its_default():
     }
 
 
+def test_ties_come_back():
+    plan = Plan(ties={"gamma2": "gamma1"})
+    assert to_plain(plan) == {"ties": {"gamma2": "gamma1"}}
+    assert from_plain(Plan, to_plain(plan)) == plan
+
+
 @pytest.mark.parametrize(
     ("document", "words"),
     [
