@@ -8,7 +8,7 @@ from PySide6.QtGui import QGuiApplication
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QApplication, QLineEdit
 
-from shadowscale.view.rows import BADLY, FAIRLY, WELL, quantity_rows
+from shadowscale.view.rows import BADLY, FAIRLY, WELL, leaders, quantity_rows
 from shadowscale_app.bench import Bench
 from shadowscale_app.models.quantities import ERROR, STATE, SYMBOL, VALUE
 
@@ -112,6 +112,34 @@ def test_limb_darkening_is_held_with_all_its_coefficients(bench: Bench) -> None:
     bench.panes["Quantities"].set_state("limb_darkening1[V].2", "held")
 
     assert bench.desk.session.plan.fixed["limb_darkening1[V]"] == (0.6, 0.55)
+
+
+def test_tying_and_untying(bench: Bench) -> None:
+    pane = bench.panes["Quantities"]
+    pane.tie("gamma2", "gamma1")
+    session = bench.desk.session
+
+    assert session.plan.ties == {"gamma2": "gamma1"}
+    assert session.system.value("gamma2") == session.system.value("gamma1")
+    assert "gamma2" not in session.system.free
+    assert cell(bench, "gamma2", STATE).endswith("tied")
+    assert leaders(session, "gamma1") == ()
+
+    pane.untie("gamma2")
+
+    assert bench.desk.session.plan.ties == {}
+    assert "gamma2" in bench.desk.session.system.free
+    assert cell(bench, "gamma2", STATE).endswith("free")
+
+
+def test_limb_darkening_is_tied_with_all_its_coefficients(bench: Bench) -> None:
+    bench.panes["Quantities"].tie("limb_darkening2[V].1", "limb_darkening1[V]")
+    system = bench.desk.session.system
+
+    assert system.limb_darkening(2, "V") == system.limb_darkening(1, "V")
+    assert not [name for name in system.free if name.startswith("limb_darkening2[V]")]
+    bench.panes["Quantities"].untie("limb_darkening2[V].1")
+    assert not bench.desk.session.system.ties
 
 
 def test_rows_can_be_copied(bench: Bench) -> None:

@@ -7,7 +7,7 @@ from typing import Any
 from PySide6.QtCore import QAbstractTableModel, QModelIndex, QPersistentModelIndex, Qt, Signal
 from PySide6.QtGui import QColor
 
-from shadowscale.view.rows import FREE, HELD, WITH_PRIOR, Row
+from shadowscale.view.rows import FREE, HELD, TIED, WITH_PRIOR, Row
 from shadowscale.view.written import read_number
 from shadowscale_app import theme
 from shadowscale_app.naming import wrapped
@@ -18,7 +18,7 @@ HEADER_TIPS = (
     "Double-click to type another one: the curve follows at once",
     "68.3 % limits; empty where it is held",
     "Nominal solar units (IAU 2015), days, degrees, km/s",
-    "Free: fitted; held: stays; prior: fitted, with a wish. Double-click to change it",
+    "Free: fitted; held: stays; prior: fitted, with a wish; tied: follows another. Double-click to change it",
     "Bar: error over value. Number: the strongest correlation; double-click to see it as a picture",
     "What the value can be at all",
 )
@@ -29,6 +29,7 @@ MARKS = {
     FREE: "\N{WHITE CIRCLE} free",
     HELD: "\N{BLACK CIRCLE} held",
     WITH_PRIOR: "\N{BULLSEYE} prior",
+    TIED: "\N{INFINITY} tied",
 }
 
 
@@ -144,6 +145,8 @@ def _texts(row: Row) -> tuple[str, ...]:
 
 def _tip(row: Row) -> str:
     lines = [f"{row.key}: {row.meaning}"]
+    if row.tied_to:
+        lines.append(f"tied to {row.tied_to}")
     if row.effect:
         lines.append(row.effect)
     if row.relative is not None:

@@ -19,7 +19,18 @@ from PySide6.QtWidgets import (
 )
 
 from shadowscale.session.session import Session
-from shadowscale.view.rows import FREE, HELD, WITH_PRIOR, Row, quantity_rows, with_state, with_value
+from shadowscale.view.rows import (
+    FREE,
+    HELD,
+    TIED,
+    WITH_PRIOR,
+    Row,
+    leaders,
+    quantity_rows,
+    with_state,
+    with_tie,
+    with_value,
+)
 from shadowscale_app.desk import Change
 from shadowscale_app.models.quantities import (
     ERROR,
@@ -47,7 +58,7 @@ class QuantitiesPane(Pane):
 
     title = "Quantities"
     about = (
-        "Every number of the model and what follows from it. Free ones are fitted, held ones stay, a prior pulls. "
+        "Every number of the model and what follows from it. Free ones are fitted, held ones stay, a prior pulls, a tied one follows another. "
         "Type a value or use the slider below to see what it does to the curve; double-click the state to change it, or the correlation to see it as a picture. "
         "The bar shows the error relative to the value: green below 1 %, one sign above, two signs above 5 %."
     )
@@ -96,6 +107,14 @@ class QuantitiesPane(Pane):
     def set_state(self, key: str, state: str) -> None:
         """Ask for a state: free, held, with prior."""
         self._ask(f"Make {key} {state}", lambda session: with_state(session, key, state))
+
+    def tie(self, key: str, leader: str) -> None:
+        """Ask for a quantity to follow another."""
+        self._ask(f"Tie {key} to {leader}", lambda session: with_tie(session, key, leader))
+
+    def untie(self, key: str) -> None:
+        """Ask for a quantity that followed another to be free again."""
+        self._ask(f"Untie {key}", lambda session: with_state(session, key, FREE))
 
     def _ask(self, label: str, change: Callable[[Session], Session], merge: str = "") -> None:
         try:
@@ -174,16 +193,26 @@ class QuantitiesPane(Pane):
             menu.addAction(
                 "Prior\N{HORIZONTAL ELLIPSIS}", lambda: self.asked.emit("prior", row.key)
             )
+            self._add_ties(menu, row)
             menu.addSeparator()
         menu.addAction("Copy rows", self.copy)
         menu.exec(self.table.viewport().mapToGlobal(place))
+
+    def _add_ties(self, menu: QMenu, row: Row) -> None:
+        for leader in leaders(self.session, row.key):
+            menu.addAction(
+                f"Tie to {leader}",
+                lambda key=row.key, leader=leader: self.tie(key, leader),
+            )
+        if row.state == TIED:
+            menu.addAction("Untie", lambda: self.untie(row.key))
 
     def _double_clicked(self, index: QModelIndex) -> None:
         row = self.model.rows[index.row()]
         if index.column() == GRADE and row.partner:
             self.asked.emit("pair", (row.key, row.partner))
         if index.column() == STATE and row.basic:
-            self.set_state(row.key, HELD if row.state != HELD else FREE)
+            self.set_state(row.key, FREE if row.state in (HELD, TIED) else HELD)
 
     def _name_slider(self, *_: object) -> None:
         row = self.chosen()

@@ -123,7 +123,7 @@ def _check_fixed(name: str, values: tuple[float, ...]) -> None:
 def _check_tie(plan: Plan, name: str, leader: str) -> None:
     shown = f"{name}={leader}"
     one, two = parse_key(name), parse_key(leader)
-    if _kind(one) != _kind(two):
+    if kind(one) != kind(two):
         raise UsageError("--tie", shown, expected="two quantities of the same kind")
     if _same(name, leader):
         raise UsageError("--tie", shown, expected="another quantity to follow")
@@ -135,7 +135,7 @@ def _check_tie(plan: Plan, name: str, leader: str) -> None:
         raise UsageError("--tie", shown, expected=wanted)
 
 
-def _kind(key: Key) -> tuple[str, str]:
+def kind(key: Key) -> tuple[str, str]:
     """What two quantities must share to be tied: the name but for the star, and the unit."""
     return key.name.rstrip("12"), key.quantity.unit
 

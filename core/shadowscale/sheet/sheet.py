@@ -34,6 +34,7 @@ class Entry:
     quantity: Quantity
     estimate: Estimate
     name: str = ""  # of a limb-darkening coefficient, as its law calls it
+    tied_to: str = ""  # the key that it follows
 
     @property
     def meaning(self) -> str:
@@ -43,7 +44,9 @@ class Entry:
 
     @property
     def source(self) -> str:
-        """Where the formula of a derived number is from; empty for all others."""
+        """Where the formula of a derived number is from, or what it follows; empty for all others."""
+        if self.tied_to:
+            return f"tied to {self.tied_to}"
         return self.quantity.source if self.estimate.how == DERIVED else ""
 
 
@@ -171,7 +174,8 @@ def make_sheet(
 def _entry(solution: Solution, text: str, name: str = "") -> Entry | None:
     """The entry of a key; None if the solution has no number for it."""
     estimate = solution.estimates.get(text)
-    return None if estimate is None else Entry(text, quantity_of(text), estimate, name)
+    tied_to = solution.system.ties.get(text, "")
+    return None if estimate is None else Entry(text, quantity_of(text), estimate, name, tied_to)
 
 
 def _entries(solution: Solution, scope: str, label: str | None) -> dict[str, Entry]:

@@ -9,14 +9,16 @@ from types import MappingProxyType
 
 import numpy as np
 
-from shadowscale.fit.plan import Prior
+from shadowscale.fit.build import means, named, tied_keys
+from shadowscale.fit.check import kind
+from shadowscale.fit.plan import Plan, Prior
 from shadowscale.fit.solution import ASSUMED, DERIVED, FITTED, Estimate, Solution
 from shadowscale.fit.system import System
 from shadowscale.quantities import BAND, Quantity, parse_key
 from shadowscale.session.session import Session
 from shadowscale.view.written import plain_value, symbol, unit_sign, value_and_error
 
-FREE, HELD, WITH_PRIOR = "free", "held", "with prior"
+FREE, HELD, WITH_PRIOR, TIED = "free", "held", "with prior", "tied"
 WELL, FAIRLY, BADLY, NONE = "well", "fairly", "badly", ""
 WELL_BELOW, BADLY_ABOVE = 0.01, 0.05  # relative errors: 1 % is the usual wish, 5 % is of little use
 STRONG = 0.9  # a correlation above this is said to be strong
@@ -53,6 +55,7 @@ class Row:
     strongest: str = ""
     correlation: float = 0.0
     partner: str = ""
+    tied_to: str = ""
 
 
 def quantity_rows(session: Session) -> tuple[Row, ...]:
@@ -88,6 +91,9 @@ def with_value(session: Session, name: str, value: float) -> Session:
     quantity = parse_key(name).quantity
     if not quantity.lower <= value <= quantity.upper:
         raise ValueError(f"{quantity.meaning} must lie in {bounds(quantity)}, found {value:g}")
+    if name in system.ties:
+        leader = system.ties[name]
+        raise ValueError(f"{name} is tied to {leader}: change {leader}, or untie it first")
     plan = session.plan
     if name in system.free:
         plan = replace(plan, start={**plan.start, name: value})
@@ -106,6 +112,7 @@ def with_state(session: Session, name: str, state: str) -> Session:
     fixed = {key: values for key, values in plan.fixed.items() if key not in (name, held)}
     free = tuple(key for key in plan.free if key not in (name, held))
     priors = tuple(prior for prior in plan.priors if prior.name not in (name, held))
+    plan = replace(plan, ties=_ties_without(session, system, held))
     if state == HELD:
         fixed[held] = _fixed_values(system, name, system.values[name])
     elif state == FREE:
@@ -119,6 +126,54 @@ def with_state(session: Session, name: str, state: str) -> Session:
         plan=replace(plan, fixed=fixed, free=free, priors=priors),
         system=_freed(system, name, state),
     )
+
+
+def leaders(session: Session, name: str) -> tuple[str, ...]:
+    """What a basic quantity can be tied to, as the plan names it; nothing where another follows it."""
+    system, own = session.system, _plan_name(name)
+    if system is None or any(_plan_name(leader) == own for leader in system.ties.values()):
+        return ()
+    tied = {_plan_name(key) for key in system.ties}
+    names = dict.fromkeys(_plan_name(key) for key in system.values)
+    return tuple(
+        other
+        for other in names
+        if other != own and other not in tied and kind(parse_key(other)) == kind(parse_key(own))
+    )
+
+
+def with_tie(session: Session, name: str, leader: str) -> Session:
+    """The session with one basic quantity tied to another, one of its `leaders`.
+
+    Raises
+    ------
+    ValueError
+        If it cannot follow that one.
+    """
+    if leader not in leaders(session, name):
+        raise ValueError(f"{name} cannot be tied to {leader}")
+    freed = with_state(session, name, FREE)
+    own, system = _plan_name(name), freed.system
+    assert system is not None  # or it had no leaders
+    plan = replace(
+        freed.plan,
+        free=tuple(each for each in freed.plan.free if each != own),
+        ties={**freed.plan.ties, own: leader},
+    )
+    ties = {**system.ties, **tied_keys(Plan(ties={own: leader}), system.values)}
+    free = tuple(key for key in system.free if key not in ties)
+    system = replace(system, ties=ties, free=free).with_values({})
+    return replace(freed, plan=plan, system=system)
+
+
+def _ties_without(session: Session, system: System, own: str) -> dict[str, str]:
+    """The plan's ties but for one name's; what a wish for every band tied else stays so, by name."""
+    kept = {name: leader for name, leader in session.plan.ties.items() if not means(name, own)}
+    for key, leader in system.ties.items():
+        name = _plan_name(key)
+        if name != own and named(kept, name) is None:
+            kept[name] = _plan_name(leader)
+    return kept
 
 
 def with_prior(session: Session, name: str, value: float, *, sigma: float) -> Session:
@@ -142,9 +197,11 @@ def _basic_row(system: System, name: str, estimate: Estimate | None) -> Row:
     state = FREE if name in system.free else HELD
     if any(prior.name in (name, _plan_name(name), parse_key(name).name) for prior in system.priors):
         state = WITH_PRIOR if state == FREE else HELD
+    if name in system.ties:
+        state = TIED
     if estimate is None or estimate.value != value:
-        return _row(name, Estimate(value, None, None, FITTED), state)
-    return _row(name, estimate, state)
+        estimate = Estimate(value, None, None, FITTED)
+    return replace(_row(name, estimate, state), tied_to=system.ties.get(name, ""))
 
 
 def _row(name: str, estimate: Estimate, state: str) -> Row:
@@ -273,4 +330,5 @@ def _freed(system: System, name: str, state: str) -> System:
     free = tuple(key for key in system.free if key not in keys)
     if state != HELD:
         free += tuple(keys)
-    return replace(system, free=free)
+    ties = {key: leader for key, leader in system.ties.items() if key not in keys}
+    return replace(system, free=free, ties=ties)
