@@ -6,7 +6,7 @@ import pytest
 from PySide6.QtCore import Qt
 from PySide6.QtGui import QGuiApplication
 from PySide6.QtTest import QTest
-from PySide6.QtWidgets import QApplication, QLineEdit
+from PySide6.QtWidgets import QApplication, QLineEdit, QMenu
 
 from shadowscale.view.rows import BADLY, FAIRLY, WELL, leaders, quantity_rows
 from shadowscale_app.bench import Bench
@@ -116,7 +116,11 @@ def test_limb_darkening_is_held_with_all_its_coefficients(bench: Bench) -> None:
 
 def test_tying_and_untying(bench: Bench) -> None:
     pane = bench.panes["Quantities"]
-    pane.tie("gamma2", "gamma1")
+    menu = QMenu()
+    pane.add_ties(menu, pane.model.rows[pane.model.row_of("gamma2")])
+    (tie,) = menu.actions()
+    assert tie.text() == "Tie to gamma1"
+    tie.trigger()
     session = bench.desk.session
 
     assert session.plan.ties == {"gamma2": "gamma1"}

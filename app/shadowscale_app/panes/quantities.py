@@ -193,16 +193,16 @@ class QuantitiesPane(Pane):
             menu.addAction(
                 "Prior\N{HORIZONTAL ELLIPSIS}", lambda: self.asked.emit("prior", row.key)
             )
-            self._add_ties(menu, row)
+            self.add_ties(menu, row)
             menu.addSeparator()
         menu.addAction("Copy rows", self.copy)
         menu.exec(self.table.viewport().mapToGlobal(place))
 
-    def _add_ties(self, menu: QMenu, row: Row) -> None:
+    def add_ties(self, menu: QMenu, row: Row) -> None:
+        """Lines that tie a row to each that can lead it, or untie it."""
         for leader in leaders(self.session, row.key):
-            menu.addAction(
-                f"Tie to {leader}",
-                lambda key=row.key, leader=leader: self.tie(key, leader),
+            menu.addAction(f"Tie to {leader}").triggered.connect(
+                lambda _=False, key=row.key, leader=leader: self.tie(key, leader)
             )
         if row.state == TIED:
             menu.addAction("Untie", lambda: self.untie(row.key))

@@ -92,6 +92,17 @@ def document(sheet):
     return json.loads(as_json(sheet))
 
 
+def test_a_tied_quantity_says_what_it_follows(session):
+    solution = session.solution
+    tied = replace(solution.system, ties={"gamma2": "gamma1"})
+    estimates = {**solution.estimates, "gamma2": solution.estimates["gamma1"]}
+    found = sheet_for(session, system=tied, estimates=estimates)
+
+    (row,) = [each for each in csv.DictReader(StringIO(as_csv(found))) if each["name"] == "gamma2"]
+    assert row["source"] == "tied to gamma1"
+    assert '"tied to gamma1"' in as_json(found)
+
+
 def test_the_json_sheet_follows_its_schema(document):
     jsonschema.validate(document, schema())
 
