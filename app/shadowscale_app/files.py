@@ -284,9 +284,10 @@ def _kind(path: Path) -> str:
 def _opened(path: Path) -> tuple[Session, Path]:
     from shadowscale.jobs.packing import is_packed, unpack_session
     from shadowscale.session.store import open_session
+    from shadowscale.view.contacts import with_start_markers
 
     place = unpack_session(path) if is_packed(path) else path
-    return open_session(place), place
+    return with_start_markers(open_session(place)), place
 
 
 def _packed(session: Session, path: Path) -> Path:

@@ -11,6 +11,7 @@ from PySide6.QtWidgets import QMessageBox
 
 from shadowscale.jobs import results as jobs_results
 from shadowscale.session.journal import Journal
+from shadowscale.session.session import Session
 from shadowscale_app.actions import FIGURE_PANES
 from shadowscale_app.bench import Bench
 from shadowscale_app.desk import Change
@@ -76,6 +77,23 @@ def test_what_is_saved_opens_again(bench: Bench, tmp_path: Path) -> None:
 
     assert bench.desk.session.name == "other"
     assert bench.desk.session.photometry is not None
+
+
+def test_a_session_of_the_command_has_markers_to_pull(
+    bench: Bench, session: Session, tmp_path: Path
+) -> None:
+    """The command keeps the contacts it measured, and knows no markers."""
+    opened(bench)
+    solved = replace(bench.desk.session, contact=session.contact, markers=None)
+    bench.desk.begin(solved, bench.desk.path)
+    bench.files.save_to(tmp_path / "session.json")
+    bench.open_paths([str(tmp_path / "session.json")])
+
+    markers, contact = bench.desk.session.markers, session.contact
+    assert markers is not None
+    assert contact is not None
+    assert markers.primary == pytest.approx(contact.primary.contacts)
+    assert not bench.desk.unsaved
 
 
 def test_closing_asks_and_cancel_keeps_the_window(
