@@ -159,7 +159,7 @@ def repacked(packed, target, changes):
     [
         "../evil.txt",
         "data/../../evil.txt",
-        "/tmp/evil.txt",
+        "/nowhere/evil.txt",
         "data\\..\\evil",
         "C:evil",
         "a/b",
