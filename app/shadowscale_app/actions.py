@@ -116,8 +116,8 @@ def _span(part: str) -> Callable[[Bench], object]:
 
 
 TABLE: tuple[Entry, ...] = (
-    Entry("open", f"Open{ELLIPSIS}", "File", lambda b: b.files.ask_open(), Std.Open, "Open photometry or a session", bar="Open"),
-    Entry("velocities", f"Add velocities{ELLIPSIS}", "File", lambda b: b.files.ask_velocities(), "Ctrl+Shift+O", "Add a table of radial velocities", _has_light, bar="Velocities"),
+    Entry("open", f"Open{ELLIPSIS}", "File", lambda b: b.opening.ask_open(), Std.Open, "Open photometry or a session", bar="Open"),
+    Entry("velocities", f"Add velocities{ELLIPSIS}", "File", lambda b: b.opening.ask_velocities(), "Ctrl+Shift+O", "Add a table of radial velocities", _has_light, bar="Velocities"),
     Entry("save", "Save", "File", lambda b: b.files.save(), Std.Save, "Save the session", _has_light, bar="Save", rule_before=True),
     Entry("save_as", f"Save as{ELLIPSIS}", "File", lambda b: b.files.save_as(), Std.SaveAs, "Save the session in another file", _has_light),
     Entry("pack", f"Pack with its data{ELLIPSIS}", "File", lambda b: b.files.ask_pack(), "", "One zip file with the session and all its tables, to be sent to a colleague", _has_light),

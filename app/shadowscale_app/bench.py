@@ -25,6 +25,7 @@ from shadowscale_app.files import ORGANISATION, PROGRAM, Files, sample_sessions,
 from shadowscale_app.jobs import LiveLane, LongLane
 from shadowscale_app.journals import Journals
 from shadowscale_app.live import Live
+from shadowscale_app.opening import Opening
 from shadowscale_app.panes import all_panes
 from shadowscale_app.panes.kept import KeptPane
 from shadowscale_app.panes.pairs import PairsPane
@@ -48,6 +49,7 @@ class Bench(QMainWindow):
 
     desk: Desk  # named here for those who import this module only to check types
     files: Files
+    opening: Opening
     live: Live
     work: WorkDesk
     points: PointsDesk
@@ -61,6 +63,7 @@ class Bench(QMainWindow):
         self.live = Live(self.desk, self.lane, self)
         self.work = WorkDesk(self.desk, self.long_lane, self)
         self.files = Files(self.desk, self, immediate=immediate)
+        self.opening = Opening(self.desk, self.files)
         self.journals = Journals(self.desk, self.files.errands, self, immediate=immediate)
         self.points = PointsDesk(self.desk, self)
         self.warmer = Warmer(self)
@@ -153,12 +156,12 @@ class Bench(QMainWindow):
     def open_paths(self, paths: Sequence[str]) -> None:
         """Open what the command line or a drop names."""
         with trouble.guard("opening " + ", ".join(Path(path).name for path in paths)):
-            self.files.open_paths([Path(path) for path in paths])
+            self.opening.open_paths([Path(path) for path in paths])
 
     def open_sample(self, path: str) -> None:
         """Open a sample and solve it, so that a newcomer sees a whole sheet at once."""
         with trouble.guard(f"opening {Path(path).name}"):
-            self.files.open_paths([Path(path)], self._solve_new)
+            self.opening.open_paths([Path(path)], self._solve_new)
 
     def _solve_new(self) -> None:
         session = self.desk.session
@@ -203,7 +206,7 @@ class Bench(QMainWindow):
             pane.told.connect(self.status.tell)
             pane.pointed.connect(self._pointed)
             pane.asked.connect(self._asked)
-        for teller in (self.live, self.work, self.points, self.warmer, self.files):
+        for teller in (self.live, self.work, self.points, self.warmer, self.files, self.opening):
             teller.told.connect(self.status.tell)
         self.lane.busy.connect(self.status.show_live)
         self.files.errands.busy.connect(self.status.show_errand)
@@ -213,8 +216,9 @@ class Bench(QMainWindow):
         self.work.searched.connect(self._searched)
         self.long_lane.progressed.connect(self.status.show_progress)
         self.status.stop_wanted.connect(self.work.stop)
+        self.status.give_up_wanted.connect(self.files.errands.give_up)
         self.warmer.ready.connect(self._show_all)
-        self.start.open_wanted.connect(trouble.guarded("opening", self.files.ask_open))
+        self.start.open_wanted.connect(trouble.guarded("opening", self.opening.ask_open))
         self.start.path_wanted.connect(lambda path: self.open_paths([path]))
         self.start.sample_wanted.connect(self.open_sample)
         trouble.bell().arose.connect(self._trouble)
@@ -309,6 +313,7 @@ def run(paths: Sequence[str]) -> int:
     if paths:
         QTimer.singleShot(0, bench, lambda: bench.open_paths(paths))
     status = application.exec()
-    if bench.warmer.busy:  # a compiler cannot be interrupted, and all that matters is saved
+    if bench.warmer.busy or bench.files.errands.left_behind:
+        # a compiler and a reader cannot be interrupted, and all that matters is saved
         os._exit(status)
     return status

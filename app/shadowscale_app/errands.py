@@ -18,34 +18,47 @@ LONGEST_WAIT = 600.0  # s, for a file that must be written before the window clo
 
 @dataclass(frozen=True, eq=False)
 class Errand:
-    """Work for the thread, and what the window does with its result; a `quiet` one is not shown."""
+    """Work for the thread, and what the window does with its result.
+
+    A `quiet` one is not shown; one that only `reads` can be given up.
+    """
 
     doing: str
     work: Callable[[], Any]
     then: Callable[[Any], object]
     quiet: bool
+    reads: bool
 
 
 class Errands(QObject):
-    """One thread at a time. Signal `busy(words)`: what is being done; empty: nothing more.
+    """One thread at a time. Signals: `busy(words, reads)`: what is being done, whether it can be given up;
+    empty: nothing more. `given_up(words)`.
 
     What goes wrong is told. With `immediate` everything happens at once, for tests.
     """
 
-    busy = Signal(str)
+    busy = Signal(str, bool)
+    given_up = Signal(str)
     _arrived = Signal(object, object)
 
     def __init__(self, parent: QObject | None = None, *, immediate: bool = False) -> None:
         super().__init__(parent)
         self.immediate = immediate
         self._waiting: deque[Errand] = deque()
-        self._thread: threading.Thread | None = None
+        self._running: tuple[Errand, threading.Thread] | None = None
+        self._left: list[threading.Thread] = []
         self._arrived.connect(self._take)
 
     @property
     def running(self) -> bool:
         """Whether anything is being done or waits."""
-        return self._thread is not None or bool(self._waiting)
+        return self._running is not None or bool(self._waiting)
+
+    @property
+    def left_behind(self) -> bool:
+        """Whether a reading that was given up has not come to its end: nothing can interrupt it."""
+        self._left = [thread for thread in self._left if thread.is_alive()]
+        return bool(self._left)
 
     def run(
         self,
@@ -56,12 +69,20 @@ class Errands(QObject):
         quiet: bool = False,
     ) -> None:
         """Have something done; `then` gets the result, on the window's thread."""
-        errand = Errand(doing, work, then, quiet)
-        if self.immediate:
-            with trouble.guard(doing):
-                then(work())
+        self._ask(Errand(doing, work, then, quiet, reads=False))
+
+    def read(self, doing: str, work: Callable[[], Any], then: Callable[[Any], object]) -> None:
+        """Have something read that changes nothing, so that it can be given up."""
+        self._ask(Errand(doing, work, then, quiet=False, reads=True))
+
+    def give_up(self) -> None:
+        """What is being read is no longer wanted; its thread ends by itself, and nobody hears of it."""
+        if self._running is None or not self._running[0].reads:
             return
-        self._waiting.append(errand)
+        (errand, thread), self._running = self._running, None
+        self._left.append(thread)
+        self.busy.emit("", False)
+        self.given_up.emit(errand.doing)
         self._start()
 
     def wait_until_idle(self, seconds: float = LONGEST_WAIT) -> bool:
@@ -73,37 +94,48 @@ class Errands(QObject):
         return not self.running
 
     def close(self) -> None:
-        """Let what was begun come to its end; called before the application goes."""
+        """Let what is being written come to its end; called before the application goes."""
         self._waiting.clear()
-        if self._thread is not None:
-            self._thread.join()
-            self._thread = None
+        self.give_up()
+        if self._running is not None:
+            self._running[1].join()
+            self._running = None
+
+    def _ask(self, errand: Errand) -> None:
+        if self.immediate:
+            with trouble.guard(errand.doing):
+                errand.then(errand.work())
+            return
+        self._waiting.append(errand)
+        self._start()
 
     def _start(self) -> None:
-        if self._thread is not None or not self._waiting:
+        if self._running is not None or not self._waiting:
             return
         errand = self._waiting.popleft()
-        self._thread = threading.Thread(
-            target=self._run, args=(errand,), name="errands", daemon=True
-        )
+        thread = threading.Thread(target=self._run, args=(errand,), name="errands", daemon=True)
+        self._running = errand, thread
         if not errand.quiet:
-            self.busy.emit(errand.doing)
-        self._thread.start()
+            self.busy.emit(errand.doing, errand.reads)
+        thread.start()
 
     def _run(self, errand: Errand) -> None:
         try:
             result: object = errand.work()
         except Exception as error:  # carried to the window, which shows it
             result = Failure(error)
-        self._arrived.emit(errand, result)
+        try:
+            self._arrived.emit(errand, result)
+        except RuntimeError:
+            return  # the window went while something that was given up was still read
 
     def _take(self, errand: Errand, result: object) -> None:
-        if self._thread is None:
-            return  # closed
-        self._thread.join()
-        self._thread = None
+        if self._running is None or self._running[0] is not errand:
+            return  # given up, or closed
+        self._running[1].join()
+        self._running = None
         if not errand.quiet:
-            self.busy.emit("")
+            self.busy.emit("", False)
         if isinstance(result, Failure):
             trouble.tell(errand.doing, result.error)
         else:

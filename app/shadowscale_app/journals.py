@@ -96,7 +96,7 @@ class Journals(QObject):
                 "tidying up", lambda: discard(item), quiet=True
             )  # once it is written anew
 
-        self._errands.run(f"recovering {item.name}", lambda: recover(item), take)
+        self._errands.read(f"recovering {item.name}", lambda: recover(item), take)
 
 
 def journal_folder() -> Path:

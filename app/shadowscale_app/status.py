@@ -15,9 +15,10 @@ WORDS_MS = 12_000
 
 
 class Status(QStatusBar):
-    """Signal `stop_wanted()`."""
+    """Signals `stop_wanted()` for long work, `give_up_wanted()` for a file that is being read."""
 
     stop_wanted = Signal()
+    give_up_wanted = Signal()
 
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
@@ -28,6 +29,15 @@ class Status(QStatusBar):
         self.words.setTextFormat(Qt.TextFormat.PlainText)
         self.words.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
         self.errand = QLabel("")
+        self.errand_bar = QProgressBar()
+        self.errand_bar.setRange(0, 0)  # nobody knows how long a file takes
+        self.errand_bar.setFixedWidth(70)
+        self.errand_bar.setTextVisible(False)
+        named(self.errand_bar, "Reading or writing", "A file is being read or written")
+        self.give_up = QToolButton()
+        self.give_up.setText("Cancel")
+        named(self.give_up, "Cancel reading", "Do not read this file; the session stays as it is")
+        self.give_up.clicked.connect(self.give_up_wanted)
         self.live = QLabel("")
         self.live.setObjectName("quiet")
         self.fit = QLabel("")
@@ -47,9 +57,11 @@ class Status(QStatusBar):
         )
         self.stop.clicked.connect(self.stop_wanted)
         self.addWidget(self.words, 1)
-        for widget in (self.errand, self.live, self.doing, self.bar, self.stop, self.fit):
+        errand = (self.errand, self.errand_bar, self.give_up)
+        for widget in (*errand, self.live, self.doing, self.bar, self.stop, self.fit):
             self.addPermanentWidget(widget)
         self.show_busy(False)
+        self.show_errand("", False)
 
     def tell(self, words: str) -> None:
         """Show a sentence."""
@@ -68,9 +80,11 @@ class Status(QStatusBar):
         """The live fit begins or ends."""
         self.live.setText("fitting\N{HORIZONTAL ELLIPSIS}" if busy else "")
 
-    def show_errand(self, words: str) -> None:
-        """A file is being read or written; empty: it is done."""
+    def show_errand(self, words: str, reads: bool) -> None:
+        """A file is being read (which can be given up) or written; empty: it is done."""
         self.errand.setText(f"{words}\N{HORIZONTAL ELLIPSIS}" if words else "")
+        self.errand_bar.setVisible(bool(words))
+        self.give_up.setVisible(reads)
 
     def show_progress(self, fraction: float, words: str, left: float) -> None:
         """How far a long job is."""

@@ -12,7 +12,7 @@ from PySide6.QtGui import QGuiApplication
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QApplication, QDialogButtonBox
 
-from shadowscale.data import read_photometry
+from shadowscale.data import head_of, read_photometry
 from shadowscale.errors import NotDetachedError, Problem, TableError
 from shadowscale_app import trouble
 from shadowscale_app.bench import Bench
@@ -40,7 +40,7 @@ def table(tmp_path: Path) -> Path:
 
 @pytest.fixture
 def dialog(qapp: QApplication, table: Path) -> Iterator[ReadingDialog]:
-    found = ReadingDialog(table, "photometry")
+    found = ReadingDialog(head_of(table), "photometry")
     yield found
     found.deleteLater()
 
@@ -92,7 +92,7 @@ def test_rows_that_cannot_be_read_are_named(dialog: ReadingDialog) -> None:
 
 
 def test_opening_a_table_begins_a_session_as_it_was_read(bench: Bench, table: Path) -> None:
-    bench.files._ask = lambda *_, **__: Reading({}, "R")
+    bench.opening.ask = lambda *_, **__: Reading({}, "R")
 
     bench.open_paths([str(table)])
 
@@ -105,7 +105,7 @@ def test_opening_a_table_begins_a_session_as_it_was_read(bench: Bench, table: Pa
 
 
 def test_a_session_that_was_read_keeps_its_columns(bench: Bench, table: Path) -> None:
-    bench.files._ask = lambda *_, **__: Reading({"mag": "check"}, None)
+    bench.opening.ask = lambda *_, **__: Reading({"mag": "check"}, None)
 
     bench.open_paths([str(table)])
 
@@ -189,12 +189,15 @@ def test_a_trouble_that_comes_again_opens_one_window(
 def test_a_second_table_can_be_added_to_the_session(
     bench: Bench, table: Path, tmp_path: Path
 ) -> None:
-    bench.files._ask = lambda *_, **__: Reading({}, "R")
+    bench.opening.ask = lambda *_, **__: Reading({}, "R")
     bench.open_paths([str(table)])
     other = tmp_path / "later.csv"
     other.write_text(table.read_text(encoding="utf-8").replace("24600", "24601"), encoding="utf-8")
     asked: list[bool] = []
-    bench.files._ask = lambda *_, may_add: (asked.append(may_add), Reading({}, "I", adds=True))[1]
+    bench.opening.ask = lambda *_, may_add, adds: (
+        asked.append(may_add),
+        Reading({}, "I", adds=True),
+    )[1]
 
     bench.open_paths([str(other)])
 

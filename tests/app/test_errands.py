@@ -8,8 +8,11 @@ from dataclasses import replace
 from pathlib import Path
 
 import pytest
+from PySide6.QtCore import Qt
+from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QApplication, QMessageBox
 
+from shadowscale import data
 from shadowscale.session import store, tables
 from shadowscale_app.bench import Bench
 from shadowscale_app.desk import Change
@@ -72,21 +75,92 @@ def test_the_window_lives_while_a_table_is_read(
     monkeypatch.setattr(
         tables, "with_tables", lambda session: plain(session) if gate.wait(20) else session
     )
-    monkeypatch.setattr(unhurried.files, "_ask", lambda *_, **__: Reading())
+    monkeypatch.setattr(unhurried.opening, "ask", lambda *_, **__: Reading())
     before = unhurried.desk.session
     path = samples()[0][2].parent / "photometry.csv"
 
-    unhurried.files.open_photometry(path)
-    QApplication.processEvents()
-    busy = unhurried.status.errand.text()
+    unhurried.opening.open_paths([path])
+    while not (busy := unhurried.status.errand.text()).startswith("opening"):
+        QApplication.processEvents()  # it is looked into first
     unhurried.actions_table.by_name["magnitudes"].trigger()  # something else is done meanwhile
 
-    assert busy.startswith("opening photometry.csv")
+    assert busy == "opening photometry.csv\N{HORIZONTAL ELLIPSIS}"
     assert before.photometry is unhurried.desk.session.photometry
     gate.set()
     assert unhurried.files.errands.wait_until_idle()
     assert unhurried.desk.session.name == "photometry"
     assert unhurried.status.errand.text() == ""
+
+
+@pytest.mark.parametrize("moment", ["looked into", "read"])
+def test_reading_can_be_given_up_by_a_click(
+    unhurried: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, moment: str
+) -> None:
+    gate = threading.Event()
+    module, name = (data, "head_of") if moment == "looked into" else (tables, "with_tables")
+    plain = getattr(module, name)
+    monkeypatch.setattr(module, name, lambda given: (gate.wait(20), plain(given))[1])
+    asked: list[str] = []
+    monkeypatch.setattr(
+        unhurried.opening, "ask", lambda *_, **__: (asked.append(moment), Reading())[1]
+    )
+    before = unhurried.desk.session
+    unhurried.opening.open_paths([samples()[0][2].parent / "photometry.csv"])
+    while moment == "read" and not asked:
+        QApplication.processEvents()
+    QApplication.processEvents()
+    assert unhurried.status.errand.text().endswith("photometry.csv\N{HORIZONTAL ELLIPSIS}")
+    assert unhurried.status.errand_bar.isVisible()
+
+    QTest.mouseClick(unhurried.status.give_up, Qt.MouseButton.LeftButton)
+
+    assert not unhurried.files.errands.running
+    assert not unhurried.status.give_up.isVisible()
+    assert unhurried.files.errands.left_behind
+    told = unhurried.status.words.text()
+    assert told.startswith("Given up: ")
+    assert told.endswith("The session is as it was.")
+    unhurried.files.errands.run("counting", lambda: 1)  # others are done at once
+    assert unhurried.files.errands.wait_until_idle()
+    gate.set()
+    while unhurried.files.errands.left_behind:
+        QApplication.processEvents()
+    QApplication.processEvents()
+    assert unhurried.desk.session is before
+    assert asked == (["read"] if moment == "read" else [])
+
+
+def test_what_is_written_cannot_be_given_up(unhurried: Bench, tmp_path: Path) -> None:
+    gate, done = threading.Event(), []
+    unhurried.files.errands.run("saving work.json", lambda: gate.wait(20), done.append)
+    QApplication.processEvents()
+
+    assert not unhurried.status.give_up.isVisible()
+    unhurried.files.errands.give_up()
+
+    assert unhurried.files.errands.running
+    gate.set()
+    assert unhurried.files.errands.wait_until_idle()
+    assert done == [True]
+
+
+def test_photometry_comes_before_velocities_whatever_their_order(
+    unhurried: Bench, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    kinds: list[str] = []
+    monkeypatch.setattr(
+        unhurried.opening,
+        "ask",
+        lambda _window, _table, kind, **_: (kinds.append(kind), Reading())[1],
+    )
+    folder = samples()[0][2].parent
+
+    unhurried.open_paths([str(folder / "velocities.csv"), str(folder / "photometry.csv")])
+    assert unhurried.files.errands.wait_until_idle()
+
+    assert kinds == ["photometry", "velocities"]
+    assert unhurried.desk.session.photometry is not None
+    assert unhurried.desk.session.velocities is not None
 
 
 def test_closing_waits_until_the_work_is_saved(

@@ -22,7 +22,7 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from shadowscale.data import Preview, preview
+from shadowscale.data import Preview, RawTable, preview_of
 from shadowscale_app import trouble
 from shadowscale_app.naming import named
 
@@ -62,10 +62,16 @@ class Reading:
 
 
 def ask_reading(
-    parent: QWidget | None, path: Path, kind: str, *, may_add: bool = False
+    parent: QWidget | None,
+    table: RawTable,
+    kind: str,
+    *,
+    may_add: bool = False,
+    adds: bool = False,
 ) -> Reading | None:
-    """Show the dialog; None if the person gave up."""
-    dialog = ReadingDialog(path, kind, parent, may_add=may_add)
+    """Show the dialog for the first rows of a table; None if the person gave up."""
+    dialog = ReadingDialog(table, kind, parent, may_add=may_add)
+    dialog.adds.setChecked(may_add and adds)
     accepted = dialog.exec() == QDialog.DialogCode.Accepted
     dialog.deleteLater()
     return dialog.reading() if accepted else None
@@ -75,11 +81,11 @@ class ReadingDialog(QDialog):
     """The dialog: guesses above, the first rows below, what cannot be read at the foot."""
 
     def __init__(
-        self, path: Path, kind: str, parent: QWidget | None = None, *, may_add: bool = False
+        self, table: RawTable, kind: str, parent: QWidget | None = None, *, may_add: bool = False
     ) -> None:
         super().__init__(parent)
-        self.path, self.kind = path, kind
-        self.setWindowTitle(f"Read {kind} from {path.name}")
+        self.table, self.kind = table, kind
+        self.setWindowTitle(f"Read {kind} from {Path(table.path).name}")
         self.resize(820, 560)
         self._changed: dict[str, str] = {}
         self._shown_system = ""
@@ -193,8 +199,8 @@ class ReadingDialog(QDialog):
 
     def _look(self) -> None:
         try:
-            found = preview(
-                self.path, self.kind, columns=self._changed, band=self.band.text().strip() or None
+            found = preview_of(
+                self.table, self.kind, columns=self._changed, band=self.band.text().strip() or None
             )
         except Exception as error:
             self.foot.setText(trouble.trouble_of("reading", error).sentence)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -21,6 +21,7 @@ from shadowscale.errors import InputError, Problem, UsageError
 
 HEAD = 262_144  # bytes read of a long file
 SHOWN_ROWS = 50
+CUT_ROWS = 5000  # about as many as are in the head of a text table
 PHOTOMETRY, VELOCITIES = "photometry", "velocities"
 KINDS = (PHOTOMETRY, VELOCITIES)
 
@@ -96,9 +97,19 @@ def preview(
     TableError
         If the file is no table. Columns that cannot be understood are no error here: they are `problems`.
     """
+    return preview_of(head_of(path), kind, columns=columns, band=band)
+
+
+def preview_of(
+    table: RawTable,
+    kind: str = PHOTOMETRY,
+    *,
+    columns: Chosen = NOTHING_CHOSEN,
+    band: str | None = None,
+) -> Preview:
+    """As `preview`, of a head that was read before: that is quick, whatever the file."""
     if kind not in KINDS:
         raise ValueError(f"kind: {kind!r} is none of {', '.join(KINDS)}")
-    table = head_of(path)
     guesses, problems = _guesses(table, kind, columns)
     roles = {guess.role: guess for guess in guesses}
     clock: Clock | None = None
@@ -133,19 +144,29 @@ def head_of(path: FilePath) -> RawTable:
     file = file_bytes(path, HEAD)
     reader = reader_for(file)
     if file.partial and reader is READERS["votable"]:
-        file = file_bytes(path)  # XML cannot be cut
+        return _cut(reader.read(file_bytes(path)))  # XML cannot be cut, but what came of it can
     return reader.read(file)
 
 
-def sniff_kind(path: FilePath) -> str:
-    """`photometry` or `velocities`, by the names of the columns or the look of the numbers.
+def _cut(table: RawTable) -> RawTable:
+    """The first rows of a table that had to be read whole."""
+    if len(table.line) <= CUT_ROWS:
+        return table
+    columns = tuple(
+        replace(
+            column,
+            numbers=column.numbers[:CUT_ROWS],
+            codes=None if column.codes is None else column.codes[:CUT_ROWS],
+        )
+        for column in table.columns
+    )
+    return replace(
+        table, columns=columns, line=table.line[:CUT_ROWS], estimated_rows=len(table.line)
+    )
 
-    Raises
-    ------
-    TableError
-        If the file is no table.
-    """
-    table = head_of(path)
+
+def kind_of(table: RawTable) -> str:
+    """`photometry` or `velocities`, by the names of the columns or the look of the numbers."""
     if table.named:
         light, _ = _guesses(table, PHOTOMETRY, {})
         velocities, _ = _guesses(table, VELOCITIES, {})

@@ -10,11 +10,11 @@ from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
 from shadowscale.data import (
+    head_of,
     preview,
     read_limb_table,
     read_photometry,
     read_velocities,
-    sniff_kind,
 )
 from shadowscale.data.files import read_table
 from shadowscale.errors import InputError, Problem
@@ -81,7 +81,7 @@ def test_every_line_is_a_row_or_listed(lines: list[str], tmp_path: Path) -> None
 
 
 def _try_everything(path: Path) -> None:
-    for reader in (read_photometry, read_velocities, read_limb_table, preview, sniff_kind):
+    for reader in (read_photometry, read_velocities, read_limb_table, preview, head_of):
         problems: tuple[Problem, ...] = ()
         try:
             reader(path)

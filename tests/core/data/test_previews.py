@@ -8,7 +8,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from shadowscale.data import preview, read_photometry, sniff_kind
+from shadowscale.data import head_of, kind_of, preview, read_photometry
 from shadowscale.errors import TableError
 from table_files import light, rows, written
 
@@ -71,14 +71,11 @@ def test_long_files_of_other_formats(tmp_path: Path) -> None:
 
     count = 20_000
     table = Table({"bjd": 2459000 + np.arange(count) * 1e-3, "flux": 1 + np.arange(count) * 1e-7})
-    for name, form, estimated in (
-        ("a.fits", "fits", True),
-        ("a.ecsv", "ascii.ecsv", True),
-        ("a.vot", "votable", False),
-    ):
+    for name, form in (("a.fits", "fits"), ("a.ecsv", "ascii.ecsv"), ("a.vot", "votable")):
         table.write(tmp_path / name, format=form)
         seen = preview(tmp_path / name)
-        assert seen.estimated is estimated
+        assert seen.estimated
+        assert len(head_of(tmp_path / name).line) < count
         assert seen.row_count == pytest.approx(count, rel=0.02)
         assert [guess.column for guess in seen.guesses] == ["bjd", "flux"]
 
@@ -126,4 +123,4 @@ def test_the_kind_of_a_file(header: str, row: str, kind: str, tmp_path: Path) ->
                 d=f"{0.4 + 0.1 * swing:.4f}",
             )
         )
-    assert sniff_kind(written(tmp_path, "a.txt", lines)) == kind
+    assert kind_of(head_of(written(tmp_path, "a.txt", lines))) == kind
