@@ -9,6 +9,7 @@ from shadowscale.fit.solution import DERIVED, Solution
 from shadowscale.judge.finding import PASS
 from shadowscale.quantities import QUANTITIES, written
 from shadowscale.session.session import Session
+from shadowscale.sheet.sheet import all_notes, rows_set_aside
 
 SHOWN = (
     "period",
@@ -25,10 +26,15 @@ SHOWN = (
 
 
 def summary(session: Session, folder: Path) -> str:
-    """Main quantities, doubts, and where the files are."""
+    """Main quantities, doubts, rows set aside, and where the files are."""
     if session.solution is None:
         raise ValueError("the session is not solved")
-    lines = [*_quantities(session.solution), *_doubts(session), f"results are in {folder}"]
+    lines = [
+        *_quantities(session.solution),
+        *_doubts(session),
+        *_rows(session),
+        f"results are in {folder}",
+    ]
     return "\n".join(lines) + "\n"
 
 
@@ -52,3 +58,15 @@ def _doubts(session: Session) -> Iterator[str]:
             yield f"{finding.verdict}: {finding.words}"
     for alternative in solution.alternatives:
         yield f"also possible: {alternative.words}"
+
+
+def _rows(session: Session) -> Iterator[str]:
+    """What was guessed of the files, and how many rows were of no use and why."""
+    solution, photometry, velocities = session.solution, session.photometry, session.velocities
+    assert solution is not None
+    assert photometry is not None
+    for note in all_notes(solution, photometry, velocities):
+        yield f"note: {note}"
+    if reasons := rows_set_aside(solution, photometry, velocities):
+        told = "; ".join(f"{count} {why}" for why, count in reasons.items())
+        yield f"rows set aside: {told} (each with its line in light_curve.csv or velocity_curve.csv)"

@@ -158,8 +158,8 @@ def make_sheet(
         audit=(*audit, *_absences(solution, audit)),
         contact=solution.contact,
         decisions=solution.decisions,
-        notes=_notes(solution, photometry, velocities),
-        outliers=_outliers(solution, photometry, velocities),
+        notes=all_notes(solution, photometry, velocities),
+        outliers=rows_set_aside(solution, photometry, velocities),
         provenance=Provenance(
             command,
             seed,
@@ -237,7 +237,7 @@ def _used(files: tuple[InputFile, ...], numbers: list[int]) -> tuple[InputFile, 
     return tuple(replace(file, used=counts[number]) for number, file in enumerate(files))
 
 
-def _notes(
+def all_notes(
     solution: Solution, photometry: Photometry, velocities: Velocities | None
 ) -> tuple[str, ...]:
     """Doubts of the fit and of the readers, each once."""
@@ -245,7 +245,7 @@ def _notes(
     return tuple(dict.fromkeys((*solution.notes, *tables)))
 
 
-def _outliers(
+def rows_set_aside(
     solution: Solution, photometry: Photometry, velocities: Velocities | None
 ) -> dict[str, int]:
     """How many rows were set aside for each reason, unreadable ones included."""

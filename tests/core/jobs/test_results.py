@@ -102,6 +102,14 @@ def test_the_summary_shows_masses_doubts_and_the_folder(session):
     assert lines[-1] == "results are in out"
 
 
+def test_the_summary_says_which_rows_were_of_no_use_and_what_was_guessed(session):
+    *_, note, rows, _ = summary(session, Path("out")).splitlines()
+    assert note == "note: errors of band V are taken as given"
+    told = "1 quality flag 1; 1 outlier of the fit; 1 no measurement; 2 unreadable"
+    files = "each with its line in light_curve.csv or velocity_curve.csv"
+    assert rows == f"rows set aside: {told} ({files})"
+
+
 def test_a_fatal_finding_forbids_the_sheet():
     mild = Finding("residuals", 1.0, 2.0, FAIL, "residuals are correlated", "x")
     refuse_fatal((mild,))
