@@ -26,15 +26,20 @@ COOLEST, HOTTEST = 2500.0, 50000.0  # [K] where the grey atmosphere is asked
 # up to 0.1 in I(mu = 1/2), much the same way in every band and star. So the prior is wider than that,
 # and most of it is one error common to all.
 GREY_COMMON, GREY_OWN = 0.13, 0.08
-# Between 4500 and 12000 K the grey coefficients move by this much to either side of UNKNOWN_TEFF.
-GREY_BLIND = 0.10
+# Between 4500 and 12000 K the coefficients move by this much to either side of UNKNOWN_TEFF.
+BLIND = 0.10
 # Spread between published tables (common practice), common in the same way.
 TABLE_COMMON, TABLE_OWN = 0.04, 0.03
 
 
 def grey_errors(*, blind: bool) -> tuple[float, float]:
     """Common and own sigma of a grey atmosphere's coefficients; `blind`: at a guessed temperature."""
-    return hypot(GREY_COMMON, GREY_BLIND if blind else 0.0), GREY_OWN
+    return hypot(GREY_COMMON, BLIND if blind else 0.0), GREY_OWN
+
+
+def table_errors(*, blind: bool) -> tuple[float, float]:
+    """Common and own sigma of a published table's coefficients; `blind`: at a guessed temperature."""
+    return hypot(TABLE_COMMON, BLIND if blind else 0.0), TABLE_OWN
 
 
 @dataclass(frozen=True)
@@ -68,7 +73,7 @@ def limb_choice(
 ) -> LimbChoice:
     """What to do with one star in one band; the user's word first, then a table, then grey.
 
-    `blind`: the temperature is a guess, for which the grey prior is wider.
+    `blind`: the temperature is a guess, for which the prior is wider.
 
     UsageError where the number of coefficients is not the law's.
     """
@@ -89,7 +94,7 @@ def limb_choice(
     if table is not None:
         start = table.coefficients(teff, logg, band, law=plan.law)
         words = f"published table at {teff:.0f} K, log g {logg:.2f}"
-        common, own = TABLE_COMMON, TABLE_OWN
+        common, own = table_errors(blind=blind)
     else:
         start = grey_coefficients(min(max(teff, COOLEST), HOTTEST), wavelength, plan.law)
         words = f"grey atmosphere at {teff:.0f} K and {wavelength:.0f} nm"

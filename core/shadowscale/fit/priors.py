@@ -16,9 +16,9 @@ from shadowscale.fit.plan import Plan, Prior
 from shadowscale.fit.system import System
 from shadowscale.quantities import QUANTITIES, parse_key
 
-# A third star that gives more than half of the light would show in the spectra (our choice); most of
-# the error is common to all bands, the rest is the colour of that star.
-THIRD_COMMON, THIRD_OWN = 0.3, 0.15
+# A third star that gives nearly half of the light would show in the spectra: that is two sigma here (our
+# choice). Most of the error is common to all bands, the rest is the colour of that star.
+THIRD_COMMON, THIRD_OWN = 0.2, 0.1
 
 
 def prior_constraints(plan: Plan, system: System) -> tuple[Constraint, ...]:

@@ -21,7 +21,7 @@ from shadowscale.fit.system import System
 
 Floats = NDArray[np.float64]
 NAME = "radius_ratio"
-PLATEAU = 4.0  # in chi-squared: two sigma
+PLATEAU = 3.3  # in chi-squared: a minimum above it holds less than 16 % of the probability
 FIRST = 0.7  # of the linear sigma: where the profile is tried first
 LARGEST_FIRST = 0.3  # and at most this share of k itself
 MOST_TRIES = 9
@@ -67,8 +67,8 @@ def widened(
 ) -> tuple[Floats, Floats] | None:
     """The limits of k, reaching out to other minima that the data hardly tell from the best.
 
-    Between two minima within two sigma of each other the profile is a plateau, of which the point
-    where it first rises by one says little. `ends` itself is handed back where there are none such.
+    A minimum that holds a sixth of the probability or more, exp(-delta/2) times that of the best, lies
+    within the central 68.3 %, wherever the profile around the best first rises by one. `ends` itself is handed back where there are none such.
     """
     if NAME not in best.system.free:
         return ends

@@ -138,7 +138,7 @@ def solve(
     best, ends = _with_valley(work, best)
     branches = [Branch(each.fitted, each.fitted.chi2 - best.chi2) for each in branches]
     if (wide := widened(best, ends, branches)) is not ends:
-        words = "other solutions are as good within two sigma: the limits take them in"
+        words = "other solutions hold a sixth of the probability or more: the limits take them in"
         work.decisions.append(Decision("errors", "alternatives", words))
     work.decisions += third_light_told(best, wide)
     return assemble(

@@ -314,6 +314,23 @@ def test_a_table_follows_the_fitted_gravity(tmp_path: Path) -> None:
     assert f"log g {found.solution.estimates['logg2'].value:.2f}" in words
 
 
+def test_a_table_read_at_a_guessed_temperature_is_trusted_less(tmp_path: Path) -> None:
+    """Nobody said how hot the stars are: the prior takes in coefficients of other temperatures."""
+    path = tmp_path / "made_up.txt"
+    path.write_text(
+        "Teff logg u\n4000 3 0.8\n4000 5 0.8\n9000 3 0.5\n9000 5 0.5\n", encoding="utf-8"
+    )
+    table = {"law": "linear", "limb_table": str(path)}
+    known, truth = ephemeris(**table, teff1=(6500.0, 50.0)), ordinary().truth
+    photometry = observed(truth, count=300, sigma=4e-3)
+    told, guessed = (
+        solved(truth, plan, photometry=photometry).solution.estimates
+        for plan in (known, ephemeris(**table))
+    )
+    name = "limb_darkening1[V].1"
+    assert sigma_of(guessed[name]) > 1.2 * sigma_of(told[name])
+
+
 # ---------------------------------------------------------------- orbit
 
 
