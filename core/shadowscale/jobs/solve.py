@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 
 from shadowscale.data.photometry import Photometry
 from shadowscale.errors import NoSolutionError, NotDetachedError, UsageError
-from shadowscale.judge.finding import Finding
+from shadowscale.judge.finding import PASS, Finding
 from shadowscale.progress import SILENT, Progress
 from shadowscale.session.session import Session
 from shadowscale.session.spans import within
@@ -90,12 +90,16 @@ def tables_to_solve(session: Session) -> Photometry:
 
 
 def refuse_fatal(findings: tuple[Finding, ...]) -> None:
-    """NoSolutionError with the words of the findings that forbid a sheet."""
+    """NoSolutionError with the words of the findings that forbid a sheet, and of a doubt of the period.
+
+    Half or twice the period makes nonsense of everything else, so it is the first thing to look at.
+    """
     fatal = [finding for finding in findings if finding.fatal]
     if not fatal:
         return
     numbers = {finding.check: finding.value for finding in fatal if finding.value is not None}
-    words = "; ".join(finding.words for finding in fatal)
+    doubts = [f for f in findings if f.check == "period" and f.verdict != PASS and not f.fatal]
+    words = " ".join(finding.words for finding in (*fatal, *doubts))
     kind = NotDetachedError if any("fill" in item.check for item in fatal) else NoSolutionError
     raise kind(words, numbers)
 

@@ -130,6 +130,10 @@ def _check_repeats(found: Refined) -> None:
     if max(found.cycles_seen) >= 2:
         return
     numbers = {f"eclipse {n + 1} seen": float(c) for n, c in enumerate(found.cycles_seen)}
+    if max(found.cycles_seen) == 0:
+        raise NoSolutionError(
+            "no eclipse stands out at any period", numbers, help="give the period, or more data"
+        )
     raise NoSolutionError(
         "each eclipse was seen only once, so no period can be told", numbers, help="give the period"
     )

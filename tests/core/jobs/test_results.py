@@ -23,7 +23,7 @@ from shadowscale.jobs.replay import Difference, Replay, changed_versions, differ
 from shadowscale.jobs.results import check_targets, result_files, sheet_of, write_results
 from shadowscale.jobs.solve import IN_WINDOW, NOT_FOR_LEVEL, refuse_fatal, tables_to_solve
 from shadowscale.jobs.words import summary
-from shadowscale.judge.finding import FAIL, Finding
+from shadowscale.judge.finding import FAIL, WARN, Finding
 from shadowscale.session import Markers, Session, Source
 from shadowscale.sheet import as_csv, as_json
 from shadowscale.sheet.as_json import schema
@@ -119,6 +119,9 @@ def test_a_fatal_finding_forbids_the_sheet():
     close = Finding("fill-out", 0.99, 0.9, FAIL, "star 1 fills its lobe", "x", fatal=True)
     with pytest.raises(NotDetachedError, match="star 1 fills its lobe"):
         refuse_fatal((close,))
+    doubt = Finding("period", 2.7, 3.0, WARN, "the true period is twice as long", "x")
+    with pytest.raises(NotDetachedError, match=r"fills its lobe the true period is twice as long"):
+        refuse_fatal((close, doubt))
 
 
 def test_windows_that_the_observer_excluded_take_no_part(session):
