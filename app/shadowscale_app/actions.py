@@ -103,12 +103,14 @@ def _is_scheme(name: str) -> Callable[[Bench], bool]:
 
 def _span(part: str) -> Callable[[Bench], object]:
     def add(bench: Bench) -> None:
-        from shadowscale.view.markers import with_new_span
+        from shadowscale.view.markers import EFFECTS, SPANS, with_new_span
 
         session = bench.desk.session
         if session.markers is not None:
             markers = with_new_span(session.markers, part, bench.phase)
-            bench.desk.apply(Change(f"Add {part} stretch", replace(session, markers=markers)))
+            bench.desk.apply(Change(f"Add {SPANS[part]}", replace(session, markers=markers)))
+            words = EFFECTS[part]
+            bench.status.tell(f"{words[:1].upper()}{words[1:]}. Pull its edges; Del removes it.")
             if part not in look_of(session.view).groups:
                 _group(part)(bench)
 

@@ -225,6 +225,7 @@ class Bench(QMainWindow):
         QApplication.styleHints().colorSchemeChanged.connect(self.dress)
 
     def _wanted(self, change: Change) -> None:
+        self.status.tell("")  # what was said belongs to the step before
         self.desk.apply(change)
 
     def _asked(self, what: str, argument: Any) -> None:

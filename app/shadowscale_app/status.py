@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt, Signal
+from PySide6.QtGui import QPainter, QPaintEvent
 from PySide6.QtWidgets import QLabel, QProgressBar, QSizePolicy, QStatusBar, QToolButton, QWidget
 
 from shadowscale.session.session import Session
@@ -11,7 +12,20 @@ from shadowscale.view.summary import summary
 from shadowscale.view.written import duration_text
 from shadowscale_app.naming import named
 
-WORDS_MS = 12_000
+
+class Shortened(QLabel):
+    """Plain words that end in dots where there is no room for all of them; rest the mouse for the rest."""
+
+    def __init__(self) -> None:
+        super().__init__("")
+        self.setTextFormat(Qt.TextFormat.PlainText)
+        self.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
+
+    def paintEvent(self, event: QPaintEvent) -> None:
+        """Paint what there is room for."""
+        painter, area = QPainter(self), self.contentsRect()
+        text = self.fontMetrics().elidedText(self.text(), Qt.TextElideMode.ElideRight, area.width())
+        painter.drawText(area, Qt.AlignmentFlag.AlignVCenter | Qt.AlignmentFlag.AlignLeft, text)
 
 
 class Status(QStatusBar):
@@ -25,9 +39,7 @@ class Status(QStatusBar):
         self.setAccessibleName("Status")
         self.setSizeGripEnabled(False)
         self.setContentsMargins(8, 0, 12, 0)
-        self.words = QLabel("")
-        self.words.setTextFormat(Qt.TextFormat.PlainText)
-        self.words.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Preferred)
+        self.words = Shortened()
         self.errand = QLabel("")
         self.errand_bar = QProgressBar()
         self.errand_bar.setRange(0, 0)  # nobody knows how long a file takes

@@ -169,6 +169,7 @@ def _palette(now: Colours) -> QPalette:
         palette.setColor(which, QColor(value))
     for which in (role.Text, role.ButtonText, role.WindowText):
         palette.setColor(QPalette.ColorGroup.Disabled, which, colour(now.quiet, 0.6))
+    palette.setColor(QPalette.ColorGroup.Disabled, role.Highlight, QColor(now.line))
     return palette
 
 

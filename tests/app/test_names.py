@@ -24,6 +24,7 @@ from PySide6.QtWidgets import (
 )
 
 from made_up import made_up_session
+from shadowscale.data import head_of
 from shadowscale_app.actions import TABLE
 from shadowscale_app.bench import Bench
 from shadowscale_app.dialogs.brushing import BrushDialog
@@ -105,8 +106,8 @@ def test_every_control_of_the_start_page_has_a_name_and_a_sentence(
 def test_every_control_of_the_dialogs_has_a_name_and_a_sentence(bench: Bench, kind: str) -> None:
     folder = samples()[0][2].parent
     dialogs = {
-        "photometry": lambda: ReadingDialog(folder / "photometry.csv", "photometry"),
-        "velocities": lambda: ReadingDialog(folder / "velocities.csv", "velocities"),
+        "photometry": lambda: ReadingDialog(head_of(folder / "photometry.csv"), "photometry"),
+        "velocities": lambda: ReadingDialog(head_of(folder / "velocities.csv"), "velocities"),
         "brush": lambda: BrushDialog(3),
         "prior": lambda: PriorDialog(made_up_session(), "radius_ratio"),
     }

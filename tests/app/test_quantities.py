@@ -8,7 +8,8 @@ from PySide6.QtGui import QGuiApplication
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QApplication, QLineEdit, QMenu
 
-from shadowscale.view.rows import BADLY, FAIRLY, WELL, leaders, quantity_rows
+from shadowscale.view.grades import BADLY, FAIRLY, WELL
+from shadowscale.view.rows import leaders, quantity_rows
 from shadowscale_app.bench import Bench
 from shadowscale_app.models.quantities import ERROR, STATE, SYMBOL, VALUE
 
@@ -119,17 +120,23 @@ def test_tying_and_untying(bench: Bench) -> None:
     menu = QMenu()
     pane.add_ties(menu, pane.model.rows[pane.model.row_of("gamma2")])
     (tie,) = menu.actions()
-    assert tie.text() == "Tie to gamma1"
+    assert tie.text() == "Tie to \N{GREEK SMALL LETTER GAMMA}1"
     tie.trigger()
     session = bench.desk.session
 
     assert session.plan.ties == {"gamma2": "gamma1"}
     assert session.system.value("gamma2") == session.system.value("gamma1")
     assert "gamma2" not in session.system.free
-    assert cell(bench, "gamma2", STATE).endswith("tied")
+    assert cell(bench, "gamma2", STATE) == "= \N{GREEK SMALL LETTER GAMMA}1"
     assert leaders(session, "gamma1") == ()
+    pane.table.selectRow(pane.model.row_of("gamma2"))
+    assert not pane.slider.isEnabled()  # what it follows is moved instead
 
-    pane.untie("gamma2")
+    menu = QMenu()
+    pane.add_ties(menu, pane.model.rows[pane.model.row_of("gamma2")])
+    (untie,) = menu.actions()
+    assert untie.text() == "Untie from \N{GREEK SMALL LETTER GAMMA}1"
+    untie.trigger()
 
     assert bench.desk.session.plan.ties == {}
     assert "gamma2" in bench.desk.session.system.free
@@ -166,3 +173,10 @@ def test_grades_follow_the_relative_error(bench: Bench) -> None:
     ) == (WELL, 0.0004 / 0.269)
     assert {row.grade for row in rows.values()} <= {WELL, FAIRLY, BADLY, ""}
     assert "k" in rows["radius_sum"].strongest
+    assert all(row.grade for row in rows.values() if row.error_text)  # by natural scales, too
+    solution = bench.desk.session.solution
+    gamma, larger = (
+        solution.estimates["gamma1"],
+        max(solution.estimates[k].value for k in ("K1", "K2")),
+    )
+    assert rows["gamma1"].relative == pytest.approx(gamma.plus / larger)

@@ -1,6 +1,6 @@
 """The program as it is, in a real window, which tells an outside hand where its things are.
 
-`python tests/support/watched_window.py FILE` writes a JSON object into FILE several times a second.
+`python tests/support/watched_window.py FILE [OPENED...]` writes a JSON object into FILE several times a second.
 """
 
 from __future__ import annotations
@@ -56,6 +56,11 @@ class Watched(program.Bench):
             "status": self.status.words.text(),
             "unsaved": self.isWindowModified(),
             "asked": active.text() if isinstance(active, QMessageBox) else "",
+            "explained": active.informativeText() if isinstance(active, QMessageBox) else "",
+            "dialog": "" if active is None else active.windowTitle(),
+            "clipboard": QApplication.clipboard().text(),
+            "name": session.name,
+            "rows": [0 if part is None else len(part.time) for part in (session.photometry, session.velocities)],
             "answers": {}
             if active is None
             else {b.text().replace("&", ""): _middle(b) for b in active.findChildren(QPushButton)},
@@ -83,4 +88,4 @@ def _on_screen(widget: QWidget, place: QPoint) -> list[int]:
 
 if __name__ == "__main__":
     program.Bench = Watched  # type: ignore[misc]
-    sys.exit(program.run([]))
+    sys.exit(program.run(sys.argv[2:]))

@@ -7,8 +7,8 @@ from typing import Any
 from PySide6.QtCore import QAbstractTableModel, QModelIndex, QPersistentModelIndex, Qt, Signal
 from PySide6.QtGui import QColor
 
-from shadowscale.view.rows import FREE, HELD, TIED, WITH_PRIOR, Row
-from shadowscale.view.written import read_number
+from shadowscale.view.rows import FREE, HELD, WITH_PRIOR, Row
+from shadowscale.view.written import read_number, symbol
 from shadowscale_app import theme
 from shadowscale_app.naming import wrapped
 
@@ -18,8 +18,8 @@ HEADER_TIPS = (
     "Double-click to type another one: the curve follows at once",
     "68.3 % limits; empty where it is held",
     "Nominal solar units (IAU 2015), days, degrees, km/s",
-    "Free: fitted; held: stays; prior: fitted, with a wish; tied: follows another. Double-click to change it",
-    "Bar: error over value. Number: the strongest correlation; double-click to see it as a picture",
+    "Free: fitted; held: stays; prior: fitted, with a wish; = another: follows that one. Double-click to change it",
+    "Bar: error over value (where that lies around zero, over its natural scale). Number: the strongest correlation; double-click to see it as a picture",
     "What the value can be at all",
 )
 SYMBOL, VALUE, ERROR, UNIT, STATE, GRADE, LIMITS = range(7)
@@ -29,7 +29,6 @@ MARKS = {
     FREE: "\N{WHITE CIRCLE} free",
     HELD: "\N{BLACK CIRCLE} held",
     WITH_PRIOR: "\N{BULLSEYE} prior",
-    TIED: "\N{INFINITY} tied",
 }
 
 
@@ -131,7 +130,7 @@ def as_text(rows: tuple[Row, ...]) -> str:
 
 
 def _texts(row: Row) -> tuple[str, ...]:
-    state = MARKS.get(row.state, row.state)
+    state = f"= {symbol(row.tied_to)}" if row.tied_to else MARKS.get(row.state, row.state)
     return (
         row.symbol,
         row.value_text,
@@ -150,7 +149,10 @@ def _tip(row: Row) -> str:
     if row.effect:
         lines.append(row.effect)
     if row.relative is not None:
-        lines.append(f"error {100 * row.relative:.2g} % \N{EM DASH} {row.grade} held by the data")
+        of_what = f" {row.of_what}" if row.of_what else ""
+        lines.append(
+            f"error {100 * row.relative:.2g} %{of_what} \N{EM DASH} {row.grade} held by the data"
+        )
     if row.strongest:
         lines.append(f"strongest correlation {row.strongest}")
     if row.bounds_text:

@@ -6,7 +6,8 @@ from PySide6.QtCore import QModelIndex, QPersistentModelIndex, QRectF, Qt
 from PySide6.QtGui import QColor, QPainter
 from PySide6.QtWidgets import QStyle, QStyledItemDelegate, QStyleOptionViewItem
 
-from shadowscale.view.rows import BADLY, FAIRLY, STRONG, WELL, Row
+from shadowscale.view.grades import BADLY, FAIRLY, STRONG, WELL
+from shadowscale.view.rows import Row
 from shadowscale_app import theme
 from shadowscale_app.models.quantities import ROW
 

@@ -11,6 +11,8 @@ from shadowscale_app.panes.pane import Pane
 from shadowscale_app.plots.log_axis import LogAxis
 from shadowscale_app.plots.picture import Picture
 
+OTHERS = "published pairs: rest the mouse on one for its name and paper"
+
 
 class MassRadiusPane(Pane):
     """The picture; rest the mouse on a point to see which star and which paper."""
@@ -33,6 +35,8 @@ class MassRadiusPane(Pane):
         self.picture.getPlotItem().setLogMode(True, True)
         self.others = pg.ScatterPlotItem(hoverable=True, tip=lambda x, y, data: data)
         self.picture.addItem(self.others)
+        self.legend = pg.LegendItem(offset=(14, 6), verSpacing=-4)
+        self.legend.setParentItem(self.picture.box)
         self._ours: list[pg.GraphicsObject] = []
         layout = QVBoxLayout(self)
         layout.setContentsMargins(0, 0, 0, 0)
@@ -52,6 +56,9 @@ class MassRadiusPane(Pane):
         for item in self._ours:
             self.picture.removeItem(item)
         self._ours = []
+        self.legend.clear()
+        self.legend.setLabelTextColor(now.quiet)
+        self.legend.addItem(self.others, OTHERS)
         for star, tint, shape in zip(
             measured_stars(self.session.solution), (now.star1, now.star2), ("o", "s"), strict=False
         ):
@@ -65,4 +72,5 @@ class MassRadiusPane(Pane):
             for item in (bars, point):
                 self.picture.addItem(item)
                 self._ours.append(item)
+            self.legend.addItem(point, f"star {len(self._ours) // 2}")
         self.picture.box.enableAutoRange()

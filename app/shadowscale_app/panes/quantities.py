@@ -31,6 +31,7 @@ from shadowscale.view.rows import (
     with_tie,
     with_value,
 )
+from shadowscale.view.written import symbol
 from shadowscale_app.desk import Change
 from shadowscale_app.models.quantities import (
     ERROR,
@@ -200,12 +201,12 @@ class QuantitiesPane(Pane):
 
     def add_ties(self, menu: QMenu, row: Row) -> None:
         """Lines that tie a row to each that can lead it, or untie it."""
+        if row.state == TIED:
+            menu.addAction(f"Untie from {symbol(row.tied_to)}", lambda: self.untie(row.key))
         for leader in leaders(self.session, row.key):
-            menu.addAction(f"Tie to {leader}").triggered.connect(
+            menu.addAction(f"Tie to {symbol(leader)}").triggered.connect(
                 lambda _=False, key=row.key, leader=leader: self.tie(key, leader)
             )
-        if row.state == TIED:
-            menu.addAction("Untie", lambda: self.untie(row.key))
 
     def _double_clicked(self, index: QModelIndex) -> None:
         row = self.model.rows[index.row()]
@@ -216,9 +217,8 @@ class QuantitiesPane(Pane):
 
     def _name_slider(self, *_: object) -> None:
         row = self.chosen()
-        usable = row is not None and row.basic
-        self.slider.setEnabled(usable)
-        self.name.setText(_named_with_bounds(row) if row is not None and usable else NOTHING)
+        self.slider.setEnabled(row is not None and row.basic and not row.tied_to)
+        self.name.setText(_named_with_bounds(row) if row is not None and row.basic else NOTHING)
         if not self.slider.isSliderDown():
             self._centre()
 
@@ -246,4 +246,6 @@ class QuantitiesPane(Pane):
 
 
 def _named_with_bounds(row: Row) -> str:
+    if row.tied_to:
+        return f"{row.symbol} follows {symbol(row.tied_to)}"
     return f"{row.symbol}  ({row.bounds_text})" if row.bounds_text else row.symbol

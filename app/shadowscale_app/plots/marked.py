@@ -14,10 +14,12 @@ from shadowscale.view.markers import Handle, handles
 from shadowscale.view.written import phase_text, read_number
 from shadowscale_app import theme
 from shadowscale_app.naming import named
-from shadowscale_app.plots.marker import MarkerLine
+from shadowscale_app.plots.marker import BARS, MarkerLine
 from shadowscale_app.plots.picture import Picture
 
 EDITING = "A phase in cycles; Enter puts the marker there, Escape leaves it where it is"
+KEYS = "\N{EM DASH} arrows move it (Shift coarse, Alt fine), Enter types, Escape puts back"
+EDITOR = 110  # [pixels], the field in which a phase is typed
 LABEL_HEIGHT = 0.08  # of the picture, from its upper edge to a marker's label
 STEP, COARSE, FINE = 5e-4, 10.0, 0.1  # cycles a key press; factors of Shift and Alt
 BANDS = {"window": (0.945, 1.0), "level": (0.885, 0.94), "excluded": (0.0, 1.0)}
@@ -122,12 +124,12 @@ class MarkedPicture(Picture):
             line.set_focused(True)
             self._start = line.handle.phase
             self._gesture += 1
-            words = f"{line.handle.words}, phase {phase_text(line.handle.phase)}"
-            self.setAccessibleDescription(f"{words}: {line.handle.effect}")
-            self.told.emit(
-                words
-                + " \N{EM DASH} arrows move it, Shift coarse, Alt fine, Enter types, Escape puts back"
-            )
+            self._tell_keys(line)
+
+    def _tell_keys(self, line: MarkerLine) -> None:
+        words = f"{line.handle.words}, phase {phase_text(line.handle.phase)}"
+        self.setAccessibleDescription(f"{words}: {line.handle.effect}")
+        self.told.emit(f"{words} {KEYS}")
 
     def focusNextPrevChild(self, forward: bool) -> bool:
         """Tab walks along the markers before it leaves the picture."""
@@ -177,6 +179,7 @@ class MarkedPicture(Picture):
         if key in (Qt.Key.Key_Left, Qt.Key.Key_Right):
             step = _step(event.modifiers()) * (1 if key == Qt.Key.Key_Right else -1)
             self.pulled.emit(self._focused, line.handle.phase + step, one_side, self._gesture)
+            self._tell_keys(line)
         elif key == Qt.Key.Key_Escape:
             self.pulled.emit(self._focused, self._start, one_side, self._gesture)
             self.let_go.emit(self._focused)
@@ -200,7 +203,8 @@ class MarkedPicture(Picture):
         return sorted(self.lines, key=lambda name: self.lines[name].handle.phase)
 
     def _add_line(self, handle: Handle) -> None:
-        high = 1.0 - LABEL_HEIGHT if not self._inverted else LABEL_HEIGHT
+        high = 0.0 if handle.group in BARS else 1.0 - LABEL_HEIGHT
+        high = 1.0 - high if self._inverted else high
         line = MarkerLine(handle, span=self._span(handle.group), high=high, quiet=not self.only)
         line.pulled.connect(self._pulled)
         line.let_go.connect(self._let_go)
@@ -218,9 +222,10 @@ class MarkedPicture(Picture):
         self._gesture += 1
 
     def _pointed_at(self, name: str, inside: bool) -> None:
-        if inside and name in self.lines:
+        if name in self.lines:
             handle = self.lines[name].handle
-            self.told.emit(f"{handle.words}, phase {phase_text(handle.phase)}: {handle.effect}")
+            words = f"{handle.words}, phase {phase_text(handle.phase)}: {handle.effect}"
+            self.told.emit(words if inside else "")
 
     def _chosen(self, name: str, typing: bool) -> None:
         self.setFocus()
@@ -259,9 +264,10 @@ class MarkedPicture(Picture):
     def _ask_value(self, line: MarkerLine) -> None:
         editor = QLineEdit(f"{line.handle.phase:.6f}", self)
         named(editor, f"Phase of {line.handle.words}", EDITING)
-        editor.setFixedWidth(110)
+        editor.setFixedWidth(EDITOR)
         place = self.place_of(line.handle.phase, self.visible().center().y()).toPoint()
-        editor.move(place + QPoint(6, 0))
+        beside = place.x() + 6 if place.x() + 6 + EDITOR < self.width() else place.x() - 6 - EDITOR
+        editor.move(QPoint(beside, place.y()))
         editor.selectAll()
         self._editor = editor
         editor.returnPressed.connect(self._take_value)

@@ -15,6 +15,7 @@ from shadowscale_app.naming import wrapped
 ABOVE, HOT_ABOVE = 20, 22  # the value under the hand covers the other labels
 EDGE = 0.25  # of the picture
 HANDLING = "Drag it, or click and use the arrow keys (Shift coarse, Alt fine); a double click types its phase."
+BARS = ("window", "level")  # drawn as bars along the upper edge
 DASHES = {
     "contact": Qt.PenStyle.DashLine,
     "window": Qt.PenStyle.SolidLine,
@@ -77,11 +78,13 @@ class MarkerLine(pg.InfiniteLine):
     def _turn_label(self, hot: bool) -> None:
         """Outward of the eclipse; with its value inward where it would leave the picture."""
         side = 1.0 if self.handle.short in ("1", "2") else 0.0
-        view = self.viewRect() if hot and self.getViewBox() is not None else None
+        box = self.getViewBox()
+        view = box.viewRect() if hot and box is not None else None
         if view is not None and view.width() > 0:
             across = (self.value() - view.left()) / view.width()
             side = 0.0 if across < EDGE else 1.0 if across > 1.0 - EDGE else side
-        self.label.anchors = [(side, 0.5), (side, 0.5)]
+        height = 0.0 if self.handle.group in BARS else 0.5  # below a bar, on a line
+        self.label.anchors = [(side, height), (side, height)]
 
     def follow(self, handle: Handle) -> None:
         """Stand where the session says."""

@@ -10,7 +10,7 @@ from shadowscale.session.session import Markers, Span
 LONGEST = 0.45  # cycles from first to fourth contact
 LEAST = 1e-5  # cycles between neighbouring contacts
 _ORDINALS = ("first", "second", "third", "fourth")
-_SPANS = {"level": "stretch outside eclipse", "excluded": "excluded stretch"}
+SPANS = {"level": "stretch outside eclipse", "excluded": "excluded stretch"}
 EFFECTS = {
     "contact": "where the discs touch; the contacts alone give both radii and the inclination",
     "window": "points inside count as this eclipse: contacts are measured in it, the level outside it",
@@ -78,7 +78,7 @@ def moved(markers: Markers, name: str, phase: float, *, symmetric: bool = False)
 def without_span(markers: Markers, name: str) -> Markers:
     """The markers without the stretch that the handle belongs to; contacts and windows stay."""
     part, *numbers = name.split(".")
-    if part not in _SPANS:
+    if part not in SPANS:
         return markers
     spans = list(getattr(markers, part))
     del spans[int(numbers[0])]
@@ -117,7 +117,7 @@ def _windows(markers: Markers) -> Iterator[Handle]:
 
 
 def _stretches(markers: Markers) -> Iterator[Handle]:
-    for part, words in _SPANS.items():
+    for part, words in SPANS.items():
         for which, span in enumerate(getattr(markers, part)):
             for number, side in enumerate(("left", "right")):
                 yield Handle(

@@ -4,24 +4,20 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
-from math import isfinite, log10
+from math import isfinite
 from types import MappingProxyType
-
-import numpy as np
 
 from shadowscale.fit.build import means, named, tied_keys
 from shadowscale.fit.check import kind
 from shadowscale.fit.plan import Plan, Prior
-from shadowscale.fit.solution import ASSUMED, DERIVED, FITTED, Estimate, Solution
+from shadowscale.fit.solution import ASSUMED, DERIVED, FITTED, Estimate
 from shadowscale.fit.system import System
 from shadowscale.quantities import BAND, Quantity, parse_key
 from shadowscale.session.session import Session
+from shadowscale.view.grades import NOT_SAID, bar, grade, relative_error, strongest_correlations
 from shadowscale.view.written import plain_value, symbol, unit_sign, value_and_error
 
 FREE, HELD, WITH_PRIOR, TIED = "free", "held", "with prior", "tied"
-WELL, FAIRLY, BADLY, NONE = "well", "fairly", "badly", ""
-WELL_BELOW, BADLY_ABOVE = 0.01, 0.05  # relative errors: 1 % is the usual wish, 5 % is of little use
-STRONG = 0.9  # a correlation above this is said to be strong
 GROUPS = ("Stars and orbit", "Light", "Velocities", "What follows")
 _VELOCITY = ("K1", "K2", "gamma1", "gamma2", "offset1", "offset2")
 
@@ -30,7 +26,7 @@ _VELOCITY = ("K1", "K2", "gamma1", "gamma2", "offset1", "offset2")
 class Row:
     """One quantity of the table; texts are ready for the screen.
 
-    relative : the error over the value, or None where that says nothing; bar : 0 to 1, for a glance
+    relative, of_what : the error over the value, or over what `of_what` names; bar : 0 to 1, for a glance
     grade : `well`, `fairly`, `badly` or empty; `strongest` names the strongest correlation
     """
 
@@ -50,8 +46,9 @@ class Row:
     step: float
     bounds_text: str
     relative: float | None = None
+    of_what: str = ""
     bar: float = 0.0
-    grade: str = NONE
+    grade: str = NOT_SAID
     strongest: str = ""
     correlation: float = 0.0
     partner: str = ""
@@ -66,10 +63,15 @@ def quantity_rows(session: Session) -> tuple[Row, ...]:
     estimates: Mapping[str, Estimate] = (
         MappingProxyType({}) if solution is None else solution.estimates
     )
-    strongest = {} if solution is None else _strongest(solution)
+    strongest = {} if solution is None else strongest_correlations(solution)
     rows = [_basic_row(system, name, estimates.get(name)) for name in system.values]
     rows += [
-        _row(name, estimate, estimate.how if estimate.how == ASSUMED else DERIVED)
+        _row(
+            system,
+            name,
+            estimate=estimate,
+            state=estimate.how if estimate.how == ASSUMED else DERIVED,
+        )
         for name, estimate in estimates.items()
         if not parse_key(name).quantity.basic
     ]
@@ -129,12 +131,13 @@ def with_state(session: Session, name: str, state: str) -> Session:
 
 
 def leaders(session: Session, name: str) -> tuple[str, ...]:
-    """What a basic quantity can be tied to, as the plan names it; nothing where another follows it."""
+    """What a basic quantity can be tied to anew, as the plan names it; nothing where another follows it."""
     system, own = session.system, _plan_name(name)
     if system is None or any(_plan_name(leader) == own for leader in system.ties.values()):
         return ()
     tied = {_plan_name(key) for key in system.ties}
     names = dict.fromkeys(_plan_name(key) for key in system.values)
+    names.pop(_plan_name(system.ties[name]) if name in system.ties else own)
     return tuple(
         other
         for other in names
@@ -201,15 +204,17 @@ def _basic_row(system: System, name: str, estimate: Estimate | None) -> Row:
         state = TIED
     if estimate is None or estimate.value != value:
         estimate = Estimate(value, None, None, FITTED)
-    return replace(_row(name, estimate, state), tied_to=system.ties.get(name, ""))
+    return replace(
+        _row(system, name, estimate=estimate, state=state), tied_to=system.ties.get(name, "")
+    )
 
 
-def _row(name: str, estimate: Estimate, state: str) -> Row:
+def _row(system: System, name: str, *, estimate: Estimate, state: str) -> Row:
     quantity = parse_key(name).quantity
     value, error = value_and_error(name, estimate)
     if not error:
         value = plain_value(quantity, estimate.value).replace("-", "\N{MINUS SIGN}")
-    relative = _relative(quantity, estimate)
+    relative, of_what = relative_error(system, quantity, estimate)
     return Row(
         key=name,
         symbol=symbol(name),
@@ -227,59 +232,10 @@ def _row(name: str, estimate: Estimate, state: str) -> Row:
         step=quantity.step,
         bounds_text=bounds(quantity) if quantity.basic else "",
         relative=relative,
-        bar=_bar(relative),
-        grade=_grade(relative),
+        of_what=of_what,
+        bar=bar(relative),
+        grade=grade(relative),
     )
-
-
-def _relative(quantity: Quantity, estimate: Estimate) -> float | None:
-    errors = [error for error in (estimate.minus, estimate.plus) if error]
-    if not errors or quantity.name == "epoch":
-        return None
-    scale = abs(estimate.value)
-    if quantity.name in (
-        "ecosw",
-        "esinw",
-        "gamma1",
-        "gamma2",
-        "offset1",
-        "offset2",
-        "third_light",
-        "eccentricity",
-    ):
-        return None
-    if quantity.unit == "dex(cm/s2)" or quantity.unit == "mag":
-        return max(errors) * 2.302585 if quantity.unit != "mag" else max(errors) * 0.921
-    return max(errors) / scale if scale > 0 else None
-
-
-def _grade(relative: float | None) -> str:
-    if relative is None:
-        return NONE
-    if relative <= WELL_BELOW:
-        return WELL
-    return BADLY if relative > BADLY_ABOVE else FAIRLY
-
-
-def _bar(relative: float | None) -> float:
-    """Length 0 to 1 of a bar from an error of 0.01 % (short) to the whole value (full)."""
-    if relative is None or relative <= 0:
-        return 0.0
-    return min(1.0, max(0.06, (log10(relative) + 4.0) / 4.0))
-
-
-def _strongest(solution: Solution) -> dict[str, tuple[float, str]]:
-    names, matrix = solution.correlation_names, solution.correlations
-    basic = np.array([parse_key(name).quantity.basic for name in names], dtype=bool)
-    # A derived quantity is no news to the basic ones that it is made of.
-    news = (basic[:, None] == basic) & ~np.eye(len(names), dtype=bool) & np.isfinite(matrix)
-    size = np.where(news, np.abs(matrix), -1.0)
-    best = size.argmax(axis=1) if names else ()
-    return {
-        names[row]: (float(matrix[row, at]), names[at])
-        for row, at in enumerate(best)
-        if news[row, at]
-    }
 
 
 def _with_correlation(row: Row, strongest: Mapping[str, tuple[float, str]]) -> Row:

@@ -12,6 +12,8 @@ def summary(session: Session) -> str:
     if solution is not None:
         worst = max(solution.fit.rms_light.values(), default=0.0)
         followed = ", errors linear until solved" if FOLLOWED in solution.notes else ""
+        if session.system is not None and session.system.values != solution.system.values:
+            return "moved by hand: Solve (F5) fits from here"
         return (
             f"{solution.fit.points} points, {solution.fit.free} free, "
             f"\N{GREEK SMALL LETTER CHI}\N{SUPERSCRIPT TWO}/dof {solution.fit.reduced_chi2:.2f}, rms {1000 * worst:.2f} \N{PER MILLE SIGN}{followed}"
