@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from shadowscale.data.photometry import Floats
-from shadowscale.timing import _kernels
+from shadowscale.timing import _box_kernels as boxes
 from shadowscale.timing.box_search import (
     DRIFT,
     FEWEST_IN_BOX,
@@ -76,10 +76,12 @@ def close_look(data: SearchData, period: float) -> Candidate:
     step = DRIFT * float(narrowest(np.array(period))) / data.span / FINER
     comb: Floats = 1 / period + step * np.arange(-2.0 * FINER, 2 * FINER + 1)
     comb = comb[comb > 0]
-    bins = np.minimum(3 * phase_bins(comb, data.time.size), 1500)
+    bins = np.minimum(3 * phase_bins(comb), 1500)
     table = np.empty((comb.size, 8))
-    _kernels.box_spectrum(data.time, data.value, data.weight, comb, bins, 3, FEWEST_IN_BOX, table)
-    best = int(np.argmax(table[:, _kernels.GAIN_TWO]))
+    boxes.box_spectrum(
+        data.time, data.value, data.weight, comb, bins, 1, 3, FEWEST_IN_BOX, 0.0, table
+    )
+    best = int(np.argmax(table[:, boxes.GAIN_TWO]))
     return _candidate(data, float(1 / comb[best]), table[best])
 
 
@@ -87,9 +89,9 @@ def _seeds(spectrum: Spectrum, span: float) -> list[float]:
     """Frequencies of the highest peaks of one box, two boxes, and the dispersion of the bins."""
     table, frequency = spectrum.table, spectrum.frequency
     heights = (
-        table[:, _kernels.GAIN_TWO],
-        table[:, _kernels.GAIN_ONE],
-        table[:, _kernels.GAIN_BINS] - 3 * table[:, _kernels.OCCUPIED],
+        table[:, boxes.GAIN_TWO],
+        table[:, boxes.GAIN_ONE],
+        table[:, boxes.GAIN_BINS] - 3 * table[:, boxes.OCCUPIED],
     )
     seeds: list[float] = []
     for height in heights:

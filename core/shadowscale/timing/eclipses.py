@@ -75,7 +75,7 @@ class SeenTogether:
     @property
     def zero(self) -> float:
         """Phase of the deeper eclipse."""
-        return self.eclipses[0].fit.timing.middle
+        return self.eclipses[0].fit.middle
 
 
 def see_eclipses(
@@ -137,11 +137,11 @@ def _significant(seen: list[SeenEclipse], points: LightPoints) -> list[SeenEclip
     """The eclipses that stand out, the deeper first."""
     kept = [one for one in seen if one.signal > LEAST_SIGNAL]
     if kept:
-        return sorted(kept, key=lambda one: -one.fit.timing.depth)
+        return sorted(kept, key=lambda one: -one.fit.depth)
     numbers = {"noise of a point": float(np.median(points.noise))}
     if seen:
         best = max(seen, key=lambda one: one.signal)
-        numbers["depth"] = best.fit.timing.depth
+        numbers["depth"] = best.fit.depth
         numbers["depth over its noise"] = best.signal
     raise NoSolutionError("no eclipse stands out at this period", numbers, help=HELP)
 
@@ -159,7 +159,7 @@ def _check_alignment(points: LightPoints, cycles: Floats, seen: list[SeenEclipse
         if core.sum() > 8 and within > SMEARED * beside and scatter > SMEARED_DEPTH * timing.depth:
             numbers = {"scatter in eclipse": scatter, "depth": timing.depth}
             raise NoSolutionError(LINE_UP, numbers, help=HELP)
-    faint = points.flux < 1 - np.maximum(0.5 * seen[0].fit.timing.depth, 4 * points.sigma)
+    faint = points.flux < 1 - np.maximum(0.5 * seen[0].fit.depth, 4 * points.sigma)
     stray = np.count_nonzero(faint & outside)
     if stray > max(5, STRAY * np.count_nonzero(faint)):
         numbers = {"faint points": float(faint.sum()), "of them outside the eclipses": float(stray)}
@@ -194,7 +194,7 @@ def _named(together: SeenTogether, *, given: bool) -> MeasuredEclipses:
 
 def _shifted(seen: SeenEclipse, zero: float, centre: float) -> tuple[EclipseTiming, Span]:
     """Timing and window with phases from `zero`, within half a cycle of `centre`."""
-    raw = seen.fit.timing.middle
+    raw = seen.fit.middle
     middle = raw - zero
     middle -= round(middle - centre)
     window = (seen.window[0] + middle - raw, seen.window[1] + middle - raw)

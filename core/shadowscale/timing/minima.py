@@ -74,7 +74,7 @@ def _of_one_kind(
     together: SeenTogether, seen: SeenEclipse, *, eclipse: int, band: int
 ) -> list[Minimum]:
     points, cycles = together.points, together.cycles
-    middle = seen.fit.timing.middle
+    middle = seen.fit.middle
     rows = np.flatnonzero(seen.inside)[seen.kept]
     rows = rows[points.band[rows] == band]
     number = np.round(cycles[rows] - middle).astype(np.int64)
@@ -86,7 +86,7 @@ def _of_one_kind(
         if part.size == 0:
             continue
         turn = int(np.round(cycles[part[0]] - middle))
-        single = _single(together, part, middle + turn, seen.fit.timing.duration / 2)
+        single = _single(together, part, middle + turn, seen.fit.duration / 2)
         if np.any(np.abs(single.away) < single.half):
             found.append(_timed(together, seen, single, eclipse=eclipse, band=band))
     return found
@@ -218,7 +218,7 @@ def _template(
 ) -> tuple[Floats, Floats]:
     """Mean eclipse at the points, and its slope by phase; 1 outside."""
     best = seen.fit.best
-    middle = seen.fit.timing.middle
+    middle = seen.fit.middle
     step = 2e-3 * single.half
     data = ShapeData(
         phase=middle + single.away - shift,

@@ -9,14 +9,14 @@ import numpy as np
 from shadowscale.data.photometry import Photometry
 from shadowscale.errors import NoSolutionError
 from shadowscale.progress import SILENT, Progress
-from shadowscale.timing import _kernels
+from shadowscale.timing import _box_kernels as boxes
 from shadowscale.timing.box_search import SHORTEST, Spectrum, frequencies, spectrum
 from shadowscale.timing.candidates import Candidate, candidates
 from shadowscale.timing.detached import check_detached, check_radii
 from shadowscale.timing.light_points import LightPoints, averaged, light_points
 from shadowscale.timing.red_noise import check_red_noise, check_within_nights
 from shadowscale.timing.refine import polished
-from shadowscale.timing.results import PeriodCandidate, PeriodSearch
+from shadowscale.timing.results import PeriodCandidate, PeriodSearch, Span
 from shadowscale.timing.search_data import (
     SearchData,
     quiet_merged,
@@ -40,6 +40,7 @@ def search_period(
     *,
     progress: Progress = SILENT,
     period_range: tuple[float, float] | None = None,
+    keep: bool = False,
 ) -> PeriodSearch:
     """Find the period and the epoch of primary minimum.
 
@@ -50,6 +51,10 @@ def search_period(
     progress : Progress
     period_range : (shortest, longest), optional [d]
         0.2 d to 0.95 of the span where missing.
+    keep : bool
+        Where `progress` raises `Stopped` while periods are searched, go on with those searched so
+        far, and say which were not (`PeriodSearch.left`). `progress` is still told of what follows,
+        and may stop it.
 
     Returns
     -------
@@ -63,6 +68,8 @@ def search_period(
         If no dip repeats.
     NotDetachedError
         If the light varies all the time, as of a close pair.
+    Stopped
+        By `progress`, unless `keep` has something to go on with.
 
     Notes
     -----
@@ -72,7 +79,7 @@ def search_period(
     """
     points = _few_enough(light_points(photometry))
     limits = _limits(period_range, points.span)
-    data, seen = _searched(points, limits, progress)
+    data, seen = _searched(points, limits, progress, keep=keep)
     found = candidates(data, seen, limits)
     _check_dips(found, seen, data)
     check_detached(data, found[0].period)
@@ -80,12 +87,12 @@ def search_period(
     results = _weighed(points, data, found, limits)
     best = settled(points, results)
     best = replace(best, refined=polished(points, best.refined))
-    durations = tuple(one.fit.timing.duration for one in best.refined.eclipses)
+    durations = tuple(one.fit.duration for one in best.refined.eclipses)
     check_radii(best.refined.period, durations)
     check_red_noise(data, best.refined)
     check_within_nights(data, best.refined)
     progress.report(1.0, "period found")
-    return _result(best, results)
+    return _result(best, results, seen.left)
 
 
 def _few_enough(points: LightPoints) -> LightPoints:
@@ -97,7 +104,7 @@ def _few_enough(points: LightPoints) -> LightPoints:
     return points
 
 
-def _limits(given: tuple[float, float] | None, span: float) -> tuple[float, float]:
+def _limits(given: Span | None, span: float) -> Span:
     if given is None:
         low, high = SHORTEST, LONGEST * span
     else:
@@ -112,7 +119,7 @@ def _limits(given: tuple[float, float] | None, span: float) -> tuple[float, floa
 
 
 def _searched(
-    points: LightPoints, limits: tuple[float, float], progress: Progress
+    points: LightPoints, limits: Span, progress: Progress, *, keep: bool
 ) -> tuple[SearchData, Spectrum]:
     """Search the light as it is and, where that can be had, without slow variation; keep the clearer."""
     dense = search_data(points)
@@ -120,18 +127,19 @@ def _searched(
     raw = quiet_merged(dense)
     trial = frequencies(*limits, raw.span)
     share = 0.85 if calm is None else 0.42
-    best = raw, spectrum(raw, trial, _Part(progress, 0.0, share))
-    if calm is None:
-        return best
+    seen = spectrum(raw, trial, _Part(progress, 0.0, share), keep=keep)
+    if calm is None or seen.left:
+        return raw, seen
     calm = quiet_merged(calm)
-    other = calm, spectrum(calm, trial, _Part(progress, share, 2 * share))
-    return max((best, other), key=_clearness)
+    other = spectrum(calm, trial, _Part(progress, share, 2 * share), keep=keep)
+    best = max(((raw, seen), (calm, other)), key=_clearness)
+    return best[0], replace(best[1], left=other.left)
 
 
 def _clearness(pair: tuple[SearchData, Spectrum]) -> float:
     """Explained over unexplained chi2."""
     data, seen = pair
-    gain = float(seen.table[:, _kernels.GAIN_TWO].max())
+    gain = float(seen.table[:, boxes.GAIN_TWO].max())
     return gain / max(data.chi2 - gain, 1e-9)
 
 
@@ -147,7 +155,7 @@ class _Part:
 
 
 def _check_dips(found: list[Candidate], seen: Spectrum, data: SearchData) -> None:
-    gain = seen.table[:, _kernels.GAIN_TWO]
+    gain = seen.table[:, boxes.GAIN_TWO]
     if found and gain.max() > LEAST_GAIN:
         return
     numbers = {
@@ -159,7 +167,7 @@ def _check_dips(found: list[Candidate], seen: Spectrum, data: SearchData) -> Non
 
 
 def _weighed(
-    points: LightPoints, data: SearchData, found: list[Candidate], limits: tuple[float, float]
+    points: LightPoints, data: SearchData, found: list[Candidate], limits: Span
 ) -> list[Weighed]:
     results = weighed(points, data, found, limits)
     if not results:
@@ -168,25 +176,29 @@ def _weighed(
     return results
 
 
-def _result(best: Settled, results: list[Weighed]) -> PeriodSearch:
+def _result(best: Settled, results: list[Weighed], left: Span | None) -> PeriodSearch:
     lowest = results[0].cost
     others = []
     for each in results:
         seen = each.refined
         if abs(seen.period / best.refined.period - 1) < SAME:
             continue
-        words = "fits as well" if each.cost - lowest < AS_GOOD else "fits worse"
-        depths = ", ".join(f"{one.fit.timing.depth:.3g}" for one in seen.eclipses)
-        words = f"{words}; minima of depth {depths}"
-        others.append(PeriodCandidate(seen.period, seen.epoch, lowest / each.cost, words))
-    chosen = PeriodCandidate(best.refined.period, best.refined.epoch, 1.0, best.words)
+        remark = "fits as well" if each.cost - lowest < AS_GOOD else "fits worse"
+        depths = ", ".join(f"{one.fit.depth:.3g}" for one in seen.eclipses)
+        remark = f"{remark}; minima of depth {depths}"
+        others.append(PeriodCandidate(seen.period, seen.epoch, lowest / each.cost, remark))
+    words = best.words
+    if left is not None:
+        words += f"; stopped: no period from {left[0]:.4g} to {left[1]:.4g} d was searched"
+    chosen = PeriodCandidate(best.refined.period, best.refined.epoch, 1.0, words)
     return PeriodSearch(
         period=best.refined.period,
         epoch=best.refined.epoch,
         period_error=best.refined.period_error,
         candidates=(chosen, *others[:SHOWN]),
-        words=best.words,
+        words=words,
         ambiguous=best.other is not None,
         other=best.other,
         numbers=best.numbers,
+        left=left,
     )

@@ -84,8 +84,8 @@ def _red_scatter(data: SearchData, found: Refined, residual: Floats, length: flo
     rows = np.ones(residual.size, bool)
     cycles = (data.origin - found.origin + data.time) / found.period
     for one in found.eclipses:
-        away = cycles - one.fit.timing.middle
-        rows &= np.abs(away - np.round(away)) > 0.6 * one.fit.timing.duration
+        away = cycles - one.fit.middle
+        rows &= np.abs(away - np.round(away)) > 0.6 * one.fit.duration
     mean, noise = _cell_means(data.time[rows], residual[rows], data.weight[rows], length)
     if mean.size < FEWEST_CELLS:
         return 0.0

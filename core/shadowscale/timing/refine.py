@@ -75,9 +75,9 @@ def refined(
         settled = abs(stretch) < SMALL * error and turn > 0
         origin, period = origin + shift * period, period * (1 + stretch)
     error *= period
-    seen.sort(key=lambda one: -one.fit.timing.depth)
+    seen.sort(key=lambda one: -one.fit.depth)
     counts = tuple(_cycles_seen(cycles, one) for one in seen)
-    middle = seen[0].fit.timing.middle
+    middle = seen[0].fit.middle
     epoch = origin + period * (middle - np.round(middle))
     return Refined(period, error, float(epoch), origin, tuple(seen), points, cycles, counts)
 
@@ -102,9 +102,9 @@ def polished(raw: LightPoints, found: Refined) -> Refined:
     """The same with the best discs as template: trapezoids leave errors where few points trace an eclipse."""
     dips = tuple(
         Dip(
-            one.fit.timing.middle % 1,
-            one.fit.timing.duration / 1.3,
-            one.fit.timing.depth,
+            one.fit.middle % 1,
+            one.fit.duration / 1.3,
+            one.fit.depth,
             one.signal**2,
         )
         for one in found.eclipses
@@ -136,9 +136,9 @@ def _steps(
 
 def _cycles_seen(cycles: Floats, one: SeenEclipse) -> int:
     """How many single eclipses have points inside."""
-    away = cycles - one.fit.timing.middle
+    away = cycles - one.fit.middle
     number = np.round(away)
-    inside = np.abs(away - number) < 0.4 * one.fit.timing.duration
+    inside = np.abs(away - number) < 0.4 * one.fit.duration
     return int(np.unique(number[inside]).size) if inside.any() else 0
 
 

@@ -43,6 +43,8 @@ class PeriodSearch:
         The period that fits as well, if any.
     numbers : mapping
         What the decision rests on, by name.
+    left : (shortest, longest) or None [d]
+        Periods that were not searched before a stop; None where all were.
     """
 
     period: float
@@ -53,6 +55,7 @@ class PeriodSearch:
     ambiguous: bool = False
     other: float | None = None
     numbers: Mapping[str, float] | None = None
+    left: Span | None = None
 
 
 @dataclass(frozen=True, eq=False)

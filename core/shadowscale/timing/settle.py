@@ -123,7 +123,7 @@ def _differences(pair: tuple[SeenEclipse, ...]) -> dict[str, float]:
 def _points_inside(one: SeenEclipse) -> int:
     """Points between first and fourth contact in the window."""
     width = one.window[1] - one.window[0]
-    return int(one.inside.sum() * min(one.fit.timing.duration / width, 1.0))
+    return int(one.inside.sum() * min(one.fit.duration / width, 1.0))
 
 
 def _check_repeats(found: Refined) -> None:

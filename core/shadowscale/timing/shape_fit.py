@@ -13,6 +13,7 @@ middle, duration, shape of ingress, shape of egress, depth of each band, level o
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 
@@ -43,14 +44,24 @@ class ShapeData:
 
 @dataclass(frozen=True, eq=False)
 class ShapeFit:
-    """A fitted shape; `values` and `covariance` in the order of the module's text."""
+    """A fitted shape; `values` and `normal`, the information matrix, in the order of the module's text."""
 
     profile: Profile
     values: Floats
-    covariance: Floats
+    normal: Floats
     chi2: float
     freedom: int
     centre: float
+    symmetric: bool
+
+    @cached_property
+    def covariance(self) -> Floats:
+        """(m, m) of the errors as given, not scaled; most fits are never asked."""
+        covariance = _inverse(self.normal)
+        if self.symmetric:
+            covariance[EGRESS], covariance[:, EGRESS] = covariance[INGRESS], covariance[:, INGRESS]
+            covariance[EGRESS, EGRESS] = covariance[INGRESS, INGRESS]
+        return covariance
 
     @property
     def depths(self) -> Floats:
@@ -97,7 +108,6 @@ def fit_shape(
     Returns
     -------
     ShapeFit
-        The covariance is that of the errors as given, not scaled.
     """
     low, high = _limits(data, profile, start, lower)
     values, normal = start.copy(), np.empty((start.size, start.size))
@@ -117,12 +127,8 @@ def fit_shape(
         values,
         normal,
     )
-    covariance = _inverse(normal)
-    if symmetric:
-        covariance[EGRESS], covariance[:, EGRESS] = covariance[INGRESS], covariance[:, INGRESS]
-        covariance[EGRESS, EGRESS] = covariance[INGRESS, INGRESS]
     freedom = data.phase.size - values.size + int(symmetric)
-    return ShapeFit(profile, values, covariance, chi2, freedom, data.centre)
+    return ShapeFit(profile, values, normal, chi2, freedom, data.centre, symmetric)
 
 
 def grid_chi2(data: ShapeData, rough: ShapeFit, durations: Floats, stretches: Floats) -> Floats:
@@ -191,8 +197,8 @@ def _limits(
     data: ShapeData, profile: Profile, start: Floats, lower: float
 ) -> tuple[Floats, Floats]:
     low, high = np.full(start.size, -np.inf), np.full(start.size, np.inf)
-    reach = float(np.ptp(data.phase))
     low[MIDDLE], high[MIDDLE] = data.phase.min(), data.phase.max()
+    reach = high[MIDDLE] - low[MIDDLE]
     low[DURATION], high[DURATION] = start[DURATION] / 6, max(reach, start[DURATION])
     low[INGRESS : EGRESS + 1] = max(lower, profile.lower)
     high[INGRESS : EGRESS + 1] = profile.upper

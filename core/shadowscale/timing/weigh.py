@@ -77,7 +77,7 @@ def as_good(results: list[Weighed]) -> list[Weighed]:
 def _plain(found: Refined) -> bool:
     if len(found.eclipses) == 1:
         return True
-    first, second = (one.fit.timing.middle for one in found.eclipses[:2])
+    first, second = (one.fit.middle for one in found.eclipses[:2])
     return abs((first - second) % 1 - 0.5) < HALF_APART
 
 
@@ -96,8 +96,8 @@ def _seen_clearly(found: Refined) -> Refined | None:
         n
         for n, one in enumerate(found.eclipses)
         if one.signal > LEAST_SIGNAL
-        and one.fit.timing.depth > LEAST_DEPTH * deepest.depth
-        and 1 / UNLIKE < one.fit.timing.duration / deepest.duration < UNLIKE
+        and one.fit.depth > LEAST_DEPTH * deepest.depth
+        and 1 / UNLIKE < one.fit.duration / deepest.duration < UNLIKE
     ]
     if not rows:
         return None

@@ -40,7 +40,7 @@ class SeenEclipse:
     @property
     def signal(self) -> float:
         """How far the eclipse stands out [sigma]; 0 for light gained instead of lost."""
-        return self.fit.signal if self.fit.timing.depth > 0 else 0.0
+        return self.fit.signal if self.fit.depth > 0 else 0.0
 
 
 def see_eclipse(
@@ -81,6 +81,7 @@ def see_eclipse(
     room, first = _room(dips, number), _first_band(points, cycles, dips)
     middle, width = dip.middle, 1.3 * dip.width
     kept = np.ones(cycles.size, bool)
+    rough = None
     # Trapezoids place the window and show the outliers; the shape asked for comes last.
     for turn, shape in enumerate((TRAPEZOID, TRAPEZOID, profile, profile)):
         window = _window(near, middle, width, room)
@@ -90,15 +91,17 @@ def see_eclipse(
             return None
         data = _shape_data(points, near, rows, smear)
         box = min(width / 1.3, 1.3 * dip.width)
-        fit = fit_eclipse(data, middle=middle, width=box, profile=shape, first=first)
+        fit = fit_eclipse(data, middle=middle, width=box, profile=shape, first=first, like=rough)
+        if shape is TRAPEZOID:
+            rough = fit
         residuals = _residuals(points, near, inside, fit, smear)
         fresh = kept.copy()
         if clip:
             fresh[inside] = _ordinary(near[inside], residuals)
-        settled = abs(fit.timing.duration - width) < 0.15 * width and np.array_equal(fresh, kept)
-        if turn == _LAST or (settled and turn == _LAST - 1):
+        settled = abs(fit.duration - width) < 0.15 * width and np.array_equal(fresh, kept)
+        if turn == _LAST or (settled and shape is profile):
             break
-        kept, middle, width = fresh, fit.timing.middle, fit.timing.duration
+        kept, middle, width = fresh, fit.middle, fit.duration
     return SeenEclipse(fit, window, residuals, inside, kept[inside])
 
 
@@ -183,7 +186,7 @@ def slope_and_residual(
     data = replace(
         _shape_data(points.at(rows), near, np.ones(rows.size, bool), 0.0), centre=best.centre
     )
-    step = 1e-3 * seen.fit.timing.duration
+    step = 1e-3 * seen.fit.duration
     ahead, behind = (predicted(replace(data, phase=near + side), best) for side in (step, -step))
     residual = seen.residuals[seen.kept]
     return (ahead - behind) / (2 * step) / data.sigma, residual, cycles[rows]

@@ -218,6 +218,47 @@ def test_progress_rises_and_can_stop_the_search():
         search_period(photometry, progress=Recorder(limit=0.2))
 
 
+class Impatient(Recorder):
+    """Stops the work at each of some fractions, once."""
+
+    def __init__(self, *limits):
+        super().__init__()
+        self.limits = list(limits)
+
+    def report(self, fraction, words):
+        super().report(fraction, words)
+        if self.limits and fraction > self.limits[0]:
+            raise Stopped(f"beyond {self.limits.pop(0)}")
+
+
+def test_a_stopped_search_keeps_the_periods_searched_so_far():
+    rng = np.random.default_rng(75)
+    binary, _, noise = CASES["eccentric, space"]
+    times = space_times(rng)
+    # Thirty days of observing, and a few nights two years later: most trial periods are needless.
+    late = times[times < times[0] + 3] + 700
+    photometry = observe(binary, np.concatenate([times, late]), noise, rng)
+    whole = search_period(photometry)
+    assert whole.left is None
+    found = search_period(photometry, progress=Impatient(0.7), keep=True)
+    shortest, longest = found.left
+    assert found.period == pytest.approx(whole.period, rel=1e-6)
+    assert found.period < shortest < longest
+    assert f"no period from {shortest:.4g} to {longest:.4g} d was searched" in found.words
+    with pytest.raises(Stopped, match=r"beyond 0\.7"):
+        search_period(photometry, progress=Impatient(0.7))
+    with pytest.raises(Stopped, match=r"beyond 0\.8"):
+        search_period(photometry, progress=Impatient(0.7, 0.8), keep=True)
+
+
+def test_stopped_before_anything_was_searched_there_is_nothing_to_keep():
+    rng = np.random.default_rng(76)
+    binary, _, noise = CASES["eccentric, space"]
+    photometry = observe(binary, space_times(rng), noise, rng)
+    with pytest.raises(Stopped, match="beyond -1"):
+        search_period(photometry, progress=Impatient(-1.0), keep=True)
+
+
 def verdict(animal):
     """`right`, `stated` (the truth is named as fitting as well) or `wrong`."""
     try:
