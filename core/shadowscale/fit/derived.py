@@ -252,10 +252,15 @@ def assumed_inputs(plan: Plan, system: System) -> dict[str, tuple[float, float]]
 
 
 def absent_words(system: System, plan: Plan) -> dict[str, str]:
-    """For each derived quantity that is not there: why."""
+    """For each quantity of the system that is not there: why."""
     assumed = {name: value for name, (value, _) in assumed_inputs(plan, system).items()}
     values = derived_values(system, assumed)
-    return {
+    unmeasured = {
+        name: f"the velocities of star {name[-1]} were not measured"
+        for name in ("K1", "K2", "gamma1", "gamma2")
+        if name not in system.values
+    }
+    return unmeasured | {
         name: _why_absent(name, system) for name, value in values.items() if not np.isfinite(value)
     }
 

@@ -43,6 +43,7 @@ METHOD = (
     "bounded least squares with analytic derivatives, levels eliminated (variable projection); "
     "covariance from the curvature at the minimum, errors scaled to reduced chi-squared one"
 )
+ANY_DIRECTION = 0.683 * 180.0  # degrees: 68.3 % of directions that are not known at all lie within
 MAIN_DERIVED = (
     "r1",
     "r2",
@@ -74,6 +75,10 @@ def assemble(
     best_system, shift = _at_wished_epoch(best, plan)
     spread, keys = _spread(best, plan, shift, ends)
     estimates = _estimates(best, plan, spread, ends)
+    absent = absent_words(best.system, plan)
+    if _any_direction(estimates):
+        del estimates["omega"]
+        absent["omega"] = "the eccentricity is not above its error: periastron may lie anywhere"
     fit = _summary(best, problem, weighting)
     names, correlations = _correlations(spread, best.system.free)
     light = light_result(best, problem, weighting)
@@ -89,7 +94,7 @@ def assemble(
         contact=None if ground is None else ground.contact,
         decisions=tuple(decisions),
         alternatives=alternatives(branches),
-        absent=absent_words(best.system, plan),
+        absent=absent,
         notes=tuple(notes),
     )
 
@@ -179,6 +184,14 @@ def _estimates(
         found[name] = replace(found[leader], how=DERIVED)
     order = {name: number for number, name in enumerate(QUANTITIES)}
     return dict(sorted(found.items(), key=lambda item: order[parse_key(item[0]).name]))
+
+
+def _any_direction(estimates: Mapping[str, Estimate]) -> bool:
+    """Whether omega is there, but its limits take in the other side of a circular orbit or everything."""
+    if "omega" not in estimates:
+        return False
+    size, angle = estimates["eccentricity"], estimates["omega"]
+    return size.value < (size.minus or 0.0) or (angle.plus or 0.0) > ANY_DIRECTION
 
 
 def _inclination_limits(

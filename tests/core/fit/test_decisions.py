@@ -207,6 +207,21 @@ def test_an_eccentricity_below_the_noise_is_not_claimed() -> None:
     assert _decision(found.solution, "orbit").chosen == "circular"
 
 
+def test_omega_that_may_be_anything_is_not_quoted() -> None:
+    """An eccentric orbit asked for where it is circular; in most draws of noise e is below its error."""
+    truth, plan = invented(), ephemeris(orbit="eccentric")
+    many = [
+        solved(truth, plan, photometry=observed(truth, seed=seed)).solution for seed in range(4)
+    ]
+    unknown = [each for each in many if "omega" not in each.estimates]
+    size = [each.estimates["eccentricity"] for each in many]
+
+    assert len(unknown) == sum(each.value < each.minus for each in size) > 0
+    found = unknown[0]
+    assert "periastron may lie anywhere" in found.absent["omega"]
+    assert found.absent["K1"] == "the velocities of star 1 were not measured"
+
+
 def test_omega_has_a_true_error_at_zero() -> None:
     """Regression: where omega passes 360 degrees its error came out as thousands of degrees.
 
