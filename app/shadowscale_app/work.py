@@ -13,10 +13,13 @@ from shadowscale.fit.solution import Solution
 from shadowscale.progress import Progress
 from shadowscale.session.session import Session
 from shadowscale.view.follow import is_final
+from shadowscale.view.light_points import ephemeris
 from shadowscale_app import trouble
 from shadowscale_app.desk import Change, Desk
 from shadowscale_app.jobs import Answer, LongLane
 from shadowscale_app.live import with_results
+
+CHOOSE = "The session keeps its period; fold with a found one in the Period pane."
 
 if TYPE_CHECKING:
     from shadowscale_app.dialogs.exporting import Target
@@ -209,5 +212,9 @@ class WorkDesk(QObject):
 
         assert isinstance(found, PeriodSearch)
         self.searched.emit(found)
-        self.fold(found.period, found.epoch)
-        self.told.emit(found.words)
+        words = f"{found.words[:1].upper()}{found.words[1:]}"
+        if ephemeris(self._desk.session) is None:
+            self.fold(found.period, found.epoch)
+        else:  # what stands on another period is not thrown away unasked
+            words += f". {CHOOSE}"
+        self.told.emit(words)

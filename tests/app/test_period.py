@@ -66,6 +66,16 @@ def test_the_search_folds_places_markers_and_lists_what_it_weighed(
     assert loaded.panes["Folded curve"].pair.points.layers
 
 
+def test_a_search_keeps_what_stands_on_a_period(bench: Bench, search: PeriodSearch) -> None:
+    before = bench.desk.session
+    bench.actions_table.by_name["period"].trigger()
+    assert bench.long_lane.wait_until_idle()
+
+    assert bench.desk.session is before
+    assert bench.panes["Period"].table.rowCount() == 2
+    assert "keeps its period" in bench.status.words.text()
+
+
 def test_one_can_fold_with_another_period_and_go_back(loaded: Bench, search: PeriodSearch) -> None:
     pane = loaded.panes["Period"]
     pane.period.setText(f"{PERIOD}")

@@ -10,14 +10,14 @@ from shadowscale.view.looks import look_of
 from shadowscale_app import theme
 from shadowscale_app.naming import named
 
-SIGNS = {
-    "o": "\N{BLACK CIRCLE}",
-    "t1": "\N{BLACK UP-POINTING TRIANGLE}",
-    "s": "\N{BLACK SQUARE}",
-    "d": "\N{BLACK DIAMOND}",
-    "t": "\N{BLACK DOWN-POINTING TRIANGLE}",
-    "p": "\N{BLACK PENTAGON}",
-    "h": "\N{BLACK HEXAGON}",
+SIGNS = {  # of a band that is shown, and of one that is hidden
+    "o": "\N{BLACK CIRCLE}\N{WHITE CIRCLE}",
+    "t1": "\N{BLACK UP-POINTING TRIANGLE}\N{WHITE UP-POINTING TRIANGLE}",
+    "s": "\N{BLACK SQUARE}\N{WHITE SQUARE}",
+    "d": "\N{BLACK DIAMOND}\N{WHITE DIAMOND}",
+    "t": "\N{BLACK DOWN-POINTING TRIANGLE}\N{WHITE DOWN-POINTING TRIANGLE}",
+    "p": "\N{BLACK PENTAGON}\N{WHITE PENTAGON}",
+    "h": "\N{BLACK HEXAGON}\N{WHITE HEXAGON}",
 }
 
 
@@ -55,10 +55,11 @@ class BandChips(QWidget):
     ) -> QToolButton:
         button = QToolButton()
         shape = theme.BAND_SHAPES[number % len(theme.BAND_SHAPES)]
-        button.setText(f"{SIGNS[shape]} {band}")
+        button.setText(f"{SIGNS[shape][band in hidden]} {band}")
         button.setCheckable(True)
         button.setChecked(band not in hidden)
-        tint = theme.colours().band(number, len(bands))
+        now = theme.colours()
+        tint = now.quiet if band in hidden else now.band(number, len(bands))
         button.setStyleSheet(f"QToolButton {{ color: {tint}; padding: 0 6px; }}")
         named(button, f"Band {band}", f"Show or hide band {band}")
         button.clicked.connect(lambda: self._toggle(band, hidden))

@@ -68,7 +68,7 @@ class EclipsesPane(Pane):
         self.inviting.show_picture(ephemeris(self.session) is not None)
         for pair in self.pairs.values():
             pair.show_light(self.session, names)
-        if names & {"contact", "solution", "view"}:
+        if names & {"contact", "solution", "system", "view"}:
             self.geometry_words.setText(_geometry_text(self.session))
         if {"photometry", "name"} <= names:
             self._placed = False
@@ -95,7 +95,7 @@ class EclipsesPane(Pane):
 def _geometry_text(session: Session) -> str:
     """Rich text: the contacts' geometry and the fit's, one behind the other."""
     now = theme.colours()
-    tints = {"contacts": now.contact, "fit": now.model}
+    tints = {"contacts": now.contact, "fit": now.model, "by hand": now.model}
     parts = []
     for line in geometry_lines(session):
         cells = "&nbsp;&nbsp;".join(

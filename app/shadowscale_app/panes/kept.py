@@ -29,6 +29,7 @@ from shadowscale_app.panes.pane import Pane
 if TYPE_CHECKING:
     from shadowscale.jobs.compare_inputs import Compared
 
+WIDEST_NAME = 92  # [pixels], so that a solution, another and their sigmas are seen at once
 SIGMAS = "\N{GREEK CAPITAL LETTER DELTA}/\N{GREEK SMALL LETTER SIGMA}"
 
 
@@ -58,6 +59,7 @@ class KeptPane(Pane):
         self.table.setShowGrid(False)
         self.table.verticalHeader().setDefaultSectionSize(22)
         self.table.verticalHeader().setMinimumWidth(60)
+        self.table.verticalHeader().setMaximumWidth(WIDEST_NAME)
         self.words = QLabel("")
         self.words.setObjectName("quiet")
         self.words.setWordWrap(True)
@@ -105,6 +107,7 @@ class KeptPane(Pane):
         self.table.setHorizontalHeaderLabels(heads)
         self.table.setVerticalHeaderLabels([row.what for row in found.rows])
         for number, row in enumerate(found.rows):
+            self.table.verticalHeaderItem(number).setToolTip(row.what)
             cells = [row.values[0]]
             for pair in zip(row.values[1:], row.sigmas, strict=True):
                 cells += pair

@@ -210,15 +210,15 @@ class LightPair(QWidget):
         if axes == self._axes:
             return
         self._axes = axes
-        self.curve.setLabel("left", "magnitude" if look.magnitudes else "light")
-        self.rest.setLabel("left", "O\N{MINUS SIGN}C")
+        self.curve.name_axis("left", "magnitude" if look.magnitudes else "light")
+        self.rest.name_axis("left", "O\N{MINUS SIGN}C")
         axis = self.rest.getAxis("bottom")
         if look.hours and period is not None:
             axis.setScale(period * 24.0)
-            axis.setLabel("hours from mid primary eclipse")
+            self.rest.name_axis("bottom", "hours from mid primary eclipse")
         else:
             axis.setScale(1.0)
-            axis.setLabel("phase")
+            self.rest.name_axis("bottom", "phase")
 
 
 def _fit_height(picture: Picture, found: tuple[float, float] | None) -> None:

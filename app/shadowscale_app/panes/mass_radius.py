@@ -44,7 +44,7 @@ class MassRadiusPane(Pane):
 
     def refresh(self, names: frozenset[str]) -> None:
         """Draw what changed."""
-        if not names & {"solution", "view"}:
+        if not names & {"solution", "system", "view"}:
             return
         now = theme.colours()
         stars = published_stars()
@@ -60,7 +60,7 @@ class MassRadiusPane(Pane):
         self.legend.setLabelTextColor(now.quiet)
         self.legend.addItem(self.others, OTHERS)
         for star, tint, shape in zip(
-            measured_stars(self.session.solution), (now.star1, now.star2), ("o", "s"), strict=False
+            measured_stars(self.session), (now.star1, now.star2), ("o", "s"), strict=False
         ):
             point = pg.ScatterPlotItem(
                 [star.log_mass], [star.log_radius], symbol=shape, size=11, pen=pg.mkPen(now.paper, width=1.5),

@@ -131,6 +131,6 @@ class PairsPane(Pane):
                     ),
                     ignoreBounds=True,
                 )
-        picture.setLabel("bottom", symbol(found.names[0]))
-        picture.setLabel("left", symbol(found.names[1]))
+        picture.name_axis("bottom", symbol(found.names[0]))
+        picture.name_axis("left", symbol(found.names[1]))
         picture.box.enableAutoRange()

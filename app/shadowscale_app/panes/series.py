@@ -64,9 +64,9 @@ class SeriesPane(Pane):
         self.points.show_layers(_layers(shown, shifts, len(photometry.bands)))
         self._show_range(shown, shifts)
         self.picture.box.invertY(look.magnitudes)
-        self.picture.setLabel("left", "magnitude" if look.magnitudes else "light")
+        self.picture.name_axis("left", "magnitude" if look.magnitudes else "light")
         scale = photometry.time_scale if photometry.time_scale != "unknown" else "JD"
-        self.picture.setLabel(
+        self.picture.name_axis(
             "bottom", f"{scale} \N{MINUS SIGN} {self._zero}" if self._zero else scale
         )
 

@@ -32,9 +32,9 @@ class StarsPane(Pane):
 
     def refresh(self, names: frozenset[str]) -> None:
         """Write the lines anew."""
-        if "solution" not in names and "view" not in names:
+        if not names & {"solution", "system", "view"}:
             return
-        lines = card_lines(self.session.solution)
+        lines = card_lines(self.session)
         shape = (tuple(line.what for line in lines), theme.colours().dark)
         if shape != self._shape:
             self._clear()

@@ -7,6 +7,7 @@ from PySide6.QtWidgets import QHBoxLayout, QLabel, QSlider, QToolButton, QVBoxLa
 
 from shadowscale.view.curves import contact_system
 from shadowscale.view.scene import scene
+from shadowscale.view.shown import shown_estimates
 from shadowscale.view.written import phase_text
 from shadowscale_app.naming import named
 from shadowscale_app.panes.pane import Pane
@@ -88,10 +89,7 @@ class ToScalePane(Pane):
             self.sky.show_scene(None)
             self.words.setText("")
             return
-        solution = self.session.solution
-        found = scene(
-            system, self.phase, estimates=solution.estimates if solution is not None else {}
-        )
+        found = scene(system, self.phase, estimates=shown_estimates(self.session))
         self.sky.show_scene(found)
         self.words.setText(f"{phase_text(self.phase)[:-2]}  {found.words}")
 

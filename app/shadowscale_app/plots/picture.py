@@ -47,8 +47,8 @@ class Picture(pg.PlotWidget):
             axis.setStyle(tickLength=-5, hideOverlappingLabels=True)
         self.getAxis("left").setWidth(62)
         self.getAxis("bottom").setHeight(34)
-        self.setLabel("left", left)
-        self.setLabel("bottom", bottom)
+        self.name_axis("left", left)
+        self.name_axis("bottom", bottom)
         self.setMouseTracking(True)
         self.setMinimumSize(120, 60)
         self.dress()
@@ -58,6 +58,12 @@ class Picture(pg.PlotWidget):
         """The part inside the axes."""
         found: Box = self.getPlotItem().getViewBox()
         return found
+
+    def name_axis(self, side: str, words: str) -> None:
+        """Write what an axis shows, in its middle."""
+        axis = self.getAxis(side)
+        axis.setLabel(words)
+        axis.resizeEvent()  # else it stands where the words before it began
 
     def dress(self) -> None:
         """Take the theme's colours."""

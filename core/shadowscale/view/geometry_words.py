@@ -8,6 +8,7 @@ from dataclasses import dataclass, replace
 from shadowscale.fit.solution import DERIVED, Estimate
 from shadowscale.quantities import parse_key
 from shadowscale.session.session import Session
+from shadowscale.view.shown import moved_by_hand, shown_estimates
 from shadowscale.view.written import symbol, unit_sign, value_and_error
 
 NAMES = ("r1", "r2", "inclination")
@@ -24,7 +25,7 @@ class GeometryLine:
 
 
 def geometry_lines(session: Session) -> tuple[GeometryLine, ...]:
-    """Contacts first, then the fit; only what there is."""
+    """Contacts first, then the fit, or the model as it was moved by hand; only what there is."""
     lines = []
     free = () if session.system is None else session.system.free
     names = (*NAMES, *(name for name in SHAPE if name in free))
@@ -36,16 +37,15 @@ def geometry_lines(session: Session) -> tuple[GeometryLine, ...]:
         }
         lines.append(GeometryLine("contacts", _cells(known, names)))
     if solution is not None:
-        lines.append(GeometryLine("fit", _cells(solution.estimates, names)))
+        source = "by hand" if moved_by_hand(session) else "fit"
+        lines.append(GeometryLine(source, _cells(shown_estimates(session), names)))
     return tuple(line for line in lines if line.cells)
 
 
 def velocity_cells(session: Session) -> tuple[tuple[str, str, str], ...]:
     """(symbol, value with unit, error) of amplitudes, systemic velocities and offsets; empty without a solution."""
-    if session.solution is None:
-        return ()
     found = []
-    for name, estimate in session.solution.estimates.items():
+    for name, estimate in shown_estimates(session).items():
         if parse_key(name).name in VELOCITY_NAMES:
             value, error = value_and_error(name, estimate)
             found.append((symbol(name), value, error))

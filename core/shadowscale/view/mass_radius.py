@@ -8,8 +8,10 @@ from math import log10
 import numpy as np
 
 from shadowscale.data.photometry import Floats
-from shadowscale.fit.solution import Estimate, Solution
+from shadowscale.fit.solution import Estimate
 from shadowscale.geometry.published import PUBLISHED, PublishedStar
+from shadowscale.session.session import Session
+from shadowscale.view.shown import shown_estimates
 from shadowscale.view.written import one_line
 
 
@@ -29,13 +31,12 @@ def published_stars() -> tuple[PlottedStar, ...]:
     return tuple(_published(star) for star in PUBLISHED)
 
 
-def measured_stars(solution: Solution | None) -> tuple[PlottedStar, ...]:
-    """Both stars of a solution where masses and radii are known."""
-    if solution is None:
-        return ()
+def measured_stars(session: Session) -> tuple[PlottedStar, ...]:
+    """Both stars where masses and radii are known."""
+    estimates = shown_estimates(session)
     found = []
     for star in (1, 2):
-        mass, radius = (solution.estimates.get(f"{letter}{star}") for letter in "MR")
+        mass, radius = (estimates.get(f"{letter}{star}") for letter in "MR")
         if mass is not None and radius is not None and mass.value > 0 and radius.value > 0:
             words = f"star {star}: {one_line(f'M{star}', mass)}, {one_line(f'R{star}', radius)}"
             found.append(_plotted(mass, radius, words))

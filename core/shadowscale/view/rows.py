@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from math import isfinite
-from types import MappingProxyType
 
 from shadowscale.fit.build import means, named, tied_keys
 from shadowscale.fit.check import kind
@@ -15,6 +14,7 @@ from shadowscale.fit.system import System
 from shadowscale.quantities import BAND, Quantity, parse_key
 from shadowscale.session.session import Session
 from shadowscale.view.grades import NOT_SAID, bar, grade, relative_error, strongest_correlations
+from shadowscale.view.shown import shown_estimates
 from shadowscale.view.written import plain_value, symbol, unit_sign, value_and_error
 
 FREE, HELD, WITH_PRIOR, TIED = "free", "held", "with prior", "tied"
@@ -60,9 +60,7 @@ def quantity_rows(session: Session) -> tuple[Row, ...]:
     system, solution = session.system, session.solution
     if system is None:
         return ()
-    estimates: Mapping[str, Estimate] = (
-        MappingProxyType({}) if solution is None else solution.estimates
-    )
+    estimates = shown_estimates(session)
     strongest = {} if solution is None else strongest_correlations(solution)
     rows = [_basic_row(system, name, estimates.get(name)) for name in system.values]
     rows += [

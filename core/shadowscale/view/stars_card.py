@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
-from shadowscale.fit.solution import Solution
+from shadowscale.fit.solution import Estimate
+from shadowscale.session.session import Session
+from shadowscale.view.shown import shown_estimates
 from shadowscale.view.written import unit_sign, value_and_error
 
 LINES = (
@@ -26,19 +29,18 @@ class CardLine:
     star2: tuple[str, str]
 
 
-def card_lines(solution: Solution | None) -> tuple[CardLine, ...]:
+def card_lines(session: Session) -> tuple[CardLine, ...]:
     """Mass, radius, gravity, luminosity where known; fractional radii where masses are not."""
-    if solution is None:
-        return ()
+    estimates = shown_estimates(session)
     lines = []
     for what, stem, unit in LINES:
-        cells = [_cell(solution, f"{stem}{star}") for star in (1, 2)]
+        cells = [_cell(estimates, f"{stem}{star}") for star in (1, 2)]
         if any(cell[0] for cell in cells):
             lines.append(CardLine(what, unit_sign(unit), cells[0], cells[1]))
     known = [line for line in lines if line.what != "r = R/a"]
     return tuple(known if any(line.what == "radius" for line in known) else lines)
 
 
-def _cell(solution: Solution, name: str) -> tuple[str, str]:
-    estimate = solution.estimates.get(name)
+def _cell(estimates: Mapping[str, Estimate], name: str) -> tuple[str, str]:
+    estimate = estimates.get(name)
     return ("", "") if estimate is None else value_and_error(name, estimate)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from shadowscale.session.session import Session
 from shadowscale.view.follow import FOLLOWED
+from shadowscale.view.shown import moved_by_hand
 
 
 def summary(session: Session) -> str:
@@ -12,7 +13,7 @@ def summary(session: Session) -> str:
     if solution is not None:
         worst = max(solution.fit.rms_light.values(), default=0.0)
         followed = ", errors linear until solved" if FOLLOWED in solution.notes else ""
-        if session.system is not None and session.system.values != solution.system.values:
+        if moved_by_hand(session):
             return "moved by hand: Solve (F5) fits from here"
         return (
             f"{solution.fit.points} points, {solution.fit.free} free, "

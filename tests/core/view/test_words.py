@@ -17,9 +17,10 @@ from shadowscale.quantities import QUANTITIES
 from shadowscale.session.session import Session
 from shadowscale.view.compared import NOTHING_BESIDE, SIGN, side_by_side
 from shadowscale.view.doubts import counts, doubts
+from shadowscale.view.geometry_words import geometry_lines
 from shadowscale.view.looks import Look, look_of
 from shadowscale.view.rows import HELD, quantity_rows, with_prior, with_state, with_value
-from shadowscale.view.stars_card import card_lines
+from shadowscale.view.stars_card import CardLine, card_lines
 from shadowscale.view.summary import summary
 from shadowscale.view.wishes import (
     LAW_NAMES,
@@ -241,11 +242,32 @@ def test_a_solution_alone_and_one_of_another_file() -> None:
 
 
 def test_the_card_shows_fractions_only_without_sizes() -> None:
-    assert [line.what for line in card_lines(made_up_session().solution)] == ["mass", "radius"]
-    assert [line.what for line in card_lines(made_up_session(velocities=False).solution)] == [
-        "r = R/a"
-    ]
-    assert card_lines(None) == ()
+    assert [line.what for line in card_lines(made_up_session())] == ["mass", "radius"]
+    assert [line.what for line in card_lines(made_up_session(velocities=False))] == ["r = R/a"]
+    assert card_lines(Session()) == ()
+
+
+def _stars(line: CardLine) -> tuple[tuple[str, str], tuple[str, str]]:
+    return line.star1, line.star2
+
+
+def test_a_model_moved_by_hand_shows_its_own_numbers_without_errors() -> None:
+    session = made_up_session()
+    total = session.system.value("radius_sum")
+    larger = with_value(session, "radius_sum", 1.1 * total)
+    before = {line.what: line for line in card_lines(session)}
+    after = {line.what: line for line in card_lines(larger)}
+
+    assert after["mass"] == before["mass"]  # hangs on nothing that was moved
+    for old, new in zip(_stars(before["radius"]), _stars(after["radius"]), strict=True):
+        assert float(new[0]) == pytest.approx(1.1 * float(old[0]), rel=2e-3)  # as printed
+        assert (bool(old[1]), new[1]) == (True, "")
+    rows = {row.key: row for row in quantity_rows(larger)}
+    assert rows["r1"].value == pytest.approx(1.1 * session.solution.estimates["r1"].value)
+    assert (rows["r1"].error_text, rows["r1"].grade) == ("", "")
+    assert rows["radius_ratio"].error_text
+    assert [line.source for line in geometry_lines(larger)][-1] == "by hand"
+    assert "moved by hand" in summary(larger)
 
 
 def test_the_summary_says_what_there_is() -> None:
