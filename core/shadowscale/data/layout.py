@@ -18,6 +18,7 @@ NAMES = {
     BLANKS: "blanks",
     MIXED: "mixed separators",
 }
+_WORD = re.compile(r"\s*[A-Za-z][\w' +-]*$")  # a band or a source, as a cell of its own
 _MIXED = re.compile(r"[\s,;|]+")
 
 
@@ -68,7 +69,7 @@ def looks_like_data(cells: list[str], decimal_comma: bool) -> bool:
 
 
 def found_layout(sample: list[str]) -> Layout | None:
-    """The layout that turns most cells of the sample into numbers; None if no line has two.
+    """The layout that turns most cells of the sample into numbers and words; None if no line has two numbers.
 
     Decimal commas are tried with every separator but the comma itself. Among equals the
     order of the candidates decides: explicit separators come before blanks.
@@ -85,7 +86,7 @@ def found_layout(sample: list[str]) -> Layout | None:
 
 
 def _score(sample: list[str], separator: str, decimal_comma: bool) -> tuple[float, Layout | None]:
-    """Mean over the lines of the share of cells that are numbers or empty, ragged lines nought."""
+    """Mean over the lines of the share of cells that are numbers, words or empty, ragged lines nought."""
     rows = [split(line, separator) for line in sample]
     looks = [looks_like_data(cells, decimal_comma) for cells in rows]
     data = [cells for cells, is_data in zip(rows, looks) if is_data]
@@ -94,7 +95,7 @@ def _score(sample: list[str], separator: str, decimal_comma: bool) -> tuple[floa
     columns = Counter(map(len, data)).most_common(1)[0][0]
     data = [cells for cells in data if len(cells) == columns]
     others = [cells for cells, is_data in zip(rows, looks) if not is_data]
-    score = sum(_share(cells, decimal_comma) for cells in data)
+    score = sum(_share(cells, decimal_comma, words=separator != MIXED) for cells in data)
     score *= 1.0 if separator != MIXED else 0.9
     needed = not decimal_comma or any("," in cell for cells in data for cell in cells)
     columns -= _ends_with_separator(data, others)
@@ -108,6 +109,10 @@ def _ends_with_separator(data: list[list[str]], others: list[list[str]]) -> bool
     return columns > 2 and not named and all(not cells[-1].strip() for cells in data)
 
 
-def _share(cells: list[str], decimal_comma: bool) -> float:
-    good = sum(is_number(cell, decimal_comma) or is_missing(cell) for cell in cells)
+def _share(cells: list[str], decimal_comma: bool, *, words: bool) -> float:
+    """Share of cells that make sense; where any separator may cut, `words` may be pieces of remarks."""
+    good = sum(
+        is_number(cell, decimal_comma) or is_missing(cell) or (words and bool(_WORD.match(cell)))
+        for cell in cells
+    )
     return good / len(cells)

@@ -110,6 +110,14 @@ def test_a_dash_of_a_word_processor_is_a_minus(tmp_path: Path) -> None:
         np.testing.assert_allclose(table.value, -np.arange(60) / 1000, atol=1e-12)
 
 
+def test_decimal_commas_beside_a_column_of_bands(tmp_path: Path) -> None:
+    lines = [";".join([*HEADER, "filter"]), *(row + ";V" for row in rows(";", decimal=","))]
+    table = read_photometry(written(tmp_path, "a.csv", lines))
+    plain = read_photometry(written(tmp_path, "b.csv", rows()))
+    assert table.bands == ("V",)
+    assert np.array_equal(table.time, plain.time)
+
+
 def test_calendar_dates_are_told_apart_from_other_words(tmp_path: Path) -> None:
     lines = ["date,mag", *(f"2021-03-{1 + k % 28:02d},11.{k}" for k in range(40))]
     with pytest.raises(TableError, match=r"line 1: .*turn calendar dates into Julian dates first"):
