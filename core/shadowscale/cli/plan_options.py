@@ -170,7 +170,9 @@ def _named(option: str, text: str, allowed: tuple[str, ...]) -> str:
     except ValueError:
         raise UsageError(option, text, allowed) from None
     if parsed.name not in allowed:
-        raise UsageError(option, text, allowed)
+        derived = "a quantity that is fitted; of a derived one all that can be said is --prior"
+        known = parsed.name in QUANTITIES
+        raise UsageError(option, text, allowed, expected=derived if known else "")
     return str(parsed)
 
 

@@ -87,9 +87,18 @@ WRONG = [
     ("--wavelength V=1 --wavelength V=2", "'V' only once"),
     ("--free third_ligth", "did you mean 'third_light'?"),
     ("--tie gamma2", "--tie: expected NAME=NAME"),
-    ("--tie M2=M1", "--tie: expected one of period"),
-    ("--free M1", "--free: expected one of period"),
-    ("--fix r1=0.2", "--fix: expected one of period"),
+    (
+        "--tie M2=M1",
+        "--tie: expected a quantity that is fitted; of a derived one all that can be said is --prior",
+    ),
+    (
+        "--free M1",
+        "--free: expected a quantity that is fitted; of a derived one all that can be said is --prior",
+    ),
+    (
+        "--fix r1=0.2",
+        "--fix: expected a quantity that is fitted; of a derived one all that can be said is --prior",
+    ),
     ("--fix inclination", "--fix: expected NAME=VALUE, found 'inclination'"),
     ("--fix inclination=95", "to 90, found '95'"),
     ("--fix ecosw=0.1,0.2", "--fix: expected one value, found 'ecosw=0.1,0.2'"),
