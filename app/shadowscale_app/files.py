@@ -96,7 +96,7 @@ class Files(QObject):
         """Ask where the sheet and all the rest are to be written."""
         from shadowscale_app.dialogs.exporting import ask_target
 
-        return ask_target(self.window, self._desk.session, self._folder())
+        return ask_target(self.window, self._desk.session, Path(self._folder()))
 
     def ask_compare(self, then: Callable[[Any], object]) -> None:
         """Ask for a session, a sheet or a typed table, and hand over the solutions in it."""
@@ -143,8 +143,11 @@ class Files(QObject):
         settings().setValue(RECENT, texts[:MOST_RECENT])
 
     def _folder(self) -> str:
+        """Where the person worked last; at first where the program was started, if one may write there."""
         recent = self.recent()
-        return str(recent[0].parent) if recent else os.getcwd()
+        if recent:
+            return str(recent[0].parent)
+        return os.getcwd() if os.access(os.getcwd(), os.W_OK) else str(Path.home())
 
 
 def _packed(session: Session, path: Path) -> Path:

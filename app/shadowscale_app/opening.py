@@ -14,6 +14,7 @@ from shadowscale.session.session import Session, Source
 from shadowscale_app.desk import Change, Desk
 from shadowscale_app.dialogs.reading import Reading, ask_reading
 from shadowscale_app.files import PACKED_SUFFIX, SESSION_SUFFIX, Files
+from shadowscale_app.samples import is_sample
 
 Then = Callable[[], object]
 
@@ -110,8 +111,10 @@ class Opening(QObject):
         def take(found: tuple[Session, Path]) -> None:
             session, place = found
             if self._desk.session is agreed or self._files.may_leave():
-                self._desk.begin(session, place)
-                self._files.remember(place)
+                sample = is_sample(place)  # saving it asks where
+                self._desk.begin(session, None if sample else place)
+                if not sample:
+                    self._files.remember(place)
                 if place != path:
                     self.told.emit(f"Unpacked into {place.parent}.")
                 then()

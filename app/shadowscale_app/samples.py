@@ -19,6 +19,12 @@ def samples() -> list[tuple[str, str, Path]]:
     return found
 
 
+def is_sample(path: Path) -> bool:
+    """Whether a file is one of the samples, which nobody's work may change."""
+    folder = _folder()
+    return folder is not None and folder.resolve() in path.resolve().parents
+
+
 def _words(path: Path) -> str:
     """What the sample shows, as the text beside it says in its first line; else the session's name."""
     note = path.parent / "README.md"

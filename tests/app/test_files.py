@@ -15,7 +15,7 @@ from shadowscale.session.session import Session
 from shadowscale_app.actions import FIGURE_PANES
 from shadowscale_app.bench import Bench
 from shadowscale_app.desk import Change
-from shadowscale_app.dialogs.exporting import agreed_target
+from shadowscale_app.dialogs.exporting import ExportDialog, Target, agreed_target
 from shadowscale_app.journals import journal_folder
 from shadowscale_app.plots import figure
 from shadowscale_app.plots.figure import KINDS, save_figure
@@ -197,6 +197,44 @@ def test_export_writes_the_sheet_and_asks_before_it_replaces(
 
     assert again is None
     assert "sheet.json" in asked[0]
+
+
+def test_a_folder_is_proposed_for_the_sheet(
+    bench: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    opened(bench)
+    bench.files.save_to(tmp_path / "work.json")
+    shown: list[str] = []
+
+    def accept(dialog: ExportDialog) -> int:
+        shown.append(dialog.folder.text())
+        dialog.folder.setText("")
+        assert not dialog.export.isEnabled()
+        dialog.folder.setText(str(tmp_path / "not there yet"))
+        return 1
+
+    monkeypatch.setattr(ExportDialog, "exec", accept)
+    target = bench.files.ask_export()
+
+    assert Path(shown[0]).parent == tmp_path
+    assert shown[0].endswith("_sheet")
+    assert target == Target(tmp_path / "not there yet", replace=False)
+
+
+def test_a_sample_is_never_written_over(
+    bench: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    opened(bench)
+    rename(bench)
+    before = samples()[0][2].read_bytes()
+    target = str(tmp_path / "mine.json")
+    dialog = staticmethod(lambda *_: (target, ""))
+    monkeypatch.setattr(figure.QFileDialog, "getSaveFileName", dialog)
+
+    bench.actions_table.by_name["save"].trigger()
+
+    assert Path(target) == bench.desk.path
+    assert samples()[0][2].read_bytes() == before
 
 
 @pytest.mark.parametrize("kind", KINDS)

@@ -28,6 +28,7 @@ from shadowscale.data import head_of
 from shadowscale_app.actions import TABLE
 from shadowscale_app.bench import Bench
 from shadowscale_app.dialogs.brushing import BrushDialog
+from shadowscale_app.dialogs.exporting import ExportDialog
 from shadowscale_app.dialogs.prior import PriorDialog
 from shadowscale_app.dialogs.reading import ReadingDialog
 from shadowscale_app.samples import samples
@@ -102,7 +103,7 @@ def test_every_control_of_the_start_page_has_a_name_and_a_sentence(
     assert speechless(bench.start) == []
 
 
-@pytest.mark.parametrize("kind", ["photometry", "velocities", "brush", "prior"])
+@pytest.mark.parametrize("kind", ["photometry", "velocities", "brush", "prior", "export"])
 def test_every_control_of_the_dialogs_has_a_name_and_a_sentence(bench: Bench, kind: str) -> None:
     folder = samples()[0][2].parent
     dialogs = {
@@ -110,6 +111,7 @@ def test_every_control_of_the_dialogs_has_a_name_and_a_sentence(bench: Bench, ki
         "velocities": lambda: ReadingDialog(head_of(folder / "velocities.csv"), "velocities"),
         "brush": lambda: BrushDialog(3),
         "prior": lambda: PriorDialog(made_up_session(), "radius_ratio"),
+        "export": lambda: ExportDialog(folder / "sheet"),
     }
     dialog = dialogs[kind]()
     standard = dialog.findChildren(QDialogButtonBox)[0].findChildren(QAbstractButton)

@@ -51,7 +51,7 @@ from shadowscale_app.panes.pane import Pane
 NOTHING = "Choose a quantity to move it"
 REACH = 100  # slider steps to either side of where it was taken up
 WATCHED = frozenset({"system", "solution", "plan"})
-WIDTHS = {SYMBOL: 72, VALUE: 112, ERROR: 140, UNIT: 38, STATE: 56, GRADE: 100}
+WIDTHS = {SYMBOL: 82, VALUE: 112, ERROR: 130, UNIT: 38, STATE: 56, GRADE: 100}
 
 
 class QuantitiesPane(Pane):
