@@ -1,7 +1,8 @@
-"""Figures drawn by a process of its own, which loads what it needs while the fit still runs.
+"""The report made by a process of its own, which loads what it needs while the fit still runs.
 
 matplotlib takes half a second to load and draws on one processor. Started beside the fit, this process
-is ready when the solution is; then it divides itself, so that two processors draw.
+is ready when the solution is; then it divides itself: two copies draw figures, while it sets the words
+of the pages itself and whoever asked writes the other files.
 """
 
 from __future__ import annotations
@@ -15,18 +16,23 @@ from collections.abc import Iterator
 from contextlib import contextmanager, suppress
 from typing import IO
 
+from shadowscale.jobs.reporting import Made, made_here, make_ready
+from shadowscale.sheet.document import Document
 from shadowscale.sheet.figure_data import Shown
-from shadowscale.sheet.figures import FIGURES, all_figures, files_of, possible_figures, warm_up
+from shadowscale.sheet.figures import FIGURES, files_of, heights, possible_figures
+from shadowscale.sheet.report_html import as_html
+from shadowscale.sheet.report_pages import with_figures
+from shadowscale.sheet.report_pdf import text_pages
 
 COUNT = 2
 ALONE = {"OPENBLAS_NUM_THREADS": "1"}  # a process with threads does not divide itself safely
-Files = dict[str, dict[str, bytes]]
 
 
 class Painters:
-    """The running process; `figures` gives the same as `all_figures`."""
+    """The running process; what it is asked to `begin` it gives at `finish`, the same as `made_here`."""
 
     def __init__(self) -> None:
+        self._asked: tuple[Shown, Document]
         self._process = subprocess.Popen(
             [sys.executable, "-P", "-m", __name__],
             stdin=subprocess.PIPE,
@@ -35,16 +41,20 @@ class Painters:
             env={**os.environ, **ALONE},
         )
 
-    def figures(self, shown: Shown) -> Files:
-        """Every figure in every format; drawn here where the process is in trouble."""
-        into, out = self._process.stdin, self._process.stdout
-        assert into is not None
-        assert out is not None
+    def begin(self, shown: Shown, document: Document) -> None:
+        """Ask for the report."""
+        self._asked = shown, document
+        assert self._process.stdin is not None
+        with suppress(OSError):  # told at the end
+            _send(self._process.stdin, self._asked)
+
+    def finish(self) -> Made:
+        """Figures and report; made here where the process is in trouble."""
+        assert self._process.stdout is not None
         try:
-            _send(into, shown)
-            found: Files = pickle.load(out)
+            found: Made = pickle.load(self._process.stdout)
         except (OSError, EOFError, pickle.UnpicklingError):
-            return all_figures(shown)
+            return made_here(*self._asked)
         return found
 
     def close(self) -> None:
@@ -77,17 +87,18 @@ def main() -> None:
     into, out = sys.stdin.buffer, os.fdopen(os.dup(1), "wb")
     os.dup2(2, 1)  # whatever a library prints must not come among the figures
     with suppress(EOFError, BrokenPipeError, KeyboardInterrupt):
-        warm_up()
+        make_ready()
         gc.disable()  # a short life: looking for cycles among so many small objects would be in vain
-        shown = pickle.load(into)
-        _send(out, _divided(shown) if sys.platform == "linux" else all_figures(shown))
+        shown, document = pickle.load(into)
+        make = _made_divided if sys.platform == "linux" else made_here
+        _send(out, make(shown, document))
 
 
 _inherited: list[Shown] = []  # what the parts of the process have from before they parted
 
 
-def _divided(shown: Shown) -> Files:
-    """The figures drawn by copies of this process, the slow ones first."""
+def _made_divided(shown: Shown, document: Document) -> Made:
+    """Figures by copies of this process, the slow ones first, and the words of the pages beside them."""
     from concurrent.futures import ProcessPoolExecutor
     from multiprocessing import get_context
 
@@ -95,8 +106,11 @@ def _divided(shown: Shown) -> Files:
     names = possible_figures(shown)
     order = sorted(names, key=lambda name: -FIGURES[name].effort)
     with ProcessPoolExecutor(COUNT, mp_context=get_context("fork")) as pool:
-        found = dict(zip(order, pool.map(_part, order)))
-    return {name: found[name] for name in names}
+        parts = pool.map(_part, order)
+        text = text_pages(document, heights(shown))
+        found = dict(zip(order, parts))
+    figures = {name: found[name] for name in names}
+    return figures, as_html(document, figures), with_figures(text, figures)
 
 
 def _part(name: str) -> dict[str, bytes]:

@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-
 from shadowscale.session.session import Session
-from shadowscale.sheet.report import Report, make_document
+from shadowscale.sheet.document import Code, Document, Paragraph, Section
+from shadowscale.sheet.figure_data import Shown
+from shadowscale.sheet.figures import all_figures, warm_up
+from shadowscale.sheet.report import Report
 from shadowscale.sheet.report_html import as_html
 from shadowscale.sheet.report_pdf import as_pdf
 from shadowscale.sheet.sheet import Sheet
 from shadowscale.sheet.showing import shown_of
+from shadowscale.sheet.symbols import marked
+
+Made = tuple[dict[str, dict[str, bytes]], bytes, bytes]  # figures, the report as HTML and as PDF
 
 
 def report_of(session: Session, sheet: Sheet) -> Report:
@@ -23,11 +27,16 @@ def report_of(session: Session, sheet: Sheet) -> Report:
     )
 
 
-def report_documents(
-    report: Report, figures: Mapping[str, Mapping[str, bytes]]
-) -> tuple[bytes, bytes]:
-    """The report as HTML and as PDF, from its figures in every format."""
-    document = make_document(report)
-    pictures = {name: files["svg"].decode() for name, files in figures.items()}
-    pages = {name: files["pdf"] for name, files in figures.items()}
-    return as_html(document, pictures).encode("utf-8", "replace"), as_pdf(document, pages)
+def made_here(shown: Shown, document: Document) -> Made:
+    """Figures and report, one after the other in this process."""
+    figures = all_figures(shown)
+    return figures, as_html(document, figures), as_pdf(document, figures)
+
+
+def make_ready() -> None:
+    """Load all that `made_here` needs, so that the first report does not wait for it."""
+    warm_up()
+    words = Paragraph(f"A {marked(r'M_1')} \N{SUN}")  # letters of every file
+    document = Document("A", "", (Section("a", "A", (words, Code("A"))),))
+    as_html(document, {})
+    as_pdf(document, {})

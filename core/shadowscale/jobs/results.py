@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Callable, Iterable, Mapping
 from dataclasses import replace
+from functools import partial
 from pathlib import Path
 from typing import Any
 
@@ -15,7 +16,7 @@ from shadowscale.session.plain import to_plain
 from shadowscale.session.session import Session
 from shadowscale.session.store import save_session
 from shadowscale.sheet import RENDERINGS, Sheet, light_curve, make_sheet, velocity_curve
-from shadowscale.sheet.figures import FIGURES, FORMATS, all_figures
+from shadowscale.sheet.figures import FIGURES, FORMATS
 from shadowscale.sheet.model_curve import model_curve
 
 SESSION_FILE = "session.json"
@@ -84,7 +85,7 @@ def write_results(
     report : bool
         Write the report and the figures, too. They come last, so that trouble with them costs nothing else.
     painters : Painters or None
-        Who draws the figures; without them they are drawn here.
+        Who make the report meanwhile; without them it is made here.
 
     Returns
     -------
@@ -101,13 +102,20 @@ def write_results(
     """
     check_targets(session, folder, result_files(session, report=report), overwrite=overwrite)
     sheet = sheet_of(session)
+    finish = _begun(session, sheet, painters) if report else dict[str, bytes]
     contents = _contents(session, sheet)
     _write(folder, contents)
     try:
         save_session(replace(session, notes=()), folder / SESSION_FILE)
     except OSError as error:
         raise not_writable(folder, error) from error
-    drawn = _report(session, sheet, folder, painters) if report else {}
+    try:
+        drawn = finish()
+    except Exception as error:
+        what = f"{type(error).__name__}: {error}"
+        raise ShadowscaleError(
+            f"the report could not be made ({what}); all other results are in {folder}"
+        ) from error
     _write(folder, drawn)
     return tuple(folder / name for name in (*contents, SESSION_FILE, *drawn))
 
@@ -120,21 +128,31 @@ def _write(folder: Path, contents: Mapping[str, bytes]) -> None:
         raise not_writable(folder, error) from error
 
 
-def _report(
-    session: Session, sheet: Sheet, folder: Path, painters: Painters | None
-) -> dict[str, bytes]:
-    """Report and figures; whatever goes wrong in them is told with where the rest is."""
-    from shadowscale.jobs.reporting import report_documents, report_of
+def _begun(
+    session: Session, sheet: Sheet, painters: Painters | None
+) -> Callable[[], dict[str, bytes]]:
+    """Begin the report; what is returned ends it, and raises whatever went wrong from the beginning."""
+    from shadowscale.jobs.reporting import made_here, report_of
+    from shadowscale.sheet.report import make_document
 
     try:
         report = report_of(session, sheet)
-        figures = (painters.figures if painters else all_figures)(report.shown)
-        page, pages = report_documents(report, figures)
+        asked = report.shown, make_document(report)
+        if painters is not None:
+            painters.begin(*asked)
     except Exception as error:
-        what = f"{type(error).__name__}: {error}"
-        raise ShadowscaleError(
-            f"the report could not be made ({what}); all other results are in {folder}"
-        ) from error
+        return partial(_raise, error)
+    return lambda: _files(*(made_here(*asked) if painters is None else painters.finish()))
+
+
+def _raise(error: Exception) -> dict[str, bytes]:
+    raise error
+
+
+def _files(
+    figures: Mapping[str, Mapping[str, bytes]], page: bytes, pages: bytes
+) -> dict[str, bytes]:
+    """Report and figures by the names of their files."""
     found = {HTML_FILE: page, PDF_FILE: pages}
     for name, files in figures.items():
         found |= {f"{FIGURE_FOLDER}/{name}.{kind}": content for kind, content in files.items()}

@@ -30,6 +30,7 @@ if TYPE_CHECKING:
 
 FORMATS = ("pdf", "svg", "png")
 DOTS_AN_INCH = 200
+POINTS = 72  # an inch
 
 
 @dataclass(frozen=True)
@@ -69,6 +70,11 @@ FIGURES: Mapping[str, Drawing] = MappingProxyType(
 def possible_figures(shown: Shown) -> tuple[str, ...]:
     """The names of the figures that a solution has."""
     return tuple(name for name, drawing in FIGURES.items() if drawing.possible(shown))
+
+
+def heights(shown: Shown) -> dict[str, float]:
+    """The heights of a solution's figures [points, 1/72 inch]."""
+    return {name: POINTS * FIGURES[name].size(shown)[1] for name in possible_figures(shown)}
 
 
 def make_figure(name: str, shown: Shown) -> Figure:

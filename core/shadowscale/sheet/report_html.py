@@ -24,17 +24,18 @@ _HEAD = re.compile(r"^.*?(?=<svg)", re.DOTALL)
 _METADATA = re.compile(r"<metadata>.*?</metadata>", re.DOTALL)
 
 
-def as_html(document: Document, figures: Mapping[str, str]) -> str:
+def as_html(document: Document, figures: Mapping[str, Mapping[str, bytes]]) -> bytes:
     """The page.
 
     Parameters
     ----------
     document : Document
-    figures : mapping of name to SVG
-        Of every picture in the document.
+    figures : mapping of name and format to content
+        Every picture in the document, as `svg` at least.
     """
-    inline = {name: _inline(name, svg) for name, svg in figures.items()}
-    return _template().render(document=document, figures=inline)
+    inline = {name: _inline(name, files["svg"].decode()) for name, files in figures.items()}
+    page = _template().render(document=document, figures=inline)
+    return page.encode("utf-8", "replace")
 
 
 @cache

@@ -9,7 +9,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from datetime import UTC, datetime
 from io import BytesIO
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, cast
 
 from shadowscale.sheet.document import Document
 from shadowscale.sheet.report_text import Face, Piece, font_path, lines_of, spelled, text_width
@@ -17,7 +17,7 @@ from shadowscale.sheet.symbols import flat
 
 if TYPE_CHECKING:
     from fpdf import FPDF
-    from pypdf import PageObject
+    from pypdf import PageObject, PdfWriter
 
 PAPER = (595.28, 841.89)  # A4
 SIDE = 56.7
@@ -33,16 +33,19 @@ OCTAGON = (
     (1.0, 0.42), (0.42, 1.0), (-0.42, 1.0), (-1.0, 0.42),
     (-1.0, -0.42), (-0.42, -1.0), (0.42, -1.0), (1.0, -0.42),
 )  # fmt: skip
+Figures = Mapping[
+    str, Mapping[str, bytes]
+]  # by name and format; here a `pdf` of one page is needed
 
 
 @dataclass(eq=False)
 class Page:
-    """What stands on a page: words, rules (left, right, y, width, colour), marks, figures (left, top)."""
+    """What stands on a page: words, rules (left, right, y, width, colour), marks, figures (left, foot)."""
 
     pieces: list[Piece] = field(default_factory=list)
     rules: list[tuple[float, float, float, float, str]] = field(default_factory=list)
     marks: list[tuple[float, float, str]] = field(default_factory=list)
-    pictures: list[tuple[PageObject, float, float]] = field(default_factory=list)
+    pictures: list[tuple[str, float, float]] = field(default_factory=list)
 
 
 @dataclass(frozen=True)
@@ -59,37 +62,76 @@ def mark_colour(kind: str) -> str:
     return {"pass": PASS, "warn": WARN}.get(kind, FAIL)
 
 
-def read_figures(files: Mapping[str, bytes]) -> dict[str, PageObject]:
-    """The figures as pages, from a PDF of one page each."""
+@dataclass(frozen=True)
+class WithoutFigures:
+    """A file of pages with room for figures: its content, and what is still to be done."""
+
+    content: bytes
+    title: str
+    pictures: tuple[tuple[tuple[str, float, float], ...], ...]
+    bookmarks: tuple[Bookmark, ...]
+
+
+def heights_of(figures: Figures) -> dict[str, float]:
+    """The heights of figures."""
+    return {name: float(_page_of(files["pdf"]).mediabox.height) for name, files in figures.items()}
+
+
+def _page_of(content: bytes) -> PageObject:
     from pypdf import PdfReader
 
-    return {name: PdfReader(BytesIO(content)).pages[0] for name, content in files.items()}
+    return PdfReader(BytesIO(content)).pages[0]
 
 
-def write_pages(pages: Sequence[Page], document: Document, bookmarks: Sequence[Bookmark]) -> bytes:
-    """A file of pages, with the document's title and page numbers below."""
-    from pypdf import PdfWriter, Transformation
-    from pypdf.generic import Fit
-
+def draw_pages(
+    pages: Sequence[Page], document: Document, bookmarks: Sequence[Bookmark]
+) -> WithoutFigures:
+    """Pages with the document's title and page numbers below."""
     for number, page in enumerate(pages, 1):
         _foot(page, document.title, f"{number} / {len(pages)}")
-    writer = PdfWriter(clone_from=BytesIO(_drawn(pages)))
-    for sheet, page in zip(writer.pages, pages):
-        for figure, left, top in page.pictures:
-            low = PAPER[1] - top - float(figure.mediabox.height)
-            sheet.merge_transformed_page(figure, Transformation().translate(left, low))
-        if page.pictures:
-            sheet.compress_content_streams()
-    for mark in bookmarks:
+    pictures = tuple(tuple(page.pictures) for page in pages)
+    return WithoutFigures(_drawn(pages), document.title, pictures, tuple(bookmarks))
+
+
+def with_figures(drawn: WithoutFigures, figures: Figures) -> bytes:
+    """The file with the figures on their places."""
+    from pypdf import PdfWriter
+    from pypdf.generic import Fit
+
+    writer = PdfWriter(clone_from=BytesIO(drawn.content))
+    for page, pictures in zip(writer.pages, drawn.pictures):
+        for name, left, foot in pictures:
+            _place(writer, page, name, figures[name]["pdf"], left=left, low=PAPER[1] - foot)
+    for mark in drawn.bookmarks:
         place = Fit.xyz(top=round(PAPER[1] - mark.y, 1))
         writer.add_outline_item(title=flat(mark.title), page_number=mark.page, fit=place)
     writer.pdf_header = "%PDF-1.4"  # of the figures; that of the pages alone would be lower
     # in place of all that the libraries say of themselves and of the time
-    title = flat(document.title).encode("utf-16", "replace").decode("utf-16")
+    title = flat(drawn.title).encode("utf-16", "replace").decode("utf-16")
     writer.metadata = {"/Title": title, "/Creator": "shadowscale"}
     stream = BytesIO()
     writer.write(stream)
     return stream.getvalue()
+
+
+def _place(
+    writer: PdfWriter, page: PageObject, name: str, content: bytes, *, left: float, low: float
+) -> None:
+    """Put a figure on a page as a form: nothing in it need be read or written anew (ISO 32000-1, 8.10)."""
+    from pypdf.generic import DictionaryObject, EncodedStreamObject, NameObject
+
+    figure, own = _page_of(content), NameObject(f"/{name}")
+    form = cast(EncodedStreamObject, figure["/Contents"].get_object()).clone(writer)
+    form[NameObject("/Type")] = NameObject("/XObject")
+    form[NameObject("/Subtype")] = NameObject("/Form")
+    form[NameObject("/BBox")] = figure.mediabox.clone(writer)
+    form[NameObject("/Resources")] = figure["/Resources"].clone(writer)
+    resources = cast(DictionaryObject, page["/Resources"].get_object())
+    forms = resources.setdefault(NameObject("/XObject"), DictionaryObject())
+    cast(DictionaryObject, forms.get_object())[own] = form.indirect_reference
+    words = cast(EncodedStreamObject, page["/Contents"].get_object())
+    place = f"\nq 1 0 0 1 {left:.2f} {low:.2f} cm {own} Do Q\n".encode()
+    words.set_data(words.get_data() + place)
 
 
 def _foot(page: Page, title: str, count: str) -> None:

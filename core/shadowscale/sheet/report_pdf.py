@@ -7,7 +7,6 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
-from typing import TYPE_CHECKING
 
 from shadowscale.sheet.document import (
     RIGHT,
@@ -30,16 +29,16 @@ from shadowscale.sheet.report_pages import (
     SMALL,
     WIDTH,
     Bookmark,
+    Figures,
     Page,
+    WithoutFigures,
+    draw_pages,
+    heights_of,
     mark_colour,
-    read_figures,
-    write_pages,
+    with_figures,
 )
 from shadowscale.sheet.report_text import Face, Line, Piece, lines_of, text_width
 from shadowscale.sheet.symbols import flat
-
-if TYPE_CHECKING:
-    from pypdf import PageObject
 
 TOP, FOOT = 56.0, 58.0
 LEADING = 1.28
@@ -52,9 +51,12 @@ CELL_GAP = 7.0
 
 @dataclass(eq=False)
 class Setter:
-    """The hand that sets blocks on pages; `y` is how far down the present page is full."""
+    """The hand that sets blocks on pages; `y` is how far down the present page is full.
 
-    figures: Mapping[str, PageObject]
+    heights : of the figures, by name
+    """
+
+    heights: Mapping[str, float]
     pages: list[Page] = field(default_factory=lambda: [Page()])
     bookmarks: list[Bookmark] = field(default_factory=list)
     y: float = TOP
@@ -93,22 +95,27 @@ class Setter:
         self.y += after
 
 
-def as_pdf(document: Document, figures: Mapping[str, bytes]) -> bytes:
+def as_pdf(document: Document, figures: Figures) -> bytes:
     """The report as a PDF file; the same solution gives the same bytes.
 
     Parameters
     ----------
     document : Document
-    figures : mapping of name to PDF
-        Of every picture in the document.
+    figures : mapping of name and format to content
+        Every picture in the document, as `pdf` at least.
     """
-    setter = set_document(document, read_figures(figures))
-    return write_pages(setter.pages, document, setter.bookmarks)
+    return with_figures(text_pages(document, heights_of(figures)), figures)
 
 
-def set_document(document: Document, figures: Mapping[str, PageObject]) -> Setter:
+def text_pages(document: Document, heights: Mapping[str, float]) -> WithoutFigures:
+    """The pages with room for figures of known heights."""
+    setter = set_document(document, heights)
+    return draw_pages(setter.pages, document, setter.bookmarks)
+
+
+def set_document(document: Document, heights: Mapping[str, float]) -> Setter:
     """The document set on pages."""
-    setter = Setter(figures)
+    setter = Setter(heights)
     _head(setter, document)
     for section in document.sections:
         _section(setter, section)
@@ -213,14 +220,13 @@ def _wide(value: str, error: str, unit: str, width: float) -> bool:
 def _picture_height(setter: Setter, block: Picture) -> float:
     """A figure with its caption."""
     caption = len(lines_of(block.caption, SMALL, WIDTH)) * SMALL.size * LEADING
-    return float(setter.figures[block.name].mediabox.height) + caption + 6
+    return setter.heights[block.name] + caption + 6
 
 
 def _picture(setter: Setter, block: Picture) -> None:
-    figure = setter.figures[block.name]
-    height = float(figure.mediabox.height)
+    height = setter.heights[block.name]
     setter.room(min(_picture_height(setter, block), PAPER[1] - FOOT - TOP))
-    setter.page.pictures.append((figure, SIDE, setter.y))
+    setter.page.pictures.append((block.name, SIDE, setter.y + height))
     setter.y += height + 4
     setter.text(block.caption, SMALL, after=8)
 

@@ -11,7 +11,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from shadowscale.data.photometry import Floats
+from shadowscale.data.photometry import Floats, Ints
 
 FEWEST = 7
 FEWEST_PAIRS = 3
@@ -56,9 +56,9 @@ def folded_minimum(time: Floats, flux: Floats, noise: float) -> FoldedMinimum | 
     axes = np.arange(2 * FEWEST_PAIRS, 2 * (last - FEWEST_PAIRS) + 1)
     if axes.size < 3:
         return None
-    unlike = [_mean_square(light, int(axis)) for axis in axes]
+    unlike = _mean_squares(light, axes)
     best = int(axes[np.argmin(unlike)])
-    if min(unlike) > UNLIKE:
+    if unlike.min() > UNLIKE:
         return None
     reach = max(2, round(REACH * 2 * last))
     used = np.arange(max(axes[0], best - reach), min(axes[-1], best + reach) + 1)
@@ -95,9 +95,23 @@ def _sum_of_squares(light: Floats, axis: int, pairs: int) -> float:
     return float(difference @ difference)
 
 
-def _mean_square(light: Floats, axis: int) -> float:
-    """Relative to the light's own variation in the pairs, so that a flat part is no symmetry."""
-    pairs = _pairs(light, axis)
-    left = (axis - 1) // 2 - np.arange(pairs)
-    both = np.concatenate([light[left], light[axis - left]])
-    return _sum_of_squares(light, axis, pairs) / max(2 * pairs * float(np.var(both)), 1e-300)
+def _mean_squares(light: Floats, axes: Ints) -> Floats:
+    """Of the differences about each axis, relative to the light's own variation in the pairs.
+
+    So a flat part is no symmetry. The sum of (l - r)^2 is that of l^2 + r^2 less 2 l r, and the latter
+    for all axes is the light convolved with itself.
+    """
+    light = light - light.mean()
+    low, high = np.maximum(axes - light.size + 1, 0), np.minimum(axes, light.size - 1)
+    middle = np.where(axes % 2 == 0, light[axes // 2], 0.0)  # of an axis on a point, in no pair
+    total = _between(light, low, high) - middle
+    squares = _between(light**2, low, high) - middle**2
+    unlike = squares - (np.convolve(light, light)[axes] - middle**2)
+    count = 2 * ((high - low + 1) // 2)
+    return np.asarray(unlike / np.maximum(squares - total**2 / count, 1e-300))
+
+
+def _between(values: Floats, low: Ints, high: Ints) -> Floats:
+    """Sums from `low` to `high`, both included."""
+    sums = np.concatenate([[0.0], np.cumsum(values)])
+    return np.asarray(sums[high + 1] - sums[low])

@@ -51,7 +51,7 @@ def refined(
         Start; the dips' phases count from `origin`, which should be near the middle of the data.
     dips : tuple of Dip
     profile : Profile or None
-        Shape of the eclipses; None for the best discs.
+        Shape of the eclipses; None for the discs that are best in the first round.
 
     Returns
     -------
@@ -59,6 +59,7 @@ def refined(
         The deepest eclipse first; None where no dip has points enough to be fitted.
     """
     error, settled = np.inf, False
+    profiles = [profile] * len(dips)
     calm = raw.at(~isolated(raw.time, raw.flux, raw.sigma))
     for turn in range(ROUNDS):
         last = settled or turn == ROUNDS - 1
@@ -66,7 +67,12 @@ def refined(
         used = raw if last else calm
         cycles = (used.time - origin) / period
         points, _ = flattened(used, cycles, dips)
-        seen = _all_seen(points, cycles, dips, profile, clip=last)
+        found = [
+            see_eclipse(points, cycles, dips, number, profile=profiles[number], clip=last)
+            for number in range(len(dips))
+        ]
+        profiles = [one.fit.best.profile if one else profile for one in found]
+        seen = [one for one in found if one is not None]
         if not seen:
             return None
         if last:
@@ -80,22 +86,6 @@ def refined(
     middle = seen[0].fit.middle
     epoch = origin + period * (middle - np.round(middle))
     return Refined(period, error, float(epoch), origin, tuple(seen), points, cycles, counts)
-
-
-def _all_seen(
-    points: LightPoints,
-    cycles: Floats,
-    dips: tuple[Dip, ...],
-    profile: Profile | None,
-    *,
-    clip: bool,
-) -> list[SeenEclipse]:
-    """The dips that can be fitted."""
-    fitted = [
-        see_eclipse(points, cycles, dips, number, profile=profile, clip=clip)
-        for number in range(len(dips))
-    ]
-    return [one for one in fitted if one is not None]
 
 
 def polished(raw: LightPoints, found: Refined) -> Refined:

@@ -1,22 +1,24 @@
-"""Figures drawn by another process are those drawn here, whatever happens to the process."""
+"""A report made by another process is that made here, whatever happens to the process."""
 
 import pytest
 
 from made_up import made_up_session
 from shadowscale.jobs.painters import painters
-from shadowscale.sheet.figures import all_figures
-from shadowscale.sheet.showing import shown_of
+from shadowscale.jobs.reporting import made_here, report_of
+from shadowscale.jobs.results import sheet_of
+from shadowscale.sheet.report import make_document
 
 
 @pytest.fixture(scope="module")
-def shown():
+def asked():
     session = made_up_session()
-    return shown_of(session.solution, session.photometry, session.velocities)
+    report = report_of(session, sheet_of(session))
+    return report.shown, make_document(report)
 
 
 @pytest.fixture(scope="module")
-def drawn_here(shown):
-    return all_figures(shown)
+def here(asked):
+    return made_here(*asked)
 
 
 @pytest.fixture(autouse=True)
@@ -24,15 +26,17 @@ def two_processors(monkeypatch):
     monkeypatch.setattr("shadowscale.jobs.painters.os.cpu_count", lambda: 2)
 
 
-def test_another_process_draws_the_same_bytes(shown, drawn_here):
+def test_another_process_makes_the_same_bytes(asked, here):
     with painters() as found:
-        assert found.figures(shown) == drawn_here
+        found.begin(*asked)
+        assert found.finish() == here
 
 
-def test_a_process_that_dies_is_replaced_by_drawing_here(shown, drawn_here):
+def test_a_process_that_dies_is_replaced_by_making_it_here(asked, here):
     with painters() as found:
         found._process.kill()
-        assert found.figures(shown) == drawn_here
+        found.begin(*asked)
+        assert found.finish() == here
 
 
 def test_no_process_stays_behind():

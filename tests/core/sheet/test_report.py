@@ -15,12 +15,12 @@ from shadowscale.jobs.reporting import report_of as make_report
 from shadowscale.jobs.results import sheet_of
 from shadowscale.quantities import QUANTITIES
 from shadowscale.sheet.document import Table, Verdicts
-from shadowscale.sheet.figures import FIGURES, all_figures
+from shadowscale.sheet.figures import FIGURES, all_figures, heights
 from shadowscale.sheet.methods import methods_of
 from shadowscale.sheet.references import REFERENCES, bibliography
 from shadowscale.sheet.report import make_document
 from shadowscale.sheet.report_html import as_html
-from shadowscale.sheet.report_pages import PAPER, SIDE, read_figures
+from shadowscale.sheet.report_pages import PAPER, SIDE, heights_of
 from shadowscale.sheet.report_pdf import FOOT, TOP, as_pdf, set_document
 from shadowscale.sheet.report_tables import GROUPS
 from shadowscale.sheet.report_text import text_width
@@ -49,7 +49,7 @@ def figures(report):
 
 @pytest.fixture(scope="module")
 def html(document, figures):
-    return as_html(document, {name: files["svg"].decode() for name, files in figures.items()})
+    return as_html(document, figures).decode()
 
 
 @pytest.fixture(scope="module")
@@ -58,13 +58,8 @@ def page(html):
 
 
 @pytest.fixture(scope="module")
-def drawings(figures):
-    return {name: files["pdf"] for name, files in figures.items()}
-
-
-@pytest.fixture(scope="module")
-def pages(document, drawings):
-    return pdf_pages(as_pdf(document, drawings))
+def pages(document, figures):
+    return pdf_pages(as_pdf(document, figures))
 
 
 def test_the_page_is_well_formed_and_its_links_lead_somewhere(page):
@@ -134,16 +129,14 @@ def test_the_page_has_dark_print_and_narrow_styles(html):
 def test_names_of_people_cannot_break_the_page(figures):
     session = replace(made_up_session(), name="<b>A & B</b> \x02x\x03", command="solve '<i>'")
     document = make_document(report_of(session))
-    page = Page.read(
-        as_html(document, {name: each["svg"].decode() for name, each in figures.items()})
-    )
+    page = Page.read(as_html(document, figures).decode())
     assert page.trouble == []
     assert "<b>A & B</b> x" in page.text
     assert "solve '<i>'" in page.text
 
 
-def test_the_pdf_says_the_same_on_pages_of_a4(pages, document, report, drawings):
-    width, height = pdf_size(as_pdf(document, drawings))
+def test_the_pdf_says_the_same_on_pages_of_a4(pages, document, report, figures):
+    width, height = pdf_size(as_pdf(document, figures))
     assert (width, height) == pytest.approx((595.28, 841.89), abs=0.01)  # ISO 216
     text = " ".join(" ".join(pages).split())
     for section in document.sections:
@@ -157,37 +150,35 @@ def test_the_pdf_says_the_same_on_pages_of_a4(pages, document, report, drawings)
     assert all(f"{number} / {len(pages)}" in text for number, text in enumerate(pages, 1))
 
 
-def test_the_same_solution_gives_the_same_bytes_at_any_time(
-    document, drawings, figures, monkeypatch
-):
-    first = as_pdf(document, drawings)
+def test_the_same_solution_gives_the_same_bytes_at_any_time(document, figures, monkeypatch):
+    first = as_pdf(document, figures)
     monkeypatch.setattr("time.time", lambda: 4.0e9)
-    assert as_pdf(document, drawings) == first
+    assert as_pdf(document, figures) == first
     again = all_figures(report_of(made_up_session(("V", "I"))).shown)
     assert again == figures
 
 
-def test_a_pdf_keeps_its_words_inside_the_margins(document, drawings):
-    for page in set_document(document, read_figures(drawings)).pages:
+def test_a_pdf_keeps_its_words_inside_the_margins(document, figures):
+    for page in set_document(document, heights_of(figures)).pages:
         for piece in page.pieces:
             assert piece.x >= SIDE - 1
             assert piece.x + text_width(piece.text, piece.face) <= PAPER[0] - SIDE + 2, piece.text
             assert TOP <= piece.y <= PAPER[1] - FOOT + 12
 
 
-def test_a_reader_finds_titles_and_every_letter_in_the_file(document, drawings):
+def test_a_reader_finds_titles_and_every_letter_in_the_file(document, figures):
     """ISO 32000-1 as pypdf reads it: bookmarks lead to their pages, no font is left outside."""
     from pypdf import PdfReader
 
-    reader = PdfReader(BytesIO(as_pdf(document, drawings)), strict=True)
+    reader = PdfReader(BytesIO(as_pdf(document, figures)), strict=True)
     assert reader.metadata == {"/Title": document.title, "/Creator": "shadowscale"}
     assert [item.title for item in reader.outline] == [each.title for each in document.sections]
     for item in reader.outline:
         place = reader.pages[reader.get_destination_page_number(item)]
         assert item.title in place.extract_text()
     embedded = 0
-    for page in reader.pages:
-        for font in page["/Resources"]["/Font"].values():
+    for resources in every_resource(reader):
+        for font in resources["/Font"].values():
             about = font.get_object()
             if about["/Subtype"] == "/Type3":  # matplotlib's, each letter a drawing in the file
                 assert about["/CharProcs"]
@@ -198,11 +189,23 @@ def test_a_reader_finds_titles_and_every_letter_in_the_file(document, drawings):
     assert embedded
 
 
-def test_figures_stand_as_they_were_drawn_on_their_pages(document, drawings):
+def every_resource(reader):
+    """Those of the pages, and of each figure on them."""
+    for page in reader.pages:
+        yield page["/Resources"]
+        for form in page["/Resources"].get("/XObject", {}).values():
+            yield form["/Resources"]
+
+
+def test_the_heights_of_figures_are_known_before_they_are_drawn(report, figures):
+    assert heights(report.shown) == pytest.approx(heights_of(figures), abs=1e-6)
+
+
+def test_figures_stand_as_they_were_drawn_on_their_pages(document, figures):
     """The words of each figure, read by pypdf, are among those of one page."""
-    texts = pdf_pages(as_pdf(document, drawings))
-    for name, content in drawings.items():
-        (alone,) = pdf_pages(content)
+    texts = pdf_pages(as_pdf(document, figures))
+    for name, files in figures.items():
+        (alone,) = pdf_pages(files["pdf"])
         words = {word for word in alone.split() if len(word) > 2}
         assert any(words <= set(text.split()) for text in texts), name
 
@@ -218,8 +221,7 @@ def test_without_velocities_there_is_no_scale_and_no_masses():
         " ".join(block.words for block in document.sections[0].blocks if hasattr(block, "words"))
     )
     assert "the scale of the system is open" in words
-    drawings = {name: files["pdf"] for name, files in all_figures(report.shown).items()}
-    text = " ".join(pdf_pages(as_pdf(document, drawings)))
+    text = " ".join(pdf_pages(as_pdf(document, all_figures(report.shown))))
     assert "No radial velocities were used" in text
 
 

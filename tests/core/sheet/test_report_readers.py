@@ -79,8 +79,8 @@ def test_poppler_reads_the_pages_with_every_letter_from_the_file(tmp_path):
         pytest.skip("no poppler here; apt-get install poppler-utils")
     session = made_up_session(("V",))
     report = report_of(session, sheet_of(session))
-    drawings = {name: files["pdf"] for name, files in all_figures(report.shown).items()}
-    (tmp_path / "report.pdf").write_bytes(as_pdf(make_document(report), drawings))
+    figures = all_figures(report.shown)
+    (tmp_path / "report.pdf").write_bytes(as_pdf(make_document(report), figures))
 
     def said(*command):
         done = subprocess.run(command, cwd=tmp_path, capture_output=True, text=True, check=True)
