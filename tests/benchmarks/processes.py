@@ -15,10 +15,18 @@ import numpy as np
 from timing import Timed
 from works import BAND, SPAN, VALUES, system_of, times_of, velocities
 
+from shadowscale.constants import DAY
+from shadowscale.data.photometry import Floats
 from shadowscale.fit.model import model_light
 
 SAMPLES = Path(__file__).parents[2] / "sample_sessions"
 ROWS_OF_BIG_FILE = 2_000_000
+NIGHT = np.arange(0.0, 8 / 24, 60 / DAY)
+CADENCES: dict[str, Floats] = {
+    "2 minutes": np.arange(20_000) * (120 / DAY),
+    "half an hour": np.arange(20_000) * (1800 / DAY),
+    "42 nights": np.concatenate([3.0 * night + NIGHT for night in range(42)])[:20_000],
+}
 
 
 @dataclass(frozen=True)
@@ -52,7 +60,7 @@ def all_processes(folder: Path, *, quick: bool) -> list[Process]:
         )
     if quick:
         return found
-    light, rv = tables(folder, 20_000, 30)
+    light, rv = tables(folder, times_of(20_000), 30)
     big = big_file(folder)
     million = "import numpy as np; from works import *; t = times_of(1_000_000); " \
         "model_light(system_of(VALUES), BAND, t)"  # fmt: skip
@@ -68,12 +76,27 @@ def all_processes(folder: Path, *, quick: bool) -> list[Process]:
         Process("opening a table", f"{ROWS_OF_BIG_FILE:,} rows",
                 [*python, f"from shadowscale.data import read_photometry as r; r([{str(big)!r}])"]),
         *samples,
-        Process("solve", "20,000 points, 30 velocity pairs",
+        Process("solve", "20,000 points, 30 velocity pairs, ephemeris given",
                 [*shadowscale, "solve", str(light), "--velocities", str(rv), "--law", "quadratic",
                  "--period", str(VALUES["period"]), "--epoch", str(2459000 + VALUES["epoch"]),
                  "--out", str(folder / "both"), "--overwrite", "--report", "no"], "3 s"),
+        *searching(folder, shadowscale),
         *(process for function in MORE for process in function(folder)),
     ]  # fmt: skip
+
+
+def searching(folder: Path, shadowscale: Sequence[str]) -> list[Process]:
+    """`solve` with nothing told but the files, without and with the report, at each cadence."""
+    found = []
+    for name, times in CADENCES.items():
+        place = folder / name.replace(" ", "-")
+        light, rv = tables(place, times, 30)
+        words = [*shadowscale, "solve", str(light), "--velocities", str(rv), "--overwrite",
+                 "--out", str(place / "out")]  # fmt: skip
+        size = f"{times.size:,} points, 30 velocity pairs, {name}"
+        found.append(Process("solve, period searched", size, [*words, "--report", "no"], "3 s"))
+        found.append(Process("solve, period searched, report", size, words))
+    return found
 
 
 def timed_processes(repeats: int, *, quick: bool) -> list[Timed]:
@@ -114,10 +137,11 @@ def _run(process: Process) -> tuple[float, float, float]:
     )
 
 
-def tables(folder: Path, points: int, pairs: int) -> tuple[Path, Path]:
+def tables(folder: Path, times: Floats, pairs: int) -> tuple[Path, Path]:
     """A light curve and velocities of the invented pair as files."""
+    folder.mkdir(parents=True, exist_ok=True)
     random = np.random.default_rng(7)
-    times = times_of(points)
+    points = times.size
     flux = model_light(system_of(VALUES), BAND, times) + 1e-3 * random.standard_normal(points)
     light, rv = folder / "light.csv", folder / "velocities.csv"
     _write(light, "BJD_TDB,flux,flux_error", [2459000 + times, flux, np.full(points, 1e-3)])
