@@ -187,6 +187,8 @@ def _sheet(now: Colours) -> str:
     QToolButton#lead:disabled {{ background: {now.shadow}; color: {now.quiet}; }}
     QStatusBar {{ background: {now.window}; border-top: 1px solid {now.line}; }}
     QStatusBar::item {{ border: 0; }}
+    QStatusBar QToolButton {{ border-color: {now.line}; background: {now.raised}; }}
+    QStatusBar QToolButton:hover {{ border-color: {now.accent}; }}
     QTabWidget::pane {{ border: 1px solid {now.line}; background: {now.raised}; top: -1px; }}
     QTabBar::tab {{ padding: 4px 11px; border: 0; border-bottom: 2px solid transparent;
                     color: {now.quiet}; background: transparent; }}

@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
+import base64
+import re
 from dataclasses import replace
 from functools import partial
 from pathlib import Path
 
 import pytest
+from PySide6.QtGui import QImage
 from PySide6.QtWidgets import QMessageBox
 
 from shadowscale.jobs import results as jobs_results
@@ -325,3 +328,15 @@ def test_another_zip_file_is_refused_in_words(bench: Bench, told: list, tmp_path
     assert "a session packed by shadowscale" in told[0].sentence
     assert bench.desk.session is before
     told.clear()
+
+
+def test_points_of_a_saved_drawing_are_fine_enough_for_print(bench: Bench, tmp_path: Path) -> None:
+    picture = bench.panes["Folded curve"].pair.curve
+    save_figure(picture, tmp_path / "figure.svg")
+
+    text = (tmp_path / "figure.svg").read_text(encoding="utf-8")
+    found = re.findall(r'<image [^>]*?width="(\d+)"[^>]*?base64,([^"]+)"', text)
+    images = [(int(width), QImage.fromData(base64.b64decode(data))) for width, data in found]
+    shown, image = max(images, key=lambda each: each[1].width())
+
+    assert image.width() >= 3 * shown - 3

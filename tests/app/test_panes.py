@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from dataclasses import replace
 
+import numpy as np
 import pytest
 from PySide6.QtCore import QPoint, QPointF, Qt
 from PySide6.QtGui import QWheelEvent
@@ -14,6 +15,7 @@ from PySide6.QtWidgets import QApplication
 from made_up import made_up_session
 from shadowscale.geometry.published import PUBLISHED
 from shadowscale.guide import page
+from shadowscale.view.light_points import light_over_phase
 from shadowscale.view.pairs import pair
 from shadowscale_app import theme
 from shadowscale_app.actions import MENUS, TABLE, keys
@@ -296,3 +298,17 @@ def test_a_pane_behind_catches_up_when_it_comes_to_the_front(bench: Bench) -> No
 
     assert offers_band_i()
     assert pane.session is bench.desk.session
+
+
+def test_each_eclipse_is_as_high_as_its_own_points(bench: Bench) -> None:
+    pairs = bench.panes["Eclipses"].pairs
+    light = light_over_phase(bench.desk.session)[0]
+
+    for eclipse in pairs.values():
+        left, right = eclipse.curve.home_x
+        inside = light.y[light.used & (light.x >= left) & (light.x <= right)]
+        low, high = eclipse.curve.home_y
+        assert low < inside.min()
+        assert high > inside.max()
+        assert high - low < 1.5 * np.ptp(inside)
+    assert pairs["secondary"].curve.home_y[0] > pairs["primary"].curve.home_y[0]  # it is shallower

@@ -25,8 +25,8 @@ from shadowscale_app.naming import named
 NAMED = 6  # files named in the question
 WIDTH = 560  # [pixels]
 WORDS = (
-    "The sheet (for programs, spreadsheets and papers), the curves, figures, a report and the session are "
-    "written into this folder, which is made where it does not exist yet."
+    "The sheet (for programs, spreadsheets and papers), the curves, figures, a report and the session\n"
+    "are written into this folder, which is made where it does not exist yet."
 )
 
 
@@ -46,7 +46,6 @@ class ExportDialog(QDialog):
         self.setWindowTitle("Export sheet")
         self.setMinimumWidth(WIDTH)
         words = QLabel(WORDS)
-        words.setWordWrap(True)
         self.folder = QLineEdit(str(folder))
         named(self.folder, "Folder", "Where everything is written; it is made where it is missing")
         other = QPushButton("Other folder\N{HORIZONTAL ELLIPSIS}")

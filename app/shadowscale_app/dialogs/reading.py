@@ -248,7 +248,8 @@ class ReadingDialog(QDialog):
     def _show_foot(self, found: Preview) -> None:
         lines = [str(problem) for problem in found.problems]
         lines += list(found.notes)
-        lines += [f"line {row.line} is left out: {row.reason}" for row in found.unreadable[:4]]
+        bad = sorted(found.unreadable, key=lambda row: row.line)
+        lines += [f"line {row.line} is left out: {row.reason}" for row in bad[:4]]
         if len(found.unreadable) > 4:
             lines.append(f"and {len(found.unreadable) - 4} more lines are left out")
         self.foot.setText("\n".join(lines))

@@ -86,10 +86,7 @@ class EclipsesPane(Pane):
         contacts = None if markers is None else getattr(markers, part)
         low, high = PLAIN[part] if contacts is None else (contacts[0], contacts[3])
         margin = MARGIN * (high - low) if contacts is not None else 0.0
-        curve = self.pairs[part].curve
-        if curve.home_x != (low - margin, high + margin):
-            curve.home_x = (low - margin, high + margin)
-            curve.setXRange(*curve.home_x, padding=0)
+        self.pairs[part].zoom((low - margin, high + margin))
 
 
 def _geometry_text(session: Session) -> str:

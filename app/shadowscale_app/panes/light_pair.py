@@ -53,6 +53,8 @@ class LightPair(QWidget):
         self._cursor = [_cursor_line(), _cursor_line()]
         self._zero = pg.InfiniteLine(0.0, angle=0)
         self._shifts: tuple[float, ...] = ()
+        self._light: tuple[LightPoints, ...] = ()
+        self._rest: tuple[LightPoints, ...] = ()
         self._folding: tuple[float, float] | None = None
         self._axes: tuple[bool, float | None] | None = None  # in magnitudes; period of the hours
         self._place()
@@ -79,6 +81,15 @@ class LightPair(QWidget):
             self.curve.show_groups(groups, session.markers)
         if names & {"view", "system", "plan"}:
             self._show_axes(session, look)
+
+    def zoom(self, x: tuple[float, float]) -> None:
+        """Show a stretch of phases, as high as its own points reach."""
+        if self.curve.home_x == x:
+            return
+        self.curve.home_x = x
+        self.curve.setXRange(*x, padding=0)
+        self._fit(self.curve, self._light, self._shifts)
+        self._fit(self.rest, self._rest, tuple(0.0 for _ in self._rest))
 
     def point(self, phase: float) -> None:
         """Show the phase under the cursor."""
@@ -122,7 +133,17 @@ class LightPair(QWidget):
         light = _visible(light_over_phase(session, magnitudes=look.magnitudes), look)
         self._shifts = band_shifts(light, magnitudes=look.magnitudes)
         self.points.show_layers(self._layers(light, look, shifts=self._shifts, session=session))
-        _fit_height(self.curve, sensible_range(light, self._shifts))
+        self._light = light
+        self._fit(self.curve, light, self._shifts)
+
+    def _fit(
+        self, picture: Picture, light: tuple[LightPoints, ...], shifts: tuple[float, ...]
+    ) -> None:
+        found = sensible_range(light, shifts, within=self.curve.home_x) or sensible_range(
+            light, shifts
+        )
+        if found is not None:
+            _fit_height(picture, found)
 
     def _show_residuals(self, session: Session, look: Look) -> None:
         computed = READY or (
@@ -134,7 +155,8 @@ class LightPair(QWidget):
             rest = _visible(found, look)
         level = tuple(0.0 for _ in rest)
         self.rest_points.show_layers(self._layers(rest, look, shifts=level, session=session))
-        _fit_height(self.rest, sensible_range(rest, level))
+        self._rest = rest
+        self._fit(self.rest, rest, level)
 
     def _layers(
         self,
@@ -221,9 +243,7 @@ class LightPair(QWidget):
             self.rest.name_axis("bottom", "phase")
 
 
-def _fit_height(picture: Picture, found: tuple[float, float] | None) -> None:
-    if found is None:
-        return
+def _fit_height(picture: Picture, found: tuple[float, float]) -> None:
     old = picture.home_y
     still = STILL * (found[1] - found[0])
     if old is None or max(abs(found[0] - old[0]), abs(found[1] - old[1])) > still:

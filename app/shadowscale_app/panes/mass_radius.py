@@ -11,7 +11,7 @@ from shadowscale_app.panes.pane import Pane
 from shadowscale_app.plots.log_axis import LogAxis
 from shadowscale_app.plots.picture import Picture
 
-OTHERS = "published pairs: rest the mouse on one for its name and paper"
+OTHERS = "stars of published pairs"
 
 
 class MassRadiusPane(Pane):

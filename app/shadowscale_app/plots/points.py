@@ -7,17 +7,19 @@ over them costs the same however many there are.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from math import hypot
 from typing import Any
 
 import numpy as np
 import pyqtgraph as pg
 from pyqtgraph.Qt.internals import PrimitiveArray
 from PySide6.QtCore import QLineF, QPointF, QRectF, Qt
-from PySide6.QtGui import QImage, QPainter, QPen, QPixmap, QTransform
+from PySide6.QtGui import QImage, QPaintEngine, QPainter, QPen, QPixmap, QTransform
 
 from shadowscale_app import theme
 
 MOST_POINTS = 20_000
+FINE, FINEST = 3.0, 6.0  # pixels for one of the screen: in a drawing without pixels; at most
 UNSEEN = 0.2  # pixels that points may move before they are painted anew
 
 
@@ -105,7 +107,7 @@ class Points(pg.GraphicsObject):
         if box is None or not self._layers:
             return
         area = box.mapRectToScene(box.rect())
-        ratio = painter.device().devicePixelRatioF()
+        ratio = _fineness(painter, self.sceneTransform())
         key = (self._version, self.sceneTransform(), area, ratio, theme.colours().dark)
         if self._kept is None or self._kept[0] != key:
             self._kept = (key, self._pixmap(area, ratio))
@@ -136,6 +138,15 @@ class Points(pg.GraphicsObject):
         if rect is None:
             return 0
         return sum(_count(layer, rect) for layer in self._layers)
+
+
+def _fineness(painter: QPainter, to_scene: QTransform) -> float:
+    """Pixels of what is painted on for one of the scene: as many as a screen or a saved figure shows."""
+    engine = painter.paintEngine()
+    if engine is not None and engine.type() == QPaintEngine.Type.SVG:
+        return FINE
+    whole = to_scene.inverted()[0] * painter.deviceTransform()
+    return round(min(max(hypot(whole.m11(), whole.m12()), 0.5), FINEST), 3)
 
 
 def _count(layer: Layer, rect: QRectF) -> int:

@@ -89,11 +89,17 @@ def _light_curves(
 def _contact_system(
     system: System | None, contact: ContactSolution | None, solution: Solution | None
 ) -> System | None:
-    if system is None or contact is None or (solution is not None and contact is solution.contact):
+    if system is None or contact is None or _are_measured(contact, solution):
         return None
     names = ("radius_sum", "radius_ratio", "inclination", "ecosw", "esinw")
     values = {name: contact.values[name] for name in names if name in contact.values}
     return system.with_values(values) if "radius_sum" in values else None
+
+
+def _are_measured(contact: ContactSolution, solution: Solution | None) -> bool:
+    """Whether these are the contacts that the solution measured, read from a file again perhaps."""
+    measured = None if solution is None else solution.contact
+    return measured is not None and (contact is measured or contact.values == measured.values)
 
 
 def _widened(first: float, last: float) -> tuple[float, float]:

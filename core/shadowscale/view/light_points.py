@@ -211,13 +211,20 @@ def _values(
 
 
 def sensible_range(
-    points: tuple[LightPoints, ...], shifts: tuple[float, ...]
+    points: tuple[LightPoints, ...],
+    shifts: tuple[float, ...],
+    *,
+    within: tuple[float, float] | None = None,
 ) -> tuple[float, float] | None:
-    """Lowest and highest value worth showing: of the points that take part, the wildest 0.2 % left out."""
+    """Lowest and highest value worth showing: of the points that take part, the wildest 0.2 % left out.
+
+    `within` a stretch of x only; None where no points are there.
+    """
+    values = [_thinned(each, within) for each in points]
     ends = [
-        tuple(float(end) + shift for end in np.percentile(_thinned(p), (0.1, 99.9)))
-        for p, shift in zip(points, shifts, strict=True)
-        if p.used.any()
+        tuple(float(end) + shift for end in np.percentile(each, (0.1, 99.9)))
+        for each, shift in zip(values, shifts, strict=True)
+        if each.size
     ]
     if not ends:
         return None
@@ -226,9 +233,12 @@ def sensible_range(
     return low - margin, high + margin
 
 
-def _thinned(points: LightPoints) -> Floats:
+def _thinned(points: LightPoints, within: tuple[float, float] | None) -> Floats:
     """Values of the points that take part, evenly thinned where there are very many."""
-    values = points.y[points.used]
+    taken = points.used
+    if within is not None:
+        taken = taken & (points.x >= within[0]) & (points.x <= within[1])
+    values = points.y[taken]
     return values[:: 1 + values.size // ENOUGH]
 
 

@@ -86,11 +86,12 @@ def pair(solution: Solution, first: str, second: str) -> Pair:
 
 def _words(first: str, second: str, rho: float) -> str:
     a, b = symbol(first), symbol(second)
+    number = f"{rho:+.2f}".replace("-", "\N{MINUS SIGN}")
     if abs(rho) < 0.3:
-        return f"{a} and {b} hardly know each other (correlation {rho:+.2f})."
+        return f"{a} and {b} hardly know each other (correlation {number})."
     together = "raised together" if rho > 0 else "one raised, the other lowered"
     gain = 1 / sqrt(1 - rho**2)
     return (
-        f"Weak direction: {a} and {b} {together} (correlation {rho:+.2f}). "
+        f"Weak direction: {a} and {b} {together} (correlation {number}). "
         f"Knowing one beforehand would shrink the other's error {gain:.1f} times."
     )

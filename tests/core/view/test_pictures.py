@@ -193,6 +193,9 @@ def test_contacts_have_a_curve_of_their_own_only_once_they_were_moved() -> None:
     assert contact_curves(session) == ()
     assert contact_system(session) is None
 
+    read_again = replace(session, contact=replace(session.contact))
+    assert contact_system(read_again) is None
+
     contact = contact_solution_of_markers(session)
     moved = replace(session, contact=contact)
 
