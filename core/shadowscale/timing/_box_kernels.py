@@ -74,6 +74,7 @@ def box_spectrum(
             starts = losing[:many]
             if out[i, 2] < PART * best_gain:
                 continue
+            _go_on(to, n)
             gain, place, width = _first_box(to, n, total, narrowest, least, starts)
             out[i, 0] = gain
             out[i, 1] = gain
@@ -165,7 +166,7 @@ def _turned(
 
 @compiled
 def _running_sums(fine: Floats, n: int, to: Floats, starts: Ints) -> tuple[float, int, int]:
-    """Running sums over two cycles of bins of two cells (3, 2 n + 1), written, and the bins with light lost.
+    """Running sums over a cycle of bins of two cells (3, n + 1), written, and the bins with light lost.
 
     Returns the bins' gain, how many are filled, and how many have light lost.
     """
@@ -189,12 +190,17 @@ def _running_sums(fine: Floats, n: int, to: Floats, starts: Ints) -> tuple[float
             occupied += 1
         starts[many] = cell
         many += s < 0
+    return dispersion, occupied, many
+
+
+@compiled
+def _go_on(to: Floats, n: int) -> None:
+    """The running sums over a second cycle, for boxes that begin in the first and end in the next."""
     for row in range(3):
         line = to[row]
         whole, again = line[n], line[n:]
         for cell in range(1, n + 1):
             again[cell] = line[cell] + whole
-    return dispersion, occupied, many
 
 
 @compiled

@@ -116,6 +116,7 @@ def fit_eclipse(
     width: float,
     profile: Profile | None = None,
     first: int = 0,
+    rough: EclipseFit | None = None,
     like: EclipseFit | None = None,
 ) -> EclipseFit:
     """Fit an eclipse near a known place.
@@ -130,19 +131,20 @@ def fit_eclipse(
         Use this one instead of choosing among discs.
     first : int
         The band whose depth the timing carries.
-    like : EclipseFit, optional
-        A trapezoid of nearly the same points, from which to start.
+    rough, like : EclipseFit, optional
+        Of nearly the same points, from which to start: a trapezoid, and one of `profile`.
     """
     used, grid = _thinned(data, width), None
-    rough = _trapezoid(used, middle, width, like)
-    tried = [rough]
+    plain = _trapezoid(used, middle, width, rough)
+    tried = [plain]
     if not isinstance(profile, Trapezoid):
-        used = _thinned(data, float(rough.values[DURATION]))
+        used = _thinned(data, float(plain.values[DURATION]))
         if profile is None:
-            grid = _grid(used, rough)
+            grid = _grid(used, plain)
             tried = _disc_fits(used, grid)
         else:
-            tried = [fit_shape(used, profile, with_profile(rough, profile), symmetric=True)]
+            start = with_profile(plain, profile) if like is None else _least(like.tried).values
+            tried = [fit_shape(used, profile, start, symmetric=True)]
     best = _least(tried)
     free = fit_shape(used, best.profile, best.values)
     scale = max(best.scale, 1.0)
@@ -169,10 +171,10 @@ def _thinned(data: ShapeData, duration: float) -> ShapeData:
     return data if data.phase.size <= 2 * CELLS else merged(data, duration / CELLS)
 
 
-def _trapezoid(data: ShapeData, middle: float, width: float, like: EclipseFit | None) -> ShapeFit:
+def _trapezoid(data: ShapeData, middle: float, width: float, rough: EclipseFit | None) -> ShapeFit:
     """The best trapezoid from several starts, or from one that is nearly right."""
-    if like is not None:
-        starts = [like.tried[0].values]
+    if rough is not None:
+        starts = [rough.tried[0].values]
     else:
         kinds = ((1.0, 0.3), (1.35, 0.7), (1.7, 0.9))
         starts = [_start(data, middle, factor * width, ingress) for factor, ingress in kinds]

@@ -59,7 +59,7 @@ def refined(
         The deepest eclipse first; None where no dip has points enough to be fitted.
     """
     error, settled = np.inf, False
-    profiles = [profile] * len(dips)
+    found: list[SeenEclipse | None] = [None] * len(dips)
     calm = raw.at(~isolated(raw.time, raw.flux, raw.sigma))
     for turn in range(ROUNDS):
         last = settled or turn == ROUNDS - 1
@@ -68,10 +68,12 @@ def refined(
         cycles = (used.time - origin) / period
         points, _ = flattened(used, cycles, dips)
         found = [
-            see_eclipse(points, cycles, dips, number, profile=profiles[number], clip=last)
-            for number in range(len(dips))
-        ]
-        profiles = [one.fit.best.profile if one else profile for one in found]
+            see_eclipse(
+                points, cycles, dips, number,
+                profile=profile, like=before.fit if before else None, clip=last,
+            )
+            for number, before in enumerate(found)
+        ]  # fmt: skip
         seen = [one for one in found if one is not None]
         if not seen:
             return None

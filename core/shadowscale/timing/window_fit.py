@@ -51,6 +51,7 @@ def see_eclipse(
     *,
     smear: float = 0.0,
     profile: Profile | None = None,
+    like: EclipseFit | None = None,
     clip: bool = True,
 ) -> SeenEclipse | None:
     """Fit one of the dips in a window from its box, then again without outliers in one from the fit.
@@ -68,6 +69,8 @@ def see_eclipse(
         Exposure.
     profile : Profile, optional
         Use this shape; the best discs where missing.
+    like : EclipseFit, optional
+        Use its shape, and start from it.
     clip : bool
         Leave outliers out; not while the period is still off, for then the eclipses themselves stray.
 
@@ -82,6 +85,7 @@ def see_eclipse(
     middle, width = dip.middle, 1.3 * dip.width
     kept = np.ones(cycles.size, bool)
     rough = None
+    profile = profile if like is None else like.best.profile
     # Trapezoids place the window and show the outliers; the shape asked for comes last.
     for turn, shape in enumerate((TRAPEZOID, TRAPEZOID, profile, profile)):
         window = _window(near, middle, width, room)
