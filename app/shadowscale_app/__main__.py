@@ -64,7 +64,7 @@ def _open_window(paths: list[str]) -> int:
         )
         return 1
     try:
-        from shadowscale_app.bench import run
+        from shadowscale_app.program import run
     except ImportError as error:
         print(f"shadowscale: {_trouble(str(error))}", file=sys.stderr)
         return 1

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import os
-import sys
 from collections.abc import Callable, Sequence
 from pathlib import Path
 from typing import Any
@@ -21,7 +19,7 @@ from shadowscale_app import theme, trouble
 from shadowscale_app.actions import Actions, keys
 from shadowscale_app.desk import ALL, Change, Desk
 from shadowscale_app.dialogs.trouble import open_trouble
-from shadowscale_app.files import ORGANISATION, PROGRAM, Files, sample_sessions, settings
+from shadowscale_app.files import Files, sample_sessions, settings
 from shadowscale_app.jobs import LiveLane, LongLane
 from shadowscale_app.journals import Journals
 from shadowscale_app.live import Live
@@ -296,25 +294,3 @@ class Bench(QMainWindow):
 
     def _trouble(self, found: trouble.Trouble) -> None:
         open_trouble(found, self)
-
-
-def run(paths: Sequence[str]) -> int:
-    """Open the window; the process's exit status."""
-    application = QApplication.instance() or QApplication(sys.argv[:1])
-    assert isinstance(application, QApplication)
-    application.setApplicationName(PROGRAM)
-    application.setOrganizationName(ORGANISATION)
-    application.setProperty(theme.CHOICE, settings().value(theme.CHOICE, theme.FOLLOW))
-    trouble.catch_everything()
-    bench = Bench()
-    theme.dress(application)  # now: widgets put into others that are dressed are dressed each time
-    bench.show()
-    QTimer.singleShot(0, bench, bench.warmer.start)
-    QTimer.singleShot(0, bench, bench.journals.offer_recovery)
-    if paths:
-        QTimer.singleShot(0, bench, lambda: bench.open_paths(paths))
-    status = application.exec()
-    if bench.warmer.busy or bench.files.errands.left_behind:
-        # a compiler and a reader cannot be interrupted, and all that matters is saved
-        os._exit(status)
-    return status

@@ -15,7 +15,7 @@ from PySide6.QtCore import QPoint, QTimer
 from PySide6.QtWidgets import QApplication, QMessageBox, QPushButton, QWidget
 
 from shadowscale.view.follow import FOLLOWED
-from shadowscale_app import bench as program
+from shadowscale_app import program
 
 EVERY_MS = 150
 

@@ -23,9 +23,9 @@ sys.exit(main(sys.argv[1:]))
 LOADER = "libEGL.so.1: cannot open shared object file: No such file or directory"
 ASKED = """
 import sys, types
-bench = types.ModuleType("shadowscale_app.bench")
-bench.run = lambda paths: print("window:", paths) or 0
-sys.modules["shadowscale_app.bench"] = bench
+program = types.ModuleType("shadowscale_app.program")
+program.run = lambda paths: print("window:", paths) or 0
+sys.modules["shadowscale_app.program"] = program
 from shadowscale_app.__main__ import main
 sys.exit(main(sys.argv[1:]))
 """

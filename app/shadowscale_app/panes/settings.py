@@ -42,6 +42,7 @@ from shadowscale_app.naming import named
 from shadowscale_app.panes.pane import Pane
 
 THIRD = ("free", "none", "held")
+LABEL = 116  # [pixels], the widest of the words beside the fields
 
 
 class SettingsPane(Pane):
@@ -112,7 +113,8 @@ class SettingsPane(Pane):
     def _make_model_group(self) -> None:
         group = QGroupBox("Model")
         form = QFormLayout(group)
-        form.addRow(
+        _add(
+            form,
             "Limb darkening",
             self._box(
                 "law",
@@ -121,7 +123,8 @@ class SettingsPane(Pane):
                 lambda plan, text: replace(plan, law=text),
             ),
         )
-        form.addRow(
+        _add(
+            form,
             "Orbit",
             self._box(
                 "orbit",
@@ -131,7 +134,8 @@ class SettingsPane(Pane):
                 ORBIT_WORDS,
             ),
         )
-        form.addRow(
+        _add(
+            form,
             "Light level",
             self._box(
                 "levels",
@@ -141,7 +145,8 @@ class SettingsPane(Pane):
                 LEVEL_WORDS,
             ),
         )
-        form.addRow(
+        _add(
+            form,
             "Light time",
             self._box(
                 "light_time",
@@ -162,14 +167,15 @@ class SettingsPane(Pane):
         self.exposure.valueChanged.connect(
             lambda value: self._ask("Set exposure", replace(self.session.plan, exposure=value))
         )
-        form.addRow("Exposure", self.exposure)
+        _add(form, "Exposure", self.exposure)
         self._column.addWidget(group)
 
     def _make_effects_group(self) -> None:
         group = QGroupBox("Small effects")
         form = QFormLayout(group)
         for effect in EFFECTS:
-            form.addRow(
+            _add(
+                form,
                 effect.capitalize(),
                 self._box(
                     effect,
@@ -188,14 +194,14 @@ class SettingsPane(Pane):
             field.setPlaceholderText("such as 6350 \N{PLUS-MINUS SIGN} 110")
             named(field, f"Temperature of star {name[-1]}", tip)
             field.editingFinished.connect(partial(self._take_teff, name, field))
-            form.addRow(f"Temperature {name[-1]} [K]", field)
+            _add(form, f"Temperature {name[-1]} [K]", field)
         named(
             self.table,
             "Limb-darkening table",
             "A file of published limb-darkening coefficients; without one a grey atmosphere is taken.",
         )
         self.table.clicked.connect(self._choose_table)
-        form.addRow("Limb table", self.table)
+        _add(form, "Limb table", self.table)
         self._column.addWidget(group)
 
     def _take_teff(self, name: str, field: QLineEdit) -> None:
@@ -228,7 +234,6 @@ class SettingsPane(Pane):
             self.waves.pop(band, None)
         self._bands = bands
         for band in bands:
-            words = QLabel(f"Third light in {band}")
             tip = (
                 QUANTITIES["third_light"].effect
                 + " Third light and inclination are hard to tell apart."
@@ -239,7 +244,7 @@ class SettingsPane(Pane):
                 tip,
                 partial(self._with_third_light, band),
             )
-            self._band_form.addRow(words, box)
+            _add(self._band_form, f"Third light in {band}", box)
             wave = QDoubleSpinBox()
             self._calm.keep(wave)
             wave.setRange(0.0, 30000.0)
@@ -254,7 +259,7 @@ class SettingsPane(Pane):
             )
             wave.valueChanged.connect(partial(self._take_wavelength, band))
             self.waves[band] = wave
-            self._band_form.addRow(f"Wavelength of {band}", wave)
+            _add(self._band_form, f"Wavelength of {band}", wave)
 
     def _take_wavelength(self, band: str, value: float) -> None:
         self._ask(f"Set wavelength of {band}", with_wavelength(self.session.plan, band, value))
@@ -295,6 +300,15 @@ class SettingsPane(Pane):
     def _ask(self, label: str, plan: Plan) -> None:
         if not self._filling and plan != self.session.plan:
             self.wanted.emit(Change(label, replace(self.session, plan=plan)))
+
+
+def _add(form: QFormLayout, words: str, field: QWidget) -> None:
+    """A line whose words are as wide as all others', beside the middle of the field."""
+    label = QLabel(words)
+    label.setMinimumWidth(LABEL)
+    label.setMinimumHeight(field.sizeHint().height())
+    label.setBuddy(field)
+    form.addRow(label, field)
 
 
 def _with_effect(effect: str, plan: Plan, state: str) -> Plan:
