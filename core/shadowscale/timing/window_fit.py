@@ -95,7 +95,9 @@ def see_eclipse(
             return None
         data = _shape_data(points, near, rows, smear)
         box = min(width / 1.3, 1.3 * dip.width)
-        fit = fit_eclipse(data, middle=middle, width=box, profile=shape, first=first, like=rough)
+        fit = fit_eclipse(
+            data, middle=middle, width=box, profile=shape, first=first, rough=rough, like=like
+        )
         if shape is TRAPEZOID:
             rough = fit
         residuals = _residuals(points, near, inside, fit, smear)
