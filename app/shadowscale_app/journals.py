@@ -6,7 +6,7 @@ import time
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from PySide6.QtCore import QDateTime, QLocale, QObject, QStandardPaths, QTimer
+from PySide6.QtCore import QDateTime, QObject, QStandardPaths, QTimer
 from PySide6.QtWidgets import QMessageBox, QWidget
 
 from shadowscale.session.session import Session
@@ -71,7 +71,7 @@ class Journals(QObject):
         buttons = QMessageBox.StandardButton
         for item in recoverable(journal_folder()):
             moment = QDateTime.fromSecsSinceEpoch(int(item.saved_at))
-            when = QLocale().toString(moment, QLocale.FormatType.ShortFormat)
+            when = moment.toString("yyyy-MM-dd HH:mm")
             answer = QMessageBox.question(
                 self._window,
                 "Recover work?",

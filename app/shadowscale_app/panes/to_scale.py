@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt, QTimer
-from PySide6.QtWidgets import QHBoxLayout, QLabel, QSlider, QToolButton, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QHBoxLayout, QLabel, QSlider, QVBoxLayout, QWidget
 
 from shadowscale.view.curves import contact_system
 from shadowscale.view.scene import scene
@@ -11,6 +11,7 @@ from shadowscale.view.shown import shown_estimates
 from shadowscale.view.written import phase_text
 from shadowscale_app.naming import named
 from shadowscale_app.panes.pane import Pane
+from shadowscale_app.panes.play_button import PlayButton
 from shadowscale_app.plots.sky import Sky
 from shadowscale_app.warm import READY
 
@@ -39,9 +40,7 @@ class ToScalePane(Pane):
             "Phase of the drawing",
             "Where in the orbit the stars are drawn; 0 is mid primary eclipse",
         )
-        self.play = QToolButton()
-        self.play.setText("\N{BLACK RIGHT-POINTING TRIANGLE}")
-        self.play.setCheckable(True)
+        self.play = PlayButton()
         named(self.play, "Play", "Let the stars go round")
         self.words = QLabel("")
         self.words.setObjectName("quiet")
@@ -98,7 +97,6 @@ class ToScalePane(Pane):
         self.pointed.emit(self.phase)
 
     def _played(self, on: bool) -> None:
-        self.play.setText("\N{DOUBLE VERTICAL BAR}" if on else "\N{BLACK RIGHT-POINTING TRIANGLE}")
         if on:
             self._timer.start()
         else:
