@@ -248,10 +248,10 @@ class ReadingDialog(QDialog):
     def _show_foot(self, found: Preview) -> None:
         lines = [str(problem) for problem in found.problems]
         lines += list(found.notes)
-        bad = sorted(found.unreadable, key=lambda row: row.line)
+        bad = sorted((*found.unreadable, *found.set_aside), key=lambda row: row.line)
         lines += [f"line {row.line} is left out: {row.reason}" for row in bad[:4]]
-        if len(found.unreadable) > 4:
-            lines.append(f"and {len(found.unreadable) - 4} more lines are left out")
+        if len(bad) > 4:
+            lines.append(f"and {len(bad) - 4} more lines are left out")
         self.foot.setText("\n".join(lines))
         usable = not found.problems and bool(found.guesses)
         self.buttons.button(QDialogButtonBox.StandardButton.Open).setEnabled(usable)

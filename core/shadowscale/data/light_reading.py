@@ -13,6 +13,7 @@ from shadowscale.data.files import FilePath
 from shadowscale.data.levels import night_numbers, scaled, with_errors
 from shadowscale.data.light_file import MINIMUM_ROWS, LightPart, light_part
 from shadowscale.data.photometry import Floats, Ints, Photometry
+from shadowscale.data.raw_table import RawTable
 from shadowscale.data.rows import Bools, Reasons, path_list, per_file, read_all
 
 
@@ -57,10 +58,17 @@ def read_photometry(
     bands = (band,) * len(names) if band is None or isinstance(band, str) else tuple(band)
     if len(bands) != len(names):
         raise ValueError(f"band: {len(names)} files but {len(bands)} bands")
+    return photometry_of(tables, chosen, bands)
+
+
+def photometry_of(
+    tables: Sequence[RawTable], columns: Sequence[Chosen], bands: Sequence[str | None]
+) -> Photometry:
+    """As `read_photometry`, of tables that were read before; columns and band of each."""
     reasons = Reasons()
     parts = [
-        light_part(table, columns, band, reasons)
-        for table, columns, band in zip(tables, chosen, bands)
+        light_part(table, chosen, band, reasons)
+        for table, chosen, band in zip(tables, columns, bands, strict=True)
     ]
     return _joined(parts, reasons)
 

@@ -12,6 +12,7 @@ from shadowscale.data.columns import NOTHING_CHOSEN, Chosen, Guess
 from shadowscale.data.files import READERS, FilePath, file_bytes, reader_for
 from shadowscale.data.light_columns import photometry_columns
 from shadowscale.data.light_file import bands_of_head
+from shadowscale.data.light_reading import photometry_of
 from shadowscale.data.looks import velocities_by_look
 from shadowscale.data.photometry import UnreadableRow
 from shadowscale.data.raw_table import RawTable
@@ -50,6 +51,8 @@ class Preview:
         True where only the head was read, so that `row_count` is a guess.
     unreadable : tuple of UnreadableRow
         Among the rows looked at.
+    set_aside : tuple of UnreadableRow
+        Readable rows of photometry, among those looked at, that will take no part.
     problems : tuple of Problem
         Why the file cannot be read like this.
     """
@@ -66,6 +69,7 @@ class Preview:
     row_count: int
     estimated: bool
     unreadable: tuple[UnreadableRow, ...]
+    set_aside: tuple[UnreadableRow, ...]
     notes: tuple[str, ...]
     problems: tuple[Problem, ...]
 
@@ -115,11 +119,14 @@ def preview_of(
     clock: Clock | None = None
     bands: tuple[str, ...] = ()
     unreadable = table.unreadable
+    aside: tuple[UnreadableRow, ...] = ()
     if guesses:
         clock = clock_of(table, roles["time"], columns)
         keep, bad, problems = _split(table, roles, clock)
         unreadable = (*unreadable, *bad)
-        bands = _bands(table, keep, roles, band) if kind == PHOTOMETRY else ()
+        if kind == PHOTOMETRY:
+            bands = _bands(table, keep, roles, band)
+            aside = _set_aside(table, columns, band)
     count = table.rows if table.estimated_rows is None else table.estimated_rows
     return Preview(
         path=table.path,
@@ -134,6 +141,7 @@ def preview_of(
         row_count=count,
         estimated=table.estimated_rows is not None,
         unreadable=unreadable,
+        set_aside=aside,
         notes=(*table.notes, *([clock.note] if clock and clock.note else [])),
         problems=problems,
     )
@@ -212,6 +220,18 @@ def _bands(
         return bands_of_head(table, keep, roles=roles, told=band)
     except InputError:
         return ()
+
+
+def _set_aside(table: RawTable, columns: Chosen, band: str | None) -> tuple[UnreadableRow, ...]:
+    """Rows without a measurement, flagged ones, and the like, as a reading of these rows has it."""
+    try:
+        read = photometry_of([table], [columns], [band])
+    except (InputError, UsageError):
+        return ()
+    return tuple(
+        UnreadableRow(table.path, int(read.line[row]), read.reasons[read.why[row]])
+        for row in np.flatnonzero(read.why).tolist()
+    )
 
 
 def _first_rows(table: RawTable) -> tuple[tuple[str, ...], ...]:

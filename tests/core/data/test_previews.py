@@ -32,6 +32,17 @@ def test_a_short_file(tmp_path: Path) -> None:
     assert seen.form == "text separated by commas"
 
 
+def test_rows_that_will_take_no_part_are_listed(tmp_path: Path) -> None:
+    lines = ["HJD,mag,err", *rows(), "2459000.9,,0.01", "2459000.91,11.2,-0.01"]
+    path = written(tmp_path, "a.csv", lines)
+    seen, whole = preview(path), read_photometry(path)
+    listed = [(row.line, row.reason) for row in seen.set_aside]
+    assert listed == [
+        (int(whole.line[row]), whole.reasons[whole.why[row]]) for row in np.flatnonzero(whole.why)
+    ]
+    assert [line for line, _ in listed] == [len(lines) - 1, len(lines)]
+
+
 def test_problems_are_shown_and_the_user_settles_them(tmp_path: Path) -> None:
     time, magnitude, _ = light()
     lines = ["HJD,B,V", *(f"{t:.5f},{m + 1:.3f},{m:.3f}" for t, m in zip(time, magnitude))]
