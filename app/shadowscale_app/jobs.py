@@ -132,7 +132,7 @@ class LongLane(QObject):
     def __init__(self, parent: QObject | None = None) -> None:
         super().__init__(parent)
         self._thread: threading.Thread | None = None
-        self._wanted = threading.Event()
+        self._wanted, self._closing = threading.Event(), threading.Event()
         self._number = 0
         self._arrived.connect(self._take)
 
@@ -155,12 +155,12 @@ class LongLane(QObject):
         return True
 
     def stop(self) -> None:
-        """Ask the job to end; it does at its next report."""
+        """Ask the job to end; it does at its next report, or goes on with what it has until asked again."""
         self._wanted.set()
 
     def close(self) -> None:
         """Stop and end the thread; called before the application goes."""
-        self.stop()
+        self._closing.set()
         if self._thread is not None:
             self._thread.join()
             self._thread = None
@@ -169,8 +169,14 @@ class LongLane(QObject):
         """Let events pass until no job runs; whether it came to that."""
         return _wait(lambda: not self.running, seconds)
 
+    def _stopping(self) -> bool:
+        """Whether the job is to stop now: once for each time it was asked, always while closing."""
+        asked = self._wanted.is_set()
+        self._wanted.clear()
+        return asked or self._closing.is_set()
+
     def _run(self, number: int, work: Work) -> None:
-        self._arrived.emit(_answer(number, work, _Reporting(self, self._wanted)))
+        self._arrived.emit(_answer(number, work, _Reporting(self, self._stopping)))
 
     def _take(self, answer: Answer) -> None:
         if self._thread is not None:
@@ -197,13 +203,13 @@ class _Newest:
 class _Reporting:
     """Passes progress on with the time left: at most ten times a second, but always where it says something new."""
 
-    def __init__(self, lane: LongLane, wanted: threading.Event) -> None:
-        self._lane, self._wanted = lane, wanted
+    def __init__(self, lane: LongLane, stopping: Callable[[], bool]) -> None:
+        self._lane, self._stopping = lane, stopping
         self._began = time.monotonic()
         self._told, self._words = 0.0, ""
 
     def report(self, fraction: float, words: str) -> None:
-        if self._wanted.is_set():
+        if self._stopping():
             raise Stopped
         now = time.monotonic()
         if now - self._told < 0.1 and fraction < 1.0 and words == self._words:

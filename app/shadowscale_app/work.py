@@ -75,7 +75,7 @@ class WorkDesk(QObject):
             from shadowscale.timing.period import search_period
 
             assert photometry is not None
-            return search_period(photometry, progress=progress)
+            return search_period(photometry, progress=progress, keep=True)
 
         self._start("searching the period", work, self._take_period)
 

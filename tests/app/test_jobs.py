@@ -133,6 +133,56 @@ def test_stop_ends_a_long_job_without_an_answer(long: LongLane) -> None:
     assert (answers, stopped) == ([], [True])
 
 
+def test_work_that_keeps_what_it_has_goes_on_until_it_is_stopped_again(long: LongLane) -> None:
+    answers: list[Answer] = []
+    long.answered.connect(answers.append)
+    told = threading.Event()
+    stops: list[int] = []
+
+    def work(progress: Progress) -> str:
+        for stop in range(2):
+            try:
+                while True:
+                    told.set()
+                    progress.report(0.1, "searching")
+                    time.sleep(0.001)
+            except Stopped:
+                stops.append(stop)
+        return "what there was"
+
+    long.start(work)
+    for count in (1, 2):
+        told.clear()
+        assert told.wait(10)
+        long.stop()
+        until = time.monotonic() + 10
+        while len(stops) < count and time.monotonic() < until:
+            time.sleep(0.001)
+
+    assert long.wait_until_idle()
+    assert stops == [0, 1]
+    assert [answer.result for answer in answers] == ["what there was"]
+
+
+def test_closing_ends_work_that_would_go_on(qapp: QApplication) -> None:
+    lane, running = LongLane(), threading.Event()
+
+    def work(progress: Progress) -> None:
+        for _ in range(3):  # it keeps what it has after the first
+            try:
+                while True:
+                    running.set()
+                    progress.report(0.1, "searching")
+            except Stopped:
+                continue
+
+    lane.start(work)
+    assert running.wait(10)
+    lane.close()
+
+    assert not lane.running
+
+
 def test_new_words_are_told_at_once_and_repeated_ones_seldom(long: LongLane) -> None:
     told: list[str] = []
     long.progressed.connect(lambda _fraction, words, _left: told.append(words))

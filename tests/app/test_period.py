@@ -2,12 +2,18 @@
 
 from __future__ import annotations
 
+import time
 from dataclasses import replace
 
 import pytest
+from PySide6.QtCore import Qt
+from PySide6.QtTest import QTest
+from PySide6.QtWidgets import QApplication
 
 from made_up import EPOCH, PERIOD, made_up_session
+from shadowscale.errors import Stopped
 from shadowscale.fit.plan import Plan
+from shadowscale.progress import Progress
 from shadowscale.timing import period as period_module
 from shadowscale.timing.results import PeriodCandidate, PeriodSearch
 from shadowscale_app.bench import NO_PERIOD, Bench
@@ -98,3 +104,33 @@ def test_nonsense_for_a_period_is_refused_in_words(loaded: Bench) -> None:
     pane.take.click()
 
     assert loaded.status.words.text() == "the period must be positive, found -2"
+
+
+def test_a_stopped_search_keeps_what_it_has_and_says_what_it_left(
+    loaded: Bench, search: PeriodSearch, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    left = "stopped: no period from 2.5 to 30 d was searched"
+
+    def endless(_photometry: object, *, progress: Progress, keep: bool) -> PeriodSearch:
+        try:
+            while True:
+                progress.report(0.4, "searching periods")
+                time.sleep(0.001)
+        except Stopped:
+            assert keep
+        progress.report(0.9, "measuring the eclipses")
+        return replace(search, words=left, left=(2.5, 30.0))
+
+    monkeypatch.setattr(period_module, "search_period", endless)
+    loaded.actions_table.by_name["period"].trigger()
+    until = time.monotonic() + 10
+    while loaded.status.doing.text() != "searching periods" and time.monotonic() < until:
+        QApplication.processEvents()
+
+    QTest.mouseClick(loaded.status.stop, Qt.MouseButton.LeftButton)
+
+    assert loaded.long_lane.wait_until_idle()
+    assert loaded.desk.session.plan.period == PERIOD
+    assert loaded.panes["Period"].table.rowCount() == 2
+    assert loaded.panes["Period"].words.text() == left
+    assert loaded.status.words.text().lower() == left
