@@ -16,6 +16,7 @@ from PySide6.QtWidgets import QApplication, QMessageBox, QPushButton, QWidget
 
 from shadowscale.view.follow import FOLLOWED
 from shadowscale_app import program
+from shadowscale_app.warm import READY
 
 EVERY_MS = 150
 
@@ -44,7 +45,7 @@ class Watched(program.Bench):
         solution, contact = session.solution, session.contact
         active = QApplication.activeModalWidget()
         return {
-            "ready": bool(program.READY),
+            "ready": bool(READY),
             "busy": self.work.running or self.files.errands.running or bool(self.status.live.text()),
             "samples": {b.accessibleName(): _middle(b) for b in self.start.findChildren(QPushButton)},
             "markers": self._markers(),

@@ -27,6 +27,7 @@ from shadowscale_app.warm import READY
 
 LIGHT = frozenset({"photometry", "system", "solution", "view", "plan", "exclusions"})
 STILL = 0.02  # of a picture's height: less does not move its axis
+EMPTY = 0.01  # to either side of zero, while there are no residuals
 REST_HEIGHT = 78  # pixels of the residuals with their axis, at least
 MOST_CROSSES = 200  # more of them are drawn small and faint
 MOST_BARS, PLAIN_SIZE, CROWDED_SIZE = 1200, 5.0, 3.2  # of one band; pixels
@@ -120,6 +121,7 @@ class LightPair(QWidget):
         self.curve.getAxis("bottom").setHeight(6)
         self.rest.link_x(self.curve)
         self.rest.setMinimumHeight(REST_HEIGHT)
+        self.rest.setYRange(-EMPTY, EMPTY)
         self.curve.addItem(self.points)
         self.rest.addItem(self.rest_points)
         self.rest.addItem(self._zero, ignoreBounds=True)
