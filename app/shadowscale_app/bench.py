@@ -228,6 +228,7 @@ class Bench(QMainWindow):
 
     def _asked(self, what: str, argument: Any) -> None:
         calls: dict[str, Callable[[], object]] = {
+            "velocities": self.opening.ask_velocities,
             "search period": self.work.search_period,
             "solve": self.work.solve,
             "fold": lambda: self.work.fold(*argument),

@@ -39,7 +39,9 @@ def test_the_stars_card_shows_masses_and_radii(bench: Bench) -> None:
         assert value in text
 
 
-def test_without_velocities_no_masses_are_shown(bench: Bench) -> None:
+def test_without_velocities_no_masses_are_shown(
+    bench: Bench, monkeypatch: pytest.MonkeyPatch
+) -> None:
     from PySide6.QtWidgets import QLabel
 
     bench.desk.begin(made_up_session(velocities=False))
@@ -53,6 +55,11 @@ def test_without_velocities_no_masses_are_shown(bench: Bench) -> None:
     assert "mass" not in text
     assert "0.15100" in text
     assert bench.panes["Velocities"].nothing.isVisibleTo(bench.panes["Velocities"])
+    asked: list[bool] = []
+    monkeypatch.setattr(bench.opening, "ask_velocities", lambda: asked.append(True))
+    bench.bring("Velocities")
+    QTest.mouseClick(bench.panes["Velocities"].nothing.button, Qt.MouseButton.LeftButton)
+    assert asked == [True]
 
 
 def test_the_drawing_follows_the_phase_under_the_cursor(bench: Bench) -> None:

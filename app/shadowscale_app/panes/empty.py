@@ -7,25 +7,23 @@ from PySide6.QtWidgets import QLabel, QPushButton, QStackedWidget, QVBoxLayout, 
 
 from shadowscale_app.naming import named
 
+SOLVING = "Finds period, radii and, with velocities, masses from the data alone"
+
 
 class Invitation(QWidget):
     """Signal `accepted()`."""
 
     accepted = Signal()
 
-    def __init__(self, words: str, button: str) -> None:
+    def __init__(self, words: str, button: str, tip: str = SOLVING) -> None:
         super().__init__()
-        self.words = QLabel(words)
+        self.words = QLabel()
         self.words.setObjectName("quiet")
         self.words.setAlignment(Qt.AlignmentFlag.AlignCenter)
         self.words.setWordWrap(True)
-        self.button = QPushButton(button)
+        self.button = QPushButton()
         self.button.setObjectName("lead")
-        named(
-            self.button,
-            button,
-            "Finds period, radii and, with velocities, masses from the data alone",
-        )
+        self.say(words, button, tip)
         self.button.clicked.connect(self.accepted)
         layout = QVBoxLayout(self)
         layout.setSpacing(10)
@@ -33,6 +31,12 @@ class Invitation(QWidget):
         layout.addWidget(self.words)
         layout.addWidget(self.button, 0, Qt.AlignmentFlag.AlignHCenter)
         layout.addStretch(1)
+
+    def say(self, words: str, button: str, tip: str = SOLVING) -> None:
+        """Invite to something else."""
+        self.words.setText(words)
+        self.button.setText(button)
+        named(self.button, button, tip)
 
 
 class Inviting(QStackedWidget):

@@ -27,6 +27,7 @@ from shadowscale.view.velocity_points import VelocityPoints, velocities_over_pha
 from shadowscale_app import theme
 from shadowscale_app.desk import Change
 from shadowscale_app.naming import named
+from shadowscale_app.panes.empty import Invitation
 from shadowscale_app.panes.pane import Pane
 from shadowscale_app.plots.few_axis import FewAxis
 from shadowscale_app.plots.picture import Picture
@@ -36,9 +37,14 @@ from shadowscale_app.warm import READY
 SHAPES = {1: "o", 2: "s"}
 DASHES = {1: Qt.PenStyle.SolidLine, 2: Qt.PenStyle.DashLine}
 WATCHED = frozenset({"velocities", "system", "solution", "plan"})
-NOTHING = "No velocities. Open a table of them to weigh the stars: masses need K1 and K2."
+NO_TABLE = (
+    "No velocities. Add a table of them to weigh the stars: masses need K1 and K2.",
+    "Add velocities\N{HORIZONTAL ELLIPSIS}",
+    "A table of radial velocities of one star or both; a preview shows how it is read",
+)
 UNFOLDED = (
-    "Velocities appear here over the phase of the orbit once the period is known. Solving finds it."
+    "Velocities appear here over the phase of the orbit once the period is known.",
+    "Solve",
 )
 
 ONE_LINE_TIP = (
@@ -73,10 +79,8 @@ class VelocitiesPane(Pane):
         self._zero = pg.InfiniteLine(0.0, angle=0)
         self._cursor = pg.InfiniteLine(0.0, angle=90)
         self._cursor.setVisible(False)
-        self.nothing = QLabel(NOTHING)
-        self.nothing.setObjectName("quiet")
-        self.nothing.setAlignment(Qt.AlignmentFlag.AlignCenter)
-        self.nothing.setWordWrap(True)
+        self.nothing = Invitation(*NO_TABLE)
+        self.nothing.accepted.connect(self._accept)
         self.numbers = QLabel("")
         self.numbers.setFont(theme.small_font())
         self.numbers.setWordWrap(True)
@@ -99,7 +103,7 @@ class VelocitiesPane(Pane):
             return
         found = velocities_over_phase(self.session)
         self.nothing.setVisible(not found)
-        self.nothing.setText(NOTHING if self.session.velocities is None else UNFOLDED)
+        self.nothing.say(*(NO_TABLE if self.session.velocities is None else UNFOLDED))
         self.split.setVisible(bool(found))
         self.points.show_layers(_layers(found, residual=False))
         self.rest_points.show_layers(_layers(found, residual=True))
@@ -112,6 +116,9 @@ class VelocitiesPane(Pane):
                 for sign, value, error in velocity_cells(self.session)
             )
         )
+
+    def _accept(self) -> None:
+        self.asked.emit("velocities" if self.session.velocities is None else "solve", None)
 
     def point(self, phase: float) -> None:
         """Show the phase under the cursor."""
