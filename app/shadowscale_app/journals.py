@@ -39,8 +39,10 @@ class Journals(QObject):
 
     def write(self) -> None:
         """Write the session beside, so that a crash costs little."""
-        if not self._desk.unsaved or self._errands.running:
-            return
+        if self._desk.unsaved and not self._errands.running:
+            self._write()
+
+    def _write(self) -> None:
         from shadowscale.session.journal import Journal
 
         if self._journal is None:
@@ -65,11 +67,20 @@ class Journals(QObject):
             self._journal.close()
 
     def offer_recovery(self) -> None:
-        """Offer what a crash left behind."""
-        from shadowscale.session.journal import discard, recoverable
+        """Look for what a crash left behind, and offer it."""
+
+        def look() -> tuple[Recoverable, ...]:
+            from shadowscale.session.journal import recoverable
+
+            return recoverable(journal_folder())
+
+        self._errands.run("looking for lost work", look, self._offer, quiet=True)
+
+    def _offer(self, found: tuple[Recoverable, ...]) -> None:
+        from shadowscale.session.journal import discard
 
         buttons = QMessageBox.StandardButton
-        for item in recoverable(journal_folder()):
+        for item in found:
             moment = QDateTime.fromSecsSinceEpoch(int(item.saved_at))
             when = moment.toString("yyyy-MM-dd HH:mm")
             answer = QMessageBox.question(
@@ -91,10 +102,10 @@ class Journals(QObject):
 
         def take(session: Session) -> None:
             self._desk.begin(session, Path(item.path) if item.path else None, saved=False)
-            self.write()
-            self._errands.run(
+            self._write()
+            self._errands.run(  # once it is written anew
                 "tidying up", lambda: discard(item), quiet=True
-            )  # once it is written anew
+            )
 
         self._errands.read(f"recovering {item.name}", lambda: recover(item), take)
 
