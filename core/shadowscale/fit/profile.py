@@ -4,12 +4,15 @@ In partial eclipses k, inclination, limb darkening and third light move together
 is far from straight, and the curvature at the minimum tells too little (or too much). So k is held at
 values on both sides, the rest fitted again, until chi-squared is one above the minimum; the points
 found there give the 68.3 % limits along the valley (Wilks 1938; Pawitan 2001, In All Likelihood).
+Near the inclination where the smaller disc just fits into the larger there are two valleys, with and
+without a flat bottom, each hidden from the other by the kink between them: both are followed.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
+from math import acos, cos, degrees, log, radians
 
 import numpy as np
 from numpy.typing import NDArray
@@ -28,6 +31,8 @@ MOST_TRIES = 9
 PROBE, MOST_PROBES = 1.5, 8  # factors of k that a plateau is followed by
 TOLD = 2.0  # rise of chi-squared from which on the data tell something
 NARROW = 0.4  # in the root of the rise: near enough to interpolate
+NEAR_TANGENCY = 1.0  # in the logarithm of cos i
+ACROSS = 1.4  # factor of cos i of the tangency at which the other valley is looked for
 STRAIGHT = 0.15  # relative departure of both limits from the linear sigma that is left alone
 
 
@@ -113,7 +118,8 @@ def _limit(
         if not lower < wanted < upper:
             step = (inner.step + step) / 2
             continue
-        fitted = fit(_held(best, inner.x + (step - inner.step) * direction, at=at, wanted=wanted))
+        held = _held(best, inner.x + (step - inner.step) * direction, at=at, wanted=wanted)
+        fitted = _lower(held, fit)
         rise = fitted.chi2 - best.chi2
         if rise < lowest.chi2 - best.chi2:
             lowest = fitted
@@ -137,7 +143,7 @@ def _beyond(
         wanted = float(place.x[at]) * PROBE**sign
         if not lower < wanted < upper:
             break
-        fitted = fit(_held(best, place.x, at=at, wanted=wanted))
+        fitted = _lower(_held(best, place.x, at=at, wanted=wanted), fit)
         rise = fitted.chi2 - best.chi2
         if rise > TOLD:
             break
@@ -161,6 +167,25 @@ def _held(best: Fitted, start: Floats, *, at: int, wanted: float) -> System:
     values = vector.unpack(np.clip(start, *vector.bounds))
     free = tuple(name for name in best.system.free if name != NAME)
     return replace(best.system.with_values(values), free=free)
+
+
+def _lower(held: System, fit: Callable[[System], Fitted]) -> Fitted:
+    """The fit from where `held` stands, or from beyond the inner tangency if that is lower."""
+    fitted = fit(held)
+    if "inclination" not in held.free:
+        return fitted
+    values = fitted.system.values
+    ratio, ecc2 = values["radius_ratio"], values["ecosw"] ** 2 + values["esinw"] ** 2
+    distance = (1 - ecc2) / (1 + values["esinw"])
+    tangency = values["radius_sum"] * abs(1 - ratio) / (1 + ratio) / distance
+    cosine = cos(radians(values["inclination"]))
+    if not (tangency > 0.0 and abs(log(max(cosine, 1e-9) / tangency)) < NEAR_TANGENCY):
+        return fitted
+    beyond = tangency * (ACROSS if cosine < tangency else 1 / ACROSS)
+    if beyond >= 1.0:
+        return fitted
+    other = fit(fitted.system.with_values({"inclination": degrees(acos(beyond))}))
+    return min(fitted, other, key=lambda each: each.chi2)
 
 
 def _between(inner: _Place, outer: _Place) -> _Place:
