@@ -57,7 +57,7 @@ def box_spectrum(
     folded = np.empty((most_parts, 4 * top, 3))
     centres = np.empty(most_parts)
     fine = np.empty((2 * top, 3))
-    to = np.empty((3, 2 * top + 1))
+    to = np.empty((4, 2 * top + 1))
     losing = np.empty(top + 1, np.int64)
     total = weight.sum()
     first = 0
@@ -75,6 +75,8 @@ def box_spectrum(
             if out[i, 2] < PART * best_gain:
                 continue
             _go_on(to, n)
+            if _most_gain(to, n, _widest(n, narrowest), total) < PART * best_gain:
+                continue
             gain, place, width = _first_box(to, n, total, narrowest, least, starts)
             out[i, 0] = gain
             out[i, 1] = gain
@@ -166,11 +168,12 @@ def _turned(
 
 @compiled
 def _running_sums(fine: Floats, n: int, to: Floats, starts: Ints) -> tuple[float, int, int]:
-    """Running sums over a cycle of bins of two cells (3, n + 1), written, and the bins with light lost.
+    """Running sums over a cycle of bins of two cells (4, n + 1), written, and the bins with light lost.
 
+    The rows are weighted light, weight, points, and the gain of bins with light lost.
     Returns the bins' gain, how many are filled, and how many have light lost.
     """
-    dispersion = 0.0
+    dispersion, losing = 0.0, 0.0
     occupied = 0
     many = 0
     light, mass, count = 0.0, 0.0, 0.0
@@ -186,8 +189,11 @@ def _running_sums(fine: Floats, n: int, to: Floats, starts: Ints) -> tuple[float
         to[1, cell + 1] = mass
         to[2, cell + 1] = count
         if m > 0:
-            dispersion += s * s / m
+            gain = s * s / m
+            dispersion += gain
+            losing += gain if s < 0 else 0.0
             occupied += 1
+        to[3, cell + 1] = losing
         starts[many] = cell
         many += s < 0
     return dispersion, occupied, many
@@ -196,11 +202,34 @@ def _running_sums(fine: Floats, n: int, to: Floats, starts: Ints) -> tuple[float
 @compiled
 def _go_on(to: Floats, n: int) -> None:
     """The running sums over a second cycle, for boxes that begin in the first and end in the next."""
-    for row in range(3):
+    for row in range(4):
         line = to[row]
         whole, again = line[n], line[n:]
         for cell in range(1, n + 1):
             again[cell] = line[cell] + whole
+
+
+@compiled
+def _widest(n: int, narrowest: int) -> int:
+    """The widest box that is tried [bins]."""
+    return min(n // 4, WIDEST * narrowest)
+
+
+@compiled
+def _most_gain(to: Floats, n: int, width: int, total: float) -> float:
+    """What two boxes of up to so many bins cannot gain more than.
+
+    By Cauchy and Schwarz (sum s)^2 / sum m <= sum s^2/m: a box cannot gain more than its bins of light lost,
+    and the level of the rest as much again as the boxes' share of its weight.
+    """
+    gain, mass = 0.0, 0.0
+    gains, masses = to[3], to[1]
+    gains_to, masses_to = gains[width:], masses[width:]
+    for j in range(n):
+        gain = max(gain, gains_to[j] - gains[j])
+        mass = max(mass, masses_to[j] - masses[j])
+    rest = total - 2 * mass
+    return 2 * gain * total / rest if rest > 0 else np.inf
 
 
 @compiled
@@ -217,7 +246,7 @@ def _first_box(
     found_width = 0
     light, mass, count = to[0], to[1], to[2]
     width = narrowest
-    while width <= min(n // 4, WIDEST * narrowest):
+    while width <= _widest(n, narrowest):
         light_to, mass_to, count_to = light[width:], mass[width:], count[width:]
         for j in starts:
             s = light_to[j] - light[j]
@@ -257,7 +286,7 @@ def _second_box(
     begin = start + width1 + width1 // 2 + 1
     end = start + n - width1 // 2 - 1
     width = narrowest
-    while width <= min(n // 4, WIDEST * narrowest):
+    while width <= _widest(n, narrowest):
         light_to, mass_to, count_to = light[width:], mass[width:], count[width:]
         for j in starts:
             s = light_to[j] - light[j]
