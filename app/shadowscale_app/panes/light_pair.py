@@ -7,6 +7,7 @@ from PySide6.QtCore import Qt, Signal
 from PySide6.QtGui import QPen
 from PySide6.QtWidgets import QSplitter, QVBoxLayout, QWidget
 
+from shadowscale.data.photometry import Photometry
 from shadowscale.session.session import Session
 from shadowscale.view.bins import binned
 from shadowscale.view.curves import Curve, contact_curves, fitted_curves
@@ -27,6 +28,7 @@ from shadowscale_app.warm import READY
 
 LIGHT = frozenset({"photometry", "system", "solution", "view", "plan", "exclusions"})
 STILL = 0.02  # of a picture's height: less does not move its axis
+ROOMY = 0.5  # of a picture's height: what fills so much of it does not ask for another
 EMPTY = 0.01  # to either side of zero, while there are no residuals
 REST_HEIGHT = 78  # pixels of the residuals with their axis, at least
 MOST_CROSSES = 200  # more of them are drawn small and faint
@@ -54,6 +56,7 @@ class LightPair(QWidget):
         self._cursor = [_cursor_line(), _cursor_line()]
         self._zero = pg.InfiniteLine(0.0, angle=0)
         self._shifts: tuple[float, ...] = ()
+        self._seen: Photometry | None = None
         self._light: tuple[LightPoints, ...] = ()
         self._rest: tuple[LightPoints, ...] = ()
         self._folding: tuple[float, float] | None = None
@@ -62,6 +65,9 @@ class LightPair(QWidget):
 
     def show_light(self, session: Session, names: frozenset[str]) -> None:
         """Draw what changed."""
+        if "name" in names and session.photometry is not self._seen:  # another piece of work
+            self.forget_heights()
+        self._seen = session.photometry
         look = look_of(session.view)
         folding = ephemeris(session)
         if names & POINTS or folding != self._folding:
@@ -89,8 +95,13 @@ class LightPair(QWidget):
             return
         self.curve.home_x = x
         self.curve.setXRange(*x, padding=0)
+        self.forget_heights()
         self._fit(self.curve, self._light, self._shifts)
         self._fit(self.rest, self._rest, tuple(0.0 for _ in self._rest))
+
+    def forget_heights(self) -> None:
+        """The next points decide anew how high the pictures are."""
+        self.curve.home_y = self.rest.home_y = None
 
     def point(self, phase: float) -> None:
         """Show the phase under the cursor."""
@@ -246,11 +257,14 @@ class LightPair(QWidget):
 
 
 def _fit_height(picture: Picture, found: tuple[float, float]) -> None:
-    old = picture.home_y
-    still = STILL * (found[1] - found[0])
-    if old is None or max(abs(found[0] - old[0]), abs(found[1] - old[1])) > still:
-        picture.home_y = found
-        picture.setYRange(*found, padding=0)
+    old, height = picture.home_y, found[1] - found[0]
+    if old is not None:
+        still = max(abs(found[0] - old[0]), abs(found[1] - old[1])) <= STILL * height
+        roomy = old[0] <= found[0] and found[1] <= old[1] and height > ROOMY * (old[1] - old[0])
+        if still or roomy:  # points that were set aside stay in view, to be taken back
+            return
+    picture.home_y = found
+    picture.setYRange(*found, padding=0)
 
 
 def _visible(light: tuple[LightPoints, ...], look: Look) -> tuple[LightPoints, ...]:
