@@ -168,12 +168,12 @@ class Bench(QMainWindow):
 
     def dragEnterEvent(self, event: QDragEnterEvent) -> None:
         """Files may be dropped anywhere."""
-        if event.mimeData().hasUrls():
+        if _files_in(event):
             event.acceptProposedAction()
 
     def dropEvent(self, event: QDropEvent) -> None:
         """Open what was dropped."""
-        paths = [url.toLocalFile() for url in event.mimeData().urls() if url.isLocalFile()]
+        paths = _files_in(event)
         event.acceptProposedAction()
         QTimer.singleShot(0, self, lambda: self.open_paths(paths))
 
@@ -295,3 +295,8 @@ class Bench(QMainWindow):
 
     def _trouble(self, found: trouble.Trouble) -> None:
         open_trouble(found, self)
+
+
+def _files_in(event: QDropEvent) -> list[str]:
+    """The files of this machine that are dragged; links to elsewhere are none."""
+    return [url.toLocalFile() for url in event.mimeData().urls() if url.isLocalFile()]

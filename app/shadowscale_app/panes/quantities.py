@@ -218,7 +218,7 @@ class QuantitiesPane(Pane):
     def _name_slider(self, *_: object) -> None:
         row = self.chosen()
         self.slider.setEnabled(row is not None and row.basic and not row.tied_to)
-        self.name.setText(_named_with_bounds(row) if row is not None and row.basic else NOTHING)
+        self.name.setText(NOTHING if row is None else _beside_slider(row))
         if not self.slider.isSliderDown():
             self._centre()
 
@@ -245,7 +245,9 @@ class QuantitiesPane(Pane):
         self.let_go.emit()
 
 
-def _named_with_bounds(row: Row) -> str:
+def _beside_slider(row: Row) -> str:
+    if not row.basic:
+        return f"{row.symbol} follows from the others"
     if row.tied_to:
         return f"{row.symbol} follows {symbol(row.tied_to)}"
     return f"{row.symbol}  ({row.bounds_text})" if row.bounds_text else row.symbol
