@@ -196,6 +196,7 @@ def _sheet(now: Colours) -> str:
     QTabBar::tab:hover {{ color: {now.ink}; }}
     QTabBar::tab:focus {{ background: {now.shadow}; }}
     QSplitter::handle {{ background: {now.window}; }}
+    QHeaderView {{ background: {now.raised}; border: 0; }}
     QHeaderView::section {{ background: {now.raised}; color: {now.quiet}; border: 0;
                             border-bottom: 1px solid {now.line}; padding: 3px 5px; }}
     QTableCornerButton::section {{ background: {now.raised}; border: 0;

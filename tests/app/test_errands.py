@@ -14,6 +14,7 @@ from PySide6.QtWidgets import QApplication, QMessageBox
 
 from shadowscale import data
 from shadowscale.session import store, tables
+from shadowscale.session.session import Session
 from shadowscale_app.bench import Bench
 from shadowscale_app.desk import Change
 from shadowscale_app.dialogs.reading import Reading
@@ -161,6 +162,29 @@ def test_photometry_comes_before_velocities_whatever_their_order(
     assert kinds == ["photometry", "velocities"]
     assert unhurried.desk.session.photometry is not None
     assert unhurried.desk.session.velocities is not None
+
+
+def test_a_second_table_of_the_same_drop_is_added(
+    unhurried: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    table = (samples()[0][2].parent / "photometry.csv").read_text(encoding="utf-8")
+    paths = [tmp_path / "blue.csv", tmp_path / "red.csv"]
+    for path in paths:
+        path.write_text(table, encoding="utf-8")
+    offered: list[bool] = []
+    monkeypatch.setattr(
+        unhurried.opening,
+        "ask",
+        lambda *_, adds=False, **__: (offered.append(adds), Reading(adds=adds))[1],
+    )
+
+    unhurried.desk.begin(Session())
+    unhurried.open_paths([str(path) for path in paths])
+    assert unhurried.files.errands.wait_until_idle()
+
+    assert offered == [False, True]
+    sources = unhurried.desk.session.photometry_sources
+    assert [Path(each.path).name for each in sources] == ["blue.csv", "red.csv"]
 
 
 def test_closing_waits_until_the_work_is_saved(

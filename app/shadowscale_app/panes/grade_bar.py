@@ -29,11 +29,11 @@ class GradeBar(QStyledItemDelegate):
         now = theme.colours()
         painter.save()
         area = QRectF(option.rect).adjusted(5, 0, -3, 0)
+        selected = bool(option.state & QStyle.StateFlag.State_Selected)
         if row.bar > 0:
-            self._bar(painter, area, row, now)
+            self._bar(painter, area, row, selected=selected)
         if row.strongest:
             strong = abs(row.correlation) >= STRONG
-            selected = bool(option.state & QStyle.StateFlag.State_Selected)
             tint = now.accent_ink if selected else now.badly if strong else now.quiet
             painter.setPen(QColor(tint))
             painter.setFont(theme.small_font(-1.0))
@@ -46,7 +46,8 @@ class GradeBar(QStyledItemDelegate):
             )
         painter.restore()
 
-    def _bar(self, painter: QPainter, area: QRectF, row: Row, now: theme.Colours) -> None:
+    def _bar(self, painter: QPainter, area: QRectF, row: Row, *, selected: bool) -> None:
+        now = theme.colours()
         tint = QColor(
             {WELL: now.well, FAIRLY: now.fairly, BADLY: now.badly}.get(row.grade, now.quiet)
         )
@@ -56,7 +57,7 @@ class GradeBar(QStyledItemDelegate):
         painter.drawRoundedRect(ground, 2, 2)
         painter.setBrush(tint)
         painter.drawRoundedRect(QRectF(ground.left(), ground.top(), BAR * row.bar, 5), 2, 2)
-        painter.setPen(tint)
+        painter.setPen(QColor(now.accent_ink) if selected else tint)
         painter.drawText(
             QRectF(ground.right() + 2, area.top(), 12, area.height()),
             Qt.AlignmentFlag.AlignVCenter,

@@ -186,6 +186,8 @@ class QuantitiesPane(Pane):
                 (HELD, "Hold it here"),
                 (WITH_PRIOR, "With prior at its present error"),
             ):
+                if row.tied_to and state == FREE:
+                    continue  # that is what untying does
                 action = menu.addAction(words)
                 action.setEnabled(row.state != state)
                 action.triggered.connect(
