@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 PASS, WARN, FAIL = "pass", "warn", "fail"
+ABSENT = "absent: "  # begins the name of the check on a quantity that is not given
 
 
 @dataclass(frozen=True)

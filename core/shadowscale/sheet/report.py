@@ -11,7 +11,7 @@ from shadowscale.data.photometry import Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.plan import Plan
 from shadowscale.fit.solution import Solution
-from shadowscale.judge.finding import FAIL, PASS, WARN, Finding
+from shadowscale.judge.finding import ABSENT, FAIL, PASS, WARN, Finding
 from shadowscale.sheet.citing import Methods, listed
 from shadowscale.sheet.document import (
     Block,
@@ -39,7 +39,7 @@ from shadowscale.sheet.report_tables import (
     quantity_blocks,
 )
 from shadowscale.sheet.report_words import glance, number, value_and_error
-from shadowscale.sheet.sheet import ABSENT, Entry, Sheet
+from shadowscale.sheet.sheet import Entry, Sheet
 from shadowscale.sheet.symbols import marked, plain, unit_words
 
 MAIN = ("M", "R", "logg", "L", "density", "r")

@@ -7,13 +7,13 @@ from math import hypot
 
 from shadowscale.fit.solution import DERIVED, Decision, Estimate
 from shadowscale.geometry.contacts import ContactSolution
-from shadowscale.judge.finding import Finding
+from shadowscale.judge.finding import ABSENT, Finding
 from shadowscale.light.laws import LAWS
 from shadowscale.quantities import QUANTITIES
 from shadowscale.sheet.citing import listed
 from shadowscale.sheet.document import RIGHT, Block, Column, Paragraph, Table
 from shadowscale.sheet.report_words import number, value_and_error
-from shadowscale.sheet.sheet import ABSENT, Entry, Sheet
+from shadowscale.sheet.sheet import Entry, Sheet
 from shadowscale.sheet.symbols import coefficient_sign, formula, marked, plain, unit_words
 
 GROUPS: tuple[tuple[str, tuple[str, ...]], ...] = (

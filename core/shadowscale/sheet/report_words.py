@@ -5,9 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from shadowscale.fit.solution import Estimate
-from shadowscale.judge.finding import FAIL, WARN
+from shadowscale.judge.finding import ABSENT, FAIL, WARN
 from shadowscale.quantities import rounded
-from shadowscale.sheet.sheet import ABSENT, Sheet
+from shadowscale.sheet.sheet import Sheet
 from shadowscale.sheet.symbols import unit_words
 
 MINUS, PLUS_MINUS = "\N{MINUS SIGN}", "\N{PLUS-MINUS SIGN}"

@@ -18,12 +18,10 @@ from shadowscale.fit.solution import (
     Solution,
 )
 from shadowscale.geometry.contacts import ContactSolution
-from shadowscale.judge.finding import PASS, Finding
+from shadowscale.judge.finding import ABSENT, PASS, Finding
 from shadowscale.light.laws import LAWS
 from shadowscale.quantities import BAND, QUANTITIES, SOURCE, SYSTEM, Quantity, key, quantity_of
 from shadowscale.versions import library_versions
-
-ABSENT = "absent: "
 
 
 @dataclass(frozen=True)

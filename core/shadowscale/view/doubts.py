@@ -9,7 +9,7 @@ import numpy as np
 
 from shadowscale.data.photometry import Photometry
 from shadowscale.fit.solution import Solution
-from shadowscale.judge.finding import FAIL, PASS, WARN, Finding
+from shadowscale.judge.finding import ABSENT, FAIL, PASS, WARN, Finding
 from shadowscale.session.session import Session
 from shadowscale.view.last import Last
 from shadowscale.view.light_points import fitting_solution
@@ -46,6 +46,8 @@ def _lines(session: Session) -> Iterator[Doubt]:
     if session.audit:
         yield Doubt("Checks")
         for finding in sorted(session.audit, key=lambda each: _ORDER.get(each.verdict, 3)):
+            if finding.verdict == PASS and finding.check.startswith(ABSENT):
+                continue  # told below, under what the data cannot give
             yield Doubt(
                 "", finding.verdict, finding.check, finding.words, _numbers(finding), finding.source
             )

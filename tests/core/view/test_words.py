@@ -13,6 +13,7 @@ from made_up import made_up_session
 from shadowscale.fit.plan import Plan
 from shadowscale.fit.solution import FITTED, Estimate
 from shadowscale.jobs.compare_inputs import Compared, Number
+from shadowscale.judge.finding import PASS, Finding
 from shadowscale.quantities import QUANTITIES
 from shadowscale.session.session import Session
 from shadowscale.view.compared import NOTHING_BESIDE, SIGN, side_by_side
@@ -191,6 +192,9 @@ def test_doubts_gather_everything() -> None:
     assert headings[0] == "Checks"
     assert {"What the data decided", "What the data cannot give", "Rows set aside"} <= set(headings)
     assert counts(session) == (0, 1)
+    absent = Finding("absent: distance", None, None, PASS, "No value for the distance.", "x")
+    twice = doubts(replace(session, audit=(*session.audit, absent)))
+    assert [each for each in twice if each.name.startswith("absent")] == []
     assert doubts(replace(made_up_session(solved=False), photometry=None)) == ()
 
 

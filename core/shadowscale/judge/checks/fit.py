@@ -6,7 +6,7 @@ from math import inf, isfinite
 
 from shadowscale.judge.check import Check
 from shadowscale.judge.evidence import Evidence
-from shadowscale.judge.finding import PASS, WARN, Finding
+from shadowscale.judge.finding import ABSENT, PASS, WARN, Finding
 from shadowscale.judge.words import counted, listed, number, sentence
 from shadowscale.quantities import QUANTITIES, parse_key, quantity_of, written
 
@@ -133,7 +133,7 @@ def absent_quantities(evidence: Evidence, check: Check) -> tuple[Finding, ...]:
     """One finding for every quantity that the solution could not give."""
     return tuple(
         Finding(
-            f"absent: {name}",
+            f"{ABSENT}{name}",
             None,
             None,
             WARN if _expected(evidence, name) else PASS,
