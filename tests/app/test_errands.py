@@ -167,10 +167,10 @@ def test_photometry_comes_before_velocities_whatever_their_order(
 def test_a_second_table_of_the_same_drop_is_added(
     unhurried: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    table = (samples()[0][2].parent / "photometry.csv").read_text(encoding="utf-8")
     paths = [tmp_path / "blue.csv", tmp_path / "red.csv"]
-    for path in paths:
-        path.write_text(table, encoding="utf-8")
+    for night, path in enumerate(paths):
+        rows = [f"{2459000 + night + n / 500:.4f},12.{n % 7},0.01" for n in range(300)]
+        path.write_text("\n".join(["BJD,mag,err", *rows]), encoding="utf-8")
     offered: list[bool] = []
     monkeypatch.setattr(
         unhurried.opening,
