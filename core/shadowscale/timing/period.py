@@ -24,7 +24,7 @@ from shadowscale.timing.search_data import (
     without_slow_variation,
 )
 from shadowscale.timing.settle import Settled, settled
-from shadowscale.timing.weigh import AS_GOOD, Weighed, weighed
+from shadowscale.timing.weigh import AS_GOOD, Weighed, as_good, weighed
 
 LONGEST = 0.95  # of the span: an eclipse must come twice
 LEAST_GAIN = 60.0  # chi2 of the best dips; white noise gives 45 at most in 1e7 trials
@@ -178,6 +178,7 @@ def _weighed(
 
 def _result(best: Settled, results: list[Weighed], left: Span | None) -> PeriodSearch:
     lowest = results[0].cost
+    alike = len(as_good(results))
     others = []
     for each in results:
         seen = each.refined
@@ -195,7 +196,7 @@ def _result(best: Settled, results: list[Weighed], left: Span | None) -> PeriodS
         period=best.refined.period,
         epoch=best.refined.epoch,
         period_error=best.refined.period_error,
-        candidates=(chosen, *others[:SHOWN]),
+        candidates=(chosen, *others[: max(SHOWN, alike)]),
         words=words,
         ambiguous=best.other is not None,
         other=best.other,

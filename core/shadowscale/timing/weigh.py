@@ -16,6 +16,7 @@ from shadowscale.timing.search_data import SearchData
 from shadowscale.timing.shape_fit import ShapeData, ShapeFit, predicted
 
 WEIGHED = 5
+MOST_WEIGHED, NEAR = 12, 60.0  # beyond `WEIGHED`, those whose cost is so near the best one's
 LEAST_SIGNAL = 6.0  # [sigma]
 LEAST_DEPTH = 0.02  # of the deeper eclipse: less is no second eclipse but the light between
 UNLIKE = 4.0  # ratio of the durations of two eclipses; e = 0.6 gives 4
@@ -38,7 +39,8 @@ def weighed(
     points: LightPoints, data: SearchData, found: list[Candidate], limits: tuple[float, float]
 ) -> list[Weighed]:
     """The best candidates, and the half and the double of the best, in order of cost."""
-    chosen = list(found[:WEIGHED])
+    near = [each for each in found[WEIGHED:MOST_WEIGHED] if each.cost - found[0].cost < NEAR]
+    chosen = [*found[:WEIGHED], *near]
     for factor in (0.5, 2.0):
         period = found[0].period * factor
         known = any(abs(period / each.period - 1) < 3e-3 for each in chosen)
