@@ -161,6 +161,10 @@ class Bench(QMainWindow):
         with trouble.guard(f"opening {Path(path).name}"):
             self.opening.open_paths([Path(path)], self._solve_new)
 
+    def _solve_again(self) -> None:
+        if self.live.following:
+            QTimer.singleShot(0, self, self.work.solve)  # once the answer is taken in full
+
     def _solve_new(self) -> None:
         session = self.desk.session
         if session.photometry is not None and session.solution is None:
@@ -211,6 +215,7 @@ class Bench(QMainWindow):
         self.long_lane.busy.connect(self.status.show_busy)
         self.long_lane.busy.connect(lambda _: self.actions_table.update(self.desk.session))
         self.work.solved.connect(lambda: self.bring("Folded curve"))
+        self.work.outdated.connect(self._solve_again)
         self.work.searched.connect(self._searched)
         self.long_lane.progressed.connect(self.status.show_progress)
         self.status.stop_wanted.connect(self.work.stop)

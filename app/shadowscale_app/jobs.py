@@ -133,6 +133,7 @@ class LongLane(QObject):
         super().__init__(parent)
         self._thread: threading.Thread | None = None
         self._wanted, self._closing = threading.Event(), threading.Event()
+        self._abandoned = False
         self._number = 0
         self._arrived.connect(self._take)
 
@@ -146,6 +147,7 @@ class LongLane(QObject):
         if self.running:
             return False
         self._wanted.clear()
+        self._abandoned = False
         self._number += 1
         self._thread = threading.Thread(
             target=self._run, args=(self._number, work), name="long lane", daemon=True
@@ -157,6 +159,15 @@ class LongLane(QObject):
     def stop(self) -> None:
         """Ask the job to end; it does at its next report, or goes on with what it has until asked again."""
         self._wanted.set()
+
+    def abandon(self) -> None:
+        """What runs is for something that is gone: it stops, and nobody hears of it."""
+        self._abandoned = self.running
+
+    @property
+    def abandoned(self) -> bool:
+        """Whether what still runs is no longer wanted."""
+        return self._abandoned
 
     def close(self) -> None:
         """Stop and end the thread; called before the application goes."""
@@ -170,10 +181,10 @@ class LongLane(QObject):
         return _wait(lambda: not self.running, seconds)
 
     def _stopping(self) -> bool:
-        """Whether the job is to stop now: once for each time it was asked, always while closing."""
+        """Whether the job is to stop now: once each time it was asked, always if nobody waits for it."""
         asked = self._wanted.is_set()
         self._wanted.clear()
-        return asked or self._closing.is_set()
+        return asked or self._abandoned or self._closing.is_set()
 
     def _run(self, number: int, work: Work) -> None:
         self._arrived.emit(_answer(number, work, _Reporting(self, self._stopping)))
@@ -182,7 +193,10 @@ class LongLane(QObject):
         if self._thread is not None:
             self._thread.join()
             self._thread = None
+        abandoned, self._abandoned = self._abandoned, False
         self.busy.emit(False)
+        if abandoned:
+            return
         if isinstance(answer.error, Stopped):
             self.stopped.emit()
         else:

@@ -7,18 +7,20 @@ from dataclasses import replace
 from typing import TYPE_CHECKING
 from weakref import WeakKeyDictionary
 
-from PySide6.QtCore import QObject, Signal
+from PySide6.QtCore import QObject, QTimer, Signal
 
 from shadowscale.fit.solution import Solution
 from shadowscale.progress import Progress
 from shadowscale.session.session import Session
 from shadowscale.view.follow import is_final
 from shadowscale.view.light_points import ephemeris
+from shadowscale.view.wishes import outdates
 from shadowscale_app import trouble
 from shadowscale_app.desk import Change, Desk
 from shadowscale_app.jobs import Answer, LongLane
 from shadowscale_app.live import with_results
 
+LATE = "Solved as things stood when it was asked for; they have changed since."
 CHOOSE = "The session keeps its period; fold with a found one in the Period pane."
 
 if TYPE_CHECKING:
@@ -26,24 +28,37 @@ if TYPE_CHECKING:
 
 
 class WorkDesk(QObject):
-    """Starts long jobs and takes their answers. Signals: `told(words)`, `solved()`, `searched(PeriodSearch)`."""
+    """Starts long jobs and takes their answers.
+
+    Signals: `told(words)`, `solved()`, `searched(PeriodSearch)`; `outdated()` after a solution of what
+    was there when it was asked for, where other things are wanted by now.
+    """
 
     told = Signal(str)
     solved = Signal()
     searched = Signal(object)
+    outdated = Signal()
 
     def __init__(self, desk: Desk, lane: LongLane, parent: QObject | None = None) -> None:
         super().__init__(parent)
         self._desk, self._lane = desk, lane
         self._take: Callable[[object], None] = lambda _: None
         self._doing = ""
+        self._begun = desk.session
+        self._outlives = False  # whether what runs goes on when another session is opened
+        self._next: Callable[[], None] | None = None
         # what each solution was found with: only such a session is written as it stands
         self._found: WeakKeyDictionary[Solution, Session] = WeakKeyDictionary()
         desk.changed.connect(self._changed)
         lane.answered.connect(self._answered)
         lane.stopped.connect(lambda: self.told.emit("Stopped. The session is as it was."))
+        lane.busy.connect(self._go_on)
 
-    def _changed(self, session: Session, _names: frozenset[str]) -> None:
+    def _changed(self, session: Session, names: frozenset[str]) -> None:
+        if {"photometry", "name"} <= names:  # another piece of work
+            self._next = None
+            if not self._outlives:
+                self._lane.abandon()
         if session.solution is not None:
             self._found.setdefault(session.solution, session)
 
@@ -110,14 +125,29 @@ class WorkDesk(QObject):
         self.told.emit("Contacts measured from the points in the eclipse windows.")
 
     def _start(
-        self, doing: str, work: Callable[[Progress], object], take: Callable[[object], None]
+        self,
+        doing: str,
+        work: Callable[[Progress], object],
+        take: Callable[[object], None],
+        *,
+        outlives: bool = False,
     ) -> None:
+        if self._lane.abandoned:  # it ends in a moment
+            self._next = lambda: self._start(doing, work, take, outlives=outlives)
+            return
         if self._lane.running:
             self.told.emit(f"Wait: {self._doing} is still going on, or stop it.")
             return
-        self._doing, self._take = doing, take
+        self._doing, self._take, self._outlives = doing, take, outlives
+        self._begun = self._desk.session
         self.told.emit("")
         self._lane.start(work)
+
+    def _go_on(self, busy: bool) -> None:
+        """What was asked for while something abandoned still ran begins, once all know that that ended."""
+        if not busy and self._next is not None:
+            begin, self._next = self._next, None
+            QTimer.singleShot(0, self, begin)
 
     def _answered(self, answer: Answer) -> None:
         if answer.error is not None:
@@ -132,9 +162,13 @@ class WorkDesk(QObject):
         assert isinstance(found, Session)
         assert found.solution is not None
         self._found[found.solution] = found
+        late = outdates(self._begun, self._desk.session)
         session = with_start_markers(with_results(self._desk.session, found))
         self._desk.apply(Change("Solve", session))
         self._tell_solved(session)
+        if late:
+            self.told.emit(LATE)
+            self.outdated.emit()
 
     def _take_search(self, found: object) -> None:
         assert isinstance(found, Session)
@@ -171,7 +205,12 @@ class WorkDesk(QObject):
                 )
             return ready, written
 
-        self._start(f"exporting to {target.folder}", work, self._take_written)
+        self._start(
+            f"exporting to {target.folder}",
+            work,
+            lambda found: self._take_written(found, session),
+            outlives=True,
+        )
 
     def fold(self, period: float, epoch: float) -> None:
         """Take a period and epoch to start from."""
@@ -199,10 +238,11 @@ class WorkDesk(QObject):
         )
         self._desk.apply(Change("Fold anew", folded))
 
-    def _take_written(self, answer: object) -> None:
+    def _take_written(self, answer: object, asked: Session) -> None:
         assert isinstance(answer, tuple)
         ready, found = answer
-        if ready.solution is not self._desk.session.solution:
+        same = self._desk.session.photometry_sources == asked.photometry_sources
+        if same and ready.solution is not self._desk.session.solution:
             self._take_solution(ready)
         folders = {str(path.parent) for path in found}
         self.told.emit(f"{len(found)} files written to {min(folders, key=len)}.")

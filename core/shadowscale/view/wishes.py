@@ -45,11 +45,16 @@ def with_third_light(plan: Plan, band: str, *, held: float | None) -> Plan:
 
 def asks_for_solution(before: Session, after: Session) -> bool:
     """Whether what changed between two sessions asks for a new fit."""
+    return outdates(before, after) or _contacts(before.markers) != _contacts(after.markers)
+
+
+def outdates(before: Session, after: Session) -> bool:
+    """Whether a solution of one session is none of the other: contacts are only where a fit begins."""
     if before.photometry is not after.photometry or before.velocities is not after.velocities:
         return after.photometry is not None
     if replace(before.plan, start={}) != replace(after.plan, start={}):
         return True
-    return _pulled(before.markers) != _pulled(after.markers)
+    return _stretches(before.markers) != _stretches(after.markers)
 
 
 def for_refit(session: Session) -> Session:
@@ -100,9 +105,13 @@ def with_wavelength(plan: Plan, band: str, nanometres: float) -> Plan:
     return replace(plan, wavelengths={**others, band: nanometres} if nanometres > 0 else others)
 
 
-def _pulled(markers: Markers | None) -> tuple[object, ...]:
-    """What of the markers a fit depends on: the windows only where stretches say which points count beside them."""
+def _contacts(markers: Markers | None) -> tuple[object, ...]:
+    return () if markers is None else (markers.primary, markers.secondary)
+
+
+def _stretches(markers: Markers | None) -> tuple[object, ...]:
+    """Which points take part; the windows say so only where stretches say which count beside them."""
     if markers is None:
-        return ()
+        return ((), (), ())
     windows = (markers.primary_window, markers.secondary_window) if markers.level else ()
-    return (markers.primary, markers.secondary, markers.excluded, markers.level, windows)
+    return (markers.excluded, markers.level, windows)

@@ -27,6 +27,7 @@ from shadowscale.view.wishes import (
     LAW_NAMES,
     asks_for_solution,
     for_refit,
+    outdates,
     read_pair,
     third_light_wish,
     with_third_light,
@@ -153,6 +154,17 @@ def test_what_asks_for_a_new_fit() -> None:
     )
     assert asks_for_solution(before, replace(before, plan=replace(before.plan, law="quadratic")))
     assert asks_for_solution(before, replace(before, velocities=None))
+
+
+def test_contacts_ask_for_a_fit_but_outdate_none() -> None:
+    before = made_up_session()
+    first, *rest = before.markers.primary
+    contacts = replace(before, markers=replace(before.markers, primary=(first - 1e-3, *rest)))
+    excluded = replace(before, markers=replace(before.markers, excluded=((0.2, 0.3),)))
+
+    assert [asks_for_solution(before, each) for each in (contacts, excluded)] == [True, True]
+    assert [outdates(before, each) for each in (contacts, excluded)] == [False, True]
+    assert not outdates(before, replace(before, markers=None))
 
 
 def test_a_refit_starts_where_the_work_stands() -> None:
