@@ -156,6 +156,8 @@ class Opening(QObject):
     def _take_light(self, found: Session, path: Path, *, adds: bool, agreed: Session) -> None:
         from shadowscale.session.tables import with_exclusions
 
+        if adds and not self._is_same_work(agreed, path):
+            return
         if not adds and self._desk.session is not agreed and not self._files.may_leave():
             return
         fresh = replace(
@@ -176,13 +178,15 @@ class Opening(QObject):
         reading = self.ask(self._files.window, looked.table, "velocities")
         if reading is None:
             return
-        path = looked.path
+        path, agreed = looked.path, self._desk.session
         added = Source(str(path.absolute()), reading.columns)
-        wanted = Session(velocity_sources=(*self._desk.session.velocity_sources, added))
+        wanted = Session(velocity_sources=(*agreed.velocity_sources, added))
 
         def take(found: Session) -> None:
             from shadowscale.session.tables import with_exclusions
 
+            if not self._is_same_work(agreed, path):
+                return
             fresh = replace(
                 self._desk.session,
                 velocity_sources=found.velocity_sources,
@@ -193,6 +197,17 @@ class Opening(QObject):
             then()
 
         self._errands.read(f"opening {path.name}", lambda: _read(wanted), take)
+
+    def _is_same_work(self, agreed: Session, path: Path) -> bool:
+        """Whether the desk has the tables that one was to be added to; says so where it has others."""
+        now = self._desk.session
+        same = (now.photometry_sources, now.velocity_sources) == (
+            agreed.photometry_sources,
+            agreed.velocity_sources,
+        )
+        if not same:
+            self.told.emit(f"{path.name} is not added: other tables were opened meanwhile.")
+        return same
 
 
 def _looked(path: Path) -> Looked:

@@ -187,6 +187,25 @@ def test_a_second_table_of_the_same_drop_is_added(
     assert [Path(each.path).name for each in sources] == ["blue.csv", "red.csv"]
 
 
+def test_velocities_are_not_added_to_what_was_opened_meanwhile(
+    unhurried: Bench, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    gate, plain = threading.Event(), tables.with_tables
+    monkeypatch.setattr(tables, "with_tables", lambda each: (gate.wait(20), plain(each))[1])
+    monkeypatch.setattr(unhurried.opening, "ask", lambda *_, **__: Reading())
+    unhurried.opening.open_paths([samples()[0][2].parent / "velocities.csv"])
+    while not unhurried.status.errand.text().startswith("opening"):
+        QApplication.processEvents()
+    other = Session(name="other")
+
+    unhurried.desk.begin(other)
+    gate.set()
+
+    assert unhurried.files.errands.wait_until_idle()
+    assert unhurried.desk.session is other
+    assert "velocities.csv is not added" in unhurried.status.words.text()
+
+
 def test_closing_waits_until_the_work_is_saved(
     unhurried: Bench, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
