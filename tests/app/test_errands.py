@@ -193,6 +193,7 @@ def test_velocities_are_not_added_to_what_was_opened_meanwhile(
     gate, plain = threading.Event(), tables.with_tables
     monkeypatch.setattr(tables, "with_tables", lambda each: (gate.wait(20), plain(each))[1])
     monkeypatch.setattr(unhurried.opening, "ask", lambda *_, **__: Reading())
+    unhurried.desk.begin(replace(unhurried.desk.session, velocity_sources=(), velocities=None))
     unhurried.opening.open_paths([samples()[0][2].parent / "velocities.csv"])
     while not unhurried.status.errand.text().startswith("opening"):
         QApplication.processEvents()
