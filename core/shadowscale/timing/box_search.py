@@ -88,7 +88,7 @@ def spectrum(
     except Stopped:
         if not keep or done == frequency.size:
             raise
-    left = (float(1 / frequency[done]), float(1 / frequency[0])) if done else None
+    left = (float(1 / frequency[done - 1]), float(1 / frequency[0])) if done else None
     return Spectrum(frequency[done:], table[done:], left)
 
 
