@@ -98,13 +98,14 @@ def see_eclipse(
         fit = fit_eclipse(
             data, middle=middle, width=box, profile=shape, first=first, rough=rough, like=like
         )
+        steady = abs(fit.duration - width) < 0.15 * width
         if shape is TRAPEZOID:
-            rough = fit
+            rough = fit if steady else None  # in another window another trapezoid may be better
         residuals = _residuals(points, near, inside, fit, smear)
         fresh = kept.copy()
         if clip:
             fresh[inside] = _ordinary(near[inside], residuals)
-        settled = abs(fit.duration - width) < 0.15 * width and np.array_equal(fresh, kept)
+        settled = steady and np.array_equal(fresh, kept)
         if turn == _LAST or (settled and shape is profile):
             break
         kept, middle, width = fresh, fit.middle, fit.duration
