@@ -9,7 +9,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from PySide6.QtCore import Qt
-from PySide6.QtGui import QColor, QFont, QFontDatabase, QGuiApplication, QPalette
+from PySide6.QtGui import QColor, QFont, QFontDatabase, QGuiApplication, QPalette, QPen
 from PySide6.QtWidgets import QApplication
 
 ORANGE, SKY, GREEN, YELLOW = "#E69F00", "#56B4E9", "#009E73", "#F0E442"
@@ -141,6 +141,15 @@ def colour(text: str, opacity: float = 1.0) -> QColor:
     """A QColor with an opacity of 0 to 1."""
     found = QColor(text)
     found.setAlphaF(opacity)
+    return found
+
+
+def pen(tint: str | QColor, width: float = 1.0, style: Qt.PenStyle = Qt.PenStyle.SolidLine) -> QPen:
+    """A pen for lines in a picture, as wide whatever the view shows, and on fine screens no thinner."""
+    screen = QGuiApplication.primaryScreen()
+    fine = 1.0 if screen is None else screen.devicePixelRatio()
+    found = QPen(QColor(tint), width * fine, style)
+    found.setCosmetic(True)
     return found
 
 

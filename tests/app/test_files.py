@@ -9,12 +9,13 @@ from functools import partial
 from pathlib import Path
 
 import pytest
-from PySide6.QtGui import QImage
-from PySide6.QtWidgets import QMessageBox
+from PySide6.QtGui import QColor, QImage
+from PySide6.QtWidgets import QApplication, QMessageBox
 
 from shadowscale.jobs import results as jobs_results
 from shadowscale.session.journal import Journal
 from shadowscale.session.session import Session
+from shadowscale_app import theme
 from shadowscale_app.actions import FIGURE_PANES
 from shadowscale_app.bench import Bench
 from shadowscale_app.desk import Change
@@ -340,3 +341,28 @@ def test_points_of_a_saved_drawing_are_fine_enough_for_print(bench: Bench, tmp_p
     shown, image = max(images, key=lambda each: each[1].width())
 
     assert image.width() >= 3 * shown - 3
+
+
+def test_lines_of_a_saved_picture_are_as_thick_as_on_the_screen(
+    bench: Bench, tmp_path: Path
+) -> None:
+    """Measured on the zero line of the residuals, which is alone in its colour there."""
+    pair = bench.panes["Folded curve"].pair
+    pair.rest_points.setVisible(False)
+    QApplication.processEvents()
+    before = {line: line.pen.widthF() for line in pair.curve.lines.values()}
+
+    save_figure(pair.rest, tmp_path / "rest.png")
+
+    pair.rest_points.setVisible(True)
+    image = QImage(str(tmp_path / "rest.png"))
+    tint = QColor(theme.colours().model)
+    middle = image.width() // 2
+    column = [image.pixelColor(middle, y) for y in range(image.height())]
+    thick = sum(_near(each, tint) for each in column)
+    assert thick >= 3  # 1.2 of the screen's pixels
+    assert before == {line: line.pen.widthF() for line in pair.curve.lines.values()}
+
+
+def _near(one: QColor, other: QColor) -> bool:
+    return max(abs(a - b) for a, b in zip(one.getRgb(), other.getRgb(), strict=True)) < 60

@@ -112,9 +112,9 @@ class LightPair(QWidget):
     def dress(self) -> None:
         """Take the theme's colours."""
         now = theme.colours()
-        self._zero.setPen(pg.mkPen(now.model, width=1.2))
+        self._zero.setPen(theme.pen(now.model, width=1.2))
         for line in self._cursor:
-            line.setPen(pg.mkPen(now.quiet, width=1, style=Qt.PenStyle.DotLine))
+            line.setPen(theme.pen(now.quiet, width=1, style=Qt.PenStyle.DotLine))
 
     def _place(self) -> None:
         split = QSplitter(Qt.Orientation.Vertical)
@@ -212,8 +212,8 @@ class LightPair(QWidget):
     def _show_models(self, session: Session, look: Look) -> None:
         now = theme.colours()
         pens = (
-            pg.mkPen(now.model, width=2.0),
-            pg.mkPen(now.contact, width=1.3, style=Qt.PenStyle.DashLine),
+            theme.pen(now.model, width=2.0),
+            theme.pen(now.contact, width=1.3, style=Qt.PenStyle.DashLine),
         )
         wanted: list[tuple[Curve, float, QPen]] = []
         if READY:

@@ -67,7 +67,7 @@ class MassRadiusPane(Pane):
                 brush=pg.mkBrush(tint), hoverable=True, data=[star.words], tip=lambda x, y, data: data,
             )  # fmt: skip
             bars = pg.PlotCurveItem(
-                star.bar_x, star.bar_y, connect="pairs", pen=pg.mkPen(tint, width=2)
+                star.bar_x, star.bar_y, connect="pairs", pen=theme.pen(tint, width=2)
             )
             for item in (bars, point):
                 self.picture.addItem(item)

@@ -96,19 +96,19 @@ class PairsPane(Pane):
     def _paint(self, found: Pair) -> None:
         now, picture = theme.colours(), self.picture
         outer = pg.PlotCurveItem(
-            found.outer[:, 0], found.outer[:, 1], pen=pg.mkPen(now.contact, width=1.5)
+            found.outer[:, 0], found.outer[:, 1], pen=theme.pen(now.contact, width=1.5)
         )
         inner = pg.PlotCurveItem(
             found.inner[:, 0],
             found.inner[:, 1],
-            pen=pg.mkPen(now.contact, width=2.2),
+            pen=theme.pen(now.contact, width=2.2),
             fillLevel=None,
             brush=None,
         )
         weak = pg.PlotCurveItem(
             found.weak[:, 0],
             found.weak[:, 1],
-            pen=pg.mkPen(now.model, width=1.6, style=Qt.PenStyle.DashLine),
+            pen=theme.pen(now.model, width=1.6, style=Qt.PenStyle.DashLine),
         )
         centre = pg.ScatterPlotItem(
             [found.centre[0]],
@@ -127,7 +127,7 @@ class PairsPane(Pane):
             for end in (value - error, value + error):
                 picture.addItem(
                     pg.InfiniteLine(
-                        end, angle=angle, pen=pg.mkPen(now.grid, style=Qt.PenStyle.DashLine)
+                        end, angle=angle, pen=theme.pen(now.grid, style=Qt.PenStyle.DashLine)
                     ),
                     ignoreBounds=True,
                 )

@@ -86,7 +86,7 @@ class SeriesPane(Pane):
             starts = starts[:0]
         x = [place for start in starts for place in (start, start)]
         self._nights.setData(x, list(found) * len(starts))
-        self._nights.setPen(pg.mkPen(theme.colours().grid, width=1, style=Qt.PenStyle.DashLine))
+        self._nights.setPen(theme.pen(theme.colours().grid, width=1, style=Qt.PenStyle.DashLine))
 
     def _outlined(self, corners: tuple[tuple[float, float], ...]) -> None:
         rows = outlined_light(

@@ -180,21 +180,21 @@ class VelocitiesPane(Pane):
 
     def _show_models(self, wanted: bool) -> None:
         now, system = theme.colours(), self.session.system
-        self._cursor.setPen(pg.mkPen(now.quiet, style=Qt.PenStyle.DotLine))
+        self._cursor.setPen(theme.pen(now.quiet, style=Qt.PenStyle.DotLine))
         shown = READY and wanted and system is not None and system.has("K1")
         curves = velocity_curves(system) if shown and system is not None else ()
         found = {int(curve.label[-1]): curve for curve in curves}
         for star, line in self._models.items():
             line.setVisible(star in found)
             if star in found:
-                pen = pg.mkPen(_tint(star), width=2.0, style=DASHES[star])
+                pen = theme.pen(_tint(star), width=2.0, style=DASHES[star])
                 line.setData(found[star].x, found[star].y, pen=pen)
         self._level.setVisible(bool(found))
         self._zero.setVisible(bool(found))
         if shown and system is not None:
             self._level.setPos(system.value("gamma1"))
-            self._level.setPen(pg.mkPen(now.line, style=Qt.PenStyle.DashLine))
-            self._zero.setPen(pg.mkPen(now.quiet))
+            self._level.setPen(theme.pen(now.line, style=Qt.PenStyle.DashLine))
+            self._zero.setPen(theme.pen(now.quiet))
 
 
 def _layers(found: tuple[VelocityPoints, ...], *, residual: bool) -> tuple[Layer, ...]:

@@ -47,7 +47,7 @@ class Box(pg.ViewBox):
         for corner in self._outline[1:]:
             path.lineTo(corner)
         path.closeSubpath()
-        self._trace.setPen(pg.mkPen(theme.colours().accent, width=1.5, style=Qt.PenStyle.DashLine))
+        self._trace.setPen(theme.pen(theme.colours().accent, width=1.5, style=Qt.PenStyle.DashLine))
         self._trace.setBrush(theme.colour(theme.colours().accent, 0.12))
         self._trace.setPath(path)
         if event.isFinish():

@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+from contextlib import contextmanager
 from pathlib import Path
 
+from pyqtgraph import GraphicsView, InfiniteLine, PlotCurveItem
 from PySide6.QtCore import (
     QBuffer,
     QByteArray,
@@ -15,7 +18,7 @@ from PySide6.QtCore import (
     QSizeF,
     Qt,
 )
-from PySide6.QtGui import QImage, QImageWriter, QPageSize, QPaintDevice, QPainter, QPdfWriter
+from PySide6.QtGui import QImage, QImageWriter, QPageSize, QPaintDevice, QPainter, QPdfWriter, QPen
 from PySide6.QtWidgets import QFileDialog, QWidget
 
 from shadowscale.session.atomic import write_bytes
@@ -91,7 +94,35 @@ def _draw_pdf(widget: QWidget, buffer: QBuffer) -> None:
     _draw(widget, writer, scale=writer.width() / widget.width())
 
 
+@contextmanager
+def _thicker_lines(widget: QWidget, factor: float) -> Iterator[None]:
+    """Lines are as wide in device pixels whatever the scale: in a finer drawing they are made wider."""
+    views = [
+        each for each in (widget, *widget.findChildren(QWidget)) if isinstance(each, GraphicsView)
+    ]
+    lines = [
+        (item, item.opts["pen"] if isinstance(item, PlotCurveItem) else item.pen)
+        for view in views
+        for item in view.scene().items()
+        if isinstance(item, PlotCurveItem | InfiniteLine)
+    ]
+    try:
+        for item, pen in lines:
+            wider = QPen(pen)
+            wider.setWidthF(pen.widthF() * factor)
+            item.setPen(wider)
+        yield
+    finally:
+        for item, pen in lines:
+            item.setPen(pen)
+
+
 def _draw(widget: QWidget, device: QPaintDevice, *, scale: float) -> None:
+    with _thicker_lines(widget, max(1.0, scale / widget.devicePixelRatioF())):
+        _draw_whole(widget, device, scale)
+
+
+def _draw_whole(widget: QWidget, device: QPaintDevice, scale: float) -> None:
     painter = QPainter(device)
     try:  # a painter that is not ended before its device goes takes the program with it
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)

@@ -61,14 +61,14 @@ class MarkerLine(pg.InfiniteLine):
         tint = {"contact": now.contact, "excluded": now.badly}.get(self.handle.group, now.quiet)
         hot = self.focused or self.mouseHovering or self._held
         self.setPen(
-            pg.mkPen(tint, width=2.0 if self.focused else 1.2, style=DASHES[self.handle.group])
+            theme.pen(tint, width=2.0 if self.focused else 1.2, style=DASHES[self.handle.group])
         )
-        self.setHoverPen(pg.mkPen(tint, width=2.2))
+        self.setHoverPen(theme.pen(tint, width=2.2))
         text = "" if self._quiet else self.handle.short
         if hot:
             text = f"{self.handle.short}  {phase_text(self.handle.phase)}".strip()
         self.label.fill = pg.mkBrush(theme.colour(now.raised, 0.92 if text else 0.0))
-        self.label.border = pg.mkPen(tint if hot else now.line) if text else pg.mkPen(None)
+        self.label.border = theme.pen(tint if hot else now.line) if text else pg.mkPen(None)
         self.label.setColor(tint)
         self.label.setFont(theme.small_font(-1.0 if not hot else -0.5))
         self.setZValue(HOT_ABOVE if hot else ABOVE)
