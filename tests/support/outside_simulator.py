@@ -30,6 +30,7 @@ ATMOSPHERES = np.array([
     [6500.0, 0.3493, 0.3154, 0.2179, 0.3109],
     [10000.0, 0.2276, 0.3267, 0.1518, 0.2525],
 ])  # fmt: skip
+MOST_NIGHTS = 100  # draws of nights before they are given up
 BANDS = {"V": (550e-9, 1), "I": (786e-9, 3)}  # wavelength [m], column of `ATMOSPHERES`
 
 
@@ -255,10 +256,15 @@ def write_files(pair: OutsidePair, folder: Path, rng: np.random.Generator) -> No
 
 
 def _times(pair: OutsidePair, rng: np.random.Generator, *, nights: bool) -> Floats:
-    """Some weeks without a break, or nights of eight hours, in which both eclipses were seen."""
+    """Some weeks without a break, or nights of eight hours, in which both eclipses were seen.
+
+    Nights never see both eclipses of some periods near whole days: then without a break.
+    """
+    attempts = 0
     while True:
+        attempts += 1
         count = int(exp(rng.uniform(log(1500), log(9000))))
-        if nights:
+        if nights and attempts < MOST_NIGHTS:
             days = np.sort(rng.choice(150, 60, replace=False)) + rng.uniform(0, 1)
             parts = [np.sort(rng.uniform(day, day + 0.33, count // 60)) for day in days]
             time = pair.conjunction + np.concatenate(parts)
