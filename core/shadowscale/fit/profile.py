@@ -4,6 +4,9 @@ In partial eclipses k, inclination, limb darkening and third light move together
 is far from straight, and the curvature at the minimum tells too little (or too much). So k is held at
 values on both sides, the rest fitted again, until chi-squared is one above the minimum; the points
 found there give the 68.3 % limits along the valley (Wilks 1938; Pawitan 2001, In All Likelihood).
+Where chi-squared rises slowly from there on, or another minimum is nearly as low, that says too
+little: the limit then is where 15.9 % of the likelihood lie beyond, integrated over ln k, to which it
+is all one which star is called the first.
 Near the inclination where the smaller disc just fits into the larger there are two valleys, with and
 without a flat bottom, each hidden from the other by the kink between them: both are followed.
 """
@@ -12,24 +15,28 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
-from math import acos, cos, degrees, log, radians
+from functools import partial
+from itertools import pairwise
+from math import acos, cos, degrees, exp, log, pi, radians, sqrt
+from statistics import NormalDist
 
 import numpy as np
 from numpy.typing import NDArray
 
-from shadowscale.fit.alternatives import Branch
 from shadowscale.fit.least_squares import covariance
 from shadowscale.fit.problem import Fitted
 from shadowscale.fit.system import System
 
 Floats = NDArray[np.float64]
+Piece = tuple[float, Callable[[float], Floats]]
 NAME = "radius_ratio"
-PLATEAU = 3.3  # in chi-squared: a minimum above it holds less than 16 % of the probability
 FIRST = 0.7  # of the linear sigma: where the profile is tried first
 LARGEST_FIRST = 0.3  # and at most this share of k itself
 MOST_TRIES = 9
-PROBE, MOST_PROBES = 1.5, 8  # factors of k that a plateau is followed by
-TOLD = 2.0  # rise of chi-squared from which on the data tell something
+FARTHER, MOST_FARTHER = 1.6, 9  # how the tail is followed: each distance so many times the last
+STEEP = 1.6  # root of the rise at twice the distance of the limit; 2 in a parabola: no tail
+ENOUGH = 2.6  # root of the rise where a tail is left
+BEYOND, MOST_BEYOND = 0.159, 0.22  # share of the likelihood beyond a limit, as it should and may be
 NARROW = 0.4  # in the root of the rise: near enough to interpolate
 NEAR_TANGENCY = 1.0  # in the logarithm of cos i
 ACROSS = 1.4  # factor of cos i of the tangency at which the other valley is looked for
@@ -38,63 +45,48 @@ STRAIGHT = 0.15  # relative departure of both limits from the linear sigma that 
 
 @dataclass(frozen=True, eq=False)
 class Valley:
-    """Coordinates (m,) of the fit at both 68.3 % limits of k, and at the best point met on the way."""
+    """Coordinates (m,) of the fit at both 68.3 % limits of k, and at the best point met on the way.
+
+    tail : whether a limit reaches out over a slow rise or to another minimum
+    """
 
     below: Floats
     above: Floats
     best: Fitted
+    tail: bool
 
 
-def valley(best: Fitted, fit: Callable[[System], Fitted]) -> Valley | None:
+def valley(
+    best: Fitted, fit: Callable[[System], Fitted], branches: Sequence[Fitted] = ()
+) -> Valley | None:
     """Profile k around a fit; None where k is not free or the linear errors serve.
 
     `fit` fits a system from where it stands. A better minimum met on the way is handed back.
+    `branches` are other minima under the same weights.
     """
     if NAME not in best.system.free:
         return None
     at = best.objective.vector.index[NAME]
-    matrix, _ = covariance(best.minimum.normal)
-    sigma = float(np.sqrt(max(matrix[at, at], 0.0)))
+    sigma, direction = _linear(best, at)
     if not np.isfinite(sigma) or sigma <= 0.0:
         return None
-    direction = matrix[:, at] / sigma
-    below, low = _limit(best, fit, direction=-direction, at=at)
-    above, high = _limit(best, fit, direction=direction, at=at)
-    lowest = min((best, low, high), key=lambda each: each.chi2)
-    straight = all(abs(place.step - 1.0) < STRAIGHT for place in (below, above))
-    if straight and lowest is best:
+    below = _side(best, fit, direction=-direction, at=at)
+    above = _side(best, fit, direction=direction, at=at)
+    lowest = min((best, below.lowest, above.lowest), key=lambda each: each.chi2)
+    others = [each for each in branches if each.system.free == best.system.free]
+    ends = _reaching(best, (below, above), others, at=at)
+    tail = any(end is not side.limit.x for end, side in zip(ends, (below, above), strict=True))
+    straight = all(abs(side.limit.step - 1.0) < STRAIGHT for side in (below, above))
+    if straight and not tail and lowest is best:
         return None
-    return Valley(below.x, above.x, lowest)
+    return Valley(*ends, lowest, tail)
 
 
-def widened(
-    best: Fitted, ends: tuple[Floats, Floats] | None, branches: Sequence[Branch]
-) -> tuple[Floats, Floats] | None:
-    """The limits of k, reaching out to other minima that the data hardly tell from the best.
-
-    A minimum that holds a sixth of the probability or more, exp(-delta/2) times that of the best, lies
-    within the central 68.3 %, wherever the profile around the best first rises by one. `ends` itself is handed back where there are none such.
-    """
-    if NAME not in best.system.free:
-        return ends
-    at = best.objective.vector.index[NAME]
-    equal = [
-        branch.fitted.minimum.x
-        for branch in branches
-        if branch.delta_chi2 < PLATEAU and branch.fitted.system.free == best.system.free
-    ]
-    if not equal:
-        return ends
-    below, above = ends or _linear_ends(best, at)
-    below = min([below, *equal], key=lambda x: float(x[at]))
-    above = max([above, *equal], key=lambda x: float(x[at]))
-    return below, above
-
-
-def _linear_ends(best: Fitted, at: int) -> tuple[Floats, Floats]:
-    matrix, _ = covariance(best.minimum.normal)
-    shift = matrix[:, at] / np.sqrt(matrix[at, at])
-    return best.minimum.x - shift, best.minimum.x + shift
+def _linear(fitted: Fitted, at: int) -> tuple[float, Floats]:
+    """Sigma of k, and how all coordinates go with it, one sigma's way."""
+    matrix, _ = covariance(fitted.minimum.normal)
+    sigma = float(np.sqrt(max(matrix[at, at], 0.0)))
+    return sigma, matrix[:, at] / sigma if sigma > 0.0 else matrix[:, at]
 
 
 @dataclass(frozen=True, eq=False)
@@ -106,49 +98,131 @@ class _Place:
     root: float
 
 
-def _limit(
-    best: Fitted, fit: Callable[[System], Fitted], *, direction: Floats, at: int
-) -> tuple[_Place, Fitted]:
-    """The point where chi-squared is one above the best, and the lowest fit met on the way."""
+@dataclass(frozen=True, eq=False)
+class _Side:
+    """Where chi-squared is one above the best, places farther out, and the lowest fit met on the way."""
+
+    limit: _Place
+    tail: tuple[_Place, ...]
+    lowest: Fitted
+
+
+def _side(best: Fitted, fit: Callable[[System], Fitted], *, direction: Floats, at: int) -> _Side:
+    """Follow the profile to one side."""
     lower, upper = (float(bound[at]) for bound in best.objective.vector.bounds)
     lowest, inner, outer = best, _Place(best.minimum.x, 0.0, 0.0), None
+
+    def place(start: _Place, step: float) -> _Place:
+        nonlocal lowest
+        wanted = best.minimum.x[at] + step * direction[at]
+        held = _held(best, start.x + (step - start.step) * direction, at=at, wanted=wanted)
+        fitted = _lower(held, fit)
+        lowest = min(lowest, fitted, key=lambda each: each.chi2)
+        rise = max(fitted.chi2 - best.chi2, 0.0)
+        return _Place(np.insert(fitted.minimum.x, at, wanted), step, np.sqrt(rise))
+
+    def inside(step: float) -> bool:
+        return bool(lower < best.minimum.x[at] + step * direction[at] < upper)
+
     step = min(FIRST, LARGEST_FIRST * best.minimum.x[at] / abs(float(direction[at])))
     for _ in range(MOST_TRIES):
-        wanted = best.minimum.x[at] + step * direction[at]
-        if not lower < wanted < upper:
+        if not inside(step):
             step = (inner.step + step) / 2
             continue
-        held = _held(best, inner.x + (step - inner.step) * direction, at=at, wanted=wanted)
-        fitted = _lower(held, fit)
-        rise = fitted.chi2 - best.chi2
-        if rise < lowest.chi2 - best.chi2:
-            lowest = fitted
-        x = np.insert(fitted.minimum.x, at, wanted)
-        place = _Place(x, step, np.sqrt(max(rise, 0.0)))
-        inner, outer = (place, outer) if rise < 1.0 else (inner, place)
+        found = place(inner, step)
+        inner, outer = (found, outer) if found.root < 1.0 else (inner, found)
         if outer is not None and outer.root - inner.root < NARROW:
             break
         step = _next_step(inner, outer)
     if outer is None:
-        return inner, lowest
-    return _beyond(_between(inner, outer), best, fit, sign=np.sign(direction[at]), at=at), lowest
+        return _Side(inner, (), lowest)
+    limit = _between(inner, outer)
+    tail: list[_Place] = []
+    step = 2.0 * limit.step
+    while len(tail) < MOST_FARTHER and inside(step):
+        tail.append(place(tail[-1] if tail else limit, step))
+        if tail[0].root > STEEP or tail[-1].root > ENOUGH:
+            break
+        step *= FARTHER
+    return _Side(limit, tuple(tail), lowest)
 
 
-def _beyond(
-    place: _Place, best: Fitted, fit: Callable[[System], Fitted], *, sign: float, at: int
-) -> _Place:
-    """Farther out where chi-squared does not go on rising: a plateau below two tells nothing."""
-    lower, upper = (float(bound[at]) for bound in best.objective.vector.bounds)
-    for _ in range(MOST_PROBES):
-        wanted = float(place.x[at]) * PROBE**sign
-        if not lower < wanted < upper:
-            break
-        fitted = _lower(_held(best, place.x, at=at, wanted=wanted), fit)
-        rise = fitted.chi2 - best.chi2
-        if rise > TOLD:
-            break
-        place = _Place(np.insert(fitted.minimum.x, at, wanted), np.inf, np.sqrt(max(rise, 0.0)))
-    return place
+def _reaching(
+    best: Fitted, sides: tuple[_Side, _Side], branches: Sequence[Fitted], *, at: int
+) -> tuple[Floats, Floats]:
+    """Both limits, farther out than a rise of one where too much of the likelihood lies beyond."""
+    origin = _Place(best.minimum.x, 0.0, 0.0)
+    cores = [_mass(origin, side.limit, at) for side in sides]
+    tails = [_tail(best, side, branches, at=at, sign=sign) for side, sign in zip(sides, (-1, 1))]
+    total = sum(cores) + sum(mass for tail in tails for mass, _ in tail)
+    ends = []
+    for side, tail in zip(sides, tails, strict=True):
+        wanted = BEYOND * total
+        x = side.limit.x
+        if sum(mass for mass, _ in tail) > MOST_BEYOND * total:
+            for mass, where in reversed(tail):
+                if mass >= wanted:
+                    x = where(1.0 - wanted / mass)
+                    break
+                wanted -= mass
+        ends.append(x)
+    return ends[0], ends[1]
+
+
+def _tail(
+    best: Fitted, side: _Side, branches: Sequence[Fitted], *, at: int, sign: int
+) -> list[Piece]:
+    """Pieces beyond the limit, going outward: likelihood, and coordinates where a share of it is passed."""
+    origin = _Place(best.minimum.x, 0.0, 0.0)
+    places = _continued([origin, side.limit, *side.tail], at)[1:]
+    pieces: list[Piece] = [
+        (_mass(inner, outer, at), partial(_passed, inner, outer))
+        for inner, outer in pairwise(places)
+    ]
+    reached = sign * float(places[-1].x[at])
+    beyond = [each for each in branches if sign * each.minimum.x[at] > reached]
+    for each in sorted(beyond, key=lambda each: sign * each.minimum.x[at]):
+        sigma, _ = _linear(each, at)
+        width = sigma / float(each.minimum.x[at])
+        mass = width * sqrt(2 * pi) * exp(-max(each.chi2 - best.chi2, 0.0) / 2)
+        pieces.append((mass, partial(_at_branch, each)))
+    return pieces
+
+
+def _at_branch(branch: Fitted, _share: float) -> Floats:
+    return branch.minimum.x
+
+
+def _continued(places: list[_Place], at: int) -> list[_Place]:
+    """The places, and one where chi-squared has risen enough if it goes on as between the last two."""
+    inner, outer = places[-2:]
+    slope = (outer.root - inner.root) / log(outer.x[at] / inner.x[at])
+    if outer.root >= ENOUGH or abs(slope) < 1e-6 or outer.root <= inner.root:
+        return places
+    x = outer.x.copy()
+    x[at] *= exp((ENOUGH - outer.root) / slope)
+    return [*places, _Place(x, np.inf, ENOUGH)]
+
+
+def _mass(inner: _Place, outer: _Place, at: int) -> float:
+    """Likelihood between two places, the root of the rise taken as linear in ln k."""
+    width = abs(log(outer.x[at] / inner.x[at]))
+    rise = outer.root - inner.root
+    if abs(rise) < 1e-6:
+        return width * exp(-(inner.root**2) / 2)
+    normal = NormalDist()
+    share = (normal.cdf(outer.root) - normal.cdf(inner.root)) / rise
+    return float(width * sqrt(2 * pi) * share)
+
+
+def _passed(inner: _Place, outer: _Place, share: float) -> Floats:
+    """Coordinates between two places where that share of the likelihood between them is passed."""
+    rise, way = outer.root - inner.root, share
+    if abs(rise) > 1e-6:
+        normal = NormalDist()
+        first, last = normal.cdf(inner.root), normal.cdf(outer.root)
+        way = (normal.inv_cdf(first + share * (last - first)) - inner.root) / rise
+    return inner.x + way * (outer.x - inner.x)
 
 
 def _next_step(inner: _Place, outer: _Place | None) -> float:

@@ -22,7 +22,7 @@ from shadowscale.fit.objective import Constraint
 from shadowscale.fit.plan import Plan
 from shadowscale.fit.priors import prior_constraints
 from shadowscale.fit.problem import Fitted, Problem, Weighting, fit_system, thinned
-from shadowscale.fit.profile import valley, widened
+from shadowscale.fit.profile import valley
 from shadowscale.fit.result import assemble
 from shadowscale.fit.reweigh import reasons_with_outlier, reweighed, without_wild_rows
 from shadowscale.fit.solution import Decision, Solution
@@ -135,16 +135,13 @@ def solve(
         )
     check_velocities_follow(best)
     progress.report(0.9, "uncertainties")
-    best, ends = _with_valley(work, best)
+    best, ends = _with_valley(work, best, [each.fitted for each in branches])
     branches = [Branch(each.fitted, each.fitted.chi2 - best.chi2) for each in branches]
-    if (wide := widened(best, ends, branches)) is not ends:
-        words = "other solutions hold a sixth of the probability or more: the limits take them in"
-        work.decisions.append(Decision("errors", "alternatives", words))
-    work.decisions += third_light_told(best, wide)
+    work.decisions += third_light_told(best, ends)
     return assemble(
         best, problem=problem, plan=plan, weighting=work.weighting, ground=ground,
         branches=branches, decisions=work.decisions, notes=[*ground.measured.notes, *work.notes],
-        ends=wide,
+        ends=ends,
     )  # fmt: skip
 
 
@@ -348,16 +345,20 @@ def _against_others(
     return found[0], [Branch(each, each.chi2 - found[0].chi2) for each in found[1:]]
 
 
-def _with_valley(work: _Work, best: Fitted) -> tuple[Fitted, tuple[Floats, Floats] | None]:
+def _with_valley(
+    work: _Work, best: Fitted, others: Sequence[Fitted]
+) -> tuple[Fitted, tuple[Floats, Floats] | None]:
     """The limits of k along its valley, where that is curved; the best may move to a lower place in it."""
     for _ in range(VALLEY_ROUNDS):
-        found = valley(best, work.fit)
+        found = valley(best, work.fit, others)
         if found is None:
             return best, None
         if found.best.chi2 >= best.chi2 - STALLED:
             words = (
                 "the ratio of the radii lies in a curved valley: limits from its likelihood profile"
             )
+            if found.tail:
+                words += ", reaching out so far that 68.3 per cent of the likelihood lie between"
             work.decisions.append(Decision("errors", "profile", words))
             return best, (found.below, found.above)
         freed = replace(found.best.system, free=best.system.free)
