@@ -10,6 +10,7 @@ from shadowscale.fit.system import System
 from shadowscale.geometry.contacts import ContactSolution
 
 FITTED, FIXED, DERIVED, ASSUMED = "fitted", "fixed", "derived", "assumed"
+PROFILE = "profile"  # chosen, where limits are those of a likelihood profile
 
 
 @dataclass(frozen=True)

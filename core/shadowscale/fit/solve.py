@@ -25,7 +25,7 @@ from shadowscale.fit.problem import Fitted, Problem, Weighting, fit_system, thin
 from shadowscale.fit.profile import valley
 from shadowscale.fit.result import assemble
 from shadowscale.fit.reweigh import reasons_with_outlier, reweighed, without_wild_rows
-from shadowscale.fit.solution import Decision, Solution
+from shadowscale.fit.solution import PROFILE, Decision, Solution
 from shadowscale.fit.start import Ground, find_ground, seen_once
 from shadowscale.fit.system import System
 from shadowscale.fit.third_light import third_light_told
@@ -359,7 +359,7 @@ def _with_valley(
             )
             if found.tail:
                 words += ", reaching out so far that 68.3 per cent of the likelihood lie between"
-            work.decisions.append(Decision("errors", "profile", words))
+            work.decisions.append(Decision("errors", PROFILE, words))
             return best, (found.below, found.above)
         freed = replace(found.best.system, free=best.system.free)
         best = work.fit(freed)

@@ -10,7 +10,7 @@ import numpy as np
 from shadowscale.data.photometry import Photometry
 from shadowscale.data.velocities import Velocities
 from shadowscale.fit.plan import Plan
-from shadowscale.fit.solution import FITTED, Solution
+from shadowscale.fit.solution import FITTED, PROFILE, Solution
 from shadowscale.sheet.citing import Methods, listed
 from shadowscale.sheet.methods_fit import fit_sentences, weight_sentences
 from shadowscale.sheet.methods_model import model_sentences
@@ -83,6 +83,12 @@ def _dimensions(solution: Solution, sheet: Sheet, methods: Methods) -> list[str]
         "Errors are 68.3 % limits; those of derived quantities come from the joint covariance, all "
         "correlations kept."
     ]
+    profiled = next((item for item in solution.decisions if item.chosen == PROFILE), None)
+    if profiled is not None:
+        sentences.append(
+            "The limits of the ratio of the radii, and of all that hangs on it, are those of its "
+            f"likelihood profile {methods.cite('wilks1938')}, since its valley is curved."
+        )
     if "M1" in given or "R1" in given:
         sentences.append(
             "Masses, radii and luminosities are in the nominal solar units of IAU 2015 Resolution B3 "

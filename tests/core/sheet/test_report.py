@@ -10,7 +10,7 @@ import pytest
 from made_up import made_up_photometry, made_up_session
 from pages import Page, pdf_pages, pdf_size
 from shadowscale.fit.plan import Plan, Prior
-from shadowscale.fit.solution import Alternative, Decision
+from shadowscale.fit.solution import PROFILE, Alternative, Decision
 from shadowscale.jobs.reporting import report_of as make_report
 from shadowscale.jobs.results import sheet_of
 from shadowscale.quantities import QUANTITIES
@@ -335,6 +335,15 @@ def test_methods_speak_of_errors_that_were_estimated():
     table = replace(made_up_photometry(), errors_from_scatter=(True,))
     text = prose(methods(replace(session, photometry=table)))
     assert "gave no errors for V" in text
+
+
+def test_methods_say_where_limits_are_those_of_a_likelihood_profile():
+    session = made_up_session()
+    told = Decision("errors", PROFILE, "the ratio of the radii lies in a curved valley")
+    decisions = (*session.solution.decisions, told)
+    curved = replace(session, solution=replace(session.solution, decisions=decisions))
+    assert "likelihood profile (Wilks 1938)" in prose(methods(curved))
+    assert "likelihood profile" not in prose(methods(session))
 
 
 def test_a_prior_in_a_unit_is_written_with_it():
