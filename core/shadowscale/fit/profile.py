@@ -2,11 +2,10 @@
 
 In partial eclipses k, inclination, limb darkening and third light move together along a valley that
 is far from straight, and the curvature at the minimum tells too little (or too much). So k is held at
-values on both sides, the rest fitted again, until chi-squared is one above the minimum; the points
-found there give the 68.3 % limits along the valley (Wilks 1938; Pawitan 2001, In All Likelihood).
-Where chi-squared rises slowly from there on, or another minimum is nearly as low, that says too
-little: the limit then is where 15.9 % of the likelihood lie beyond, integrated over ln k, to which it
-is all one which star is called the first.
+values on both sides and the rest fitted again (profile likelihood: Pawitan 2001, In All Likelihood):
+until chi-squared is one above the minimum (Wilks 1938), farther where it rises slowly from there on,
+and over other minima. The limits leave 15.9 % of the likelihood beyond on either side, integrated over
+ln k, to which it is all one which star is called the first.
 Near the inclination where the smaller disc just fits into the larger there are two valleys, with and
 without a flat bottom, each hidden from the other by the kink between them: both are followed.
 """
@@ -35,8 +34,12 @@ LARGEST_FIRST = 0.3  # and at most this share of k itself
 MOST_TRIES = 9
 FARTHER, MOST_FARTHER = 1.6, 9  # how the tail is followed: each distance so many times the last
 STEEP = 1.6  # root of the rise at twice the distance of the limit; 2 in a parabola: no tail
-ENOUGH = 2.6  # root of the rise where a tail is left
-BEYOND, MOST_BEYOND = 0.159, 0.22  # share of the likelihood beyond a limit, as it should and may be
+ENOUGH, TOO_FAR = (
+    2.6,
+    4.0,
+)  # root of the rise where a tail is left; where it went too far to tell its share
+LEAST = 0.3  # share of the first piece at which a limit stands at the least
+BEYOND, MOST_BEYOND = 0.159, 0.25  # share of the likelihood beyond a limit, as it should and may be
 NARROW = 0.4  # in the root of the rise: near enough to interpolate
 NEAR_TANGENCY = 1.0  # in the logarithm of cos i
 ACROSS = 1.4  # factor of cos i of the tangency at which the other valley is looked for
@@ -74,12 +77,13 @@ def valley(
     above = _side(best, fit, direction=direction, at=at)
     lowest = min((best, below.lowest, above.lowest), key=lambda each: each.chi2)
     others = [each for each in branches if each.system.free == best.system.free]
-    ends = _reaching(best, (below, above), others, at=at)
-    tail = any(end is not side.limit.x for end, side in zip(ends, (below, above), strict=True))
+    pieces = tuple(_pieces(best, side, others, at=at) for side in (below, above))
+    total = sum(mass for each in pieces for mass, _ in each)
+    tail = any(sum(mass for mass, _ in each[1:]) > MOST_BEYOND * total for each in pieces)
     straight = all(abs(side.limit.step - 1.0) < STRAIGHT for side in (below, above))
     if straight and not tail and lowest is best:
         return None
-    return Valley(*ends, lowest, tail)
+    return Valley(_end(pieces[0], total), _end(pieces[1], total), lowest, tail)
 
 
 def _linear(fitted: Fitted, at: int) -> tuple[float, Floats]:
@@ -139,42 +143,37 @@ def _side(best: Fitted, fit: Callable[[System], Fitted], *, direction: Floats, a
     limit = _between(inner, outer)
     tail: list[_Place] = []
     step = 2.0 * limit.step
-    while len(tail) < MOST_FARTHER and inside(step):
-        tail.append(place(tail[-1] if tail else limit, step))
-        if tail[0].root > STEEP or tail[-1].root > ENOUGH:
+    for _ in range(MOST_FARTHER):
+        if not inside(step):
+            break
+        found = place(tail[-1] if tail else limit, step)
+        if not tail and found.root > TOO_FAR:
+            step = (limit.step + step) / 2
+            continue
+        tail.append(found)
+        if tail[0].root > STEEP or found.root > ENOUGH:
             break
         step *= FARTHER
     return _Side(limit, tuple(tail), lowest)
 
 
-def _reaching(
-    best: Fitted, sides: tuple[_Side, _Side], branches: Sequence[Fitted], *, at: int
-) -> tuple[Floats, Floats]:
-    """Both limits, farther out than a rise of one where too much of the likelihood lies beyond."""
-    origin = _Place(best.minimum.x, 0.0, 0.0)
-    cores = [_mass(origin, side.limit, at) for side in sides]
-    tails = [_tail(best, side, branches, at=at, sign=sign) for side, sign in zip(sides, (-1, 1))]
-    total = sum(cores) + sum(mass for tail in tails for mass, _ in tail)
-    ends = []
-    for side, tail in zip(sides, tails, strict=True):
-        wanted = BEYOND * total
-        x = side.limit.x
-        if sum(mass for mass, _ in tail) > MOST_BEYOND * total:
-            for mass, where in reversed(tail):
-                if mass >= wanted:
-                    x = where(1.0 - wanted / mass)
-                    break
-                wanted -= mass
-        ends.append(x)
-    return ends[0], ends[1]
+def _end(pieces: Sequence[Piece], total: float) -> Floats:
+    """Coordinates beyond which 15.9 % of the likelihood lie, to one side."""
+    wanted = BEYOND * total
+    for mass, where in reversed(pieces):
+        if mass >= wanted:
+            return where(1.0 - wanted / mass)
+        wanted -= mass
+    return pieces[0][1](LEAST)
 
 
-def _tail(
-    best: Fitted, side: _Side, branches: Sequence[Fitted], *, at: int, sign: int
-) -> list[Piece]:
-    """Pieces beyond the limit, going outward: likelihood, and coordinates where a share of it is passed."""
-    origin = _Place(best.minimum.x, 0.0, 0.0)
-    places = _continued([origin, side.limit, *side.tail], at)[1:]
+def _pieces(best: Fitted, side: _Side, branches: Sequence[Fitted], *, at: int) -> list[Piece]:
+    """One side, going outward: likelihood, and coordinates where a share of it is passed.
+
+    The first piece ends where chi-squared is one above the best.
+    """
+    places = _continued([_Place(best.minimum.x, 0.0, 0.0), side.limit, *side.tail], at)
+    sign = np.sign(side.limit.x[at] - best.minimum.x[at])
     pieces: list[Piece] = [
         (_mass(inner, outer, at), partial(_passed, inner, outer))
         for inner, outer in pairwise(places)
