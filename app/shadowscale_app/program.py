@@ -12,6 +12,7 @@ from PySide6.QtWidgets import QApplication
 from shadowscale_app import theme, trouble
 from shadowscale_app.bench import Bench
 from shadowscale_app.files import ORGANISATION, PROGRAM, settings
+from shadowscale_app.garbage import Collector
 
 
 def run(paths: Sequence[str]) -> int:
@@ -22,6 +23,7 @@ def run(paths: Sequence[str]) -> int:
     application.setOrganizationName(ORGANISATION)
     application.setProperty(theme.CHOICE, settings().value(theme.CHOICE, theme.FOLLOW))
     trouble.catch_everything()
+    Collector(application)
     bench = Bench()
     theme.dress(application)  # now: widgets put into others that are dressed are dressed each time
     bench.show()

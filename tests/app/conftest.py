@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+import gc
 import sys
 import threading
-from collections.abc import Iterator
+from collections.abc import Generator, Iterator
 from pathlib import Path
 
 import pytest
@@ -26,6 +27,16 @@ from shadowscale_app.dialogs.brushing import ask_brush
 
 # said by the offscreen platform about itself, not by the program
 ALLOWED = ("This plugin does not support", "propagateSizeHints")
+
+
+@pytest.hookimpl(wrapper=True)
+def pytest_runtest_protocol() -> Generator[None, object, object]:
+    """Garbage goes between the tests, as it goes between events in the program (`garbage.py`)."""
+    gc.disable()
+    try:
+        return (yield)
+    finally:
+        gc.enable()
 
 
 @pytest.fixture(autouse=True)
