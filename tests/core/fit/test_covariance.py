@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import replace
 from functools import cache
 from math import pi, radians, sqrt, tan
@@ -25,10 +26,12 @@ from fit_examples import (
     solved,
     velocities_of,
 )
+from shadowscale.data.photometry import Photometry
 from shadowscale.fit.least_squares import covariance
 from shadowscale.fit.limb import grey_errors
 from shadowscale.fit.model import model_light, model_velocities
 from shadowscale.fit.problem import Problem
+from shadowscale.fit.solution import PROFILE, Solution
 from shadowscale.fit.system import System
 from shadowscale.fit.vector import Vector
 from shadowscale.light.laws import LAWS
@@ -153,10 +156,49 @@ def test_errors_and_correlations_belong_to_the_covariance() -> None:
 # ---------------------------------------------------------------- sampling
 
 
-def _sampled() -> tuple[Solved, tuple[str, ...], Floats]:
-    """Eight free quantities of 400 points and 15 velocities, and emcee's samples of them."""
+def _log_likelihood(
+    found: Solved, photometry: Photometry
+) -> Callable[[Floats], tuple[float, System | None]]:
+    """Of the light at values of what is free, the level eliminated; and the system there, if it can be."""
+    solution = found.solution
+    names = solution.system.free
+    error = photometry.flux_error * solution.fit.error_scale["V"]
+    weight = (solution.light.why == 0) / error**2
+
+    def at(x: Floats) -> tuple[float, System | None]:
+        values = dict(zip(names, x.tolist(), strict=True))
+        if not (0 < values["inclination"] < 90 and 0.05 < values["radius_ratio"] < 20):
+            return -np.inf, None
+        system = solution.system.with_values(values)
+        light = model_light(system, "V", photometry.time)
+        level = np.sum(weight * light * photometry.flux) / np.sum(weight * light**2)
+        return -0.5 * float(np.sum(weight * (photometry.flux - level * light) ** 2)), system
+
+    return at
+
+
+def _chain(
+    log_posterior: Callable[[Floats], float],
+    solution: Solution,
+    spread: Floats,
+    *,
+    steps: int,
+    discard: int,
+) -> Floats:
+    """emcee's samples (n, m) of what is free, from walkers spread around the solution."""
     import emcee
 
+    middle = np.array([solution.system.values[name] for name in solution.system.free])
+    start = np.random.default_rng(5).multivariate_normal(middle, spread, 32)
+    moves = [(emcee.moves.DEMove(), 0.5), (emcee.moves.StretchMove(), 0.5)]
+    sampler = emcee.EnsembleSampler(32, middle.size, log_posterior, moves=moves)
+    sampler._random.seed(17)
+    sampler.run_mcmc(start, steps)
+    return sampler.get_chain(discard=discard, flat=True)
+
+
+def _sampled() -> tuple[Solved, tuple[str, ...], Floats]:
+    """Eight free quantities of 400 points and 15 velocities, and emcee's samples of them."""
     held = {"period": PERIOD, "epoch": EPOCH, "third_light": 0.0}
     fixed = {name: (value,) for name, value in held.items()}
     fixed |= {"limb_darkening1": (0.62, 0.55), "limb_darkening2": (0.68, 0.60)}
@@ -167,31 +209,18 @@ def _sampled() -> tuple[Solved, tuple[str, ...], Floats]:
     found = solved(truth, plan, photometry=photometry, velocities=velocities)
     solution = found.solution
     names, centre = solution.system.free, solution.system.values
-    error = photometry.flux_error * solution.fit.error_scale["V"]
-    used = solution.light.why == 0
+    light = _log_likelihood(found, photometry)
 
     def log_posterior(x: Floats) -> float:
-        values = dict(zip(names, x.tolist(), strict=True))
-        if not 0 < values["inclination"] < 90:
-            return -np.inf
-        system = solution.system.with_values(values)
-        light = model_light(system, "V", photometry.time)
-        weight = used / error**2
-        level = np.sum(weight * light * photometry.flux) / np.sum(weight * light**2)
-        chi2 = np.sum(weight * (photometry.flux - level * light) ** 2)
-        for star, seen in ((1, velocities.rv1), (2, velocities.rv2)):
-            model = model_velocities(system, star, velocities.time)
-            chi2 += np.sum(((seen - model) / 0.5) ** 2)
-        return -0.5 * float(chi2)
+        total, system = light(x)
+        if system is not None:
+            for star, seen in ((1, velocities.rv1), (2, velocities.rv2)):
+                model = model_velocities(system, star, velocities.time)
+                total -= 0.5 * float(np.sum(((seen - model) / 0.5) ** 2))
+        return total
 
-    random = np.random.default_rng(5)
-    middle = np.array([centre[name] for name in names])
-    start = random.multivariate_normal(middle, solution.covariance, 32)
-    moves = [(emcee.moves.DEMove(), 0.5), (emcee.moves.StretchMove(), 0.5)]
-    sampler = emcee.EnsembleSampler(32, len(names), log_posterior, moves=moves)
-    sampler._random.seed(17)
-    sampler.run_mcmc(start, 480)
-    return found, names, sampler.get_chain(discard=100, flat=True)
+    chain = _chain(log_posterior, solution, solution.covariance, steps=480, discard=100)
+    return found, names, chain
 
 
 def test_covariance_agrees_with_sampling() -> None:
@@ -209,6 +238,33 @@ def test_covariance_agrees_with_sampling() -> None:
     )
     best = np.array([found.solution.system.values[name] for name in names])
     np.testing.assert_array_less(np.abs(np.mean(chain, axis=0) - best) / spread, 0.35)
+
+
+def test_limits_in_a_curved_valley_agree_with_sampling() -> None:
+    """Source: the posterior sampled with emcee (Foreman-Mackey et al. 2013, PASP 125, 306), flat in ln k."""
+    fixed = {"period": (PERIOD,), "epoch": (EPOCH,), "third_light": (0.0,)}
+    fixed |= {"limb_darkening1": (0.62, 0.55), "limb_darkening2": (0.68, 0.60)}
+    truth = invented(radius_ratio=0.7, inclination=82.0, bands={"V": 0.9})
+    photometry = observed(truth, count=400, sigma=3e-3)
+    plan = ephemeris(fixed=fixed, orbit="circular", levels="one", light_time="off")
+    found = solved(truth, plan, photometry=photometry)
+    names = found.solution.system.free
+    likelihood, at = _log_likelihood(found, photometry), names.index("radius_ratio")
+
+    def log_posterior(x: Floats) -> float:
+        light, system = likelihood(x)
+        return -np.inf if system is None else light - float(np.log(x[at]))
+
+    narrow = found.solution.covariance / 4
+    chain = _chain(log_posterior, found.solution, narrow, steps=800, discard=200)
+    low, high = np.quantile(chain[:, at], [0.159, 0.841])
+    estimate = found.solution.estimates["radius_ratio"]
+
+    assert any(each.chosen == PROFILE for each in found.solution.decisions)
+    assert estimate.minus is not None
+    assert estimate.plus is not None
+    assert estimate.value - estimate.minus == pytest.approx(low, abs=0.15 * (high - low))
+    assert estimate.value + estimate.plus == pytest.approx(high, abs=0.15 * (high - low))
 
 
 # ---------------------------------------------------------------- forecasts in closed form
