@@ -208,7 +208,7 @@ def _sampled() -> tuple[Solved, tuple[str, ...], Floats]:
     plan = ephemeris(fixed=fixed, orbit="circular", levels="one", light_time="off")
     found = solved(truth, plan, photometry=photometry, velocities=velocities)
     solution = found.solution
-    names, centre = solution.system.free, solution.system.values
+    names = solution.system.free
     light = _log_likelihood(found, photometry)
 
     def log_posterior(x: Floats) -> float:
