@@ -251,7 +251,8 @@ class ReadingDialog(QDialog):
         bad = sorted((*found.unreadable, *found.set_aside), key=lambda row: row.line)
         lines += [f"line {row.line} is left out: {row.reason}" for row in bad[:4]]
         if len(bad) > 4:
-            lines.append(f"and {len(bad) - 4} more lines are left out")
+            more = len(bad) - 4
+            lines.append(f"and {more} more line{'s are' if more > 1 else ' is'} left out")
         self.foot.setText("\n".join(lines))
         usable = not found.problems and bool(found.guesses)
         self.buttons.button(QDialogButtonBox.StandardButton.Open).setEnabled(usable)
